@@ -1,0 +1,1 @@
+"""Sets the cant of railway curves for mixed traffic."""

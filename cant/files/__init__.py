@@ -1,0 +1,1 @@
+"""Files in and out, knowing nothing of curves: guard, reading pass, and editing a package in place."""

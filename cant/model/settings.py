@@ -1,0 +1,68 @@
+"""The settings of a plan: rail spacing or printed constant, method, tiers, tolerances of choice."""
+
+from __future__ import annotations
+
+from typing import Annotated
+
+from pydantic import BaseModel, ConfigDict, Field
+
+from cant.units import GRAVITY_MS2, KMH_PER_MS
+
+KMH2_G = KMH_PER_MS**2 * GRAVITY_MS2
+"""12.96 g: turns mm, km/h, m into an equilibrium cant [(km/h)2 / (m/s)2 . m/s2]."""
+
+STANDARD_RAIL_SPACING_MM = 1500.0
+NORMAL_TIER = "normal"
+EXCEPTIONAL_TIER = "exceptional"
+
+Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
+NonNegative = Annotated[float, Field(ge=0, allow_inf_nan=False)]
+
+
+class Settings(BaseModel):
+    """What holds for a whole plan.
+
+    Attributes
+    ----------
+    rail_spacing_mm : float or None
+        Distance e of the two wheel-rail contact points [mm]; None where not stated.
+    equilibrium_constant : float or None
+        Printed constant C of D_EQ = C V^2 / R [mm, km/h, m]; where given it rules e too.
+    method : str
+        Name of the method that gives each curve its target cant.
+    tiers : tuple of str
+        ``("normal",)`` or ``("normal", "exceptional")``.
+    keep_within_mm : float
+        Today's cant stays where it lies no further than this from the best [mm]; 0 keeps only what is best.
+    maintenance_allowance_mm : float or None
+        Taken off a ceiling on cant [mm]; None where not stated.
+    units : str
+        ``metric`` or ``us``: in which units people are shown the plan.
+    """
+
+    model_config = ConfigDict(frozen=True)
+
+    rail_spacing_mm: Positive | None = None
+    equilibrium_constant: Positive | None = None
+    method: str = "rms"
+    tiers: tuple[str, ...] = (NORMAL_TIER,)
+    keep_within_mm: NonNegative = 0.0
+    maintenance_allowance_mm: NonNegative | None = None
+    units: str = "metric"
+
+    @property
+    def constant(self) -> float:
+        """C of D_EQ = C V^2 / R [mm, km/h, m]: as printed, else e / (12.96 g)."""
+        if self.equilibrium_constant is not None:
+            return self.equilibrium_constant
+        return (self.rail_spacing_mm or STANDARD_RAIL_SPACING_MM) / KMH2_G
+
+    @property
+    def spacing_mm(self) -> float:
+        """Rail spacing e [mm]: 12.96 g C where a constant is given, else as stated, else 1500."""
+        return self.constant * KMH2_G
+
+    @property
+    def allows_exceptional(self) -> bool:
+        """Whether the last tier allowed is the exceptional one."""
+        return EXCEPTIONAL_TIER in self.tiers

@@ -1,0 +1,1 @@
+"""The physics of cant: pure functions of arrays, knowing nothing of files, limits or plans."""

@@ -1,0 +1,1 @@
+"""The web service: pages and API over the same service that the command calls."""
