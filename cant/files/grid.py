@@ -19,7 +19,7 @@ class Uncalculated(str):
     __slots__ = ()
 
 
-Value: TypeAlias = None | float | str | bool | datetime | date | time | CellError | Uncalculated
+Value: TypeAlias = float | str | bool | datetime | date | time | CellError | Uncalculated | None
 """Content of a cell; numbers are float. A blank cell, and a text of nothing but blanks, is None."""
 
 

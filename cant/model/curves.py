@@ -119,7 +119,7 @@ class CurveList:
         return CurveList(**chosen)
 
     def as_read(self, index: int) -> dict[str, Any]:
-        """Give one curve after units and notation are resolved, None where blank (``as_read`` of the JSON)."""
+        """Give a curve after units and notation are resolved (``as_read`` of the JSON), None where blank."""
         return {
             "radius_m": none_if_nan(self.radius_m[index]),
             "hand": {LEFT: "L", RIGHT: "R"}.get(int(self.hand[index])),

@@ -1,4 +1,4 @@
-"""What reading a file yields: the tables, and everything that was understood, doubted or refused on the way."""
+"""What reading a file yields: the tables, and everything understood, doubted or refused on the way."""
 
 from __future__ import annotations
 
