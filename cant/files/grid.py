@@ -2,6 +2,8 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+from collections.abc import Set as AbstractSet
 from dataclasses import dataclass, field
 from datetime import date, datetime, time
 from typing import TypeAlias
@@ -50,10 +52,12 @@ class Sheet:
         Rows from 1, columns from 0.
     visible : bool
         False for a hidden sheet.
-    formulas : set of (int, int)
+    formulas : set-like of (int, int)
         (row from 1, column from 0) of cells whose value was calculated.
-    number_formats : dict of (int, int) to str
+    number_formats : mapping of (int, int) to str
         Number format of cells where it is not General; may be left empty by formats that have none.
+    next_column : int
+        Column from 0 that the first added column takes when the sheet is annotated.
     """
 
     name: str
@@ -62,8 +66,9 @@ class Sheet:
     hidden_rows: frozenset[int] = frozenset()
     hidden_columns: frozenset[int] = frozenset()
     visible: bool = True
-    formulas: set[tuple[int, int]] = field(default_factory=set)
-    number_formats: dict[tuple[int, int], str] = field(default_factory=dict)
+    formulas: AbstractSet[tuple[int, int]] = field(default_factory=set)
+    number_formats: Mapping[tuple[int, int], str] = field(default_factory=dict)
+    next_column: int = 0
 
     def value(self, row: int, column: int) -> Value:
         """Give the value of a cell: row from 1, column from 0; None outside."""
