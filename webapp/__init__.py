@@ -1,1 +1,4 @@
-"""The web service: pages and API over the same service that the command calls."""
+"""The web service: pages and a JSON interface over :mod:`cant.service`.
+
+The application factory is :func:`webapp.app.create_app`; ``cant serve`` runs :func:`webapp.serve.run`.
+"""

@@ -1,0 +1,131 @@
+"""Readings and plans computed from what is stored, each once: the latest stay in memory.
+
+A page asks for a plan; it is computed when nobody has asked before, and found afterwards. The key is the
+digest of the file and of the decisions that matter, so that a changed decision can never show an old plan.
+"""
+
+from __future__ import annotations
+
+import threading
+from collections import OrderedDict
+from collections.abc import Callable
+from dataclasses import dataclass
+from typing import Generic, TypeVar
+
+from cant import service
+from cant.model.reading import Reading
+from cant.service import PlannedLine
+from webapp.listing import Listing
+from webapp.store import StoredPlan
+from webapp.tables import TRAFFIC_FILE, traffic_csv
+
+Kept = TypeVar("Kept")
+Bytes = Callable[[], bytes]
+READING_KINDS = ("answers", "traffic", "limits")
+PLAN_KINDS = ("answers", "traffic", "limits", "settings")
+
+
+class Latest(Generic[Kept]):
+    """The latest values by key; one that is missing is made once, however many ask for it.
+
+    Parameters
+    ----------
+    size : int
+        Values kept.
+    """
+
+    def __init__(self, size: int) -> None:
+        self._size = size
+        self._kept: OrderedDict[str, Kept] = OrderedDict()
+        self._making: dict[str, threading.Lock] = {}
+        self._lock = threading.Lock()
+
+    def get(self, key: str, make: Callable[[], Kept]) -> Kept:
+        """Give the value of a key, made by ``make`` where it is not kept; its errors pass through."""
+        with self._lock:
+            if key in self._kept:
+                self._kept.move_to_end(key)
+                return self._kept[key]
+            making = self._making.setdefault(key, threading.Lock())
+        with making:
+            with self._lock:
+                if key in self._kept:
+                    return self._kept[key]
+            try:
+                value = make()
+                with self._lock:
+                    self._kept[key] = value
+                    while len(self._kept) > self._size:
+                        self._kept.popitem(last=False)
+            finally:
+                with self._lock:
+                    self._making.pop(key, None)
+        return value
+
+
+@dataclass(frozen=True)
+class Computed:
+    """A plan as computed, with the list that its pages sort and search."""
+
+    planned: PlannedLine
+    listing: Listing
+
+
+class Computations:
+    """Readings and plans, computed on demand.
+
+    Parameters
+    ----------
+    size : int
+        Plans kept in memory.
+    """
+
+    def __init__(self, size: int) -> None:
+        self._readings: Latest[Reading] = Latest(size)
+        self._plans: Latest[Computed] = Latest(size)
+
+    def reading(self, plan: StoredPlan, data: Bytes) -> Reading:
+        """Give how a plan's file is read under its decisions.
+
+        Parameters
+        ----------
+        plan : StoredPlan
+        data : callable
+            Gives the bytes of the file where they are needed.
+
+        Raises
+        ------
+        CantError
+            The file, or an answer, cannot be used.
+        """
+        key = f"{plan.file_digest}/{plan.file_name}/{plan.decided.digest(*READING_KINDS)}"
+        return self._readings.get(key, lambda: _read(plan, data()))
+
+    def planned(self, plan: StoredPlan, data: Bytes) -> Computed:
+        """Give the plan that follows from a file and its decisions.
+
+        Raises
+        ------
+        CantError
+            There is no traffic, or there are no limits, or a table cannot be used.
+        """
+        key = f"{plan.file_digest}/{plan.file_name}/{plan.decided.digest(*PLAN_KINDS)}"
+        return self._plans.get(key, lambda: self._plan(plan, data))
+
+    def _plan(self, plan: StoredPlan, data: Bytes) -> Computed:
+        decided = plan.decided
+        planned = service.make_plan(
+            self.reading(plan, data),
+            traffic=decided.traffic,
+            limits=decided.limits,
+            settings=decided.settings,
+        )
+        return Computed(planned, Listing(planned))
+
+
+def _read(plan: StoredPlan, data: bytes) -> Reading:
+    decided = plan.decided
+    traffic = None if decided.traffic is None else (traffic_csv(decided.traffic), TRAFFIC_FILE)
+    return service.read_curves(
+        data, plan.file_name, traffic=traffic, limits=decided.limits, answers=decided.answers
+    )

@@ -1,0 +1,78 @@
+"""What every view needs of the running application: the store, the computations, the request's plan and units."""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+from datetime import UTC, datetime, timedelta
+from typing import cast
+
+from flask import current_app, g, request, session
+
+from cant.model.reading import Reading
+from webapp.computing import Computations, Computed
+from webapp.config import Config
+from webapp.database import Database
+from webapp.measures import SYSTEMS, Measures, measures
+from webapp.security import owner
+from webapp.store import Store, StoredPlan
+
+EXTENSION = "cant"
+UNITS = "units"
+CLEANING_HOURS = 1
+
+
+@dataclass
+class Running:
+    """The parts of a running application."""
+
+    config: Config
+    database: Database
+    store: Store
+    computations: Computations
+    cleaned: datetime
+
+    def clean(self) -> None:
+        """Delete what has expired, at most once an hour."""
+        now = datetime.now(UTC)
+        if now - self.cleaned >= timedelta(hours=CLEANING_HOURS):
+            self.cleaned = now
+            self.store.remove_expired()
+
+
+def running() -> Running:
+    """Give the parts of the application that answers this request."""
+    return cast("Running", current_app.extensions[EXTENSION])
+
+
+def current_measures() -> Measures:
+    """Give the units of the request: as asked for in the address, else as this browser chose, else metric."""
+    if "measures" not in g:
+        asked = request.args.get(UNITS)
+        if asked in SYSTEMS and session.get(UNITS) != asked:
+            session.permanent = True
+            session[UNITS] = asked
+        g.measures = measures(asked if asked in SYSTEMS else str(session.get(UNITS, "metric")))
+    found: Measures = g.measures
+    return found
+
+
+def stored(address: str) -> StoredPlan:
+    """Give the owner's plan of an address; NotThereError."""
+    plan = running().store.plan(owner(), address)
+    g.plan = plan
+    return plan
+
+
+def file_of(plan: StoredPlan) -> bytes:
+    """Give the bytes of a plan's file."""
+    return running().store.file(owner(), plan.address)
+
+
+def reading_of(plan: StoredPlan) -> Reading:
+    """Give how a plan's file is read."""
+    return running().computations.reading(plan, lambda: file_of(plan))
+
+
+def computed_of(plan: StoredPlan) -> Computed:
+    """Give a plan's result."""
+    return running().computations.planned(plan, lambda: file_of(plan))

@@ -1,0 +1,118 @@
+"""Who asks, and whether a request may change anything.
+
+The owner of a plan is a random number in a signed cookie, or in a signed key that a program sends. Forms carry
+a signed token made for their owner; a request to the JSON interface with a cookie must come from the same
+site. Every answer carries a strict content-security policy: nothing inline, nothing from elsewhere.
+"""
+
+from __future__ import annotations
+
+import secrets
+from urllib.parse import urlsplit
+
+from flask import Flask, Response, current_app, g, request, session
+from itsdangerous import BadSignature, URLSafeSerializer, URLSafeTimedSerializer
+
+OWNER = "owner"
+OWNER_BYTES = 24
+FORM_HOURS = 24
+POLICY = "; ".join(
+    (
+        "default-src 'self'",
+        "base-uri 'none'",
+        "form-action 'self'",
+        "frame-ancestors 'none'",
+        "object-src 'none'",
+    )
+)
+HEADERS = {
+    "Content-Security-Policy": POLICY,
+    "X-Content-Type-Options": "nosniff",
+    "X-Frame-Options": "DENY",
+    "Referrer-Policy": "same-origin",
+    "Cross-Origin-Opener-Policy": "same-origin",
+    "Cross-Origin-Resource-Policy": "same-origin",
+    "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
+}
+
+
+class RefusedError(Exception):
+    """A request that may not change anything: a form without its token, or from another site."""
+
+
+def owner() -> str:
+    """Give the owner of the request; a browser without one gets one with the answer."""
+    if OWNER not in g:
+        key = request.authorization
+        if key is not None and key.type == "bearer":
+            g.owner, g.owner_is_new = _from_key(key.token or ""), False
+        else:
+            known = session.get(OWNER)
+            g.owner_is_new = not isinstance(known, str)
+            if g.owner_is_new:
+                session.permanent = True
+                known = session[OWNER] = secrets.token_urlsafe(OWNER_BYTES)
+            g.owner = known
+    found: str = g.owner
+    return found
+
+
+def new_key() -> str | None:
+    """Give the key of an owner who came without cookie or key, so that a program can come back; else None."""
+    asked = owner()
+    return URLSafeSerializer(_secret(), salt="key").dumps(asked) if g.owner_is_new else None
+
+
+def _from_key(key: str) -> str:
+    try:
+        found = URLSafeSerializer(_secret(), salt="key").loads(key)
+    except BadSignature as error:
+        message = "the key sent with this request is not valid"
+        raise RefusedError(message) from error
+    return str(found)
+
+
+def form_token() -> str:
+    """Give the token that a form of this owner must carry."""
+    return URLSafeTimedSerializer(_secret(), salt="form").dumps(owner())
+
+
+def check_form() -> None:
+    """Refuse a form that does not carry its owner's token; RefusedError."""
+    try:
+        made_for = URLSafeTimedSerializer(_secret(), salt="form").loads(
+            request.form.get("token", ""), max_age=FORM_HOURS * 3600
+        )
+    except BadSignature as error:
+        message = "this form is too old or was not made here; open the page anew and send it once more"
+        raise RefusedError(message) from error
+    if not secrets.compare_digest(str(made_for), owner()):
+        message = "this form was made for another browser; open the page anew and send it once more"
+        raise RefusedError(message)
+    check_same_site()
+
+
+def check_same_site() -> None:
+    """Refuse a request that another site made a browser send; RefusedError."""
+    site = request.headers.get("Sec-Fetch-Site", "none")
+    origin = request.headers.get("Origin")
+    foreign = origin is not None and origin != "null" and urlsplit(origin).netloc != request.host
+    if site in ("cross-site", "same-site") or foreign:
+        message = "this request comes from another site"
+        raise RefusedError(message)
+
+
+def protect(app: Flask) -> None:
+    """Give every answer of an application its headers."""
+
+    @app.after_request
+    def headers(response: Response) -> Response:
+        for name, value in HEADERS.items():
+            response.headers.setdefault(name, value)
+        if request.endpoint != "static":
+            response.headers.setdefault("Cache-Control", "private, no-store")
+        return response
+
+
+def _secret() -> str:
+    return str(current_app.secret_key)

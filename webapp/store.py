@@ -1,0 +1,261 @@
+"""Plans and kept limits in the database: whose they are, how long they stay.
+
+Every question names its owner, so that no caller can forget to ask: what belongs to somebody else does not
+exist. A change is one transaction, whole or not at all.
+"""
+
+from __future__ import annotations
+
+import hashlib
+import json
+import secrets
+from dataclasses import dataclass
+from datetime import UTC, datetime, timedelta
+
+from sqlalchemy import delete, func, select
+from sqlalchemy.exc import IntegrityError
+from sqlalchemy.orm import Session
+
+from cant.errors import CantError, InputError
+from cant.model.limits import LimitSet
+from webapp.database import Database
+from webapp.decisions import KINDS, Decided, Decision, limits_from_plain, limits_text
+from webapp.records import DecisionRow, FileRow, KeptLimitsRow, PlanRow
+
+ADDRESS_BYTES = 24
+LONGEST_NAME = 80
+
+
+class NotThereError(CantError):
+    """No such plan for this owner: never made, deleted, expired, or somebody else's."""
+
+
+@dataclass(frozen=True)
+class StoredPlan:
+    """A plan as stored, without the bytes of its file.
+
+    Attributes
+    ----------
+    address : str
+        192 random bits, the plan's name in every URL.
+    name, file_name, file_digest : str
+    file_size : int
+        Bytes.
+    created, changed, expires : datetime
+        UTC.
+    decided : Decided
+        What holds after all decisions.
+    history : tuple of Decision
+        All decisions, oldest first.
+    """
+
+    address: str
+    name: str
+    file_name: str
+    file_digest: str
+    file_size: int
+    created: datetime
+    changed: datetime
+    expires: datetime
+    decided: Decided
+    history: tuple[Decision, ...]
+
+
+@dataclass(frozen=True)
+class KeptLimits:
+    """Limits kept under a name."""
+
+    name: str
+    limits: LimitSet
+    expires: datetime
+
+
+class Store:
+    """Plans and kept limits of all owners.
+
+    Parameters
+    ----------
+    database : Database
+    keep_days : int
+        Days after the last change until a plan is deleted.
+    """
+
+    def __init__(self, database: Database, keep_days: int) -> None:
+        self._database = database
+        self._keep = timedelta(days=keep_days)
+
+    def add(
+        self, owner: str, file_name: str, data: bytes, decisions: dict[str, str] | None = None
+    ) -> StoredPlan:
+        """Store a file as a new plan, with first decisions by kind, and give the plan."""
+        now = datetime.now(UTC)
+        plan = PlanRow(
+            address=secrets.token_urlsafe(ADDRESS_BYTES),
+            owner=owner,
+            name=file_name[:200],
+            file_name=file_name[-255:],
+            file_digest=hashlib.sha256(data).hexdigest(),
+            file_size=len(data),
+            created=now,
+            changed=now,
+            expires=now + self._keep,
+            decisions=[
+                DecisionRow(number=i, kind=kind, content=content, reason="", made=now)
+                for i, (kind, content) in enumerate((decisions or {}).items())
+            ],
+        )
+        with self._database.sessions.begin() as session:
+            session.add(plan)
+            session.flush()
+            session.add(FileRow(plan_id=plan.id, data=data))
+        return _stored(plan)
+
+    def plans(self, owner: str) -> list[StoredPlan]:
+        """Give the plans of an owner, the last changed first."""
+        wanted = (
+            select(PlanRow)
+            .where(PlanRow.owner == owner, PlanRow.expires > datetime.now(UTC))
+            .order_by(PlanRow.changed.desc(), PlanRow.id.desc())
+        )
+        with self._database.sessions() as session:
+            return [_stored(plan) for plan in session.scalars(wanted)]
+
+    def plan(self, owner: str, address: str) -> StoredPlan:
+        """Give a plan; NotThereError where this owner has none of that address."""
+        with self._database.sessions() as session:
+            return _stored(_find(session, owner, address))
+
+    def file(self, owner: str, address: str) -> bytes:
+        """Give the bytes of a plan's file, as they were uploaded."""
+        with self._database.sessions() as session:
+            row = session.get(FileRow, _find(session, owner, address).id)
+            if row is None:
+                message = "the file of this plan is no longer kept"
+                raise NotThereError(message)
+            return row.data
+
+    def decide(self, owner: str, address: str, decisions: dict[str, str], reason: str = "") -> StoredPlan:
+        """Add decisions, by kind, in one transaction; one that changes nothing is not added.
+
+        Any decision starts the days until the plan expires anew.
+        """
+        unknown = set(decisions) - set(KINDS)
+        if unknown:
+            message = f"unknown kind of decision: {', '.join(sorted(unknown))}"
+            raise InputError(message)
+        with self._database.sessions.begin() as session:
+            plan = _find(session, owner, address, for_change=True)
+            now = datetime.now(UTC)
+            ruling = {d.kind: d.content for d in plan.decisions}
+            number = max((d.number for d in plan.decisions), default=-1)
+            for kind, content in decisions.items():
+                if ruling.get(kind, "null") == content:
+                    continue
+                number += 1
+                plan.decisions.append(
+                    DecisionRow(number=number, kind=kind, content=content, reason=reason, made=now)
+                )
+            plan.changed, plan.expires = now, now + self._keep
+            session.flush()
+            return _stored(plan)
+
+    def keep_longer(self, owner: str, address: str) -> StoredPlan:
+        """Start the days until a plan expires anew."""
+        return self.decide(owner, address, {})
+
+    def rename(self, owner: str, address: str, name: str) -> StoredPlan:
+        """Call a plan otherwise; InputError where the name is blank or long."""
+        name = checked_name(name)
+        with self._database.sessions.begin() as session:
+            plan = _find(session, owner, address, for_change=True)
+            plan.name = name
+            session.flush()
+            return _stored(plan)
+
+    def remove(self, owner: str, address: str) -> None:
+        """Delete a plan with its file and decisions."""
+        with self._database.sessions.begin() as session:
+            session.execute(delete(PlanRow).where(PlanRow.id == _find(session, owner, address).id))
+
+    def remove_expired(self) -> int:
+        """Delete what has expired; give the number of plans."""
+        now = datetime.now(UTC)
+        with self._database.sessions.begin() as session:
+            count = session.scalar(select(func.count()).where(PlanRow.expires <= now)) or 0
+            session.execute(delete(PlanRow).where(PlanRow.expires <= now))
+            session.execute(delete(KeptLimitsRow).where(KeptLimitsRow.expires <= now))
+        return count
+
+    def keep_limits(self, owner: str, name: str, limits: LimitSet) -> None:
+        """Keep limits under a name; the same name replaces what was there."""
+        name = checked_name(name)
+        now = datetime.now(UTC)
+        content = limits_text(limits)
+        try:
+            with self._database.sessions.begin() as session:
+                row = session.scalar(
+                    select(KeptLimitsRow).where(KeptLimitsRow.owner == owner, KeptLimitsRow.name == name)
+                )
+                if row is None:
+                    row = KeptLimitsRow(owner=owner, name=name)
+                    session.add(row)
+                row.content, row.changed, row.expires = content, now, now + 12 * self._keep
+        except IntegrityError as error:
+            message = f"limits named '{name}' were being kept at the same moment; try once more"
+            raise InputError(message) from error
+
+    def kept_limits(self, owner: str) -> list[KeptLimits]:
+        """Give the limits an owner keeps, by name."""
+        wanted = select(KeptLimitsRow).where(
+            KeptLimitsRow.owner == owner, KeptLimitsRow.expires > datetime.now(UTC)
+        )
+        with self._database.sessions() as session:
+            return [
+                KeptLimits(row.name, limits_from_plain(json.loads(row.content)), row.expires)
+                for row in session.scalars(wanted.order_by(KeptLimitsRow.name))
+            ]
+
+    def forget_limits(self, owner: str, name: str) -> None:
+        """Delete limits kept under a name; nothing happens where there are none."""
+        with self._database.sessions.begin() as session:
+            session.execute(
+                delete(KeptLimitsRow).where(KeptLimitsRow.owner == owner, KeptLimitsRow.name == name)
+            )
+
+
+def checked_name(name: str) -> str:
+    """Give a name without blanks around it; InputError where it is blank, long or not printable."""
+    name = name.strip()
+    if not name or len(name) > LONGEST_NAME or not name.isprintable():
+        message = f"a name needs 1 to {LONGEST_NAME} printable characters"
+        raise InputError(message)
+    return name
+
+
+def _find(session: Session, owner: str, address: str, *, for_change: bool = False) -> PlanRow:
+    wanted = select(PlanRow).where(
+        PlanRow.address == address, PlanRow.owner == owner, PlanRow.expires > datetime.now(UTC)
+    )
+    plan = session.scalar(wanted.with_for_update() if for_change else wanted)
+    if plan is None:
+        message = (
+            "there is no such plan here: it may have expired, been deleted, or belong to another browser"
+        )
+        raise NotThereError(message)
+    return plan
+
+
+def _stored(plan: PlanRow) -> StoredPlan:
+    history = tuple(Decision(d.kind, d.content, d.reason, d.made) for d in plan.decisions)
+    return StoredPlan(
+        address=plan.address,
+        name=plan.name,
+        file_name=plan.file_name,
+        file_digest=plan.file_digest,
+        file_size=plan.file_size,
+        created=plan.created,
+        changed=plan.changed,
+        expires=plan.expires,
+        decided=Decided.of(history),
+        history=history,
+    )
