@@ -9,6 +9,7 @@ from cant.model.curves import CurveList
 from cant.model.limits import LimitSet
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic
+from cant.model.turnouts import Turnout
 
 
 @dataclass(frozen=True)
@@ -153,10 +154,14 @@ class Reading:
         None where the file has no such table.
     settings : Settings or None
         None where the file has no such table.
+    turnouts : list of Turnout
+        Turnouts that lie in curves; empty where the file has no such table.
     rejected, questions, columns, sheets : list
         What was refused, asked, and understood.
     notes : list of str
         Anything else a person should know about how the file was read.
+    sha256 : str
+        Digest of the curve file, hexadecimal; "" where there is no file.
     """
 
     file: str
@@ -169,3 +174,5 @@ class Reading:
     columns: list[ColumnReading] = field(default_factory=list)
     sheets: list[SheetReading] = field(default_factory=list)
     notes: list[str] = field(default_factory=list)
+    turnouts: list[Turnout] = field(default_factory=list)
+    sha256: str = ""

@@ -1,0 +1,190 @@
+"""The user's workbook with the plan in it: columns beside his rows, sheets of ours behind his own.
+
+Decides what is written where; how it gets into the file without loss is the business of :mod:`cant.files`.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Callable
+from dataclasses import dataclass, field
+from typing import TYPE_CHECKING
+
+from cant.files.additions import AddedColumn, CellMark, OutCell, SheetAddition
+from cant.files.annotate import annotate, can_annotate, free_sheet_name
+from cant.files.grid import Workbook
+from cant.files.open import open_workbook
+from cant.files.rewrite import rows_as_new_workbook, sheet_name_in_new_workbook
+from cant.model.display import Display
+from cant.model.reading import Reading, RejectedRow, SheetReading
+from cant.writing.columns import DECISION, WORDS, Column, Record, class_columns
+from cant.writing.plan_sheets import PlanSheets
+from cant.writing.sheets import MAX_TEXT, NewSheets
+
+if TYPE_CHECKING:
+    from cant.writing.planned import PlannedLine
+
+NOT_ASSESSED = "not assessed"
+FILLS: dict[str, str] = {
+    NOT_ASSESSED: "D9D9D9",
+    "not compliant": "F2B8B0",
+    "restrict": "F7D9A8",
+    "exceptional": "F6EFB0",
+}
+"""Ground of the status cell; a cant that simply changes or stays has none."""
+
+
+@dataclass(frozen=True)
+class AnnotatedFile:
+    """A workbook with the plan in it.
+
+    Attributes
+    ----------
+    data : bytes
+        The file.
+    notes : list of str
+        What a person should know: what could not be added, or that it is a new workbook and why.
+    """
+
+    data: bytes
+    notes: list[str] = field(default_factory=list)
+
+
+class AddedColumns:
+    """The cells of the added columns of every curve sheet, gathered record by record.
+
+    Where two curves stand side by side in one row, the second gets columns of its own.
+    """
+
+    def __init__(self, columns: list[Column], display: Display) -> None:
+        self._columns = columns
+        self._display = display
+        self._cells: dict[str, list[list[dict[int, OutCell]]]] = {}
+        self._taken: dict[tuple[str, int], int] = {}
+
+    def add(self, record: Record) -> None:
+        """Take the cells of one curve."""
+        cells = self._place(record["sheet"], record["row"])
+        for column, into in zip(self._columns, cells, strict=True):
+            value = column.cell(record, self._display)
+            if value is None:
+                continue
+            if isinstance(value, str):
+                value = value[:MAX_TEXT]
+            fill = FILLS.get(str(value)) if column.heading == "Status" else None
+            into[record["row"]] = OutCell(value, fill=fill)
+
+    def add_rejected(self, row: RejectedRow) -> None:
+        """Take the cells of a row that was refused: its status, and why."""
+        if self._taken.get((row.sheet, row.row)):
+            return
+        cells = self._place(row.sheet, row.row)
+        for column, into in zip(self._columns, cells, strict=True):
+            if column.heading == "Status":
+                into[row.row] = OutCell(NOT_ASSESSED, fill=FILLS[NOT_ASSESSED])
+            elif column.heading == "Reason":
+                into[row.row] = OutCell(row.problem[:MAX_TEXT])
+
+    def of(self, sheet: str) -> list[AddedColumn]:
+        """Give the columns that a sheet gains, in order."""
+        added: list[AddedColumn] = []
+        for number, group in enumerate(self._cells.get(sheet, [[{} for _ in self._columns]])):
+            suffix = f" [{number + 1}]" if number else ""
+            added += [
+                AddedColumn(
+                    heading=column.title(self._display) + suffix,
+                    cells=cells,
+                    width=column.width,
+                    number_format=column.number_format(self._display),
+                    heading_note=column.help or None,
+                )
+                for column, cells in zip(self._columns, group, strict=True)
+            ]
+        return added
+
+    def _place(self, sheet: str, row: int) -> list[dict[int, OutCell]]:
+        number = self._taken.get((sheet, row), 0)
+        self._taken[sheet, row] = number + 1
+        groups = self._cells.setdefault(sheet, [])
+        while len(groups) <= number:
+            groups.append([{} for _ in self._columns])
+        return groups[number]
+
+
+def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile:
+    """Write a plan into the workbook that it came from.
+
+    Parameters
+    ----------
+    planned : PlannedLine
+        The plan.
+    data, file
+        The curve file as it was read, and its name.
+
+    Returns
+    -------
+    AnnotatedFile
+        The user's workbook with columns and sheets added; where it cannot be annotated in place, a new
+        workbook with the same rows, and a note that says so.
+    """
+    workbook = open_workbook(data, file)
+    base, names, notes = _base(workbook, data)
+    display = planned.display
+    columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *WORDS]
+    added = AddedColumns(columns, display)
+    with NewSheets() as book:
+        sheets = PlanSheets(book, planned, _name_giver(workbook))
+        for record in planned.records():
+            added.add(record)
+            sheets.add(record)
+        sheets.finish()
+    for row in planned.reading.rejected:
+        added.add_rejected(row)
+    marks = _marks(planned.reading)
+    additions = [
+        SheetAddition(names(entry.sheet), entry.header_row, added.of(entry.sheet), marks.get(entry.sheet, []))
+        for entry in _curve_sheets(planned.reading)
+    ]
+    result = annotate(base, additions, book.data, file)
+    return AnnotatedFile(result.data, [*notes, *result.notes])
+
+
+def _base(workbook: Workbook, data: bytes) -> tuple[bytes, Callable[[str], str], list[str]]:
+    """Give the workbook to annotate, the name that each sheet bears in it, and what to say about it."""
+    reason = can_annotate(data)
+    if reason is None:
+        return data, lambda name: name, []
+    place = {sheet.name: index for index, sheet in enumerate(workbook.sheets)}
+    note = f"{workbook.file}: the plan is in a new workbook with the same rows, because {reason}"
+    return (
+        rows_as_new_workbook(workbook),
+        lambda name: sheet_name_in_new_workbook(workbook, place[name]),
+        [note],
+    )
+
+
+def _name_giver(workbook: Workbook) -> Callable[[str], str]:
+    return lambda wanted: free_sheet_name(workbook, wanted)
+
+
+def _curve_sheets(reading: Reading) -> list[SheetReading]:
+    """Give the curve sheets, each once, with the header of its first table."""
+    found: dict[str, SheetReading] = {}
+    for entry in reading.sheets:
+        if entry.role == "curves":
+            found.setdefault(entry.sheet, entry)
+    return list(found.values())
+
+
+def _marks(reading: Reading) -> dict[str, list[CellMark]]:
+    """Give the marks on the user's own cells: one where a value made its row unusable."""
+    columns = {(c.sheet, c.heading): c.index for c in reading.columns}
+    texts: dict[tuple[str, int, int], list[str]] = {}
+    for row in reading.rejected:
+        at = columns.get((row.sheet, row.column))
+        if at is not None:
+            texts.setdefault((row.sheet, row.row, at), []).append(row.problem)
+    marks: dict[str, list[CellMark]] = {}
+    for (sheet, line, column), problems in texts.items():
+        note = "\n".join(problems)[:MAX_TEXT]
+        marks.setdefault(sheet, []).append(CellMark(line, column, FILLS[NOT_ASSESSED], note))
+    return marks

@@ -1,0 +1,76 @@
+"""A planned line: what was read, what was decided and how it is put into words, as one thing to be shown.
+
+Every output takes its curves from here, one record at a time, so that page, JSON, workbook and data frame
+cannot tell different stories, and a register of 100,000 curves is never held as records.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterator
+from dataclasses import dataclass
+from typing import TYPE_CHECKING, Any
+
+from cant.model.display import Display
+from cant.model.reading import Reading
+from cant.writing import document, frames
+
+if TYPE_CHECKING:
+    import pandas as pd
+
+    from cant.explaining import Explanation
+    from cant.planning import Plan
+
+
+@dataclass(frozen=True)
+class PlannedLine:
+    """A plan with the reading it came from and the words that go with it.
+
+    Attributes
+    ----------
+    reading : Reading
+        The file as it was understood.
+    plan : Plan
+        The decisions.
+    explanation : Explanation
+        Reasons, findings and options.
+    """
+
+    reading: Reading
+    plan: Plan
+    explanation: Explanation
+
+    @property
+    def display(self) -> Display:
+        """Units in which people are shown the plan."""
+        return Display(self.plan.settings.units)
+
+    def record(self, index: int) -> dict[str, Any]:
+        """Give everything the plan knows of one curve, as the JSON has it.
+
+        Parameters
+        ----------
+        index : int
+            Index of the curve in the list that was read, one of ``plan.assessed``.
+        """
+        record = self.plan.record(index)
+        record["reason"] = self.explanation.reason(index)
+        record["findings"] = [finding.as_json() for finding in self.explanation.findings(index)]
+        record["options"] = self.explanation.options(index)
+        record["methods"] = self.explanation.methods(index)
+        return record
+
+    def records(self) -> Iterator[dict[str, Any]]:
+        """Give the records of all curves that were not rejected, in input order, one at a time."""
+        return (self.record(int(index)) for index in self.plan.assessed)
+
+    def document(self) -> dict[str, Any]:
+        """Give the JSON of the plan as one dict (contract: metric always)."""
+        return {"curves": list(self.records()), **document.frame_of(self)}
+
+    def json_chunks(self) -> Iterator[bytes]:
+        """Give the JSON of the plan as UTF-8 in pieces, without holding it all."""
+        return document.chunks(self)
+
+    def to_frames(self) -> dict[str, pd.DataFrame]:
+        """Give the plan as data frames: see :func:`cant.writing.frames.to_frames`."""
+        return frames.to_frames(self)

@@ -1,0 +1,164 @@
+"""A new workbook of plain tables, written row by row so that a register never stands in memory.
+
+Knows how a sheet of ours looks (header, widths, print set-up) and that a text of the user's stays text; knows
+nothing of plans.
+"""
+
+from __future__ import annotations
+
+import io
+from collections.abc import Sequence
+from dataclasses import dataclass
+from types import TracebackType
+from typing import Any
+
+import xlsxwriter
+
+from cant.writing.columns import Cell
+
+MAX_TEXT = 32_000
+"""Longest text of a cell that every spreadsheet program keeps (the format's own limit is 32,767)."""
+
+MAX_ROWS = 1_048_000
+"""Most rows that a sheet of ours takes (the format's own limit is 1,048,576)."""
+
+
+@dataclass(frozen=True, slots=True)
+class Heading:
+    """Head of one column of a table.
+
+    Attributes
+    ----------
+    title : str
+        Text of the header cell.
+    width : float
+        In characters.
+    number_format : str or None
+        Number format of the column, None for text.
+    note : str
+        Shown when the header cell is pointed at, "" for none.
+    """
+
+    title: str
+    width: float = 12.0
+    number_format: str | None = None
+    note: str = ""
+
+
+class TableSheet:
+    """One sheet that is filled from top to bottom.
+
+    Parameters
+    ----------
+    book : NewSheets
+        The workbook it belongs to.
+    name : str
+        Name of the sheet.
+    """
+
+    def __init__(self, book: NewSheets, name: str) -> None:
+        self._book = book
+        self._sheet = book.workbook.add_worksheet(name)
+        self._formats: list[Any] = []
+        self._next = 0
+        self.name = name
+        self.left_out = 0
+        self._sheet.set_landscape()
+        self._sheet.set_paper(9)
+        self._sheet.fit_to_pages(1, 0)
+        self._sheet.set_footer("&L&F  &A&RPage &P of &N")
+
+    def header(self, headings: Sequence[Heading]) -> None:
+        """Write the header of the table that follows, keep it in view and repeat it in print."""
+        sheet, row = self._sheet, self._next
+        self._formats = [self._book.number(heading.number_format) for heading in headings]
+        for column, heading in enumerate(headings):
+            sheet.set_column(column, column, heading.width)
+            sheet.write_string(row, column, heading.title, self._book.head)
+        sheet.freeze_panes(row + 1, 0)
+        sheet.repeat_rows(row)
+        self._next += 1
+
+    def row(self, cells: Sequence[Cell]) -> int | None:
+        """Write one row of the table and give its row number from 1; None where the sheet is full."""
+        if self._next >= MAX_ROWS:
+            self.left_out += 1
+            return None
+        for column, value in enumerate(cells):
+            self._cell(column, value, self._formats[column] if column < len(self._formats) else None)
+        self._next += 1
+        return self._next
+
+    def line(self, *cells: Cell, bold: bool = False) -> None:
+        """Write a row outside any table."""
+        for column, value in enumerate(cells):
+            self._cell(column, value, self._book.bold if bold else self._book.plain)
+        self._next += 1
+
+    def paragraph(self, text: str, columns: int) -> None:
+        """Write a text over several columns, its row as high as it needs to be."""
+        lines = max(1, -(-len(text) // 100))
+        self._sheet.set_row(self._next, 15.0 * lines)
+        self._sheet.merge_range(self._next, 0, self._next, columns - 1, text[:MAX_TEXT], self._book.wrapped)
+        self._next += 1
+
+    def widths(self, *widths: float) -> None:
+        """Set the widths of the first columns."""
+        for column, width in enumerate(widths):
+            self._sheet.set_column(column, column, width)
+
+    def _cell(self, column: int, value: Cell, style: Any) -> None:
+        if value is None:
+            return
+        if isinstance(value, str):
+            text = value if len(value) <= MAX_TEXT else value[:MAX_TEXT] + " ..."
+            self._sheet.write_string(self._next, column, text, style)
+        else:
+            self._sheet.write_number(self._next, column, value, style)
+
+
+class NewSheets:
+    """A workbook of our own sheets; use as a context manager, then take :attr:`data`.
+
+    Attributes
+    ----------
+    data : bytes
+        The xlsx, once closed.
+    """
+
+    def __init__(self) -> None:
+        self._stream = io.BytesIO()
+        options = {
+            "constant_memory": True,
+            "strings_to_formulas": False,
+            "strings_to_numbers": False,
+            "strings_to_urls": False,
+        }
+        self.workbook = xlsxwriter.Workbook(self._stream, options)
+        self.plain = self.workbook.add_format({"valign": "top"})
+        self.bold = self.workbook.add_format({"bold": True, "valign": "top"})
+        self.wrapped = self.workbook.add_format({"text_wrap": True, "valign": "top"})
+        self.head = self.workbook.add_format(
+            {"bold": True, "text_wrap": True, "valign": "top", "bottom": 1, "bg_color": "#DDE6E4"}
+        )
+        self._numbers: dict[str | None, Any] = {None: self.wrapped}
+        self.data = b""
+
+    def number(self, code: str | None) -> Any:
+        """Give the cell format of a number format, made once."""
+        if code not in self._numbers:
+            self._numbers[code] = self.workbook.add_format({"num_format": code, "valign": "top"})
+        return self._numbers[code]
+
+    def table(self, name: str) -> TableSheet:
+        """Add a sheet."""
+        return TableSheet(self, name)
+
+    def __enter__(self) -> NewSheets:
+        return self
+
+    def __exit__(
+        self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
+    ) -> None:
+        self.workbook.close()
+        self.data = self._stream.getvalue()
