@@ -1,0 +1,80 @@
+"""Columns of the sheets of figures: one row a curve and class, one row an end of a curve.
+
+Apart from the columns of the curve sheet because their records are others: a class of a curve, and a
+transition.
+"""
+
+from __future__ import annotations
+
+from cant.writing.columns import Column, governing, path
+
+
+FIGURES: tuple[Column, ...] = (
+    Column("Cant", "", path("cant"), 10, "Whether the proposed cant or today's is meant."),
+    Column("Class", "", path("class"), 16, "Class of train."),
+    Column("Planned speed", "speed", path("speed_kmh"), 9, "Speed that the class is to run here."),
+    Column("Run speed", "speed", path("run_speed_kmh"), 9, "The lower of planned and permissible speed."),
+    Column("Equilibrium cant", "cant exact", path("equilibrium_cant_mm"), 11, "Cant without deficiency."),
+    Column(
+        "Equilibrium cant, exact",
+        "cant exact",
+        path("equilibrium_cant_exact_mm"),
+        11,
+        "The same on the inclined plane; the limits are made for the linear form.",
+    ),
+    Column("Deficiency", "cant exact", path("deficiency_mm"), 10, "Cant lacking to equilibrium."),
+    Column("Excess", "cant exact", path("excess_mm"), 10, "Cant above equilibrium."),
+    Column(
+        "Acceleration towards the centre",
+        "acceleration",
+        path("centripetal_acceleration_ms2"),
+        12,
+        "Horizontal acceleration v2/R.",
+    ),
+    Column(
+        "Unbalanced acceleration",
+        "acceleration",
+        path("unbalanced_acceleration_ms2"),
+        12,
+        "Lateral acceleration in the track plane; negative towards the inside.",
+    ),
+    Column(
+        "Felt acceleration",
+        "acceleration",
+        path("felt_acceleration_ms2"),
+        12,
+        "The same on the vehicle floor, with the roll of the body.",
+    ),
+    Column(
+        "Wheel load shift",
+        "share",
+        path("wheel_load_shift"),
+        10,
+        "Share of the wheel load that moves to the outer rail (rigid body); negative to the inner.",
+    ),
+    Column(
+        "Wheel load shift at rest",
+        "share",
+        path("wheel_load_shift_at_rest"),
+        10,
+        "The same for a train that stands on the curve.",
+    ),
+    Column("Permissible speed", "speed", path("permissible_speed_kmh"), 11, "In the last tier allowed."),
+    Column("Permissible from", "", governing("permissible_by"), 30, "Limit that ends the permissible speed."),
+    Column(
+        "Permissible at normal limits",
+        "speed",
+        path("permissible_speed_normal_kmh"),
+        11,
+        "The same at normal values.",
+    ),
+    Column("Lowest speed", "speed exact", path("lowest_speed_kmh"), 9, "Below it excess is over its limit."),
+    Column(
+        "Smallest radius",
+        "radius",
+        path("smallest_radius_m"),
+        10,
+        "Radius at which the class would just keep its deficiency limit at this cant and the run speed.",
+    ),
+)
+"""One row a curve and class; the record is a class of a curve with ``cant`` put to it."""
