@@ -36,7 +36,7 @@ def least(candidates: list[T], measure: Callable[[T], float]) -> list[T]:
 
 
 def rms_speed(curve: Curve, speeds: Speeds) -> float | None:
-    """Root-mean-square speed [km/h], by tonnage, of what runs at more than 0 km/h; None where nothing does."""
+    """Root-mean-square speed [km/h] by tonnage of what runs at more than 0 km/h; None where nothing does."""
     running = [train for name, train in curve.trains.items() if speeds[name] > 0]
     if not running:
         return None

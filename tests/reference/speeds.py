@@ -38,7 +38,7 @@ class SpeedSearch:
         return min(steps) if steps else DEFAULT_SPEED_STEP
 
     def _search(self, curve: Curve, train: Train, holds: Callable[[float], bool]) -> tuple[float, bool]:
-        """Give the highest multiple up to which something always holds, and whether the planned speed does."""
+        """Give the highest multiple up to which something holds, and whether the planned speed does."""
         step = self.step(curve, train)
         best, k = 0.0, 1
         while k * step <= FASTEST + 1e-6 and holds(k * step):
