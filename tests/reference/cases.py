@@ -77,7 +77,7 @@ class HypothesisDraw:
 
     def choice(self, options: Sequence[T]) -> T:
         """Give one of some things."""
-        return options[self.draw(st.integers(0, len(options) - 1))]
+        return options[int(self.draw(st.integers(0, len(options) - 1)))]
 
     def chance(self, percent: int) -> bool:
         """Give True that often."""
@@ -108,7 +108,7 @@ def build(draw: Draw) -> Case:
     settings = Settings(
         rail_spacing_mm=draw.choice((None, None, 1500.0, 1120.0)),
         equilibrium_constant=draw.choice((None, None, None, 11.8)),
-        tiers=draw.choice((("normal",), ("normal", "exceptional"))),
+        tiers=draw.choice((("normal",), ("normal", "exceptional"), ("normal", "exceptional"))),
         keep_within_mm=draw.choice((0.0, 0.0, 8.0, 15.0, 40.0)),
         maintenance_allowance_mm=draw.choice((None, 10.0)),
     )

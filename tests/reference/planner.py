@@ -75,7 +75,10 @@ Where the rules leave a choice, this is what is done here:
 21. ``shares_transition_with_next`` only where both curves are assessed.
 22. "kept": within 0.001 mm of today's cant.
 23. Standing trains (0 km/h) have deficiency and excess checked at 0 km/h; their rates are 0.
-24. ``Cant at least`` and bands: speeds and radii within 1e-6 of a band's edge are on it (mph conversions).
+24. Bands: speeds and radii within 1e-6 of a band's edge are on it (mph conversions).
+25. Equal cants and gradients are limits like others: a free curve at a transition that a bound neighbour
+    breaks is over a limit, that is ``exceptional``, whatever the tier.
+26. Overrun of ``at most`` and the rest counts only where the limit is passed by more than its 0.001.
 """
 
 from __future__ import annotations
