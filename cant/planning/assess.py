@@ -1,0 +1,290 @@
+"""What given cants are worth: speeds run, time lost, limits passed. The one evaluation of a whole line.
+
+The choice of cants asks it of every cant of the grid, the finished plan of the chosen ones, and the question
+"does what is there comply?" of today's.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.planning.line import Line
+from cant.planning.neighbours import Pairs
+from cant.planning.permissible import Permitted, permitted_alone, permitted_shared, speed_steps
+from cant.planning.rules import Asked, Rule, curve_terms, hard_terms
+from cant.planning.shared import Meeting, SharedAsked, hard_values, shared_values
+from cant.units import KMH_PER_MS
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+
+STOPPED_KMH = 1e-9
+"""A train that may not run at all counts as this fast [km/h] where time is lost."""
+NO_TRAINS = 0.001
+"""A class of 0 trains a day still counts this many where time is lost."""
+LIMIT_OF_NOTHING = 1000.0
+"""A limit of 0 or less that is passed counts as this much overrun, plus the amount."""
+
+SITE_QUANTITIES = ("cant at most", "cant at least", "equal cants")
+"""Rules without a normal and an exceptional value: they need no approval, they bind."""
+
+
+def overrun(value: FloatArray, limit: FloatArray) -> FloatArray:
+    """Give by how much a limit is passed: value / limit - 1; 1000 + the amount for a limit of 0 or less."""
+    with np.errstate(divide="ignore", invalid="ignore"):
+        ratio = value / limit - 1.0
+    return np.where(limit > 0, ratio, LIMIT_OF_NOTHING + (value - limit))
+
+
+@dataclass
+class Passed:
+    """Limits passed at their normal values, each quantity once a place; arrays of shape (..., n).
+
+    Attributes
+    ----------
+    by_rule : dict of (place, quantity) to ndarray
+        The largest overrun over the classes where the limit is passed, 0 where it is kept.
+    """
+
+    by_rule: dict[tuple[str, str], FloatArray]
+
+    @classmethod
+    def of(cls, found: Iterable[tuple[Rule, BoolArray, FloatArray, FloatArray]], sites: bool) -> Passed:
+        """Gather from rules with what is kept, the values and the limits, each (..., n, k).
+
+        ``sites``: also what the site demands, which no approval can waive.
+        """
+        gathered: dict[tuple[str, str], FloatArray] = {}
+        for rule, kept, value, limit in found:
+            if rule.quantity in SITE_QUANTITIES and not sites:
+                continue
+            broken = ~kept
+            over = np.where(broken, overrun(value, limit), 0.0) if broken.any() else broken.astype(np.float64)
+            worst = over.max(axis=-1)
+            key = (rule.place, rule.quantity)
+            gathered[key] = np.maximum(gathered[key], worst) if key in gathered else worst
+        return cls(gathered)
+
+    @property
+    def count(self) -> FloatArray:
+        """Number of limits passed, shape (..., n)."""
+        return np.asarray(sum((over > 0).astype(np.float64) for over in self.by_rule.values()))
+
+    @property
+    def total(self) -> FloatArray:
+        """Sum of the overruns, shape (..., n)."""
+        return np.asarray(sum(self.by_rule.values()))
+
+
+def passed_alone(
+    line: Line,
+    cant_mm: FloatArray,
+    speed_kmh: FloatArray,
+    exceptional: bool = False,
+    sites: bool = False,
+) -> Passed:
+    """Find the limits that curves by themselves pass at a cant (..., n, 1) and speeds (..., n, k)."""
+    found = (
+        (terms.rule, terms.kept(cant_mm), terms.value(cant_mm), terms.limit.value)
+        for terms in curve_terms(Asked(line, speed_kmh, exceptional))
+    )
+    return Passed.of(found, sites)
+
+
+def passed_shared(
+    meeting: Meeting,
+    cants_mm: tuple[FloatArray, FloatArray],
+    speed_kmh: FloatArray,
+    exceptional: bool = False,
+    sites: bool = False,
+) -> Passed:
+    """Find the limits of shared transitions that are passed at cants (..., m, 1) and speeds (..., m, k)."""
+    found = (
+        (shared.rule, shared.kept(), shared.value, shared.limit.value)
+        for shared in shared_values(SharedAsked(meeting, speed_kmh, exceptional), *cants_mm)
+    )
+    return Passed.of(found, sites)
+
+
+def hard_kept(line: Line, cant_mm: FloatArray, exceptional: bool) -> BoolArray:
+    """Tell where a curve by itself keeps what no lower speed can mend, at planned speeds: shape (..., n)."""
+    kept: BoolArray = np.ones(np.broadcast_shapes(cant_mm.shape, (len(line), 1))[:-1], dtype=np.bool_)
+    for terms in hard_terms(Asked(line, line.planned_kmh, exceptional)):
+        kept = kept & terms.kept(cant_mm).all(axis=-1)
+    return kept
+
+
+def shared_hard_kept(
+    meeting: Meeting, cants_mm: tuple[FloatArray, FloatArray], exceptional: bool
+) -> tuple[BoolArray, FloatArray]:
+    """Tell where shared transitions keep what no lower speed can mend, and the overrun: shape (..., m)."""
+    shape = np.broadcast_shapes(cants_mm[0].shape, cants_mm[1].shape, (len(meeting), 1))[:-1]
+    kept: BoolArray = np.ones(shape, dtype=np.bool_)
+    total: FloatArray = np.zeros(shape)
+    for found in hard_values(SharedAsked(meeting, meeting.planned_kmh, exceptional), *cants_mm):
+        held = found.kept()
+        kept = kept & held.all(axis=-1)
+        total = total + np.where(held, 0.0, overrun(found.value, found.limit.value)).max(axis=-1)
+    return kept, total
+
+
+def _trains_that_count(line: Line) -> FloatArray:
+    trains = np.where(np.isnan(line.trains), 1.0, line.trains)
+    return np.where(trains == 0, NO_TRAINS, trains)
+
+
+def trains_stopped(line: Line, run_kmh: FloatArray) -> FloatArray:
+    """Give trains a day x length of the classes that may not run at all [m], shape (..., n).
+
+    The time that they lose has no bound; counted as :data:`STOPPED_KMH` it outweighs all other time lost, so
+    it is compared first and apart, where it cannot drown the rest in its rounding.
+    """
+    stopped = line.moving & (run_kmh <= STOPPED_KMH)
+    return np.asarray((stopped * _trains_that_count(line)).sum(axis=-1) * line.weight_length_m[:, 0])
+
+
+def time_lost(line: Line, run_kmh: FloatArray) -> FloatArray:
+    """Give the running time lost a day [s], shape (..., n): sum of n x length x (1/V_run - 1/V_planned).
+
+    Classes that may not run at all are left out (:func:`trains_stopped`).
+    """
+    counts = line.moving & (run_kmh > STOPPED_KMH) & (run_kmh < line.planned_kmh)
+    slow = np.where(counts, run_kmh, 1.0)
+    fast = np.where(counts, line.planned_kmh, 1.0)
+    lost = np.where(counts, _trains_that_count(line) * (1.0 / slow - 1.0 / fast), 0.0)
+    return np.asarray(lost.sum(axis=-1) * line.weight_length_m[:, 0] * KMH_PER_MS)
+
+
+@dataclass
+class Speeds:
+    """The speeds that cants permit on a whole line, shared transitions included; arrays (n, k).
+
+    Attributes
+    ----------
+    permissible_kmh, run_kmh : ndarray
+        nan where the class does not run.
+    """
+
+    permissible_kmh: FloatArray
+    run_kmh: FloatArray
+
+
+def combine(line: Line, parts: Iterable[Permitted]) -> Speeds:
+    """Put together what several sets of rules permit on the same curves."""
+    up_to: FloatArray | None = None
+    planned: BoolArray | None = None
+    for part in parts:
+        up_to = part.up_to_kmh if up_to is None else np.minimum(up_to, part.up_to_kmh)
+        planned = part.planned if planned is None else planned & part.planned
+    if up_to is None or planned is None:
+        message = "nothing to combine"
+        raise ValueError(message)
+    together = Permitted(up_to, planned)
+    off = ~line.runs
+    return Speeds(
+        np.where(off, np.nan, together.speed(line.planned_kmh)),
+        np.where(off, np.nan, together.run_speed(line.planned_kmh)),
+    )
+
+
+def line_speeds(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool) -> Speeds:
+    """Give the speeds that cants permit.
+
+    Parameters
+    ----------
+    line : Line
+        n curves.
+    pairs : Pairs
+        Shared transitions; one whose cants are not both known is left out.
+    cant_mm : ndarray, shape (n,)
+        nan where not known: the speeds are then nan too.
+    exceptional : bool
+
+    Returns
+    -------
+    Speeds
+        Shape (n, k).
+    """
+    steps = speed_steps(line)
+    cant = cant_mm[:, None]
+    alone = permitted_alone(line, cant, steps, exceptional)
+    up_to, planned = alone.up_to_kmh.copy(), alone.planned.copy()
+    known = ~np.isnan(cant_mm)
+    pairs = pairs.take(np.flatnonzero(known[pairs.first] & known[pairs.second]))
+    if len(pairs):
+        own = alone.run_speed(line.planned_kmh)
+        shared = permitted_shared(
+            Meeting.of(line, pairs),
+            (cant[pairs.first], cant[pairs.second]),
+            (own[pairs.first], own[pairs.second]),
+            (steps[pairs.first], steps[pairs.second]),
+            exceptional,
+        )
+        for part, owner in zip(shared, (pairs.first, pairs.second), strict=True):
+            up_to[owner] = np.minimum(up_to[owner], part.up_to_kmh)
+            planned[owner] &= part.planned
+    together = Permitted(up_to, planned)
+    off = ~line.runs | ~known[:, None]
+    return Speeds(
+        np.where(off, np.nan, together.speed(line.planned_kmh)),
+        np.where(off, np.nan, together.run_speed(line.planned_kmh)),
+    )
+
+
+@dataclass(frozen=True)
+class TimeLost:
+    """Trains stopped [m a day] and time lost [s a day], of any number of curves."""
+
+    stopped: FloatArray
+    lost_s: FloatArray
+
+
+@dataclass
+class Assessment:
+    """What cants are worth, for a whole line.
+
+    Attributes
+    ----------
+    run_kmh : ndarray, shape (n, k)
+    stopped, lost_s : ndarray, shape (n,)
+    passed : Passed
+        Of curves by themselves, (n,).
+    passed_between : Passed
+        Of shared transitions, (m,).
+    hard : ndarray of bool, shape (n,)
+        The curve by itself keeps what no lower speed can mend.
+    hard_between : ndarray of bool, shape (m,)
+    """
+
+    run_kmh: FloatArray
+    stopped: FloatArray
+    lost_s: FloatArray
+    passed: Passed
+    passed_between: Passed
+    hard: BoolArray
+    hard_between: BoolArray
+
+    def total(self, at: npt.NDArray[np.int64]) -> TimeLost:
+        """Give what some curves lose together."""
+        return TimeLost(self.stopped[at].sum(keepdims=True), self.lost_s[at].sum(keepdims=True))
+
+
+def assess(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool) -> Assessment:
+    """Assess known cants (n,) [mm] at the speeds that they permit."""
+    run = line_speeds(line, pairs, cant_mm, exceptional).run_kmh
+    meeting = Meeting.of(line, pairs)
+    cants = (cant_mm[pairs.first][:, None], cant_mm[pairs.second][:, None])
+    together = np.minimum(run[pairs.first], run[pairs.second])
+    return Assessment(
+        run_kmh=run,
+        stopped=trains_stopped(line, run),
+        lost_s=time_lost(line, run),
+        passed=passed_alone(line, cant_mm[:, None], run),
+        passed_between=passed_shared(meeting, cants, together),
+        hard=hard_kept(line, cant_mm[:, None], exceptional),
+        hard_between=shared_hard_kept(meeting, cants, exceptional)[0],
+    )

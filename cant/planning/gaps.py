@@ -1,0 +1,126 @@
+"""What the limits leave open: bands without a row where a row is needed, quantities without any row."""
+
+from __future__ import annotations
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.errors import InputError
+from cant.model.curves import CurveList
+from cant.model.limits import QUANTITIES, LimitSet
+from cant.model.plan import Finding
+from cant.model.traffic import Traffic
+from cant.planning.line import Line
+from cant.planning.neighbours import AFTER, BEFORE, Pairs
+from cant.planning.rules import Asked
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+
+
+def needed(line: Line, pairs: Pairs) -> dict[str, BoolArray]:
+    """Tell on which curve and for which class each quantity is needed, shapes (n, k)."""
+    ramp, long, none = (np.zeros(line.runs.shape, dtype=np.bool_) for _ in range(3))
+    for end in (BEFORE, AFTER):
+        ramp |= ~np.isnan(line.ramp_m[end])
+        long |= line.transition_m[end] > 0
+        none |= line.transition_m[end] == 0
+    both = line.runs[pairs.first] & line.runs[pairs.second]
+    for owner in (pairs.first, pairs.second):
+        ramp[owner] |= both & ~pairs.equal_cants[:, None]
+        long[owner] |= both & (pairs.length_m > 0)[:, None]
+        none[owner] |= both & (pairs.length_m == 0)[:, None]
+    runs = line.runs
+    return {
+        "cant": runs,
+        "cant deficiency": runs,
+        "cant excess": line.regular,
+        "felt acceleration": runs,
+        "cant gradient": runs & ramp,
+        "rate of change of cant": runs & ramp,
+        "rate of change of cant deficiency": runs & long,
+        "abrupt change of cant deficiency": runs & none,
+    }
+
+
+def find_gaps(line: Line, pairs: Pairs, curves: CurveList, traffic: Traffic) -> list[Finding]:
+    """Find the gaps in the limits at planned speeds: a finding for each curve and quantity concerned."""
+    asked = Asked(line, line.planned_kmh, False)
+    names = traffic.class_names
+    findings = []
+    for quantity, where in needed(line, pairs).items():
+        if not line.table.has(quantity):
+            continue
+        gap = asked.limit(quantity).gap & where
+        for i in np.flatnonzero(gap.any(axis=-1)):
+            j = int(np.argmax(gap[i]))
+            text = (
+                f"The limits have a gap: rows of '{quantity}' hold for {names[j]} here, but none at "
+                f"{line.planned_kmh[i, j]:g} km/h and a radius of {curves.radius_m[i]:g} m."
+            )
+            findings.append(Finding("gap-in-limits", "stop", text, int(i)))
+    findings += _gaps_without_trains(line, asked, curves)
+    return findings
+
+
+def _gaps_without_trains(line: Line, asked: Asked, curves: CurveList) -> list[Finding]:
+    empty = ~line.runs.any(axis=-1) & ~np.isnan(line.radius_m[:, 0])
+    if not empty.any():
+        return []
+    gap = asked.curve_limit("cant").gap[:, 0] & empty
+    return [
+        Finding(
+            "gap-in-limits",
+            "stop",
+            f"The limits have a gap: no row of 'cant' holds at a radius of {curves.radius_m[i]:g} m.",
+            int(i),
+        )
+        for i in np.flatnonzero(gap)
+    ]
+
+
+def find_unlimited(line: Line, limits: LimitSet, traffic: Traffic) -> list[Finding]:
+    """Say once for each quantity, or category of train, that nothing limits it."""
+    findings = []
+    categories = sorted({row.category for row in traffic.rows})
+    for quantity, info in QUANTITIES.items():
+        if not info.bounds:
+            continue
+        rows = limits.of(quantity)
+        if not rows:
+            text = f"The limits have no row of '{quantity}': it is not limited and was not checked."
+            findings.append(Finding("not-limited", "warning", text))
+            continue
+        if any(not row.category for row in rows):
+            continue
+        known = {row.category.casefold() for row in rows}
+        for category in categories:
+            if category.casefold() not in known:
+                text = (
+                    f"The limits have no row of '{quantity}' for the category '{category}': "
+                    "it is not limited there and was not checked."
+                )
+                findings.append(Finding("not-limited", "warning", text))
+    return findings
+
+
+def demand_roll_coefficients(line: Line, traffic: Traffic) -> None:
+    """Refuse a class without a roll coefficient where its felt acceleration is limited.
+
+    Raises
+    ------
+    InputError
+        Naming the row of the traffic table.
+    """
+    if not line.table.has("felt acceleration"):
+        return
+    limit = Asked(line, line.planned_kmh, False).limit("felt acceleration")
+    lacking = np.asarray((np.isfinite(limit.value) & line.runs & np.isnan(line.roll)).any(axis=0))
+    for name, lacks in zip(traffic.class_names, lacking, strict=True):
+        if lacks:
+            row = next(row for row in traffic.rows if row.name == name and row.roll_coefficient is None)
+            message = (
+                f"class '{name}' has no roll coefficient, and the limits have rows of 'felt acceleration' "
+                "for it: give the coefficient, or take those rows out"
+            )
+            raise InputError(message, row.place)

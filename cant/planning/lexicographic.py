@@ -1,0 +1,46 @@
+"""Comparing by several measures in their order: least of the first, of those least of the second ..."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+
+import numpy as np
+import numpy.typing as npt
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+IntArray = npt.NDArray[np.int64]
+
+RELATIVE = 1e-9
+"""Measures that differ by less than this share, or this much, are equal: sums come in different orders."""
+
+
+def slack(value: FloatArray) -> FloatArray:
+    """Give how much larger than a measure another may be and still count as equal."""
+    return RELATIVE * np.maximum(np.abs(value), 1.0)
+
+
+def first_best(measures: Sequence[FloatArray], allowed: BoolArray, axis: int) -> tuple[IntArray, BoolArray]:
+    """Find the best along an axis, the first of equals.
+
+    Parameters
+    ----------
+    measures : sequence of ndarray
+        The most important first; the shape of ``allowed``.
+    allowed : ndarray of bool
+        What may be chosen.
+    axis : int
+
+    Returns
+    -------
+    chosen : ndarray of int
+        Index along the axis; 0 where nothing is allowed.
+    any_allowed : ndarray of bool
+    """
+    left = allowed
+    for measure in measures:
+        value = np.where(left, measure, np.inf)
+        least = value.min(axis=axis, keepdims=True)
+        with np.errstate(invalid="ignore"):
+            left = left & (value <= least + slack(np.where(np.isfinite(least), least, 0.0)))
+    return np.argmax(left, axis=axis), np.asarray(allowed.any(axis=axis))

@@ -1,0 +1,212 @@
+"""Limits asked at a speed and a radius: the rows of a limit set as conditions over arrays.
+
+Apart from the model because a row is stated in its own unit with words as conditions, while the rules of the
+planner want one number per curve and class in the canonical unit, with the row that governs beside it.
+"""
+
+from __future__ import annotations
+
+import math
+from collections.abc import Sequence
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.model.limits import QUANTITIES, TOLERANCE, LimitRow, LimitSet
+from cant.model.settings import Settings
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+IntArray = npt.NDArray[np.int64]
+CodeArray = npt.NDArray[np.int16]
+
+NO_CATEGORY = -1
+"""Category code that only rows without a category match."""
+
+_ALWAYS: BoolArray = np.ones((), dtype=np.bool_)
+_EDGE = 1e-9
+"""A speed or radius this close to the edge of a band [km/h, m] stands on the edge."""
+
+
+@dataclass(frozen=True, slots=True)
+class LimitAt:
+    """The governing limit at given speeds and radii; all arrays broadcast to the same shape (..., n, k).
+
+    Attributes
+    ----------
+    value : ndarray
+        Limit in the canonical unit; inf where nothing limits (for a minimum: 0).
+    tolerance : ndarray
+        By how much it may be passed, in the canonical unit.
+    row : ndarray of int16
+        Index of the governing row in the limit set, -1 where none.
+    gap : ndarray of bool
+        Rows match by category and situation, but none by speed or radius.
+    """
+
+    value: FloatArray
+    tolerance: FloatArray
+    row: CodeArray
+    gap: BoolArray
+
+
+@dataclass(frozen=True, slots=True)
+class _Condition:
+    """A row made ready: tiers in the canonical unit, and its conditions as look-up tables."""
+
+    index: int
+    normal: float
+    exceptional: float
+    tolerance: float
+    slope: float
+    categories: BoolArray | None
+    situations: BoolArray | None
+    speed_over: float | None
+    speed_up_to: float | None
+    radius_over: float | None
+    radius_up_to: float | None
+
+    def holds_by_kind(self, category: IntArray, situation: IntArray) -> BoolArray:
+        holds: BoolArray = _ALWAYS
+        if self.categories is not None:
+            holds = self.categories[category]
+        if self.situations is not None:
+            holds = holds & self.situations[situation]
+        return holds
+
+    def holds_by_size(self, speed: FloatArray, radius: FloatArray) -> BoolArray:
+        holds: BoolArray = _ALWAYS
+        if self.speed_over is not None:
+            holds = speed > self.speed_over + _EDGE
+        if self.speed_up_to is not None:
+            holds = holds & (speed <= self.speed_up_to + _EDGE)
+        if self.radius_over is not None:
+            holds = holds & (radius > self.radius_over + _EDGE)
+        if self.radius_up_to is not None:
+            holds = holds & (radius <= self.radius_up_to + _EDGE)
+        return holds
+
+
+class LimitTable:
+    """The rows of a limit set over the categories and situations of one line.
+
+    Parameters
+    ----------
+    limits : LimitSet
+    settings : Settings
+        Rail spacing for limits stated as accelerations, and the maintenance allowance.
+    categories : sequence of str
+        Category words; an array of category codes indexes them.
+    situations : sequence of frozenset of str
+        Distinct sets of situation words; an array of situation codes indexes them.
+    """
+
+    def __init__(
+        self,
+        limits: LimitSet,
+        settings: Settings,
+        categories: Sequence[str],
+        situations: Sequence[frozenset[str]],
+    ) -> None:
+        self.limits = limits
+        self._settings = settings
+        self._rows: dict[str, list[_Condition]] = {quantity: [] for quantity in QUANTITIES}
+        for index, row in enumerate(limits.rows):
+            self._rows[row.quantity].append(self._prepare(index, row, categories, situations))
+
+    def _prepare(
+        self, index: int, row: LimitRow, categories: Sequence[str], situations: Sequence[frozenset[str]]
+    ) -> _Condition:
+        spacing = self._settings.spacing_mm
+        allowance = 0.0
+        if row.quantity == "cant" and row.kind == "ceiling":
+            allowance = self._settings.maintenance_allowance_mm or 0.0
+        size = row.unit_size(spacing)
+        wanted = {word.strip().casefold() for word in row.situation.split(";") if word.strip()}
+        return _Condition(
+            index=index,
+            normal=row.canonical(row.normal, spacing) - allowance,
+            exceptional=row.canonical(row.stated(exceptional=True), spacing) - allowance,
+            tolerance=TOLERANCE * (1.0 if math.isnan(size) else size),
+            slope=0.0 if math.isnan(size) else row.per_metre_of_radius * size,
+            # The last entry stands for NO_CATEGORY.
+            categories=(
+                np.array([word.casefold() == row.category.casefold() for word in categories] + [False])
+                if row.category
+                else None
+            ),
+            situations=(
+                np.array([bool(wanted & words) for words in situations], dtype=np.bool_) if wanted else None
+            ),
+            speed_over=row.speed_over_kmh,
+            speed_up_to=row.speed_up_to_kmh,
+            radius_over=row.radius_over_m,
+            radius_up_to=row.radius_up_to_m,
+        )
+
+    def has(self, quantity: str) -> bool:
+        """Tell whether the set has any row of a quantity."""
+        return bool(self._rows[quantity])
+
+    def speed_edges(self, quantities: Sequence[str]) -> list[float]:
+        """Give the speeds [km/h] at which a band of one of the quantities begins or ends, ascending."""
+        edges = {
+            edge
+            for quantity in quantities
+            for row in self._rows[quantity]
+            for edge in (row.speed_over, row.speed_up_to)
+            if edge is not None and edge > 0
+        }
+        return sorted(edges)
+
+    def at(
+        self,
+        quantity: str,
+        *,
+        exceptional: bool,
+        category: IntArray,
+        situation: IntArray,
+        speed: FloatArray,
+        radius: FloatArray,
+    ) -> LimitAt:
+        """Ask a quantity's limit.
+
+        Parameters
+        ----------
+        quantity : str
+        exceptional : bool
+            Tier asked for.
+        category, situation : ndarray of int
+            Codes, broadcasting with each other and the next two: usually (n, k) and (n, 1).
+        speed : ndarray
+            [km/h]; nan matches no row with a condition of speed.
+        radius : ndarray
+            [m].
+
+        Returns
+        -------
+        LimitAt
+            In the broadcast shape of the arguments.
+        """
+        shape = np.broadcast_shapes(category.shape, situation.shape, speed.shape, radius.shape)
+        largest = QUANTITIES[quantity].larger_is_stricter
+        value = np.full(shape, 0.0 if largest else np.inf)
+        tolerance = np.zeros(shape)
+        governing = np.full(shape, -1, dtype=np.int16)
+        by_kind = np.zeros(shape, dtype=np.bool_)
+        by_size = np.zeros(shape, dtype=np.bool_)
+        for row in self._rows[quantity]:
+            kind = row.holds_by_kind(category, situation)
+            holds = kind & row.holds_by_size(speed, radius)
+            by_kind |= kind
+            by_size |= holds
+            stated = row.exceptional if exceptional else row.normal
+            if math.isinf(stated):
+                continue
+            here = stated + row.slope * radius if row.slope else np.float64(stated)
+            stricter = holds & (here > value if largest else here < value)
+            np.copyto(value, here, where=stricter)
+            np.copyto(tolerance, row.tolerance, where=stricter)
+            np.copyto(governing, row.index, where=stricter)
+        return LimitAt(value, tolerance, governing, by_kind & ~by_size)

@@ -1,0 +1,220 @@
+"""A line as arrays: curves by classes of train, every number the rules need, in one place.
+
+Shapes: n curves, k classes, m shared transitions. Arrays of a curve are (n, 1), of a class on a curve (n, k),
+so that they broadcast with trial axes put in front. The axis order is always trial, curve, class.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass, fields
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.model.curves import DOES_NOT_RUN, SHAPES, CurveList
+from cant.model.limits import LimitSet
+from cant.model.settings import Settings
+from cant.model.traffic import Traffic, TrainClass
+from cant.planning.limit_table import NO_CATEGORY, LimitTable
+from cant.planning.neighbours import Neighbourhood
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+IntArray = npt.NDArray[np.int64]
+
+
+@dataclass
+class Line:
+    """Curves and classes as arrays.
+
+    Attributes
+    ----------
+    table : LimitTable
+        The limits over this line's categories and situations.
+    constant, spacing_mm : float
+        C [mm, km/h, m] and e [mm].
+    radius_m, cant_today_mm, at_most_mm, at_least_mm, weight_length_m, factor : ndarray, shape (n, 1)
+        Radius, today's cant, bounds of the site (inf and -inf where none), length that weighs, and peak over
+        mean gradient of the transitions.
+    hand : ndarray, shape (n, 1)
+        1 left, -1 right, 0 not known.
+    situation : ndarray of int, shape (n, 1)
+        Code of the set of situation words.
+    transition_m, ramp_m : tuple of two ndarrays, shape (n, 1)
+        At each end, to a straight; nan where not known or shared.
+    fixed : ndarray of bool, shape (n, 1)
+    runs, regular : ndarray of bool, shape (n, k)
+        Whether the class runs there, and whether its excess binds.
+    planned_kmh, trains, mass_t, roll, gravity_height_m : ndarray, shape (n, k)
+        nan where not known or the class does not run.
+    category : ndarray of int, shape (n, k)
+        Code of the class's category, NO_CATEGORY where it does not run.
+    """
+
+    table: LimitTable
+    constant: float
+    spacing_mm: float
+    radius_m: FloatArray
+    hand: FloatArray
+    situation: IntArray
+    cant_today_mm: FloatArray
+    at_most_mm: FloatArray
+    at_least_mm: FloatArray
+    weight_length_m: FloatArray
+    factor: FloatArray
+    transition_m: tuple[FloatArray, FloatArray]
+    ramp_m: tuple[FloatArray, FloatArray]
+    fixed: BoolArray
+    runs: BoolArray
+    regular: BoolArray
+    planned_kmh: FloatArray
+    trains: FloatArray
+    mass_t: FloatArray
+    roll: FloatArray
+    gravity_height_m: FloatArray
+    category: IntArray
+
+    def __len__(self) -> int:
+        return len(self.radius_m)
+
+    @property
+    def classes(self) -> int:
+        """Number of classes k."""
+        return int(self.runs.shape[1])
+
+    def take(self, indices: npt.ArrayLike) -> Line:
+        """Give some of the curves, in that order (arrays copied)."""
+        at = np.asarray(indices)
+        chosen: dict[str, Any] = {}
+        for item in fields(self):
+            value = getattr(self, item.name)
+            if isinstance(value, np.ndarray):
+                chosen[item.name] = value[at]
+            elif isinstance(value, tuple):
+                chosen[item.name] = tuple(array[at] for array in value)
+            else:
+                chosen[item.name] = value
+        return Line(**chosen)
+
+    @property
+    def moving(self) -> BoolArray:
+        """Whether the class runs there at more than 0 km/h, shape (n, k)."""
+        return self.runs & (self.planned_kmh > 0)
+
+
+def _column(values: npt.ArrayLike) -> FloatArray:
+    return np.asarray(values, dtype=np.float64)[:, None]
+
+
+def make_line(
+    curves: CurveList,
+    traffic: Traffic,
+    limits: LimitSet,
+    settings: Settings,
+    neighbourhood: Neighbourhood,
+) -> Line:
+    """Put the tables into arrays.
+
+    Parameters
+    ----------
+    curves : CurveList
+        n rows; the numbers of a rejected row may be nan.
+    traffic : Traffic
+        k classes.
+    limits : LimitSet
+    settings : Settings
+    neighbourhood : Neighbourhood
+        How the same curves meet.
+
+    Returns
+    -------
+    Line
+    """
+    n, names = len(curves), traffic.class_names
+    k = len(names)
+    known: dict[frozenset[str], int] = {}
+    situation = np.array([known.setdefault(words, len(known)) for words in curves.situations], dtype=np.int64)
+    categories = sorted({row.category for row in traffic.rows})
+    table = LimitTable(limits, settings, categories, list(known))
+    of_class = _TrafficArrays(n, k)
+    _fill_traffic(of_class, curves, traffic, categories)
+    planned = _planned_speeds(curves, names, of_class.speed)
+    of_class.runs &= ~np.isnan(planned)
+    lengths = (neighbourhood.transition_m, neighbourhood.ramp_m)
+    return Line(
+        table=table,
+        constant=settings.constant,
+        spacing_mm=settings.spacing_mm,
+        radius_m=_column(curves.radius_m),
+        hand=_column(curves.hand),
+        situation=situation[:, None],
+        cant_today_mm=_column(curves.cant_mm),
+        at_most_mm=_column(np.where(np.isnan(curves.cant_at_most_mm), np.inf, curves.cant_at_most_mm)),
+        at_least_mm=_column(np.where(np.isnan(curves.cant_at_least_mm), -np.inf, curves.cant_at_least_mm)),
+        weight_length_m=_column(neighbourhood.weight_length_m),
+        factor=_column([SHAPES[name] for name in curves.shape]),
+        transition_m=(_column(lengths[0][0]), _column(lengths[0][1])),
+        ramp_m=(_column(lengths[1][0]), _column(lengths[1][1])),
+        fixed=curves.cant_fixed[:, None] & ~np.isnan(curves.cant_mm[:, None]),
+        runs=of_class.runs,
+        regular=of_class.regular & of_class.runs,
+        planned_kmh=np.where(of_class.runs, planned, np.nan),
+        trains=of_class.trains,
+        mass_t=of_class.mass,
+        roll=of_class.roll,
+        gravity_height_m=of_class.gravity_height,
+        category=np.where(of_class.runs, of_class.category, NO_CATEGORY),
+    )
+
+
+class _TrafficArrays:
+    """The traffic table spread over curves, (n, k) each."""
+
+    def __init__(self, n: int, k: int) -> None:
+        self.runs = np.zeros((n, k), dtype=np.bool_)
+        self.regular = np.zeros((n, k), dtype=np.bool_)
+        self.category = np.full((n, k), NO_CATEGORY, dtype=np.int64)
+        self.speed, self.trains, self.mass, self.roll, self.gravity_height = (
+            np.full((n, k), np.nan) for _ in range(5)
+        )
+
+    def put(self, rows: npt.ArrayLike, column: int, train: TrainClass, category: int) -> None:
+        """Enter a class on some curves."""
+        at = (np.asarray(rows), column)
+        self.runs[at] = True
+        self.regular[at] = train.regular
+        self.category[at] = category
+        for array, value in (
+            (self.speed, train.speed_kmh),
+            (self.trains, train.trains_per_day),
+            (self.mass, train.mass_t),
+            (self.roll, train.roll_coefficient),
+            (self.gravity_height, train.centre_of_gravity_m),
+        ):
+            if value is not None:
+                array[at] = value
+
+
+def _fill_traffic(arrays: _TrafficArrays, curves: CurveList, traffic: Traffic, categories: list[str]) -> None:
+    groups: dict[tuple[str, str], list[int]] = {}
+    for index, key in enumerate(zip(curves.line, curves.track, strict=True)):
+        groups.setdefault(key, []).append(index)
+    column = {name: j for j, name in enumerate(traffic.class_names)}
+    code = {word: j for j, word in enumerate(categories)}
+    for (line, track), members in groups.items():
+        for name, train in traffic.on(line, track).items():
+            arrays.put(members, column[name], train, code[train.category])
+
+
+def _planned_speeds(curves: CurveList, names: list[str], class_speed: FloatArray) -> FloatArray:
+    """Give planned speeds, shape (n, k) [km/h]; nan where the class does not run or no speed is known."""
+    planned = np.fmin(class_speed, curves.speed_kmh[:, None])
+    planned = np.where(np.isnan(class_speed), np.nan, planned)
+    for j, name in enumerate(names):
+        given = curves.class_speeds.get(name)
+        if given is None:
+            continue
+        stated = ~np.isnan(given)
+        planned[stated, j] = np.where(given[stated] == DOES_NOT_RUN, np.nan, given[stated])
+    return planned

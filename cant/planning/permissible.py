@@ -1,0 +1,339 @@
+"""The speeds that cants permit: the search over multiples of the speed step, and the lowest speed.
+
+Within one band of speeds the limits of a curve are fixed numbers, and every rule of the curve by itself
+holds up to some speed: that speed has a closed form, so a band is one step and not a search. Over a shared
+transition a rule may fail and hold again, so there the multiples are tried one by one, but only where a
+simple bound does not already say that all is well.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.planning.line import Line
+from cant.planning.neighbours import AFTER, BEFORE
+from cant.planning.rules import SPEED_QUANTITIES, Asked, speed_terms
+from cant.planning.shared import Meeting, SharedAsked, speed_values
+from cant.units import GRAVITY_MS2, KMH_PER_MS
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+
+FASTEST_KMH = 400.0
+DEFAULT_SPEED_STEP_KMH = 5.0
+_SLACK = 1e-9
+_NEWTON_STEPS = 60
+
+
+@dataclass(frozen=True)
+class Permitted:
+    """What a set of rules permits, shape (..., n, k).
+
+    Attributes
+    ----------
+    up_to_kmh : ndarray
+        Highest multiple of the speed step at which, and at every lower multiple, all the rules hold; inf
+        where they hold wherever asked (shared transitions alone).
+    planned : ndarray of bool
+        Whether they hold at the planned speed.
+    """
+
+    up_to_kmh: FloatArray
+    planned: BoolArray
+
+    def speed(self, planned_kmh: FloatArray) -> FloatArray:
+        """Give the permissible speed [km/h]: the planned one is permissible where all holds at it."""
+        return np.where(self.planned, np.fmax(self.up_to_kmh, planned_kmh), self.up_to_kmh)
+
+    def run_speed(self, planned_kmh: FloatArray) -> FloatArray:
+        """Give the speed run [km/h]: the lower of planned and permissible."""
+        return np.where(self.planned, planned_kmh, np.minimum(planned_kmh, self.up_to_kmh))
+
+
+def speed_steps(line: Line) -> FloatArray:
+    """Give the speed step of each class on each curve [km/h], shape (n, k): 5 km/h unless the limits say."""
+    step = Asked(line, line.planned_kmh, False).limit("speed step").value
+    return np.where(np.isfinite(step) & (step > 0), step, DEFAULT_SPEED_STEP_KMH)
+
+
+def gap_at(asked: Asked) -> BoolArray:
+    """Tell where the limits have a gap that a permissible speed must not pass, shape (..., n, k)."""
+    line = asked.line
+    gap = np.zeros(np.broadcast_shapes(asked.speed_kmh.shape, line.runs.shape), dtype=np.bool_)
+    for quantity in ("cant deficiency", "felt acceleration"):
+        if line.table.has(quantity):
+            gap |= asked.limit(quantity).gap
+    for end in (BEFORE, AFTER):
+        if (~np.isnan(line.ramp_m[end])).any():
+            gap |= asked.limit("rate of change of cant").gap & ~np.isnan(line.ramp_m[end])
+        if (line.transition_m[end] > 0).any():
+            gap |= asked.limit("rate of change of cant deficiency").gap & (line.transition_m[end] > 0)
+        if (line.transition_m[end] == 0).any():
+            gap |= asked.limit("abrupt change of cant deficiency").gap & (line.transition_m[end] == 0)
+    return gap & line.runs
+
+
+def _bands(line: Line) -> list[tuple[float, float]]:
+    edges = [e for e in line.table.speed_edges(SPEED_QUANTITIES) if e < FASTEST_KMH]
+    return list(zip([0.0, *edges], [*edges, FASTEST_KMH], strict=True))
+
+
+def _root_of_rate(cant_mm: FloatArray, line: Line, ceiling: FloatArray) -> FloatArray:
+    """Solve (C v^2 / R - D) v = ceiling for v > 0 [km/h], ceiling in mm km/h; Newton from above."""
+    p = -cant_mm * line.radius_m / line.constant
+    q = ceiling * line.radius_m / line.constant
+    shape = np.broadcast_shapes(p.shape, q.shape)
+    p, q = np.broadcast_to(p, shape), np.broadcast_to(q, shape)
+    usable = np.isfinite(q) & (q >= 0)
+    root = np.where(usable, 0.0, np.where(q < 0, 0.0, np.inf))
+    p, q = p[usable], q[usable]
+    # Above both sqrt(-p) and the root without p the cubic is positive, increasing and convex.
+    v = np.sqrt(np.maximum(-p, 0.0)) + np.cbrt(np.maximum(q, 0.0))
+    for _ in range(_NEWTON_STEPS):
+        with np.errstate(divide="ignore", invalid="ignore"):
+            move = (v**3 + p * v - q) / (3 * v**2 + p)
+        move = np.where(np.isfinite(move), move, 0.0)
+        v = np.maximum(v - move, 0.0)
+        if not (move > 1e-12 * v).any():
+            break
+    root[usable] = v
+    return root
+
+
+def _fastest_in_band(line: Line, cant_mm: FloatArray, asked: Asked) -> FloatArray:
+    """Give the highest speed at which the rules of the curve hold with a band's limits [km/h]."""
+    deficiency = asked.limit("cant deficiency")
+    allowed = deficiency.value + deficiency.tolerance
+    if line.table.has("felt acceleration"):
+        felt = asked.limit("felt acceleration")
+        with np.errstate(invalid="ignore"):
+            in_mm = (felt.value + felt.tolerance) * line.spacing_mm / (GRAVITY_MS2 * (1.0 + line.roll))
+        allowed = np.fmin(allowed, np.where(np.isfinite(felt.value), in_mm, np.inf))
+    unbalanced = cant_mm + allowed
+    for end in (BEFORE, AFTER):
+        none = line.transition_m[end] == 0
+        if none.any():
+            jump = asked.limit("abrupt change of cant deficiency")
+            unbalanced = np.where(none, np.minimum(unbalanced, jump.value + jump.tolerance), unbalanced)
+    fastest = np.sqrt(np.maximum(unbalanced, 0.0) * line.radius_m / line.constant)
+    fastest = np.where(unbalanced < 0, -1.0, fastest)
+    for end in (BEFORE, AFTER):
+        fastest = np.minimum(fastest, _fastest_over_end(line, cant_mm, asked, end))
+    return fastest
+
+
+def _fastest_over_end(line: Line, cant_mm: FloatArray, asked: Asked, end: int) -> FloatArray:
+    fastest: FloatArray = np.full((1, 1), np.inf)
+    ramp, length = line.ramp_m[end], line.transition_m[end]
+    known, long = ~np.isnan(ramp), length > 0
+    with np.errstate(divide="ignore", invalid="ignore"):
+        if known.any():
+            rate = asked.limit("rate of change of cant")
+            v = KMH_PER_MS * ramp * (rate.value + rate.tolerance) / (line.factor * np.abs(cant_mm))
+            fastest = np.where(known & (cant_mm != 0), v, np.inf)
+        if long.any():
+            rate = asked.limit("rate of change of cant deficiency")
+            ceiling = (rate.value + rate.tolerance) * KMH_PER_MS * length / line.factor
+            root = _root_of_rate(cant_mm, line, np.where(long, ceiling, np.inf))
+            fastest = np.minimum(fastest, root)
+    return fastest
+
+
+def permitted_alone(line: Line, cant_mm: FloatArray, steps: FloatArray, exceptional: bool) -> Permitted:
+    """Give what the rules of the curves by themselves permit.
+
+    Parameters
+    ----------
+    line : Line
+        n curves, k classes.
+    cant_mm : ndarray, shape (..., n, 1)
+        Cants as set [mm].
+    steps : ndarray, shape (n, k)
+        Speed steps [km/h].
+    exceptional : bool
+        Tier.
+
+    Returns
+    -------
+    Permitted
+        Shape (..., n, k), shared transitions left out.
+    """
+    shape = np.broadcast_shapes(cant_mm.shape, line.runs.shape)
+    up_to = np.zeros(shape)
+    alive = np.ones(shape, dtype=np.bool_)
+    planned = np.nan_to_num(line.planned_kmh)
+    for low, high in _bands(line):
+        asked = Asked(line, np.full((1, 1), high), exceptional)
+        fastest = _fastest_in_band(line, cant_mm, asked)
+        gap = gap_at(asked)
+        fastest = np.where(gap & (planned < high), np.minimum(fastest, planned), fastest)
+        last = np.floor(high / steps + _SLACK)
+        reached = np.floor(np.minimum(np.maximum(fastest, -1.0), high) / steps + _SLACK)
+        begin = np.floor(low / steps + _SLACK)
+        up_to = np.where(alive & (reached > begin), reached * steps, up_to)
+        alive &= (reached >= last) | (last <= begin)
+    held = np.ones(shape, dtype=np.bool_)
+    for terms in speed_terms(Asked(line, line.planned_kmh, exceptional)):
+        held &= terms.kept(cant_mm)
+    return Permitted(up_to, held)
+
+
+def permitted_shared(
+    meeting: Meeting,
+    cant_mm: tuple[FloatArray, FloatArray],
+    own_kmh: tuple[FloatArray, FloatArray],
+    steps: tuple[FloatArray, FloatArray],
+    exceptional: bool,
+) -> tuple[Permitted, Permitted]:
+    """Give what shared transitions permit on the curve before and on the curve after each.
+
+    Parameters
+    ----------
+    meeting : Meeting
+        m transitions.
+    cant_mm : pair of ndarray, shape (..., m, 1)
+        Cants of the curve before and after [mm].
+    own_kmh : pair of ndarray, shape (..., m, k)
+        The lower of planned and permissible speed of each curve by itself [km/h].
+    steps : pair of ndarray, shape (m, k)
+    exceptional : bool
+
+    Returns
+    -------
+    pair of Permitted
+        Shape (..., m, k). One curve slows for a transition, not both: on the other one it permits anything.
+    """
+    lines = (meeting.before, meeting.after)
+    shorter_after = lines[1].weight_length_m < lines[0].weight_length_m
+    slower_after = own_kmh[1] < own_kmh[0] - _SLACK
+    alike = np.abs(own_kmh[1] - own_kmh[0]) <= _SLACK
+    on_after = slower_after | (alike & shorter_after)
+    shape = on_after.shape
+    other = np.where(on_after, own_kmh[0], own_kmh[1])
+    step = np.where(on_after, steps[1], steps[0])
+    planned = np.where(on_after, lines[1].planned_kmh, lines[0].planned_kmh)
+    held = _shared_held(meeting, cant_mm, np.minimum(planned, other), exceptional)
+    up_to = _scan(meeting, cant_mm, other, planned, step, on_after, exceptional)
+    free = np.full(shape, np.inf)
+    return (
+        Permitted(np.where(on_after, free, up_to), on_after | held),
+        Permitted(np.where(on_after, up_to, free), ~on_after | held),
+    )
+
+
+def _shared_held(
+    meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray], speed_kmh: FloatArray, exceptional: bool
+) -> BoolArray:
+    held: BoolArray = np.ones(np.broadcast_shapes(speed_kmh.shape, cant_mm[0].shape), dtype=np.bool_)
+    for found in speed_values(SharedAsked(meeting, speed_kmh, exceptional), *cant_mm):
+        held = held & found.kept()
+    return held
+
+
+def _shared_gap(meeting: Meeting, speed_kmh: FloatArray, on_after: BoolArray, exceptional: bool) -> BoolArray:
+    """Tell where the limits of the curve that slows have a gap over the transition."""
+    ramped, long = ~meeting.equal_cants, meeting.length_m > 0
+    gaps = []
+    for line in (meeting.before, meeting.after):
+        asked = Asked(line, speed_kmh, exceptional)
+        gap = np.zeros(speed_kmh.shape, dtype=np.bool_)
+        if ramped.any():
+            gap |= asked.limit("rate of change of cant").gap & ramped
+        if long.any():
+            gap |= asked.limit("rate of change of cant deficiency").gap & long
+        if not long.all():
+            gap |= asked.limit("abrupt change of cant deficiency").gap & ~long
+        gaps.append(gap)
+    return np.where(on_after, gaps[1], gaps[0]) & meeting.both
+
+
+def _scan(
+    meeting: Meeting,
+    cant_mm: tuple[FloatArray, FloatArray],
+    other_kmh: FloatArray,
+    planned_kmh: FloatArray,
+    step: FloatArray,
+    on_after: BoolArray,
+    exceptional: bool,
+) -> FloatArray:
+    """Try the multiples one by one; inf where all of them hold."""
+    shape = other_kmh.shape
+    up_to = np.full(shape, np.inf)
+    cap = np.where(meeting.both, np.minimum(np.nan_to_num(other_kmh), FASTEST_KMH), 0.0)
+    open_ = np.broadcast_to(meeting.both, shape) & ~_surely_held(meeting, cant_mm, cap, exceptional)
+    work = np.flatnonzero(open_.reshape(-1, *shape[-2:]).any(axis=(0, 2)))
+    if not len(work):
+        return up_to
+    part = meeting.take(work)
+    cants = (cant_mm[0][..., work, :], cant_mm[1][..., work, :])
+    other, planned = other_kmh[..., work, :], planned_kmh[..., work, :]
+    pace, after, result = step[..., work, :], on_after[..., work, :], up_to[..., work, :]
+    alive = open_[..., work, :].copy()
+    count = 1
+    while alive.any():
+        trial = count * pace
+        speed = np.minimum(trial, other)
+        held = _shared_held(part, cants, speed, exceptional)
+        held &= ~(_shared_gap(part, speed, after, exceptional) & (speed > planned + _SLACK))
+        result = np.where(alive & ~held, (count - 1) * pace, result)
+        alive &= held & (trial < other - _SLACK) & (trial < FASTEST_KMH - _SLACK)
+        count += 1
+    up_to[..., work, :] = result
+    return up_to
+
+
+def _surely_held(
+    meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray], fastest_kmh: FloatArray, exceptional: bool
+) -> BoolArray:
+    """Tell where the rules hold at every speed up to one, by their largest values and smallest limits."""
+    edges = [e for e in meeting.before.table.speed_edges(SPEED_QUANTITIES) if e < FASTEST_KMH]
+    held: BoolArray = np.ones(fastest_kmh.shape, dtype=np.bool_)
+    for band in [*edges, FASTEST_KMH]:
+        asked = SharedAsked(meeting, np.full((1, 1), band), exceptional)
+        held = held & _bounded(meeting, cant_mm, fastest_kmh, asked)
+    return held
+
+
+def _bounded(
+    meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray], fastest_kmh: FloatArray, asked: SharedAsked
+) -> BoolArray:
+    top = SharedAsked(meeting, fastest_kmh, False)
+    held: BoolArray = np.ones(fastest_kmh.shape, dtype=np.bool_)
+    for found in speed_values(top, *cant_mm):
+        limit = asked.limit(found.rule.quantity)
+        value = found.value
+        if found.rule.quantity == "rate of change of cant deficiency":
+            value = _largest_deficiency_rate(meeting, cant_mm, fastest_kmh)
+        held = held & (~found.active | ((value <= limit.value + limit.tolerance) & ~limit.gap))
+    return held
+
+
+def _largest_deficiency_rate(
+    meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray], fastest_kmh: FloatArray
+) -> FloatArray:
+    """Give a value [mm/s] that the rate of deficiency does not pass at any speed up to one."""
+    parts = [
+        np.maximum(line.constant * fastest_kmh**2 / line.radius_m - cant, 0.0)
+        for line, cant in zip((meeting.before, meeting.after), cant_mm, strict=True)
+    ]
+    same = meeting.before.hand == meeting.after.hand
+    change = np.where(same, np.maximum(parts[0], parts[1]), parts[0] + parts[1])
+    with np.errstate(divide="ignore", invalid="ignore"):
+        return meeting.factor * change * fastest_kmh / (KMH_PER_MS * meeting.length_m)
+
+
+def lowest_speeds(line: Line, cant_mm: FloatArray, exceptional: bool) -> FloatArray:
+    """Give the speed below which excess goes over its limit [km/h], shape (..., n, k); 0 where never."""
+    edges = [e for e in line.table.speed_edges(("cant excess",)) if e < FASTEST_KMH]
+    lowest: FloatArray = np.zeros(np.broadcast_shapes(cant_mm.shape, line.runs.shape))
+    for low, high in zip([0.0, *edges], [*edges, FASTEST_KMH], strict=True):
+        limit = Asked(line, np.full((1, 1), high), exceptional).limit("cant excess").value
+        with np.errstate(invalid="ignore"):
+            square = np.maximum(cant_mm - limit, 0.0) * line.radius_m / line.constant
+        here = np.minimum(np.sqrt(square), high)
+        reachable = (here > low) & (low < np.nan_to_num(line.planned_kmh))
+        lowest = np.where(reachable, np.maximum(lowest, here), lowest)
+    return lowest
