@@ -2,7 +2,14 @@
 
 from __future__ import annotations
 
+from cant.errors import FileError, Place
+from cant.files.delimited import read_delimited
 from cant.files.grid import Workbook
+from cant.files.kinds import Kind, recognise
+from cant.files.package import Package
+from cant.files.xlsx import read_xlsx
+
+MAX_FILE_BYTES = 200_000_000
 
 
 def open_workbook(data: bytes, file: str) -> Workbook:
@@ -26,4 +33,12 @@ def open_workbook(data: bytes, file: str) -> Workbook:
     FileError
         Not a table, password-protected, damaged, or refused for safety: one clear sentence.
     """
+    if len(data) > MAX_FILE_BYTES:
+        message = f"is refused for safety: it is larger than {MAX_FILE_BYTES // 1_000_000} MB"
+        raise FileError(message, Place(file))
+    kind = recognise(data, file)
+    if kind is Kind.PACKAGE:
+        return read_xlsx(Package(data, file), file)
+    if kind is Kind.TEXT:
+        return read_delimited(data, file)
     raise NotImplementedError

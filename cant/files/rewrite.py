@@ -22,5 +22,5 @@ def rows_as_new_workbook(workbook: Workbook) -> bytes:
 
 
 def sheet_name_in_new_workbook(workbook: Workbook, index: int) -> str:
-    """Give the name that sheet ``index`` bears there: its own, or for a csv file one made of the file's name."""
+    """Give the name that sheet ``index`` bears there: its own, or for a csv file one from its name."""
     raise NotImplementedError
