@@ -11,7 +11,7 @@ from collections.abc import Callable
 from itertools import product
 from typing import TypeVar
 
-from reference.line import Curve, Shared
+from reference.rows import Curve, Shared
 from reference.rulebook import TOLERANCE
 from reference.speeds import SpeedSearch
 from reference.values import Item, Passed, Speeds

@@ -91,7 +91,8 @@ from cant.model.limits import LimitSet
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic
 from reference.choice import Cants, Chooser, rms_speed
-from reference.line import Curve, Train, cant_limit, lay_out, train_limit
+from reference.line import cant_limit, lay_out, train_limit
+from reference.rows import Curve, Train
 from reference.rulebook import GRAVITY, Book, Limit
 from reference.speeds import SpeedSearch
 from reference.values import Passed, Speeds, Values

@@ -6,7 +6,8 @@ import math
 from collections.abc import Callable
 from typing import TypeVar
 
-from reference.line import Curve, Shared, Train, train_limit
+from reference.line import train_limit
+from reference.rows import Curve, Shared, Train
 from reference.values import Speeds, Values
 
 FASTEST = 400.0

@@ -8,7 +8,8 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 
-from reference.line import Curve, Shared, Track, Train, cant_limit, train_limit
+from reference.line import Track, cant_limit, train_limit
+from reference.rows import Curve, Shared, Train
 from reference.rulebook import GRAVITY, TOLERANCE, Book, Limit, overrun, strictest
 
 Place = tuple[str, int]
