@@ -61,8 +61,8 @@ def plan(
 ) -> None:
     """Plan the curves of a workbook or csv file.
 
-    Writes the annotated workbook and the JSON of the plan: where neither --out nor --json is given, both, named
-    after CURVES, into the current folder.
+    Writes the annotated workbook and the JSON of the plan: where neither --out nor --json is given, both,
+    named after CURVES, into the current folder.
     """
     if out is None and json_file is None:
         out, json_file = Path(f"{curves.stem}-plan.xlsx"), Path(f"{curves.stem}-plan.json")
@@ -95,7 +95,9 @@ def plan(
 @click.option("--traffic", type=_file, help="Traffic table; its classes are sought among the speed columns.")
 @click.option("--limits", "limits_given", help="Limit set or table; its situation words are known then.")
 @click.option("--settings", type=_file, help="Settings table; replaces the sheet 'Settings'.")
-@click.option("--reading", "answers", type=_file, help="Answers and corrections already given (JSON or TOML).")
+@click.option(
+    "--reading", "answers", type=_file, help="Answers and corrections already given (JSON or TOML)."
+)
 @click.option("--json", "json_file", type=_file, help="JSON of the reading to write.")
 def read(
     curves: Path,
@@ -216,8 +218,7 @@ def _with_method(reading: Reading, method: str | None) -> Settings | None:
     """Put the method that was typed into the settings of the file."""
     if method is None:
         return None
-    base = reading.settings or Settings(units=reading.limits.units if reading.limits else "metric")
-    return base.model_copy(update={"method": method})
+    return (reading.settings or Settings()).model_copy(update={"method": method})
 
 
 def _fail(message: str) -> NoReturn:

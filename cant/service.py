@@ -44,6 +44,7 @@ __all__ = [
     "read_curves",
     "reading_json",
     "reading_text",
+    "settings_for",
     "template",
 ]
 
@@ -143,9 +144,34 @@ def make_plan(
             f"{', '.join(limit_sets.names())} with --limits"
         )
         raise InputError(message, Place(reading.file))
-    used_settings = settings or reading.settings or Settings(units=used_limits.units)
+    used_settings = settings_for(settings or reading.settings or Settings(), used_limits)
     plan = plan_line(reading.curves, used_traffic, used_limits, used_settings, progress=progress)
     return PlannedLine(reading, plan, explain(plan))
+
+
+def settings_for(settings: Settings, limits: LimitSet) -> Settings:
+    """Complete settings by what the limits' own document lays down.
+
+    Parameters
+    ----------
+    settings : Settings
+        As stated by the user; what he states rules.
+    limits : LimitSet
+        The limits in use.
+
+    Returns
+    -------
+    Settings
+        With the document's rail spacing and printed constant where the user states neither, and its units
+        where he names none.
+    """
+    found: dict[str, Any] = {}
+    if settings.rail_spacing_mm is None and settings.equilibrium_constant is None:
+        found["rail_spacing_mm"] = limits.rail_spacing_mm
+        found["equilibrium_constant"] = limits.equilibrium_constant
+    if "units" not in settings.model_fields_set:
+        found["units"] = limits.units
+    return settings.model_copy(update=found)
 
 
 def plan_frames(

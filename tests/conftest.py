@@ -53,25 +53,27 @@ def pytest_runtest_setup(item: pytest.Item) -> None:
 def pytest_sessionfinish(session: pytest.Session) -> None:
     reporter = session.config.pluginmanager.get_plugin("terminalreporter")
     if ALL and reporter is not None and reporter.stats.get("skipped"):
-        reporter.write_line(f"{len(reporter.stats['skipped'])} tests were left out, and none may be", red=True)
+        reporter.write_line(
+            f"{len(reporter.stats['skipped'])} tests were left out, and none may be", red=True
+        )
         session.exitstatus = pytest.ExitCode.TESTS_FAILED
 
 
 @pytest.fixture(scope="session")
 def root() -> Path:
-    """Where the repository lies."""
+    """Give the folder of the repository."""
     return ROOT
 
 
 @pytest.fixture(scope="session")
 def sample_file() -> Path:
-    """The sample line's workbook."""
+    """Give the workbook of the sample line."""
     return ROOT / "sample_data" / "dunmarrow_keldrith.xlsx"
 
 
 @pytest.fixture(scope="session")
 def make_sample() -> ModuleType:
-    """The script that makes the samples, as a module."""
+    """Give the script that makes the samples, as a module."""
     spec = importlib.util.spec_from_file_location("make_sample", ROOT / "sample_data" / "make_sample.py")
     assert spec is not None
     assert spec.loader is not None

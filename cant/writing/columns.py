@@ -1,8 +1,8 @@
 """Which columns the plan adds to a curve sheet and which it shows on its own sheets: as data.
 
 A column is a heading, the kind of number it holds, and where in a curve's record the value lies. The added
-columns of the user's sheet, the plan sheet and the sheet of figures are all made from these lists; a new column
-is one entry here.
+columns of the user's sheet, the plan sheet and the sheet of figures are all made from these lists; a new
+column is one entry here.
 """
 
 from __future__ import annotations
@@ -168,9 +168,7 @@ def class_columns(names: Iterable[str]) -> list[Column]:
         columns += [
             Column(f"{name}: deficiency", "cant exact", of_class(name, "deficiency_mm"), 11),
             Column(f"{name}: excess", "cant exact", of_class(name, "excess_mm"), 11),
-            Column(
-                f"{name}: felt acceleration", "acceleration", of_class(name, "felt_acceleration_ms2"), 12
-            ),
+            Column(f"{name}: felt acceleration", "acceleration", of_class(name, "felt_acceleration_ms2"), 12),
             Column(f"{name}: permissible speed", "speed", of_class(name, "permissible_speed_kmh"), 12),
         ]
     return columns

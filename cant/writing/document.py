@@ -117,4 +117,3 @@ def _plain(value: Any) -> Any:
         return value.tolist()
     message = f"{type(value).__name__} has no place in the JSON of a plan"
     raise TypeError(message)
-

@@ -8,7 +8,6 @@ from __future__ import annotations
 
 from cant.writing.columns import Column, governing, path
 
-
 FIGURES: tuple[Column, ...] = (
     Column("Cant", "", path("cant"), 10, "Whether the proposed cant or today's is meant."),
     Column("Class", "", path("class"), 16, "Class of train."),
@@ -78,3 +77,26 @@ FIGURES: tuple[Column, ...] = (
     ),
 )
 """One row a curve and class; the record is a class of a curve with ``cant`` put to it."""
+
+END: tuple[Column, ...] = (
+    Column("End", "", path("side"), 8, "in or out: the end at the smaller or the greater chainage."),
+    Column("Class", "", path("class"), 16, "Class of train; blank: of the curve itself."),
+    Column("Shared", "", path("shared_with"), 12, "Curve with which the transition is shared."),
+    Column("Length", "length", path("length_m"), 9, "Length of the transition; blank: not known."),
+    Column("Cant ramp", "length", path("ramp_m"), 9, "Length of the cant ramp."),
+    Column("Cant gradient", "gradient", path("cant_gradient_mm_per_m"), 10, "Steepest, with the shape."),
+    Column("Rate of change of cant", "rate", path("rate_of_change_of_cant_mm_s"), 12, "At the run speed."),
+    Column(
+        "Rate of change of deficiency",
+        "rate",
+        path("rate_of_change_of_deficiency_mm_s"),
+        12,
+        "At the run speed; excess counts as deficiency 0.",
+    ),
+    Column("Jerk", "jerk", path("jerk_ms3"), 8, "Change of the unbalanced acceleration with time."),
+    Column(
+        "Roll rate", "angular rate", path("roll_rate_deg_s"), 9, "Speed at which the track tilts the train."
+    ),
+    Column("Needed length", "length", path("needed_length_m"), 9, "Length that the proposed cant needs."),
+)
+"""One row an end of a curve and class; the record is a class of a transition with ``side`` put to it."""

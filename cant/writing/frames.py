@@ -1,4 +1,4 @@
-"""A plan as pandas data frames, for engineers who work in notebooks: flat columns, metric, names as in the JSON.
+"""A plan as pandas data frames, for engineers who work in notebooks: flat, metric, names as in the JSON.
 
 The nested JSON is flattened by one stated rule, so that both speak of a number by the same name.
 """

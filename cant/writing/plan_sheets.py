@@ -1,4 +1,4 @@
-"""The sheets of our own that follow the user's: summary, plan, figures, transitions, findings, and what was used.
+"""The sheets of our own that follow the user's: summary, plan, figures, transitions, findings, inputs.
 
 Filled record by record in one pass; each table is a list of columns from :mod:`cant.writing.columns` and
 :mod:`cant.writing.figure_columns`.
@@ -113,7 +113,9 @@ class PlanSheets:
         counts = plan.counts()
         for status in STATUSES:
             sheet.line(status, counts.get(status, 0), STATUS_WORDS[status])
-        sheet.line("rejected", float(plan.curves.rejected.sum()), "rows that cannot be read: see 'Not assessed'")
+        sheet.line(
+            "rejected", float(plan.curves.rejected.sum()), "rows that cannot be read: see 'Not assessed'"
+        )
         sheet.line()
         sheet.line("Cautions", bold=True)
         for caution in cautions_of(plan.limits):
@@ -176,7 +178,7 @@ class PlanSheets:
 
 def _cell(value: Any) -> Cell:
     """Turn a value of a model into a cell: yes and no in words, lists with commas, blanks blank."""
-    if value is None or isinstance(value, str | float | int) and not isinstance(value, bool):
+    if value is None or (isinstance(value, str | float | int) and not isinstance(value, bool)):
         return value
     if isinstance(value, bool):
         return "yes" if value else "no"

@@ -8,11 +8,16 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
+from cant.explaining.figures import Figures
 from cant.model.display import Display
 from cant.model.reading import Reading
 from cant.writing import document, frames
+
+_BATCH = 256
+"""Curves whose records are made together: long arrays for the figures, little memory."""
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -52,16 +57,29 @@ class PlannedLine:
         index : int
             Index of the curve in the list that was read, one of ``plan.assessed``.
         """
-        record = self.plan.record(index)
-        record["reason"] = self.explanation.reason(index)
-        record["findings"] = [finding.as_json() for finding in self.explanation.findings(index)]
-        record["options"] = self.explanation.options(index)
-        record["methods"] = self.explanation.methods(index)
-        return record
+        return self._batch([index])[0]
 
     def records(self) -> Iterator[dict[str, Any]]:
         """Give the records of all curves that were not rejected, in input order, one at a time."""
-        return (self.record(int(index)) for index in self.plan.assessed)
+        chosen = [int(index) for index in self.plan.assessed]
+        for start in range(0, len(chosen), _BATCH):
+            yield from self._batch(chosen[start : start + _BATCH])
+
+    def _batch(self, indices: list[int]) -> list[dict[str, Any]]:
+        records = []
+        for index in indices:
+            record = self.plan.record(index)
+            record["reason"] = self.explanation.reason(index)
+            record["findings"] = [finding.as_json() for finding in self.explanation.findings(index)]
+            record["options"] = self.explanation.options(index)
+            record["methods"] = self.explanation.methods(index)
+            records.append(record)
+        self._figures.add(records)
+        return records
+
+    @cached_property
+    def _figures(self) -> Figures:
+        return Figures(self.plan.traffic, self.plan.settings)
 
     def document(self) -> dict[str, Any]:
         """Give the JSON of the plan as one dict (contract: metric always)."""

@@ -79,8 +79,8 @@ def limit_sets_text() -> str:
     lines = ["Limit sets that come with the program (cant limits NAME prints one):", ""]
     for entry in describe():
         mark = "" if entry["verified"] else "  UNVERIFIED"
-        lines.append(f"{entry["name"]}{mark}")
-        lines.append(textwrap.indent(_wrapped(f"{entry["title"]}. {entry["edition"]}", ""), "    "))
+        lines.append(f"{entry['name']}{mark}")
+        lines.append(textwrap.indent(_wrapped(f"{entry['title']}. {entry['edition']}", ""), "    "))
         lines.append(textwrap.indent(_wrapped(entry["completeness"], ""), "    "))
         lines.append("")
     lines.append("A value of a set is no permission: your railway's own standard decides.")
@@ -150,7 +150,9 @@ def _decisions(planned: PlannedLine) -> str:
     lines = []
     for status, index in grave[:_SHOWN]:
         name = " ".join(
-            word for word in (plan.curves.line[index], plan.curves.track[index], plan.curves.curve[index]) if word
+            word
+            for word in (plan.curves.line[index], plan.curves.track[index], plan.curves.curve[index])
+            if word
         )
         lines.append(_wrapped(f"{name}: {status}. {planned.explanation.reason(index)}", "  "))
     for row in planned.reading.rejected[:_SHOWN]:
