@@ -14,6 +14,8 @@ KMH2_G = KMH_PER_MS**2 * GRAVITY_MS2
 STANDARD_RAIL_SPACING_MM = 1500.0
 NORMAL_TIER = "normal"
 EXCEPTIONAL_TIER = "exceptional"
+METHODS: tuple[str, ...] = ("rms",)
+"""Names of the methods that give a curve its target cant; the explaining room adds the others."""
 
 Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
 NonNegative = Annotated[float, Field(ge=0, allow_inf_nan=False)]

@@ -1,0 +1,215 @@
+"""Checks of single rows and of a list by itself: what is missing, impossible, contradictory or there twice.
+
+What needs neighbours along the line (gaps, overlaps, length against chainages) is the planner's.
+"""
+
+from __future__ import annotations
+
+import numpy as np
+
+from cant.model.curves import DOES_NOT_RUN, LEFT, RIGHT, BoolArray
+from cant.model.traffic import Traffic
+from cant.reading.draft import Draft
+
+LARGEST_CANT_MM = 300.0
+SMALLEST_CANT_MM = -150.0
+SMALLEST_RADIUS_M, LARGEST_RADIUS_M = 20.0, 100_000.0
+LARGEST_SPEED_KMH = 500.0
+LONGEST_TRANSITION_M, LONGEST_CURVE_M = 2000.0, 50_000.0
+"""Beyond these a value is taken for a mistake of unit or typing, not for a railway (common practice)."""
+
+
+def check(draft: Draft) -> None:
+    """Check every row of a block on its own."""
+    _radius(draft)
+    for meaning, attribute in (
+        ("Transition in", "transition_in_m"),
+        ("Transition out", "transition_out_m"),
+        ("Cant ramp in", "ramp_in_m"),
+        ("Cant ramp out", "ramp_out_m"),
+    ):
+        _range(draft, meaning, attribute, 0.0, LONGEST_TRANSITION_M, "m", "a length from 0 to 2000 m")
+    _range(draft, "Length", "length_m", 1e-9, LONGEST_CURVE_M, "m", "a length above 0 and up to 50 km")
+    _range(draft, "Speed", "speed_kmh", 1e-9, LARGEST_SPEED_KMH, "km/h", "a speed above 0 and up to 500 km/h")
+    for meaning in ("Cant", "Cant at most", "Cant at least"):
+        low = SMALLEST_CANT_MM
+        _range(
+            draft,
+            meaning,
+            {"Cant": "cant_mm", "Cant at most": "cant_at_most_mm", "Cant at least": "cant_at_least_mm"}[
+                meaning
+            ],
+            low,
+            LARGEST_CANT_MM,
+            "mm",
+            f"a cant from {low:g} to 300 mm",
+        )
+    _class_speeds(draft)
+    _order(draft)
+    _bounds(draft)
+    _fixed(draft)
+
+
+def _at(draft: Draft, bad: BoolArray) -> list[int]:
+    return [int(i) for i in np.flatnonzero(bad)]
+
+
+def _radius(draft: Draft) -> None:
+    values = draft.numbers["radius_m"]
+    item = draft.column("Radius") or draft.column("Degree") or draft.column("Versine")
+    with np.errstate(invalid="ignore"):
+        wrong = (np.abs(values) < SMALLEST_RADIUS_M) | (np.abs(values) > LARGEST_RADIUS_M)
+    for index in _at(draft, wrong):
+        draft.fail(index, item, f"a radius of {values[index]:.6g} m is not possible; 20 m to 100 km is")
+    for index in _at(draft, np.isnan(values)):
+        if index not in draft.problems:
+            draft.fail(index, item, "the row has no radius; a curve needs one (or a degree or versine)")
+
+
+def _range(
+    draft: Draft, meaning: str, attribute: str, low: float, high: float, unit: str, right: str
+) -> None:
+    values = draft.numbers[attribute]
+    with np.errstate(invalid="ignore"):
+        wrong = (values < low) | (values > high)
+    for index in _at(draft, wrong):
+        draft.fail(
+            index,
+            draft.column(meaning),
+            f"{meaning} of {values[index]:.6g} {unit} is not possible; {right} belongs there",
+        )
+
+
+def _class_speeds(draft: Draft) -> None:
+    for name, values in draft.class_speeds.items():
+        with np.errstate(invalid="ignore"):
+            wrong = ((values < 0) & (values != DOES_NOT_RUN)) | (values > LARGEST_SPEED_KMH)
+        for index in _at(draft, wrong):
+            draft.fail(
+                index,
+                speed_column(draft, name),
+                f"a speed of {values[index]:.6g} km/h is not possible for {name}",
+            )
+
+
+def speed_column(draft: Draft, name: str):  # type: ignore[no-untyped-def]
+    """Give the column of a class's speed, None where its heading goes by another name."""
+    found = [c for c in draft.columns if c.meaning == "Speed" and c.train_name.casefold() == name.casefold()]
+    return found[0] if found else None
+
+
+def _order(draft: Draft) -> None:
+    start, end = draft.numbers["start_km"], draft.numbers["end_km"]
+    with np.errstate(invalid="ignore"):
+        falls, rises = start > end + 1e-9, end > start + 1e-9
+    equal = np.abs(start - end) <= 1e-9
+    for index in _at(draft, equal):
+        draft.fail(index, draft.column("End"), "start and end are the same; a curve has a length")
+    groups: dict[tuple[str, str], list[int]] = {}
+    for index in _at(draft, falls | rises):
+        groups.setdefault((draft.line[index], draft.track[index]), []).append(index)
+    for indices in groups.values():
+        down = [i for i in indices if falls[i]]
+        if not down or len(down) == len(indices):
+            continue
+        few = down if 2 * len(down) <= len(indices) else [i for i in indices if rises[i]]
+        for index in few:
+            draft.fail(
+                index,
+                draft.column("Start"),
+                "start and end lie the other way round than in the rest of the track's list",
+            )
+
+
+def _bounds(draft: Draft) -> None:
+    low, high = draft.numbers["cant_at_least_mm"], draft.numbers["cant_at_most_mm"]
+    with np.errstate(invalid="ignore"):
+        crossed = low > high
+    for index in _at(draft, crossed):
+        draft.fail(
+            index, draft.column("Cant at least"), "Cant at least is above Cant at most; no cant keeps both"
+        )
+
+
+def _fixed(draft: Draft) -> None:
+    for index in _at(draft, draft.cant_fixed & np.isnan(draft.numbers["cant_mm"])):
+        draft.fail(index, draft.column("Cant fixed"), "the cant is fixed but not stated; Cant belongs there")
+
+
+def apply_signs(draft: Draft) -> None:
+    """Compare a signed radius with the hand and keep the radius positive."""
+    values = draft.numbers["radius_m"]
+    with np.errstate(invalid="ignore"):
+        negative = values < 0
+    draft.numbers["radius_m"] = np.abs(values)
+    if not negative.any():
+        return
+    signs = np.where(negative, -1, 1)
+    known = draft.hand != 0
+    agree = int(np.sum(known & (draft.hand == signs)))
+    differ = int(np.sum(known & (draft.hand == -signs)))
+    if not known.any():
+        return
+    turn = 1 if agree >= differ else -1
+    for index in _at(draft, known & (draft.hand != turn * signs) & ~np.isnan(values)):
+        if (known.all() and negative[index]) or not agree or not differ:
+            draft.fail(
+                index, draft.column("Radius"), "the sign of the radius contradicts the hand of the row"
+            )
+    fillable = ~known & ~np.isnan(values)
+    draft.hand[fillable] = np.where(turn * signs[fillable] > 0, LEFT, RIGHT)
+
+
+def check_duplicates(drafts: list[Draft]) -> None:
+    """Find curves of the same line, track and name: none of them can be told from the other."""
+    seen: dict[tuple[str, str, str], tuple[Draft, int]] = {}
+    for draft in drafts:
+        for index, name in enumerate(draft.curve):
+            if not name:
+                continue
+            key = (draft.line[index], draft.track[index], name)
+            if key not in seen:
+                seen[key] = (draft, index)
+                continue
+            first, at = seen[key]
+            where = (
+                f"sheet '{first.sheet}', row {first.rows[at]}"
+                if first.sheet != draft.sheet
+                else f"row {first.rows[at]}"
+            )
+            draft.fail(
+                index,
+                draft.column("Curve"),
+                f"curve '{name}' is there already ({where}); a curve is known by line, track and name",
+            )
+            if at not in first.problems:
+                here = (
+                    f"sheet '{draft.sheet}', row {draft.rows[index]}"
+                    if first.sheet != draft.sheet
+                    else f"row {draft.rows[index]}"
+                )
+                first.fail(
+                    at,
+                    first.column("Curve"),
+                    f"curve '{name}' is there again ({here}); a curve is known by line, track and name",
+                )
+
+
+def check_speeds(drafts: list[Draft], traffic: Traffic | None) -> None:
+    """Find rows on which a class has no planned speed: neither its own, nor the row's, nor the line's."""
+    if traffic is None:
+        return
+    for draft in drafts:
+        line_speed = draft.numbers["speed_kmh"]
+        for key in {(draft.line[i], draft.track[i]) for i in range(len(draft))}:
+            for name, row in traffic.on(*key).items():
+                if row.speed_kmh is not None:
+                    continue
+                given = draft.class_speeds.get(name, np.full(len(draft), np.nan))
+                for index in _at(draft, np.isnan(given) & np.isnan(line_speed)):
+                    if (draft.line[index], draft.track[index]) == key and index not in draft.problems:
+                        draft.fail(
+                            index,
+                            draft.column("Speed"),
+                            f"no speed for class '{name}': neither the class, the row nor the line has one",
+                        )

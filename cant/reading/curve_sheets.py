@@ -1,0 +1,112 @@
+"""Curve sheets to one curve list: finds the blocks, lets each be understood, and puts the rows together."""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from itertools import zip_longest
+from typing import Any
+
+import numpy as np
+
+from cant.files.grid import Sheet, Value
+from cant.model.curves import CurveList
+from cant.model.reading import ColumnReading, SheetReading
+from cant.reading.checks import apply_signs, check
+from cant.reading.draft import Context, Draft
+from cant.reading.layout import Block, find_blocks
+from cant.reading.meanings import Column, decide
+from cant.reading.numbers import decimal_mark
+from cant.reading.quantities import fill
+from cant.reading.records import is_example
+from cant.reading.text import is_blank, is_text
+
+
+def read_sheet(sheet: Sheet, context: Context) -> list[Draft]:
+    """Understand every curve table of one sheet."""
+    return [read_block(block, context) for block in find_blocks(sheet)]
+
+
+def read_block(block: Block, context: Context) -> Draft:
+    """Understand one curve table."""
+    rows, cells = _cells(block)
+    columns = decide(block, cells)
+    texts = (str(c) for item in columns for c in item.cells[:2000] if is_text(c))
+    draft = Draft(block, columns, rows, decimal_mark(texts), context)
+    fill(draft)
+    apply_signs(draft)
+    check(draft)
+    return draft
+
+
+def _cells(block: Block) -> tuple[np.ndarray, dict[int, Sequence[Value]]]:
+    sheet, first = block.sheet, block.header_last
+    wanted = [c.index for c in block.columns]
+    body = sheet.rows[first : block.last_row]
+    low, high = min(wanted), max(wanted)
+    kept = [
+        i
+        for i, cells in enumerate(body)
+        if any(not is_blank(c) for c in cells[low : high + 1]) and not is_example(cells)
+    ]
+    turned = list(zip_longest(*(body[i] for i in kept), fillvalue=None))
+    empty: list[Value] = [None] * len(kept)
+    columns = {index: turned[index] if index < len(turned) else empty for index in wanted}
+    return np.array([first + 1 + i for i in kept], dtype=np.int64), columns
+
+
+def sheet_readings(drafts: list[Draft]) -> list[SheetReading]:
+    """Tell where the curve tables lie, one entry a sheet."""
+    found: dict[str, SheetReading] = {}
+    for draft in drafts:
+        rows = draft.rows if len(draft) else np.array([draft.block.header_last + 1])
+        first, last = int(rows.min()), int(rows.max())
+        known = found.get(draft.sheet)
+        if known is not None:
+            first, last = min(first, known.first_row), max(last, known.last_row)
+        header = known.header_row if known else draft.block.header_last
+        found[draft.sheet] = SheetReading(draft.sheet, "curves", header, first, last, draft.block.sheet.width)
+    return list(found.values())
+
+
+def column_readings(drafts: list[Draft]) -> list[ColumnReading]:
+    """Tell how every column with a heading or values was understood."""
+    return [
+        _column_reading(draft, item)
+        for draft in drafts
+        for item in draft.columns
+        if item.heading.text or item.samples(1)
+    ]
+
+
+def _column_reading(draft: Draft, item: Column) -> ColumnReading:
+    meaning = f"Speed {item.train_name}" if item.train else item.meaning
+    return ColumnReading(
+        draft.sheet,
+        item.index,
+        item.heading.text,
+        meaning,
+        item.notation or item.unit if item.meaning else "",
+        item.unit_from if item.meaning else "",
+        item.samples(),
+        item.confidence,
+        item.note,
+    )
+
+
+def join(drafts: list[Draft], file: str) -> CurveList:
+    """Put the rows of all blocks into one list, in input order."""
+    parts = [draft.as_columns() for draft in drafts]
+    joined: dict[str, Any] = {}
+    for name in parts[0]:
+        values = [part[name] for part in parts]
+        joined[name] = (
+            np.concatenate(values)
+            if isinstance(values[0], np.ndarray)
+            else [v for part in values for v in part]
+        )
+    names = dict.fromkeys(name for draft in drafts for name in draft.class_speeds)
+    speeds = {
+        name: np.concatenate([d.class_speeds.get(name, np.full(len(d), np.nan)) for d in drafts])
+        for name in names
+    }
+    return CurveList(file=file, class_speeds=speeds, **joined)

@@ -1,0 +1,213 @@
+"""What the columns of a block mean: headings first, then what the values look like.
+
+Decides only; values are turned into quantities elsewhere, with what is decided here.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass, field
+
+from cant.files.grid import Value
+from cant.reading.columns import column
+from cant.reading.headings import Heading, Match, analyse, matches
+from cant.reading.layout import Block, BlockColumn
+from cant.reading.text import fold, is_blank, shown, squeeze
+from cant.reading.trains import known_train, says_speed, train_words
+from cant.units import find_unit, unit
+
+PROPOSED = frozenset({"proposed", "new", "planned", "future", "neu", "geplant", "projet", "propuesto", "nuevo", "proposto", "nova", "novo", "nowe", "nowa", "ny", "nytt", "nye", "proposal", "recommended"})  # fmt: skip
+EXISTING = frozenset({"existing", "exist", "today", "present", "current", "ist", "vorhanden", "existant", "actuel", "existente", "actual", "esistente", "istniejaca", "stavajici", "eksisterende", "befintlig", "as built"})  # fmt: skip
+
+
+@dataclass
+class Column:
+    """One column of a curve table with its meaning.
+
+    Attributes
+    ----------
+    index : int
+    heading : Heading
+    meaning : str
+        Canonical name; ``Speed`` with ``train`` where it is a class's; "" where it is the user's own.
+    unit, unit_from : str
+        As far as heading or unit row say; "" where nothing says it yet.
+    train : str
+        Folded words of the train that a speed column names, "" for the line speed.
+    train_name : str
+        The same as the user wrote it.
+    confidence, note : str
+    literal : bool
+        True for a canonical ``Speed NAME``.
+    cells : list of Value
+        Values of the data rows.
+    """
+
+    index: int
+    heading: Heading
+    meaning: str = ""
+    unit: str = ""
+    unit_from: str = ""
+    train: str = ""
+    train_name: str = ""
+    confidence: str = "certain"
+    note: str = ""
+    literal: bool = False
+    cells: Sequence[Value] = field(default_factory=list)
+
+    @property
+    def notation(self) -> str:
+        """Notation that the heading names."""
+        return self.heading.notation
+
+    def samples(self, count: int = 3) -> tuple[str, ...]:
+        """Give some values as they stand."""
+        found: list[str] = []
+        for cell in self.cells:
+            if not is_blank(cell):
+                text = squeeze(shown(cell))
+                if text not in found:
+                    found.append(text)
+                if len(found) == count:
+                    break
+        return tuple(found)
+
+
+def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
+    """Decide what the columns of a block mean.
+
+    Parameters
+    ----------
+    block : Block
+    cells : dict of int to sequence of Value
+        Values of the data rows by column.
+    """
+    columns = [_from_heading(c, cells.get(c.index, [])) for c in block.columns]
+    _settle_doubles(columns)
+    return columns
+
+
+def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:
+    heading = analyse(source.heading)
+    result = Column(source.index, heading, unit=heading.unit, cells=cells)
+    result.unit_from = "heading" if heading.unit else ""
+    if source.unit_row and (found := analyse("x " + source.unit_row)).text:
+        named = find_unit(source.unit_row)
+        if named is not None and not result.unit:
+            result.unit, result.unit_from = named.symbol, "unit row"
+        elif found.notation:
+            result.heading = analyse(f"{source.heading} ({source.unit_row})")
+    if not source.parts:
+        return result
+    _set_meaning(result, source)
+    _drop_foreign_unit(result)
+    return result
+
+
+def _set_meaning(result: Column, source: BlockColumn) -> None:
+    words = _without_state(result.heading.words)
+    tail = analyse(source.parts[-1]).words
+    best = _best(words, tail)
+    proposed = PROPOSED & set(result.heading.words.split())
+    if best is not None and best.score == 1.0 and best.meaning not in ("Speed",):
+        result.meaning = best.meaning
+    elif _as_speed(result, source, best):
+        return
+    elif best is not None and best.score >= 0.4:
+        result.meaning = best.meaning
+        result.confidence = "certain" if best.score >= 0.6 else "likely"
+    if proposed and result.meaning:
+        result.meaning = "Proposed cant" if result.meaning in ("Cant", "Proposed cant", "Design cant") else ""
+        result.note = "a proposal: shown, not taken"
+
+
+def _without_state(words: str) -> str:
+    tokens = [t for t in words.split() if t not in EXISTING]
+    kept = " ".join(tokens)
+    return (
+        kept
+        if tokens and matches(kept) and not (matches(words) and matches(words)[0].score == 1.0)
+        else words
+    )
+
+
+def _best(words: str, tail: str) -> Match | None:
+    joined, last = matches(words), matches(tail)
+    if joined and joined[0].score == 1.0:
+        return joined[0]
+    if last and last[0].score == 1.0:
+        return last[0]
+    both = sorted((*joined, *last), key=lambda m: -m.score)
+    return both[0] if both else None
+
+
+def _as_speed(result: Column, source: BlockColumn, best: Match | None) -> bool:
+    words = result.heading.words
+    in_speed_unit = bool(result.unit) and unit(result.unit).dimension == "speed"
+    if not (
+        says_speed(words) or in_speed_unit or (known_train(words) and (best is None or best.score < 0.6))
+    ):
+        return (
+            best is not None
+            and best.meaning == "Speed"
+            and best.score == 1.0
+            and _take_speed(result, source, "")
+        )
+    train = "" if best is not None and best.meaning == "Speed" and best.score == 1.0 else train_words(words)
+    return _take_speed(result, source, train)
+
+
+def _take_speed(result: Column, source: BlockColumn, train: str) -> bool:
+    result.meaning = "Speed"
+    text = squeeze(source.heading)
+    result.literal = bool(train) and text.casefold().startswith("speed ") and len(source.parts) == 1
+    result.train = train
+    if train:
+        bare = squeeze(text.split("(")[0].split("[")[0])
+        result.train_name = bare[6:] if result.literal else _own_words(bare, train)
+    return True
+
+
+def _own_words(text: str, train: str) -> str:
+    """Give the words of a heading that fold to the train's words, as the user wrote them."""
+    tokens = train.split()
+    kept = [word for word in text.split() if any(t in fold(word).split() for t in tokens)]
+    return " ".join(kept) or train
+
+
+def _drop_foreign_unit(result: Column) -> None:
+    """Forget a unit that cannot be this meaning's (the m of a chord, a degree's)."""
+    if not result.meaning or not result.unit:
+        return
+    info = column("curves", result.meaning)
+    if info.unit and unit(info.unit).dimension != unit(result.unit).dimension:
+        result.unit, result.unit_from = "", ""
+
+
+_PAIRED = {"Transition": ("Transition in", "Transition out")}
+
+
+def _settle_doubles(columns: list[Column]) -> None:
+    """Let each meaning belong to one column: pairs become in and out, the surer heading wins."""
+    by_meaning: dict[str, list[Column]] = {}
+    for item in columns:
+        if item.meaning and not (item.meaning == "Speed" and item.train):
+            by_meaning.setdefault(item.meaning, []).append(item)
+    for meaning, found in by_meaning.items():
+        if len(found) == 2 and meaning in _PAIRED:
+            for item, name in zip(found, _PAIRED[meaning], strict=True):
+                item.meaning, item.confidence = name, "likely"
+        elif len(found) > 1 and meaning not in ("Remarks", "Other", "Deficiency", "Excess", "Proposed cant"):
+            _keep_surest(found)
+
+
+def _keep_surest(found: list[Column]) -> None:
+    surest = max(found, key=lambda c: (c.confidence == "certain", _filled(c) > 0, -c.index))
+    for item in found:
+        if item is not surest:
+            item.note = f"'{surest.heading.text}' is taken as {item.meaning}"
+            item.meaning = ""
+
+
+def _filled(item: Column) -> int:
+    return sum(not is_blank(cell) for cell in item.cells)

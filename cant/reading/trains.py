@@ -1,0 +1,166 @@
+"""Which traffic classes a speed column speaks of: by name, by category, or by the usual abbreviation."""
+
+from __future__ import annotations
+
+import re
+from functools import lru_cache
+
+from cant.model.traffic import Traffic
+from cant.reading.text import fold
+from cant.reading.words import lexicon
+
+_SPEED_WORDS = frozenset(
+    fold(word)
+    for word in [
+        "speed",
+        "speeds",
+        "v",
+        "vmax",
+        "vmáx",
+        "vitesse",
+        "velocidad",
+        "velocità",
+        "velocidade",
+        "prędkość",
+        "rychlost",
+        "hastighet",
+        "hast",
+        "hastighed",
+        "geschwindigkeit",
+        "ps",
+        "psr",
+        "vma",
+        "vzul",
+        "zul",
+        "max",
+        "máx",
+        "maximum",
+        "sth",
+        "limit",
+        "permissible",
+        "line",
+        "mph",
+        "kmh",
+        "kmph",
+        "kph",
+        "km",
+        "h",
+        "boards",
+        "board",
+        "velocidades",
+        "sth",
+        "vitesses",
+        "速度",
+        "vlim",
+        "permitted",
+        "maximale",
+        "maximal",
+        "máxima",
+        "máximo",
+        "tipo",
+        "rango",
+        "type",
+        "rang",
+        "ve",
+        "timetable",
+        "posted",
+        "trains",
+        "train",
+        "zug",
+        "züge",
+        "booked",
+        "timetabled",
+    ]
+)
+_GLUED = re.compile(r"^(?:vmax|v)([^\W\d_]{1,8})$")
+
+
+@lru_cache(maxsize=2048)
+def train_words(words: str) -> str:
+    """Give what folded heading words say beyond "speed": ``vmax pas`` gives ``pas``, ``vgz`` gives ``gz``."""
+    rest = [token for token in words.split() if token not in _SPEED_WORDS]
+    if len(rest) == 1 and (glued := _GLUED.match(rest[0])) and known_train(glued[1]):
+        return glued[1]
+    joined = " ".join(rest)
+    if not joined.isascii():
+        for mark in ("vmax", "v", "速度", "最高", "允许"):
+            joined = joined.removesuffix(mark).removeprefix(mark) or joined
+    return joined.strip()
+
+
+def says_speed(words: str) -> bool:
+    """Whether folded heading words say "speed" in so many words."""
+    return any(
+        token in _SPEED_WORDS
+        and token not in ("max", "h", "line", "type", "tipo", "limit", "train", "trains")
+        for token in words.split()
+    ) or bool(words.startswith("v") and train_words(words) != words)
+
+
+@lru_cache(maxsize=2048)
+def known_train(words: str) -> str:
+    """Give the category or kind of train that folded words name, "" where they name none."""
+    for group in ("categories", "train_words"):
+        if (found := lexicon(group).get(words)) is not None:
+            return found
+    tokens = words.split()
+    for token in tokens:
+        if len(token) > 1 and (found := lexicon("categories").get(token)) is not None:
+            return found
+    for token in tokens:
+        if len(token) > 1 and (found := lexicon("train_words").get(token)) is not None:
+            return found
+    return ""
+
+
+def classes_meant(words: str, traffic: Traffic) -> list[str]:
+    """Give the classes that folded words mean, the surest kind of agreement alone; none where none agree.
+
+    Parameters
+    ----------
+    words : str
+        From :func:`train_words`.
+    traffic : Traffic
+    """
+    if not words:
+        return []
+    categories = {row.name: row.category for row in traffic.rows}
+    steps = (
+        lambda name: fold(name) == words,
+        lambda name: fold(categories[name]) == words,
+        lambda name: lexicon("train_words").get(words) in _kinds(name),
+        lambda name: _abbreviates(words, fold(name)),
+        lambda name: (
+            lexicon("categories").get(words) in (categories[name], lexicon("categories").get(fold(name)))
+        ),
+        lambda name: known_train(words) in ({categories[name]} | _kinds(name)) - {""},
+    )
+    for agrees in steps:
+        if found := [name for name in traffic.class_names if agrees(name)]:
+            return found
+    return []
+
+
+@lru_cache(maxsize=2048)
+def _kinds(name: str) -> frozenset[str]:
+    words = fold(name)
+    kinds = lexicon("train_words")
+    return frozenset(kinds[t] for t in (words, *words.split()) if len(t) > 1 and t in kinds)
+
+
+def _abbreviates(short: str, name: str) -> bool:
+    """Whether a word shortens a name: its beginning, its initials, or its consonants in order."""
+    if len(short) < 2 or not short.isascii():
+        return False
+    if name.startswith(short) or short == "".join(token[0] for token in name.split()):
+        return True
+    return (
+        len(name.split()) == 1
+        and len(short) >= 3
+        and short[0] == name[0]
+        and short == _skeleton(name)[: len(short)]
+    )
+
+
+def _skeleton(name: str) -> str:
+    return name[0] + "".join(c for c in name[1:] if c not in "aeiou")
