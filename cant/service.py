@@ -89,13 +89,12 @@ def read_curves(
     CantError
         A file cannot be read, or a table as a whole cannot be used.
     """
-    is_set = isinstance(limits, LimitSet)
     reading = read_workbook(
         open_workbook(data, file),
         answers=answers,
         traffic=_opened(traffic),
-        limits=limits if is_set else None,
-        limits_table=_opened(None if is_set else limits),
+        limits=limits if isinstance(limits, LimitSet) else None,
+        limits_table=_opened(limits if isinstance(limits, tuple) else None),
         settings=_opened(settings),
     )
     return replace(reading, sha256=hashlib.sha256(data).hexdigest())
@@ -299,5 +298,5 @@ def template() -> bytes:
     return template_workbook()
 
 
-def _opened(given: NamedFile | LimitSet | None) -> Workbook | None:
-    return open_workbook(*given) if isinstance(given, tuple) else None
+def _opened(given: NamedFile | None) -> Workbook | None:
+    return open_workbook(*given) if given is not None else None
