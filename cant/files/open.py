@@ -3,10 +3,13 @@
 from __future__ import annotations
 
 from cant.errors import FileError, Place
+from cant.files.archive import Archive
 from cant.files.delimited import read_delimited
 from cant.files.grid import Workbook
 from cant.files.kinds import Kind, recognise
+from cant.files.ods import read_ods
 from cant.files.package import Package
+from cant.files.xls import read_xls
 from cant.files.xlsx import read_xlsx
 
 MAX_FILE_BYTES = 200_000_000
@@ -41,4 +44,6 @@ def open_workbook(data: bytes, file: str) -> Workbook:
         return read_xlsx(Package(data, file), file)
     if kind is Kind.TEXT:
         return read_delimited(data, file)
-    raise NotImplementedError
+    if kind is Kind.ODS:
+        return read_ods(Archive(data, file), file)
+    return read_xls(data, file)
