@@ -8,7 +8,6 @@ from __future__ import annotations
 
 import hashlib
 import json
-import tomllib
 from collections.abc import Callable, Mapping
 from dataclasses import replace
 from typing import Any
@@ -16,7 +15,7 @@ from typing import Any
 import pandas as pd
 
 from cant import limit_sets
-from cant.errors import FileError, InputError, Place
+from cant.errors import InputError, Place
 from cant.explaining import explain
 from cant.files.grid import Workbook
 from cant.files.open import open_workbook
@@ -25,7 +24,7 @@ from cant.model.reading import Reading
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic
 from cant.planning import plan_line
-from cant.reading import read_frames, read_workbook, reading_document, reading_table
+from cant.reading import read_answers, read_frames, read_workbook, reading_document, reading_table
 from cant.writing.annotation import AnnotatedFile, annotate_plan
 from cant.writing.planned import PlannedLine
 from cant.writing.template import template_workbook
@@ -216,9 +215,6 @@ def plan_frames(
     85.0
     """
     ready = limit_sets.load(limits) if isinstance(limits, str) else limits
-    if isinstance(ready, LimitSet):
-        reading = read_frames(curves, traffic, None, settings)
-        return make_plan(reading, limits=ready)
     return make_plan(read_frames(curves, traffic, ready, settings))
 
 
@@ -251,18 +247,9 @@ def answers_from(data: bytes, file: str) -> Mapping[str, Any]:
     Raises
     ------
     FileError
-        It is neither JSON nor TOML, or holds no table of answers.
+        It is neither of the two, or holds no table of answers.
     """
-    try:
-        text = data.decode("utf-8-sig")
-        found = json.loads(text) if text.lstrip().startswith("{") else tomllib.loads(text)
-    except ValueError as error:
-        message = f"is neither JSON nor TOML: {error}"
-        raise FileError(message, Place(file)) from error
-    if not isinstance(found, dict):
-        message = "holds no table of answers: see 'Answering questions' in the README"
-        raise FileError(message, Place(file))
-    return found
+    return read_answers(data, file)
 
 
 def reading_json(reading: Reading) -> bytes:

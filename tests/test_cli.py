@@ -143,7 +143,7 @@ def test_the_template_is_a_workbook(run: Run, here: Path) -> None:
         (["plan", "empty.csv"], "empty.csv"),
         (["plan", "{branch}"], "--traffic"),
         (["plan", "{branch}", "--traffic", "{traffic}"], "--limits"),
-        (["plan", "{sample}", "--reading", "noise.xlsx"], "neither JSON nor TOML"),
+        (["plan", "{sample}", "--reading", "noise.xlsx"], "JSON or TOML"),
         (["read", "none.xlsx"], "no such file"),
         (["limits", "nothing"], "typical"),
         (["template", "empty.csv"], ".xlsx"),

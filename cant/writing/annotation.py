@@ -177,7 +177,9 @@ def _curve_sheets(reading: Reading) -> list[SheetReading]:
 
 def _marks(reading: Reading) -> dict[str, list[CellMark]]:
     """Give the marks on the user's own cells: one where a value made its row unusable."""
-    columns = {(c.sheet, c.heading): c.index for c in reading.columns}
+    columns: dict[tuple[str, str], int] = {}
+    for column_read in reading.columns:  # of two headings alike the first one counts
+        columns.setdefault((column_read.sheet, column_read.heading), column_read.index)
     texts: dict[tuple[str, int, int], list[str]] = {}
     for row in reading.rejected:
         at = columns.get((row.sheet, row.column))
