@@ -15,7 +15,7 @@ import numpy.typing as npt
 from cant.planning.line import Line
 from cant.planning.neighbours import Pairs
 from cant.planning.permissible import Permitted, permitted_alone, permitted_shared, speed_steps
-from cant.planning.rules import Asked, Rule, curve_terms, hard_terms
+from cant.planning.rules import AT_LEAST, AT_MOST, Asked, Rule, curve_terms, hard_terms
 from cant.planning.shared import Meeting, SharedAsked, hard_values, shared_values
 from cant.units import KMH_PER_MS
 
@@ -28,9 +28,6 @@ NO_TRAINS = 0.001
 """A class of 0 trains a day still counts this many where time is lost."""
 LIMIT_OF_NOTHING = 1000.0
 """A limit of 0 or less that is passed counts as this much overrun, plus the amount."""
-
-SITE_QUANTITIES = ("cant at most", "cant at least", "equal cants")
-"""Rules without a normal and an exceptional value: they need no approval, they bind."""
 
 
 def overrun(value: FloatArray, limit: FloatArray) -> FloatArray:
@@ -60,7 +57,7 @@ class Passed:
         """
         gathered: dict[tuple[str, str], FloatArray] = {}
         for rule, kept, value, limit in found:
-            if rule.quantity in SITE_QUANTITIES and not sites:
+            if rule in (AT_MOST, AT_LEAST) and not sites:
                 continue
             broken = ~kept
             over = np.where(broken, overrun(value, limit), 0.0) if broken.any() else broken.astype(np.float64)
@@ -255,9 +252,6 @@ class Assessment:
         Of curves by themselves, (n,).
     passed_between : Passed
         Of shared transitions, (m,).
-    hard : ndarray of bool, shape (n,)
-        The curve by itself keeps what no lower speed can mend.
-    hard_between : ndarray of bool, shape (m,)
     """
 
     run_kmh: FloatArray
@@ -265,8 +259,6 @@ class Assessment:
     lost_s: FloatArray
     passed: Passed
     passed_between: Passed
-    hard: BoolArray
-    hard_between: BoolArray
 
     def total(self, at: npt.NDArray[np.int64]) -> TimeLost:
         """Give what some curves lose together."""
@@ -285,6 +277,4 @@ def assess(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool) -> 
         lost_s=time_lost(line, run),
         passed=passed_alone(line, cant_mm[:, None], run),
         passed_between=passed_shared(meeting, cants, together),
-        hard=hard_kept(line, cant_mm[:, None], exceptional),
-        hard_between=shared_hard_kept(meeting, cants, exceptional)[0],
     )

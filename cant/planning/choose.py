@@ -261,7 +261,7 @@ def _unhindered(curve: _Curve, beside: Permitted, axis: int) -> BoolArray:
     together = Permitted(np.minimum(up_to, beside.up_to_kmh), planned & beside.planned)
     with np.errstate(invalid="ignore"):
         same: BoolArray = np.asarray(together.run_speed(curve.line.planned_kmh) == run)
-    return np.asarray((same | ~curve.line.runs).all(axis=-1))
+    return np.asarray(np.logical_or(same, ~curve.line.runs).all(axis=-1))
 
 
 def _broken_curves(curves: list[_Curve], links: list[Link], level: list[int]) -> BoolArray:

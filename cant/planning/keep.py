@@ -3,14 +3,25 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
+from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
 
-from cant.planning.assess import Assessment, Passed, TimeLost, assess
+from cant.planning.assess import (
+    Assessment,
+    Passed,
+    TimeLost,
+    assess,
+    hard_kept,
+    passed_alone,
+    passed_shared,
+    shared_hard_kept,
+)
 from cant.planning.lexicographic import slack
 from cant.planning.line import Line
 from cant.planning.neighbours import Pairs, chains_of
+from cant.planning.shared import Meeting
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
@@ -54,20 +65,49 @@ def keep_today(
     lone = np.ones(len(line), dtype=np.bool_)
     for chain in chains:
         lone[chain] = False
-    before = assess(line, pairs, cant_mm, exceptional)
     kept = np.where(reach, today, cant_mm)
-    after = assess(line, pairs, kept, exceptional)
-    clean = _nothing_new(pairs, before, after)
-    slower = _slower(before, after)
+    before = _State.of(line, pairs, cant_mm, exceptional)
+    after = _State.of(line, pairs, kept, exceptional)
+    clean = _clean(pairs, before, after, reach)
+    slower = _slower(before.worth, after.worth)
     result = np.where(lone & reach & clean & ~slower, today, cant_mm)
     for chain in chains:
         if not reach[chain].any():
             continue
-        if clean[chain].all() and not _slower(before.total(chain), after.total(chain)).any():
+        if clean[chain].all() and not _slower(before.worth.total(chain), after.worth.total(chain)).any():
             result[chain] = kept[chain]
         else:
             result[chain] = _one_by_one(line, pairs, chain, cant_mm, reach, exceptional)
     return result
+
+
+@dataclass(frozen=True)
+class _State:
+    """Cants with their worth, and what they keep: curves by themselves (n,), shared transitions (m,).
+
+    ``hard`` is what no lower speed can mend at planned speeds, ``tier`` every limit at the speeds run, both
+    in the last tier.
+    """
+
+    worth: Assessment
+    hard: BoolArray
+    tier: BoolArray
+    hard_between: BoolArray
+    tier_between: BoolArray
+
+    @classmethod
+    def of(cls, line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool) -> _State:
+        worth = assess(line, pairs, cant_mm, exceptional)
+        run, meeting = worth.run_kmh, Meeting.of(line, pairs)
+        cants = (cant_mm[pairs.first][:, None], cant_mm[pairs.second][:, None])
+        together = np.minimum(run[pairs.first], run[pairs.second])
+        return cls(
+            worth=worth,
+            hard=hard_kept(line, cant_mm[:, None], exceptional),
+            tier=passed_alone(line, cant_mm[:, None], run, exceptional, sites=True).count == 0,
+            hard_between=shared_hard_kept(meeting, cants, exceptional)[0],
+            tier_between=np.asarray(passed_shared(meeting, cants, together, exceptional).count == 0),
+        )
 
 
 def _slower(before: TimeLost | Assessment, after: TimeLost | Assessment) -> BoolArray:
@@ -85,12 +125,18 @@ def _new(before: Passed, after: Passed) -> BoolArray:
     return np.asarray(np.any(found, axis=0)) if found else np.zeros(0, dtype=np.bool_)
 
 
-def _nothing_new(pairs: Pairs, before: Assessment, after: Assessment) -> BoolArray:
-    """Tell for each curve whether it and its transitions break and pass nothing new, shape (n,)."""
-    clean = (after.hard | ~before.hard) & ~_new(before.passed, after.passed)
+def _clean(pairs: Pairs, before: _State, after: _State, exchanged: BoolArray) -> BoolArray:
+    """Tell for each curve whether it and its transitions break and pass nothing new, shape (n,).
+
+    An exchanged cant must break no limit of the last tier at all, on its curve and its transitions.
+    """
+    clean = np.where(exchanged, after.hard & after.tier, after.hard | ~before.hard)
+    clean &= ~_new(before.worth.passed, after.worth.passed)
     if len(pairs):
-        between = after.hard_between | ~before.hard_between
-        between &= ~_new(before.passed_between, after.passed_between)
+        touched = exchanged[pairs.first] | exchanged[pairs.second]
+        good = after.hard_between & after.tier_between
+        between = np.where(touched, good, after.hard_between | ~before.hard_between)
+        between &= ~_new(before.worth.passed_between, after.worth.passed_between)
         np.logical_and.at(clean, pairs.first, between)
         np.logical_and.at(clean, pairs.second, between)
     return np.asarray(clean)
@@ -106,13 +152,16 @@ def _one_by_one(
 ) -> FloatArray:
     at = np.asarray(chain)
     part, own = line.take(at), pairs.among(at)
-    cants = cant_mm[at].copy()
-    best = assess(part, own, cants, exceptional)
+    cants: FloatArray = cant_mm[at].copy()
+    best = _State.of(part, own, cants, exceptional)
     every = np.arange(len(at))
     for i in np.flatnonzero(reach[at]):
-        trial = cants.copy()
+        trial: FloatArray = cants.copy()
         trial[i] = part.cant_today_mm[i, 0]
-        after = assess(part, own, trial, exceptional)
-        if _nothing_new(own, best, after).all() and not _slower(best.total(every), after.total(every)).any():
+        after = _State.of(part, own, trial, exceptional)
+        if (
+            _clean(own, best, after, every == i).all()
+            and not _slower(best.worth.total(every), after.worth.total(every)).any()
+        ):
             cants = trial
     return cants

@@ -97,6 +97,17 @@ class Line:
                 chosen[item.name] = value
         return Line(**chosen)
 
+    def set_ends(self, neighbourhood: Neighbourhood) -> None:
+        """Take over how the curves meet."""
+        transition, ramp = neighbourhood.transition_m, neighbourhood.ramp_m
+        self.transition_m = (_column(transition[0]), _column(transition[1]))
+        self.ramp_m = (_column(ramp[0]), _column(ramp[1]))
+
+    @property
+    def without_trains(self) -> BoolArray:
+        """Whether no class at all runs on the curve, shape (n, 1)."""
+        return np.asarray(np.logical_not(self.runs.any(axis=-1, keepdims=True)))
+
     @property
     def moving(self) -> BoolArray:
         """Whether the class runs there at more than 0 km/h, shape (n, k)."""

@@ -91,6 +91,8 @@ class Neighbourhood:
         Length of the transition to a straight at each end [m]; nan: not known, or shared.
     ramp_m : ndarray, shape (2, n)
         Length of the cant ramp to a straight [m] over which gradient and rate of cant hold; nan: no check.
+    stated_ramp_m : ndarray, shape (2, n)
+        Length of the cant ramp as the list states it [m]; nan where it states none.
     ramp_room_m : ndarray, shape (2, n)
         Where the ramp lies on the straight for want of a transition: the room there is [m]; nan elsewhere.
     on_straight : ndarray of bool, shape (2, n)
@@ -109,6 +111,7 @@ class Neighbourhood:
 
     transition_m: FloatArray
     ramp_m: FloatArray
+    stated_ramp_m: FloatArray
     ramp_room_m: FloatArray
     on_straight: BoolArray
     shared: BoolArray
@@ -236,6 +239,7 @@ def find_neighbours(curves: CurveList) -> Neighbourhood:
     result = Neighbourhood(
         transition_m=np.where(shared, np.nan, transition),
         ramp_m=np.where(shared, np.nan, ramp),
+        stated_ramp_m=ends.ramp_m,
         ramp_room_m=room,
         on_straight=on_straight,
         shared=shared,
@@ -329,16 +333,21 @@ def _shared_length_findings(curves: CurveList, ends: _Ends, pairs: Pairs) -> lis
 
 
 def forget(neighbourhood: Neighbourhood, dropped: BoolArray) -> Neighbourhood:
-    """Plan without some curves: what they share with others is then a transition that is not known."""
+    """Plan without some curves: what they share with others is then a transition that is not known.
+
+    A cant ramp that the list states there is still checked, as it is beside any transition not known.
+    """
     pairs = neighbourhood.pairs
     keep = ~(dropped[pairs.first] | dropped[pairs.second])
     shared = np.zeros_like(neighbourhood.shared)
     kept = pairs.take(np.flatnonzero(keep))
     shared[AFTER, kept.first] = True
     shared[BEFORE, kept.second] = True
+    lost = neighbourhood.shared & ~shared
     return Neighbourhood(
         transition_m=neighbourhood.transition_m,
-        ramp_m=neighbourhood.ramp_m,
+        ramp_m=np.where(lost, neighbourhood.stated_ramp_m, neighbourhood.ramp_m),
+        stated_ramp_m=neighbourhood.stated_ramp_m,
         ramp_room_m=neighbourhood.ramp_room_m,
         on_straight=neighbourhood.on_straight,
         shared=shared,

@@ -186,6 +186,7 @@ def plan_arrays(
     gapped[[f.curve for f in gaps if f.curve is not None]] = True
     planned = usable & ~gapped
     neighbourhood = forget(neighbourhood, ~planned)
+    line.set_ends(neighbourhood)
     line.runs &= planned[:, None]
     line.regular &= line.runs
     tell(0.3, "choosing cants")

@@ -187,7 +187,7 @@ def _site_limit(value: FloatArray) -> LimitAt:
 def _cant_terms(asked: Asked) -> Iterator[Terms]:
     """Yield the cant itself: rows of a class where one runs, else the rows that speak of no class."""
     line = asked.line
-    empty = ~line.runs.any(axis=-1, keepdims=True)
+    empty = line.without_trains
     one = np.ones((1, 1))
     yield Terms(CANT, np.zeros((1, 1)), one, asked.limit("cant"), line.runs)
     if empty.any():
@@ -234,7 +234,7 @@ def _felt_inwards_terms(asked: Asked) -> Iterator[Terms]:
 
 def _gradient_terms(asked: Asked) -> Iterator[Terms]:
     line = asked.line
-    empty = ~line.runs.any(axis=-1, keepdims=True)
+    empty = line.without_trains
     for end in (BEFORE, AFTER):
         ramp = line.ramp_m[end]
         known = ~np.isnan(ramp)
