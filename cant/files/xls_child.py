@@ -70,10 +70,7 @@ def _sheet(sheet: Any, rows: list[list[Any]], style: list[int]) -> dict[str, Any
         "name": sheet.name,
         "visible": sheet.visibility == 0,
         "rows": rows,
-        "styles": [
-            [style[xf] if xf < len(style) else 0 for xf in _xfs(sheet, number)]
-            for number in range(sheet.nrows)
-        ],
+        "styles": [_styles(sheet, number, style) for number in range(sheet.nrows)],
         "merged": [list(one) for one in sheet.merged_cells[:100_000]],
         "hidden_rows": [row + 1 for row, info in sheet.rowinfo_map.items() if info.hidden],
         "hidden_columns": [column for column, info in sheet.colinfo_map.items() if info.hidden],
