@@ -1,4 +1,4 @@
-"""What every view needs of the running application: the store, the computations, the request's plan and units."""
+"""What every view needs of the running application: store, computations, the request's plan and units."""
 
 from __future__ import annotations
 
@@ -45,15 +45,19 @@ def running() -> Running:
 
 
 def current_measures() -> Measures:
-    """Give the units of the request: as asked for in the address, else as this browser chose, else metric."""
+    """Give the units of the request: as asked in its address, else as this browser chose, else the plan's."""
     if "measures" not in g:
-        asked = request.args.get(UNITS)
-        if asked in SYSTEMS and session.get(UNITS) != asked:
-            session.permanent = True
-            session[UNITS] = asked
-        g.measures = measures(asked if asked in SYSTEMS else str(session.get(UNITS, "metric")))
+        asked = request.args.get(UNITS) or session.get(UNITS)
+        g.measures = measures(asked if asked in SYSTEMS else g.get("plan_units", "metric"))
     found: Measures = g.measures
     return found
+
+
+def choose_units(system: str) -> None:
+    """Let this browser's pages be in a system of units from now on."""
+    session.permanent = True
+    session[UNITS] = system
+    g.pop("measures", None)
 
 
 def stored(address: str) -> StoredPlan:

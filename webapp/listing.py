@@ -14,7 +14,7 @@ import numpy as np
 import numpy.typing as npt
 
 from cant.model.curves import situation_text
-from cant.model.plan import STATUSES
+from cant.model.plan import STATUSES, Finding
 from cant.service import PlannedLine
 
 PAGE = 50
@@ -61,15 +61,15 @@ class Wanted:
     @classmethod
     def of(cls, given: Mapping[str, str], statuses: list[str]) -> Wanted:
         """Make it from the parameters of an address; what is not understood is left out."""
-        page, size = given.get("page", ""), given.get("size", "")
+        size = _whole(given.get("size", ""))
         return cls(
             statuses=frozenset(statuses) & set(STATUSES),
             search=given.get("search", "").strip()[:100],
             track=given.get("track", "")[:400],
             sort=given.get("sort", "") if given.get("sort") in SORTS else "list",
             falling=given.get("order") == "falling",
-            page=int(page) if page.isascii() and page.isdigit() and 0 < int(page[:9]) else 1,
-            size=int(size) if size.isascii() and size.isdigit() and int(size[:9]) in PAGE_SIZES else PAGE,
+            page=max(_whole(given.get("page", "")), 1),
+            size=size if size in PAGE_SIZES else PAGE,
         )
 
     def query(self, **changes: object) -> str:
@@ -117,6 +117,7 @@ class Listing:
         )
         self._track = [track_name(a, b) for a, b in zip(curves.line, curves.track, strict=True)]
         self._text: list[str] | None = None
+        self._findings: list[Finding] | None = None
         self._keys: dict[str, npt.NDArray[np.int64]] = {}
         self.along = self._tracks_in_order()
         self.tracks = list(self.along)
@@ -154,6 +155,18 @@ class Listing:
         at = int(np.flatnonzero(order == index)[0])
         before = int(order[at - 1]) if at > 0 else None
         return before, int(order[at + 1]) if at + 1 < len(order) else None
+
+    def has(self, index: int) -> bool:
+        """Tell whether an index is that of a curve in the list."""
+        return 0 <= index < len(self._track) and self._status[index] >= 0
+
+    def findings(self) -> list[Finding]:
+        """Give all findings, those of the whole plan first, then by curve in input order."""
+        if self._findings is None:
+            explanation = self.planned.explanation
+            of_curves = (f for i in self._assessed for f in explanation.findings(int(i)))
+            self._findings = [*explanation.plan_findings, *of_curves]
+        return self._findings
 
     def track_of(self, index: int) -> str:
         """Give the line and track of a curve as :attr:`tracks` names it."""
@@ -205,3 +218,7 @@ class Listing:
 def track_name(line: str, track: str) -> str:
     """Give the words for a line and track."""
     return " / ".join(word for word in (line, track) if word) or "the line"
+
+
+def _whole(text: str) -> int:
+    return int(text) if text.isascii() and text.isdigit() and len(text) < 10 else 0

@@ -1,7 +1,6 @@
-"""Numbers as people are shown them, metric or US: one unit and so many decimals for each kind of measure.
+"""Numbers as a page shows them, metric or US, in the units and decimals of :mod:`cant.model.display`.
 
-Everything inside is metric (:mod:`cant.units`); this is the last step before the page. The JSON never passes
-through here.
+The last step before the page; the JSON never passes through here.
 """
 
 from __future__ import annotations
@@ -10,52 +9,13 @@ import math
 from dataclasses import dataclass
 from typing import Literal
 
-from cant.units import FOOT_M, INCH_MM, MILE_KM, STANDARD_GRAVITY_MS2, UNITS
+from cant.model.display import Display
 
 System = Literal["metric", "us"]
 SYSTEMS: tuple[System, ...] = ("metric", "us")
 SYSTEM_WORDS: dict[str, str] = {"metric": "Metric", "us": "US"}
 ABSENT = "–"
-
-DEGREE_OF_CURVE_M = 100 * FOOT_M / 2
-"""Half the 100 ft chord of the degree of curve [m]: R = 50 ft / sin(D / 2)."""
-
-
-@dataclass(frozen=True, slots=True)
-class Measure:
-    """How one kind of measure is shown: unit, canonical units in one shown unit, decimals."""
-
-    unit: str
-    size: float
-    decimals: int
-
-
-_METRIC: dict[str, Measure] = {
-    "cant": Measure("mm", 1.0, 0),
-    "exact cant": Measure("mm", 1.0, 1),
-    "radius": Measure("m", 1.0, 0),
-    "length": Measure("m", 1.0, 1),
-    "chainage": Measure("km", 1.0, 3),
-    "speed": Measure("km/h", 1.0, 1),
-    "acceleration": Measure("m/s²", 1.0, 2),
-    "gradient": Measure("mm/m", 1.0, 2),
-    "rate": Measure("mm/s", 1.0, 1),
-    "mass": Measure("t", 1.0, 1),
-    "height": Measure("m", 1.0, 2),
-}
-_US: dict[str, Measure] = {
-    "cant": Measure("in", INCH_MM, 2),
-    "exact cant": Measure("in", INCH_MM, 3),
-    "radius": Measure("degree", math.nan, 2),
-    "length": Measure("ft", FOOT_M, 0),
-    "chainage": Measure("mi", MILE_KM, 3),
-    "speed": Measure("mph", MILE_KM, 1),
-    "acceleration": Measure("g", STANDARD_GRAVITY_MS2, 3),
-    "gradient": Measure("in/31 ft", UNITS["in/31 ft"].factor, 2),
-    "rate": Measure("in/s", INCH_MM, 2),
-    "mass": Measure("short ton", UNITS["short ton"].factor, 0),
-    "height": Measure("ft", FOOT_M, 1),
-}
+NO_BREAK = "\u00a0"
 
 
 @dataclass(frozen=True)
@@ -65,53 +25,40 @@ class Measures:
     system: System
 
     @property
-    def table(self) -> dict[str, Measure]:
-        """How each kind of measure is shown."""
-        return _US if self.system == "us" else _METRIC
+    def display(self) -> Display:
+        """How each kind of number is shown."""
+        return Display(self.system)
 
     def unit(self, kind: str) -> str:
-        """Give the unit in which a kind of measure is shown."""
-        return self.table[kind].unit
+        """Give the unit in which a kind of number is shown."""
+        return self.display[kind].unit
 
     def number(self, kind: str, value: float) -> float:
         """Give a canonical value in the shown unit, not rounded."""
-        if kind == "radius" and self.system == "us":
-            if value < DEGREE_OF_CURVE_M:
-                return math.nan
-            return 2 * math.degrees(math.asin(DEGREE_OF_CURVE_M / value))
-        return value / self.table[kind].size
+        return value * self.display[kind].factor
 
     def canonical(self, kind: str, number: float) -> float:
         """Give the canonical value of a number in the shown unit: the inverse of :meth:`number`."""
-        if kind == "radius" and self.system == "us":
-            return DEGREE_OF_CURVE_M / math.sin(math.radians(number) / 2)
-        return number * self.table[kind].size
+        return number / self.display[kind].factor
 
     def show(self, kind: str, value: float | None) -> str:
         """Give a canonical value as text without unit; :data:`ABSENT` for None and nan."""
-        if value is None:
+        if value is None or math.isnan(value):
             return ABSENT
-        number = self.number(kind, float(value))
-        if math.isnan(number):
-            return ABSENT
-        if math.isinf(number):
+        if math.isinf(value):
             return "not limited"
-        text = f"{number:.{self.table[kind].decimals}f}"
-        if kind in ("speed", "length", "mass", "acceleration", "height") and "." in text:
-            text = text.rstrip("0").rstrip(".") if kind in ("speed", "length", "mass") else text
-        return (
-            "0"
-            if text.strip("-0.") == "" and kind in ("speed", "length", "mass", "cant")
-            else text.replace("-", "−")
-        )
+        return self.display[kind].text(float(value), with_unit=False)
 
     def with_unit(self, kind: str, value: float | None) -> str:
         """Give a canonical value as text with its unit, which a line break never parts from it."""
         text = self.show(kind, value)
-        if text == ABSENT or text == "not limited":
+        if text in (ABSENT, "not limited") or not self.unit(kind):
             return text
-        unit = self.unit(kind)
-        return f"{text}°" if unit == "degree" else f"{text}\u00a0{unit}"
+        return f"{text}{NO_BREAK}{self.unit(kind)}"
+
+    def field(self, kind: str, value: float | None) -> str:
+        """Give a canonical value for a field of a form, "" for None, as exact as a person would write it."""
+        return "" if value is None else f"{round(self.number(kind, value), 6):.10g}"
 
 
 def measures(system: str) -> Measures:

@@ -1,8 +1,8 @@
 """Who asks, and whether a request may change anything.
 
-The owner of a plan is a random number in a signed cookie, or in a signed key that a program sends. Forms carry
-a signed token made for their owner; a request to the JSON interface with a cookie must come from the same
-site. Every answer carries a strict content-security policy: nothing inline, nothing from elsewhere.
+The owner of a plan is a random number in a signed cookie, or in a signed key that a program sends. Forms
+carry a signed token made for their owner; a request to the JSON interface with a cookie must come from the
+same site. Every answer carries a strict content-security policy: nothing inline, nothing from elsewhere.
 """
 
 from __future__ import annotations
@@ -14,6 +14,7 @@ from flask import Flask, Response, current_app, g, request, session
 from itsdangerous import BadSignature, URLSafeSerializer, URLSafeTimedSerializer
 
 OWNER = "owner"
+SESSION_COOKIE = "cant"
 OWNER_BYTES = 24
 FORM_HOURS = 24
 POLICY = "; ".join(
@@ -55,6 +56,11 @@ def owner() -> str:
             g.owner = known
     found: str = g.owner
     return found
+
+
+def is_known() -> bool:
+    """Tell whether a request carries a key or the cookie of an owner."""
+    return request.authorization is not None or isinstance(session.get(OWNER), str)
 
 
 def new_key() -> str | None:

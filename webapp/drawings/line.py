@@ -279,8 +279,6 @@ def _labels(placed: _Placed, panels: tuple[Panel, Panel, Panel], measures: Measu
     name = curve.name if len(curve.name) <= room else f"{curve.name[: room - 1]}…"
     start = measures.show("chainage", None if curve.start_m is None else curve.start_m / 1000)
     radius = measures.show("radius", curve.radius_m)
-    if measures.system == "us" and curve.radius_m:
-        radius += "°"
     above = _side(curve) > 0
     drawn = [
         svg.words(middle, 12, name, "curve-name", "middle"),

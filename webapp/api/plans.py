@@ -1,0 +1,125 @@
+"""Operations on plans: make, look through, decide, delete."""
+
+from __future__ import annotations
+
+from typing import Any
+
+from flask import Response
+
+from cant import service
+from cant.errors import InputError
+from cant.model.limits import LimitSet
+from cant.reading import reading_document
+from webapp.api.models import (
+    AnswersBody,
+    LimitsBody,
+    PlanList,
+    PlanSummary,
+    ReadingAnswer,
+    SettingsBody,
+    TrafficBody,
+)
+from webapp.api.operations import operation
+from webapp.context import file_of, reading_of, running, stored
+from webapp.deciding import check_reading, checked_units
+from webapp.decisions import as_text, limits_text, settings_text, traffic_text
+from webapp.security import new_key, owner
+from webapp.uploads import needed, uploaded
+
+XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
+
+
+@operation("POST", "/plans", code=201, answer=PlanSummary, upload=True, open=True)
+def create_plan() -> PlanSummary:
+    """Make a plan from a curve list, with trains, limits and settings beside it where they are not in it."""
+    data, name = needed("file", "a workbook or a csv file with a curve list")
+    traffic, limits, settings = (uploaded(field) for field in ("traffic", "limits", "settings"))
+    reading = service.read_curves(data, name, traffic=traffic, limits=limits, settings=settings)
+    decisions: dict[str, str] = {"confirmed": as_text(True)}
+    if traffic and reading.traffic:
+        decisions["traffic"] = traffic_text(reading.traffic)
+    if limits and reading.limits:
+        decisions["limits"] = limits_text(reading.limits)
+    if settings and reading.settings:
+        decisions["settings"] = settings_text(reading.settings)
+    key = new_key()
+    return PlanSummary.of(running().store.add(owner(), name, data, decisions), key)
+
+
+@operation("GET", "/plans", answer=PlanList)
+def list_plans() -> PlanList:
+    """List the caller's plans."""
+    return PlanList(plans=[PlanSummary.of(plan) for plan in running().store.plans(owner())])
+
+
+@operation("GET", "/plans/{address}", answer=PlanSummary)
+def get_plan(address: str) -> PlanSummary:
+    """Tell what is kept of a plan, and until when."""
+    return PlanSummary.of(stored(address))
+
+
+@operation("DELETE", "/plans/{address}", code=204)
+def delete_plan(address: str) -> None:
+    """Delete a plan with its file."""
+    running().store.remove(owner(), address)
+
+
+@operation("GET", "/plans/{address}/reading", answer=ReadingAnswer)
+def get_reading(address: str) -> dict[str, Any]:
+    """Tell how the file is read: columns, questions, rejected rows."""
+    return dict(reading_document(reading_of(stored(address))))
+
+
+@operation("PUT", "/plans/{address}/answers", answer=ReadingAnswer, body=AnswersBody)
+def put_answers(address: str, body: AnswersBody) -> dict[str, Any]:
+    """Answer questions and correct columns; the file is read anew."""
+    plan = stored(address)
+    given = {key: value for key, value in body.model_dump().items() if value} or None
+    reading = check_reading(plan, file_of(plan), answers=given)
+    running().store.decide(owner(), address, {"answers": as_text(given)})
+    return dict(reading_document(reading))
+
+
+@operation("PUT", "/plans/{address}/traffic", answer=PlanSummary, body=TrafficBody)
+def put_traffic(address: str, body: TrafficBody) -> PlanSummary:
+    """Replace the traffic."""
+    plan = stored(address)
+    traffic = body.traffic()
+    check_reading(plan, file_of(plan), traffic=traffic)
+    return _decided(address, {"traffic": traffic_text(traffic)})
+
+
+@operation("PUT", "/plans/{address}/limits", answer=PlanSummary, body=LimitsBody)
+def put_limits(address: str, body: LimitsBody) -> PlanSummary:
+    """Replace the limits: by a set that comes with the program, or by rules that are sent."""
+    plan = stored(address)
+    limits = _limits(body)
+    check_reading(plan, file_of(plan), limits=limits)
+    return _decided(address, {"limits": limits_text(limits)})
+
+
+@operation("PUT", "/plans/{address}/settings", answer=PlanSummary, body=SettingsBody)
+def put_settings(address: str, body: SettingsBody) -> PlanSummary:
+    """Replace the settings."""
+    stored(address)
+    return _decided(address, {"settings": settings_text(body.settings())})
+
+
+@operation("GET", "/template", answer=XLSX, open=True)
+def get_template() -> Response:
+    """Give an empty workbook to fill in."""
+    return Response(service.template(), mimetype=XLSX)
+
+
+def _limits(body: LimitsBody) -> LimitSet:
+    if body.rows is not None:
+        return checked_units(body.own())
+    found = service.limits_named(body.name)
+    if found is None:
+        message = f"there is no limit set '{body.name}'; there are {', '.join(service.limit_set_names())}"
+        raise InputError(message)
+    return found
+
+
+def _decided(address: str, decisions: dict[str, str]) -> PlanSummary:
+    return PlanSummary.of(running().store.decide(owner(), address, decisions))

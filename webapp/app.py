@@ -1,0 +1,129 @@
+"""The application factory: puts the parts together, in the one place that knows them all."""
+
+from __future__ import annotations
+
+from collections.abc import Mapping
+from datetime import UTC, datetime, timedelta
+from typing import Any
+
+from flask import Flask, g, request, url_for
+
+from cant.model.plan import STATUSES
+from cant.version import __version__
+from cant.writing.cautions import CAUTIONS, UNVERIFIED
+from webapp import words
+from webapp.api import api
+from webapp.computing import Computations
+from webapp.config import Config
+from webapp.context import EXTENSION, Running, current_measures, running
+from webapp.database import Database
+from webapp.drawings import svg
+from webapp.errors import add_error_answers
+from webapp.measures import SYSTEM_WORDS
+from webapp.security import SESSION_COOKIE, check_form, form_token, protect
+from webapp.store import Store
+from webapp.views import curves, downloads, help, limits, reading, result, start, trains
+
+COOKIE_DAYS = 400
+MOST_FORM_BYTES = 4_000_000
+MOST_FORM_PARTS = 20_000
+
+
+def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
+    """Make the application.
+
+    Parameters
+    ----------
+    config : Config or mapping, optional
+        What is configured, or Flask's own keys (``TESTING``) with a ``CANT`` entry that holds it; from the
+        environment where not given.
+
+    Returns
+    -------
+    Flask
+        With the database migrated and what has expired deleted.
+
+    Raises
+    ------
+    CantError
+        Where the configuration or the database cannot be used.
+    """
+    flask_keys: dict[str, Any] = {} if config is None or isinstance(config, Config) else dict(config)
+    given = config if isinstance(config, Config) else flask_keys.pop("CANT", None)
+    used: Config = given or Config.from_environment()
+    app = Flask("webapp")
+    app.config.update(
+        SECRET_KEY=used.key(),
+        MAX_CONTENT_LENGTH=used.upload_mb * 1_000_000,
+        MAX_FORM_MEMORY_SIZE=MOST_FORM_BYTES,
+        MAX_FORM_PARTS=MOST_FORM_PARTS,
+        SESSION_COOKIE_NAME=SESSION_COOKIE,
+        SESSION_COOKIE_HTTPONLY=True,
+        SESSION_COOKIE_SAMESITE="Lax",
+        SESSION_COOKIE_SECURE=used.https,
+        PERMANENT_SESSION_LIFETIME=timedelta(days=COOKIE_DAYS),
+        SEND_FILE_MAX_AGE_DEFAULT=timedelta(hours=1),
+        TRUSTED_HOSTS=list(used.trusted_hosts) or None,
+    )
+    app.config.update(flask_keys)
+    app.json.sort_keys = False  # type: ignore[attr-defined]
+    database = Database(used.database)
+    store = Store(database, used.keep_days)
+    store.remove_expired()
+    app.extensions[EXTENSION] = Running(
+        used, database, store, Computations(used.plans_in_memory), datetime.now(UTC)
+    )
+    for part in (start, reading, trains, limits, result, curves, downloads, help):
+        app.register_blueprint(part.pages)
+    app.register_blueprint(api)
+    add_error_answers(app)
+    protect(app)
+    _add_guards(app)
+    _add_words(app)
+    return app
+
+
+def _add_guards(app: Flask) -> None:
+    @app.before_request
+    def guard() -> None:
+        running().clean()
+        if request.method == "POST" and request.blueprint != "api":
+            check_form()
+
+
+def _add_words(app: Flask) -> None:
+    """Give the templates what they all need."""
+    app.jinja_env.trim_blocks = app.jinja_env.lstrip_blocks = True
+    app.jinja_env.globals["frozenset"] = frozenset
+    app.jinja_env.filters.update(
+        show=lambda value, kind: current_measures().show(kind, value),
+        measure=lambda value, kind: current_measures().with_unit(kind, value),
+        day=lambda moment: f"{moment:%Y-%m-%d}",
+        moment=lambda moment: f"{moment:%Y-%m-%d %H:%M} UTC",
+        sentence=words.sentence,
+    )
+
+    @app.context_processor
+    def shared() -> dict[str, Any]:
+        return {
+            "cautions": CAUTIONS,
+            "unverified": UNVERIFIED,
+            "form_token": form_token,
+            "measures": current_measures(),
+            "systems": SYSTEM_WORDS,
+            "statuses": STATUSES,
+            "words": words,
+            "version": __version__,
+            "plan": g.get("plan"),
+            "back_here": _back_here,
+            "marker": lambda number: svg.marker(number, (8.0, 8.0), 5.0, f"class-{number % 6}"),
+            "keep_days": running().config.keep_days,
+        }
+
+
+def _back_here() -> str:
+    """Give the address to which a change of units leads back."""
+    if request.method == "GET":
+        return request.full_path.rstrip("?")
+    plan = g.get("plan")
+    return url_for("start.resume", address=plan.address) if plan else url_for("start.home")

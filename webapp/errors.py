@@ -1,0 +1,106 @@
+"""What a person or a program is told when something goes wrong: a page, or JSON, in the same words.
+
+Never a stack trace: what was not foreseen goes to the log, and the answer carries its reference.
+"""
+
+from __future__ import annotations
+
+import logging
+import secrets
+
+from flask import Flask, Response, jsonify, render_template, request
+from flask.typing import ResponseReturnValue
+from werkzeug.exceptions import HTTPException, RequestEntityTooLarge
+
+from cant.errors import CantError
+from webapp.context import running
+from webapp.security import RefusedError
+from webapp.store import NotThereError
+
+API_PREFIX = "/api/"
+LOG = logging.getLogger("webapp")
+TITLES = {
+    400: "This cannot be used as it is",
+    403: "Refused",
+    404: "Nothing here",
+    405: "Not possible here",
+    413: "Too large",
+    422: "This cannot be used as it is",
+    500: "Something went wrong here",
+}
+
+
+def add_error_answers(app: Flask) -> None:
+    """Register the answers to every kind of error."""
+    app.register_error_handler(NotThereError, _not_there)
+    app.register_error_handler(CantError, _cannot)
+    app.register_error_handler(RefusedError, _refused)
+    app.register_error_handler(RequestEntityTooLarge, _too_large)
+    app.register_error_handler(HTTPException, _http)
+    app.register_error_handler(Exception, _unforeseen)
+
+
+def wants_json() -> bool:
+    """Tell whether the answer should be JSON: on the JSON interface, or where JSON is preferred."""
+    if request.path.startswith(API_PREFIX):
+        return True
+    accepted = request.accept_mimetypes
+    return accepted.best_match(["text/html", "application/json"]) == "application/json"
+
+
+def answer(code: int, message: str) -> Response:
+    """Give an error as JSON or as a page."""
+    if wants_json():
+        made = jsonify({"error": {"status": code, "message": message}})
+    else:
+        title = TITLES.get(code, "This did not work")
+        made = Response(render_template("error.html", title=title, message=message, code=code))
+    made.status_code = code
+    return made
+
+
+def _not_there(error: NotThereError) -> ResponseReturnValue:
+    return answer(404, _sentence(str(error)))
+
+
+def _cannot(error: CantError) -> ResponseReturnValue:
+    return answer(422, _sentence(str(error)))
+
+
+def _refused(error: RefusedError) -> ResponseReturnValue:
+    return answer(403, _sentence(str(error)))
+
+
+def _too_large(_error: RequestEntityTooLarge) -> ResponseReturnValue:
+    largest = running().config.upload_mb
+    message = f"A request may have {largest} MB at most. Send the sheet with the curve list alone, or as csv."
+    return answer(413, message)
+
+
+def _http(error: HTTPException) -> ResponseReturnValue:
+    code = error.code or 500
+    if code < 400:
+        return error.get_response()
+    message = error.description or error.name
+    if code == 404:
+        message = "There is no page at this address."
+    made = answer(code, message)
+    if code == 405 and getattr(error, "valid_methods", None):
+        made.headers["Allow"] = ", ".join(sorted(error.valid_methods))  # type: ignore[attr-defined]
+    return made
+
+
+def _unforeseen(error: Exception) -> ResponseReturnValue:
+    reference = secrets.token_hex(4)
+    LOG.error("Request %s %s failed, reference %s", request.method, request.path, reference, exc_info=error)
+    message = (
+        f"The service met something that it was not made for. "
+        f"Who runs it finds the details in its log under the reference {reference}."
+    )
+    return answer(500, message)
+
+
+def _sentence(text: str) -> str:
+    """Give a message as a sentence."""
+    shown = text[:1].upper() + text[1:]
+    return shown if shown.endswith((".", "?", "!")) else f"{shown}."

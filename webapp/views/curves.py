@@ -1,0 +1,42 @@
+"""The page of one curve: everything the plan knows of it, and its canted section."""
+
+from __future__ import annotations
+
+from flask import Blueprint, render_template
+from flask.typing import ResponseReturnValue
+
+from webapp import curve_view, line_view
+from webapp.context import computed_of, current_measures, stored
+from webapp.store import NotThereError
+
+pages = Blueprint("curves", __name__, url_prefix="/plans/<address>")
+
+
+@pages.get("/curves/<int:number>")
+def show(address: str, number: int) -> ResponseReturnValue:
+    """Show a curve by its number in the list, counted from 1."""
+    plan = stored(address)
+    computed = computed_of(plan)
+    index = number - 1
+    if not computed.listing.has(index):
+        message = f"this plan has no curve number {number} that could be assessed"
+        raise NotThereError(message)
+    record = computed.planned.record(index)
+    before, after = computed.listing.neighbours(index)
+    return render_template(
+        "curve.html",
+        record=record,
+        number=number,
+        before=before,
+        after=after,
+        names=computed.planned.plan.curves.curve,
+        section=curve_view.section(computed, record, current_measures()),
+        today_section=curve_view.section(computed, record, current_measures(), today=True),
+        heights_assumed=curve_view.heights_assumed(computed, record),
+        nearby=line_view.around(computed, plan.address, index, current_measures()),
+        classes=curve_view.class_rows(record),
+        transitions=curve_view.transition_rows(record),
+        track=computed.listing.track_of(index),
+        limits=computed.planned.plan.limits,
+        settings=computed.planned.plan.settings,
+    )

@@ -1,0 +1,61 @@
+"""How a list was read: columns with their samples, questions, problems by cell; answers and corrections."""
+
+from __future__ import annotations
+
+from flask import Blueprint, flash, redirect, render_template, request, url_for
+from flask.typing import ResponseReturnValue
+
+from cant.errors import CantError
+from webapp import reading_form
+from webapp.context import file_of, reading_of, running, stored
+from webapp.deciding import check_reading
+from webapp.decisions import as_text
+from webapp.security import owner
+
+pages = Blueprint("reading", __name__, url_prefix="/plans/<address>")
+SHOWN_PROBLEMS = 200
+
+
+@pages.get("/list")
+def show(address: str) -> ResponseReturnValue:
+    """Show how the list is understood."""
+    return _page(address, "")
+
+
+def _page(address: str, problem: str) -> str:
+    plan = stored(address)
+    reading = reading_of(plan)
+    return render_template(
+        "reading.html",
+        reading=reading,
+        sheets=reading_form.shown_sheets(reading),
+        others=reading_form.other_sheets(reading),
+        questions=reading_form.shown_questions(reading),
+        problem=problem,
+        rejected=reading.rejected[:SHOWN_PROBLEMS],
+        good=int((~reading.curves.rejected).sum()),
+        answered=bool(plan.decided.answers),
+    )
+
+
+@pages.post("/list")
+def answer(address: str) -> ResponseReturnValue:
+    """Take answers and corrections; those that the file cannot follow are not kept."""
+    plan = stored(address)
+    reading = reading_of(plan)
+    answers = reading_form.answers(request.form, reading, plan.decided.answers)
+    try:
+        check_reading(plan, file_of(plan), answers=answers)
+    except CantError as error:
+        return _page(address, str(error)), 422
+    running().store.decide(owner(), address, {"answers": as_text(answers)})
+    flash("The list has been read again with your answers.")
+    return redirect(url_for("reading.show", address=address), 303)
+
+
+@pages.post("/list/forget")
+def forget(address: str) -> ResponseReturnValue:
+    """Take all answers and corrections back."""
+    running().store.decide(owner(), address, {"answers": "null"})
+    flash("Your answers have been taken back; the list is read as it was first.")
+    return redirect(url_for("reading.show", address=address), 303)
