@@ -56,7 +56,9 @@ class _FileRow(BaseModel):
     @field_validator("speed_unit")
     @classmethod
     def _is_speed(cls, symbol: str) -> str:
-        ratio(symbol, "km/h")
+        if symbol not in UNITS or UNITS[symbol].dimension != "speed":
+            message = f"'{symbol}' is no unit of speed"
+            raise ValueError(message)
         return symbol
 
     @model_validator(mode="after")

@@ -37,5 +37,5 @@ def test_arc_definition() -> None:
     ("kind", "radius"), [("100 ft arc", 1746.4), ("20 m chord", 1145.9), ("20 m arc", 1145.9)]
 )
 def test_one_degree_of_other_kinds(kind: str, radius: float) -> None:
-    """A Brazilian railway engineering manual page gives 20 m chords: a factor of 1.5 between the countries."""
+    """A Brazilian railway engineering manual page gives 20 m chords: a factor of 1.5 between countries."""
     assert radius_from_degree(1, kind) == pytest.approx(radius, abs=0.05)
