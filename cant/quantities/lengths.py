@@ -137,7 +137,7 @@ def speed_for_rate(
     Returns
     -------
     ndarray
-        V [km/h], broadcast shape.
+        V [km/h], broadcast shape; ``inf`` on straight track.
 
     Notes
     -----
@@ -157,4 +157,5 @@ def speed_for_rate(
         for _ in range(20):
             step = divide((curvature * speed**2 - cant) * speed - room, 3 * curvature * speed**2 - cant)
             speed = np.where(np.isfinite(step), speed - step, speed)
-    return speed[()]
+    straight = (curvature == 0) & ~np.isnan(cant + room)
+    return np.where(straight, np.inf, speed)[()]

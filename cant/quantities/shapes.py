@@ -29,7 +29,7 @@ _PROFILES: Mapping[str, Callable[[FloatArray], FloatArray]] = {
     "sine": lambda t: t - np.sin(2 * _PI * t) / (2 * _PI),
 }
 _SLOPES: Mapping[str, Callable[[FloatArray], FloatArray]] = {
-    "linear": np.ones_like,
+    "linear": lambda t: 1 + 0 * t,
     "bloss": lambda t: 6 * t * (1 - t),
     "cosine": lambda t: _PI / 2 * np.sin(_PI * t),
     "helmert": lambda t: 4 * np.minimum(t, 1 - t),
