@@ -163,13 +163,10 @@ def settings_for(settings: Settings, limits: LimitSet) -> Settings:
         With the document's rail spacing and printed constant where the user states neither, and its units
         where he names none.
     """
-    found: dict[str, Any] = {}
-    if settings.rail_spacing_mm is None and settings.equilibrium_constant is None:
-        found["rail_spacing_mm"] = limits.rail_spacing_mm
-        found["equilibrium_constant"] = limits.equilibrium_constant
-    if "units" not in settings.model_fields_set:
-        found["units"] = limits.units
-    return settings.model_copy(update=found)
+    completed = settings.with_standard(limits.rail_spacing_mm, limits.equilibrium_constant)
+    if "units" in settings.model_fields_set:
+        return completed
+    return completed.model_copy(update={"units": limits.units})
 
 
 def plan_frames(

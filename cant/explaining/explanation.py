@@ -60,15 +60,17 @@ class Explanation:
         """Give what each method would set; empty where they were not compared."""
         return []
 
-    def reason(self, index: int) -> str:
+    def reason(self, index: int, record: dict[str, Any] | None = None) -> str:
         """Give the reason for a curve's cant in one sentence.
 
         Parameters
         ----------
         index : int
             Index of a curve that was not rejected.
+        record : dict, optional
+            Its record, where it is at hand.
         """
-        record = self._plan.record(index)
+        record = record or self._plan.record(index)
         if record["status"] == "not assessed":
             texts = [f.text for f in self.findings(index) if f.severity == "stop"]
             return " ".join(texts) or "Not assessed."

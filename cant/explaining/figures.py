@@ -1,18 +1,19 @@
 """Figures that no limit asks for and an engineer does: exact forms, wheel loads, jerk, roll, smallest radius.
 
-Added to the records of a plan in batches, so that the functions of :mod:`cant.quantities` see long arrays.
+Added to the records of a plan in batches, so that the functions of :mod:`cant.quantities` see whole arrays.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Sequence
+from collections.abc import Callable, Sequence
 from typing import Any
 
 import numpy as np
 
 from cant.model.curves import FloatArray, none_if_nan
-from cant.model.settings import Settings
-from cant.model.traffic import Traffic
+from cant.planning import Plan
+from cant.planning.line import Line
+from cant.planning.rules import Asked
 from cant.quantities.inclined_plane import equilibrium_cant_exact, unbalanced_acceleration_exact
 from cant.quantities.kinematics import centripetal_acceleration
 from cant.quantities.loads import wheel_load_shift, wheel_load_shift_at_rest
@@ -20,115 +21,92 @@ from cant.quantities.speeds import smallest_radius
 from cant.quantities.transitions import jerk, roll_rate
 
 Record = dict[str, Any]
+Classes = Callable[[Record], list[Record]]
 
 
-class Figures:
-    """Adds figures to records of one plan.
+def add_figures(plan: Plan, indices: Sequence[int], records: Sequence[Record]) -> None:
+    """Add figures to records of a plan, in place.
 
     Parameters
     ----------
-    traffic : Traffic
-        For the heights of the centres of gravity.
-    settings : Settings
-        For rail spacing and constant.
+    plan : Plan
+        The plan.
+    indices : sequence of int
+        Curves, n of them.
+    records : sequence of dict
+        Their records as :meth:`Plan.record` gives them. Each class of ``classes`` and of ``today.classes``
+        gains ``equilibrium_cant_exact_mm`` [mm], ``centripetal_acceleration_ms2`` and
+        ``unbalanced_acceleration_exact_ms2`` [m/s2], ``wheel_load_shift`` and ``wheel_load_shift_at_rest``
+        [-] (None without a height of the centre of gravity), and ``smallest_radius_m`` [m]: the radius at
+        which it would just keep its deficiency limit at this cant and its run speed (None where deficiency is
+        not limited). Each class of a transition gains ``jerk_ms3`` [m/s3], from the change of deficiency,
+        and ``roll_rate_deg_s`` [deg/s].
     """
-
-    def __init__(self, traffic: Traffic, settings: Settings) -> None:
-        self._traffic = traffic
-        self._settings = settings
-        self._heights: dict[tuple[str, str], dict[str, float]] = {}
-
-    def add(self, records: Sequence[Record]) -> None:
-        """Add the figures to records, in place.
-
-        Parameters
-        ----------
-        records : sequence of dict
-            Records of curves as :meth:`Plan.record` gives them. Each class of ``classes`` and of
-            ``today.classes`` gains ``equilibrium_cant_exact_mm`` [mm], ``centripetal_acceleration_ms2`` and
-            ``unbalanced_acceleration_exact_ms2`` [m/s2], ``wheel_load_shift`` and
-            ``wheel_load_shift_at_rest`` [-] (None without a height of the centre of gravity), and
-            ``smallest_radius_m`` [m] (None where its deficiency is not limited). Each class of a transition
-            gains ``jerk_ms3`` [m/s3] and ``roll_rate_deg_s`` [deg/s].
-        """
-        self._add_to_classes(records)
-        self._add_to_transitions(records)
-
-    def _height(self, record: Record, name: str) -> float:
-        key = (record["line"], record["track"])
-        if key not in self._heights:
-            here = self._traffic.on(*key)
-            self._heights[key] = {
-                n: np.nan if row.centre_of_gravity_m is None else row.centre_of_gravity_m
-                for n, row in here.items()
-            }
-        return self._heights[key].get(name, np.nan)
-
-    def _add_to_classes(self, records: Sequence[Record]) -> None:
-        entries, given = [], []
-        for record in records:
-            for cant_mm, classes in (
-                (record["recommended_cant_mm"], record["classes"]),
-                (record["existing_cant_mm"], record["today"]["classes"]),
-            ):
-                for entry in classes:
-                    limit = entry.get("deficiency_limit_mm")
-                    entries.append(entry)
-                    given.append(
-                        (
-                            entry["run_speed_kmh"],
-                            record["radius_m"],
-                            cant_mm,
-                            self._height(record, entry["class"]),
-                            limit,
-                        )
-                    )
-        if not entries:
-            return
-        speed, radius, cant_mm, height, limit = np.array(given, dtype=np.float64).T
-        spacing = self._settings.spacing_mm
-        unbalanced = np.array([_unbalanced(entry) for entry in entries], dtype=np.float64)
-        _put(entries, "equilibrium_cant_exact_mm", equilibrium_cant_exact(speed, radius, spacing))
-        _put(entries, "centripetal_acceleration_ms2", centripetal_acceleration(speed, radius))
-        _put(
-            entries,
-            "unbalanced_acceleration_exact_ms2",
-            unbalanced_acceleration_exact(speed, radius, cant_mm, spacing),
-        )
-        _put(entries, "wheel_load_shift", wheel_load_shift(unbalanced, height, spacing))
-        _put(entries, "wheel_load_shift_at_rest", wheel_load_shift_at_rest(cant_mm, height, spacing))
-        _put(
-            entries,
-            "smallest_radius_m",
-            smallest_radius(speed, cant_mm, limit, self._settings.constant),
-        )
-
-    def _add_to_transitions(self, records: Sequence[Record]) -> None:
-        entries = [
-            entry
-            for record in records
-            for end in record.get("transitions", {}).values()
-            if end is not None
-            for entry in end.get("classes", [])
-        ]
-        if not entries:
-            return
-        spacing = self._settings.spacing_mm
-        of_deficiency = _take(entries, "rate_of_change_of_unbalance_mm_s")
-        of_cant = _take(entries, "rate_of_change_of_cant_mm_s")
-        _put(entries, "jerk_ms3", jerk(of_deficiency, spacing))
-        _put(entries, "roll_rate_deg_s", np.degrees(roll_rate(of_cant, spacing)))
+    line = plan.outcome.line.take(np.asarray(indices, dtype=np.int64))
+    names = plan.traffic.class_names
+    exceptional = plan.settings.allows_exceptional
+    views: tuple[tuple[str, Classes], ...] = (
+        ("recommended_cant_mm", lambda record: record["classes"]),
+        ("existing_cant_mm", lambda record: record["today"]["classes"]),
+    )
+    for cant_key, classes in views:
+        cant = np.array([[record[cant_key]] for record in records], dtype=np.float64)
+        speed = _gather(records, classes, names, "run_speed_kmh")
+        unbalanced = _gather(records, classes, names, "equilibrium_cant_mm") - cant
+        for key, values in _of_classes(line, cant, speed, unbalanced, exceptional).items():
+            _spread(records, classes, names, key, values)
+    for side in ("in", "out"):
+        _add_to_ends(line, records, side, names)
 
 
-def _unbalanced(entry: Record) -> float | None:
-    deficiency, excess = entry["deficiency_mm"], entry["excess_mm"]
-    return None if deficiency is None else deficiency - excess
+def _of_classes(
+    line: Line, cant_mm: FloatArray, speed_kmh: FloatArray, unbalanced_mm: FloatArray, exceptional: bool
+) -> dict[str, FloatArray]:
+    """Work out the figures of each class, shape (n, k)."""
+    spacing, height, radius = line.spacing_mm, line.gravity_height_m, line.radius_m
+    limit = Asked(line, np.nan_to_num(speed_kmh), exceptional).limit("cant deficiency").value
+    return {
+        "equilibrium_cant_exact_mm": equilibrium_cant_exact(speed_kmh, radius, spacing),
+        "centripetal_acceleration_ms2": centripetal_acceleration(speed_kmh, radius),
+        "unbalanced_acceleration_exact_ms2": unbalanced_acceleration_exact(
+            speed_kmh, radius, cant_mm, spacing
+        ),
+        "wheel_load_shift": wheel_load_shift(unbalanced_mm, height, spacing),
+        "wheel_load_shift_at_rest": wheel_load_shift_at_rest(cant_mm, height, spacing),
+        "smallest_radius_m": np.where(
+            np.isfinite(limit), smallest_radius(speed_kmh, cant_mm, limit, line.constant), np.nan
+        ),
+    }
 
 
-def _take(entries: Iterable[Record], key: str) -> FloatArray:
-    return np.array([entry.get(key) for entry in entries], dtype=np.float64)
+def _add_to_ends(line: Line, records: Sequence[Record], side: str, names: list[str]) -> None:
+    def classes(record: Record) -> list[Record]:
+        end = record["transitions"].get(side)
+        return list(end["classes"]) if end else []
+
+    of_cant = _gather(records, classes, names, "rate_of_change_of_cant_mm_per_s")
+    of_deficiency = _gather(records, classes, names, "rate_of_change_of_cant_deficiency_mm_per_s")
+    _spread(records, classes, names, "jerk_ms3", jerk(of_deficiency, line.spacing_mm))
+    turning = np.degrees(roll_rate(of_cant, line.spacing_mm))
+    _spread(records, classes, names, "roll_rate_deg_s", turning)
 
 
-def _put(entries: Sequence[Record], key: str, values: FloatArray) -> None:
-    for entry, value in zip(entries, values, strict=True):
-        entry[key] = none_if_nan(value)
+def _gather(records: Sequence[Record], classes: Classes, names: list[str], key: str) -> FloatArray:
+    """Put a figure of the classes into an array, shape (n, k); nan where a class has none."""
+    column = {name: j for j, name in enumerate(names)}
+    values = np.full((len(records), len(names)), np.nan)
+    for i, record in enumerate(records):
+        for entry in classes(record):
+            if entry[key] is not None:
+                values[i, column[entry["class"]]] = entry[key]
+    return values
+
+
+def _spread(
+    records: Sequence[Record], classes: Classes, names: list[str], key: str, values: FloatArray
+) -> None:
+    column = {name: j for j, name in enumerate(names)}
+    whole = np.broadcast_to(values, (len(records), len(names)))
+    for i, record in enumerate(records):
+        for entry in classes(record):
+            entry[key] = none_if_nan(whole[i, column[entry["class"]]])

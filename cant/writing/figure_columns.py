@@ -80,16 +80,18 @@ FIGURES: tuple[Column, ...] = (
 
 END: tuple[Column, ...] = (
     Column("End", "", path("side"), 8, "in or out: the end at the smaller or the greater chainage."),
-    Column("Class", "", path("class"), 16, "Class of train; blank: of the curve itself."),
-    Column("Shared", "", path("shared_with"), 12, "Curve with which the transition is shared."),
+    Column("Class", "", path("class"), 16, "Class of train."),
+    Column("Kind", "", path("kind"), 12, "to straight, shared with the next curve, none, or not known."),
     Column("Length", "length", path("length_m"), 9, "Length of the transition; blank: not known."),
     Column("Cant ramp", "length", path("ramp_m"), 9, "Length of the cant ramp."),
     Column("Cant gradient", "gradient", path("cant_gradient_mm_per_m"), 10, "Steepest, with the shape."),
-    Column("Rate of change of cant", "rate", path("rate_of_change_of_cant_mm_s"), 12, "At the run speed."),
+    Column(
+        "Rate of change of cant", "rate", path("rate_of_change_of_cant_mm_per_s"), 12, "At the run speed."
+    ),
     Column(
         "Rate of change of deficiency",
         "rate",
-        path("rate_of_change_of_deficiency_mm_s"),
+        path("rate_of_change_of_cant_deficiency_mm_per_s"),
         12,
         "At the run speed; excess counts as deficiency 0.",
     ),
@@ -97,6 +99,20 @@ END: tuple[Column, ...] = (
     Column(
         "Roll rate", "angular rate", path("roll_rate_deg_s"), 9, "Speed at which the track tilts the train."
     ),
-    Column("Needed length", "length", path("needed_length_m"), 9, "Length that the proposed cant needs."),
+    Column(
+        "Jump of deficiency",
+        "cant exact",
+        path("abrupt_change_of_cant_deficiency_mm"),
+        10,
+        "Where there is no transition.",
+    ),
+    Column(
+        "Ramp needed", "length", path("ramp_needed_m"), 9, "Cant ramp that the proposed cant needs at least."
+    ),
+    Column("Ramp needed for", "", path("ramp_needed_by"), 14, "Class that needs it; blank: its gradient."),
+    Column(
+        "Transition needed", "length", path("transition_needed_m"), 10, "Transition needed for deficiency."
+    ),
+    Column("Transition needed for", "", path("transition_needed_by"), 14, "Class that needs it."),
 )
 """One row an end of a curve and class; the record is a class of a transition with ``side`` put to it."""

@@ -71,8 +71,8 @@ class PlanSheets:
                 figures = {**entry, "cant": which, "status": record["status"]}
                 self._figures.row([*place, *(column.cell(figures, self._display) for column in FIGURES)])
         for side, end in record.get("transitions", {}).items():
-            if end is not None:
-                shown = {**end, "side": side}
+            for entry in end["classes"]:
+                shown = {**end, **entry, "side": side}
                 self._ends.row([*place, *(column.cell(shown, self._display) for column in END)])
         names = [record["line"], record["track"], record["curve"]]
         self._write_findings(names, record["findings"])

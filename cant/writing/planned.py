@@ -8,16 +8,15 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
-from functools import cached_property
 from typing import TYPE_CHECKING, Any
 
-from cant.explaining.figures import Figures
+from cant.explaining.figures import add_figures
 from cant.model.display import Display
 from cant.model.reading import Reading
 from cant.writing import document, frames
 
 _BATCH = 256
-"""Curves whose records are made together: long arrays for the figures, little memory."""
+"""Curves whose records are made together: whole arrays for the figures, little memory."""
 
 if TYPE_CHECKING:
     import pandas as pd
@@ -57,29 +56,24 @@ class PlannedLine:
         index : int
             Index of the curve in the list that was read, one of ``plan.assessed``.
         """
-        return self._batch([index])[0]
+        return self._finished([index], [self.plan.record(index)])[0]
 
     def records(self) -> Iterator[dict[str, Any]]:
         """Give the records of all curves that were not rejected, in input order, one at a time."""
         chosen = [int(index) for index in self.plan.assessed]
         for start in range(0, len(chosen), _BATCH):
-            yield from self._batch(chosen[start : start + _BATCH])
+            batch = chosen[start : start + _BATCH]
+            yield from self._finished(batch, list(self.plan.records(batch)))
 
-    def _batch(self, indices: list[int]) -> list[dict[str, Any]]:
-        records = []
-        for index in indices:
-            record = self.plan.record(index)
-            record["reason"] = self.explanation.reason(index)
+    def _finished(self, indices: list[int], records: list[dict[str, Any]]) -> list[dict[str, Any]]:
+        """Add words and further figures to records of the planner."""
+        for index, record in zip(indices, records, strict=True):
+            record["reason"] = self.explanation.reason(index, record)
             record["findings"] = [finding.as_json() for finding in self.explanation.findings(index)]
             record["options"] = self.explanation.options(index)
             record["methods"] = self.explanation.methods(index)
-            records.append(record)
-        self._figures.add(records)
+        add_figures(self.plan, indices, records)
         return records
-
-    @cached_property
-    def _figures(self) -> Figures:
-        return Figures(self.plan.traffic, self.plan.settings)
 
     def document(self) -> dict[str, Any]:
         """Give the JSON of the plan as one dict (contract: metric always)."""
