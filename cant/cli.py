@@ -31,7 +31,7 @@ EXIT_REFUSED = 2
 _file = click.Path(path_type=Path)
 
 
-@click.group(context_settings={"help_option_names": ["-h", "--help"]})
+@click.group(no_args_is_help=False, context_settings={"help_option_names": ["-h", "--help"]})
 @click.version_option(__version__, prog_name="cant")
 def cant() -> None:
     """Set the cant of railway curves for mixed traffic: plan, reasons, limits, and a workbook to check.

@@ -69,7 +69,7 @@ WHOLE_TABLE: list[tuple[str, Bend, tuple[str, ...]]] = [
     ("unknown method", added("Settings", ["Method", "guess"]), ("Settings", "B4", "guess", "rms")),
     ("unknown tier", put("Settings", 3, 1, "superb"), ("Settings", "B3", "superb", "normal")),
     ("negative speed of a class", put("Traffic", 2, 2, -140), ("Traffic", "C2", "-140")),
-    ("class without speed", put("Traffic", 2, 2, None), ("Traffic", "C2", "Fast")),
+    ("class without speed", put("Traffic", 2, 2, None), ("Traffic", "A2", "Fast", "Speed")),
     ("negative number of trains", put("Traffic", 2, 3, -1), ("Traffic", "D2", "-1")),
     ("class twice", put("Traffic", 3, 0, "Fast"), ("Traffic", "A3", "Fast")),
     ("roll coefficient missing", put("Traffic", 2, 5, None), ("Traffic", "Fast", "felt acceleration")),
