@@ -52,6 +52,14 @@ class Settings(BaseModel):
     maintenance_allowance_mm: NonNegative | None = None
     units: str = "metric"
 
+    def with_standard(self, rail_spacing_mm: float | None, equilibrium_constant: float | None) -> Settings:
+        """Take over what a standard lays down, where these settings say neither."""
+        if self.rail_spacing_mm is not None or self.equilibrium_constant is not None:
+            return self
+        return self.model_copy(
+            update={"rail_spacing_mm": rail_spacing_mm, "equilibrium_constant": equilibrium_constant}
+        )
+
     @property
     def constant(self) -> float:
         """C of D_EQ = C V^2 / R [mm, km/h, m]: as printed, else e / (12.96 g)."""

@@ -66,6 +66,15 @@ class Passed:
             gathered[key] = np.maximum(gathered[key], worst) if key in gathered else worst
         return cls(gathered)
 
+    def without_cant(self, blind: BoolArray) -> Passed:
+        """Leave out, where cants are not known, what depends on them: all but an abrupt change."""
+        return Passed(
+            {
+                key: over if key[1] == "abrupt change of cant deficiency" else np.where(blind, 0.0, over)
+                for key, over in self.by_rule.items()
+            }
+        )
+
     @property
     def count(self) -> FloatArray:
         """Number of limits passed, shape (..., n)."""
@@ -164,28 +173,13 @@ class Speeds:
     ----------
     permissible_kmh, run_kmh : ndarray
         nan where the class does not run.
+    own_kmh : ndarray
+        The speed run as far as the curve by itself decides.
     """
 
     permissible_kmh: FloatArray
     run_kmh: FloatArray
-
-
-def combine(line: Line, parts: Iterable[Permitted]) -> Speeds:
-    """Put together what several sets of rules permit on the same curves."""
-    up_to: FloatArray | None = None
-    planned: BoolArray | None = None
-    for part in parts:
-        up_to = part.up_to_kmh if up_to is None else np.minimum(up_to, part.up_to_kmh)
-        planned = part.planned if planned is None else planned & part.planned
-    if up_to is None or planned is None:
-        message = "nothing to combine"
-        raise ValueError(message)
-    together = Permitted(up_to, planned)
-    off = ~line.runs
-    return Speeds(
-        np.where(off, np.nan, together.speed(line.planned_kmh)),
-        np.where(off, np.nan, together.run_speed(line.planned_kmh)),
-    )
+    own_kmh: FloatArray
 
 
 def line_speeds(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool) -> Speeds:
@@ -211,9 +205,9 @@ def line_speeds(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool
     alone = permitted_alone(line, cant, steps, exceptional)
     up_to, planned = alone.up_to_kmh.copy(), alone.planned.copy()
     known = ~np.isnan(cant_mm)
+    own = alone.run_speed(line.planned_kmh)
     pairs = pairs.take(np.flatnonzero(known[pairs.first] & known[pairs.second]))
     if len(pairs):
-        own = alone.run_speed(line.planned_kmh)
         shared = permitted_shared(
             Meeting.of(line, pairs),
             (cant[pairs.first], cant[pairs.second]),
@@ -229,6 +223,7 @@ def line_speeds(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool
     return Speeds(
         np.where(off, np.nan, together.speed(line.planned_kmh)),
         np.where(off, np.nan, together.run_speed(line.planned_kmh)),
+        np.where(off, np.nan, own),
     )
 
 

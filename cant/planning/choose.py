@@ -243,7 +243,9 @@ class _Search:
                 continue
             after = curves[i + 1]
             table = self._table(meetings[i], curve, after)
-            free = table.hard & _unhindered(curve, table.before, 0) & _unhindered(after, table.after, 1)
+            free: BoolArray = (
+                table.hard & _unhindered(curve, table.before, 0) & _unhindered(after, table.after, 1)
+            )
             count, over = pair_approvals(
                 meetings[i], curve.cant_mm, after.cant_mm, curve.run_kmh, after.run_kmh
             )
@@ -254,13 +256,11 @@ class _Search:
 
 def _unhindered(curve: _Curve, beside: Permitted, axis: int) -> BoolArray:
     """Tell which pairs (a, b) leave a curve's speeds as they are by itself; its levels lie on an axis."""
-    up_to, planned, run = (
-        np.expand_dims(array, 1 - axis)
-        for array in (curve.alone.up_to_kmh, curve.alone.planned, curve.run_kmh)
-    )
+    up_to = np.expand_dims(curve.alone.up_to_kmh, 1 - axis)
+    planned = np.expand_dims(curve.alone.planned, 1 - axis)
+    run = np.expand_dims(curve.run_kmh, 1 - axis)
     together = Permitted(np.minimum(up_to, beside.up_to_kmh), planned & beside.planned)
-    with np.errstate(invalid="ignore"):
-        same: BoolArray = np.asarray(together.run_speed(curve.line.planned_kmh) == run)
+    same = np.equal(together.run_speed(curve.line.planned_kmh), run)
     return np.asarray(np.logical_or(same, ~curve.line.runs).all(axis=-1))
 
 

@@ -102,6 +102,8 @@ class Neighbourhood:
     order : ndarray of int
         Curves with known chainage, by line, track and chainage.
     pairs : Pairs
+    descending : ndarray of bool, shape (n,)
+        The line and track is listed against the chainage: its transition "in" is at the greater one.
     contradictory : ndarray of bool, shape (n,)
         Chainages contradict each other: not to be assessed.
     weight_length_m : ndarray, shape (n,)
@@ -117,6 +119,7 @@ class Neighbourhood:
     shared: BoolArray
     order: IntArray
     pairs: Pairs
+    descending: BoolArray
     contradictory: BoolArray
     weight_length_m: FloatArray
     findings: list[Finding] = field(default_factory=list)
@@ -245,6 +248,7 @@ def find_neighbours(curves: CurveList) -> Neighbourhood:
         shared=shared,
         order=order,
         pairs=pairs,
+        descending=descending,
         contradictory=contradictory,
         weight_length_m=weight_lengths(curves),
         findings=findings,
@@ -353,6 +357,7 @@ def forget(neighbourhood: Neighbourhood, dropped: BoolArray) -> Neighbourhood:
         shared=shared,
         order=neighbourhood.order,
         pairs=kept,
+        descending=neighbourhood.descending,
         contradictory=neighbourhood.contradictory,
         weight_length_m=neighbourhood.weight_length_m,
         findings=neighbourhood.findings,

@@ -79,6 +79,18 @@ class Outcome:
         return self.neighbourhood.pairs
 
     @cached_property
+    def _findings_by_curve(self) -> dict[int, list[Finding]]:
+        found: dict[int, list[Finding]] = {}
+        for finding in self.findings:
+            if finding.curve is not None:
+                found.setdefault(finding.curve, []).append(finding)
+        return found
+
+    def findings_of(self, index: int) -> list[Finding]:
+        """Give the findings on one curve."""
+        return self._findings_by_curve.get(index, [])
+
+    @cached_property
     def exceptional(self) -> BoolArray:
         """Curves that pass, or whose transitions pass, a limit at its normal value, shape (n,)."""
         over = self.proposed.passed.count > 0
@@ -129,15 +141,16 @@ class Outcome:
         today = np.nan_to_num(self.line.cant_today_mm)
         found = passed_alone(self.line, today, self.line.planned_kmh, exceptional, sites=True)
         kept = np.asarray(found.count == 0)
-        known = ~np.isnan(self.curves.cant_mm)
-        both = known[self.pairs.first] & known[self.pairs.second]
-        pairs = self.pairs.take(np.flatnonzero(both))
+        pairs = self.pairs
         if len(pairs):
             meeting = Meeting.of(self.line, pairs)
             cants = (today[pairs.first], today[pairs.second])
-            between = passed_shared(meeting, cants, meeting.planned_kmh, exceptional, sites=True).count == 0
-            np.logical_and.at(kept, pairs.first, between)
-            np.logical_and.at(kept, pairs.second, between)
+            between = passed_shared(meeting, cants, meeting.planned_kmh, exceptional)
+            unknown = np.isnan(self.curves.cant_mm)
+            blind = unknown[pairs.first] | unknown[pairs.second]
+            held = np.asarray(between.without_cant(blind).count == 0)
+            np.logical_and.at(kept, pairs.first, held)
+            np.logical_and.at(kept, pairs.second, held)
         return kept
 
 

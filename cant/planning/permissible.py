@@ -181,6 +181,17 @@ def permitted_alone(line: Line, cant_mm: FloatArray, steps: FloatArray, exceptio
     return Permitted(up_to, held)
 
 
+def slows_after(meeting: Meeting, own_kmh: tuple[FloatArray, FloatArray]) -> BoolArray:
+    """Tell where a transition binds the curve after it, shape (..., m, k); elsewhere it binds the one before.
+
+    It binds where the class is slower by itself; where alike, the shorter curve; then the one before.
+    """
+    shorter_after = meeting.after.weight_length_m < meeting.before.weight_length_m
+    slower_after = own_kmh[1] < own_kmh[0] - _SLACK
+    alike = np.abs(own_kmh[1] - own_kmh[0]) <= _SLACK
+    return np.asarray(slower_after | (alike & shorter_after))
+
+
 def permitted_shared(
     meeting: Meeting,
     cant_mm: tuple[FloatArray, FloatArray],
@@ -207,10 +218,7 @@ def permitted_shared(
         Shape (..., m, k). One curve slows for a transition, not both: on the other one it permits anything.
     """
     lines = (meeting.before, meeting.after)
-    shorter_after = lines[1].weight_length_m < lines[0].weight_length_m
-    slower_after = own_kmh[1] < own_kmh[0] - _SLACK
-    alike = np.abs(own_kmh[1] - own_kmh[0]) <= _SLACK
-    on_after = slower_after | (alike & shorter_after)
+    on_after = slows_after(meeting, own_kmh)
     shape = on_after.shape
     other = np.where(on_after, own_kmh[0], own_kmh[1])
     step = np.where(on_after, steps[1], steps[0])
@@ -233,7 +241,7 @@ def _shared_held(
     return held
 
 
-def _shared_gap(meeting: Meeting, speed_kmh: FloatArray, on_after: BoolArray, exceptional: bool) -> BoolArray:
+def shared_gap(meeting: Meeting, speed_kmh: FloatArray, on_after: BoolArray, exceptional: bool) -> BoolArray:
     """Tell where the limits of the curve that slows have a gap over the transition."""
     ramped, long = ~meeting.equal_cants, meeting.length_m > 0
     gaps = []
@@ -277,7 +285,7 @@ def _scan(
         trial = count * pace
         speed = np.minimum(trial, other)
         held = _shared_held(part, cants, speed, exceptional)
-        held &= ~(_shared_gap(part, speed, after, exceptional) & (speed > planned + _SLACK))
+        held &= ~(shared_gap(part, speed, after, exceptional) & (speed > planned + _SLACK))
         result = np.where(alive & ~held, (count - 1) * pace, result)
         alive &= held & (trial < other - _SLACK) & (trial < FASTEST_KMH - _SLACK)
         count += 1
@@ -327,13 +335,12 @@ def _largest_deficiency_rate(
 
 def lowest_speeds(line: Line, cant_mm: FloatArray, exceptional: bool) -> FloatArray:
     """Give the speed below which excess goes over its limit [km/h], shape (..., n, k); 0 where never."""
-    edges = [e for e in line.table.speed_edges(("cant excess",)) if e < FASTEST_KMH]
+    edges = line.table.speed_edges(("cant excess",))
     lowest: FloatArray = np.zeros(np.broadcast_shapes(cant_mm.shape, line.runs.shape))
-    for low, high in zip([0.0, *edges], [*edges, FASTEST_KMH], strict=True):
+    for low, high in zip([0.0, *edges], [*edges, np.inf], strict=True):
         limit = Asked(line, np.full((1, 1), high), exceptional).limit("cant excess").value
         with np.errstate(invalid="ignore"):
             square = np.maximum(cant_mm - limit, 0.0) * line.radius_m / line.constant
         here = np.minimum(np.sqrt(square), high)
-        reachable = (here > low) & (low < np.nan_to_num(line.planned_kmh))
-        lowest = np.where(reachable, np.maximum(lowest, here), lowest)
+        lowest = np.where(here > low, np.maximum(lowest, here), lowest)
     return lowest
