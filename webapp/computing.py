@@ -8,14 +8,18 @@ from __future__ import annotations
 
 import threading
 from collections import OrderedDict
-from collections.abc import Callable
-from dataclasses import dataclass
-from typing import Generic, TypeVar
+from collections.abc import Callable, Sequence
+from dataclasses import replace
+from typing import Any, Generic, TypeVar
 
 from cant import service
+from cant.explaining import explain
+from cant.model.plan import Finding
 from cant.model.reading import Reading
+from cant.planning import Plan
 from cant.service import PlannedLine
 from webapp.listing import Listing
+from webapp.measures import SYSTEMS
 from webapp.store import StoredPlan
 from webapp.tables import TRAFFIC_FILE, traffic_csv
 
@@ -63,12 +67,44 @@ class Latest(Generic[Kept]):
         return value
 
 
-@dataclass(frozen=True)
 class Computed:
-    """A plan as computed, with the list that its pages sort and search."""
+    """A plan as computed, its list, and its words in either system of units.
 
-    planned: PlannedLine
-    listing: Listing
+    Parameters
+    ----------
+    planned : PlannedLine
+        In the units of its own settings.
+    """
+
+    def __init__(self, planned: PlannedLine) -> None:
+        self.planned = planned
+        self.listing = Listing(planned)
+        self._shown: Latest[PlannedLine] = Latest(len(SYSTEMS))
+
+    def shown_in(self, system: str) -> PlannedLine:
+        """Give the same plan with its words in a system of units; its numbers are the same objects."""
+        plan = self.planned.plan
+        if system == plan.settings.units:
+            return self.planned
+        return self._shown.get(system, lambda: self._worded(system))
+
+    def _worded(self, system: str) -> PlannedLine:
+        plan = self.planned.plan
+        settings = plan.settings.model_copy(update={"units": system})
+        worded = Plan(replace(plan.outcome, settings=settings))
+        return PlannedLine(self.planned.reading, worded, explain(worded))
+
+    def records(self, indices: Sequence[int], system: str) -> list[tuple[int, dict[str, Any]]]:
+        """Give the records of some curves, with their indices and with words in a system of units."""
+        planned = self.shown_in(system)
+        planned.plan.hold(indices)
+        return [(index, planned.record(index)) for index in indices]
+
+    def findings(self, system: str) -> list[Finding]:
+        """Give all findings, those of the whole plan first, then by curve in input order."""
+        explanation = self.shown_in(system).explanation
+        of_curves = (f for i in self.planned.plan.assessed for f in explanation.findings(int(i)))
+        return [*explanation.plan_findings, *of_curves]
 
 
 class Computations:
@@ -120,7 +156,7 @@ class Computations:
             limits=decided.limits,
             settings=decided.settings,
         )
-        return Computed(planned, Listing(planned))
+        return Computed(planned)
 
 
 def _read(plan: StoredPlan, data: bytes) -> Reading:

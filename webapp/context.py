@@ -73,10 +73,17 @@ def file_of(plan: StoredPlan) -> bytes:
 
 
 def reading_of(plan: StoredPlan) -> Reading:
-    """Give how a plan's file is read."""
-    return running().computations.reading(plan, lambda: file_of(plan))
+    """Give how a plan's file is read; pages are in its units where the browser has chosen none."""
+    reading = running().computations.reading(plan, lambda: file_of(plan))
+    settings = plan.decided.settings or reading.settings
+    limits = plan.decided.limits or reading.limits
+    if settings is not None or limits is not None:
+        g.plan_units = settings.units if settings is not None else limits.units if limits else "metric"
+    return reading
 
 
 def computed_of(plan: StoredPlan) -> Computed:
-    """Give a plan's result."""
-    return running().computations.planned(plan, lambda: file_of(plan))
+    """Give a plan's result; pages are in its units where the browser has chosen none."""
+    computed = running().computations.planned(plan, lambda: file_of(plan))
+    g.plan_units = computed.planned.plan.settings.units
+    return computed

@@ -14,7 +14,7 @@ import numpy as np
 import numpy.typing as npt
 
 from cant.model.curves import situation_text
-from cant.model.plan import STATUSES, Finding
+from cant.model.plan import STATUSES
 from cant.service import PlannedLine
 
 PAGE = 50
@@ -117,7 +117,6 @@ class Listing:
         )
         self._track = [track_name(a, b) for a, b in zip(curves.line, curves.track, strict=True)]
         self._text: list[str] | None = None
-        self._findings: list[Finding] | None = None
         self._keys: dict[str, npt.NDArray[np.int64]] = {}
         self.along = self._tracks_in_order()
         self.tracks = list(self.along)
@@ -159,14 +158,6 @@ class Listing:
     def has(self, index: int) -> bool:
         """Tell whether an index is that of a curve in the list."""
         return 0 <= index < len(self._track) and self._status[index] >= 0
-
-    def findings(self) -> list[Finding]:
-        """Give all findings, those of the whole plan first, then by curve in input order."""
-        if self._findings is None:
-            explanation = self.planned.explanation
-            of_curves = (f for i in self._assessed for f in explanation.findings(int(i)))
-            self._findings = [*explanation.plan_findings, *of_curves]
-        return self._findings
 
     def track_of(self, index: int) -> str:
         """Give the line and track of a curve as :attr:`tracks` names it."""

@@ -61,8 +61,13 @@ def shown_sheets(reading: Reading) -> list[ShownSheet]:
         choices = meanings if known else [*meanings, (item.meaning, item.meaning)]
         shown = ShownColumn(item, f"c-{number}", column_letter(item.index), choices, _units(item))
         columns.setdefault(item.sheet, []).append(shown)
+    holds_curves = {s.sheet for s in reading.sheets if s.role == "curves"}
     where = {s.sheet: _where(reading, s.sheet) for s in reading.sheets}
-    return [ShownSheet(name, where.get(name, ""), shown) for name, shown in columns.items()]
+    return [
+        ShownSheet(name, where.get(name, ""), shown)
+        for name, shown in columns.items()
+        if name in holds_curves
+    ]
 
 
 def other_sheets(reading: Reading) -> list[str]:

@@ -43,7 +43,10 @@ def get_curves(address: str, query: CurvesQuery) -> dict[str, Any]:
         "page": page.number,
         "pages": page.pages,
         "counts": computed.listing.counts(),
-        "curves": [{"number": i + 1, **computed.planned.record(i)} for i in page.indices],
+        "curves": [
+            {"number": i + 1, **record}
+            for i, record in computed.records(page.indices, computed.planned.plan.settings.units)
+        ],
     }
 
 

@@ -19,14 +19,14 @@ from cant.units import GRAVITY_MS2
 from webapp.drawings import svg
 from webapp.measures import Measures
 
-WIDTH, HEIGHT = 440.0, 360.0
-PIXELS_PER_MM = 0.125
-WEIGHT_PIXELS = 92.0
+WIDTH, HEIGHT = 560.0, 500.0
+PIXELS_PER_MM = 0.17
+WEIGHT_PIXELS = 250.0
 USUAL_HEIGHT_M = 1.8
 """Height at which a class is drawn whose centre of gravity is not known; the page says so."""
 RAIL_HEIGHT_MM, RAIL_HEAD_MM, SLEEPER_MM = 172.0, 72.0, 2600.0
-BODY_MM = (2900.0, 900.0, 3300.0)
-"""Width, height of the underside and height of the roof of the outline [mm]."""
+WHEEL_MM = (135.0, 920.0)
+"""Width and diameter of a wheel [mm]."""
 
 
 @dataclass(frozen=True)
@@ -100,13 +100,13 @@ def draw_section(
     outward = -1.0 if hand < 0 else 1.0
     slope = math.asin(max(-1.0, min(1.0, cant_mm / spacing_mm)))
     frame = _Frame(
-        (WIDTH / 2, HEIGHT - 74.0),
+        (WIDTH / 2, HEIGHT - 104.0),
         (outward * math.cos(slope), -math.sin(slope)),
         (-outward * math.sin(slope), -math.cos(slope)),
     )
     parts = [
         _track(frame, spacing_mm),
-        _body(frame),
+        _wheels(frame, spacing_mm),
         _cant_mark(frame, cant_mm, spacing_mm, outward, measures),
     ]
     parts += [_forces(frame, item, i, outward) for i, item in enumerate(classes)]
@@ -149,11 +149,20 @@ def _track(frame: _Frame, spacing_mm: float) -> Markup:
     return svg.group(*parts)
 
 
-def _body(frame: _Frame) -> Markup:
-    width, under, roof = BODY_MM
-    half = width / 2
-    outline = [(-half, under), (half, under), (half, roof - 350), (half - 500, roof), (-half + 500, roof)]
-    return svg.polygon([frame.at(a, b) for a, b in [*outline, (-half, roof - 350)]], "body")
+def _wheels(frame: _Frame, spacing_mm: float) -> Markup:
+    """Draw a wheelset on the rails, so that the eye knows the scale."""
+    width, diameter = WHEEL_MM
+    parts = [_box(frame, -spacing_mm / 2, spacing_mm / 2, diameter / 2 - 80, diameter / 2 + 80)]
+    parts += [
+        _box(frame, side - width / 2, side + width / 2, 0, diameter)
+        for side in (-spacing_mm / 2, spacing_mm / 2)
+    ]
+    return svg.group(*parts)
+
+
+def _box(frame: _Frame, left: float, right: float, low: float, high: float) -> Markup:
+    corners = ((left, low), (right, low), (right, high), (left, high))
+    return svg.polygon([frame.at(a, b) for a, b in corners], "body")
 
 
 def _cant_mark(
@@ -161,12 +170,13 @@ def _cant_mark(
 ) -> Markup:
     """Draw the cant as the height of the outer rail over the level through the inner one."""
     inner, outer = frame.at(-spacing_mm / 2, 0), frame.at(spacing_mm / 2, 0)
-    beyond = outer[0] + outward * 52
+    label = f"D {measures.with_unit('cant', cant_mm)}"
+    beyond = frame.at(SLEEPER_MM / 2, 0)[0] + outward * 26
     return svg.group(
         svg.line(inner, (beyond, inner[1]), "level"),
         svg.line((outer[0], outer[1]), (beyond, outer[1]), "level"),
         svg.line((beyond, inner[1]), (beyond, outer[1]), "measure"),
-        svg.words(beyond, inner[1] + 16, f"D {measures.with_unit('cant', cant_mm)}", "value", "middle"),
+        svg.words(beyond, min(inner[1], outer[1]) - 8, label, "value", "middle"),
     )
 
 

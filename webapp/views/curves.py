@@ -21,7 +21,7 @@ def show(address: str, number: int) -> ResponseReturnValue:
     if not computed.listing.has(index):
         message = f"this plan has no curve number {number} that could be assessed"
         raise NotThereError(message)
-    record = computed.planned.record(index)
+    record = computed.shown_in(current_measures().system).record(index)
     before, after = computed.listing.neighbours(index)
     return render_template(
         "curve.html",

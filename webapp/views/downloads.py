@@ -9,7 +9,7 @@ from flask import Blueprint, Response, render_template
 from flask.typing import ResponseReturnValue
 
 from cant import service
-from webapp.context import computed_of, file_of, stored
+from webapp.context import computed_of, current_measures, file_of, stored
 from webapp.tables import file_name
 
 pages = Blueprint("downloads", __name__, url_prefix="/plans/<address>")
@@ -38,7 +38,9 @@ def workbook(address: str) -> ResponseReturnValue:
     """Give the user's workbook with the plan in it."""
     plan = stored(address)
     computed = computed_of(plan)
-    made = service.annotated_workbook(computed.planned, file_of(plan), plan.file_name)
+    made = service.annotated_workbook(
+        computed.shown_in(current_measures().system), file_of(plan), plan.file_name
+    )
     path = PurePath(plan.file_name)
     ending = ".xlsm" if path.suffix.lower() == ".xlsm" else ".xlsx"
     answer = Response(made.data, mimetype=MACROS if ending == ".xlsm" else XLSX)

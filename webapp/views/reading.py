@@ -6,11 +6,13 @@ from flask import Blueprint, flash, redirect, render_template, request, url_for
 from flask.typing import ResponseReturnValue
 
 from cant.errors import CantError
+from cant.model.reading import Reading
 from webapp import reading_form
 from webapp.context import file_of, reading_of, running, stored
 from webapp.deciding import check_reading
 from webapp.decisions import as_text
 from webapp.security import owner
+from webapp.store import StoredPlan
 
 pages = Blueprint("reading", __name__, url_prefix="/plans/<address>")
 SHOWN_PROBLEMS = 200
@@ -34,8 +36,18 @@ def _page(address: str, problem: str) -> str:
         problem=problem,
         rejected=reading.rejected[:SHOWN_PROBLEMS],
         good=int((~reading.curves.rejected).sum()),
+        complete=_complete(plan, reading),
         answered=bool(plan.decided.answers),
     )
+
+
+def _complete(plan: StoredPlan, reading: Reading) -> str:
+    """Name the limits in use where trains and limits are known; "" where something is missing."""
+    limits = plan.decided.limits or reading.limits
+    traffic = plan.decided.traffic or reading.traffic
+    if limits is None or traffic is None:
+        return ""
+    return f"{len(traffic.class_names)} classes, {limits.title or limits.name}"
 
 
 @pages.post("/list")

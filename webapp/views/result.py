@@ -43,7 +43,7 @@ def show(address: str) -> ResponseReturnValue:
         **_shared(computed),
         wanted=wanted,
         page=page,
-        records=[(i, computed.planned.record(i)) for i in page.indices],
+        records=computed.records(page.indices, current_measures().system),
         sorts=SORTS,
         sizes=PAGE_SIZES,
     )
@@ -67,7 +67,7 @@ def findings(address: str) -> ResponseReturnValue:
     if away := _unconfirmed(plan):
         return away
     computed = computed_of(plan)
-    found = computed.listing.findings()
+    found = computed.findings(current_measures().system)
     severity = request.args.get("severity", "")
     code = request.args.get("kind", "")
     chosen = [f for f in found if (not severity or f.severity == severity) and (not code or f.code == code)]
@@ -112,7 +112,7 @@ def print_page(address: str) -> ResponseReturnValue:
         "print.html",
         **_shared(computed),
         wanted=wanted,
-        records=[(i, computed.planned.record(i)) for i in rows],
+        records=computed.records(rows, current_measures().system),
         total=len(found),
         number=number,
         pages=pages_in_all,
@@ -129,5 +129,5 @@ def _shared(computed: Computed) -> dict[str, Any]:
         "rejected": len(computed.planned.reading.rejected),
         "limits": result.limits,
         "settings": result.settings,
-        "plan_findings": computed.planned.explanation.plan_findings,
+        "plan_findings": computed.shown_in(current_measures().system).explanation.plan_findings,
     }
