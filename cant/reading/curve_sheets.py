@@ -14,11 +14,14 @@ from cant.model.reading import ColumnReading, SheetReading
 from cant.reading.checks import apply_signs, check
 from cant.reading.draft import Context, Draft
 from cant.reading.layout import Block, find_blocks
-from cant.reading.meanings import Column, decide
+from cant.reading.elements import curves_of_elements, is_element_list
+from cant.reading.meanings import Column, correct, decide
 from cant.reading.numbers import decimal_mark
+from cant.reading.places import is_track, line_named, track_named
 from cant.reading.quantities import fill
 from cant.reading.records import is_example
-from cant.reading.text import is_blank, is_text
+from cant.reading.rows import fill_merged, sift
+from cant.reading.text import is_blank, is_text, shown, squeeze
 
 
 def read_sheet(sheet: Sheet, context: Context) -> list[Draft]:
@@ -30,12 +33,75 @@ def read_block(block: Block, context: Context) -> Draft:
     """Understand one curve table."""
     rows, cells = _cells(block)
     columns = decide(block, cells)
+    correct(columns, context.answers, block.sheet.name)
+    fill_merged(block.sheet, [int(r) for r in rows], columns)
     texts = (str(c) for item in columns for c in item.cells[:2000] if is_text(c))
-    draft = Draft(block, columns, rows, decimal_mark(texts), context)
-    fill(draft)
+    decimal = decimal_mark(texts)
+    elements = is_element_list(columns)
+    sifted = sift(block, columns, decimal, elements)
+    context.notes += sifted.notes(rows, block.sheet.name, elements)
+    tracks = _tracks_by_row(sifted.sections, len(rows))
+    names = {c.index: _filled_down(c) for c in columns if c.meaning in ("Line", "Track")}
+    keep = sifted.curves
+    for item in columns:
+        source = names.get(item.index, item.cells)
+        item.cells = [source[i] for i in keep] if len(keep) < len(rows) else source
+    draft = Draft(block, columns, rows[keep], decimal, context)
+    if elements:
+        draft = curves_of_elements(draft)
+        tracks = [""] * len(draft)
+    else:
+        tracks = [tracks[i] for i in keep]
+        fill(draft)
+    _name(draft, tracks)
     apply_signs(draft)
     check(draft)
     return draft
+
+
+def _filled_down(item: Column) -> list[Value]:
+    cells = list(item.cells)
+    for index in range(1, len(cells)):
+        if is_blank(cells[index]):
+            cells[index] = cells[index - 1]
+    return cells
+
+
+def _tracks_by_row(sections: list[tuple[int, str]], count: int) -> list[str]:
+    found = [""] * count
+    for index, text in sections:
+        if is_track(text):
+            found[index:] = [text] * (count - index)
+    return found
+
+
+def _name(draft: Draft, tracks: list[str]) -> None:
+    """Give every row line, track and curve: from its columns, else from titles and the rows between."""
+    count = len(draft)
+    block = draft.block
+    line, track = draft.column("Line"), draft.column("Track")
+    curve = draft.column("Curve") or draft.column("Number")
+    title = [*block.title, *([block.group] if block.group else [])]
+    draft.line = _texts(line, count) if line else [line_named(title)] * count
+    fallback = block.group if block.group and len(block.group) <= 30 else ""
+    named = fallback or track_named(title) or track_named([block.sheet.name])
+    draft.track = _texts(track, count) if track else [t or named for t in tracks]
+    draft.curve = _texts(curve, count)
+
+
+def _texts(item: Column | None, count: int) -> list[str]:
+    if item is None:
+        return [""] * count
+    return ["" if is_blank(cell) else squeeze(shown(cell)) for cell in item.cells]
+
+
+def tell_sheets_apart(drafts: list[Draft]) -> None:
+    """Let the sheet's name be the track, where several sheets hold curves and nothing else names one."""
+    if len({draft.sheet for draft in drafts}) < 2:
+        return
+    for draft in drafts:
+        if draft.column("Track") is None:
+            draft.track = [t or draft.sheet for t in draft.track]
 
 
 def _cells(block: Block) -> tuple[np.ndarray, dict[int, Sequence[Value]]]:
@@ -46,9 +112,9 @@ def _cells(block: Block) -> tuple[np.ndarray, dict[int, Sequence[Value]]]:
     kept = [
         i
         for i, cells in enumerate(body)
-        if any(not is_blank(c) for c in cells[low : high + 1]) and not is_example(cells)
+        if any(c is not None for c in cells[low : high + 1]) and not is_example(cells)
     ]
-    turned = list(zip_longest(*(body[i] for i in kept), fillvalue=None))
+    turned: list[Sequence[Value]] = list(zip_longest(*(body[i] for i in kept), fillvalue=None))
     empty: list[Value] = [None] * len(kept)
     columns = {index: turned[index] if index < len(turned) else empty for index in wanted}
     return np.array([first + 1 + i for i in kept], dtype=np.int64), columns

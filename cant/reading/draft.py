@@ -118,6 +118,11 @@ class Draft:
         return len(self.rows)
 
     @property
+    def canonical(self) -> bool:
+        """Whether every understood heading is the canonical one: then units that are not named are the usual ones."""
+        return all(item.is_canonical for item in self.columns if item.meaning)
+
+    @property
     def sheet(self) -> str:
         """Name of the sheet."""
         return self.block.sheet.name

@@ -9,6 +9,7 @@ from collections.abc import Sequence
 from dataclasses import dataclass, field
 
 from cant.files.grid import Value
+from cant.reading.answers import Answers
 from cant.reading.columns import column
 from cant.reading.headings import Heading, Match, analyse, matches
 from cant.reading.layout import Block, BlockColumn
@@ -60,6 +61,11 @@ class Column:
         """Notation that the heading names."""
         return self.heading.notation
 
+    @property
+    def is_canonical(self) -> bool:
+        """Whether the heading is the canonical one of the meaning, but for case and unit."""
+        return self.literal or (not self.train and self.heading.words == fold(self.meaning))
+
     def samples(self, count: int = 3) -> tuple[str, ...]:
         """Give some values as they stand."""
         found: list[str] = []
@@ -85,6 +91,24 @@ def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
     columns = [_from_heading(c, cells.get(c.index, [])) for c in block.columns]
     _settle_doubles(columns)
     return columns
+
+
+def correct(columns: list[Column], answers: Answers, sheet: str) -> None:
+    """Put a person's corrections over what was decided."""
+    for item in columns:
+        given = answers.correction(sheet, item.heading.text, item.index)
+        if given is None:
+            continue
+        if given.unit is not None:
+            item.unit, item.unit_from = given.unit, "answer"
+        if given.meaning is not None:
+            item.train = item.train_name = ""
+            item.literal = False
+            item.meaning = given.meaning
+            if given.meaning.startswith("Speed "):
+                item.meaning, item.train_name = "Speed", given.meaning[6:]
+                item.train, item.literal = fold(item.train_name), True
+        item.confidence, item.note = "certain", "as told"
 
 
 def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:

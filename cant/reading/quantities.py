@@ -1,93 +1,145 @@
-"""From the cells of a block to quantities in canonical units, column by column."""
+"""From the cells of a block to quantities in canonical units: the order in which columns settle one another."""
 
 from __future__ import annotations
 
-from collections.abc import Callable
-
 import numpy as np
 
-from cant.errors import InputError, Place
-from cant.model.curves import DOES_NOT_RUN, SHAPES, FloatArray
-from cant.reading.cells import NONE, PAIR, STRAIGHT, Numbers, Taken, take_column
-from cant.reading.chainages import take_location
+from cant.model.curves import SHAPES, FloatArray
+from cant.reading.cells import PAIR, Numbers, take_column
 from cant.reading.columns import column
 from cant.reading.draft import NUMERIC, Draft
+from cant.reading.evidence import Evidence, gather
+from cant.reading.locations import settle_locations
 from cant.reading.meanings import Column
+from cant.reading.radii import settle_radius
+from cant.reading.scales import (
+    settle_arc_unit,
+    settle_cant_unit,
+    settle_length_unit,
+    settle_speed_unit,
+    share_units,
+)
 from cant.reading.situations import known_situations, read_situations
-from cant.reading.takers import HANDS, take_cant, take_length, take_radius, take_speed, take_transition
+from cant.reading.speeds import highest_speed, settle_speeds, split_speed_columns
+from cant.reading.takers import HANDS, take_cant, take_length, take_transition
 from cant.reading.text import fold, is_blank, shown, squeeze
-from cant.reading.trains import classes_meant
 from cant.reading.words import lexicon, meaning_of
 
-TAKERS: dict[str, Callable[[str, str], Taken]] = {
-    "location": take_location,
-    "radius": take_radius,
-    "length": take_length,
-    "transition": take_transition,
-    "cant": take_cant,
-    "speed": take_speed,
-}
 
-
-def numbers_of(draft: Draft, item: Column) -> Numbers:
-    """Read the numbers of one column as they stand."""
-    taker = TAKERS[column("curves", item.meaning).kind]
-    return take_column(item.cells, lambda text: taker(text, draft.decimal))
-
-
-def fill(draft: Draft) -> None:
+def fill(draft: Draft) -> Evidence:
     """Turn every column of a block into quantities, and note what cannot be used."""
-    _names(draft)
     _hands(draft)
     _shapes(draft)
     _situations(draft)
     _fixed(draft)
-    for meaning, (attribute, target) in NUMERIC.items():
+    if draft.canonical:
+        _usual_units(draft)
+    share_units(draft.columns)
+    evidence = gather(draft.columns, draft.block.title)
+    settle_speed_unit(draft, evidence)
+    split_speed_columns(draft)
+    settle_speeds(draft)
+    located = settle_locations(draft, evidence)
+    speed = highest_speed(draft)
+    draft.numbers["radius_m"] = settle_radius(draft, evidence, speed)
+    _cants(draft, evidence, speed)
+    _transitions(draft, evidence)
+    _place(draft, located)
+    _length(draft, evidence)
+    return evidence
+
+
+def _usual_units(draft: Draft) -> None:
+    """In a canonical table give every heading without a unit the usual one, chainages apart (km or m)."""
+    for item in draft.columns:
+        usual = column("curves", item.meaning).unit if item.meaning else ""
+        if usual and not item.unit and not item.notation and item.meaning not in ("Start", "End"):
+            item.unit, item.unit_from = usual, "canonical"
+
+
+def _cants(draft: Draft, evidence: Evidence, speed: FloatArray) -> None:
+    _promote_design_cant(draft)
+    for meaning in ("Cant", "Cant at most", "Cant at least"):
         item = draft.column(meaning)
-        if item is not None:
-            numbers = numbers_of(draft, item)
-            draft.numbers[attribute] = _canonical(draft, item, numbers, target)
-    _class_speeds(draft)
+        if item is None:
+            continue
+        numbers = take_column(item.cells, lambda text: take_cant(text, draft.decimal))
+        unit = settle_cant_unit(draft, item, numbers, evidence, draft.numbers["radius_m"], speed)
+        draft.numbers[NUMERIC[meaning][0]] = _single(draft, item, numbers, unit, "mm", "cant")
+        share_units(draft.columns)
 
 
-def _canonical(draft: Draft, item: Column, numbers: Numbers, target: str) -> FloatArray:
-    if not item.unit:
-        item.unit, item.unit_from = column("curves", item.meaning).unit, "canonical"
-    values = numbers.converted(item.unit, target)
+def _promote_design_cant(draft: Draft) -> None:
+    design = draft.column("Design cant")
+    if design is not None and draft.column("Cant") is None:
+        design.meaning, design.confidence = "Cant", "likely"
+        design.note = "the list has no other cant: taken for today's"
+
+
+def _transitions(draft: Draft, evidence: Evidence) -> None:
+    both = draft.column("Transition")
+    for meaning in ("Transition in", "Transition out", "Cant ramp in", "Cant ramp out", "Transition"):
+        item = draft.column(meaning)
+        if item is None:
+            continue
+        numbers = take_column(item.cells, lambda text: take_transition(text, draft.decimal))
+        unit = settle_length_unit(draft, item, numbers, evidence)
+        if item is both:
+            _pairs(draft, item, numbers, unit)
+        else:
+            attribute = NUMERIC[meaning][0]
+            draft.numbers[attribute] = _single(draft, item, numbers, unit, "m", "length")
+        share_units(draft.columns)
+
+
+def _pairs(draft: Draft, item: Column, numbers: Numbers, unit: str) -> None:
+    first, second = numbers.converted(unit, "m"), numbers.converted(unit, "m", second=True)
+    paired = np.zeros(len(draft), dtype=np.bool_)
+    paired[[i for i, state in numbers.states.items() if state == PAIR]] = True
+    for attribute, values in (
+        ("transition_in_m", first),
+        ("transition_out_m", np.where(paired, second, first)),
+    ):
+        known = draft.numbers[attribute]
+        draft.numbers[attribute] = np.where(np.isnan(known), values, known)
+    for index, text in numbers.problems.items():
+        draft.fail(index, item, text)
+
+
+def _single(draft: Draft, item: Column, numbers: Numbers, unit: str, target: str, what: str) -> FloatArray:
+    values = numbers.converted(unit, target)
     for index, text in numbers.problems.items():
         draft.fail(index, item, text)
     for index, state in numbers.states.items():
         if state == PAIR:
             values[index] = np.nan
-            draft.fail(
-                index,
-                item,
-                f"two values stand where one {item.meaning} belongs; give each its own row or column",
-            )
-        elif state == STRAIGHT:
-            draft.fail(index, item, "straight track is no curve")
-        elif state == NONE and item.meaning in ("Radius", "Speed"):
-            draft.fail(index, item, f"none is no {item.meaning}")
-    for index, hand in numbers.hands.items():
-        draft.hand[index] = hand
+            draft.fail(index, item, f"two values stand where one {what} belongs; give each its own row or column")
     return values
 
 
-def _texts(item: Column | None, count: int) -> list[str]:
+def _place(draft: Draft, located: dict[str, FloatArray]) -> None:
+    """Set the arc's ends; from the points of the transitions make their lengths where no column gives them."""
+    for name, attribute in (("Start", "start_km"), ("End", "end_km")):
+        if name in located:
+            draft.numbers[attribute] = located[name]
+    for outer, inner, attribute in (
+        ("Transition start", "start_km", "transition_in_m"),
+        ("Transition end", "end_km", "transition_out_m"),
+    ):
+        if outer in located:
+            length = np.round(np.abs(located[outer] - draft.numbers[inner]) * 1000, 3)
+            known = draft.numbers[attribute]
+            draft.numbers[attribute] = np.where(np.isnan(known), length, known)
+
+
+def _length(draft: Draft, evidence: Evidence) -> None:
+    item = draft.column("Length")
     if item is None:
-        return [""] * count
-    return ["" if cell is None else squeeze(shown(cell)) for cell in item.cells]
-
-
-def _names(draft: Draft) -> None:
-    count = len(draft)
-    draft.curve = _texts(draft.column("Curve"), count)
-    for meaning, attribute in (("Line", "line"), ("Track", "track")):
-        texts = _texts(draft.column(meaning), count)
-        for index in range(1, count):
-            if not texts[index]:
-                texts[index] = texts[index - 1]
-        setattr(draft, attribute, texts)
+        return
+    numbers = take_column(item.cells, lambda text: take_length(text, draft.decimal))
+    spans = np.abs(draft.numbers["end_km"] - draft.numbers["start_km"]) * 1000
+    unit = settle_arc_unit(draft, item, numbers, evidence, spans)
+    draft.numbers["length_m"] = _single(draft, item, numbers, unit, "m", "length")
 
 
 def _hands(draft: Draft) -> None:
@@ -95,13 +147,13 @@ def _hands(draft: Draft) -> None:
     if item is None:
         return
     for index, cell in enumerate(item.cells):
-        if is_blank(cell):
+        if is_blank(cell) and squeeze(shown(cell)) != "-":
             continue
         text = squeeze(shown(cell))
         found = meaning_of("hands", text)
-        if found is None:
+        if found is None and text not in ("+", "-"):
             draft.fail(index, item, f"'{text}' is no hand; L or R belongs there")
-        else:
+        elif found is not None:
             draft.hand[index] = HANDS[found]
 
 
@@ -122,17 +174,17 @@ def _shapes(draft: Draft) -> None:
 
 def _situations(draft: Draft) -> None:
     item = draft.column("Situation")
-    if item is None:
+    if item is not None:
+        known = draft.context.situations
+        for index, cell in enumerate(item.cells):
+            if is_blank(cell):
+                continue
+            words, unknown = read_situations(squeeze(shown(cell)), known)
+            draft.situations[index] = words
+            if unknown:
+                listed = ", ".join(sorted(known_situations(draft.context.limits)))
+                draft.fail(index, item, f"the situation '{unknown[0]}' is not known; known are {listed}")
         return
-    known = draft.context.situations
-    for index, cell in enumerate(item.cells):
-        if is_blank(cell):
-            continue
-        words, unknown = read_situations(squeeze(shown(cell)), known)
-        draft.situations[index] = words
-        if unknown:
-            listed = ", ".join(sorted(known_situations(draft.context.limits)))
-            draft.fail(index, item, f"the situation '{unknown[0]}' is not known; known are {listed}")
 
 
 def _fixed(draft: Draft) -> None:
@@ -148,47 +200,3 @@ def _fixed(draft: Draft) -> None:
             if meaning is None and not is_blank(cell):
                 draft.fail(index, item, f"'{text}' stands where yes or no belongs")
             draft.cant_fixed[index] = meaning == "yes"
-
-
-def _class_speeds(draft: Draft) -> None:
-    sure: set[str] = set()
-    for item in sorted((c for c in draft.columns if c.meaning == "Speed" and c.train), key=lambda c: c.index):
-        names = _classes(draft, item)
-        numbers = numbers_of(draft, item)
-        if not names:
-            continue
-        values = _speeds(draft, item, numbers)
-        exact = len(names) == 1
-        for name in names:
-            if exact or name not in sure:
-                draft.class_speeds[name] = values
-            if exact:
-                sure.add(name)
-
-
-def _speeds(draft: Draft, item: Column, numbers: Numbers) -> FloatArray:
-    if not item.unit:
-        item.unit, item.unit_from = "km/h", "canonical"
-    values = numbers.converted(item.unit, "km/h")
-    for index, text in numbers.problems.items():
-        draft.fail(index, item, text)
-    for index, state in numbers.states.items():
-        if state == NONE:
-            values[index] = DOES_NOT_RUN
-    return values
-
-
-def _classes(draft: Draft, item: Column) -> list[str]:
-    traffic = draft.context.traffic
-    if traffic is None:
-        return [item.train_name]
-    found = classes_meant(item.train, traffic)
-    if not found and item.literal:
-        place = Place(draft.context.file, draft.sheet, draft.block.header_last, item.index)
-        known = ", ".join(traffic.class_names)
-        message = f"'{item.heading.text}' names a class that the traffic lacks; its classes are {known}"
-        raise InputError(message, place)
-    if not found:
-        item.note = f"no class of the traffic is called '{item.train_name}'; not used"
-        item.confidence = "likely"
-    return found

@@ -20,7 +20,7 @@ from cant.model.traffic import Traffic
 from cant.model.turnouts import Turnout
 from cant.reading.answers import answers_from
 from cant.reading.checks import check_duplicates, check_speeds
-from cant.reading.curve_sheets import column_readings, join, read_sheet, sheet_readings
+from cant.reading.curve_sheets import column_readings, join, read_sheet, sheet_readings, tell_sheets_apart
 from cant.reading.draft import Context, Draft
 from cant.reading.layout import find_blocks
 from cant.reading.limits import read_limits
@@ -105,6 +105,7 @@ def read_workbook(
         notes=tables.notes,
     )
     drafts = _read_curves(roles["curves"], workbook, context)
+    tell_sheets_apart(drafts)
     check_duplicates(drafts)
     check_speeds(drafts, tables.traffic)
     _need_class_speeds(tables.traffic, drafts)

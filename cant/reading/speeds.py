@@ -1,0 +1,188 @@
+"""Speed columns: the line's, one for each class of train, and several speeds in one cell.
+
+A cell ``100/80`` is taken apart where the heading names what stands on each side of the stroke, or where the
+traffic leaves one reading; else it is asked about.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import replace
+
+import numpy as np
+
+from cant.errors import InputError, Place
+from cant.files.grid import Value
+from cant.model.curves import DOES_NOT_RUN, FloatArray
+from cant.reading.cells import NONE, PAIR, Numbers, take_column
+from cant.reading.draft import Draft
+from cant.reading.headings import analyse
+from cant.reading.meanings import Column
+from cant.reading.takers import take_speed
+from cant.reading.text import fold, is_text, squeeze
+from cant.reading.trains import classes_meant, known_train
+
+PASSENGER_FREIGHT = "first passenger, second freight"
+LINE_OTHER = "the first is the line speed"
+
+
+def speed_numbers(draft: Draft, item: Column) -> Numbers:
+    """Read the numbers of a speed column as they stand."""
+    return take_column(item.cells, lambda text: take_speed(text, draft.decimal))
+
+
+def split_speed_columns(draft: Draft) -> None:
+    """Take columns of ``100/80`` apart into one column a speed, where it is known whose each is."""
+    for item in [c for c in draft.columns if c.meaning == "Speed"]:
+        parts = _most_parts(item.cells)
+        if parts < 2:
+            continue
+        names = _names(draft, item, parts)
+        if names is None:
+            continue
+        for position, name in enumerate(names):
+            draft.columns.append(_part(item, position, name))
+        item.meaning, item.note = "", "several speeds in a cell: " + ", ".join(n or "line speed" for n in names)
+
+
+def _most_parts(cells: Sequence[Value]) -> int:
+    counts = [str(c).count("/") + 1 for c in dict.fromkeys(c for c in cells if is_text(c)) if any(d.isdigit() for d in str(c)) and "h/" not in str(c) and "/h" not in str(c)]
+    return max(counts, default=1)
+
+
+def _names(draft: Draft, item: Column, parts: int) -> list[str] | None:
+    """Give whose speed stands in each place, None where it is asked."""
+    for bracket in item.heading.brackets:
+        named = [squeeze(p) for p in bracket.split("/")]
+        if len(named) == parts:
+            return _with_base(draft, item, named)
+    tail = [squeeze(p) for p in item.heading.text.split("/")]
+    if parts == 2 and len(tail) == 2 and known_train(fold(tail[1])):
+        first = " ".join(tail[0].split()[-1:])
+        return [first, tail[1]]
+    if parts != 2:
+        return None
+    choices = (PASSENGER_FREIGHT, LINE_OTHER)
+    answer = draft.context.answers.choice(draft.sheet, item.heading.text, choices)
+    if answer == LINE_OTHER:
+        return ["", "second speed"]
+    if answer == PASSENGER_FREIGHT or _only_passenger_and_freight(draft, item):
+        return ["passenger", "freight"]
+    where = [i for i, c in enumerate(item.cells) if is_text(c) and "/" in str(c)]
+    draft.ask(
+        item,
+        f"Two speeds stand in one cell ({squeeze(str(item.cells[where[0]]))}) and nothing says whose they are. Which?",
+        choices,
+        where,
+    )
+    return None
+
+
+def _with_base(draft: Draft, item: Column, named: list[str]) -> list[str]:
+    traffic = draft.context.traffic
+    if not item.train or traffic is None or all(classes_meant(fold(n), traffic) for n in named):
+        return named if not item.train else [f"{item.train_name} {n}" if len(fold(n)) < 3 else n for n in named]
+    return [f"{item.train_name} {n}" for n in named]
+
+
+def _only_passenger_and_freight(draft: Draft, item: Column) -> bool:
+    traffic = draft.context.traffic
+    if traffic is None or {row.category for row in traffic.rows} != {"passenger", "freight"}:
+        return False
+    numbers = speed_numbers(draft, item)
+    pairs = [i for i, state in numbers.states.items() if state == PAIR]
+    return all(numbers.values[i] >= numbers.second[i] for i in pairs)
+
+
+def _part(item: Column, position: int, name: str) -> Column:
+    cells: list[Value] = []
+    for cell in item.cells:
+        pieces = str(cell).split("/") if is_text(cell) else []
+        if len(pieces) > 1:
+            cells.append(squeeze(pieces[position]) if position < len(pieces) else None)
+        else:
+            cells.append(cell)
+    heading = replace(analyse(item.heading.text), brackets=())
+    return Column(
+        item.index, heading, "Speed", item.unit, item.unit_from, fold(name), name, "likely", "one of several in a cell",
+        False, cells,
+    )  # fmt: skip
+
+
+def settle_speeds(draft: Draft) -> None:
+    """Turn speed columns into the line's speed and those of the classes."""
+    ranked: dict[str, int] = {}
+    for item in draft.columns:
+        if item.meaning != "Speed":
+            continue
+        values = _kilometres_an_hour(draft, item)
+        if not item.train:
+            draft.numbers["speed_kmh"] = values
+            continue
+        names = classes_of(draft, item)
+        rank = len(names)
+        for name in names:
+            if name not in ranked or rank < ranked[name]:
+                draft.class_speeds[name], ranked[name] = values.copy(), rank
+
+
+def _kilometres_an_hour(draft: Draft, item: Column) -> FloatArray:
+    numbers = speed_numbers(draft, item)
+    values = numbers.converted(item.unit or "km/h", "km/h")
+    for index, text in numbers.problems.items():
+        draft.fail(index, item, text)
+    for index, state in numbers.states.items():
+        if state == NONE and item.train:
+            values[index] = DOES_NOT_RUN
+        elif state == NONE:
+            draft.fail(index, item, "none is no line speed; a number belongs there, or nothing")
+        elif state == PAIR:
+            values[index] = np.nan
+            if index not in draft.problems:
+                draft.fail(index, item, "two speeds stand in one cell; give each its own column")
+    if item.train:
+        with np.errstate(invalid="ignore"):
+            wrong = np.flatnonzero((values < 0) & (values != DOES_NOT_RUN))
+        for index in wrong:
+            draft.fail(int(index), item, "a speed is 0 or more; none where the class does not run")
+            values[index] = np.nan
+        minus_one = [i for i in np.flatnonzero(values == DOES_NOT_RUN) if numbers.states.get(int(i)) != NONE]
+        for index in minus_one:
+            draft.fail(int(index), item, "a speed is 0 or more; none where the class does not run")
+            values[index] = np.nan
+    return values
+
+
+def classes_of(draft: Draft, item: Column) -> list[str]:
+    """Give the traffic classes that a speed column speaks of; its own name where there is no traffic.
+
+    Raises
+    ------
+    InputError
+        ``Speed NAME`` for a class that the traffic lacks.
+    """
+    traffic = draft.context.traffic
+    if traffic is None:
+        return [item.train_name]
+    found = classes_meant(item.train, traffic)
+    if found:
+        return found
+    if item.literal:
+        place = Place(draft.context.file, draft.sheet, draft.block.header_last, item.index)
+        known = ", ".join(traffic.class_names)
+        message = f"'{item.heading.text}' names a class that the traffic lacks; its classes are {known}"
+        raise InputError(message, place)
+    item.note = f"no class of the traffic is called '{item.train_name}'; not used"
+    item.confidence = "likely"
+    return []
+
+
+def highest_speed(draft: Draft) -> FloatArray:
+    """Give the highest speed of each row [km/h], nan where none is known; a help to tell units apart."""
+    columns = [draft.numbers["speed_kmh"], *draft.class_speeds.values()]
+    stacked = np.where(np.vstack(columns) > 0, np.vstack(columns), -np.inf)
+    top = np.max(stacked, axis=0)
+    traffic = draft.context.traffic
+    known = [r.speed_kmh for r in traffic.rows if r.speed_kmh] if traffic else []
+    fallback = max(known) if known else np.nan
+    return np.asarray(np.where(np.isfinite(top), top, fallback), dtype=np.float64)
