@@ -258,7 +258,6 @@ def _group_above(sheet: Sheet, first: int, block: Block) -> str:
         inside = [t for i, t in texts.items() if low <= i <= high]
         if inside and len(texts) > 1:
             return inside[0]
-    shared = set(block.columns[0].parts[:-1])
-    for column in block.columns:
-        shared &= set(column.parts[:-1]) or shared
+    groups = [set(column.parts[:-1]) for column in block.columns if column.parts[:-1]]
+    shared = set.intersection(*groups) if groups else set()
     return next(iter(shared), "")

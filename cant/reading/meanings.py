@@ -13,6 +13,7 @@ from cant.reading.answers import Answers
 from cant.reading.columns import column
 from cant.reading.headings import Heading, Match, analyse, matches
 from cant.reading.layout import Block, BlockColumn
+from cant.reading.numbers import parse_number
 from cant.reading.text import fold, is_blank, shown, squeeze
 from cant.reading.trains import known_train, says_speed, train_words
 from cant.units import find_unit, unit
@@ -89,8 +90,42 @@ def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
         Values of the data rows by column.
     """
     columns = [_from_heading(c, cells.get(c.index, [])) for c in block.columns]
+    _continue_speeds(columns)
+    _bracketed_trains(columns)
     _settle_doubles(columns)
     return columns
+
+
+def _continue_speeds(columns: list[Column]) -> None:
+    """Let short unknown headings right of a speed column go on with its row: ``V rango A | B | C``."""
+    for left, item in zip(columns, columns[1:], strict=False):
+        words = item.heading.words
+        unsure = not item.meaning or item.confidence == "likely"
+        if left.meaning != "Speed" or not left.train or not words or not unsure or len(words) > 8:
+            continue
+        if item.unit and unit(item.unit).dimension != "speed":
+            continue
+        if _like_speeds(item.cells):
+            item.meaning, item.train, item.train_name = "Speed", words, item.heading.text
+            item.confidence, item.note = "likely", "goes on with the speeds left of it"
+            if not item.unit:
+                item.unit, item.unit_from = left.unit, left.unit_from and "other columns"
+
+
+def _like_speeds(cells: Sequence[Value]) -> bool:
+    values = [c for c in cells[:500] if isinstance(c, float) or (isinstance(c, str) and parse_number(c) is not None)]
+    numbers = [v if isinstance(v, float) else parse_number(v) or 0.0 for v in values]
+    return bool(numbers) and all(10 <= v <= 350 for v in numbers) and sum(v % 5 == 0 for v in numbers) >= 0.8 * len(numbers)
+
+
+def _bracketed_trains(columns: list[Column]) -> None:
+    """Take the train from brackets: ``V (AUT)``, ``V (MERC)``."""
+    lines = [c for c in columns if c.meaning == "Speed" and not c.train and c.heading.brackets]
+    for item in lines:
+        content = item.heading.brackets[-1]
+        words = fold(content)
+        if "/" not in content and words and (known_train(words) or len(lines) > 1):
+            item.train, item.train_name = words, content
 
 
 def correct(columns: list[Column], answers: Answers, sheet: str) -> None:

@@ -60,14 +60,15 @@ def settle_radius(draft: Draft, evidence: Evidence, speed_kmh: FloatArray) -> Fl
 
 
 def _mend_thousands(draft: Draft, numbers: Numbers) -> None:
-    """Read 1.2 as 1200 where the sheet has decimal commas and a typed 1.200 came as a number."""
-    if draft.decimal != ",":
-        return
+    """Read 1.2 as 1200 among radii of hundreds: 1.200 with a thousands dot, kept as a number (or kilometres)."""
     with np.errstate(invalid="ignore"):
         tiny = (np.abs(numbers.values) < 30) & (np.abs(numbers.values) >= 1)
         most = np.nanmedian(np.abs(numbers.values)) if np.any(~np.isnan(numbers.values)) else 0.0
     if most > 100:
         numbers.values[tiny] = np.round(numbers.values[tiny] * 1000, 6)
+        if tiny.any():
+            rows = ", ".join(str(int(r)) for r in draft.rows[tiny][:10])
+            draft.context.notes.append(f"radii such as 1.2 among hundreds are read as 1200 (row {rows})")
 
 
 def _row_problems(draft: Draft, item: Column, numbers: Numbers, radius: FloatArray) -> None:

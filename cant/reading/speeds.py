@@ -20,7 +20,7 @@ from cant.reading.headings import analyse
 from cant.reading.meanings import Column
 from cant.reading.takers import take_speed
 from cant.reading.text import fold, is_text, squeeze
-from cant.reading.trains import classes_meant, known_train
+from cant.reading.trains import classes_meant, known_train, ranked_classes
 
 PASSENGER_FREIGHT = "first passenger, second freight"
 LINE_OTHER = "the first is the line speed"
@@ -81,7 +81,8 @@ def _names(draft: Draft, item: Column, parts: int) -> list[str] | None:
 def _with_base(draft: Draft, item: Column, named: list[str]) -> list[str]:
     traffic = draft.context.traffic
     if not item.train or traffic is None or all(classes_meant(fold(n), traffic) for n in named):
-        return named if not item.train else [f"{item.train_name} {n}" if len(fold(n)) < 3 else n for n in named]
+        short = bool(item.train) and traffic is None
+        return [f"{item.train_name} {n}" if short and len(fold(n)) < 3 else n for n in named]
     return [f"{item.train_name} {n}" for n in named]
 
 
@@ -111,7 +112,7 @@ def _part(item: Column, position: int, name: str) -> Column:
 
 def settle_speeds(draft: Draft) -> None:
     """Turn speed columns into the line's speed and those of the classes."""
-    ranked: dict[str, int] = {}
+    ranked: dict[str, tuple[int, int]] = {}
     for item in draft.columns:
         if item.meaning != "Speed":
             continue
@@ -119,8 +120,8 @@ def settle_speeds(draft: Draft) -> None:
         if not item.train:
             draft.numbers["speed_kmh"] = values
             continue
-        names = classes_of(draft, item)
-        rank = len(names)
+        sure, names = classes_of(draft, item)
+        rank = (sure, len(names))
         for name in names:
             if name not in ranked or rank < ranked[name]:
                 draft.class_speeds[name], ranked[name] = values.copy(), rank
@@ -153,8 +154,13 @@ def _kilometres_an_hour(draft: Draft, item: Column) -> FloatArray:
     return values
 
 
-def classes_of(draft: Draft, item: Column) -> list[str]:
+def classes_of(draft: Draft, item: Column) -> tuple[int, list[str]]:
     """Give the traffic classes that a speed column speaks of; its own name where there is no traffic.
+
+    Returns
+    -------
+    tuple of int, list of str
+        How sure the agreement is, 0 the surest, and the classes.
 
     Raises
     ------
@@ -163,10 +169,10 @@ def classes_of(draft: Draft, item: Column) -> list[str]:
     """
     traffic = draft.context.traffic
     if traffic is None:
-        return [item.train_name]
-    found = classes_meant(item.train, traffic)
+        return 0, [item.train_name]
+    sure, found = ranked_classes(item.train, traffic)
     if found:
-        return found
+        return sure, found
     if item.literal:
         place = Place(draft.context.file, draft.sheet, draft.block.header_last, item.index)
         known = ", ".join(traffic.class_names)
@@ -174,7 +180,7 @@ def classes_of(draft: Draft, item: Column) -> list[str]:
         raise InputError(message, place)
     item.note = f"no class of the traffic is called '{item.train_name}'; not used"
     item.confidence = "likely"
-    return []
+    return sure, []
 
 
 def highest_speed(draft: Draft) -> FloatArray:

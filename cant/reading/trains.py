@@ -90,6 +90,8 @@ def train_words(words: str) -> str:
 
 def says_speed(words: str) -> bool:
     """Whether folded heading words say "speed" in so many words."""
+    if not words.isascii() and (words.endswith(("v", "vmax")) or "速度" in words):
+        return True
     return any(
         token in _SPEED_WORDS
         and token not in ("max", "h", "line", "type", "tipo", "limit", "train", "trains")
@@ -114,6 +116,11 @@ def known_train(words: str) -> str:
 
 
 def classes_meant(words: str, traffic: Traffic) -> list[str]:
+    """Give the classes that folded words mean, see :func:`ranked_classes`."""
+    return ranked_classes(words, traffic)[1]
+
+
+def ranked_classes(words: str, traffic: Traffic) -> tuple[int, list[str]]:
     """Give the classes that folded words mean, the surest kind of agreement alone; none where none agree.
 
     Parameters
@@ -121,24 +128,29 @@ def classes_meant(words: str, traffic: Traffic) -> list[str]:
     words : str
         From :func:`train_words`.
     traffic : Traffic
+
+    Returns
+    -------
+    tuple of int, list of str
+        How sure the agreement is, 0 for the class's own name, and the classes.
     """
     if not words:
-        return []
+        return 99, []
     categories = {row.name: row.category for row in traffic.rows}
     steps = (
         lambda name: fold(name) == words,
+        lambda name: _abbreviates(words, fold(name)),
         lambda name: fold(categories[name]) == words,
         lambda name: lexicon("train_words").get(words) in _kinds(name),
-        lambda name: _abbreviates(words, fold(name)),
         lambda name: (
             lexicon("categories").get(words) in (categories[name], lexicon("categories").get(fold(name)))
         ),
         lambda name: known_train(words) in ({categories[name]} | _kinds(name)) - {""},
     )
-    for agrees in steps:
+    for rank, agrees in enumerate(steps):
         if found := [name for name in traffic.class_names if agrees(name)]:
-            return found
-    return []
+            return rank, found
+    return 99, []
 
 
 @lru_cache(maxsize=2048)
