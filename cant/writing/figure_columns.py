@@ -8,6 +8,42 @@ from __future__ import annotations
 
 from cant.writing.columns import Column, governing, path
 
+
+def _over_end(side: str) -> tuple[Column, ...]:
+    """Give what a class has over one end of a curve."""
+    return (
+        Column(
+            f"Rate of change of cant, {side}",
+            "rate",
+            path(side, "rate_of_change_of_cant_mm_per_s"),
+            10,
+            "Steepest, at the run speed.",
+        ),
+        Column(
+            f"Rate of change of deficiency, {side}",
+            "rate",
+            path(side, "rate_of_change_of_cant_deficiency_mm_per_s"),
+            10,
+            "Steepest, at the run speed; excess counts as deficiency 0.",
+        ),
+        Column(
+            f"Jump of deficiency, {side}",
+            "cant exact",
+            path(side, "abrupt_change_of_cant_deficiency_mm"),
+            10,
+            "Where there is no transition.",
+        ),
+        Column(f"Jerk, {side}", "jerk", path(side, "jerk_ms3"), 8, "From the change of deficiency."),
+        Column(
+            f"Roll rate, {side}",
+            "angular rate",
+            path(side, "roll_rate_deg_s"),
+            8,
+            "Speed at which the track tilts the train.",
+        ),
+    )
+
+
 FIGURES: tuple[Column, ...] = (
     Column("Cant", "", path("cant"), 10, "Whether the proposed cant or today's is meant."),
     Column("Class", "", path("class"), 16, "Class of train."),
@@ -75,44 +111,27 @@ FIGURES: tuple[Column, ...] = (
         10,
         "Radius at which the class would just keep its deficiency limit at this cant and the run speed.",
     ),
+    *_over_end("in"),
+    *_over_end("out"),
 )
-"""One row a curve and class; the record is a class of a curve with ``cant`` put to it."""
+"""One row a curve and class; the record is a class of a curve with ``cant`` put to it, and what the class has
+over each end as ``in`` and ``out``."""
 
 END: tuple[Column, ...] = (
     Column("End", "", path("side"), 8, "in or out: the end at the smaller or the greater chainage."),
-    Column("Class", "", path("class"), 16, "Class of train."),
     Column("Kind", "", path("kind"), 12, "to straight, shared with the next curve, none, or not known."),
     Column("Length", "length", path("length_m"), 9, "Length of the transition; blank: not known."),
     Column("Cant ramp", "length", path("ramp_m"), 9, "Length of the cant ramp."),
+    Column(
+        "Room for a ramp", "length", path("ramp_room_m"), 9, "On the straight, where there is no transition."
+    ),
+    Column("Change of cant", "cant", path("change_of_cant_mm"), 9, "Over the ramp, with the proposed cants."),
     Column("Cant gradient", "gradient", path("cant_gradient_mm_per_m"), 10, "Steepest, with the shape."),
-    Column(
-        "Rate of change of cant", "rate", path("rate_of_change_of_cant_mm_per_s"), 12, "At the run speed."
-    ),
-    Column(
-        "Rate of change of deficiency",
-        "rate",
-        path("rate_of_change_of_cant_deficiency_mm_per_s"),
-        12,
-        "At the run speed; excess counts as deficiency 0.",
-    ),
-    Column("Jerk", "jerk", path("jerk_ms3"), 8, "Change of the unbalanced acceleration with time."),
-    Column(
-        "Roll rate", "angular rate", path("roll_rate_deg_s"), 9, "Speed at which the track tilts the train."
-    ),
-    Column(
-        "Jump of deficiency",
-        "cant exact",
-        path("abrupt_change_of_cant_deficiency_mm"),
-        10,
-        "Where there is no transition.",
-    ),
     Column(
         "Ramp needed", "length", path("ramp_needed_m"), 9, "Cant ramp that the proposed cant needs at least."
     ),
     Column("Ramp needed for", "", path("ramp_needed_by"), 14, "Class that needs it; blank: its gradient."),
-    Column(
-        "Transition needed", "length", path("transition_needed_m"), 10, "Transition needed for deficiency."
-    ),
+    Column("Transition needed", "length", path("transition_needed_m"), 10, "For the change of deficiency."),
     Column("Transition needed for", "", path("transition_needed_by"), 14, "Class that needs it."),
 )
-"""One row an end of a curve and class; the record is a class of a transition with ``side`` put to it."""
+"""One row an end of a curve; the record is a transition with ``side`` put to it."""

@@ -66,14 +66,14 @@ class PlanSheets:
         """Write what the sheets hold of one curve."""
         self._plan.row([column.cell(record, self._display) for column in self._plan_columns])
         place = [column.cell(record, self._display) for column in PLACE]
-        for which, entries in (("proposed", record["classes"]), ("today", record["today"]["classes"])):
-            for entry in entries:
-                figures = {**entry, "cant": which, "status": record["status"]}
-                self._figures.row([*place, *(column.cell(figures, self._display) for column in FIGURES)])
-        for side, end in record.get("transitions", {}).items():
-            for entry in end["classes"]:
-                shown = {**end, **entry, "side": side}
-                self._ends.row([*place, *(column.cell(shown, self._display) for column in END)])
+        ends = record["transitions"]
+        for entry in record["classes"]:
+            self._figure_row(place, {**entry, "cant": "proposed", **_over_ends(ends, entry["class"])})
+        for entry in record["today"]["classes"]:
+            self._figure_row(place, {**entry, "cant": "today"})
+        for side, end in ends.items():
+            shown = {**end, "side": side}
+            self._ends.row([*place, *(column.cell(shown, self._display) for column in END)])
         names = [record["line"], record["track"], record["curve"]]
         self._write_findings(names, record["findings"])
 
@@ -89,6 +89,9 @@ class PlanSheets:
         self._dicts("Traffic used", list(rows[0]) if rows else [], rows)
         self._settings()
         self._how_read()
+
+    def _figure_row(self, place: list[Cell], figures: Record) -> None:
+        self._figures.row([*place, *(column.cell(figures, self._display) for column in FIGURES)])
 
     def _summary(self) -> None:
         """Write the first of our sheets: what was planned with what, counts, cautions."""
@@ -174,6 +177,11 @@ class PlanSheets:
         sheet = self._plain(name, titles)
         for row in rows:
             sheet.row([_cell(row[title]) for title in titles])
+
+
+def _over_ends(ends: Record, name: str) -> dict[str, Record]:
+    """Give what a class has over each end of a curve."""
+    return {side: entry for side, end in ends.items() for entry in end["classes"] if entry["class"] == name}
 
 
 def _cell(value: Any) -> Cell:
