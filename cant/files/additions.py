@@ -122,7 +122,7 @@ class SheetAddition:
     header_row : int
         Row of the headings, from 1.
     columns : list of AddedColumn
-        In order, from :attr:`cant.files.grid.Sheet.next_column` on.
+        In order; :meth:`cant.files.grid.Sheet.added_columns` tells the columns they take.
     marks : list of CellMark
         Fills and notes on the user's own cells.
     """

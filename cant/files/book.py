@@ -19,6 +19,8 @@ from cant.files.sheet_xml import parse_range
 
 COLUMN_MARK = "_cant_column_"
 SHEET_MARK = "_cant_sheet_"
+TOUCHED_MARK = "_cant_touched_"
+MARKS = (COLUMN_MARK, SHEET_MARK, TOUCHED_MARK)
 _AREA = re.compile(r"(?:'((?:[^']|'')+)'|([^'!,()]+))!([$A-Za-z0-9:]+)")
 
 
@@ -112,18 +114,25 @@ class Book:
     def added_columns(self) -> dict[str, list[CellRange]]:
         """Give the cells that an earlier annotation added, by the name of their sheet in lower case."""
         found: dict[str, list[CellRange]] = {}
-        for name, refers, _ in self.names():
-            if name.startswith(COLUMN_MARK):
-                for area in areas(refers):
-                    found.setdefault(area.sheet.casefold(), []).append(area.cells)
+        marked = [(name, refers) for name, refers, _ in self.names() if name.startswith(COLUMN_MARK)]
+        for _, refers in sorted(marked):
+            for area in areas(refers):
+                found.setdefault(area.sheet.casefold(), []).append(area.cells)
         return found
 
     def added_sheets(self) -> set[str]:
         """Give the names, in lower case, of the sheets that an earlier annotation added."""
+        return self._marked(SHEET_MARK)
+
+    def touched_sheets(self) -> set[str]:
+        """Give the names, in lower case, of the user's sheets that an earlier annotation touched."""
+        return self._marked(TOUCHED_MARK, COLUMN_MARK)
+
+    def _marked(self, *marks: str) -> set[str]:
         return {
             area.sheet.casefold()
             for name, refers, _ in self.names()
-            if name.startswith(SHEET_MARK)
+            if name.startswith(marks)
             for area in areas(refers)
         }
 

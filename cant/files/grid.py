@@ -57,7 +57,9 @@ class Sheet:
     number_formats : mapping of (int, int) to str
         Number format of cells where it is not General; may be left empty by formats that have none.
     next_column : int
-        Column from 0 that the first added column takes when the sheet is annotated.
+        First column from 0 right of all that is used.
+    earlier_columns : tuple of int
+        Columns from 0 that an earlier annotation added; their cells are not in ``rows``.
     """
 
     name: str
@@ -69,6 +71,7 @@ class Sheet:
     formulas: AbstractSet[tuple[int, int]] = field(default_factory=set)
     number_formats: Mapping[tuple[int, int], str] = field(default_factory=dict)
     next_column: int = 0
+    earlier_columns: tuple[int, ...] = ()
 
     def value(self, row: int, column: int) -> Value:
         """Give the value of a cell: row from 1, column from 0; None outside."""
@@ -76,6 +79,16 @@ class Sheet:
             return None
         cells = self.rows[row - 1]
         return cells[column] if column < len(cells) else None
+
+    def added_columns(self, count: int) -> list[int]:
+        """Give the columns from 0 that ``count`` added columns take, for formulas that refer to them.
+
+        Those of an earlier annotation are used again, so that the user's own formulas which refer to them
+        stay right; the rest go right of all that is used.
+        """
+        kept = list(self.earlier_columns[:count])
+        first = max([self.next_column, *(column + 1 for column in self.earlier_columns)])
+        return kept + list(range(first, first + count - len(kept)))
 
     @property
     def width(self) -> int:

@@ -44,6 +44,11 @@ class SheetRead:
     tables: list[CellRange]
 
     @property
+    def earlier_columns(self) -> tuple[int, ...]:
+        """Columns from 0 that an earlier annotation added."""
+        return tuple(dict.fromkeys(one.first_column for one in self.cells.ignored))
+
+    @property
     def next_column(self) -> int:
         """Column from 0 for the first added one: right of the last used, with a gap beside a table."""
         used = max([self.cells.last_value, *(one.last_column for one in self.tables)])
@@ -120,4 +125,5 @@ def as_sheet(read: SheetRead) -> Sheet:
         formulas=read.cells.formulas,
         number_formats=read.cells.number_formats,
         next_column=read.next_column,
+        earlier_columns=read.earlier_columns,
     )

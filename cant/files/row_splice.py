@@ -1,0 +1,246 @@
+"""New cells put into the rows of a worksheet, everything else copied as it stands."""
+
+from __future__ import annotations
+
+import re
+from collections.abc import Iterator, Sequence
+from dataclasses import dataclass
+
+from cant.errors import FileError, column_letter
+from cant.files.additions import AddedColumn, OutCell
+from cant.files.grid import CellRange
+from cant.files.markup import escape
+from cant.files.sheet_xml import COLUMNS, MAX_ROW, RowSpan
+from cant.files.sheets import SheetRead
+from cant.files.style_edit import StyleEdit, StyleNeed
+from cant.files.text import to_cell_text
+
+_SPANS = re.compile(rb'(\sspans=")(\d{1,5}):(\d{1,5})"')
+_FLUSH_BYTES = 1 << 20
+
+
+@dataclass(frozen=True, slots=True)
+class PlacedColumn:
+    """An added column and the column from 0 that it takes."""
+
+    column: int
+    content: AddedColumn
+
+
+class RowSplice:
+    """Puts cells into rows.
+
+    Parameters
+    ----------
+    read : SheetRead
+        The sheet as read.
+    columns : sequence of PlacedColumn
+        What to add.
+    header_row : int
+        Row of the headings, from 1.
+    styles : StyleEdit
+        The workbook's styles, which gain what the cells need.
+    """
+
+    def __init__(
+        self, read: SheetRead, columns: Sequence[PlacedColumn], header_row: int, styles: StyleEdit
+    ) -> None:
+        self.read = read
+        self.styles = styles
+        self.columns = sorted(columns, key=lambda one: one.column)
+        self.cells = [self._cells_of(one.content, header_row) for one in self.columns]
+        self.letters = [column_letter(one.column) for one in self.columns]
+        self.rows = sorted({row for cells in self.cells for row in cells})
+        self.last_used = read.next_column - 1
+        self.has_formulas = False
+        p = read.xml.prefix.decode()
+        self._p = p
+        self._last_cell = re.compile(rb"<" + p.encode() + rb'c r="([A-Z]{1,3})[0-9]+"')
+        self._every_cell = re.compile(
+            rb"<" + p.encode() + rb"""c(?=[\s/>])(?:[^>"']|"[^"]*"|'[^']*')*(?:(?<=/)>|>.*?</"""
+            + p.encode() + rb"c>)", re.DOTALL,
+        )  # fmt: skip
+        self._check_rows()
+
+    def _check_rows(self) -> None:
+        if self.rows and not 0 < self.rows[0] <= self.rows[-1] <= MAX_ROW:
+            message = f"has no row {self.rows[0] if self.rows[0] < 1 else self.rows[-1]} to write to"
+            raise FileError(message, self.read.xml.place)
+
+    @staticmethod
+    def _cells_of(content: AddedColumn, header_row: int) -> dict[int, OutCell]:
+        cells = dict(content.cells)
+        cells[header_row] = OutCell(content.heading, fill=content.heading_fill, note=content.heading_note)
+        return cells
+
+    def areas(self) -> Iterator[tuple[int, list[CellRange]]]:
+        """Give for each added column, in order, the stretches of rows that it fills."""
+        for one, cells in zip(self.columns, self.cells, strict=True):
+            yield one.column, stretches(sorted(cells), one.column)
+
+    def chunks(self) -> Iterator[bytes]:
+        """Give the new content of ``sheetData`` in pieces."""
+        data = self.read.xml.data
+        pending = iter([*self.rows, 0])
+        wanted = next(pending)
+        at = self.read.xml.rows_start
+        out: list[bytes] = []
+        size = last = 0
+        for span in self.read.xml.rows():
+            if span.number <= last:
+                message = "is damaged: its rows are not in order; open it and save it anew"
+                raise FileError(message, self.read.xml.place.at(span.number))
+            last = span.number
+            while wanted and wanted < span.number:
+                out += (data[at : span.start], self._new_row(wanted))
+                at, wanted = span.start, next(pending)
+            if wanted == span.number or self._has_earlier(span.number):
+                out += (data[at : span.start], self._spliced(span, wanted == span.number))
+                size += len(out[-1])
+                at = span.end
+                if wanted == span.number:
+                    wanted = next(pending)
+            if size > _FLUSH_BYTES:
+                yield b"".join(out)
+                out, size = [], 0
+        out.append(data[at : self.read.xml.rows_end])
+        while wanted:
+            out.append(self._new_row(wanted))
+            wanted = next(pending)
+        yield b"".join(out)
+
+    def _has_earlier(self, row: int) -> bool:
+        return any(one.first_row <= row <= one.last_row for one in self.read.cells.ignored)
+
+    def _new_row(self, row: int) -> bytes:
+        p = self._p
+        cells = "".join(text for _, text in self._row_cells(row, {}))
+        return f'<{p}row r="{row}">{cells}</{p}row>'.encode()
+
+    def _spliced(self, span: RowSpan, has_new: bool) -> bytes:
+        """Give a row with its new cells, and without those of an earlier annotation."""
+        data = self.read.xml.data
+        tag, inner = data[span.start : span.inner], data[span.inner : span.inner_end]
+        if not has_new:
+            kept = self._kept_cells(inner, span.number)
+            return self._row(tag, b"".join(content for _, content in kept))
+        if self._is_simple(inner, span.number):
+            new = "".join([text for _, text in self._row_cells(span.number, {})])
+            return self._row(self._widened(tag), inner + new.encode("utf-8"))
+        kept = self._kept_cells(inner, span.number)
+        taken = {column: content for column, content in kept if column in self._own_columns}
+        cells = [(column, content) for column, content in kept if column not in taken]
+        cells += [(column, text.encode("utf-8")) for column, text in self._row_cells(span.number, taken)]
+        cells.sort(key=lambda one: one[0])
+        return self._row(self._widened(tag), b"".join(content for _, content in cells))
+
+    def _row(self, tag: bytes, inner: bytes) -> bytes:
+        if tag.endswith(b"/>"):
+            tag = tag[:-2].rstrip() + b">"
+        return tag + inner + f"</{self._p}row>".encode()
+
+    @property
+    def _own_columns(self) -> set[int]:
+        return {one.column for one in self.columns}
+
+    def _is_simple(self, inner: bytes, row: int) -> bool:
+        """Tell whether all new cells of a row simply go behind its last one."""
+        if self._has_earlier(row):
+            return False
+        if not self.columns:
+            return False
+        at = inner.rfind(f"<{self._p}c ".encode())
+        if at < 0:
+            return not inner.strip()
+        match = self._last_cell.match(inner, at)
+        return match is not None and COLUMNS[match.group(1)] < self.columns[0].column
+
+    def _kept_cells(self, inner: bytes, row: int) -> list[tuple[int, bytes]]:
+        """Give a row's cells by column, less those of an earlier annotation."""
+        found: list[tuple[int, bytes]] = []
+        gone = [one for one in self.read.cells.ignored if one.first_row <= row <= one.last_row]
+        column = -1
+        for match in self._every_cell.finditer(inner):
+            name = re.match(rb"""[^>]*?\sr=["']([A-Za-z]{1,3})[0-9]+["']""", match.group())
+            column = COLUMNS[name.group(1).upper()] if name else column + 1
+            if not any(one.first_column <= column <= one.last_column for one in gone):
+                found.append((column, match.group()))
+        return found
+
+    def _widened(self, tag: bytes) -> bytes:
+        """Let the row's optional ``spans`` reach the new cells."""
+        last = self.columns[-1].column + 1
+        return _SPANS.sub(
+            lambda match: match[1] + match[2] + b":%d" % max(int(match[3]), last) + b'"', tag, count=1
+        )
+
+    def _row_cells(self, row: int, taken: dict[int, bytes]) -> Iterator[tuple[int, str]]:
+        """Give the new cells of a row, left to right; ``taken`` are the user's blank cells in their place."""
+        base = self._base_style(row)
+        for placed, letters, cells in zip(self.columns, self.letters, self.cells, strict=True):
+            cell = cells.get(row)
+            own = taken.get(placed.column)
+            if cell is None:
+                if own is not None:
+                    yield placed.column, own.decode("utf-8")
+                continue
+            style = _style_of(own) if own is not None else base
+            yield placed.column, self._cell(f"{letters}{row}", cell, placed.content, style)
+
+    def _base_style(self, row: int) -> int:
+        """Give the style of the row's last used cell."""
+        styles = self.read.cells.number_formats.rows.get(row)
+        if not styles:
+            return 0
+        return styles[min(len(styles), self.last_used + 1) - 1]
+
+    def _cell(self, name: str, cell: OutCell, column: AddedColumn, base: int) -> str:
+        value = cell.value
+        is_number = value is not None and not isinstance(value, str | bool)
+        need = StyleNeed(base, cell.number_format or column.number_format, cell.fill, is_number)
+        style = self.styles.cell_style(need)
+        p = self._p
+        head = f'<{p}c r="{name}" s="{style}"' if style else f'<{p}c r="{name}"'
+        formula = ""
+        if cell.formula is not None:
+            self.has_formulas = True
+            formula = f"<{p}f>{escape(to_cell_text(cell.formula))}</{p}f>"
+        if value is None:
+            return f"{head}>{formula}</{p}c>" if formula else f"{head}/>"
+        if isinstance(value, bool):
+            return f'{head} t="b">{formula}<{p}v>{int(value)}</{p}v></{p}c>'
+        if isinstance(value, str):
+            return self._text_cell(head, formula, value)
+        number = float(value)
+        if number - number != 0:
+            return f'{head} t="e">{formula}<{p}v>#N/A</{p}v></{p}c>'
+        text = repr(int(number)) if number.is_integer() and abs(number) < 1e15 else repr(number)
+        return f"{head}>{formula}<{p}v>{text}</{p}v></{p}c>"
+
+    def _text_cell(self, head: str, formula: str, value: str) -> str:
+        p = self._p
+        text = escape(to_cell_text(value))
+        if formula:
+            return f'{head} t="str">{formula}<{p}v>{text}</{p}v></{p}c>'
+        keep = ' xml:space="preserve"' if value != value.strip() or "\n" in value or "  " in value else ""
+        return f'{head} t="inlineStr"><{p}is><{p}t{keep}>{text}</{p}t></{p}is></{p}c>'
+
+
+def _style_of(cell: bytes) -> int:
+    match = re.match(rb"""[^>]*?\ss=["'](\d{1,7})["']""", cell)
+    return int(match.group(1)) if match else 0
+
+
+def stretches(rows: Sequence[int], column: int, most: int = 40) -> list[CellRange]:
+    """Give the runs of rows without a gap as ranges of one column; one range over all if too many."""
+    if not rows:
+        return []
+    found: list[CellRange] = []
+    at = 0
+    while at < len(rows):
+        end = at + 1
+        while end < len(rows) and rows[end] == rows[end - 1] + 1:
+            end += 1
+        found.append(CellRange(rows[at], column, rows[end - 1], column))
+        at = end
+    return found if len(found) <= most else [CellRange(rows[0], column, rows[-1], column)]
