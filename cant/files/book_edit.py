@@ -145,7 +145,7 @@ class BookEdit:
         if holder is None:
             self.edit.package.damaged("it lists no sheets")
         p = holder.prefix
-        number = max((_integer(one.element.get("sheetId")) for one in self.book.sheets), default=0)
+        number = max((_integer(one.element.get("sheetId")) for one in self.kept), default=0)
         new = "".join(
             f'<{p}sheet xmlns:r="{OFFICE_RELATIONS}" name="{escape_attribute(name)}" '
             f'sheetId="{number + count}" r:id="{identifier}"/>'

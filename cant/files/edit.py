@@ -130,9 +130,7 @@ class PackageEdit:
     def free_part(self, stem: str, extension: str) -> str:
         """Give a part name that is not taken: the stem, a number, the extension."""
         number = 1
-        while (
-            self.package.name_of(f"{stem}{number}{extension}") or f"{stem}{number}{extension}" in self.changed
-        ):
+        while self.has(f"{stem}{number}{extension}"):
             number += 1
         return f"{stem}{number}{extension}"
 
@@ -150,7 +148,8 @@ class PackageEdit:
         """
         new = self._related.setdefault(part, [])
         number = len(new) + 1
-        taken = set(self.package.relationships(part)) | {one[0] for one in new}
+        gone = self._unrelated.get(part, set())
+        taken = (set(self.package.relationships(part)) - gone) | {one[0] for one in new}
         while f"rId{number}" in taken:
             number += 1
         new.append((f"rId{number}", kind, "/" + target))
@@ -197,7 +196,7 @@ class PackageEdit:
         name = self.package.content_types_name
         data = self.xml(name)
         root = elements(data, name, self.package.place)
-        gone = {"/" + part.casefold() for part in self.removed if part not in self.changed}
+        gone = {"/" + part.casefold() for part in self.removed}
         changes: list[Change] = [
             (one.start, one.end, b"")
             for one in root.all("Override")

@@ -41,6 +41,7 @@ _SHAPE = re.compile(rb"<v:shape\s.*?</v:shape>", re.DOTALL)
 _SHAPE_ROW = re.compile(rb"<x:Row>\s*(\d+)\s*</x:Row>")
 _SHAPE_COLUMN = re.compile(rb"<x:Column>\s*(\d+)\s*</x:Column>")
 _IDMAP = re.compile(rb'(<o:idmap\b[^>]*\bdata=")([^"]*)"')
+_SHAPE_NUMBER = re.compile(rb'id="_x0000_s(\d{1,9})"')
 _IDS_PER_BLOCK = 1023
 
 
@@ -166,40 +167,44 @@ class NotesEdit:
             self.edit.replace(self.drawing, _EMPTY_VML.encode())
             identifier = self.edit.relate(self.part, f"{OFFICE_RELATIONS}/vmlDrawing", self.drawing)
         data = self._drawing_data()
-        block = self._free_block()
-        blocks = range(block, block + (len(cells) - 1) // _IDS_PER_BLOCK + 1)
+        blocks = self._free_blocks(data, (len(cells) - 1) // _IDS_PER_BLOCK + 1)
         data = _IDMAP.sub(lambda match: match[1] + _joined(match[2], blocks) + b'"', data, count=1)
         shapes = "" if b'id="_x0000_t202"' in data else _SHAPE_TYPE
-        shapes += "".join(_shape(number, block, cell) for number, cell in enumerate(cells))
+        for number, cell in enumerate(cells):
+            shapes += _shape(blocks[number // _IDS_PER_BLOCK] * 1024 + number % _IDS_PER_BLOCK + 1, cell)
         end = data.rfind(b"</xml>")
         if end < 0:
             self.edit.package.damaged(f"its part {self.drawing} is not complete")
         self.edit.replace(self.drawing, data[:end] + shapes.encode() + data[end:])
         return identifier
 
-    def _free_block(self) -> int:
-        """Give the first block of shape numbers that no legacy drawing of the workbook uses."""
-        used = [0]
+    def _free_blocks(self, data: bytes, count: int) -> list[int]:
+        """Give blocks of shape numbers: unused ones of this drawing, then ones that no drawing uses."""
+        match = _IDMAP.search(data)
+        own = _numbers(match[2]) if match else []
+        busy = {int(number) // 1024 for number in _SHAPE_NUMBER.findall(data)}
+        free = [block for block in own if block not in busy][:count]
         package = self.edit.package
-        drawings = {name for name in package.archive.members if name.lower().endswith(".vml")}
-        drawings |= {name for name in self.edit.changed if name.lower().endswith(".vml")}
-        for name in drawings - self.edit.removed:
-            new = self.edit.changed.get(name)
-            data = b"".join(new) if new is not None else package.archive.read(name)
-            for _, numbers in _IDMAP.findall(data):
-                used += [int(one) for one in numbers.split(b",") if one.strip().isdigit()]
-        return max(used) + 1
+        used = [0]
+        for name in (package.archive.members.keys() - self.edit.removed) | self.edit.changed.keys():
+            if name.lower().endswith(".vml"):
+                new = self.edit.changed.get(name)
+                content = b"".join(new) if new is not None else package.archive.read(name)
+                used += [one for found in _IDMAP.findall(content) for one in _numbers(found[1])]
+        first = max(used) + 1
+        return free + list(range(first, first + count - len(free)))
 
 
-def _joined(old: bytes, blocks: range) -> bytes:
-    new = ",".join(map(str, blocks)).encode()
-    return old + b"," + new if old else new
+def _numbers(text: bytes) -> list[int]:
+    return [int(one) for one in text.split(b",") if one.strip().isdigit() and len(one) < 8]
 
 
-def _shape(number: int, block: int, cell: Cell) -> str:
+def _joined(old: bytes, blocks: list[int]) -> bytes:
+    return ",".join(map(str, dict.fromkeys([*_numbers(old), *blocks]))).encode()
+
+
+def _shape(identifier: int, cell: Cell) -> str:
     row, column = cell
-    block, rest = block + number // _IDS_PER_BLOCK, number % _IDS_PER_BLOCK
-    identifier = block * 1024 + rest + 1
     anchor = f"{column + 1}, 15, {max(row - 2, 0)}, 10, {column + 4}, 15, {row + 4}, 4"
     return (
         f'<v:shape id="_x0000_s{identifier}" type="#_x0000_t202" style="position:absolute;'

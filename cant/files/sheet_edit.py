@@ -135,7 +135,8 @@ class SheetEdit:
         """Take out the conditional formats of an earlier annotation and add those wanted now."""
         self._remove_own_formats()
         p = self.root.prefix
-        rank = 1 + max((_number(one.get("priority")) for one in self._rules()), default=0)
+        theirs = [one for one in self.root.walk() if one.name == "cfRule" and not self._is_own(one)]
+        rank = 1 + max((_number(one.get("priority")) for one in theirs), default=0)
         new: list[str] = []
         for cells, formula, style in [*self._column_formats(), *self._mark_formats(marks)]:
             new.append(
@@ -146,9 +147,6 @@ class SheetEdit:
         if new:
             at = before(self.root, _ORDER, "conditionalFormatting", "oleObjects")
             self._changes.append((at, at, "".join(new).encode("utf-8")))
-
-    def _rules(self) -> Iterator[Element]:
-        return (one for one in self.root.walk() if one.name == "cfRule")
 
     def _remove_own_formats(self) -> None:
         for one in self.root.all("conditionalFormatting"):
