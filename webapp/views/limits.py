@@ -181,7 +181,8 @@ def confirm(address: str) -> ResponseReturnValue:
 
 def _keep(plan: StoredPlan, limits: LimitSet) -> None:
     """Keep limits where the list can be read with them: a situation that no rule names is unknown."""
-    if limits == _limits(plan):
+    before = _limits(plan)
+    if before is not None and limits_text(limits) == limits_text(before):
         return
     check_reading(plan, file_of(plan), limits=limits)
     running().store.decide(owner(), plan.address, {"limits": limits_text(limits)})

@@ -75,6 +75,7 @@ def resume(address: str) -> ResponseReturnValue:
 @pages.post("/plans/<address>/name")
 def rename(address: str) -> ResponseReturnValue:
     """Call a plan otherwise."""
+    stored(address)
     running().store.rename(owner(), address, request.form.get("name", ""))
     flash("The plan has its new name.")
     return redirect(url_for("start.home"), 303)

@@ -104,7 +104,8 @@ def as_file(address: str) -> ResponseReturnValue:
 
 def _keep(plan: StoredPlan, traffic: Traffic) -> None:
     """Keep a traffic table where the list can be read with it."""
-    if traffic == _traffic(plan):
+    before = _traffic(plan)
+    if before is not None and traffic_text(traffic) == traffic_text(before):
         return
     check_reading(plan, file_of(plan), traffic=traffic)
     running().store.decide(owner(), plan.address, {"traffic": traffic_text(traffic)})
