@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import numpy as np
 
-from cant.model.curves import DOES_NOT_RUN, LEFT, RIGHT, BoolArray
+from cant.model.curves import DOES_NOT_RUN, BoolArray
 from cant.model.traffic import Traffic
 from cant.reading.draft import Draft
 
@@ -134,30 +134,6 @@ def _bounds(draft: Draft) -> None:
 def _fixed(draft: Draft) -> None:
     for index in _at(draft, draft.cant_fixed & np.isnan(draft.numbers["cant_mm"])):
         draft.fail(index, draft.column("Cant fixed"), "the cant is fixed but not stated; Cant belongs there")
-
-
-def apply_signs(draft: Draft) -> None:
-    """Compare a signed radius with the hand and keep the radius positive."""
-    values = draft.numbers["radius_m"]
-    with np.errstate(invalid="ignore"):
-        negative = values < 0
-    draft.numbers["radius_m"] = np.abs(values)
-    if not negative.any():
-        return
-    signs = np.where(negative, -1, 1)
-    known = draft.hand != 0
-    agree = int(np.sum(known & (draft.hand == signs)))
-    differ = int(np.sum(known & (draft.hand == -signs)))
-    if not known.any():
-        return
-    turn = 1 if agree >= differ else -1
-    for index in _at(draft, known & (draft.hand != turn * signs) & ~np.isnan(values)):
-        if (known.all() and negative[index]) or not agree or not differ:
-            draft.fail(
-                index, draft.column("Radius"), "the sign of the radius contradicts the hand of the row"
-            )
-    fillable = ~known & ~np.isnan(values)
-    draft.hand[fillable] = np.where(turn * signs[fillable] > 0, LEFT, RIGHT)
 
 
 def check_duplicates(drafts: list[Draft]) -> None:

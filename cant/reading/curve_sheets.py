@@ -11,17 +11,23 @@ import numpy as np
 from cant.files.grid import Sheet, Value
 from cant.model.curves import CurveList
 from cant.model.reading import ColumnReading, SheetReading
-from cant.reading.checks import apply_signs, check
+from cant.reading.checks import check
+from cant.reading.dates import undo_dates
 from cant.reading.draft import Context, Draft
-from cant.reading.layout import Block, find_blocks
 from cant.reading.elements import curves_of_elements, is_element_list
-from cant.reading.meanings import Column, correct, decide
+from cant.reading.evidence import language_of
+from cant.reading.layout import Block, find_blocks
+from cant.reading.meanings import Column, correct, decide, settle_doubles
 from cant.reading.numbers import decimal_mark
 from cant.reading.places import is_track, line_named, track_named
 from cant.reading.quantities import fill
 from cant.reading.records import is_example
 from cant.reading.rows import fill_merged, sift
 from cant.reading.text import is_blank, is_text, shown, squeeze
+from cant.reading.weak import Doubt, settle_weak
+
+NOT_USED = "not used"
+"""Answer that leaves a column as it is."""
 
 
 def read_sheet(sheet: Sheet, context: Context) -> list[Draft]:
@@ -37,6 +43,11 @@ def read_block(block: Block, context: Context) -> Draft:
     fill_merged(block.sheet, [int(r) for r in rows], columns)
     texts = (str(c) for item in columns for c in item.cells[:2000] if is_text(c))
     decimal = decimal_mark(texts)
+    undo_dates(block.sheet, [int(r) for r in rows], columns)
+    doubts = settle_weak(columns, decimal, language_of(columns))
+    settle_doubles(columns)
+    for doubt in doubts:
+        _choose(doubt, context, block.sheet.name)
     elements = is_element_list(columns)
     sifted = sift(block, columns, decimal, elements)
     context.notes += sifted.notes(rows, block.sheet.name, elements)
@@ -47,6 +58,9 @@ def read_block(block: Block, context: Context) -> Draft:
         source = names.get(item.index, item.cells)
         item.cells = [source[i] for i in keep] if len(keep) < len(rows) else source
     draft = Draft(block, columns, rows[keep], decimal, context)
+    for doubt in doubts:
+        if not doubt.column.meaning:
+            _ask_meaning(draft, doubt)
     if elements:
         draft = curves_of_elements(draft)
         tracks = [""] * len(draft)
@@ -54,9 +68,28 @@ def read_block(block: Block, context: Context) -> Draft:
         tracks = [tracks[i] for i in keep]
         fill(draft)
     _name(draft, tracks)
-    apply_signs(draft)
     check(draft)
     return draft
+
+
+def _choose(doubt: Doubt, context: Context, sheet: str) -> None:
+    answer = context.answers.choice(sheet, doubt.column.heading.text, doubt.meanings)
+    if answer is not None:
+        doubt.column.meaning, doubt.column.confidence, doubt.column.note = answer, "certain", "as told"
+
+
+def _ask_meaning(draft: Draft, doubt: Doubt) -> None:
+    where = [i for i, cell in enumerate(doubt.column.cells) if not is_blank(cell)]
+    choices = (*doubt.meanings, NOT_USED)
+    if draft.context.answers.choice(draft.sheet, doubt.column.heading.text, choices) == NOT_USED:
+        return
+    samples = ", ".join(doubt.column.samples())
+    draft.ask(
+        doubt.column,
+        f"The heading may mean {' or '.join(doubt.meanings)}, and the values ({samples}) fit each. Which is it?",
+        choices,
+        where,
+    )
 
 
 def _filled_down(item: Column) -> list[Value]:

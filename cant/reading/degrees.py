@@ -16,7 +16,12 @@ from cant.reading.numbers import parse_number
 from cant.reading.takers import is_straight
 from cant.units import FOOT_M
 
-ARC_100_FT, CHORD_100_FT, CHORD_30_5_M, CHORD_20_M = "100 ft arc", "100 ft chord", "30.5 m chord", "20 m chord"
+ARC_100_FT, CHORD_100_FT, CHORD_30_5_M, CHORD_20_M = (
+    "100 ft arc",
+    "100 ft chord",
+    "30.5 m chord",
+    "20 m chord",
+)
 KINDS: dict[str, tuple[float, bool]] = {
     ARC_100_FT: (100 * FOOT_M, False),
     CHORD_100_FT: (100 * FOOT_M, True),
@@ -31,7 +36,9 @@ _DMS = re.compile(
     rf"(?:(?P<s>{_NUM})\s*(?:\"|″|''|”|s(?:ec)?\.?)?)?",
     re.IGNORECASE,
 )
-_DASHED = re.compile(r"(?P<sign>)(?P<d>\d{1,2})\s*[-: ]\s*(?P<m>\d{1,2})(?:\s*[-: ]\s*(?P<s>\d{1,2}(?:\.\d+)?))?[\"']?")
+_DASHED = re.compile(
+    r"(?P<sign>)(?P<d>\d{1,2})\s*[-: ]\s*(?P<m>\d{1,2})(?:\s*[-: ]\s*(?P<s>\d{1,2}(?:\.\d+)?))?[\"']?"
+)
 _MINUTES = re.compile(rf"(?P<m>{_NUM})\s*(?:'|′|min)")
 
 
@@ -50,7 +57,10 @@ def take_degree(text: str, decimal: str = "") -> Taken:
             return Taken(-value if match["sign"] == "-" else value)
     if match := _MINUTES.fullmatch(text):
         return Taken(float(match["m"].replace(",", ".")) / 60)
-    if text.endswith(("°", "º", "deg")) and (number := parse_number(text.rstrip("°ºdeg "), decimal)) is not None:
+    if (
+        text.endswith(("°", "º", "deg"))
+        and (number := parse_number(text.rstrip("°ºdeg "), decimal)) is not None
+    ):
         return Taken(number)
     return Taken(problem=f"'{text}' is no degree of curve; one such as 2°15' or 2.25 belongs there")
 

@@ -65,7 +65,9 @@ def _kinds(draft: Draft) -> list[str | None]:
     found: list[str | None] = []
     for cell in item.cells:
         text = fold(shown(cell))
-        found.append(words.get(text) or next((words[t] for t in text.split() if t in words and len(t) > 1), None))
+        found.append(
+            words.get(text) or next((words[t] for t in text.split() if t in words and len(t) > 1), None)
+        )
     return found
 
 
@@ -111,11 +113,12 @@ def _as_radius(
 def _lengths(draft: Draft, kinds: list[str | None]) -> FloatArray:
     """Give the length of every element [m], from its length or its chainages."""
     every = _taken(draft, list(range(len(draft))))
+    asked, noted = len(draft.context.questions), len(draft.context.notes)
     radius = every.column("Radius")
     if radius is not None:
         radius.meaning = ""
     fill(every)
-    draft.context.questions[:] = [q for q in draft.context.questions if q not in every.context.questions]
+    del draft.context.questions[asked:], draft.context.notes[noted:]
     spans = np.abs(every.numbers["end_km"] - every.numbers["start_km"]) * 1000
     stated = every.numbers["length_m"]
     return np.where(np.isnan(stated), np.round(spans, 3), stated)

@@ -70,10 +70,11 @@ def gather(columns: Sequence[Column], texts: Iterable[str]) -> Evidence:
     for text in texts:
         imperial |= {m.casefold() for m in _IMPERIAL_TEXT.findall(text)}
         metric |= {m.casefold() for m in _METRIC_TEXT.findall(text)}
-    return Evidence(frozenset(imperial), frozenset(metric), _language(columns))
+    return Evidence(frozenset(imperial), frozenset(metric), language_of(columns))
 
 
-def _language(columns: Sequence[Column]) -> str:
+def language_of(columns: Sequence[Column]) -> str:
+    """Give the language that most headings are in, ``en`` where it cannot be told."""
     votes: Counter[str] = Counter()
     for item in columns:
         found = {m.language for m in matches(item.heading.words) if m.score == 1.0 and m.language}

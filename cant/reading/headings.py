@@ -29,10 +29,10 @@ _CHORD = re.compile(
 )
 _CHORD_METRES = re.compile(r"^(?:v|g|f|c)\s?(5|6|10|20|30)$", re.IGNORECASE)
 _BARE_UNIT = re.compile(
-    r"(?<![\w/])(mm|cm|km/h|kmh|kmph|kph|km/hr|mph|ft|feet|inches|inch|chains|chs|yards|yds|yd|metres|meters|‰)(?![\w/])\.?",
+    r"(?<![\w/])(mm|cm|km/h|kmh|kmph|kph|km/hr|mph|ft|feet|inches|inch|ins|chains|chs|yards|yds|yd|metres|meters|‰)(?![\w/])\.?",
     re.IGNORECASE,
 )
-_LAST_UNIT = re.compile(r"(?<=[\w.] )(m|km|in|ch|ft)\.?$", re.IGNORECASE)
+_LAST_UNIT = re.compile(r"(?<=[\w.] )(m|km|ch|ft)\.?$", re.IGNORECASE)
 
 
 @dataclass(frozen=True, slots=True)

@@ -168,21 +168,34 @@ def _belongs_below(sheet: Sheet, row: int) -> bool:
     texts = [i for i, cell in enumerate(cells) if is_text(cell)]
     if len(texts) < 2 or _has_figures(cells) or _is_unit_row(sheet, row):
         return False
-    known = sum(score >= 0.4 for score in _scores(cells))
+    known = sum(
+        score >= 0.4 or _names_unit(str(cells[i])) for i, score in enumerate(_scores(cells)) if i in texts
+    )
     return known >= max(2, 0.5 * len(texts))
+
+
+_UNIT_LIKE = frozenset(
+    {"sta", "station", "l r", "lh rh", "nr", "dms", "d m s", "text", "id", "g d", "h v", "l p", "type"}
+)
 
 
 def _is_unit_row(sheet: Sheet, row: int) -> bool:
     if row > len(sheet.rows):
         return False
     cells = [squeeze(shown(c)) for c in sheet.rows[row - 1] if not is_blank(c)]
-    units = sum(find_unit(c) is not None or analyse("x " + c).notation != "" for c in cells)
-    return (
-        len(cells) >= 2
-        and units >= 2
-        and units >= 0.5 * len(cells)
-        and not any(c[:1].isdigit() for c in cells)
-    )
+    units = sum(_names_unit(c) for c in cells)
+    neutral = sum(fold(c) in _UNIT_LIKE for c in cells)
+    if any(heading_score(c) >= 0.5 and not _names_unit(c) and fold(c) not in _UNIT_LIKE for c in cells):
+        return False
+    return units >= 2 and units + neutral >= 0.6 * len(cells) and not any(c[:1].isdigit() for c in cells)
+
+
+def _names_unit(text: str) -> bool:
+    bare = text.strip("()[] .")
+    if find_unit(bare) is not None:
+        return True
+    taken = analyse(f"x ({bare})")
+    return bool(taken.notation) or taken.chord_m is not None or (bool(taken.unit) and len(bare) < 12)
 
 
 def _header_parts(sheet: Sheet, first: int, last: int) -> dict[int, tuple[str, ...]]:

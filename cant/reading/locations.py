@@ -52,7 +52,8 @@ def settle_locations(draft: Draft, evidence: Evidence) -> dict[str, FloatArray]:
     """
     items = {name: item for name in LOCATIONS if (item := draft.column(name)) is not None}
     numbers = {
-        name: take_column(item.cells, lambda text: take_location(text, draft.decimal)) for name, item in items.items()
+        name: take_column(item.cells, lambda text: take_location(text, draft.decimal))
+        for name, item in items.items()
     }
     if not items:
         return {}
@@ -106,7 +107,9 @@ def _plain_unit(draft: Draft, located: _Located, evidence: Evidence) -> str:
     bare = {name: _bare(n) for name, n in located.numbers.items()}
     every = np.concatenate(list(bare.values()))
     every = every[~np.isnan(every)]
-    first = next((i for i in located.items.values() if i.notation or i.unit), next(iter(located.items.values())))
+    first = next(
+        (i for i in located.items.values() if i.notation or i.unit), next(iter(located.items.values()))
+    )
     if not len(every):
         return KM
     if first.notation in (MILES_CHAINS, MILES_YARDS):
@@ -218,7 +221,12 @@ def _ask(
         return _UNITS[answer]
     reasons = "; ".join(f"{_WORDS[unit]}: {_reason(bare, unit)}" for unit in candidates)
     where = [int(i) for i in np.flatnonzero(~np.isnan(bare.get("Start", next(iter(bare.values())))))]
-    draft.ask(first, f"'{first.samples(1)[0]}' can be read in more than one way ({reasons}). Which is it?", choices, where)
+    draft.ask(
+        first,
+        f"'{first.samples(1)[0]}' can be read in more than one way ({reasons}). Which is it?",
+        choices,
+        where,
+    )
     return candidates[0]
 
 
@@ -252,5 +260,3 @@ def _station_unit(draft: Draft, located: _Located, evidence: Evidence) -> float:
             where,
         )
     return 0.001 if answer == _STATION_METRES else FOOT_M / 1000
-
-

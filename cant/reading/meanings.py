@@ -92,7 +92,6 @@ def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
     columns = [_from_heading(c, cells.get(c.index, [])) for c in block.columns]
     _continue_speeds(columns)
     _bracketed_trains(columns)
-    _settle_doubles(columns)
     return columns
 
 
@@ -113,9 +112,15 @@ def _continue_speeds(columns: list[Column]) -> None:
 
 
 def _like_speeds(cells: Sequence[Value]) -> bool:
-    values = [c for c in cells[:500] if isinstance(c, float) or (isinstance(c, str) and parse_number(c) is not None)]
+    values = [
+        c for c in cells[:500] if isinstance(c, float) or (isinstance(c, str) and parse_number(c) is not None)
+    ]
     numbers = [v if isinstance(v, float) else parse_number(v) or 0.0 for v in values]
-    return bool(numbers) and all(10 <= v <= 350 for v in numbers) and sum(v % 5 == 0 for v in numbers) >= 0.8 * len(numbers)
+    return (
+        bool(numbers)
+        and all(10 <= v <= 350 for v in numbers)
+        and sum(v % 5 == 0 for v in numbers) >= 0.8 * len(numbers)
+    )
 
 
 def _bracketed_trains(columns: list[Column]) -> None:
@@ -150,12 +155,15 @@ def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:
     heading = analyse(source.heading)
     result = Column(source.index, heading, unit=heading.unit, cells=cells)
     result.unit_from = "heading" if heading.unit else ""
-    if source.unit_row and (found := analyse("x " + source.unit_row)).text:
-        named = find_unit(source.unit_row)
+    if source.unit_row:
+        bare = source.unit_row.strip("()[] .")
+        named = find_unit(bare)
         if named is not None and not result.unit:
             result.unit, result.unit_from = named.symbol, "unit row"
-        elif found.notation:
-            result.heading = analyse(f"{source.heading} ({source.unit_row})")
+        elif named is None:
+            result.heading = analyse(f"{source.heading} ({bare})")
+            if not result.unit and result.heading.unit:
+                result.unit, result.unit_from = result.heading.unit, "unit row"
     if not source.parts:
         return result
     _set_meaning(result, source)
@@ -246,7 +254,7 @@ def _drop_foreign_unit(result: Column) -> None:
 _PAIRED = {"Transition": ("Transition in", "Transition out")}
 
 
-def _settle_doubles(columns: list[Column]) -> None:
+def settle_doubles(columns: list[Column]) -> None:
     """Let each meaning belong to one column: pairs become in and out, the surer heading wins."""
     by_meaning: dict[str, list[Column]] = {}
     for item in columns:

@@ -104,7 +104,8 @@ def parse_quantity(text: str, decimal: str = "") -> tuple[float, Unit | None, st
     number = parse_number(text, decimal)
     if number is not None:
         return number, None, ""
-    match = _QUANTITY.match(" ".join(text.replace("−", "-").split()))
+    plain = _VULGAR_SIGN.sub(lambda m: " " + _VULGAR[m.group()], text.replace("−", "-"))
+    match = _QUANTITY.match(" ".join(plain.split()))
     if match is None:
         return None
     value = parse_number(match["number"], decimal)

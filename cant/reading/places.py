@@ -23,7 +23,9 @@ _LINE = re.compile(
     r"tronçon|tramo|tratta|line|delstrekning|bandel|線名)\s*:?\s+[^,;|]{1,60}?)\s*(?=$|[,;|]|\s+(?:gleis|voie|tor|binario|vía)\b)",
     re.IGNORECASE,
 )
-_ENGLISH_LINE = re.compile(r"^\s*(?P<name>[A-Z][^,;|:]{1,50}?\s(?:line|branch|sub\.?|subdivision|railway))\b", re.IGNORECASE)
+_ENGLISH_LINE = re.compile(
+    r"^\s*(?P<name>[A-Z][^,;|:]{1,50}?\s(?:line|branch|sub\.?|subdivision|railway))\b", re.IGNORECASE
+)
 
 
 def track_named(texts: Iterable[str]) -> str:

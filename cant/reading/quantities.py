@@ -9,6 +9,7 @@ from cant.reading.cells import PAIR, Numbers, take_column
 from cant.reading.columns import column
 from cant.reading.draft import NUMERIC, Draft
 from cant.reading.evidence import Evidence, gather
+from cant.reading.hands import settle_hands
 from cant.reading.locations import settle_locations
 from cant.reading.meanings import Column
 from cant.reading.radii import settle_radius
@@ -19,16 +20,15 @@ from cant.reading.scales import (
     settle_speed_unit,
     share_units,
 )
-from cant.reading.situations import known_situations, read_situations
+from cant.reading.situations import known_situations, read_situations, situations_in
 from cant.reading.speeds import highest_speed, settle_speeds, split_speed_columns
-from cant.reading.takers import HANDS, take_cant, take_length, take_transition
+from cant.reading.takers import take_cant, take_length, take_transition
 from cant.reading.text import fold, is_blank, shown, squeeze
 from cant.reading.words import lexicon, meaning_of
 
 
 def fill(draft: Draft) -> Evidence:
     """Turn every column of a block into quantities, and note what cannot be used."""
-    _hands(draft)
     _shapes(draft)
     _situations(draft)
     _fixed(draft)
@@ -46,6 +46,7 @@ def fill(draft: Draft) -> Evidence:
     _transitions(draft, evidence)
     _place(draft, located)
     _length(draft, evidence)
+    settle_hands(draft)
     return evidence
 
 
@@ -113,7 +114,9 @@ def _single(draft: Draft, item: Column, numbers: Numbers, unit: str, target: str
     for index, state in numbers.states.items():
         if state == PAIR:
             values[index] = np.nan
-            draft.fail(index, item, f"two values stand where one {what} belongs; give each its own row or column")
+            draft.fail(
+                index, item, f"two values stand where one {what} belongs; give each its own row or column"
+            )
     return values
 
 
@@ -140,21 +143,6 @@ def _length(draft: Draft, evidence: Evidence) -> None:
     spans = np.abs(draft.numbers["end_km"] - draft.numbers["start_km"]) * 1000
     unit = settle_arc_unit(draft, item, numbers, evidence, spans)
     draft.numbers["length_m"] = _single(draft, item, numbers, unit, "m", "length")
-
-
-def _hands(draft: Draft) -> None:
-    item = draft.column("Hand")
-    if item is None:
-        return
-    for index, cell in enumerate(item.cells):
-        if is_blank(cell) and squeeze(shown(cell)) != "-":
-            continue
-        text = squeeze(shown(cell))
-        found = meaning_of("hands", text)
-        if found is None and text not in ("+", "-"):
-            draft.fail(index, item, f"'{text}' is no hand; L or R belongs there")
-        elif found is not None:
-            draft.hand[index] = HANDS[found]
 
 
 def _shapes(draft: Draft) -> None:
@@ -184,7 +172,28 @@ def _situations(draft: Draft) -> None:
             if unknown:
                 listed = ", ".join(sorted(known_situations(draft.context.limits)))
                 draft.fail(index, item, f"the situation '{unknown[0]}' is not known; known are {listed}")
+    _remarks(draft)
+
+
+def _remarks(draft: Draft) -> None:
+    """Take situation words out of remarks where the limits have rules for them: that only makes limits stricter."""
+    limits = draft.context.limits
+    item = draft.column("Remarks")
+    ruled = (
+        {row.situation.casefold() for row in limits.rows if row.situation} - {"plain"} if limits else set()
+    )
+    if item is None or not ruled:
         return
+    found: dict[str, int] = {}
+    for index, cell in enumerate(item.cells):
+        words = situations_in(shown(cell), ruled) if cell is not None else frozenset()
+        if words:
+            draft.situations[index] = (draft.situations[index] - {"plain"}) | words
+            for word in words:
+                found[word] = found.get(word, 0) + 1
+    if found:
+        listed = ", ".join(f"{word} ({count} rows)" for word, count in sorted(found.items()))
+        item.note = f"situations taken from here, for which the limits have rules: {listed}"
 
 
 def _fixed(draft: Draft) -> None:

@@ -47,7 +47,7 @@ def settle_radius(draft: Draft, evidence: Evidence, speed_kmh: FloatArray) -> Fl
     radius = np.full(count, np.nan)
     if item is not None:
         numbers = take_column(item.cells, lambda text: take_radius(text, draft.decimal))
-        _mend_thousands(draft, numbers)
+        _mend_thousands(draft, item, numbers, evidence)
         unit = _radius_unit(draft, item, numbers, evidence, speed_kmh, degree, versine)
         radius = numbers.converted(unit, "m")
         _row_problems(draft, item, numbers, radius)
@@ -59,16 +59,17 @@ def settle_radius(draft: Draft, evidence: Evidence, speed_kmh: FloatArray) -> Fl
     return radius
 
 
-def _mend_thousands(draft: Draft, numbers: Numbers) -> None:
+def _mend_thousands(draft: Draft, item: Column, numbers: Numbers, evidence: Evidence) -> None:
     """Read 1.2 as 1200 among radii of hundreds: 1.200 with a thousands dot, kept as a number (or kilometres)."""
+    sizes = np.abs(numbers.values)
     with np.errstate(invalid="ignore"):
-        tiny = (np.abs(numbers.values) < 30) & (np.abs(numbers.values) >= 1)
-        most = np.nanmedian(np.abs(numbers.values)) if np.any(~np.isnan(numbers.values)) else 0.0
-    if most > 100:
+        tiny = (sizes < 20) & (sizes >= 0.1)
+        most = float(np.nanmedian(sizes)) if np.any(~np.isnan(sizes)) else 0.0
+    all_tiny = item.unit in ("", "m") and not evidence.imperial and bool(np.all(tiny | np.isnan(sizes)))
+    if tiny.any() and (most > 100 or all_tiny):
         numbers.values[tiny] = np.round(numbers.values[tiny] * 1000, 6)
-        if tiny.any():
-            rows = ", ".join(str(int(r)) for r in draft.rows[tiny][:10])
-            draft.context.notes.append(f"radii such as 1.2 among hundreds are read as 1200 (row {rows})")
+        rows = ", ".join(str(int(r)) for r in draft.rows[tiny][:10])
+        draft.context.notes.append(f"radii such as 1.2 cannot be metres and are read as 1200 (row {rows})")
 
 
 def _row_problems(draft: Draft, item: Column, numbers: Numbers, radius: FloatArray) -> None:
@@ -77,7 +78,9 @@ def _row_problems(draft: Draft, item: Column, numbers: Numbers, radius: FloatArr
     for index, state in numbers.states.items():
         if state == PAIR:
             radius[index] = np.nan
-            draft.fail(index, item, "two radii stand in one cell; give each part of a compound curve its own row")
+            draft.fail(
+                index, item, "two radii stand in one cell; give each part of a compound curve its own row"
+            )
         elif state == STRAIGHT:
             draft.fail(index, item, "straight track is no curve; leave the row out, or give its radius")
     for index, hand in numbers.hands.items():
@@ -129,7 +132,12 @@ def _choose(draft: Draft, item: Column, fitting: list[str], evidence: Evidence, 
         item.unit_from, item.confidence = "canonical", "likely"
         return "m"
     where = [int(i) for i in np.flatnonzero(~np.isnan(bare))]
-    draft.ask(item, f"The radius names no unit, and {_listed(choices)} are all possible at these speeds. Which is it?", choices, where)
+    draft.ask(
+        item,
+        f"The radius names no unit, and {_listed(choices)} are all possible at these speeds. Which is it?",
+        choices,
+        where,
+    )
     return fitting[0]
 
 
@@ -280,14 +288,20 @@ def _chord(
     if item.heading.chord_m is not None:
         item.note = f"versine over a chord of {item.heading.chord_m:g} m"
         return item.heading.chord_m
-    parted = {name: _parted(np.abs(radius), radius_of_versine(np.abs(values), c)) for name, c in _CHORDS.items()}
+    parted = {
+        name: _parted(np.abs(radius), radius_of_versine(np.abs(values), c)) for name, c in _CHORDS.items()
+    }
     if (best := min(parted, key=lambda name: parted[name])) and parted[best] < 0.06:
         item.note = f"versine over a {best}, by the radii beside it"
         return _CHORDS[best]
     if not missing.any():
         return None
     for text in draft.block.title:
-        if match := re.search(r"(\d+(?:[.,]\d+)?)\s*-?\s*(m|ft)\b[^.;]*(?:chord|corde|cuerda|corda|sehne)|(?:chord|corde|cuerda|corda|sehne)\D{0,12}(\d+(?:[.,]\d+)?)\s*(m|ft)\b", text, re.IGNORECASE):
+        if match := re.search(
+            r"(\d+(?:[.,]\d+)?)\s*-?\s*(m|ft)\b[^.;]*(?:chord|corde|cuerda|corda|sehne)|(?:chord|corde|cuerda|corda|sehne)\D{0,12}(\d+(?:[.,]\d+)?)\s*(m|ft)\b",
+            text,
+            re.IGNORECASE,
+        ):
             number, unit = match[1] or match[3], match[2] or match[4]
             return float(number.replace(",", ".")) * ratio(unit.casefold(), "m")
     choices = tuple(_CHORDS)

@@ -30,7 +30,17 @@ GEOMETRY: dict[str, Callable[[str, str], object]] = {
 """Columns of which one makes a row a curve."""
 
 _FIGURES = frozenset(
-    {"Radius", "Degree", "Versine", "Length", "Transition in", "Transition out", "Transition", "Cant", "Speed"}
+    {
+        "Radius",
+        "Degree",
+        "Versine",
+        "Length",
+        "Transition in",
+        "Transition out",
+        "Transition",
+        "Cant",
+        "Speed",
+    }
 )
 
 
@@ -65,11 +75,15 @@ class Sifted:
             ("the header again", self.headers),
             ("text below or between the table, no curve", self.legends),
         )
-        return [f"{where}{_row_list([int(rows[i]) for i in found])}: {what}" for what, found in kinds if found]
+        return [
+            f"{where}{_row_list([int(rows[i]) for i in found])}: {what}" for what, found in kinds if found
+        ]
 
 
 def _row_list(rows: list[int]) -> str:
-    shown_rows = ", ".join(str(r) for r in rows[:12]) + (f" and {len(rows) - 12} more" if len(rows) > 12 else "")
+    shown_rows = ", ".join(str(r) for r in rows[:12]) + (
+        f" and {len(rows) - 12} more" if len(rows) > 12 else ""
+    )
     return f"row{'s' if len(rows) > 1 else ''} {shown_rows}"
 
 
@@ -93,6 +107,9 @@ def sift(block: Block, columns: list[Column], decimal: str, elements: bool) -> S
         if item.meaning in GEOMETRY:
             _geometry(item, decimal, sure, straight)
     straight &= ~sure
+    if elements and (kinds := next((c for c in columns if c.meaning == "Element"), None)) is not None:
+        known = lexicon("elements")
+        sure |= np.array([isinstance(c, str) and fold(c) in known for c in kinds.cells], dtype=np.bool_)
     result = Sifted()
     totals = _totals(columns)
     last = int(np.flatnonzero(sure | straight)[-1]) if (sure | straight).any() else -1
@@ -190,7 +207,9 @@ def fill_merged(sheet: Sheet, rows: Sequence[int], columns: list[Column]) -> Non
     """Give every cell of a merged range the value of its first cell, down the rows."""
     position = {row: i for i, row in enumerate(rows)}
     for area in sheet.merged:
-        if area.last_row == area.first_row or not any(r in position for r in range(area.first_row, area.last_row + 1)):
+        if area.last_row == area.first_row or not any(
+            r in position for r in range(area.first_row, area.last_row + 1)
+        ):
             continue
         value = sheet.value(area.first_row, area.first_column)
         for item in columns:

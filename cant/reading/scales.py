@@ -88,9 +88,7 @@ def _possible_cant(cant: FloatArray, radius: FloatArray, speed: FloatArray, name
     return not len(over) or -300.0 <= float(np.median(over)) <= 60.0
 
 
-def _choose_cant(
-    draft: Draft, item: Column, fitting: list[str], evidence: Evidence, bare: FloatArray
-) -> str:
+def _choose_cant(draft: Draft, item: Column, fitting: list[str], evidence: Evidence, bare: FloatArray) -> str:
     if len(fitting) == 1:
         return fitting[0]
     if not fitting:
@@ -128,14 +126,24 @@ def settle_length_unit(draft: Draft, item: Column, numbers: Numbers, evidence: E
         item.unit, item.unit_from = "ft", "other columns"
         item.confidence = "likely"
         return "ft"
-    if draft.column("Cant") is not None and evidence.metric & {"mm"} and radius is not None and radius.unit == "m":
+    if (
+        draft.column("Cant") is not None
+        and evidence.metric & {"mm"}
+        and radius is not None
+        and radius.unit == "m"
+    ):
         item.unit, item.unit_from = "m", "canonical"
         return "m"
     choices = tuple(_LENGTH_WORDS.values())
     answer = draft.context.answers.choice(draft.sheet, item.heading.text, choices)
     if answer is None:
         where = [int(i) for i in np.flatnonzero(~np.isnan(numbers.values) & (numbers.values != 0))]
-        draft.ask(item, "The length names no unit, and the sheet mixes metres and feet. Which is it?", choices, where)
+        draft.ask(
+            item,
+            "The length names no unit, and the sheet mixes metres and feet. Which is it?",
+            choices,
+            where,
+        )
     item.unit = "ft" if answer == "feet" else "m"
     item.unit_from = "answer" if answer else ""
     return item.unit

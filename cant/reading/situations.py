@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 import re
-from collections.abc import Iterable
+from collections.abc import Iterable, Set
 
 from cant.model.curves import PLAIN
 from cant.model.limits import LimitSet
@@ -63,3 +63,16 @@ def _known(piece: str, known: frozenset[str]) -> str | None:
         return word
     trade = canonical_situation(piece)
     return trade if trade in known else None
+
+
+def situations_in(text: str, wanted: Set[str]) -> frozenset[str]:
+    """Give the wanted situation words that a free text names as whole words, in any language."""
+    tokens = fold(text).split()
+    found: set[str] = set()
+    for size in (1, 2, 3):
+        for at in range(len(tokens) - size + 1):
+            phrase = " ".join(tokens[at : at + size])
+            word = phrase if phrase in wanted else lexicon("trade_situations").get(phrase)
+            if word in wanted and word is not None:
+                found.add(word)
+    return frozenset(found)

@@ -42,11 +42,18 @@ def split_speed_columns(draft: Draft) -> None:
             continue
         for position, name in enumerate(names):
             draft.columns.append(_part(item, position, name))
-        item.meaning, item.note = "", "several speeds in a cell: " + ", ".join(n or "line speed" for n in names)
+        item.meaning, item.note = (
+            "",
+            "several speeds in a cell: " + ", ".join(n or "line speed" for n in names),
+        )
 
 
 def _most_parts(cells: Sequence[Value]) -> int:
-    counts = [str(c).count("/") + 1 for c in dict.fromkeys(c for c in cells if is_text(c)) if any(d.isdigit() for d in str(c)) and "h/" not in str(c) and "/h" not in str(c)]
+    counts = [
+        str(c).count("/") + 1
+        for c in dict.fromkeys(c for c in cells if is_text(c))
+        if any(d.isdigit() for d in str(c)) and "h/" not in str(c) and "/h" not in str(c)
+    ]
     return max(counts, default=1)
 
 

@@ -43,8 +43,6 @@ _SPEED_WORDS = frozenset(
         "kmh",
         "kmph",
         "kph",
-        "km",
-        "h",
         "boards",
         "board",
         "velocidades",

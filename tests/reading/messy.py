@@ -182,7 +182,7 @@ Element-Nr|Typ (G/ÜB/K)|Station Anf.|Station Ende|Länge|R Anf.|R Ende|u Anf.|u
 """, as_text=True)],
     {
         5: curve(620, None, 45.38, 45.70, 60, 70, 100, length_m=320),
-        7: curve(900, None, 45.77, 45.99, 70, 40, None, length_m=220),
+        7: curve(900, None, 45.77, 45.99, 70, 40, 70, length_m=220),
     },
     questions=1,
 )
