@@ -14,11 +14,12 @@ KMH2_G = KMH_PER_MS**2 * GRAVITY_MS2
 STANDARD_RAIL_SPACING_MM = 1500.0
 NORMAL_TIER = "normal"
 EXCEPTIONAL_TIER = "exceptional"
-METHODS: tuple[str, ...] = ("rms",)
-"""Names of the methods that give a curve its target cant; the explaining room adds the others."""
+METHODS: tuple[str, ...] = ("rms", "fraction", "balanced", "least", "underbalance", "today")
+"""Names of the methods that give a curve its target cant (:mod:`cant.planning.targets`)."""
 
 Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
 NonNegative = Annotated[float, Field(ge=0, allow_inf_nan=False)]
+Share = Annotated[float, Field(gt=0, le=1, allow_inf_nan=False)]
 
 
 class Settings(BaseModel):
@@ -38,6 +39,15 @@ class Settings(BaseModel):
         Today's cant stays where it lies no further than this from the best [mm]; 0 keeps only what is best.
     maintenance_allowance_mm : float or None
         Taken off a ceiling on cant [mm]; None where not stated.
+    fraction_of_fastest : float
+        Method ``fraction``: target as a share of the fastest class's equilibrium cant [-], above 0 and up to
+        1. 0.65 lies amid the 0.60 to 0.70 of published rules of thumb (common practice, no standard's value).
+    underbalance_mm : float
+        Method ``underbalance``: how far the target lies under the equilibrium cant of the class with most
+        tonnes [mm]. 25 lies amid the 10 to 50 mm of practice.
+    today_within_mm : float
+        Method ``today``: today's cant is the target where it lies no further than this from that of ``rms``
+        [mm].
     units : str
         ``metric`` or ``us``: in which units people are shown the plan.
     """
@@ -50,6 +60,9 @@ class Settings(BaseModel):
     tiers: tuple[str, ...] = (NORMAL_TIER,)
     keep_within_mm: NonNegative = 0.0
     maintenance_allowance_mm: NonNegative | None = None
+    fraction_of_fastest: Share = 0.65
+    underbalance_mm: NonNegative = 25.0
+    today_within_mm: NonNegative = 20.0
     units: str = "metric"
 
     def with_standard(self, rail_spacing_mm: float | None, equilibrium_constant: float | None) -> Settings:

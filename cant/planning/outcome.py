@@ -13,7 +13,7 @@ from cant.errors import InputError
 from cant.model.curves import CurveList
 from cant.model.limits import LimitSet
 from cant.model.plan import Finding
-from cant.model.settings import Settings
+from cant.model.settings import METHODS, Settings
 from cant.model.traffic import Traffic
 from cant.planning.assess import Assessment, assess, passed_alone, passed_shared
 from cant.planning.choose import choose
@@ -23,7 +23,7 @@ from cant.planning.keep import SAME_MM, keep_today
 from cant.planning.line import Line, make_line
 from cant.planning.neighbours import Neighbourhood, Pairs, find_neighbours, forget
 from cant.planning.shared import Meeting
-from cant.planning.targets import TARGETS, Target
+from cant.planning.targets import Target, target_of
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
@@ -183,10 +183,10 @@ def plan_arrays(
         acceleration is limited.
     """
     tell = progress or (lambda share, words: None)
-    if settings.method not in TARGETS:
-        message = f"the method '{settings.method}' is not known: one of {', '.join(sorted(TARGETS))}"
+    if settings.method not in METHODS:
+        message = f"the method '{settings.method}' is not known: one of {', '.join(METHODS)}"
         raise InputError(message)
-    target = TARGETS[settings.method]
+    target = target_of(settings.method, settings)
     tell(0.0, "looking at neighbours")
     neighbourhood = find_neighbours(curves)
     line = make_line(curves, traffic, limits, settings, neighbourhood)

@@ -149,6 +149,15 @@ def _amount(text: str, name: str, place: Place) -> tuple[float, str]:
     return found[0], found[1].symbol if found[1] else ""
 
 
+def _share(text: str, name: str, place: Place, methods: Sequence[str]) -> float:
+    value = parse_number(text.removesuffix("%").strip())
+    result = value / 100 if value is not None and text.endswith("%") else value
+    if result is None or not 0 < result <= 1:
+        message = f"'{text}' is not possible; {name} is above 0 and at most 1, or a percentage"
+        raise InputError(message, place)
+    return result
+
+
 def _constant(text: str, name: str, place: Place, methods: Sequence[str]) -> float:
     head, _, tail = text.partition(" ")
     value = parse_number(head)
@@ -200,5 +209,8 @@ _READERS: dict[str, tuple[str, Any]] = {
     "Tiers": ("tiers", _tiers),
     "Keep within": ("keep_within_mm", _length),
     "Maintenance allowance": ("maintenance_allowance_mm", _length),
+    "Fraction of fastest": ("fraction_of_fastest", _share),
+    "Underbalance": ("underbalance_mm", _length),
+    "Today within": ("today_within_mm", _length),
     "Units": ("units", _units),
 }

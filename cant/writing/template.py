@@ -79,6 +79,9 @@ _SETTINGS: tuple[tuple[str, str], ...] = (
     ("Tiers", "normal when blank; or normal, exceptional"),
     ("Keep within", "mm; today's cant stays where it lies no further than this from the best"),
     ("Maintenance allowance", "mm, taken off a ceiling on cant"),
+    ("Fraction of fastest", "method fraction: share of the fastest class's equilibrium cant, 0.65 when blank"),
+    ("Underbalance", "method underbalance: mm under the equilibrium cant of the class with most tonnes"),
+    ("Today within", "method today: mm; today's cant is the target where it is this close to that of rms"),
     ("Units", "metric or us: in which units the plan is shown"),
 )
 
