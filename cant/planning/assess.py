@@ -211,7 +211,7 @@ def line_speeds(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool
         shared = permitted_shared(
             Meeting.of(line, pairs),
             (cant[pairs.first], cant[pairs.second]),
-            (own[pairs.first], own[pairs.second]),
+            (alone.take(pairs.first), alone.take(pairs.second)),
             (steps[pairs.first], steps[pairs.second]),
             exceptional,
         )

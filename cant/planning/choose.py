@@ -21,9 +21,10 @@ from cant.planning.give_way import ChainSearch, Link, Member
 from cant.planning.grid import Grid
 from cant.planning.lexicographic import slack
 from cant.planning.line import Line
-from cant.planning.meetings import PairTable, make_pair_table, pair_approvals
+from cant.planning.meetings import PairTable, make_pair_table, pair_approvals, unhindered
 from cant.planning.neighbours import Pairs, chains_of
 from cant.planning.nodes import Nodes, best_alone, node_blocks
+from cant.planning.normal_chains import settle_within_normal
 from cant.planning.permissible import Permitted
 from cant.planning.rules import Asked, curve_terms
 from cant.planning.shared import Meeting, SharedAsked, shared_values
@@ -105,6 +106,11 @@ def choose(
     in_chain[pairs.first] = in_chain[pairs.second] = True
     chains = chains_of(len(line), pairs)
     unsettled = _unsettled_chains(line, pairs, cant, chains)
+    possible = [chain for chain in unsettled if not np.isnan(cant[chain]).any()]
+    hopeless = [chain for chain in unsettled if np.isnan(cant[chain]).any()]
+    settled, left = settle_within_normal(line, grid, pairs, possible, (bounds.low_mm, bounds.high_mm), wanted)
+    cant = np.where(np.isnan(settled), cant, settled)
+    unsettled = hopeless + left
     lone = np.flatnonzero(planned & ~in_chain & np.isnan(cant))
     hard = np.concatenate([lone, *unsettled]) if unsettled else lone
     not_compliant = np.zeros(len(line), dtype=np.bool_)
@@ -230,7 +236,7 @@ class _Search:
 
     def _table(self, meeting: Meeting, before: _Curve, after: _Curve) -> PairTable:
         return make_pair_table(
-            meeting, before.cant_mm, after.cant_mm, before.run_kmh, after.run_kmh, self._exceptional
+            meeting, before.cant_mm, after.cant_mm, (before.alone, after.alone), self._exceptional
         )
 
     def _without_giving_way(self, curves: list[_Curve], meetings: list[Meeting]) -> list[int] | None:
@@ -242,9 +248,8 @@ class _Search:
                 stages.append(Stage(measures))
                 continue
             after = curves[i + 1]
-            table = self._table(meetings[i], curve, after)
-            free: BoolArray = (
-                table.hard & _unhindered(curve, table.before, 0) & _unhindered(after, table.after, 1)
+            free = unhindered(
+                meetings[i], curve.cant_mm, after.cant_mm, (curve.alone, after.alone), self._exceptional
             )
             count, over = pair_approvals(
                 meetings[i], curve.cant_mm, after.cant_mm, curve.run_kmh, after.run_kmh
@@ -252,16 +257,6 @@ class _Search:
             none = np.zeros(free.shape)
             stages.append(Stage(measures, free, [none, none, count, over, none, none]))
         return shortest_path(stages)
-
-
-def _unhindered(curve: _Curve, beside: Permitted, axis: int) -> BoolArray:
-    """Tell which pairs (a, b) leave a curve's speeds as they are by itself; its levels lie on an axis."""
-    up_to = np.expand_dims(curve.alone.up_to_kmh, 1 - axis)
-    planned = np.expand_dims(curve.alone.planned, 1 - axis)
-    run = np.expand_dims(curve.run_kmh, 1 - axis)
-    together = Permitted(np.minimum(up_to, beside.up_to_kmh), planned & beside.planned)
-    same = np.equal(together.run_speed(curve.line.planned_kmh), run)
-    return np.asarray(np.logical_or(same, ~curve.line.runs).all(axis=-1))
 
 
 def _broken_curves(curves: list[_Curve], links: list[Link], level: list[int]) -> BoolArray:

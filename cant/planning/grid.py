@@ -56,6 +56,21 @@ class Grid:
         table[0, fixed] = self.fixed_mm[fixed]
         return table
 
+    def between(self, low_mm: FloatArray, high_mm: FloatArray) -> FloatArray:
+        """Give the cants within bounds as a table, shape (levels, n) [mm], ascending; nan where fewer."""
+        low = np.maximum(np.ceil(low_mm / self.step_mm - _SLACK), self.smallest)
+        high = np.minimum(np.floor(high_mm / self.step_mm + _SLACK), self.largest)
+        count = int(np.maximum(high - low + 1, 0).max(initial=0))
+        multiple = low + np.arange(count)[:, None]
+        table = np.where(multiple <= high, multiple * self.step_mm, np.nan)
+        none = np.where((low_mm <= _SLACK) & (high_mm >= -_SLACK), 0.0, np.nan)
+        table = np.concatenate([none[None, :], table])
+        fixed = ~np.isnan(self.fixed_mm)
+        keeps = (self.fixed_mm >= low_mm) & (self.fixed_mm <= high_mm)
+        table[:, fixed] = np.nan
+        table[0, fixed & keeps] = self.fixed_mm[fixed & keeps]
+        return table
+
     def nearest(self, target_mm: FloatArray, low_mm: FloatArray, high_mm: FloatArray) -> FloatArray:
         """Give the cant within bounds that lies nearest to a target, the lower of two; nan where none does.
 

@@ -24,6 +24,18 @@ BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
 
+_OF_CLASS = (
+    "runs",
+    "regular",
+    "planned_kmh",
+    "trains",
+    "mass_t",
+    "roll",
+    "gravity_height_m",
+    "category",
+)
+
+
 @dataclass
 class Line:
     """Curves and classes as arrays.
@@ -95,6 +107,13 @@ class Line:
                 chosen[item.name] = tuple(array[at] for array in value)
             else:
                 chosen[item.name] = value
+        return Line(**chosen)
+
+    def take_classes(self, columns: IntArray) -> Line:
+        """Give the same curves with some of the classes only."""
+        chosen: dict[str, Any] = {item.name: getattr(self, item.name) for item in fields(self)}
+        for name in _OF_CLASS:
+            chosen[name] = chosen[name][:, columns]
         return Line(**chosen)
 
     def set_ends(self, neighbourhood: Neighbourhood) -> None:

@@ -26,6 +26,8 @@ FASTEST_KMH = 400.0
 DEFAULT_SPEED_STEP_KMH = 5.0
 _SLACK = 1e-9
 _NEWTON_STEPS = 60
+TRIALS = 200_000
+"""Values tried together: bounds the memory of the search."""
 
 
 @dataclass(frozen=True)
@@ -43,6 +45,10 @@ class Permitted:
 
     up_to_kmh: FloatArray
     planned: BoolArray
+
+    def take(self, curves: npt.NDArray[np.int64]) -> Permitted:
+        """Give some of the curves, from arrays (n, k)."""
+        return Permitted(self.up_to_kmh[curves], self.planned[curves])
 
     def speed(self, planned_kmh: FloatArray) -> FloatArray:
         """Give the permissible speed [km/h]: the planned one is permissible where all holds at it."""
@@ -195,9 +201,10 @@ def slows_after(meeting: Meeting, own_kmh: tuple[FloatArray, FloatArray]) -> Boo
 def permitted_shared(
     meeting: Meeting,
     cant_mm: tuple[FloatArray, FloatArray],
-    own_kmh: tuple[FloatArray, FloatArray],
+    own: tuple[Permitted, Permitted],
     steps: tuple[FloatArray, FloatArray],
     exceptional: bool,
+    ceiling_kmh: tuple[FloatArray, FloatArray] | None = None,
 ) -> tuple[Permitted, Permitted]:
     """Give what shared transitions permit on the curve before and on the curve after each.
 
@@ -207,34 +214,46 @@ def permitted_shared(
         m transitions.
     cant_mm : pair of ndarray, shape (..., m, 1)
         Cants of the curve before and after [mm].
-    own_kmh : pair of ndarray, shape (..., m, k)
-        The lower of planned and permissible speed of each curve by itself [km/h].
+    own : pair of Permitted, shape (..., m, k)
+        What each curve by itself permits.
     steps : pair of ndarray, shape (m, k)
     exceptional : bool
+    ceiling_kmh : pair of ndarray, optional
+        Speeds above these need not be searched, shape (..., m, k); what ``own`` permits where not given.
 
     Returns
     -------
     pair of Permitted
-        Shape (..., m, k). One curve slows for a transition, not both: on the other one it permits anything.
+        Shape (..., m, k), to be combined with ``own``: no further than that is searched. One curve slows for
+        a transition, not both: on the other one it permits anything.
     """
     lines = (meeting.before, meeting.after)
-    on_after = slows_after(meeting, own_kmh)
-    shape = on_after.shape
-    other = np.where(on_after, own_kmh[0], own_kmh[1])
-    step = np.where(on_after, steps[1], steps[0])
+    run = [part.run_speed(line.planned_kmh) for part, line in zip(own, lines, strict=True)]
+    on_after = slows_after(meeting, (run[0], run[1]))
+    other = np.where(on_after, run[0], run[1])
     planned = np.where(on_after, lines[1].planned_kmh, lines[0].planned_kmh)
-    held = _shared_held(meeting, cant_mm, np.minimum(planned, other), exceptional)
-    up_to = _scan(meeting, cant_mm, other, planned, step, on_after, exceptional)
-    free = np.full(shape, np.inf)
+    held = shared_held(meeting, cant_mm, np.minimum(planned, other), exceptional)
+    ceiling = ceiling_kmh or (own[0].up_to_kmh, own[1].up_to_kmh)
+    search = _Search(
+        other=other,
+        planned=planned,
+        step=np.where(on_after, steps[1], steps[0]),
+        on_after=on_after,
+        ceiling=np.where(on_after, ceiling[1], ceiling[0]),
+        exceptional=exceptional,
+    )
+    up_to = search.run(meeting, cant_mm)
+    free = np.full(on_after.shape, np.inf)
     return (
         Permitted(np.where(on_after, free, up_to), on_after | held),
         Permitted(np.where(on_after, up_to, free), ~on_after | held),
     )
 
 
-def _shared_held(
+def shared_held(
     meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray], speed_kmh: FloatArray, exceptional: bool
 ) -> BoolArray:
+    """Tell where shared transitions keep what a lower speed could mend, at some speeds: (..., m, k)."""
     held: BoolArray = np.ones(np.broadcast_shapes(speed_kmh.shape, cant_mm[0].shape), dtype=np.bool_)
     for found in speed_values(SharedAsked(meeting, speed_kmh, exceptional), *cant_mm):
         held = held & found.kept()
@@ -247,7 +266,7 @@ def shared_gap(meeting: Meeting, speed_kmh: FloatArray, on_after: BoolArray, exc
     gaps = []
     for line in (meeting.before, meeting.after):
         asked = Asked(line, speed_kmh, exceptional)
-        gap = np.zeros(speed_kmh.shape, dtype=np.bool_)
+        gap = np.zeros(np.broadcast_shapes(speed_kmh.shape, line.runs.shape), dtype=np.bool_)
         if ramped.any():
             gap |= asked.limit("rate of change of cant").gap & ramped
         if long.any():
@@ -255,42 +274,97 @@ def shared_gap(meeting: Meeting, speed_kmh: FloatArray, on_after: BoolArray, exc
         if not long.all():
             gap |= asked.limit("abrupt change of cant deficiency").gap & ~long
         gaps.append(gap)
+    if not (gaps[0].any() or gaps[1].any()):
+        return gaps[0]
     return np.where(on_after, gaps[1], gaps[0]) & meeting.both
 
 
-def _scan(
-    meeting: Meeting,
-    cant_mm: tuple[FloatArray, FloatArray],
-    other_kmh: FloatArray,
-    planned_kmh: FloatArray,
-    step: FloatArray,
-    on_after: BoolArray,
-    exceptional: bool,
-) -> FloatArray:
-    """Try the multiples one by one; inf where all of them hold."""
-    shape = other_kmh.shape
-    up_to = np.full(shape, np.inf)
-    cap = np.where(meeting.both, np.minimum(np.nan_to_num(other_kmh), FASTEST_KMH), 0.0)
-    open_ = np.broadcast_to(meeting.both, shape) & ~_surely_held(meeting, cant_mm, cap, exceptional)
-    work = np.flatnonzero(open_.reshape(-1, *shape[-2:]).any(axis=(0, 2)))
-    if not len(work):
+@dataclass
+class _Search:
+    """The search over one transition or many, multiple by multiple: arrays (..., m, k).
+
+    Attributes
+    ----------
+    other : ndarray
+        Speed of the class on the curve that does not slow: no more is run over the transition.
+    planned, step : ndarray
+        Of the curve that slows.
+    on_after : ndarray of bool
+        The curve after slows.
+    ceiling : ndarray
+        No further than this need be searched.
+    exceptional : bool
+    """
+
+    other: FloatArray
+    planned: FloatArray
+    step: FloatArray
+    on_after: BoolArray
+    ceiling: FloatArray
+    exceptional: bool
+
+    def run(self, meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray]) -> FloatArray:
+        """Give the highest multiple up to which all hold; inf where they hold as far as asked."""
+        shape = self.on_after.shape
+        up_to = np.full(shape, np.inf)
+        cap = np.where(meeting.both, np.fmin(self.other, np.fmin(self.ceiling, FASTEST_KMH)), 0.0)
+        cap = np.nan_to_num(cap)
+        doubtful = np.broadcast_to(meeting.both & (cap > 0), shape) & ~_surely_held(
+            meeting, cant_mm, cap, self.exceptional
+        )
+        flat = doubtful.reshape(-1, *shape[-2:])
+        work, columns = np.flatnonzero(flat.any(axis=(0, 2))), np.flatnonzero(flat.any(axis=(0, 1)))
+        if not len(work):
+            return up_to
+        pick = np.ix_(work, columns)
+        part = meeting.take(work).take_classes(columns)
+        cants = (cant_mm[0][..., work, :], cant_mm[1][..., work, :])
+        inner = _Search(
+            other=self.other[..., pick[0], pick[1]],
+            planned=self.planned[..., pick[0], pick[1]],
+            step=self.step[..., pick[0], pick[1]],
+            on_after=self.on_after[..., pick[0], pick[1]],
+            ceiling=self.ceiling[..., pick[0], pick[1]],
+            exceptional=self.exceptional,
+        )
+        found = inner._first_failing(part, cants)
+        target = up_to[..., pick[0], pick[1]]
+        up_to[..., pick[0], pick[1]] = np.where(doubtful[..., pick[0], pick[1]], found, target)
         return up_to
-    part = meeting.take(work)
-    cants = (cant_mm[0][..., work, :], cant_mm[1][..., work, :])
-    other, planned = other_kmh[..., work, :], planned_kmh[..., work, :]
-    pace, after, result = step[..., work, :], on_after[..., work, :], up_to[..., work, :]
-    alive = open_[..., work, :].copy()
-    count = 1
-    while alive.any():
-        trial = count * pace
-        speed = np.minimum(trial, other)
-        held = _shared_held(part, cants, speed, exceptional)
-        held &= ~(shared_gap(part, speed, after, exceptional) & (speed > planned + _SLACK))
-        result = np.where(alive & ~held, (count - 1) * pace, result)
-        alive &= held & (trial < other - _SLACK) & (trial < FASTEST_KMH - _SLACK)
-        count += 1
-    up_to[..., work, :] = result
-    return up_to
+
+    def _first_failing(self, meeting: Meeting, cants: tuple[FloatArray, FloatArray]) -> FloatArray:
+        """Try the multiples below the other curve's speed, then that speed itself."""
+        shape = self.on_after.shape
+        pace = np.nanmin(self.step)
+        cap = np.fmin(np.fmin(self.other, self.ceiling), FASTEST_KMH)
+        most = int(np.floor(np.nanmax(np.where(meeting.both, cap, 0.0)) / pace + _SLACK))
+        up_to = np.full(shape, np.inf)
+        alive = np.broadcast_to(meeting.both, shape).copy()
+        at_once = max(1, TRIALS // max(1, int(np.prod(shape))))
+        # Mostly the step is the same along the axes of levels: one row of trials then serves them all.
+        step = self.step.reshape(-1, *shape[-2:])
+        step = (
+            step[0].reshape((1,) * (len(shape) - 2) + step[0].shape) if (step == step[0]).all() else self.step
+        )
+        for begin in range(1, most + 1, at_once):
+            count = np.arange(begin, min(begin + at_once, most + 1))
+            trial = count.reshape((-1,) + (1,) * len(shape)) * step
+            asked_for = (trial < self.other - _SLACK) & (trial <= self.ceiling + _SLACK)
+            held = shared_held(meeting, cants, trial, self.exceptional)
+            gap = shared_gap(meeting, trial, self.on_after, self.exceptional)
+            failing = asked_for & (~held | (gap & (trial > self.planned + _SLACK)))
+            fails = failing.any(axis=0)
+            first = count[failing.argmax(axis=0)]
+            up_to = np.where(alive & fails, (first - 1) * self.step, up_to)
+            alive &= ~fails
+            if not alive.any():
+                return up_to
+        beyond = np.ceil(self.other / self.step - _SLACK)
+        held = shared_held(meeting, cants, self.other, self.exceptional)
+        gap = shared_gap(meeting, self.other, self.on_after, self.exceptional)
+        failing = ~held | (gap & (self.other > self.planned + _SLACK))
+        reached = (beyond * self.step <= np.fmin(self.ceiling, FASTEST_KMH) + _SLACK) & alive
+        return np.where(reached & failing, (beyond - 1) * self.step, up_to)
 
 
 def _surely_held(

@@ -72,6 +72,16 @@ class Meeting:
             self.before.take(at), self.after.take(at), self.length_m[at], self.ramp_m[at], self.factor[at]
         )
 
+    def take_classes(self, columns: npt.NDArray[np.int64]) -> Meeting:
+        """Give the same transitions with some of the classes only."""
+        return Meeting(
+            self.before.take_classes(columns),
+            self.after.take_classes(columns),
+            self.length_m,
+            self.ramp_m,
+            self.factor,
+        )
+
     def __len__(self) -> int:
         return len(self.length_m)
 
