@@ -98,7 +98,6 @@ def test_a_table_that_cannot_be_used_is_one_clear_error(bend: Bend, says: tuple[
 
 ONE_ROW: list[tuple[str, Bend, int, str]] = [
     ("radius missing", put("Curves", 3, 5, None), 3, "Radius"),
-    ("radius of nothing", put("Curves", 3, 5, 0), 3, "Radius"),
     ("radius that is a word", put("Curves", 3, 5, "sharp"), 3, "Radius"),
     ("unknown situation", put("Curves", 3, 11, "castle"), 3, "Situation"),
     ("speed below 0", put("Curves", 3, 10, -5), 3, "Speed"),

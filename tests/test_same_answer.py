@@ -116,6 +116,7 @@ def test_the_workbook_says_what_the_json_says() -> None:
     rows = list(book["Curves"].iter_rows(values_only=True))
     head = list(rows[0])
     assert list(head[:13]) == tables()["Curves"][0]
+    assert len(head) == len(set(head)), "an added heading must not be one that the file has already"
     cant_at, status_at = head.index("Proposed cant (mm)"), head.index("Status")
     deficiency_at = head.index("Fast: deficiency (mm)")
     for entry in planned.records():

@@ -126,11 +126,11 @@ DECISION: tuple[Column, ...] = (
     Column("Proposed cant", "cant", path("recommended_cant_mm"), 10, "Cant to set."),
     Column("Change of cant", "cant", change_mm, 10, "Proposed cant less today's."),
     Column("Status", "", path("status"), 14, "What the proposal needs: see the terms in the README."),
-    Column("Cant at least", "cant exact", path("lower_mm"), 10, "Lower bound of the curve's own cant."),
-    Column("Lower bound from", "", governing("lower_by"), 28, "Limit that makes the lower bound."),
-    Column("Cant at most", "cant exact", path("upper_mm"), 10, "Upper bound of the curve's own cant."),
-    Column("Upper bound from", "", governing("upper_by"), 28, "Limit that makes the upper bound."),
-    Column("Today", "", path("today", "status"), 22, "Whether today's cant keeps the limits."),
+    Column("Lower bound", "cant exact", path("lower_mm"), 10, "Lower bound of the curve's own cant."),
+    Column("Lower bound set by", "", governing("lower_by"), 28, "Limit that makes the lower bound."),
+    Column("Upper bound", "cant exact", path("upper_mm"), 10, "Upper bound of the curve's own cant."),
+    Column("Upper bound set by", "", governing("upper_by"), 28, "Limit that makes the upper bound."),
+    Column("Cant of today", "", path("today", "status"), 22, "Whether today's cant keeps the limits."),
 )
 
 WORDS: tuple[Column, ...] = (

@@ -110,7 +110,8 @@ class PlanSheets:
             ("Tiers", ", ".join(plan.settings.tiers)),
             ("Program", f"cant {__version__}"),
         ):
-            sheet.line(name, value)
+            if value:
+                sheet.line(name, value)
         sheet.line()
         sheet.line("Status", "Curves", "Meaning", bold=True)
         counts = plan.counts()
@@ -159,12 +160,9 @@ class PlanSheets:
 
     def _table(self, name: str, columns: Sequence[Column]) -> TableSheet:
         sheet = self._book.table(self._name(name))
-        sheet.header(
-            [
-                Heading(c.title(self._display), c.width, c.number_format(self._display), c.help)
-                for c in columns
-            ]
-        )
+        display = self._display
+        heads = [Heading(c.title(display), c.width, c.number_format(display)) for c in columns]
+        sheet.header(heads, keep=len(PLACE))
         return sheet
 
     def _plain(self, name: str, titles: Sequence[str]) -> TableSheet:

@@ -7,6 +7,7 @@ nothing of plans.
 from __future__ import annotations
 
 import io
+import math
 from collections.abc import Sequence
 from dataclasses import dataclass
 from types import TracebackType
@@ -22,6 +23,18 @@ MAX_TEXT = 32_000
 MAX_ROWS = 1_048_000
 """Most rows that a sheet of ours takes (the format's own limit is 1,048,576)."""
 
+LONG_TEXT = 40.0
+"""Columns at least this wide [characters] hold sentences."""
+
+LINE_HEIGHT = 15.0
+"""Height of a line of text [points]."""
+
+PAGE_WIDTH = 230.0
+"""Widest table [characters] that is still legible on one page across, A4 landscape."""
+
+SMALLEST_PRINT = 60
+"""Scale of wider tables [%], which run over several pages across."""
+
 
 @dataclass(frozen=True, slots=True)
 class Heading:
@@ -35,14 +48,16 @@ class Heading:
         In characters.
     number_format : str or None
         Number format of the column, None for text.
-    note : str
-        Shown when the header cell is pointed at, "" for none.
     """
 
     title: str
     width: float = 12.0
     number_format: str | None = None
-    note: str = ""
+
+    @property
+    def is_long(self) -> bool:
+        """Whether the column holds sentences, which take several lines."""
+        return self.number_format is None and self.width >= LONG_TEXT
 
 
 class TableSheet:
@@ -60,23 +75,34 @@ class TableSheet:
         self._book = book
         self._sheet = book.workbook.add_worksheet(name)
         self._formats: list[Any] = []
+        self._long: list[tuple[int, float]] = []
         self._next = 0
         self.name = name
         self.left_out = 0
         self._sheet.set_landscape()
         self._sheet.set_paper(9)
-        self._sheet.fit_to_pages(1, 0)
         self._sheet.set_footer("&L&F  &A&RPage &P of &N")
 
-    def header(self, headings: Sequence[Heading]) -> None:
-        """Write the header of the table that follows, keep it in view and repeat it in print."""
+    def header(self, headings: Sequence[Heading], keep: int = 0) -> None:
+        """Write the header of the table that follows; keep it and the first columns in view and in print."""
         sheet, row = self._sheet, self._next
-        self._formats = [self._book.number(heading.number_format) for heading in headings]
+        self._formats = [self._book.cell_format(heading) for heading in headings]
+        self._long = [(i, h.width) for i, h in enumerate(headings) if h.is_long]
+        lines = max(_lines(heading.title, heading.width) for heading in headings)
+        sheet.set_row(row, LINE_HEIGHT * lines)
         for column, heading in enumerate(headings):
             sheet.set_column(column, column, heading.width)
             sheet.write_string(row, column, heading.title, self._book.head)
-        sheet.freeze_panes(row + 1, 0)
+        sheet.freeze_panes(row + 1, keep)
         sheet.repeat_rows(row)
+        if sum(heading.width for heading in headings) <= PAGE_WIDTH:
+            sheet.fit_to_pages(1, 0)
+            self._next += 1
+            return
+        sheet.set_print_scale(SMALLEST_PRINT)
+        sheet.print_across()
+        if keep:
+            sheet.repeat_columns(0, keep - 1)
         self._next += 1
 
     def row(self, cells: Sequence[Cell]) -> int | None:
@@ -84,6 +110,9 @@ class TableSheet:
         if self._next >= MAX_ROWS:
             self.left_out += 1
             return None
+        lines = max((_lines(cells[i], width) for i, width in self._long), default=1)
+        if lines > 1:
+            self._sheet.set_row(self._next, LINE_HEIGHT * lines)
         for column, value in enumerate(cells):
             self._cell(column, value, self._formats[column] if column < len(self._formats) else None)
         self._next += 1
@@ -97,8 +126,8 @@ class TableSheet:
 
     def paragraph(self, text: str, columns: int) -> None:
         """Write a text over several columns, its row as high as it needs to be."""
-        lines = max(1, -(-len(text) // 100))
-        self._sheet.set_row(self._next, 15.0 * lines)
+        self._sheet.fit_to_pages(1, 0)
+        self._sheet.set_row(self._next, LINE_HEIGHT * _lines(text, 110))
         self._sheet.merge_range(self._next, 0, self._next, columns - 1, text[:MAX_TEXT], self._book.wrapped)
         self._next += 1
 
@@ -141,11 +170,14 @@ class NewSheets:
         self.head = self.workbook.add_format(
             {"bold": True, "text_wrap": True, "valign": "top", "bottom": 1, "bg_color": "#DDE6E4"}
         )
-        self._numbers: dict[str | None, Any] = {None: self.wrapped}
+        self._numbers: dict[str, Any] = {}
         self.data = b""
 
-    def number(self, code: str | None) -> Any:
-        """Give the cell format of a number format, made once."""
+    def cell_format(self, heading: Heading) -> Any:
+        """Give the format of a column's cells, made once for each number format."""
+        code = heading.number_format
+        if code is None:
+            return self.wrapped if heading.is_long else self.plain
         if code not in self._numbers:
             self._numbers[code] = self.workbook.add_format({"num_format": code, "valign": "top"})
         return self._numbers[code]
@@ -162,3 +194,11 @@ class NewSheets:
     ) -> None:
         self.workbook.close()
         self.data = self._stream.getvalue()
+
+
+def _lines(value: Cell, width: float) -> int:
+    """Estimate how many lines a text takes in a column."""
+    if not isinstance(value, str):
+        return 1
+    per_line = max(width - 1, 1)
+    return sum(max(1, math.ceil(len(part) / per_line)) for part in value.split("\n"))
