@@ -22,10 +22,14 @@ Change = tuple[int, int, bytes]
 
 
 def changed(data: bytes, changes: Iterable[Change]) -> bytes:
-    """Apply changes that do not overlap; those at one place in the order given."""
+    """Apply changes that do not overlap.
+
+    Those that put something in at one place come in the order given, and before one that replaces what stands
+    there.
+    """
     out: list[bytes] = []
     at = 0
-    for start, end, new in sorted(changes, key=lambda one: one[0]):
+    for start, end, new in sorted(changes, key=lambda one: one[:2]):
         out += (data[at:start], new)
         at = end
     out.append(data[at:])
