@@ -134,7 +134,7 @@ DECISION: tuple[Column, ...] = (
 )
 
 WORDS: tuple[Column, ...] = (
-    Column("Reason", "", path("reason"), 60, "Why this cant, in one sentence."),
+    Column("Reason", "", path("reason"), 90, "Why this cant, in one sentence."),
     Column("Findings", "", findings_text, 60, "What else an engineer should notice."),
 )
 

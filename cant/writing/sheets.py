@@ -165,6 +165,7 @@ class NewSheets:
         }
         self.workbook = xlsxwriter.Workbook(self._stream, options)
         self.plain = self.workbook.add_format({"valign": "top"})
+        self.word = self.workbook.add_format({"valign": "top", "indent": 1})
         self.bold = self.workbook.add_format({"bold": True, "valign": "top"})
         self.wrapped = self.workbook.add_format({"text_wrap": True, "valign": "top"})
         self.head = self.workbook.add_format(
@@ -177,7 +178,7 @@ class NewSheets:
         """Give the format of a column's cells, made once for each number format."""
         code = heading.number_format
         if code is None:
-            return self.wrapped if heading.is_long else self.plain
+            return self.wrapped if heading.is_long else self.word
         if code not in self._numbers:
             self._numbers[code] = self.workbook.add_format({"num_format": code, "valign": "top"})
         return self._numbers[code]
