@@ -6,6 +6,7 @@ special about a cell (its own unit, a second number, a problem) is kept beside t
 
 from __future__ import annotations
 
+import re
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 from datetime import date, datetime, time
@@ -143,4 +144,7 @@ def take(cell: Value, taker: Taker) -> Taken:
         return Taken(problem=f"a date ({shown(cell)}) stands here; type what was meant as text")
     if is_blank(cell):
         return NOTHING
-    return taker(squeeze(str(cell)))
+    return taker(squeeze(_FOOTNOTE.sub("", str(cell))))
+
+
+_FOOTNOTE = re.compile(r"(?<=[\w\"'″′)])\s*(?:[*†‡]+|\d\))\s*$")

@@ -182,22 +182,30 @@ def matches(words: str, table: str = "curves") -> tuple[Match, ...]:
     found: dict[str, Match] = {}
     for name in weak_headings(table).get(words, ()):
         found[name] = Match(name, 0.5)
-    tokens = words.split()
+    tokens = [token for token in words.split() if token not in _STOP]
+    weight = max(1, sum(token not in _GENERIC for token in tokens))
     for phrase, size in _phrases(tokens):
         for meaning, language in strong.get(phrase, ()):
-            score = 0.9 * size / len(tokens)
+            own = sum(token not in _GENERIC for token in phrase.split())
+            score = min(0.9, 0.9 * size / weight) if own else 0.9 * size / (len(tokens) + 1)
             if meaning not in found or score > found[meaning].score:
                 found[meaning] = Match(meaning, score, language)
     if not found:
         found = _inside(words, strong)
+    if len(found) > 1:
+        found.pop("Curve", None)
     return tuple(sorted(found.values(), key=lambda m: -m.score))
+
+
+_STOP = frozenset("of the de da do des der du del della di la le el av on at in the a w od".split()) - {"a", "in", "od", "do"}
+_GENERIC = frozenset("curve curva courbe bogen kurve kurva luk oblouk curves".split())
 
 
 def _phrases(tokens: list[str]) -> list[tuple[str, int]]:
     count = len(tokens)
     return [
         (" ".join(tokens[i : i + size]), size)
-        for size in range(count - 1, 0, -1)
+        for size in range(count, 0, -1)
         for i in range(count - size + 1)
         if size > 1 or len(tokens[i]) > 2
     ]

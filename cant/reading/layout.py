@@ -115,13 +115,46 @@ def find_blocks(sheet: Sheet, strict_from: int = 1) -> list[Block]:
     columns += _unheaded(sheet, {c.index for c in columns}, last)
     columns.sort(key=lambda c: c.index)
     title = _title(sheet, strict_from, first)
-    blocks = [
-        Block(sheet, first, last + unit_row, len(sheet.rows), part, title) for part in _side_by_side(columns)
-    ]
+    end, following = _next_table(sheet, last + unit_row + 1, columns)
+    title += _legend(sheet, end)
+    blocks = [Block(sheet, first, last + unit_row, end, part, title) for part in _side_by_side(columns)]
     if len(blocks) > 1:
         for block in blocks:
             block.group = _group_above(sheet, first, block)
-    return blocks
+    return blocks + (find_blocks(sheet, following) if following else [])
+
+
+def _next_table(sheet: Sheet, start: int, columns: list[BlockColumn]) -> tuple[int, int | None]:
+    """Give the last row of this table, and the row from which another with other headings starts."""
+    known = {c.index: {fold(part) for part in c.parts} for c in columns}
+    for row in range(start, len(sheet.rows) + 1):
+        cells = sheet.rows[row - 1]
+        if not cells or any(type(c) is float for c in cells) or _has_plain_figures(cells):
+            continue
+        texts = [(i, squeeze(str(c))) for i, c in enumerate(cells) if is_text(c)]
+        if len(texts) < 3 or sum(heading_score(t) for _, t in texts) < max(2.5, 0.6 * len(texts)):
+            continue
+        same = sum(fold(t) in known.get(i, set()) for i, t in texts)
+        if same < 0.7 * len(texts):
+            title = row
+            while title - 1 >= start and len([c for c in sheet.rows[title - 2] if c is not None]) == 1:
+                title -= 1
+            return title - 1, title
+    return len(sheet.rows), None
+
+
+def _has_plain_figures(cells: list[Value]) -> bool:
+    return any(isinstance(c, str) and c[:1].isdigit() for c in cells)
+
+
+def _legend(sheet: Sheet, end: int) -> list[str]:
+    """Give the texts of the last rows, where legends stand."""
+    rows = sheet.rows[max(0, end - 12) : end]
+    return [
+        squeeze(" ".join(shown(c) for c in cells if c is not None))
+        for cells in rows
+        if cells and is_text(next((c for c in cells if c is not None), None)) and not any(type(c) is float for c in cells)
+    ]
 
 
 def _best_row(sheet: Sheet, start: int) -> int | None:

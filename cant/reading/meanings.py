@@ -16,6 +16,7 @@ from cant.reading.layout import Block, BlockColumn
 from cant.reading.numbers import parse_number
 from cant.reading.text import fold, is_blank, shown, squeeze
 from cant.reading.trains import known_train, says_speed, train_words
+from cant.reading.words import lexicon
 from cant.units import find_unit, unit
 
 PROPOSED = frozenset({"proposed", "new", "planned", "future", "neu", "geplant", "projet", "propuesto", "nuevo", "proposto", "nova", "novo", "nowe", "nowa", "ny", "nytt", "nye", "proposal", "recommended"})  # fmt: skip
@@ -39,6 +40,8 @@ class Column:
     train_name : str
         The same as the user wrote it.
     confidence, note : str
+    train_part : str
+        Folded lowest part of a speed heading, whole: ``tipo n``.
     literal : bool
         True for a canonical ``Speed NAME``.
     cells : list of Value
@@ -56,6 +59,7 @@ class Column:
     note: str = ""
     literal: bool = False
     cells: Sequence[Value] = field(default_factory=list)
+    train_part: str = ""
 
     @property
     def notation(self) -> str:
@@ -92,7 +96,20 @@ def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
     columns = [_from_heading(c, cells.get(c.index, [])) for c in block.columns]
     _continue_speeds(columns)
     _bracketed_trains(columns)
+    _hand_by_values(columns)
     return columns
+
+
+def _hand_by_values(columns: list[Column]) -> None:
+    """Take a column of nothing but hands for the hand, where no heading names one."""
+    if any(c.meaning == "Hand" for c in columns):
+        return
+    known = lexicon("hands")
+    for item in columns:
+        texts = {fold(c) for c in item.cells[:2000] if isinstance(c, str) and not is_blank(c)}
+        if not item.meaning and len(texts) >= 2 and texts <= set(known) and len({known[t] for t in texts}) == 2:
+            item.meaning, item.confidence, item.note = "Hand", "likely", "by its values"
+            return
 
 
 def _continue_speeds(columns: list[Column]) -> None:
@@ -173,8 +190,7 @@ def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:
 
 def _set_meaning(result: Column, source: BlockColumn) -> None:
     words = _without_state(result.heading.words)
-    tail = analyse(source.parts[-1]).words
-    best = _best(words, tail)
+    best = _best(words, [analyse(part).words for part in reversed(source.parts)])
     proposed = PROPOSED & set(result.heading.words.split())
     if best is not None and best.score == 1.0 and best.meaning not in ("Speed",):
         result.meaning = best.meaning
@@ -198,30 +214,28 @@ def _without_state(words: str) -> str:
     )
 
 
-def _best(words: str, tail: str) -> Match | None:
-    joined, last = matches(words), matches(tail)
+def _best(words: str, parts: list[str]) -> Match | None:
+    """Give the best meaning of a heading: of all its words, else of its lowest part that is exact."""
+    joined = matches(words)
     if joined and joined[0].score == 1.0:
         return joined[0]
-    if last and last[0].score == 1.0:
-        return last[0]
-    both = sorted((*joined, *last), key=lambda m: -m.score)
+    found = [matches(part) for part in parts]
+    for part in found:
+        if part and part[0].score == 1.0:
+            return part[0]
+    both = sorted((*joined, *(found[0] if found else ())), key=lambda m: -m.score)
     return both[0] if both else None
 
 
 def _as_speed(result: Column, source: BlockColumn, best: Match | None) -> bool:
     words = result.heading.words
+    whole = matches(_without_state(words))
+    if whole and whole[0].score == 1.0 and whole[0].meaning == "Speed":
+        return _take_speed(result, source, "")
     in_speed_unit = bool(result.unit) and unit(result.unit).dimension == "speed"
-    if not (
-        says_speed(words) or in_speed_unit or (known_train(words) and (best is None or best.score < 0.6))
-    ):
-        return (
-            best is not None
-            and best.meaning == "Speed"
-            and best.score == 1.0
-            and _take_speed(result, source, "")
-        )
-    train = "" if best is not None and best.meaning == "Speed" and best.score == 1.0 else train_words(words)
-    return _take_speed(result, source, train)
+    if says_speed(words) or in_speed_unit or (known_train(words) and (best is None or best.score < 0.6)):
+        return _take_speed(result, source, train_words(words))
+    return False
 
 
 def _take_speed(result: Column, source: BlockColumn, train: str) -> bool:
@@ -230,6 +244,7 @@ def _take_speed(result: Column, source: BlockColumn, train: str) -> bool:
     result.literal = bool(train) and text.casefold().startswith("speed ") and len(source.parts) == 1
     result.train = train
     if train:
+        result.train_part = analyse(source.parts[-1]).words
         bare = squeeze(text.split("(")[0].split("[")[0])
         result.train_name = bare[6:] if result.literal else _own_words(bare, train)
     return True

@@ -54,7 +54,7 @@ class Sifted:
         Positions of the rows that are curves, or that should be.
     sections : list of (int, str)
         Rows that only name a place, line or track: position and text.
-    straights, totals, headers, legends : list of int
+    straights, totals, headers, legends, parents : list of int
         Positions of rows set apart.
     """
 
@@ -64,6 +64,7 @@ class Sifted:
     totals: list[int] = field(default_factory=list)
     headers: list[int] = field(default_factory=list)
     legends: list[int] = field(default_factory=list)
+    parents: list[int] = field(default_factory=list)
 
     def notes(self, rows: np.ndarray, sheet: str, element_list: bool) -> list[str]:
         """Say in words which rows were set apart."""
@@ -72,6 +73,7 @@ class Sifted:
             ("straight track, no curve", [] if element_list else self.straights),
             ("names a place or section, no curve", [i for i, _ in self.sections]),
             ("a sum or mean, no curve", self.totals),
+            ("heads the parts of a compound curve that follow, no curve itself", self.parents),
             ("the header again", self.headers),
             ("text below or between the table, no curve", self.legends),
         )
@@ -120,7 +122,23 @@ def sift(block: Block, columns: list[Column], decimal: str, elements: bool) -> S
             result.curves.append(index)
         else:
             _place(result, block, columns, index, bool(straight[index]), index > last)
+    _set_parents_apart(result, columns, sure)
     return result
+
+
+def _set_parents_apart(result: Sifted, columns: list[Column], sure: np.ndarray) -> None:
+    """Set apart a row ``12`` without radius whose parts ``12a``, ``12b`` follow as rows of their own."""
+    names = next((c for c in columns if c.meaning == "Curve"), None)
+    if names is None or not result.curves:
+        return
+    texts = [squeeze(shown(names.cells[i])).casefold() for i in result.curves]
+    parents = {
+        at
+        for at, (index, text) in enumerate(zip(result.curves, texts, strict=True))
+        if not sure[index] and text and at + 1 < len(texts) and re.fullmatch(re.escape(text) + r"[\s./-]?[a-h1-9i]+", texts[at + 1])
+    }
+    result.parents = [result.curves[at] for at in sorted(parents)]
+    result.curves = [index for at, index in enumerate(result.curves) if at not in parents]
 
 
 def _geometry(item: Column, decimal: str, sure: np.ndarray, straight: np.ndarray) -> None:

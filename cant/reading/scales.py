@@ -122,7 +122,9 @@ def settle_length_unit(draft: Draft, item: Column, numbers: Numbers, evidence: E
     if metric_radius or not evidence.imperial or evidence.metric & {"m"}:
         item.unit, item.unit_from = "m", "canonical"
         return "m"
-    if evidence.only_imperial and evidence.imperial & {"in", "ft"}:
+    cant = draft.column("Cant")
+    inches = cant is not None and cant.unit == "in"
+    if evidence.only_imperial and (inches or evidence.imperial & {"in", "ft"}):
         item.unit, item.unit_from = "ft", "other columns"
         item.confidence = "likely"
         return "ft"

@@ -177,6 +177,9 @@ def classes_of(draft: Draft, item: Column) -> tuple[int, list[str]]:
     traffic = draft.context.traffic
     if traffic is None:
         return 0, [item.train_name]
+    exact = [name for name in traffic.class_names if item.train_part and fold(name) == item.train_part]
+    if exact:
+        return 0, exact
     sure, found = ranked_classes(item.train, traffic)
     if found:
         return sure, found
