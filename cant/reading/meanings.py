@@ -220,8 +220,8 @@ def _best(words: str, parts: list[str]) -> Match | None:
     if joined and joined[0].score == 1.0:
         return joined[0]
     found = [matches(part) for part in parts]
-    for part in found:
-        if part and part[0].score == 1.0:
+    for at, part in enumerate(found):
+        if part and part[0].score == 1.0 and not (at and found[0] and part[0].meaning == "Curve"):
             return part[0]
     both = sorted((*joined, *(found[0] if found else ())), key=lambda m: -m.score)
     return both[0] if both else None
