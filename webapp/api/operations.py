@@ -9,7 +9,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from dataclasses import dataclass
 from functools import wraps
-from typing import Any, TypeVar
+from typing import Any, TypeVar, get_origin
 
 from flask import Blueprint, Response, jsonify, request
 from flask.typing import ResponseReturnValue
@@ -111,7 +111,7 @@ def _parameters(model: type[BaseModel]) -> dict[str, Any]:
     found: dict[str, Any] = {}
     for name, values in request.args.lists():
         field = model.model_fields.get(name)
-        repeated = field is not None and "list" in str(field.annotation)
+        repeated = field is not None and get_origin(field.annotation) is list
         if not repeated and len(values) > 1:
             message = f"the parameter {name} may be given once"
             raise InputError(message)
