@@ -3,73 +3,14 @@
 from __future__ import annotations
 
 import re
+from collections.abc import Callable
 from functools import lru_cache
 
 from cant.model.traffic import Traffic
 from cant.reading.text import fold
 from cant.reading.words import lexicon
 
-_SPEED_WORDS = frozenset(
-    fold(word)
-    for word in [
-        "speed",
-        "speeds",
-        "v",
-        "vmax",
-        "vmáx",
-        "vitesse",
-        "velocidad",
-        "velocità",
-        "velocidade",
-        "prędkość",
-        "rychlost",
-        "hastighet",
-        "hast",
-        "hastighed",
-        "geschwindigkeit",
-        "ps",
-        "psr",
-        "vma",
-        "vzul",
-        "zul",
-        "max",
-        "máx",
-        "maximum",
-        "sth",
-        "limit",
-        "permissible",
-        "line",
-        "mph",
-        "kmh",
-        "kmph",
-        "kph",
-        "boards",
-        "board",
-        "velocidades",
-        "sth",
-        "vitesses",
-        "速度",
-        "vlim",
-        "permitted",
-        "maximale",
-        "maximal",
-        "máxima",
-        "máximo",
-        "tipo",
-        "rango",
-        "type",
-        "rang",
-        "ve",
-        "timetable",
-        "posted",
-        "trains",
-        "train",
-        "zug",
-        "züge",
-        "booked",
-        "timetabled",
-    ]
-)
+_SPEED_WORDS = frozenset(lexicon("speed_words"))
 _GLUED = re.compile(r"^(?:vmax|v)([^\W\d_]{1,8})$")
 
 
@@ -135,15 +76,14 @@ def ranked_classes(words: str, traffic: Traffic) -> tuple[int, list[str]]:
     if not words:
         return 99, []
     categories = {row.name: row.category for row in traffic.rows}
-    steps = (
+    category, kind, meant = lexicon("categories").get(words), lexicon("train_words").get(words), known_train(words)
+    steps: tuple[Callable[[str], bool], ...] = (
         lambda name: fold(name) == words,
         lambda name: _abbreviates(words, fold(name)),
         lambda name: fold(categories[name]) == words,
-        lambda name: lexicon("train_words").get(words) in _kinds(name),
-        lambda name: (
-            lexicon("categories").get(words) in (categories[name], lexicon("categories").get(fold(name)))
-        ),
-        lambda name: known_train(words) in ({categories[name]} | _kinds(name)) - {""},
+        lambda name: kind is not None and kind in _kinds(name),
+        lambda name: category is not None and category in (categories[name], lexicon("categories").get(fold(name))),
+        lambda name: meant != "" and meant in {categories[name], *_kinds(name)},
     )
     for rank, agrees in enumerate(steps):
         if found := [name for name in traffic.class_names if agrees(name)]:
