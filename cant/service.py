@@ -143,7 +143,14 @@ def make_plan(
         )
         raise InputError(message, Place(reading.file))
     used_settings = settings_for(settings or reading.settings or Settings(), used_limits)
-    plan = plan_line(reading.curves, used_traffic, used_limits, used_settings, progress=progress)
+    plan = plan_line(
+        reading.curves,
+        used_traffic,
+        used_limits,
+        used_settings,
+        turnouts=reading.turnouts,
+        progress=progress,
+    )
     return PlannedLine(reading, plan, explain(plan))
 
 

@@ -72,6 +72,10 @@ class CurveList:
         Situation words, lower case; ``{"plain"}`` where blank.
     class_speeds : dict of str to ndarray, shape (n,)
         Speed of a class as the row gives it [km/h]; nan not given, :data:`DOES_NOT_RUN` for ``none``.
+    excess_waived : dict of str to ndarray of bool, shape (n,)
+        By class: its excess is shown on this curve and does not bind, by a decision that needs approval.
+    exceptional_allowed : ndarray of bool, shape (n,), or None
+        Where exceptional values may be used if the settings allow that tier; None: everywhere.
     """
 
     file: str
@@ -98,6 +102,8 @@ class CurveList:
     speed_kmh: FloatArray
     situations: list[frozenset[str]]
     class_speeds: dict[str, FloatArray] = field(default_factory=dict)
+    excess_waived: dict[str, BoolArray] = field(default_factory=dict)
+    exceptional_allowed: BoolArray | None = None
 
     def __len__(self) -> int:
         return len(self.curve)

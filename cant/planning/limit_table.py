@@ -7,8 +7,9 @@ planner want one number per curve and class in the canonical unit, with the row 
 from __future__ import annotations
 
 import math
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -50,6 +51,10 @@ class LimitAt:
     row: CodeArray
     gap: BoolArray
 
+    def each(self, change: Callable[[Any], Any]) -> LimitAt:
+        """Change all four arrays alike."""
+        return LimitAt(change(self.value), change(self.tolerance), change(self.row), change(self.gap))
+
 
 @dataclass(frozen=True, slots=True)
 class _Condition:
@@ -88,6 +93,53 @@ class _Condition:
         return holds
 
 
+@dataclass(frozen=True)
+class BandedLimit:
+    """A quantity's limit in every band of speed, asked once and looked up often.
+
+    Attributes
+    ----------
+    upper_kmh : ndarray, shape (bands,)
+        Upper edges, included; the last is inf.
+    limit : LimitAt
+        Shape (bands, n, k).
+    """
+
+    upper_kmh: FloatArray
+    limit: LimitAt
+
+    @classmethod
+    def of(cls, upper_kmh: FloatArray, limit: LimitAt, shape: tuple[int, int, int]) -> BandedLimit:
+        """Make it from what was asked in each band, broadcast to (bands, n, k)."""
+        return cls(upper_kmh, limit.each(lambda part: np.ascontiguousarray(np.broadcast_to(part, shape))))
+
+    def take(self, curves: npt.ArrayLike) -> BandedLimit:
+        """Give some of the curves."""
+        at = np.asarray(curves)
+        return BandedLimit(self.upper_kmh, self.limit.each(lambda part: part[:, at]))
+
+    def take_classes(self, columns: IntArray) -> BandedLimit:
+        """Give some of the classes."""
+        return BandedLimit(self.upper_kmh, self.limit.each(lambda part: part[:, :, columns]))
+
+    def unfold(self, columns: IntArray) -> BandedLimit:
+        """Give one class of each curve, (bands, n, 1)."""
+        at = np.arange(len(columns))
+        return BandedLimit(self.upper_kmh, self.limit.each(lambda part: part[:, at, columns][:, :, None]))
+
+    def at(self, speed_kmh: FloatArray) -> LimitAt:
+        """Look up the limit at speeds (..., n, k) or (1, 1); any row may be given for nan."""
+        if len(self.upper_kmh) == 1:
+            return self.limit.each(lambda part: part[0])
+        band = np.searchsorted(self.upper_kmh[:-1] + _EDGE, speed_kmh, side="left")
+        if band.size == 1:
+            only = int(band.flat[0])
+            return self.limit.each(lambda part: part[only])
+        n, k = self.limit.value.shape[1:]
+        at = (band, np.arange(n)[:, None], np.arange(k))
+        return self.limit.each(lambda part: part[at])
+
+
 class LimitTable:
     """The rows of a limit set over the categories and situations of one line.
 
@@ -100,6 +152,9 @@ class LimitTable:
         Category words; an array of category codes indexes them.
     situations : sequence of frozenset of str
         Distinct sets of situation words; an array of situation codes indexes them.
+    exceptional_allowed : sequence of bool, optional
+        For each of them whether exceptional values count there where they are asked for; everywhere when not
+        given.
     """
 
     def __init__(
@@ -108,8 +163,15 @@ class LimitTable:
         settings: Settings,
         categories: Sequence[str],
         situations: Sequence[frozenset[str]],
+        exceptional_allowed: Sequence[bool] | None = None,
     ) -> None:
         self.limits = limits
+        self.categories = len(categories)
+        self._allowed = (
+            None
+            if exceptional_allowed is None or all(exceptional_allowed)
+            else np.array(exceptional_allowed, dtype=np.bool_)
+        )
         self._settings = settings
         self._rows: dict[str, list[_Condition]] = {quantity: [] for quantity in QUANTITIES}
         for index, row in enumerate(limits.rows):
@@ -148,6 +210,16 @@ class LimitTable:
     def has(self, quantity: str) -> bool:
         """Tell whether the set has any row of a quantity."""
         return bool(self._rows[quantity])
+
+    def bands(self, quantity: str) -> FloatArray:
+        """Give the upper edges of the bands of speed of one quantity [km/h], ascending, the last one inf."""
+        edges = {
+            edge
+            for row in self._rows[quantity]
+            for edge in (row.speed_over, row.speed_up_to)
+            if edge is not None
+        }
+        return np.array([*sorted(edges), np.inf])
 
     def speed_edges(self, quantities: Sequence[str]) -> list[float]:
         """Give the speeds [km/h] at which a band of one of the quantities begins or ends, ascending."""
@@ -201,10 +273,12 @@ class LimitTable:
             holds = kind & row.holds_by_size(speed, radius)
             by_kind |= kind
             by_size |= holds
-            stated = row.exceptional if exceptional else row.normal
-            if math.isinf(stated):
+            stated = np.asarray(row.exceptional if exceptional else row.normal)
+            if exceptional and self._allowed is not None:
+                stated = np.where(self._allowed[situation], row.exceptional, row.normal)
+            if np.isinf(stated).all():
                 continue
-            here = stated + row.slope * radius if row.slope else np.float64(stated)
+            here = stated + row.slope * radius if row.slope else stated
             stricter = holds & (here > value if largest else here < value)
             np.copyto(value, here, where=stricter)
             np.copyto(tolerance, row.tolerance, where=stricter)

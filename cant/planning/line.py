@@ -6,17 +6,20 @@ so that they broadcast with trial axes put in front. The axis order is always tr
 
 from __future__ import annotations
 
-from dataclasses import dataclass, fields
+from collections.abc import Mapping, Sequence
+from dataclasses import dataclass, fields, replace
 from typing import Any
 
 import numpy as np
 import numpy.typing as npt
 
 from cant.model.curves import DOES_NOT_RUN, SHAPES, CurveList
-from cant.model.limits import LimitSet
+from cant.model.limits import QUANTITIES, LimitSet
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic, TrainClass
-from cant.planning.limit_table import NO_CATEGORY, LimitTable
+from cant.model.turnouts import Turnout
+from cant.planning.branches import TURNOUT, Branches, make_branches
+from cant.planning.limit_table import NO_CATEGORY, BandedLimit, LimitAt, LimitTable
 from cant.planning.neighbours import Neighbourhood
 
 FloatArray = npt.NDArray[np.float64]
@@ -62,6 +65,10 @@ class Line:
         nan where not known or the class does not run.
     category : ndarray of int, shape (n, k)
         Code of the class's category, NO_CATEGORY where it does not run.
+    branches : Branches or None
+        Branches of turnouts that lie in the curves; None where there is none at all.
+    banded : dict of (quantity, exceptional) to BandedLimit, or None
+        Limits looked up by band of speed: only on a line small enough, see :meth:`with_bands`.
     """
 
     table: LimitTable
@@ -86,6 +93,8 @@ class Line:
     roll: FloatArray
     gravity_height_m: FloatArray
     category: IntArray
+    branches: Branches | None = None
+    banded: dict[tuple[str, bool], BandedLimit] | None = None
 
     def __len__(self) -> int:
         return len(self.radius_m)
@@ -105,15 +114,60 @@ class Line:
                 chosen[item.name] = value[at]
             elif isinstance(value, tuple):
                 chosen[item.name] = tuple(array[at] for array in value)
+            elif isinstance(value, Branches):
+                chosen[item.name] = value.take(at)
+            elif isinstance(value, dict):
+                chosen[item.name] = {key: banded.take(at) for key, banded in value.items()}
             else:
                 chosen[item.name] = value
         return Line(**chosen)
+
+    def limit(self, quantity: str, speed_kmh: FloatArray, exceptional: bool) -> LimitAt:
+        """Ask a quantity's limit for each class at speeds (..., n, k) [km/h]."""
+        if self.banded is not None:
+            return self.banded[quantity, exceptional].at(speed_kmh)
+        return self.table.at(
+            quantity,
+            exceptional=exceptional,
+            category=self.category,
+            situation=self.situation,
+            speed=speed_kmh,
+            radius=self.radius_m,
+        )
+
+    def with_bands(self) -> Line:
+        """Give the same curves with their limits in every band: worth it where a few are asked often."""
+        banded = {}
+        for quantity, info in QUANTITIES.items():
+            if not info.bounds:
+                continue
+            upper = self.table.bands(quantity)
+            # Any speed of a band will do; above the last edge one more km/h.
+            asked = np.where(np.isfinite(upper), upper, np.append(upper, 0.0)[len(upper) - 2] + 1.0)
+            for exceptional in (False, True):
+                limit = self.limit(quantity, asked[:, None, None], exceptional)
+                banded[quantity, exceptional] = BandedLimit.of(
+                    upper, limit, (len(upper), len(self), self.classes)
+                )
+        return replace(self, banded=banded)
+
+    def unfold(self, curves: IntArray, columns: IntArray) -> Line:
+        """Give some classes on some curves, each as a curve of its own with one class."""
+        chosen = self.take(curves)
+        at = np.arange(len(curves))
+        for name in _OF_CLASS:
+            setattr(chosen, name, getattr(chosen, name)[at, columns][:, None])
+        if chosen.banded is not None:
+            chosen.banded = {key: limit.unfold(columns) for key, limit in chosen.banded.items()}
+        return chosen
 
     def take_classes(self, columns: IntArray) -> Line:
         """Give the same curves with some of the classes only."""
         chosen: dict[str, Any] = {item.name: getattr(self, item.name) for item in fields(self)}
         for name in _OF_CLASS:
             chosen[name] = chosen[name][:, columns]
+        if self.banded is not None:
+            chosen["banded"] = {key: limit.take_classes(columns) for key, limit in self.banded.items()}
         return Line(**chosen)
 
     def set_ends(self, neighbourhood: Neighbourhood) -> None:
@@ -143,6 +197,8 @@ def make_line(
     limits: LimitSet,
     settings: Settings,
     neighbourhood: Neighbourhood,
+    turnouts: Sequence[Turnout] = (),
+    placed: Mapping[int, list[int]] | None = None,
 ) -> Line:
     """Put the tables into arrays.
 
@@ -156,6 +212,9 @@ def make_line(
     settings : Settings
     neighbourhood : Neighbourhood
         How the same curves meet.
+    turnouts : sequence of Turnout
+    placed : mapping, optional
+        The turnouts of each curve, as :func:`cant.planning.branches.place_turnouts` gives them.
 
     Returns
     -------
@@ -163,14 +222,31 @@ def make_line(
     """
     n, names = len(curves), traffic.class_names
     k = len(names)
-    known: dict[frozenset[str], int] = {}
-    situation = np.array([known.setdefault(words, len(known)) for words in curves.situations], dtype=np.int64)
-    categories = sorted({row.category for row in traffic.rows})
-    table = LimitTable(limits, settings, categories, list(known))
+    allowed = curves.exceptional_allowed
+    tier = np.ones(n, dtype=np.bool_) if allowed is None else allowed
+    known: dict[tuple[frozenset[str], bool], int] = {}
+    situation = np.array(
+        [
+            known.setdefault(key, len(known))
+            for key in zip(curves.situations, (bool(t) for t in tier), strict=True)
+        ],
+        dtype=np.int64,
+    )
+    at_turnout = {
+        i: known.setdefault((curves.situations[i] | {TURNOUT}, bool(tier[i])), len(known))
+        for i in (placed or {})
+    }
+    categories = sorted({row.category for row in traffic.rows} | {t.category for t in turnouts if t.category})
+    table = LimitTable(
+        limits, settings, categories, [words for words, _ in known], [allows for _, allows in known]
+    )
     of_class = _TrafficArrays(n, k)
     _fill_traffic(of_class, curves, traffic, categories)
     planned = _planned_speeds(curves, names, of_class.speed)
     of_class.runs &= ~np.isnan(planned)
+    for j, name in enumerate(names):
+        if name in curves.excess_waived:
+            of_class.regular[:, j] &= ~curves.excess_waived[name]
     lengths = (neighbourhood.transition_m, neighbourhood.ramp_m)
     return Line(
         table=table,
@@ -195,6 +271,18 @@ def make_line(
         roll=of_class.roll,
         gravity_height_m=of_class.gravity_height,
         category=np.where(of_class.runs, of_class.category, NO_CATEGORY),
+        branches=(
+            make_branches(
+                turnouts,
+                dict(placed),
+                curves,
+                settings.constant,
+                {word: code for code, word in enumerate(categories)},
+                at_turnout,
+            )
+            if placed
+            else None
+        ),
     )
 
 

@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass
 from functools import cached_property
 
@@ -15,7 +15,9 @@ from cant.model.limits import LimitSet
 from cant.model.plan import Finding
 from cant.model.settings import METHODS, Settings
 from cant.model.traffic import Traffic
+from cant.model.turnouts import Turnout
 from cant.planning.assess import Assessment, assess, passed_alone, passed_shared
+from cant.planning.branches import place_turnouts
 from cant.planning.choose import choose
 from cant.planning.gaps import demand_roll_coefficients, find_gaps, find_unlimited
 from cant.planning.grid import Grid, make_grid
@@ -57,6 +59,7 @@ class Outcome:
         At the proposed cants.
     findings : list of Finding
         Of the data and the limits.
+    turnouts : sequence of Turnout
     """
 
     curves: CurveList
@@ -72,6 +75,7 @@ class Outcome:
     proposed: Assessment
     target: Target
     findings: list[Finding]
+    turnouts: Sequence[Turnout] = ()
 
     @property
     def pairs(self) -> Pairs:
@@ -160,6 +164,7 @@ def plan_arrays(
     limits: LimitSet,
     settings: Settings,
     progress: Progress | None = None,
+    turnouts: Sequence[Turnout] = (),
 ) -> Outcome:
     """Plan a line.
 
@@ -171,6 +176,8 @@ def plan_arrays(
     settings : Settings
     progress : callable, optional
         Told how far the work has come.
+    turnouts : sequence of Turnout
+        Those that lie in curves: their branches bound the cant.
 
     Returns
     -------
@@ -189,7 +196,8 @@ def plan_arrays(
     target = target_of(settings.method, settings)
     tell(0.0, "looking at neighbours")
     neighbourhood = find_neighbours(curves)
-    line = make_line(curves, traffic, limits, settings, neighbourhood)
+    placed, misplaced = place_turnouts(turnouts, curves)
+    line = make_line(curves, traffic, limits, settings, neighbourhood, turnouts, placed)
     usable = ~(curves.rejected | neighbourhood.contradictory)
     line.runs &= usable[:, None]
     line.regular &= line.runs
@@ -217,6 +225,7 @@ def plan_arrays(
         *(f for f in neighbourhood.findings if f.curve is None or not curves.rejected[f.curve]),
         *gaps,
         *find_unlimited(line, limits, traffic),
+        *misplaced,
     ]
     tell(1.0, "done")
     return Outcome(
@@ -233,4 +242,5 @@ def plan_arrays(
         proposed=proposed,
         target=target,
         findings=findings,
+        turnouts=turnouts,
     )

@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections import Counter
-from collections.abc import Callable, Iterator
+from collections.abc import Callable, Iterator, Sequence
 from typing import Any
 
 import numpy as np
@@ -14,6 +14,7 @@ from cant.model.limits import LimitSet
 from cant.model.plan import STATUSES, Finding
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic
+from cant.model.turnouts import Turnout
 from cant.planning.outcome import Outcome, plan_arrays
 from cant.planning.records import RecordBlock
 
@@ -120,6 +121,7 @@ def plan_line(
     limits: LimitSet,
     settings: Settings,
     *,
+    turnouts: Sequence[Turnout] = (),
     progress: Callable[[float, str], None] | None = None,
 ) -> Plan:
     """Plan the cants of a line; see :func:`cant.planning.outcome.plan_arrays`.
@@ -131,6 +133,8 @@ def plan_line(
     limits : LimitSet
         What it lays down of rail spacing or constant holds where the settings say nothing.
     settings : Settings
+    turnouts : sequence of Turnout
+        Those that lie in curves: their branches bound the cant.
     progress : callable, optional
         Told the share done and what is being done.
 
@@ -144,4 +148,4 @@ def plan_line(
         Where the tables do not suffice for any plan.
     """
     settings = settings.with_standard(limits.rail_spacing_mm, limits.equilibrium_constant)
-    return Plan(plan_arrays(curves, traffic, limits, settings, progress))
+    return Plan(plan_arrays(curves, traffic, limits, settings, progress, turnouts))

@@ -7,7 +7,8 @@ over a shared transition depends on the cants at both its ends and stands in :mo
 
     place   what it speaks of                    rises with cant (+1)        falls with cant (-1)
     curve   the circular arc                     cant, at most, excess,      deficiency, at least,
-                                                 felt inwards                felt outwards
+                                                 felt inwards, branch of     felt outwards, branch of
+                                                 a turnout                   a turnout
     before  the transition to a straight at      gradient, rate of cant      rate of deficiency
     after   the smaller / the greater chainage   (abrupt change: neither)
 """
@@ -110,6 +111,9 @@ DEFICIENCY = Rule("cant deficiency", CURVE, -1, True)
 EXCESS = Rule("cant excess", CURVE, 1, False)
 FELT_OUTWARDS = Rule("felt acceleration", CURVE, -1, True)
 FELT_INWARDS = Rule("felt acceleration", CURVE, 1, False)
+BRANCH_DEFICIENCY_LEAST = Rule("cant deficiency on the branch", CURVE, -1, False, of_class=False)
+BRANCH_DEFICIENCY_MOST = Rule("cant deficiency on the branch", CURVE, 1, False, of_class=False)
+BRANCH_EXCESS = Rule("cant excess on the branch", CURVE, 1, False, of_class=False)
 GRADIENT = {end: Rule("cant gradient", PLACE_OF_END[end], 1, False) for end in (BEFORE, AFTER)}
 CANT_RATE = {end: Rule("rate of change of cant", PLACE_OF_END[end], 1, True) for end in (BEFORE, AFTER)}
 DEFICIENCY_RATE = {
@@ -148,14 +152,7 @@ class Asked:
     def limit(self, quantity: str) -> LimitAt:
         """Give the limit of each class, shape (..., n, k)."""
         if quantity not in self._found:
-            self._found[quantity] = self.line.table.at(
-                quantity,
-                exceptional=self.exceptional,
-                category=self.line.category,
-                situation=self.line.situation,
-                speed=self.speed_kmh,
-                radius=self.line.radius_m,
-            )
+            self._found[quantity] = self.line.limit(quantity, self.speed_kmh, self.exceptional)
         return self._found[quantity]
 
     def curve_limit(self, quantity: str) -> LimitAt:
@@ -232,6 +229,20 @@ def _felt_inwards_terms(asked: Asked) -> Iterator[Terms]:
     yield Terms(FELT_INWARDS, -factor * balance, factor, asked.limit("felt acceleration"), line.regular)
 
 
+def _branch_terms(asked: Asked) -> Iterator[Terms]:
+    """Yield what the branches of turnouts ask; the last axis counts the turnouts of a curve, not classes."""
+    line, branches = asked.line, asked.line.branches
+    if branches is None or not branches.there.any():
+        return
+    deficiency = branches.limit(line.table, "cant deficiency", asked.exceptional)
+    excess = branches.limit(line.table, "cant excess", asked.exceptional)
+    there, needed, one = branches.there, branches.needed_mm, np.ones((1, 1))
+    along, against = there & (branches.sense > 0), there & (branches.sense <= 0)
+    yield Terms(BRANCH_DEFICIENCY_LEAST, needed, -one, deficiency, along)
+    yield Terms(BRANCH_DEFICIENCY_MOST, needed, one, deficiency, against)
+    yield Terms(BRANCH_EXCESS, -needed, one, excess, there & (branches.sense >= 0))
+
+
 def _gradient_terms(asked: Asked) -> Iterator[Terms]:
     line = asked.line
     empty = line.without_trains
@@ -288,6 +299,7 @@ _HARD: tuple[Callable[[Asked], Iterator[Terms]], ...] = (
     _excess_terms,
     _felt_inwards_terms,
     _gradient_terms,
+    _branch_terms,
 )
 _BY_SPEED: tuple[Callable[[Asked], Iterator[Terms]], ...] = (
     _deficiency_terms,

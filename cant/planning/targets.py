@@ -70,7 +70,7 @@ def rms_target(line: Line, speed_kmh: FloatArray) -> FloatArray:
 
 
 def fraction_target(line: Line, speed_kmh: FloatArray, fraction: float) -> FloatArray:
-    """A share of the equilibrium cant of the fastest class (method ``fraction``)."""
+    """Give a share of the equilibrium cant of the fastest class (method ``fraction``)."""
     speed = np.where(line.runs, np.nan_to_num(speed_kmh), 0.0)
     fastest = speed.max(axis=-1, keepdims=True, initial=0.0)
     return fraction * equilibrium_cant(fastest, line.radius_m, line.constant)
@@ -112,9 +112,9 @@ def least_target(line: Line, speed_kmh: FloatArray) -> FloatArray:
 
 
 def underbalance_target(line: Line, speed_kmh: FloatArray, margin_mm: float) -> FloatArray:
-    """A little under the equilibrium cant of the class with most tonnes, not below 0 (``underbalance``).
+    """Aim a little under the equilibrium cant of the class with most tonnes (``underbalance``).
 
-    Where tonnes are not known, the class with most trains; of equals the slower.
+    Not below 0. Where tonnes are not known, the class with most trains; of equals the slower.
     """
     speed = np.nan_to_num(speed_kmh)
     moving = line.runs & (speed > 0)
@@ -143,11 +143,12 @@ def target_of(method: str, settings: Settings) -> Target:
     settings : Settings
         ``fraction_of_fastest``, ``underbalance_mm``, ``today_within_mm``.
     """
-    return {
+    targets: dict[str, Target] = {
         "rms": rms_target,
         "fraction": partial(fraction_target, fraction=settings.fraction_of_fastest),
         "balanced": balanced_target,
         "least": least_target,
         "underbalance": partial(underbalance_target, margin_mm=settings.underbalance_mm),
         "today": partial(today_target, within_mm=settings.today_within_mm),
-    }[method]
+    }
+    return targets[method]
