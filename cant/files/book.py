@@ -86,10 +86,14 @@ class Book:
         if len(listed) > MAX_SHEETS:
             message = f"is refused for safety: it has {len(listed)} sheets; at most {MAX_SHEETS} are read"
             raise FileError(message, self.package.place)
+        parts: set[str] = set()
         for one in listed:
             relation = self.relations.get(relation_id(one))
             part = self.package.name_of(relation.target) if relation and not relation.external else None
             kind = relation.type if relation else "worksheet"
+            if part is not None and part in parts:
+                self.package.damaged(f"two of its sheets are one and the same part, {part}")
+            parts.add(part or "")
             yield SheetEntry(
                 one.get("name"), part, kind == "worksheet", one.get("state", "visible") == "visible", one
             )

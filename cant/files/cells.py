@@ -28,6 +28,7 @@ MAX_TEXT = 1_000_000
 _ATTRIBUTE = re.compile(rb"""([\w:.-]+)\s*=\s*(?:"([^"]*)"|'([^']*)')""")
 _CELL_NAME = re.compile(rb"([A-Z]{1,3})[0-9]{1,7}\Z")
 _HIDDEN = re.compile(rb"""\shidden=["'](?:1|true)["']""")
+_MINUS = ord("-")
 _BLANK_ROW: list[Value] = []
 
 
@@ -171,7 +172,7 @@ class CellReader:
                 if not text:
                     cells.append(None)
                 elif kind == b"s":
-                    cells.append(strings[int(text)])
+                    cells.append(strings[int(text)] if text[0] != _MINUS else strings[len(strings)])
                 elif style in dates:
                     cells.append(from_serial(float(text), self.book.epoch_1904))
                 else:

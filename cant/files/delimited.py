@@ -7,6 +7,7 @@ import io
 import re
 from collections import Counter
 from dataclasses import dataclass
+from typing import NoReturn
 
 from cant.errors import FileError, Place
 from cant.files.grid import CellError, Sheet, Value, Workbook
@@ -144,14 +145,15 @@ def _check_width(text: str, separator: str, place: Place) -> None:
 
 def _rows(text: str, separator: str, place: Place) -> list[list[str]]:
     rows: list[list[str]] = []
-    left = MAX_CELLS
+    left = MAX_CELLS - text.count("\n")
+    if left < 0:
+        _too_large(place)
     limit = csv.field_size_limit(MAX_TEXT)
     try:
         for number, row in enumerate(csv.reader(io.StringIO(text, newline=""), delimiter=separator), start=1):
-            left -= len(row) + 1
+            left -= len(row)
             if left < 0:
-                message = f"is too large: at most {MAX_CELLS // 1_000_000} million cells are read"
-                raise FileError(message, place)
+                _too_large(place)
             if len(row) > MAX_COLUMNS and any(cell.strip() for cell in row[MAX_COLUMNS:]):
                 message = f"has {len(row)} columns; a table has at most {MAX_COLUMNS}"
                 raise FileError(message, place.at(number))
@@ -164,6 +166,11 @@ def _rows(text: str, separator: str, place: Place) -> list[list[str]]:
     finally:
         csv.field_size_limit(limit)
     return rows
+
+
+def _too_large(place: Place) -> NoReturn:
+    message = f"is too large: at most {MAX_CELLS // 1_000_000} million cells are read"
+    raise FileError(message, place)
 
 
 def _values(row: list[str], decimal_comma: bool) -> list[Value]:

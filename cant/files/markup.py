@@ -15,7 +15,7 @@ from xml.parsers import expat
 from cant.errors import FileError, Place
 
 MAX_DEPTH = 256
-MAX_ELEMENTS = 1_500_000
+MAX_ELEMENTS = 600_000
 MAX_UNUSUAL_BYTES = 150_000_000
 """Largest part that is rewritten to plain notation."""
 
@@ -262,6 +262,8 @@ def elements(data: bytes, name: str, place: Place) -> Element:
     FileError
         Too many elements, or nested too deeply.
     """
+    if data.count(b"<") > 2 * MAX_ELEMENTS:
+        _too_many(name, place)
     root: list[Element] = []
     stack: list[Element] = []
     count = 0
@@ -271,8 +273,7 @@ def elements(data: bytes, name: str, place: Place) -> Element:
         nonlocal count
         count += 1
         if count > MAX_ELEMENTS:
-            message = f"is refused for safety: its part {name} has far more elements than a workbook's"
-            raise FileError(message, place)
+            _too_many(name, place)
         at = parser.CurrentByteIndex
         close = _TAG.match(data, at)
         one = Element(tag, attributes, at, close.end() if close else at)
@@ -295,6 +296,11 @@ def elements(data: bytes, name: str, place: Place) -> Element:
     except expat.ExpatError as error:
         _damaged(name, expat.ErrorString(error.code), place)
     return root[0]
+
+
+def _too_many(name: str, place: Place) -> NoReturn:
+    message = f"is refused for safety: its part {name} has far more elements than a workbook's"
+    raise FileError(message, place)
 
 
 def text_of(data: bytes, element: Element) -> str:

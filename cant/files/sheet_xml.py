@@ -88,7 +88,11 @@ class SheetXml:
         root = _ROOT.search(self.data)
         self.prefix = root.group(1) if root else b""
         self.rows_start, self.rows_end = self._rows()
-        self.rest = elements(self.rest_data, name, place)
+        rest = self.rest_data
+        if rest.count(b"mergeCell ") > MAX_MERGED:
+            message = f"is refused for safety: it has more than {MAX_MERGED} merged ranges"
+            raise FileError(message, place)
+        self.rest = elements(rest, name, place)
 
     @property
     def rest_data(self) -> bytes:
@@ -149,21 +153,19 @@ class SheetXml:
         holder = self.rest.child("mergeCells")
         if holder is None:
             return []
-        if len(holder.children) > MAX_MERGED:
-            message = f"is refused for safety: it has more than {MAX_MERGED} merged ranges"
-            raise FileError(message, self.place)
         found = (parse_range(one.get("ref")) for one in holder.all("mergeCell"))
         return [one for one in found if one is not None]
 
     def hidden_columns(self) -> frozenset[int]:
         """Give the hidden columns from 0."""
         holder = self.rest.child("cols")
-        hidden: set[int] = set()
+        hidden = bytearray(MAX_COLUMN)
         for one in holder.all("col") if holder else ():
             if one.flag("hidden"):
                 first, last = _small_number(one.get("min")), _small_number(one.get("max"))
-                hidden.update(range(max(first, 1) - 1, min(last, MAX_COLUMN)))
-        return frozenset(hidden)
+                first, last = max(first, 1) - 1, min(last, MAX_COLUMN)
+                hidden[first:last] = b"\1" * (last - first)
+        return frozenset(column for column, is_hidden in enumerate(hidden) if is_hidden)
 
 
 @lru_cache(maxsize=8)
