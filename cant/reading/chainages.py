@@ -22,6 +22,7 @@ _PREFIX = re.compile(
     r"\s*[.:=]?\s*(?=[\d-])",
     re.IGNORECASE,
 )
+_COMMON = re.compile(r"(\d{1,4})\+(\d{3}(?:\.\d+)?)")
 _KM_M = re.compile(r"(?P<sign>-?)(?P<km>\d{1,4})\s*[+/]\s*(?P<m>\d{3}(?:[.,]\d+)?)\s*m?")
 _K_M = re.compile(r"(?P<sign>-?)(?P<km>\d{1,4})\s*k(?:m)?\s*(?P<m>\d{1,3}(?:[.,]\d+)?)\s*m", re.IGNORECASE)
 _HM_M = re.compile(r"(?P<sign>-?)(?P<km>\d{1,4}[.,]\d)\s*\+\s*(?P<m>\d{1,3}(?:[.,]\d+)?)\s*m?")
@@ -46,6 +47,8 @@ def take_location(text: str, decimal: str = "") -> Taken:
     decimal : str
         Decimal mark of the sheet.
     """
+    if (common := _COMMON.fullmatch(text)) is not None:
+        return Taken(int(common[1]) + float(common[2]) / 1000, unit="km")
     word = _PREFIX.sub("", text.replace("−", "-")).strip().strip("~").strip()
     if (taken := _metric(word) or _imperial(word)) is not None:
         return taken

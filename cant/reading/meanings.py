@@ -7,6 +7,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field
+from itertools import islice
 
 from cant.files.grid import Value
 from cant.reading.answers import Answers
@@ -73,15 +74,8 @@ class Column:
 
     def samples(self, count: int = 3) -> tuple[str, ...]:
         """Give some values as they stand."""
-        found: list[str] = []
-        for cell in self.cells:
-            if not is_blank(cell):
-                text = squeeze(shown(cell))
-                if text not in found:
-                    found.append(text)
-                if len(found) == count:
-                    break
-        return tuple(found)
+        texts = (squeeze(shown(cell)) for cell in dict.fromkeys(self.cells) if not is_blank(cell))
+        return tuple(islice(dict.fromkeys(islice(texts, 4 * count)), count))
 
 
 def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:

@@ -163,7 +163,7 @@ def _totals(columns: list[Column]) -> frozenset[int]:
     for item in columns[:4]:
         verdicts: dict[str, bool] = {}
         for index, cell in enumerate(item.cells):
-            if isinstance(cell, str):
+            if isinstance(cell, str) and cell[:2].strip().isalpha():
                 if cell not in verdicts:
                     verdicts[cell] = _is_total(cell, words)
                 if verdicts[cell]:
@@ -172,6 +172,8 @@ def _totals(columns: list[Column]) -> frozenset[int]:
 
 
 def _is_total(text: str, words: dict[str, str]) -> bool:
+    if any(c.isdigit() for c in text.split(maxsplit=1)[0]):
+        return False
     tokens = fold(text).split()
     return bool(tokens) and len(tokens) <= 6 and any(" ".join(tokens[:n]) in words for n in (1, 2, 3))
 

@@ -56,6 +56,8 @@ def squeeze(text: str) -> str:
 
 def shown(value: Value) -> str:
     """Give a cell's content as a person would type it, "" for a blank."""
+    if type(value) is str:
+        return value
     if value is None:
         return ""
     if isinstance(value, bool):
@@ -76,4 +78,8 @@ def is_text(value: Value) -> bool:
 
 def is_blank(value: Value) -> bool:
     """Whether a cell says nothing: empty, or one of the usual dashes."""
-    return value is None or (isinstance(value, str) and squeeze(value).casefold() in BLANKS)
+    if value is None:
+        return True
+    if not isinstance(value, str) or (len(value) > 5 and not value.isspace() and value[0].isalnum()):
+        return False
+    return squeeze(value).casefold() in BLANKS
