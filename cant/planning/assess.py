@@ -75,6 +75,10 @@ class Passed:
             }
         )
 
+    def spread(self, at: npt.NDArray[np.int64], n: int) -> Passed:
+        """Give the same for n places of which only some pass anything."""
+        return Passed({key: _spread(over, at, n) for key, over in self.by_rule.items()})
+
     @property
     def count(self) -> FloatArray:
         """Number of limits passed, shape (..., n)."""
@@ -273,3 +277,40 @@ def assess(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool) -> 
         passed=passed_alone(line, cant_mm[:, None], run),
         passed_between=passed_shared(meeting, cants, together),
     )
+
+
+def assess_some(
+    line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool, doubtful: npt.NDArray[np.int64]
+) -> Assessment:
+    """Assess a line of which only some curves can lose time or pass a limit; whole chains of them.
+
+    Parameters
+    ----------
+    line : Line
+        n curves.
+    pairs : Pairs
+        m transitions.
+    cant_mm : ndarray, shape (n,)
+        Cants [mm].
+    exceptional : bool
+    doubtful : ndarray of int
+        The others are known to keep every normal limit at planned speeds.
+    """
+    n, m = len(line), len(pairs)
+    inside = np.isin(pairs.first, doubtful)
+    part = assess(line.take(doubtful).with_bands(), pairs.among(doubtful), cant_mm[doubtful], exceptional)
+    run = line.planned_kmh.copy()
+    run[doubtful] = part.run_kmh
+    return Assessment(
+        run_kmh=run,
+        stopped=_spread(part.stopped, doubtful, n),
+        lost_s=_spread(part.lost_s, doubtful, n),
+        passed=part.passed.spread(doubtful, n),
+        passed_between=part.passed_between.spread(np.flatnonzero(inside), m),
+    )
+
+
+def _spread(values: FloatArray, at: npt.NDArray[np.int64], n: int) -> FloatArray:
+    every = np.zeros(n)
+    every[at] = values
+    return every

@@ -45,10 +45,13 @@ class Choice:
         nan where the curve is not planned.
     not_compliant : ndarray of bool
         The curve, or a transition of it, does not keep what no lower speed can mend.
+    within_normal : ndarray of bool
+        The curve and its transitions keep every normal limit at planned speeds: no time lost, nothing passed.
     """
 
     cant_mm: FloatArray
     not_compliant: BoolArray
+    within_normal: BoolArray
 
 
 @dataclass
@@ -111,21 +114,29 @@ def choose(
     settled, left = settle_within_normal(line, grid, pairs, possible, (bounds.low_mm, bounds.high_mm), wanted)
     cant = np.where(np.isnan(settled), cant, settled)
     unsettled = hopeless + left
-    lone = np.flatnonzero(planned & ~in_chain & np.isnan(cant))
-    hard = np.concatenate([lone, *unsettled]) if unsettled else lone
     not_compliant = np.zeros(len(line), dtype=np.bool_)
-    search = _Search(line, pairs, target, exceptional)
-    for at, nodes in node_blocks(line.take(hard), grid.take(hard), target, exceptional):
-        curves = hard[at]
-        alone = ~in_chain[curves]
-        picked = nodes.cant_mm[best_alone(nodes), np.arange(len(at))]
-        cant[curves[alone]] = picked[alone]
-        not_compliant[curves] = nodes.not_compliant
-        search.keep(curves[~alone], nodes, np.flatnonzero(~alone))
+    lone = np.flatnonzero(planned & ~in_chain & np.isnan(cant))
+    for at, nodes in node_blocks(line.take(lone), grid.take(lone), target, exceptional, complete=False):
+        cant[lone[at]] = nodes.cant_mm[best_alone(nodes), np.arange(len(at))]
+        not_compliant[lone[at]] = nodes.not_compliant
+    if unsettled:
+        members = np.concatenate(unsettled)
+        search = _Search(line.take(members).with_bands(), pairs.among(members), target, exceptional)
+        blocks = node_blocks(line.take(members), grid.take(members), target, exceptional, complete=True)
+        for at, nodes in blocks:
+            not_compliant[members[at]] = nodes.not_compliant
+            search.keep(at, nodes)
+        begin = 0
+        for chain in unsettled:
+            local = np.arange(begin, begin + len(chain))
+            cant[chain], broken = search.plan(local)
+            not_compliant[chain] |= broken
+            begin += len(chain)
+    settled_at_once = np.ones(len(line), dtype=np.bool_)
+    settled_at_once[lone] = False
     for chain in unsettled:
-        cant[chain], broken = search.plan(chain)
-        not_compliant[chain] |= broken
-    return Choice(cant, not_compliant)
+        settled_at_once[chain] = False
+    return Choice(cant, not_compliant, settled_at_once)
 
 
 def _unsettled_chains(
@@ -188,9 +199,9 @@ class _Search:
         self._curves: dict[int, _Curve] = {}
         self._pair_after = {int(first): j for j, first in enumerate(pairs.first)}
 
-    def keep(self, curves: IntArray, nodes: Nodes, columns: IntArray) -> None:
-        """Keep what the nodes say of curves that stand in chains."""
-        for curve, j in zip(curves, columns, strict=True):
+    def keep(self, curves: IntArray, nodes: Nodes) -> None:
+        """Keep what the nodes say of some curves."""
+        for j, curve in enumerate(curves):
             level = np.flatnonzero(nodes.allowed[:, j])
             line = self._line.take([curve])
             sited = np.isfinite(line.at_most_mm) | np.isfinite(line.at_least_mm) | line.fixed

@@ -16,7 +16,7 @@ from cant.model.plan import Finding
 from cant.model.settings import METHODS, Settings
 from cant.model.traffic import Traffic
 from cant.model.turnouts import Turnout
-from cant.planning.assess import Assessment, assess, passed_alone, passed_shared
+from cant.planning.assess import Assessment, assess_some, passed_alone, passed_shared
 from cant.planning.branches import place_turnouts
 from cant.planning.choose import choose
 from cant.planning.gaps import demand_roll_coefficients, find_gaps, find_unlimited
@@ -220,7 +220,7 @@ def plan_arrays(
         keepable = planned & ~choice.not_compliant
         cant = keep_today(line, pairs, cant, settings.keep_within_mm, keepable, tier)
     tell(0.8, "assessing the plan")
-    proposed = assess(line, pairs, cant, tier)
+    proposed = assess_some(line, pairs, cant, tier, np.flatnonzero(~choice.within_normal & planned))
     findings = [
         *(f for f in neighbourhood.findings if f.curve is None or not curves.rejected[f.curve]),
         *gaps,

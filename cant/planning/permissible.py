@@ -61,7 +61,14 @@ class Permitted:
 
 def speed_steps(line: Line) -> FloatArray:
     """Give the speed step of each class on each curve [km/h], shape (n, k): 5 km/h unless the limits say."""
-    step = Asked(line, line.planned_kmh, False).limit("speed step").value
+    step = line.table.at(
+        "speed step",
+        exceptional=False,
+        category=line.category,
+        situation=line.situation,
+        speed=line.planned_kmh,
+        radius=line.radius_m,
+    ).value
     return np.where(np.isfinite(step) & (step > 0), step, DEFAULT_SPEED_STEP_KMH)
 
 
@@ -148,7 +155,9 @@ def _fastest_over_end(line: Line, cant_mm: FloatArray, asked: Asked, end: int) -
     return fastest
 
 
-def permitted_alone(line: Line, cant_mm: FloatArray, steps: FloatArray, exceptional: bool) -> Permitted:
+def permitted_alone(
+    line: Line, cant_mm: FloatArray, steps: FloatArray, exceptional: bool, as_run: bool = False
+) -> Permitted:
     """Give what the rules of the curves by themselves permit.
 
     Parameters
@@ -161,6 +170,8 @@ def permitted_alone(line: Line, cant_mm: FloatArray, steps: FloatArray, exceptio
         Speed steps [km/h].
     exceptional : bool
         Tier.
+    as_run : bool
+        Only speeds up to the planned ones are asked for: the search ends with the band of the fastest.
 
     Returns
     -------
@@ -171,7 +182,10 @@ def permitted_alone(line: Line, cant_mm: FloatArray, steps: FloatArray, exceptio
     up_to = np.zeros(shape)
     alive = np.ones(shape, dtype=np.bool_)
     planned = np.nan_to_num(line.planned_kmh)
+    enough = planned.max(initial=0.0) if as_run else FASTEST_KMH
     for low, high in _bands(line):
+        if low >= enough:
+            break
         asked = Asked(line, np.full((1, 1), high), exceptional)
         fastest = _fastest_in_band(line, cant_mm, asked)
         gap = gap_at(asked)
