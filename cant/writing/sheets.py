@@ -16,6 +16,7 @@ from typing import Any
 import xlsxwriter
 
 from cant.writing.columns import Cell
+from cant.writing.fast_rows import FastSheet
 
 MAX_TEXT = 32_000
 """Longest text of a cell that every spreadsheet program keeps (the format's own limit is 32,767)."""
@@ -73,7 +74,7 @@ class TableSheet:
 
     def __init__(self, book: NewSheets, name: str) -> None:
         self._book = book
-        self._sheet = book.workbook.add_worksheet(name)
+        self._sheet: Any = book.workbook.add_worksheet(name, worksheet_class=FastSheet)
         self._formats: list[Any] = []
         self._long: list[tuple[int, float]] = []
         self._next = 0
@@ -111,10 +112,8 @@ class TableSheet:
             self.left_out += 1
             return None
         lines = max((_lines(cells[i], width) for i, width in self._long), default=1)
-        if lines > 1:
-            self._sheet.set_row(self._next, LINE_HEIGHT * lines)
-        for column, value in enumerate(cells):
-            self._cell(column, value, self._formats[column] if column < len(self._formats) else None)
+        height = LINE_HEIGHT * lines if lines > 1 else None
+        self._sheet.put_row(self._next, [_cut(value) for value in cells], self._formats, height)
         self._next += 1
         return self._next
 
@@ -140,8 +139,7 @@ class TableSheet:
         if value is None:
             return
         if isinstance(value, str):
-            text = value if len(value) <= MAX_TEXT else value[:MAX_TEXT] + " ..."
-            self._sheet.write_string(self._next, column, text, style)
+            self._sheet.write_string(self._next, column, _cut(value), style)
         else:
             self._sheet.write_number(self._next, column, value, style)
 
@@ -195,6 +193,13 @@ class NewSheets:
     ) -> None:
         self.workbook.close()
         self.data = self._stream.getvalue()
+
+
+def _cut(value: Cell) -> Cell:
+    """Cut a text that is longer than a cell holds, with a mark."""
+    if isinstance(value, str) and len(value) > MAX_TEXT:
+        return value[:MAX_TEXT] + " ..."
+    return value
 
 
 def _lines(value: Cell, width: float) -> int:

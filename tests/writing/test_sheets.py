@@ -62,6 +62,28 @@ def test_a_text_longer_than_a_cell_is_cut_with_a_mark() -> None:
 
 def test_a_blank_is_a_blank() -> None:
     with NewSheets() as book:
-        book.table("T").row([None, "a", None, 1.5])
-    row = next(load_workbook(io.BytesIO(book.data))["T"].iter_rows(values_only=True))
-    assert row == (None, "a", None, 1.5)
+        sheet = book.table("T")
+        sheet.header([Heading(title) for title in "ABCDE"])
+        sheet.row([None, "a", None, 1.5, float("nan")])
+        sheet.row([])
+        sheet.row(["", "b"])
+    rows = list(load_workbook(io.BytesIO(book.data))["T"].iter_rows(values_only=True))
+    assert rows[1:3] == [(None, "a", None, 1.5, None), (None,) * 5]
+    assert rows[3][1] == "b"
+
+
+def test_rows_of_both_ways_stand_in_order() -> None:
+    with NewSheets() as book:
+        sheet = book.table("T")
+        sheet.line("title", bold=True)
+        sheet.header([Heading("A", 12, "0.00"), Heading("Text", 50)])
+        sheet.row([1.0, "x " * 60])
+        sheet.row([2.5, "short"])
+        sheet.line("end", 3.0)
+    read = load_workbook(io.BytesIO(book.data))["T"]
+    column = [cell.value for cell in read["A"]]
+    assert column == ["title", "A", 1, 2.5, "end"]
+    assert read["A3"].number_format == "0.00"
+    assert read.row_dimensions[3].height == 45
+    assert read.row_dimensions[4].height is None
+    assert read.dimensions == "A1:B5"
