@@ -1,4 +1,4 @@
-"""Hostile files are refused with one clear sentence, or read within bounds: no crash, no hang, under 2 GiB."""
+"""Hostile files are refused in one clear sentence, or read within bounds: no crash, no hang, no flood."""
 
 import json
 import re
