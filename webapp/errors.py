@@ -10,7 +10,7 @@ import secrets
 
 from flask import Flask, Response, jsonify, render_template, request
 from flask.typing import ResponseReturnValue
-from werkzeug.exceptions import HTTPException, RequestEntityTooLarge
+from werkzeug.exceptions import HTTPException, RequestEntityTooLarge, SecurityError
 
 from cant.errors import CantError
 from webapp.context import running
@@ -36,6 +36,7 @@ def add_error_answers(app: Flask) -> None:
     app.register_error_handler(CantError, _cannot)
     app.register_error_handler(RefusedError, _refused)
     app.register_error_handler(RequestEntityTooLarge, _too_large)
+    app.register_error_handler(SecurityError, _unknown_host)
     app.register_error_handler(HTTPException, _http)
     app.register_error_handler(Exception, _unforeseen)
 
@@ -75,6 +76,11 @@ def _too_large(_error: RequestEntityTooLarge) -> ResponseReturnValue:
     largest = running().config.upload_mb
     message = f"A request may have {largest} MB at most. Send the sheet with the curve list alone, or as csv."
     return answer(413, message)
+
+
+def _unknown_host(_error: SecurityError) -> ResponseReturnValue:
+    """Answer in plain text: a page has links, and links need a host that is trusted."""
+    return Response("This service does not answer to that host name.\n", 400, mimetype="text/plain")
 
 
 def _http(error: HTTPException) -> ResponseReturnValue:
