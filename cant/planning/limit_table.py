@@ -113,20 +113,6 @@ class BandedLimit:
         """Make it from what was asked in each band, broadcast to (bands, n, k)."""
         return cls(upper_kmh, limit.each(lambda part: np.ascontiguousarray(np.broadcast_to(part, shape))))
 
-    def take(self, curves: npt.ArrayLike) -> BandedLimit:
-        """Give some of the curves."""
-        at = np.asarray(curves)
-        return BandedLimit(self.upper_kmh, self.limit.each(lambda part: part[:, at]))
-
-    def take_classes(self, columns: IntArray) -> BandedLimit:
-        """Give some of the classes."""
-        return BandedLimit(self.upper_kmh, self.limit.each(lambda part: part[:, :, columns]))
-
-    def unfold(self, columns: IntArray) -> BandedLimit:
-        """Give one class of each curve, (bands, n, 1)."""
-        at = np.arange(len(columns))
-        return BandedLimit(self.upper_kmh, self.limit.each(lambda part: part[:, at, columns][:, :, None]))
-
     def at(self, speed_kmh: FloatArray) -> LimitAt:
         """Look up the limit at speeds (..., n, k) or (1, 1); any row may be given for nan."""
         if len(self.upper_kmh) == 1:
@@ -138,6 +124,40 @@ class BandedLimit:
         n, k = self.limit.value.shape[1:]
         at = (band, np.arange(n)[:, None], np.arange(k))
         return self.limit.each(lambda part: part[at])
+
+
+class BandedLimits:
+    """Banded limits of some curves: those of a part are cut out when they are asked for, not before."""
+
+    def __init__(self, find: Callable[[tuple[str, bool]], BandedLimit]) -> None:
+        self._find = find
+        self._found: dict[tuple[str, bool], BandedLimit] = {}
+
+    def __getitem__(self, key: tuple[str, bool]) -> BandedLimit:
+        if key not in self._found:
+            self._found[key] = self._find(key)
+        return self._found[key]
+
+    def _part(self, cut: Callable[[Any], Any]) -> BandedLimits:
+        def find(key: tuple[str, bool]) -> BandedLimit:
+            every = self[key]
+            return BandedLimit(every.upper_kmh, every.limit.each(cut))
+
+        return BandedLimits(find)
+
+    def take(self, curves: npt.ArrayLike) -> BandedLimits:
+        """Give those of some curves."""
+        at = np.asarray(curves)
+        return self._part(lambda part: part[:, at])
+
+    def take_classes(self, columns: IntArray) -> BandedLimits:
+        """Give those of some classes."""
+        return self._part(lambda part: part[:, :, columns])
+
+    def unfold(self, columns: IntArray) -> BandedLimits:
+        """Give one class of each curve, (bands, n, 1)."""
+        at = np.arange(len(columns))
+        return self._part(lambda part: part[:, at, columns][:, :, None])
 
 
 class LimitTable:

@@ -14,12 +14,12 @@ import numpy as np
 import numpy.typing as npt
 
 from cant.model.curves import DOES_NOT_RUN, SHAPES, CurveList
-from cant.model.limits import QUANTITIES, LimitSet
+from cant.model.limits import LimitSet
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic, TrainClass
 from cant.model.turnouts import Turnout
 from cant.planning.branches import TURNOUT, Branches, make_branches
-from cant.planning.limit_table import NO_CATEGORY, BandedLimit, LimitAt, LimitTable
+from cant.planning.limit_table import NO_CATEGORY, BandedLimit, BandedLimits, LimitAt, LimitTable
 from cant.planning.neighbours import Neighbourhood
 
 FloatArray = npt.NDArray[np.float64]
@@ -67,7 +67,7 @@ class Line:
         Code of the class's category, NO_CATEGORY where it does not run.
     branches : Branches or None
         Branches of turnouts that lie in the curves; None where there is none at all.
-    banded : dict of (quantity, exceptional) to BandedLimit, or None
+    banded : BandedLimits or None
         Limits looked up by band of speed: only on a line small enough, see :meth:`with_bands`.
     """
 
@@ -94,7 +94,7 @@ class Line:
     gravity_height_m: FloatArray
     category: IntArray
     branches: Branches | None = None
-    banded: dict[tuple[str, bool], BandedLimit] | None = None
+    banded: BandedLimits | None = None
 
     def __len__(self) -> int:
         return len(self.radius_m)
@@ -114,10 +114,8 @@ class Line:
                 chosen[item.name] = value[at]
             elif isinstance(value, tuple):
                 chosen[item.name] = tuple(array[at] for array in value)
-            elif isinstance(value, Branches):
+            elif isinstance(value, (Branches, BandedLimits)):
                 chosen[item.name] = value.take(at)
-            elif isinstance(value, dict):
-                chosen[item.name] = {key: banded.take(at) for key, banded in value.items()}
             else:
                 chosen[item.name] = value
         return Line(**chosen)
@@ -137,19 +135,16 @@ class Line:
 
     def with_bands(self) -> Line:
         """Give the same curves with their limits in every band: worth it where a few are asked often."""
-        banded = {}
-        for quantity, info in QUANTITIES.items():
-            if not info.bounds:
-                continue
+
+        def find(key: tuple[str, bool]) -> BandedLimit:
+            quantity, exceptional = key
             upper = self.table.bands(quantity)
             # Any speed of a band will do; above the last edge one more km/h.
             asked = np.where(np.isfinite(upper), upper, np.append(upper, 0.0)[len(upper) - 2] + 1.0)
-            for exceptional in (False, True):
-                limit = self.limit(quantity, asked[:, None, None], exceptional)
-                banded[quantity, exceptional] = BandedLimit.of(
-                    upper, limit, (len(upper), len(self), self.classes)
-                )
-        return replace(self, banded=banded)
+            limit = self.limit(quantity, asked[:, None, None], exceptional)
+            return BandedLimit.of(upper, limit, (len(upper), len(self), self.classes))
+
+        return replace(self, banded=BandedLimits(find))
 
     def unfold(self, curves: IntArray, columns: IntArray) -> Line:
         """Give some classes on some curves, each as a curve of its own with one class."""
@@ -158,7 +153,7 @@ class Line:
         for name in _OF_CLASS:
             setattr(chosen, name, getattr(chosen, name)[at, columns][:, None])
         if chosen.banded is not None:
-            chosen.banded = {key: limit.unfold(columns) for key, limit in chosen.banded.items()}
+            chosen.banded = chosen.banded.unfold(columns)
         return chosen
 
     def take_classes(self, columns: IntArray) -> Line:
@@ -167,7 +162,7 @@ class Line:
         for name in _OF_CLASS:
             chosen[name] = chosen[name][:, columns]
         if self.banded is not None:
-            chosen["banded"] = {key: limit.take_classes(columns) for key, limit in self.banded.items()}
+            chosen["banded"] = self.banded.take_classes(columns)
         return Line(**chosen)
 
     def set_ends(self, neighbourhood: Neighbourhood) -> None:

@@ -386,24 +386,16 @@ def _surely_held(
 ) -> BoolArray:
     """Tell where the rules hold at every speed up to one, by their largest values and smallest limits."""
     edges = [e for e in meeting.before.table.speed_edges(SPEED_QUANTITIES) if e < FASTEST_KMH]
+    bands = [SharedAsked(meeting, np.full((1, 1), band), exceptional) for band in [*edges, FASTEST_KMH]]
     held: BoolArray = np.ones(fastest_kmh.shape, dtype=np.bool_)
-    for band in [*edges, FASTEST_KMH]:
-        asked = SharedAsked(meeting, np.full((1, 1), band), exceptional)
-        held = held & _bounded(meeting, cant_mm, fastest_kmh, asked)
-    return held
-
-
-def _bounded(
-    meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray], fastest_kmh: FloatArray, asked: SharedAsked
-) -> BoolArray:
-    top = SharedAsked(meeting, fastest_kmh, False)
-    held: BoolArray = np.ones(fastest_kmh.shape, dtype=np.bool_)
-    for found in speed_values(top, *cant_mm):
-        limit = asked.limit(found.rule.quantity)
+    for found in speed_values(SharedAsked(meeting, fastest_kmh, exceptional), *cant_mm):
+        limits = [asked.limit(found.rule.quantity) for asked in bands]
+        least = np.minimum.reduce([limit.value + limit.tolerance for limit in limits])
+        gap = np.logical_or.reduce([limit.gap for limit in limits])
         value = found.value
         if found.rule.quantity == "rate of change of cant deficiency":
             value = _largest_deficiency_rate(meeting, cant_mm, fastest_kmh)
-        held = held & (~found.active | ((value <= limit.value + limit.tolerance) & ~limit.gap))
+        held = held & (~found.active | ((value <= least) & ~gap))
     return held
 
 
