@@ -65,7 +65,11 @@ def plan(
     named after CURVES, into the current folder.
     """
     if out is None and json_file is None:
-        out, json_file = Path(f"{curves.stem}-plan.xlsx"), Path(f"{curves.stem}-plan.json")
+        suffix = ".xlsm" if curves.suffix.lower() == ".xlsm" else ".xlsx"
+        out, json_file = Path(f"{curves.stem}-plan{suffix}"), Path(f"{curves.stem}-plan.json")
+    if out is not None and out.suffix.lower() not in (".xlsx", ".xlsm"):
+        message = "the annotated workbook is an Excel workbook: give a name that ends in .xlsx"
+        raise FileError(message, Place(str(out)))
     given_files = [curves, traffic, settings, answers, _limits_path(limits_given)]
     check_places([p for p in (out, json_file) if p], [p for p in given_files if p])
     data = _content(curves)
@@ -79,7 +83,9 @@ def plan(
         if out is not None:
             progress(0.0, "workbook")
             annotated = service.annotated_workbook(planned, data, str(curves))
-            contents[out], notes = annotated.data, annotated.notes
+            contents[out], notes = annotated.data, list(annotated.notes)
+            if annotated.suffix == ".xlsm" and out.suffix.lower() != ".xlsm":
+                notes.append(f"{out} holds macros: spreadsheet programs open it only as .xlsm; rename it")
         if json_file is not None:
             contents[json_file] = planned.json_chunks()
         progress(0.5, "writing")

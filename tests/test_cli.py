@@ -9,6 +9,7 @@ from collections.abc import Callable
 from pathlib import Path
 
 import pytest
+from canonical import tables, xlsx
 from openpyxl import load_workbook
 
 from cant import cli, service
@@ -137,7 +138,8 @@ def test_the_template_is_a_workbook(run: Run, here: Path) -> None:
         (["plan", "."], "folder"),
         (["plan", "{sample}", "--traffic", "none.csv"], "none.csv"),
         (["plan", "{sample}", "--out", "no/such/folder.xlsx"], "folder does not exist"),
-        (["plan", "{sample}", "--out", "a", "--json", "a"], "two outputs"),
+        (["plan", "{sample}", "--out", "a.xlsx", "--json", "a.xlsx"], "two outputs"),
+        (["plan", "{sample}", "--out", "plan.pdf"], ".xlsx"),
         (["plan", "{copy}", "--out", "{copy}"], "overwritten"),
         (["plan", "noise.xlsx"], "noise.xlsx"),
         (["plan", "empty.csv"], "empty.csv"),
@@ -219,3 +221,30 @@ def test_serve_finds_the_web_service_by_name(run: Run, monkeypatch: pytest.Monke
     monkeypatch.setattr(cli, "entry_points", lambda **_: [Entry()])
     assert run("serve", "--port", "9001")[0] == 0
     assert called == [("127.0.0.1", 9001)]
+
+
+def test_a_list_of_nothing_but_bad_rows_is_still_answered(run: Run, here: Path) -> None:
+    sheets = tables()
+    for row in sheets["Curves"][1:]:
+        row[5] = "sharp"
+    (here / "bad.xlsx").write_bytes(xlsx(sheets))
+    code, _, err = run("plan", "bad.xlsx", "--out", "o.xlsx", "--json", "o.json")
+    assert code == 0
+    assert "4 rows were not assessed" in err
+    document = json.loads((here / "o.json").read_text(encoding="utf-8"))
+    assert document["curves"] == []
+    assert len(document["rejected"]) == 4
+    head, *rows = load_workbook(here / "o.xlsx")["Curves"].iter_rows(values_only=True)
+    assert [row[head.index("Status")] for row in rows] == ["not assessed"] * 4
+
+
+def test_answers_reach_the_reading(run: Run, here: Path) -> None:
+    (here / "line.xlsx").write_bytes(xlsx(tables()))
+    (here / "answers.json").write_text(
+        json.dumps({"columns": {"Curves": {"Cant (mm)": {"meaning": "Cant", "unit": "in"}}}})
+    )
+    code, _, _ = run("plan", "line.xlsx", "--reading", "answers.json", "--json", "o.json")
+    assert code == 0
+    document = json.loads((here / "o.json").read_text(encoding="utf-8"))
+    assert all(row["column"].startswith("Cant") for row in document["rejected"])
+    assert len(document["rejected"]) == 4, "40 to 70 inches of cant are refused"

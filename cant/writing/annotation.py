@@ -43,10 +43,13 @@ class AnnotatedFile:
         The file.
     notes : list of str
         What a person should know: what could not be added, or that it is a new workbook and why.
+    suffix : str
+        What its name has to end in: ``.xlsx``, or ``.xlsm`` where it holds macros.
     """
 
     data: bytes
     notes: list[str] = field(default_factory=list)
+    suffix: str = ".xlsx"
 
 
 class AddedColumns:
@@ -145,7 +148,8 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
         for entry in _curve_sheets(planned.reading)
     ]
     result = annotate(base, additions, book.data, file)
-    return AnnotatedFile(result.data, [*notes, *result.notes])
+    suffix = ".xlsm" if workbook.kind == "xlsm" and base is data else ".xlsx"
+    return AnnotatedFile(result.data, [*notes, *result.notes], suffix)
 
 
 def _base(workbook: Workbook, data: bytes) -> tuple[bytes, Callable[[str], str], list[str]]:
