@@ -32,7 +32,12 @@ NOT_USED = "not used"
 
 def read_sheet(sheet: Sheet, context: Context) -> list[Draft]:
     """Understand every curve table of one sheet."""
-    return [read_block(block, context) for block in find_blocks(sheet)]
+    blocks = find_blocks(sheet)
+    for before, after in zip(blocks, blocks[1:], strict=False):
+        if after.header_first > before.header_first:
+            rows = ", ".join(str(r) for r in range(before.last_row + 1, after.header_last + 1) if sheet.rows[r - 1])
+            context.notes.append(f"sheet '{sheet.name}', rows {rows}: title and headings of a further table")
+    return [read_block(block, context) for block in blocks]
 
 
 def read_block(block: Block, context: Context) -> Draft:

@@ -63,7 +63,8 @@ def reading_table(reading: Reading) -> str:
         lines += ["  " + line for line in _table([("heading", "read as", "unit", "for example", ""), *rows])]
     count = len(reading.curves)
     refused = int(reading.curves.rejected.sum())
-    lines.append(f"{count} curves, {refused} that cannot be assessed, {len(reading.questions)} questions")
+    asked = _count(len(reading.questions), "question")
+    lines.append(f"{_count(count, 'curve')}, {refused} that cannot be assessed, {asked}")
     for question in reading.questions:
         where = f"sheet '{question.sheet}', " if question.sheet else ""
         lines.append(f"? {where}column '{question.column}': {question.question}")
@@ -73,6 +74,10 @@ def reading_table(reading: Reading) -> str:
         lines.append(f"! ... and {len(reading.rejected) - 50} more")
     lines += [f"- {note}" for note in reading.notes]
     return "\n".join(lines)
+
+
+def _count(number: int, word: str) -> str:
+    return f"{number} {word}" if number == 1 else f"{number} {word}s"
 
 
 def _cells(column: ColumnReading) -> tuple[str, ...]:

@@ -16,7 +16,7 @@ from cant.reading.headings import Heading, Match, analyse, matches
 from cant.reading.layout import Block, BlockColumn
 from cant.reading.numbers import parse_number
 from cant.reading.text import fold, is_blank, shown, squeeze
-from cant.reading.trains import known_train, says_speed, train_words
+from cant.reading.trains import known_train, names_only_trains, says_speed, train_words
 from cant.reading.words import lexicon
 from cant.units import find_unit, unit
 
@@ -227,7 +227,7 @@ def _as_speed(result: Column, source: BlockColumn, best: Match | None) -> bool:
     if whole and whole[0].score == 1.0 and whole[0].meaning == "Speed":
         return _take_speed(result, source, "")
     in_speed_unit = bool(result.unit) and unit(result.unit).dimension == "speed"
-    if says_speed(words) or in_speed_unit or (known_train(words) and (best is None or best.score < 0.6)):
+    if says_speed(words) or in_speed_unit or (names_only_trains(words) and (best is None or best.score < 0.6)):
         return _take_speed(result, source, train_words(words))
     return False
 

@@ -121,7 +121,7 @@ def known_headings(table: str) -> str:
     return ", ".join(c.name for c in columns_of(table))
 
 
-def read_records(sheet: Sheet, file: str, table: str) -> RecordTable:
+def read_records(sheet: Sheet, file: str, table: str, may_be_empty: bool = False) -> RecordTable:
     """Read a small table: its header row, and every row below it that is not blank.
 
     Raises
@@ -145,10 +145,10 @@ def read_records(sheet: Sheet, file: str, table: str) -> RecordTable:
         }
         for row in _data_rows(sheet, header, [c.index for c in columns])
     ]
-    if not records:
+    if not records and not may_be_empty:
         message = f"the {table} table is empty: it needs at least one row below its headings"
         raise InputError(message, place.at(header))
-    last = max(next(iter(record.values())).place.row or header for record in records)
+    last = max((next(iter(record.values())).place.row or header for record in records), default=header)
     where = SheetReading(sheet.name, table, header, header + 1, last, sheet.width)
     return RecordTable(records, columns, where, unknown)
 

@@ -36,7 +36,7 @@ _NUMBER_SIGN = re.compile(
 _WORD = re.compile(r"[^\W_]+", re.UNICODE)
 
 BLANKS = frozenset(
-    {"", "-", "--", "---", ".", "..", "...", "n/a", "na", "n.a.", "?", "x", "/", "*", "k.a.", "s/d", "nan"}
+    {"", "-", "--", "---", ".", "..", "...", "n/a", "na", "n.a.", "?", "/", "*", "k.a.", "s/d", "nan"}
 )
 """Texts that say that nothing is known."""
 

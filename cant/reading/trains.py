@@ -54,6 +54,12 @@ def known_train(words: str) -> str:
     return ""
 
 
+def names_only_trains(words: str) -> bool:
+    """Whether folded heading words name a kind of train and nothing else (``booked goods``, no ``goods tonnage``)."""
+    known = {*lexicon("categories"), *lexicon("train_words"), *_SPEED_WORDS, "traffic", "services", "hauled"}
+    return bool(known_train(words)) and all(token in known for token in words.split())
+
+
 def classes_meant(words: str, traffic: Traffic) -> list[str]:
     """Give the classes that folded words mean, see :func:`ranked_classes`."""
     return ranked_classes(words, traffic)[1]

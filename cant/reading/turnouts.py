@@ -23,7 +23,7 @@ def read_turnouts(sheet: Sheet, file: str) -> tuple[list[Turnout], RecordTable]:
     InputError
         A required heading or value missing, a hand or number that is none, neither curve nor chainage.
     """
-    table = read_records(sheet, file, "turnouts")
+    table = read_records(sheet, file, "turnouts", may_be_empty=True)
     return [_turnout(record) for record in table.records], table
 
 

@@ -193,7 +193,7 @@ def _read_tables(
     if found := _table_sheet("settings", roles, workbook, settings):
         tables.settings, where, columns = read_settings(*found, methods)
         _note_table(tables, columns, where, {}, found[0])
-    if found := _table_sheet("turnouts", roles, workbook, None):
+    if (found := _table_sheet("turnouts", roles, workbook, None)) and any(found[0].rows):
         tables.turnouts, table = read_turnouts(*found)
         _note_table(tables, table.columns, table.where, table.unknown, found[0])
 

@@ -170,10 +170,7 @@ def _limit_units() -> list[str]:
 
 def _drop_down(sheet: Worksheet, at: int, choices: Sequence[str], strict: bool) -> None:
     listed = ",".join(choices)
-    if len(listed) > 255:
-        listed = f"='How to fill in'!$H$1:$H${len(choices)}"
-    formula = listed if listed.startswith("=") else f'"{listed}"'
-    rule = DataValidation(type="list", formula1=formula.removeprefix("="), allow_blank=True)
+    rule = DataValidation(type="list", formula1=f'"{listed}"', allow_blank=True)
     rule.showErrorMessage = strict
     rule.error = "Choose one of the list, or leave it blank."
     letter = get_column_letter(at)
@@ -190,11 +187,10 @@ def _settings_sheet(sheet: Worksheet) -> None:
         sheet.cell(row=row, column=3, value=note).font = _PALE
     for letter, width in (("A", 24), ("B", 24), ("C", 80)):
         sheet.column_dimensions[letter].width = width
-    for row, choices in ((4, METHODS), (5, ("normal", '"normal, exceptional"')), (8, ("metric", "us"))):
-        if row != 5:
-            rule = DataValidation(type="list", formula1='"' + ",".join(choices) + '"', allow_blank=True)
-            rule.add(f"B{row}")
-            sheet.add_data_validation(rule)
+    for row, choices in ((4, METHODS), (8, ("metric", "us"))):
+        rule = DataValidation(type="list", formula1='"' + ",".join(choices) + '"', allow_blank=True)
+        rule.add(f"B{row}")
+        sheet.add_data_validation(rule)
     sheet.freeze_panes = "A2"
 
 
@@ -213,5 +209,3 @@ def _notes_sheet(sheet: Worksheet) -> None:
     for row, text in enumerate(_HOW, start=1):
         sheet.cell(row=row, column=1, value=text).alignment = Alignment(wrap_text=True, vertical="top")
     sheet.column_dimensions["A"].width = 110
-    for row, quantity in enumerate(QUANTITIES, start=1):
-        sheet.cell(row=row, column=8, value=quantity).font = _PALE
