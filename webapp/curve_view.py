@@ -2,16 +2,63 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 from typing import Any
 
 from markupsafe import Markup
 
+from cant.model.limits import QUANTITIES
+from webapp import words
 from webapp.computing import Computed
 from webapp.drawings.section import acting, draw_section
 from webapp.measures import Measures
+from webapp.words import PLACE_WORDS
 
 Record = Mapping[str, Any]
+KIND_OF_UNIT = {
+    "mm": "cant exact",
+    "mm/m": "gradient",
+    "mm/s": "rate",
+    "m/s2": "acceleration",
+    "km/h": "speed",
+}
+SHOWN_OF_CLASS = frozenset(
+    (
+        "speed_kmh",
+        "run_speed_kmh",
+        "permissible_speed_kmh",
+        "permissible_by",
+        "lowest_speed_kmh",
+        "equilibrium_cant_mm",
+        "deficiency_mm",
+        "excess_mm",
+        "unbalanced_acceleration_ms2",
+        "felt_acceleration_ms2",
+    )
+)
+SHOWN = frozenset(
+    (
+        "sheet",
+        "row",
+        "line",
+        "track",
+        "curve",
+        "radius_m",
+        "hand",
+        "existing_cant_mm",
+        "recommended_cant_mm",
+        "status",
+        "tier",
+        "lower_mm",
+        "upper_mm",
+        "target_cant_mm",
+        "rms_speed_kmh",
+        "equilibrium_speed_kmh",
+        "shares_transition_with_next",
+        "reason",
+    )
+)
+"""What the page of a curve shows in its own places; all else follows as it is named in the JSON."""
 
 
 def class_rows(record: Record) -> list[tuple[Record, Record | None]]:
@@ -20,11 +67,43 @@ def class_rows(record: Record) -> list[tuple[Record, Record | None]]:
     return [(figures, today.get(figures["class"])) for figures in record["classes"]]
 
 
+def further_classes(record: Record) -> list[dict[str, Any]]:
+    """Give the figures of each class that the first table does not show."""
+    return [{k: v for k, v in figures.items() if k not in SHOWN_OF_CLASS} for figures in record["classes"]]
+
+
+def further(record: Record) -> dict[str, Any]:
+    """Give the single values of a record that the page does not show elsewhere."""
+    return {
+        key: value
+        for key, value in record.items()
+        if key not in SHOWN and value is not None and isinstance(value, (str, int, float, bool))
+    }
+
+
+def limit_rows(found: Sequence[Record], measures: Measures) -> list[dict[str, Any]]:
+    """Give limits passed as rows of words: value and limit in the units of the page."""
+    rows = []
+    for item in found:
+        kind = KIND_OF_UNIT.get(QUANTITIES[item["quantity"]].canonical) if "quantity" in item else None
+        row = dict(item)
+        for key in ("value", "limit"):
+            if kind is not None and isinstance(row.get(key), (int, float)):
+                row[key] = measures.with_unit(kind, row[key])
+        if "place" in row:
+            row["place"] = PLACE_WORDS.get(row["place"], row["place"])
+        rows.append(row)
+    return rows
+
+
 def transition_rows(record: Record) -> list[tuple[str, Record]]:
     """Give the transitions in and out, as far as the record has them."""
     known = record.get("transitions") or {}
-    words = {"in": "Transition in", "out": "Transition out"}
-    return [(words[end], known[end]) for end in ("in", "out") if known.get(end)]
+    return [
+        (words.sentence(PLACE_WORDS[place]), known[end])
+        for place, end in (("before", "in"), ("after", "out"))
+        if known.get(end)
+    ]
 
 
 def section(computed: Computed, record: Record, measures: Measures, *, today: bool = False) -> Markup | None:

@@ -31,6 +31,7 @@ STATUS_MARK: dict[str, str] = {
 """A sign before each status, so that colour alone tells nothing."""
 
 SEVERITY_MARK: dict[str, str] = {"stop": "✕", "warning": "!", "advice": "i"}
+PLACE_WORDS: dict[str, str] = {"before": "transition in", "after": "transition out"}
 CONFIDENCE_WORDS: dict[str, str] = {
     "certain": "certain",
     "likely": "likely: please check",
@@ -62,10 +63,21 @@ def governing(bound: Mapping[str, Any] | None) -> str:
     parts = [str(bound.get("quantity", ""))]
     if bound.get("class"):
         parts.append(f"of {bound['class']}")
+    if bound.get("place") in PLACE_WORDS:
+        parts.append(f"on the {PLACE_WORDS[bound['place']]}")
     if bound.get("clause"):
         parts.append(f"({bound['clause']})")
     return " ".join(part for part in parts if part)
 
+
+KEY_KINDS: dict[str, str] = {
+    "smallest_radius_m": "radius",
+    "wheel_load_shift": "share",
+    "wheel_load_shift_at_rest": "share",
+    "permissible_speed_kmh": "speed",
+    "permissible_speed_normal_kmh": "speed",
+}
+"""Kind of number of some keys, where the ending does not say it."""
 
 UNIT_ENDINGS: tuple[tuple[str, str], ...] = (
     ("_mm_per_m", "gradient"),
@@ -84,13 +96,20 @@ UNIT_ENDINGS: tuple[tuple[str, str], ...] = (
 """Ending of a key of the JSON, and the kind of number that it says."""
 
 
+SECONDS = "_s"
+
+
 def kind_of(key: str) -> str | None:
     """Give the kind of number that a key of the JSON says by its ending, None where it says none."""
+    if key in KEY_KINDS:
+        return KEY_KINDS[key]
     return next((kind for ending, kind in UNIT_ENDINGS if key.endswith(ending)), None)
 
 
 def heading(key: str) -> str:
     """Give a key of the JSON as words, its unit left out."""
+    if key.endswith(SECONDS):
+        return sentence(key.removesuffix(SECONDS).replace("_", " "))
     bare = next((key.removesuffix(ending) for ending, _ in UNIT_ENDINGS if key.endswith(ending)), key)
     return sentence(bare.replace("_", " "))
 
@@ -107,6 +126,8 @@ def value(key: str, found: Any, measures: Measures, *, unit: bool = True) -> str
         return ", ".join(str(item) for item in found) or "–"
     kind = kind_of(key)
     if isinstance(found, (int, float)):
+        if kind is None and key.endswith(SECONDS):
+            return f"{found:.1f} s"
         if kind is None:
             return f"{found:.4g}"
         return measures.with_unit(kind, found) if unit else measures.show(kind, found)

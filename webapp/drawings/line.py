@@ -8,7 +8,7 @@ zero line, right-hand ones below.
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Callable, Sequence
 from dataclasses import dataclass, field
 
 from markupsafe import Markup
@@ -68,8 +68,12 @@ class _Placed:
 
 @dataclass
 class _Strip:
+    """A strip; ``before`` and ``after`` are curves of other strips with which it shares a transition."""
+
     placed: list[_Placed] = field(default_factory=list)
     width: float = 0.0
+    before: DrawnCurve | None = None
+    after: DrawnCurve | None = None
 
 
 @dataclass(frozen=True)
@@ -115,27 +119,54 @@ def _clamp(metres: float | None, bounds: tuple[float, float]) -> float:
 
 def _lay_out(curves: Sequence[DrawnCurve]) -> list[_Strip]:
     strips = [_Strip()]
-    for before, curve in zip([None, *curves[:-1]], curves, strict=True):
+    for at, curve in enumerate(curves):
+        before = curves[at - 1] if at else None
         joined = before is not None and before.shares_with_next
         straight = None if before is None else _straight_between(before, curve)
         gap = 0.0 if joined else _clamp(straight, STRAIGHT_PIXELS)
         lead = _transition_pixels(before.transition_out_m if joined and before else curve.transition_in_m)
-        arc = max(_clamp(_arc_length(curve), ARC_PIXELS), LETTER * min(len(curve.name), 12))
-        tail = 0.0 if curve.shares_with_next else _transition_pixels(curve.transition_out_m)
         strip = strips[-1]
-        if strip.placed and strip.width + gap + lead + arc + tail + STRAIGHT_PIXELS[0] > STRIP_WIDTH:
-            strip.width += 0.0 if joined else STRAIGHT_PIXELS[0] / 2
-            strip = _Strip()
-            strips.append(strip)
+        if strip.placed and strip.width + gap + lead + _room(curves, at) > STRIP_WIDTH:
+            strip = _next_strip(strips, before if joined else None, curve, lead)
         if not strip.placed:
             gap = 0.0 if joined else max(gap / 2, STRAIGHT_PIXELS[0])
+            lead = lead / 2 if joined else lead
         begin = strip.width + gap
-        placed = _Placed(curve, begin, begin + lead, begin + lead + arc, begin + lead + arc + tail, joined)
+        arc_end = begin + lead + _arc_pixels(curve)
+        tail = 0.0 if curve.shares_with_next else _transition_pixels(curve.transition_out_m)
+        placed = _Placed(curve, begin, begin + lead, arc_end, arc_end + tail, joined)
         placed.shortened_before = straight is not None and straight * PIXELS_PER_METRE > STRAIGHT_PIXELS[1]
         strip.placed.append(placed)
         strip.width = placed.end
     strips[-1].width += STRAIGHT_PIXELS[0]
     return strips
+
+
+def _next_strip(strips: list[_Strip], before: DrawnCurve | None, curve: DrawnCurve, lead: float) -> _Strip:
+    """Begin a strip; where a shared transition is cut, each strip shows half of it."""
+    strips[-1].width += STRAIGHT_PIXELS[0] / 2 if before is None else lead / 2
+    if before is not None:
+        strips[-1].after = curve
+    strips.append(_Strip(before=before))
+    return strips[-1]
+
+
+def _room(curves: Sequence[DrawnCurve], at: int) -> float:
+    """Give the width that must still fit: of a whole chain at its first curve where a strip can hold it."""
+    width, here = 0.0, at
+    while True:
+        width += _arc_pixels(curves[here])
+        width += _transition_pixels(curves[here].transition_out_m)
+        if here + 1 == len(curves) or not curves[here].shares_with_next:
+            break
+        here += 1
+    alone = _arc_pixels(curves[at]) + _transition_pixels(curves[at].transition_out_m)
+    first = at == 0 or not curves[at - 1].shares_with_next
+    return (width if first and width < STRIP_WIDTH - STRAIGHT_PIXELS[1] else alone) + STRAIGHT_PIXELS[0]
+
+
+def _arc_pixels(curve: DrawnCurve) -> float:
+    return max(_clamp(_arc_length(curve), ARC_PIXELS), LETTER * min(len(curve.name), 12))
 
 
 def _transition_pixels(metres: float | None) -> float:
@@ -171,14 +202,12 @@ def _draw_strip(strip: _Strip, panels: tuple[Panel, Panel, Panel], measures: Mea
     parts = [p.draw_grid(width) for p in panels]
     parts += [_headings(panels, measures)]
     parts += [_permitted(placed, cant) for placed in strip.placed]
-    parts += _profiles(strip, width, bend, [_bends(p.curve) for p in strip.placed], "curvature")
-    for values, class_ in (
-        ([p.curve.today_mm for p in strip.placed], "today"),
-        ([p.curve.proposed_mm for p in strip.placed], "proposed"),
+    for panel, class_, of in (
+        (bend, "curvature", _bends),
+        (cant, "today", lambda curve: _signed(curve, curve.today_mm)),
+        (cant, "proposed", lambda curve: _signed(curve, curve.proposed_mm)),
     ):
-        parts += _profiles(
-            strip, width, cant, [_signed(p, v) for p, v in zip(strip.placed, values, strict=True)], class_
-        )
+        parts += _profiles(strip, width, panel, of, class_)
     for placed in strip.placed:
         parts += _markers(placed, deficiency)
         parts += _labels(placed, panels, measures)
@@ -210,8 +239,8 @@ def _headings(panels: tuple[Panel, Panel, Panel], measures: Measures) -> Markup:
     )
 
 
-def _signed(placed: _Placed, value: float | None) -> float | None:
-    return None if value is None else _side(placed.curve) * value
+def _signed(curve: DrawnCurve, value: float | None) -> float | None:
+    return None if value is None else _side(curve) * value
 
 
 def _bends(curve: DrawnCurve) -> float | None:
@@ -234,31 +263,40 @@ def _permitted(placed: _Placed, panel: Panel) -> Markup:
 
 
 def _profiles(
-    strip: _Strip, width: float, panel: Panel, values: Sequence[float | None], class_: str
+    strip: _Strip, width: float, panel: Panel, of: Callable[[DrawnCurve], float | None], class_: str
 ) -> list[Markup]:
     """Draw a quantity along the strip: level over arcs, ramps over transitions, broken where not known."""
-    lines: list[list[svg.Point]] = [[]]
-    level: float | None = 0.0
-    if strip.placed[0].joined_before:
-        lines[-1] = []
+    path: list[svg.Point] = []
+    paths = [path]
+    if strip.before is None:
+        path.append((0.0, panel.y(0.0)))
     else:
-        lines[-1].append((0.0, panel.y(0.0)))
-    for placed, value in zip(strip.placed, values, strict=True):
+        _add_middle(path, 0.0, of(strip.before), of(strip.placed[0].curve), panel)
+    for placed in strip.placed:
+        value = of(placed.curve)
         if value is None:
-            lines.append([])
-            level = None
+            path = []
+            paths.append(path)
             continue
         if not placed.joined_before:
-            lines[-1].append((placed.begin, panel.y(0.0)))
-        elif level is None:
-            lines.append([])
-        lines[-1] += [(placed.arc_begin, panel.y(value)), (placed.arc_end, panel.y(value))]
+            path.append((placed.begin, panel.y(0.0)))
+        path += [(placed.arc_begin, panel.y(value)), (placed.arc_end, panel.y(value))]
         if not placed.curve.shares_with_next:
-            lines[-1].append((placed.end, panel.y(0.0)))
-        level = value
-    if level is not None and not strip.placed[-1].curve.shares_with_next:
-        lines[-1].append((width, panel.y(0.0)))
-    return [svg.polyline(path, class_) for path in lines if len(path) > 1]
+            path.append((placed.end, panel.y(0.0)))
+    last = strip.placed[-1].curve
+    if strip.after is not None:
+        _add_middle(path, width, of(last), of(strip.after), panel)
+    elif of(last) is not None and not last.shares_with_next:
+        path.append((width, panel.y(0.0)))
+    return [svg.polyline(drawn, class_) for drawn in paths if len(drawn) > 1]
+
+
+def _add_middle(
+    path: list[svg.Point], x: float, before: float | None, after: float | None, panel: Panel
+) -> None:
+    """Add the middle of a shared transition where the values on both sides are known."""
+    if before is not None and after is not None:
+        path.append((x, panel.y((before + after) / 2)))
 
 
 def _markers(placed: _Placed, panel: Panel) -> list[Markup]:

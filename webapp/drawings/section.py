@@ -19,7 +19,7 @@ from cant.units import GRAVITY_MS2
 from webapp.drawings import svg
 from webapp.measures import Measures
 
-WIDTH, HEIGHT = 560.0, 500.0
+WIDTH, HEIGHT, ROW = 560.0, 470.0, 18.0
 PIXELS_PER_MM = 0.17
 WEIGHT_PIXELS = 250.0
 USUAL_HEIGHT_M = 1.8
@@ -100,7 +100,7 @@ def draw_section(
     outward = -1.0 if hand < 0 else 1.0
     slope = math.asin(max(-1.0, min(1.0, cant_mm / spacing_mm)))
     frame = _Frame(
-        (WIDTH / 2, HEIGHT - 104.0),
+        (WIDTH / 2, HEIGHT - 110.0),
         (outward * math.cos(slope), -math.sin(slope)),
         (-outward * math.sin(slope), -math.cos(slope)),
     )
@@ -110,7 +110,9 @@ def draw_section(
         _cant_mark(frame, cant_mm, spacing_mm, outward, measures),
     ]
     parts += [_forces(frame, item, i, outward) for i, item in enumerate(classes)]
-    parts.append(_scale())
+    parts += [_foot(frame, item, i, measures) for i, item in enumerate(classes)]
+    height = HEIGHT + ROW * len(classes) + 34.0
+    parts.append(_scale(height))
     described = (
         f"Section with cant {measures.with_unit('cant', cant_mm)} and the forces on {len(classes)} classes"
     )
@@ -119,9 +121,9 @@ def draw_section(
         *parts,
         xmlns="http://www.w3.org/2000/svg",
         class_="section",
-        viewBox=f"0 0 {svg.number(WIDTH)} {svg.number(HEIGHT)}",
+        viewBox=f"0 0 {svg.number(WIDTH)} {svg.number(height)}",
         width=WIDTH,
-        height=HEIGHT,
+        height=height,
         role="img",
         aria_label=described,
     )
@@ -191,10 +193,23 @@ def _forces(frame: _Frame, item: Acting, order: int, outward: float) -> Markup:
         svg.line(start, (start[0] + pushed, start[1]), f"force {kind}"),
         _arrow(start, end, f"force result {kind}"),
         svg.line(end, frame.at(item.offset_mm, 0), f"reach {kind}"),
-        svg.marker(order, frame.at(item.offset_mm, 0), 4.5, kind),
         svg.element("circle", cx=start[0], cy=start[1], r=3.0, class_="gravity"),
     ]
     return svg.group(svg.element("title", item.name), *parts)
+
+
+def _foot(frame: _Frame, item: Acting, order: int, measures: Measures) -> Markup:
+    """Drop the foot of a resultant into a row of its own, with its distance from the middle in words."""
+    x, y = frame.at(item.offset_mm, 0)
+    row, kind = HEIGHT + ROW * order, f"class-{order % 6}"
+    side = "outwards" if item.offset_mm >= 0 else "inwards"
+    text = f"{item.name}: {measures.with_unit('cant', abs(item.offset_mm))} {side}"
+    beside, anchor = (x + 12, "start") if x < WIDTH / 2 else (x - 12, "end")
+    return svg.group(
+        svg.line((x, y), (x, row), f"reach {kind}"),
+        svg.marker(order, (x, row), 4.5, kind),
+        svg.words(beside, row + 4, text, "value", anchor),
+    )
 
 
 def _arrow(start: svg.Point, end: svg.Point, class_: str) -> Markup:
@@ -209,8 +224,8 @@ def _arrow(start: svg.Point, end: svg.Point, class_: str) -> Markup:
     return svg.group(svg.line(start, end, class_), svg.polyline(barbs, class_))
 
 
-def _scale() -> Markup:
-    left, y = 14.0, HEIGHT - 12.0
+def _scale(height: float) -> Markup:
+    left, y = 14.0, height - 8.0
     return svg.group(
         svg.line((left, y), (left + WEIGHT_PIXELS, y), "measure"),
         svg.words(left, y - 6, "weight of the train", "value"),
