@@ -181,9 +181,8 @@ class _Annotation:
                 message = f"has two additions for sheet '{addition.sheet}'; give one"
                 raise FileError(message, self.package.place)
             if name not in entries:
-                message = (
-                    f"has no sheet '{addition.sheet}' to annotate; it has {', '.join(entries) or 'none'}"
-                )
+                there = ", ".join(one.name for one in entries.values()) or "none"
+                message = f"has no sheet '{addition.sheet}' to annotate; it has {there}"
                 raise FileError(message, self.package.place)
             by_name[name] = addition
         touched = self.old_book.touched_sheets()
@@ -244,7 +243,9 @@ class _Annotation:
             if new != self.styles.data:
                 self.edit.replace(self.styles_part, new)
             return
-        part = self.edit.free_part("xl/styles", ".xml")
+        part = "xl/styles.xml"
+        if self.edit.has(part):
+            part = self.edit.free_part("xl/styles", ".xml")
         self.edit.add(part, new, _STYLES_TYPE)
         self.edit.relate(self.old_book.part, f"{OFFICE_RELATIONS}/styles", part)
 

@@ -97,8 +97,10 @@ class CellReader:
         Formats by cell.
     hidden_rows : set of int
         From 1.
-    last_value, last_cell : int
-        Last column from 0 with a value, and with a cell that is at least formatted; -1 where there is none.
+    last_value : int
+        Last column from 0 with a value; -1 where there is none.
+    row_ends : set of int
+        Columns from 0 that are the last of some row with a cell that is at least formatted.
     """
 
     def __init__(self, sheet: SheetXml, book: BookValues, ignored: Sequence[CellRange] = ()) -> None:
@@ -109,7 +111,8 @@ class CellReader:
         self.formulas = CellSet()
         self.number_formats = NumberFormats(book.formats)
         self.hidden_rows: set[int] = set()
-        self.last_value = self.last_cell = -1
+        self.last_value = -1
+        self.row_ends: set[int] = set()
         self.ignored = ignored
         self._find = _cells(sheet.prefix).findall
         self._patterns = _parts(sheet.prefix)
@@ -133,7 +136,7 @@ class CellReader:
         while cells and cells[-1] is None and not styles[-1]:
             cells.pop()
             styles.pop()
-        self.last_cell = max(self.last_cell, len(cells) - 1)
+        self.row_ends.add(len(cells) - 1)
         self.number_formats.add_row(span.number, styles)
         while cells and cells[-1] is None:
             cells.pop()

@@ -140,5 +140,5 @@ def _ole_kind(data: bytes, file: str) -> Kind:
     if has("PowerPoint Document"):
         _not_a_table("a presentation (.ppt)", file)
     if not has("Workbook") and not has("Book"):
-        _not_a_table("a compound document without a workbook in it", file)
+        _not_a_table("a compound document with no workbook in it, or a damaged one", file)
     return Kind.XLS

@@ -52,7 +52,7 @@ class SheetRead:
     def next_column(self) -> int:
         """Column from 0 for the first added one: right of the last used, with a gap beside a table."""
         used = max([self.cells.last_value, *(one.last_column for one in self.tables)])
-        near = [self.cells.last_cell, *(one.last_column for one in self.merged)]
+        near = [*self.cells.row_ends, *(one.last_column for one in self.merged)]
         used = max([used, *(one for one in near if one <= used + FAR_COLUMNS)])
         return used + 2 if any(one.last_column == used for one in self.tables) else used + 1
 

@@ -76,6 +76,8 @@ def _sheet(one: dict[str, Any], codes: list[str], dates: set[int], epoch_1904: b
         _row(values, styles, dates, epoch_1904)
         for values, styles in zip(one["rows"], one["styles"], strict=True)
     ]
+    while rows and not rows[-1]:
+        rows.pop()
     formats = {
         (row, column): codes[style]
         for row, styles in enumerate(one["styles"], start=1)
