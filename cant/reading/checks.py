@@ -137,7 +137,7 @@ def _fixed(draft: Draft) -> None:
 
 
 def check_duplicates(drafts: list[Draft]) -> None:
-    """Find curves of the same line, track and name: none of them can be told from the other."""
+    """Find curves of the same line, track and name: none can be told from the other, but for hidden rows."""
     seen: dict[tuple[str, str, str], tuple[Draft, int]] = {}
     for draft in drafts:
         for index, name in enumerate(draft.curve):
@@ -148,27 +148,25 @@ def check_duplicates(drafts: list[Draft]) -> None:
                 seen[key] = (draft, index)
                 continue
             first, at = seen[key]
-            where = (
-                f"sheet '{first.sheet}', row {first.rows[at]}"
-                if first.sheet != draft.sheet
-                else f"row {first.rows[at]}"
-            )
-            draft.fail(
-                index,
-                draft.column("Curve"),
-                f"curve '{name}' is there already ({where}); a curve is known by line, track and name",
-            )
-            if at not in first.problems:
-                here = (
-                    f"sheet '{draft.sheet}', row {draft.rows[index]}"
-                    if first.sheet != draft.sheet
-                    else f"row {draft.rows[index]}"
-                )
-                first.fail(
-                    at,
-                    first.column("Curve"),
-                    f"curve '{name}' is there again ({here}); a curve is known by line, track and name",
-                )
+            hidden, first_hidden = _is_hidden(draft, index), _is_hidden(first, at)
+            if not first_hidden or hidden:
+                _twice(draft, index, first, at, "already", hidden and not first_hidden)
+            if not hidden or first_hidden:
+                _twice(first, at, draft, index, "again", first_hidden and not hidden)
+            if first_hidden and not hidden:
+                seen[key] = (draft, index)
+
+
+def _is_hidden(draft: Draft, index: int) -> bool:
+    return int(draft.rows[index]) in draft.block.sheet.hidden_rows
+
+
+def _twice(draft: Draft, index: int, other: Draft, at: int, word: str, hidden: bool) -> None:
+    where = f"row {other.rows[at]}" if other.sheet == draft.sheet else f"sheet '{other.sheet}', row {other.rows[at]}"
+    why = "this row is hidden, that one is not" if hidden else "a curve is known by line, track and name"
+    text = f"curve '{draft.curve[index]}' is there {word} ({where}); {why}"
+    if not any(p.text == text for p in draft.problems.get(index, ())) and (word == "already" or index not in draft.problems):
+        draft.fail(index, draft.column("Curve"), text)
 
 
 def check_speeds(drafts: list[Draft], traffic: Traffic | None) -> None:

@@ -56,6 +56,7 @@ def read_block(block: Block, context: Context) -> Draft:
     elements = is_element_list(columns)
     sifted = sift(block, columns, decimal, elements)
     context.notes += sifted.notes(rows, block.sheet.name, elements)
+    _note_hidden(block, [int(rows[i]) for i in sifted.curves], context)
     tracks = _tracks_by_row(sifted.sections, len(rows))
     names = {c.index: _filled_down(c) for c in columns if c.meaning in ("Line", "Track")}
     keep = sifted.curves
@@ -95,6 +96,13 @@ def _ask_meaning(draft: Draft, doubt: Doubt) -> None:
         choices,
         where,
     )
+
+
+def _note_hidden(block: Block, rows: list[int], context: Context) -> None:
+    hidden = [row for row in rows if row in block.sheet.hidden_rows] if block.sheet.hidden_rows else []
+    if hidden:
+        listed = ", ".join(map(str, hidden[:12])) + (f" and {len(hidden) - 12} more" if len(hidden) > 12 else "")
+        context.notes.append(f"sheet '{block.sheet.name}', rows {listed}: hidden, read like the others")
 
 
 def _filled_down(item: Column) -> list[Value]:

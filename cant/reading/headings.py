@@ -182,6 +182,11 @@ def matches(words: str, table: str = "curves") -> tuple[Match, ...]:
     found: dict[str, Match] = {}
     for name in weak_headings(table).get(words, ()):
         found[name] = Match(name, 0.5)
+    without_place = " ".join(token for token in words.split() if token not in _PLACE)
+    if without_place != words:
+        for name in weak_headings(table).get(without_place, ()):
+            if name in ("Start", "End"):
+                found.setdefault(name, Match(name, 0.5))
     tokens = [token for token in words.split() if token not in _STOP]
     weight = max(1, sum(token not in _GENERIC for token in tokens))
     for phrase, size in _phrases(tokens):
@@ -198,6 +203,7 @@ def matches(words: str, table: str = "curves") -> tuple[Match, ...]:
 
 
 _STOP = frozenset("of the de da do des der du del della di la le el av on at in the a w od".split()) - {"a", "in", "od", "do"}
+_PLACE = frozenset("km m chainage station sta pk mp mileage kp progr prog staniceni ch pos position".split())
 _GENERIC = frozenset("curve curva courbe bogen kurve kurva luk oblouk curves".split())
 
 

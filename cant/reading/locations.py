@@ -16,6 +16,7 @@ from cant.reading.chainages import STATION, miles_chains, miles_yards, split_dec
 from cant.reading.draft import Draft
 from cant.reading.evidence import Evidence
 from cant.reading.headings import MILES_CHAINS, MILES_YARDS
+from cant.reading.legends import notation_said
 from cant.reading.meanings import Column
 from cant.reading.text import fold
 from cant.units import FOOT_M, ratio
@@ -112,10 +113,13 @@ def _plain_unit(draft: Draft, located: _Located, evidence: Evidence) -> str:
     )
     if not len(every):
         return KM
-    if first.notation in (MILES_CHAINS, MILES_YARDS):
-        first.unit_from = first.unit_from or "heading"
+    notation = first.notation if first.notation in (MILES_CHAINS, MILES_YARDS) else ""
+    if not notation and first.unit in ("", "mi"):
+        notation = notation_said(draft.block.title)
+    if notation:
+        first.unit_from = first.unit_from or ("heading" if first.notation else "legend")
         _spread(located, first)
-        return first.notation
+        return notation
     candidates = _candidates(draft, first, every, bare, evidence)
     if len(candidates) > 1:
         candidates = _by_length(draft, bare, candidates)
@@ -138,7 +142,7 @@ def _candidates(
     if named == "mi":
         open_ones = _mile_notations(first, every, evidence)
     elif named:
-        open_ones = [named, METRES] if named == KM and first.unit_from != "answer" else [named]
+        open_ones = [named, METRES] if named == KM and first.unit_from not in ("answer", "legend") else [named]
     elif _is_canonical(first):
         open_ones = [KM, METRES]
     elif evidence.counts_miles and not _says_km(draft):

@@ -20,8 +20,8 @@ from cant.reading.trains import known_train, names_only_trains, says_speed, trai
 from cant.reading.words import lexicon
 from cant.units import find_unit, unit
 
-PROPOSED = frozenset({"proposed", "new", "planned", "future", "neu", "geplant", "projet", "propuesto", "nuevo", "proposto", "nova", "novo", "nowe", "nowa", "ny", "nytt", "nye", "proposal", "recommended"})  # fmt: skip
-EXISTING = frozenset({"existing", "exist", "today", "present", "current", "ist", "vorhanden", "existant", "actuel", "existente", "actual", "esistente", "istniejaca", "stavajici", "eksisterende", "befintlig", "as built"})  # fmt: skip
+PROPOSED = frozenset({"proposed", "new", "planned", "future", "neu", "gepl", "geplant", "projet", "propuesto", "nuevo", "proposto", "nova", "novo", "nowe", "nowa", "ny", "nytt", "nye", "proposal", "recommended"})  # fmt: skip
+EXISTING = frozenset({"existing", "exist", "today", "present", "current", "ist", "vorh", "vorhanden", "existant", "actuel", "existente", "actual", "esistente", "istniejaca", "stavajici", "eksisterende", "befintlig", "as built"})  # fmt: skip
 
 
 @dataclass

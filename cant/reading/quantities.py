@@ -10,6 +10,7 @@ from cant.reading.columns import column
 from cant.reading.draft import NUMERIC, Draft
 from cant.reading.evidence import Evidence, gather
 from cant.reading.hands import settle_hands
+from cant.reading.legends import apply_legends
 from cant.reading.locations import settle_locations
 from cant.reading.meanings import Column
 from cant.reading.radii import settle_radius
@@ -34,6 +35,7 @@ def fill(draft: Draft) -> Evidence:
     _fixed(draft)
     if draft.canonical:
         _usual_units(draft)
+    apply_legends(draft.columns, draft.block.title)
     share_units(draft.columns)
     evidence = gather(draft.columns, draft.block.title)
     settle_speed_unit(draft, evidence)
