@@ -165,6 +165,7 @@ def plan_arrays(
     settings: Settings,
     progress: Progress | None = None,
     turnouts: Sequence[Turnout] = (),
+    placed: dict[int, list[int]] | None = None,
 ) -> Outcome:
     """Plan a line.
 
@@ -178,6 +179,8 @@ def plan_arrays(
         Told how far the work has come.
     turnouts : sequence of Turnout
         Those that lie in curves: their branches bound the cant.
+    placed : dict of int to list of int, optional
+        Which of them lie in each curve, where that is already known.
 
     Returns
     -------
@@ -196,7 +199,9 @@ def plan_arrays(
     target = target_of(settings.method, settings)
     tell(0.0, "looking at neighbours")
     neighbourhood = find_neighbours(curves)
-    placed, misplaced = place_turnouts(turnouts, curves)
+    misplaced: list[Finding] = []
+    if placed is None:
+        placed, misplaced = place_turnouts(turnouts, curves)
     line = make_line(curves, traffic, limits, settings, neighbourhood, turnouts, placed)
     usable = ~(curves.rejected | neighbourhood.contradictory)
     line.runs &= usable[:, None]

@@ -1,0 +1,177 @@
+"""Many small changes of a line planned at once: each on a copy of the few curves that it can touch.
+
+A change on a curve reaches no further than its chain of shared transitions, and looks no further than the
+next curve on either side. So the part of the line around it is copied, changed, and moved along the chainage
+out of sight of all other copies; one run of the planner then answers for hundreds of changes.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from dataclasses import dataclass
+from functools import cached_property
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.explaining.decisions import Change, make_changes, open_exceptional
+from cant.model.plan import STATUSES
+from cant.planning.neighbours import chains_of
+from cant.planning.outcome import Outcome, plan_arrays
+
+IntArray = npt.NDArray[np.int64]
+
+APART_KM = 20.0
+"""Copies lie this far apart: further than any transition reaches."""
+_RANK = {status: rank for rank, status in enumerate((*STATUSES, ""))}
+
+
+@dataclass(frozen=True)
+class Trial:
+    """A change to be planned.
+
+    Attributes
+    ----------
+    curve : int
+        The curve that it is for.
+    changes : sequence of (int, Change)
+        Each with the curve that it changes, all of one chain.
+    exceptional : bool or None
+        Whether exceptional values may be used on the whole chain; None: as the plan has it.
+    """
+
+    curve: int
+    changes: Sequence[tuple[int, Change]] = ()
+    exceptional: bool | None = None
+
+
+@dataclass(frozen=True)
+class Answer:
+    """Where a trial stands in the outcome of all of them.
+
+    Attributes
+    ----------
+    outcome : Outcome
+        Of all the copies together.
+    at : dict of int to int
+        Position in it of each curve of the chain.
+    """
+
+    outcome: Outcome
+    at: dict[int, int]
+
+    def status(self, curve: int) -> str:
+        """Give the status of a curve of the chain."""
+        return self.outcome.status[self.at[curve]]
+
+
+class Surroundings:
+    """Which curves belong together.
+
+    Parameters
+    ----------
+    outcome : Outcome
+        The plan.
+    """
+
+    def __init__(self, outcome: Outcome) -> None:
+        self._outcome = outcome
+
+    @cached_property
+    def _chain_of(self) -> dict[int, IntArray]:
+        chains = chains_of(len(self._outcome.curves), self._outcome.pairs)
+        return {int(i): chain for chain in chains for i in chain}
+
+    @cached_property
+    def _beside(self) -> tuple[dict[int, int], dict[int, int]]:
+        order, curves = self._outcome.neighbourhood.order, self._outcome.curves
+        before, after = {}, {}
+        for a, b in zip(order[:-1].tolist(), order[1:].tolist(), strict=True):
+            if curves.line[a] == curves.line[b] and curves.track[a] == curves.track[b]:
+                after[a], before[b] = b, a
+        return before, after
+
+    def chain(self, curve: int) -> list[int]:
+        """Give the curves that are planned together with one, itself among them."""
+        found = self._chain_of.get(curve)
+        return [curve] if found is None else [int(i) for i in found]
+
+    def around(self, curve: int) -> list[int]:
+        """Give the chain of a curve and what lies next to it on either side."""
+        chain = self.chain(curve)
+        before, after = self._beside
+        return [
+            *([before[chain[0]]] if chain[0] in before else []),
+            *chain,
+            *([after[chain[-1]]] if chain[-1] in after else []),
+        ]
+
+
+def try_out(outcome: Outcome, surroundings: Surroundings, trials: Sequence[Trial]) -> list[Answer]:
+    """Plan trials, each as if it were the only change of the line.
+
+    Parameters
+    ----------
+    outcome : Outcome
+        The plan as it is.
+    surroundings : Surroundings
+        Of the same plan.
+    trials : sequence of Trial
+
+    Returns
+    -------
+    list of Answer
+        One for each trial.
+    """
+    if not trials:
+        return []
+    parts = [surroundings.around(trial.curve) for trial in trials]
+    begins = np.cumsum([0, *(len(part) for part in parts[:-1])])
+    every = np.concatenate([np.array(part, dtype=np.int64) for part in parts])
+    curves = outcome.curves.take(every)
+    settings = open_exceptional(curves, outcome.settings)
+    answers = []
+    offset = 0.0
+    for trial, part, begin in zip(trials, parts, begins.tolist(), strict=True):
+        own = slice(begin, begin + len(part))
+        ends = np.stack([curves.start_km[own], curves.end_km[own]])
+        if not np.isnan(ends).all():
+            low, high = np.nanmin(ends), np.nanmax(ends)
+            curves.start_km[own] += offset - low
+            curves.end_km[own] += offset - low
+            offset += high - low + APART_KM
+        at = {curve: begin + j for j, curve in enumerate(part)}
+        chain = {curve: at[curve] for curve in surroundings.chain(trial.curve)}
+        if trial.exceptional is not None and curves.exceptional_allowed is not None:
+            curves.exceptional_allowed[list(chain.values())] = trial.exceptional
+        rows = {(curves.sheet[p], int(curves.row[p])): p for p in at.values()}
+        make_changes(curves, [(at[curve], change) for curve, change in trial.changes], rows)
+        answers.append(chain)
+    planned = plan_arrays(
+        curves,
+        outcome.traffic,
+        outcome.limits,
+        settings,
+        turnouts=outcome.turnouts,
+        placed=_placed(outcome, every),
+    )
+    return [Answer(planned, at) for at in answers]
+
+
+def _placed(outcome: Outcome, every: IntArray) -> dict[int, list[int]]:
+    """Give the turnouts of the copies: those of the curves that they are copies of."""
+    branches = outcome.line.branches
+    if branches is None:
+        return {}
+    return {
+        position: [int(t) for t in branches.number[curve] if t >= 0]
+        for position, curve in enumerate(every)
+        if branches.there[curve].any()
+    }
+
+
+def no_worse(outcome: Outcome, answer: Answer, curve: int) -> bool:
+    """Tell whether no other curve of the chain has a graver status than in the plan."""
+    return all(
+        _RANK[answer.status(other)] >= _RANK[outcome.status[other]] for other in answer.at if other != curve
+    )

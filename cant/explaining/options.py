@@ -1,0 +1,157 @@
+"""What would help where nothing fits: two to four options a curve, each planned before it is offered.
+
+Ranked by the share by which the thing changed departs from what is there: speed, limit, length or radius.
+Every option holds its decision as data; planned as it stands, it does what it says.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.explaining.candidates import Candidate, Proposals, best_of_each_kind
+from cant.explaining.decisions import Decision
+from cant.explaining.local import Answer, Surroundings, Trial, no_worse, try_out
+from cant.explaining.option_words import option_text
+from cant.explaining.wording import Words
+from cant.planning import Plan
+from cant.units import FOOT_M
+
+IntArray = npt.NDArray[np.int64]
+
+HELPED = ("restrict", "not compliant", "exceptional")
+"""Statuses for which options are looked for."""
+MOST = 4
+AT_ONCE = 256
+_METRIC_STEPS_M = (5.0, 5.0)
+_US_STEPS_M = (10 * FOOT_M, 50 * FOOT_M)
+
+
+class Options:
+    """The options of a plan, made when asked for and kept.
+
+    Parameters
+    ----------
+    plan : Plan
+    words : Words
+    """
+
+    def __init__(self, plan: Plan, words: Words) -> None:
+        self._plan, self._words = plan, words
+        self._surroundings = Surroundings(plan.outcome)
+        self._found: dict[int, list[dict[str, Any]]] = {}
+        self._steps = _US_STEPS_M if words.us else _METRIC_STEPS_M
+
+    def of(self, index: int) -> list[dict[str, Any]]:
+        """Give the options of one curve; empty where all fits."""
+        if self._plan.status[index] not in HELPED:
+            return []
+        if index not in self._found:
+            self.prepare([index])
+        return self._found[index]
+
+    def prepare(self, indices: Sequence[int]) -> None:
+        """Look for the options of many curves together, which costs far less than one by one."""
+        status = self._plan.status
+        needed = [i for i in indices if status[i] in HELPED and i not in self._found]
+        for begin in range(0, len(needed), AT_ONCE):
+            part = needed[begin : begin + AT_ONCE]
+            self._found |= self._look(part)
+
+    def _look(self, curves: list[int]) -> dict[int, list[dict[str, Any]]]:
+        outcome = self._plan.outcome
+        proposals = Proposals(outcome, np.array(curves, dtype=np.int64), *self._steps)
+        candidates = self._candidates(curves, proposals)
+        answers = try_out(outcome, self._surroundings, [Trial(one.curve, one.changes) for one in candidates])
+        good = [
+            (one, answer) for one, answer in zip(candidates, answers, strict=True) if self._fits(one, answer)
+        ]
+        records = self._records(good)
+        offered: dict[int, list[Candidate]] = {curve: [] for curve in curves}
+        results = {}
+        for (one, _), record in zip(good, records, strict=True):
+            ranked = _ranked(one, record)
+            offered[one.curve].append(ranked)
+            results[id(ranked)] = record
+        return {
+            curve: [self._option(one, results[id(one)]) for one in best_of_each_kind(found)[:MOST]]
+            for curve, found in offered.items()
+        }
+
+    def _candidates(self, curves: list[int], proposals: Proposals) -> list[Candidate]:
+        outcome, status = self._plan.outcome, self._plan.status
+        allowed = outcome.settings.allows_exceptional
+        probed = [curve for curve in curves if (status[curve] == "exceptional") == allowed]
+        # One probe for all curves of a chain.
+        chains = {
+            curve: (self._surroundings.chain(curve)[0], status[curve] == "exceptional") for curve in probed
+        }
+        probes = {key: Trial(curve, exceptional=not key[1]) for curve, key in chains.items()}
+        answers = try_out(outcome, self._surroundings, list(probes.values()))
+        by_chain = dict(zip(probes, answers, strict=True))
+        known = {curve: by_chain[key] for curve, key in chains.items()}
+        found: list[Candidate | None] = []
+        for j, curve in enumerate(curves):
+            if status[curve] == "restrict":
+                found.append(proposals.slower(curve, outcome, {curve: curve}, "lower speed"))
+            if curve in known:
+                answer = known[curve]
+                if status[curve] == "exceptional":
+                    found.append(proposals.slower(curve, answer.outcome, answer.at, "fewer approvals"))
+                else:
+                    found.append(proposals.approved(curve, answer))
+            found += proposals.of(j)
+        return [one for one in found if one is not None]
+
+    def _fits(self, candidate: Candidate, answer: Answer) -> bool:
+        """Tell whether the curve has no trouble left, and its chain no more than before."""
+        curve, was = candidate.curve, self._plan.status[candidate.curve]
+        good = {"kept", "change"}
+        if was != "exceptional" and (candidate.exceptional or self._plan.settings.allows_exceptional):
+            good.add("exceptional")
+        return answer.status(curve) in good and no_worse(self._plan.outcome, answer, curve)
+
+    def _records(self, good: list[tuple[Candidate, Answer]]) -> list[dict[str, Any]]:
+        if not good:
+            return []
+        planned = Plan(good[0][1].outcome)
+        return list(planned.records([answer.at[one.curve] for one, answer in good]))
+
+    def _option(self, candidate: Candidate, record: dict[str, Any]) -> dict[str, Any]:
+        decision = Decision(changes=tuple(change for _, change in candidate.changes))
+        facts = candidate.facts
+        return {
+            "kind": candidate.kind,
+            "text": option_text(candidate, record, self._words),
+            "departure": round(candidate.departure, 6),
+            "seconds_lost_a_day": facts.get("seconds"),
+            "cant_mm": record["recommended_cant_mm"],
+            "status": record["status"],
+            "approvals": [
+                {k: p.get(k) for k in ("quantity", "class", "value", "limit", "exceptional_limit", "clause")}
+                for p in record["limits_passed"]
+            ],
+            "facts": facts,
+            "decision": decision.as_json(),
+        }
+
+
+def _ranked(candidate: Candidate, record: dict[str, Any]) -> Candidate:
+    """Give a candidate with its departure in the light of its plan: an approval departs by its overrun."""
+    if not candidate.exceptional:
+        return candidate
+    over = [
+        p["value"] / p["limit"] - 1.0 if p["limit"] > 0 else 1.0
+        for p in record["limits_passed"]
+        if p["value"] > 0
+    ]
+    return Candidate(
+        candidate.kind,
+        candidate.curve,
+        candidate.changes,
+        max([candidate.departure, *over]),
+        candidate.facts,
+    )
