@@ -13,7 +13,9 @@ from cant.limit_sets import headers, names
 from cant.model.curves import SHAPES
 from cant.model.limits import QUANTITIES, LimitSet
 from cant.model.plan import STATUSES
+from cant.model.settings import METHODS
 from cant.reading.columns import TABLES, columns_of
+from cant.reading.words import lexicon
 
 ROOT = Path(__file__).resolve().parents[1]
 README = (ROOT / "README.md").read_text(encoding="utf-8")
@@ -58,16 +60,13 @@ def test_every_quantity_is_documented_with_its_unit(quantity: str) -> None:
     assert QUANTITIES[quantity].canonical in row
 
 
-@pytest.mark.parametrize(
-    "setting",
-    ["Rail spacing", "Equilibrium constant", "Method", "Tiers", "Keep within", "Maintenance allowance"],
-)
+@pytest.mark.parametrize("setting", sorted(set(lexicon("settings").values())))
 def test_every_setting_is_documented(setting: str) -> None:
     assert f"| `{setting}` |" in README
 
 
-def test_statuses_and_shapes_are_documented() -> None:
-    for word in (*STATUSES, *SHAPES):
+def test_statuses_shapes_and_methods_are_documented() -> None:
+    for word in (*STATUSES, *SHAPES, *METHODS):
         assert f"`{word}`" in README
 
 

@@ -1,4 +1,4 @@
-"""The user's workbook with the plan in it: his cells stay, ours stand beside, a second run equals the first."""
+"""The user's workbook with the plan in it: his cells stay, a second run equals the first."""
 
 from __future__ import annotations
 
