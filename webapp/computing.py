@@ -44,6 +44,14 @@ class Latest(Generic[Kept]):
         self._making: dict[str, threading.Lock] = {}
         self._lock = threading.Lock()
 
+    def put(self, key: str, value: Kept) -> None:
+        """Keep a value that is known already."""
+        with self._lock:
+            self._kept[key] = value
+            self._kept.move_to_end(key)
+            while len(self._kept) > self._size:
+                self._kept.popitem(last=False)
+
     def get(self, key: str, make: Callable[[], Kept]) -> Kept:
         """Give the value of a key, made by ``make`` where it is not kept; its errors pass through."""
         with self._lock:
@@ -57,10 +65,7 @@ class Latest(Generic[Kept]):
                     return self._kept[key]
             try:
                 value = make()
-                with self._lock:
-                    self._kept[key] = value
-                    while len(self._kept) > self._size:
-                        self._kept.popitem(last=False)
+                self.put(key, value)
             finally:
                 with self._lock:
                     self._making.pop(key, None)
@@ -134,8 +139,11 @@ class Computations:
         CantError
             The file, or an answer, cannot be used.
         """
-        key = f"{plan.file_digest}/{plan.file_name}/{plan.decided.digest(*READING_KINDS)}"
-        return self._readings.get(key, lambda: _read(plan, data()))
+        return self._readings.get(_key(plan, READING_KINDS), lambda: _read(plan, data()))
+
+    def keep_reading(self, plan: StoredPlan, reading: Reading) -> None:
+        """Keep a reading that was made before the plan was stored."""
+        self._readings.put(_key(plan, READING_KINDS), reading)
 
     def planned(self, plan: StoredPlan, data: Bytes) -> Computed:
         """Give the plan that follows from a file and its decisions.
@@ -145,8 +153,7 @@ class Computations:
         CantError
             There is no traffic, or there are no limits, or a table cannot be used.
         """
-        key = f"{plan.file_digest}/{plan.file_name}/{plan.decided.digest(*PLAN_KINDS)}"
-        return self._plans.get(key, lambda: self._plan(plan, data))
+        return self._plans.get(_key(plan, PLAN_KINDS), lambda: self._plan(plan, data))
 
     def _plan(self, plan: StoredPlan, data: Bytes) -> Computed:
         decided = plan.decided
@@ -157,6 +164,10 @@ class Computations:
             settings=decided.settings,
         )
         return Computed(planned)
+
+
+def _key(plan: StoredPlan, kinds: tuple[str, ...]) -> str:
+    return f"{plan.file_digest}/{plan.file_name}/{plan.decided.digest(*kinds)}"
 
 
 def _read(plan: StoredPlan, data: bytes) -> Reading:

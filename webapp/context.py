@@ -6,7 +6,8 @@ from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
 from typing import cast
 
-from flask import current_app, g, request, session
+from flask import current_app, g, redirect, request, session, url_for
+from werkzeug.wrappers import Response
 
 from cant.model.reading import Reading
 from webapp.computing import Computations, Computed
@@ -87,3 +88,10 @@ def computed_of(plan: StoredPlan) -> Computed:
     computed = running().computations.planned(plan, lambda: file_of(plan))
     g.plan_units = computed.planned.plan.settings.units
     return computed
+
+
+def unconfirmed(plan: StoredPlan) -> Response | None:
+    """Lead back to the list where the cants of a plan have not been asked for, None where they have."""
+    if plan.decided.confirmed:
+        return None
+    return redirect(url_for("reading.show", address=plan.address))

@@ -1,4 +1,4 @@
-"""The service as a process: starts with nothing configured, says where it is, forgets nothing at a restart."""
+"""The service as a process: nothing need be configured, it says where it is, a restart forgets nothing."""
 
 from __future__ import annotations
 

@@ -6,7 +6,7 @@ from flask import Blueprint, render_template
 from flask.typing import ResponseReturnValue
 
 from webapp import curve_view, line_view
-from webapp.context import computed_of, current_measures, stored
+from webapp.context import computed_of, current_measures, stored, unconfirmed
 from webapp.store import NotThereError
 
 pages = Blueprint("curves", __name__, url_prefix="/plans/<address>")
@@ -16,6 +16,8 @@ pages = Blueprint("curves", __name__, url_prefix="/plans/<address>")
 def show(address: str, number: int) -> ResponseReturnValue:
     """Show a curve by its number in the list, counted from 1."""
     plan = stored(address)
+    if away := unconfirmed(plan):
+        return away
     computed = computed_of(plan)
     index = number - 1
     if not computed.listing.has(index):

@@ -9,7 +9,7 @@ from flask import Blueprint, Response, render_template
 from flask.typing import ResponseReturnValue
 
 from cant import service
-from webapp.context import computed_of, current_measures, file_of, stored
+from webapp.context import computed_of, current_measures, file_of, stored, unconfirmed
 from webapp.tables import file_name
 
 pages = Blueprint("downloads", __name__, url_prefix="/plans/<address>")
@@ -37,6 +37,8 @@ def show(address: str) -> ResponseReturnValue:
 def workbook(address: str) -> ResponseReturnValue:
     """Give the user's workbook with the plan in it."""
     plan = stored(address)
+    if away := unconfirmed(plan):
+        return away
     computed = computed_of(plan)
     made = service.annotated_workbook(
         computed.shown_in(current_measures().system), file_of(plan), plan.file_name
@@ -52,6 +54,8 @@ def workbook(address: str) -> ResponseReturnValue:
 def document(address: str) -> ResponseReturnValue:
     """Give the JSON of the plan, metric always, in pieces as it is made."""
     plan = stored(address)
+    if away := unconfirmed(plan):
+        return away
     computed = computed_of(plan)
     answer = Response(computed.planned.json_chunks(), mimetype="application/json")
     answer.headers["Content-Disposition"] = attachment(f"{PurePath(plan.file_name).stem}-cants.json")

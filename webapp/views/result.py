@@ -4,25 +4,18 @@ from __future__ import annotations
 
 from typing import Any
 
-from flask import Blueprint, redirect, render_template, request, url_for
+from flask import Blueprint, render_template, request
 from flask.typing import ResponseReturnValue
 
 from cant.model.plan import Finding
 from webapp import line_view
 from webapp.computing import Computed
-from webapp.context import computed_of, current_measures, stored
+from webapp.context import computed_of, current_measures, stored, unconfirmed
 from webapp.listing import PAGE_SIZES, SORTS, Wanted
-from webapp.store import StoredPlan
 
 pages = Blueprint("result", __name__, url_prefix="/plans/<address>")
 PRINT_ROWS = 500
 FINDINGS_PAGE = 100
-
-
-def _unconfirmed(plan: StoredPlan) -> ResponseReturnValue | None:
-    if plan.decided.confirmed:
-        return None
-    return redirect(url_for("reading.show", address=plan.address))
 
 
 def _wanted() -> Wanted:
@@ -33,7 +26,7 @@ def _wanted() -> Wanted:
 def show(address: str) -> ResponseReturnValue:
     """Show the table of curves."""
     plan = stored(address)
-    if away := _unconfirmed(plan):
+    if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
     wanted = _wanted()
@@ -53,7 +46,7 @@ def show(address: str) -> ResponseReturnValue:
 def line(address: str) -> ResponseReturnValue:
     """Show the line drawn along the chainage, so many curves a page."""
     plan = stored(address)
-    if away := _unconfirmed(plan):
+    if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
     shown = line_view.page_of_line(computed, plan.address, request.args, current_measures())
@@ -64,7 +57,7 @@ def line(address: str) -> ResponseReturnValue:
 def findings(address: str) -> ResponseReturnValue:
     """Show everything a good engineer would notice."""
     plan = stored(address)
-    if away := _unconfirmed(plan):
+    if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
     found = computed.findings(current_measures().system)
@@ -100,7 +93,7 @@ def _counted(found: list[Finding], attribute: str) -> dict[str, int]:
 def print_page(address: str) -> ResponseReturnValue:
     """Show a schedule fit to print: what is asked for, with cautions, limits and room to sign."""
     plan = stored(address)
-    if away := _unconfirmed(plan):
+    if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
     wanted = _wanted()

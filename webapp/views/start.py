@@ -41,10 +41,11 @@ def upload() -> ResponseReturnValue:
     """Make a plan from a file; one that cannot be read is not kept."""
     try:
         data, name = needed("file", "a workbook or a csv file with a curve list")
-        service.read_curves(data, name)
+        reading = service.read_curves(data, name)
     except CantError as error:
         return _start_page(str(error), 422)
     plan = running().store.add(owner(), name, data)
+    running().computations.keep_reading(plan, reading)
     return redirect(url_for("reading.show", address=plan.address), 303)
 
 
