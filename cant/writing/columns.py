@@ -102,6 +102,11 @@ def findings_text(record: Record) -> str | None:
     return "\n".join(finding["text"] for finding in record["findings"]) or None
 
 
+def options_text(record: Record) -> str | None:
+    """Give what would help where nothing fits, one option a line."""
+    return "\n".join(str(option["text"]) for option in record["options"]) or None
+
+
 def of_class(name: str, key: str) -> Callable[[Record], Any]:
     """Give a getter of one figure of one class at the proposed cant; None where it does not run."""
 
@@ -135,6 +140,9 @@ DECISION: tuple[Column, ...] = (
 
 WORDS: tuple[Column, ...] = (
     Column("Reason", "", path("reason"), 90, "Why this cant, in one sentence."),
+    Column(
+        "What would help", "", options_text, 60, "Options where nothing fits, the smallest departure first."
+    ),
     Column("Findings", "", findings_text, 60, "What else an engineer should notice."),
 )
 

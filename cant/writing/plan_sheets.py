@@ -30,6 +30,11 @@ STATUS_WORDS: dict[str, str] = {
 }
 """What each status means, for people."""
 
+FULL_FIGURES = 5000
+"""Up to this many curves the sheets of figures show all; of longer lists, those that need a decision."""
+
+_DECIDED = ("kept", "change")
+
 
 class PlanSheets:
     """Our sheets in the making.
@@ -56,6 +61,7 @@ class PlanSheets:
         ]
         self._name = name
         self._book = book
+        self._all = len(planned.plan.assessed) <= FULL_FIGURES
         self._summary()
         self._plan = self._table("Plan", self._plan_columns)
         self._figures = self._table("Figures", [*PLACE, *FIGURES])
@@ -65,6 +71,13 @@ class PlanSheets:
     def add(self, record: Record) -> None:
         """Write what the sheets hold of one curve."""
         self._plan.row([column.cell(record, self._display) for column in self._plan_columns])
+        names = [record["line"], record["track"], record["curve"]]
+        self._write_findings(names, record["findings"])
+        if self._all or record["status"] not in _DECIDED:
+            self._add_figures(record)
+
+    def _add_figures(self, record: Record) -> None:
+        """Write a row for each class, proposed and today, and for each end."""
         place = [column.cell(record, self._display) for column in PLACE]
         ends = record["transitions"]
         for entry in record["classes"]:
@@ -74,8 +87,6 @@ class PlanSheets:
         for side, end in ends.items():
             shown = {**end, "side": side}
             self._ends.row([*place, *(column.cell(shown, self._display) for column in END)])
-        names = [record["line"], record["track"], record["curve"]]
-        self._write_findings(names, record["findings"])
 
     def finish(self) -> None:
         """Write the sheets that need no curves."""
@@ -120,6 +131,12 @@ class PlanSheets:
         sheet.line(
             "rejected", float(plan.curves.rejected.sum()), "rows that cannot be read: see 'Not assessed'"
         )
+        if not self._all:
+            text = (
+                f"The list has more than {FULL_FIGURES} curves: the sheets 'Figures' and 'Transitions' hold those "
+                "that need a decision; the JSON holds all."
+            )
+            sheet.paragraph(text, 3)
         sheet.line()
         sheet.line("Cautions", bold=True)
         for caution in cautions_of(plan.limits):

@@ -155,6 +155,7 @@ def _decisions(planned: PlannedLine) -> str:
             if word
         )
         lines.append(_wrapped(f"{name}: {status}. {planned.explanation.reason(index)}", "  "))
+        lines += [_wrapped(str(o["text"]), "    - ") for o in planned.explanation.options(index)]
     for row in planned.reading.rejected[:_SHOWN]:
         where = f"sheet '{row.sheet}', row {row.row}" if row.sheet else f"row {row.row}"
         lines.append(_wrapped(f"{where}: rejected. {row.problem}", "  "))

@@ -115,3 +115,16 @@ def test_sheets_print_on_pages_with_their_header(book: Workbook) -> None:
         assert sheet.print_title_rows == "$1:$1"
         assert sheet.page_setup.orientation == "landscape"
         assert sheet.freeze_panes in ("A2", "F2")
+
+
+def test_of_a_long_list_the_figures_show_what_needs_a_decision(
+    planned: PlannedLine, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    monkeypatch.setattr("cant.writing.plan_sheets.FULL_FIGURES", 3)
+    book = sheets_of(planned)
+    status = {record["curve"]: record["status"] for record in planned.records()}
+    shown = {row["Curve"] for row in rows_of(book, "Figures")}
+    assert shown == {name for name, word in status.items() if word not in ("kept", "change", "not assessed")}
+    assert len(rows_of(book, "Plan (2)")) == len(status)
+    cells = [str(row[0]) for row in book["Plan summary"].iter_rows(values_only=True)]
+    assert any("more than 3 curves" in cell for cell in cells)
