@@ -133,8 +133,8 @@ class PlanSheets:
         )
         if not self._all:
             text = (
-                f"The list has more than {FULL_FIGURES} curves: the sheets 'Figures' and 'Transitions' hold those "
-                "that need a decision; the JSON holds all."
+                f"The list has more than {FULL_FIGURES} curves: the sheets 'Figures' and 'Transitions' hold "
+                "those that need a decision; the JSON holds all."
             )
             sheet.paragraph(text, 3)
         sheet.line()
