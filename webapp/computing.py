@@ -85,6 +85,7 @@ class Computed:
         self.planned = planned
         self.listing = Listing(planned)
         self._shown: Latest[PlannedLine] = Latest(len(SYSTEMS))
+        self._findings: Latest[list[Finding]] = Latest(len(SYSTEMS))
 
     def shown_in(self, system: str) -> PlannedLine:
         """Give the same plan with its words in a system of units; its numbers are the same objects."""
@@ -107,6 +108,9 @@ class Computed:
 
     def findings(self, system: str) -> list[Finding]:
         """Give all findings, those of the whole plan first, then by curve in input order."""
+        return self._findings.get(system, lambda: self._gather(system))
+
+    def _gather(self, system: str) -> list[Finding]:
         explanation = self.shown_in(system).explanation
         of_curves = (f for i in self.planned.plan.assessed for f in explanation.findings(int(i)))
         return [*explanation.plan_findings, *of_curves]

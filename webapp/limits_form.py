@@ -10,9 +10,7 @@ from typing import get_args
 
 from pydantic import ValidationError
 
-from cant.limit_sets import as_table
 from cant.model.limits import QUANTITIES, LimitRow, LimitSet, Quantity
-from cant.model.settings import EXCEPTIONAL_TIER, METHODS, NORMAL_TIER, Settings
 from cant.units import UNITS
 from webapp.forms import Fields
 from webapp.measures import Measures
@@ -148,42 +146,3 @@ def _added(fields: Fields, number: int) -> LimitRow | None:
     except ValidationError as error:
         fields.problems[f"{name}normal"] = error.errors()[0]["msg"]
         return None
-
-
-def parse_settings(
-    given: Mapping[str, str], measures: Measures, before: Settings
-) -> tuple[Settings | None, dict[str, str]]:
-    """Give the settings of a form that was sent, and the problems by field."""
-    fields = Fields(given, measures)
-    tiers = (NORMAL_TIER, EXCEPTIONAL_TIER) if given.get("tiers") == "exceptional" else (NORMAL_TIER,)
-    values = {
-        "method": fields.choice("method", METHODS, before.method),
-        "tiers": tiers,
-        "keep_within_mm": fields.number("keep_within_mm", "cant", before=before.keep_within_mm) or 0.0,
-        "maintenance_allowance_mm": fields.number(
-            "maintenance_allowance_mm", "cant", before=before.maintenance_allowance_mm
-        ),
-        "rail_spacing_mm": fields.number("rail_spacing_mm", before=before.rail_spacing_mm, above=0.0),
-        "equilibrium_constant": fields.number(
-            "equilibrium_constant", before=before.equilibrium_constant, above=0.0
-        ),
-    }
-    return (None, fields.problems) if fields.problems else (before.model_copy(update=values), {})
-
-
-def shown_settings(settings: Settings, measures: Measures) -> dict[str, str]:
-    """Give the settings as fields show them."""
-    fields = Fields({}, measures)
-    return {
-        "method": settings.method,
-        "tiers": "exceptional" if settings.allows_exceptional else "normal",
-        "keep_within_mm": fields.shown(settings.keep_within_mm, "cant"),
-        "maintenance_allowance_mm": fields.shown(settings.maintenance_allowance_mm, "cant"),
-        "rail_spacing_mm": fields.shown(settings.rail_spacing_mm),
-        "equilibrium_constant": fields.shown(settings.equilibrium_constant),
-    }
-
-
-def table(limits: LimitSet) -> list[dict[str, object]]:
-    """Give the canonical table of a limit set, for pages that only show it."""
-    return [dict(row) for row in as_table(limits)]

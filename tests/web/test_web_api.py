@@ -19,7 +19,11 @@ from web_tools import CURVES, Browser
 from werkzeug.test import TestResponse
 
 from cant import limit_sets
+from cant.model.limits import LimitRow
+from cant.model.settings import Settings
+from cant.model.traffic import TrainClass
 from webapp.api import describe
+from webapp.api.models import LimitBody, SettingsBody, TrainBody
 from webapp.api.operations import OPERATIONS, Operation
 from webapp.app import create_app
 from webapp.config import Config
@@ -153,6 +157,17 @@ def test_bad_body_is_refused(program: Program, body: bytes, kind: str, code: int
     answer = program.call("PUT", f"{path}/traffic", data=body, content_type=kind)
     assert answer.status_code == code
     assert answer.json["error"]["message"]  # type: ignore[index]
+
+
+@pytest.mark.parametrize(
+    ("body", "model"), [(SettingsBody, Settings), (TrainBody, TrainClass), (LimitBody, LimitRow)]
+)
+def test_bodies_have_the_fields_and_defaults_of_the_models(body: Any, model: Any) -> None:
+    own = {name: field for name, field in model.model_fields.items() if name != "place"}
+    assert set(body.model_fields) == set(own)
+    for name, field in own.items():
+        if name != "tiers":
+            assert body.model_fields[name].get_default() == field.get_default(), name
 
 
 def test_limit_sets_are_listed_and_shown(program: Program) -> None:

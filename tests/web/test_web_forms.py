@@ -13,7 +13,7 @@ from cant import limit_sets
 from cant.model.limits import LimitRow, LimitSet
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic, TrainClass
-from webapp import limits_form, trains_form
+from webapp import limits_form, settings_form, trains_form
 from webapp.measures import measures
 
 METRIC, US = measures("metric"), measures("us")
@@ -158,16 +158,31 @@ def test_bad_limit_is_told_beside_its_field(form: dict[str, str], field: str, wo
 
 def test_settings_of_a_form() -> None:
     before = Settings(rail_spacing_mm=1500.0, keep_within_mm=10.0)
-    shown = limits_form.shown_settings(before, US)
-    same, problems = limits_form.parse_settings(shown, US, before)
+    shown = settings_form.shown(before, US)
+    same, problems = settings_form.parse(shown, US, before)
     assert problems == {}
     assert same == before
-    changed, _ = limits_form.parse_settings(
-        {**shown, "keep_within_mm": "0.5", "tiers": "exceptional"}, US, before
-    )
+    changed, _ = settings_form.parse({**shown, "keep_within_mm": "0.5", "tiers": "exceptional"}, US, before)
     assert changed is not None
     assert changed.keep_within_mm == pytest.approx(12.7)
     assert changed.allows_exceptional
-    refused, problems = limits_form.parse_settings({**shown, "rail_spacing_mm": "0"}, US, before)
+    refused, problems = settings_form.parse({**shown, "rail_spacing_mm": "0"}, US, before)
     assert refused is None
     assert "above 0" in problems["rail_spacing_mm"]
+
+
+def test_form_holds_every_number_of_the_settings() -> None:
+    """A setting that is added to the model must be added to the form."""
+    held = {item.key for item in settings_form.NUMBERS} | {"method", "tiers", "units"}
+    assert held == set(Settings.model_fields)
+
+
+def test_blank_setting_is_the_usual_value() -> None:
+    given = {**settings_form.shown(Settings(underbalance_mm=40.0), METRIC), "underbalance_mm": ""}
+    found, problems = settings_form.parse(given, METRIC, Settings(underbalance_mm=40.0))
+    assert problems == {}
+    assert found is not None
+    assert found.underbalance_mm == Settings().underbalance_mm
+    refused, problems = settings_form.parse({**given, "fraction_of_fastest": "1.5"}, METRIC, Settings())
+    assert refused is None
+    assert "fraction_of_fastest" in problems

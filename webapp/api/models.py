@@ -179,6 +179,9 @@ class SettingsBody(Taken):
     tiers: Literal["normal", "normal, exceptional"] = "normal"
     keep_within_mm: Amount = 0.0
     maintenance_allowance_mm: Amount | None = None
+    fraction_of_fastest: Annotated[float, Field(gt=0, le=1, allow_inf_nan=False)] = 0.65
+    underbalance_mm: Amount = 25.0
+    today_within_mm: Amount = 20.0
     units: Literal["metric", "us"] = "metric"
 
     def settings(self) -> Settings:

@@ -9,7 +9,7 @@ from cant import limit_sets, service
 from cant.errors import CantError, InputError
 from cant.model.limits import QUANTITIES, LimitSet
 from cant.model.settings import METHODS, Settings
-from webapp import limits_form
+from webapp import limits_form, settings_form
 from webapp.context import current_measures, file_of, reading_of, running, stored
 from webapp.deciding import check_reading
 from webapp.decisions import as_text, limits_text, settings_text
@@ -47,7 +47,8 @@ def _page(
         spare=limits_form.SPARE_ROWS,
         quantities=QUANTITIES,
         unit_symbols=limits_form.UNIT_SYMBOLS,
-        settings=limits_form.shown_settings(_settings(plan), shown_in),
+        settings=settings_form.shown(_settings(plan), shown_in),
+        numbers=settings_form.NUMBERS,
         methods=METHODS,
         sets=[limit_sets.load(name) for name in limit_sets.names()],
         kept=running().store.kept_limits(owner()),
@@ -160,7 +161,7 @@ def settings(address: str) -> ResponseReturnValue:
     """Take how cants are chosen: method, tiers, tolerances."""
     plan = stored(address)
     shown_in = measures(request.form.get("units", "metric"))
-    found, problems = limits_form.parse_settings(request.form, shown_in, _settings(plan))
+    found, problems = settings_form.parse(request.form, shown_in, _settings(plan))
     if found is None:
         sent = request.form.to_dict()
         return _page(plan, "Some fields cannot be used; each says why.", problems, sent, 422)
