@@ -162,10 +162,16 @@ def _is_hidden(draft: Draft, index: int) -> bool:
 
 
 def _twice(draft: Draft, index: int, other: Draft, at: int, word: str, hidden: bool) -> None:
-    where = f"row {other.rows[at]}" if other.sheet == draft.sheet else f"sheet '{other.sheet}', row {other.rows[at]}"
+    where = (
+        f"row {other.rows[at]}"
+        if other.sheet == draft.sheet
+        else f"sheet '{other.sheet}', row {other.rows[at]}"
+    )
     why = "this row is hidden, that one is not" if hidden else "a curve is known by line, track and name"
     text = f"curve '{draft.curve[index]}' is there {word} ({where}); {why}"
-    if not any(p.text == text for p in draft.problems.get(index, ())) and (word == "already" or index not in draft.problems):
+    if not any(p.text == text for p in draft.problems.get(index, ())) and (
+        word == "already" or index not in draft.problems
+    ):
         draft.fail(index, draft.column("Curve"), text)
 
 

@@ -35,7 +35,9 @@ def read_sheet(sheet: Sheet, context: Context) -> list[Draft]:
     blocks = find_blocks(sheet)
     for before, after in zip(blocks, blocks[1:], strict=False):
         if after.header_first > before.header_first:
-            rows = ", ".join(str(r) for r in range(before.last_row + 1, after.header_last + 1) if sheet.rows[r - 1])
+            rows = ", ".join(
+                str(r) for r in range(before.last_row + 1, after.header_last + 1) if sheet.rows[r - 1]
+            )
             context.notes.append(f"sheet '{sheet.name}', rows {rows}: title and headings of a further table")
     return [read_block(block, context) for block in blocks]
 
@@ -101,7 +103,9 @@ def _ask_meaning(draft: Draft, doubt: Doubt) -> None:
 def _note_hidden(block: Block, rows: list[int], context: Context) -> None:
     hidden = [row for row in rows if row in block.sheet.hidden_rows] if block.sheet.hidden_rows else []
     if hidden:
-        listed = ", ".join(map(str, hidden[:12])) + (f" and {len(hidden) - 12} more" if len(hidden) > 12 else "")
+        listed = ", ".join(map(str, hidden[:12])) + (
+            f" and {len(hidden) - 12} more" if len(hidden) > 12 else ""
+        )
         context.notes.append(f"sheet '{block.sheet.name}', rows {listed}: hidden, read like the others")
 
 

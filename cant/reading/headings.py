@@ -23,7 +23,7 @@ _NOTATIONS = (
     (re.compile(r"d(?:eg)?[ .:-]+m(?:in)?(?:[ .:-]+s(?:ec)?)?", re.IGNORECASE), DEGREES_MINUTES),
 )
 _CHORD = re.compile(
-    r"(?:(?:c|corda|chord|corde|cuerda|sehne|base)\s*[/=]?\s*)?(?<![\d.,])(\d{1,3}(?:[.,]\d+)?)\s*[- ]?(m|ft|feet)\b"
+    r"(?:(?:c|corda|chord|corde|cuerda|sehne|base)\s*[/=]?\s*)?(?<![\w.,])(\d{1,3}(?:[.,]\d+)?)\s*[- ]?(m|ft|feet)\b"
     r"(?:\s*(?:chord|sehne|corde|cuerda|corda|c(?=\W|$)))?",
     re.IGNORECASE,
 )
@@ -202,9 +202,52 @@ def matches(words: str, table: str = "curves") -> tuple[Match, ...]:
     return tuple(sorted(found.values(), key=lambda m: -m.score))
 
 
-_STOP = frozenset("of the de da do des der du del della di la le el av on at in the a w od".split()) - {"a", "in", "od", "do"}
-_PLACE = frozenset("km m chainage station sta pk mp mileage kp progr prog staniceni ch pos position".split())
-_GENERIC = frozenset("curve curva courbe bogen kurve kurva luk oblouk curves".split())
+_STOP = frozenset(
+    [
+        "of",
+        "the",
+        "de",
+        "da",
+        "do",
+        "des",
+        "der",
+        "du",
+        "del",
+        "della",
+        "di",
+        "la",
+        "le",
+        "el",
+        "av",
+        "on",
+        "at",
+        "in",
+        "the",
+        "a",
+        "w",
+        "od",
+    ]
+) - {"a", "in", "od", "do"}
+_PLACE = frozenset(
+    [
+        "km",
+        "m",
+        "chainage",
+        "station",
+        "sta",
+        "pk",
+        "mp",
+        "mileage",
+        "kp",
+        "progr",
+        "prog",
+        "staniceni",
+        "ch",
+        "pos",
+        "position",
+    ]
+)
+_GENERIC = frozenset(["curve", "curva", "courbe", "bogen", "kurve", "kurva", "luk", "oblouk", "curves"])
 
 
 def _phrases(tokens: list[str]) -> list[tuple[str, int]]:

@@ -153,7 +153,9 @@ def _legend(sheet: Sheet, end: int) -> list[str]:
     return [
         squeeze(" ".join(shown(c) for c in cells if c is not None))
         for cells in rows
-        if cells and is_text(next((c for c in cells if c is not None), None)) and not any(type(c) is float for c in cells)
+        if cells
+        and is_text(next((c for c in cells if c is not None), None))
+        and not any(type(c) is float for c in cells)
     ]
 
 

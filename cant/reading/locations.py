@@ -142,7 +142,9 @@ def _candidates(
     if named == "mi":
         open_ones = _mile_notations(first, every, evidence)
     elif named:
-        open_ones = [named, METRES] if named == KM and first.unit_from not in ("answer", "legend") else [named]
+        open_ones = (
+            [named, METRES] if named == KM and first.unit_from not in ("answer", "legend") else [named]
+        )
     elif _is_canonical(first):
         open_ones = [KM, METRES]
     elif evidence.counts_miles and not _says_km(draft):

@@ -101,7 +101,12 @@ def _hand_by_values(columns: list[Column]) -> None:
     known = lexicon("hands")
     for item in columns:
         texts = {fold(c) for c in item.cells[:2000] if isinstance(c, str) and not is_blank(c)}
-        if not item.meaning and len(texts) >= 2 and texts <= set(known) and len({known[t] for t in texts}) == 2:
+        if (
+            not item.meaning
+            and len(texts) >= 2
+            and texts <= set(known)
+            and len({known[t] for t in texts}) == 2
+        ):
             item.meaning, item.confidence, item.note = "Hand", "likely", "by its values"
             return
 
@@ -227,7 +232,11 @@ def _as_speed(result: Column, source: BlockColumn, best: Match | None) -> bool:
     if whole and whole[0].score == 1.0 and whole[0].meaning == "Speed":
         return _take_speed(result, source, "")
     in_speed_unit = bool(result.unit) and unit(result.unit).dimension == "speed"
-    if says_speed(words) or in_speed_unit or (names_only_trains(words) and (best is None or best.score < 0.6)):
+    if (
+        says_speed(words)
+        or in_speed_unit
+        or (names_only_trains(words) and (best is None or best.score < 0.6))
+    ):
         return _take_speed(result, source, train_words(words))
     return False
 

@@ -135,7 +135,10 @@ def _set_parents_apart(result: Sifted, columns: list[Column], sure: np.ndarray) 
     parents = {
         at
         for at, (index, text) in enumerate(zip(result.curves, texts, strict=True))
-        if not sure[index] and text and at + 1 < len(texts) and re.fullmatch(re.escape(text) + r"[\s./-]?[a-h1-9i]+", texts[at + 1])
+        if not sure[index]
+        and text
+        and at + 1 < len(texts)
+        and re.fullmatch(re.escape(text) + r"[\s./-]?[a-h1-9i]+", texts[at + 1])
     }
     result.parents = [result.curves[at] for at in sorted(parents)]
     result.curves = [index for at, index in enumerate(result.curves) if at not in parents]

@@ -82,13 +82,19 @@ def ranked_classes(words: str, traffic: Traffic) -> tuple[int, list[str]]:
     if not words:
         return 99, []
     categories = {row.name: row.category for row in traffic.rows}
-    category, kind, meant = lexicon("categories").get(words), lexicon("train_words").get(words), known_train(words)
+    category, kind, meant = (
+        lexicon("categories").get(words),
+        lexicon("train_words").get(words),
+        known_train(words),
+    )
     steps: tuple[Callable[[str], bool], ...] = (
         lambda name: fold(name) == words,
         lambda name: _abbreviates(words, fold(name)),
         lambda name: fold(categories[name]) == words,
         lambda name: kind is not None and kind in _kinds(name),
-        lambda name: category is not None and category in (categories[name], lexicon("categories").get(fold(name))),
+        lambda name: (
+            category is not None and category in (categories[name], lexicon("categories").get(fold(name)))
+        ),
         lambda name: meant != "" and meant in {categories[name], *_kinds(name)},
     )
     for rank, agrees in enumerate(steps):

@@ -6,10 +6,11 @@ import json
 from typing import Any
 
 import pytest
+from messy import sheet
+
 from cant.errors import FileError, InputError
 from cant.files.grid import Workbook
 from cant.reading import read_answers, read_workbook
-from messy import sheet
 
 LIST = sheet("""
 Curve | km from | km to | D | Radius (m) | Cant | Freight load | Speed (km/h)
@@ -23,7 +24,9 @@ def read(answers: dict[str, Any] | None = None):  # type: ignore[no-untyped-def]
 
 
 def test_a_correction_gives_a_column_its_meaning_and_unit() -> None:
-    reading = read({"columns": {"Curves": {"Cant": {"unit": "in"}, "G": {"meaning": "Speed Freight", "unit": "mph"}}}})
+    reading = read(
+        {"columns": {"Curves": {"Cant": {"unit": "in"}, "G": {"meaning": "Speed Freight", "unit": "mph"}}}}
+    )
     assert reading.curves.cant_mm[0] == pytest.approx(90 * 25.4) or reading.rejected
     assert reading.curves.class_speeds["Freight"][0] == pytest.approx(60 * 1.609344)
     told = {c.heading: c for c in reading.columns}
@@ -37,7 +40,10 @@ def test_a_column_can_be_left_as_it_is() -> None:
 
 
 def test_json_and_toml_say_the_same() -> None:
-    told = {"answers": {"Curves": {"R (m)": "negative is right-hand"}}, "columns": {"Curves": {"D": "ignore"}}}
+    told = {
+        "answers": {"Curves": {"R (m)": "negative is right-hand"}},
+        "columns": {"Curves": {"D": "ignore"}},
+    }
     toml = '[answers.Curves]\n"R (m)" = "negative is right-hand"\n[columns.Curves]\nD = "ignore"\n'
     assert read_answers(json.dumps(told).encode(), "a.json") == read_answers(toml.encode(), "a.toml") == told
 

@@ -5,11 +5,12 @@ from __future__ import annotations
 import re
 
 import pytest
+
+from cant.files.grid import Sheet
 from cant.reading.columns import KINDS, TABLES, all_columns, columns_of, strong_headings
 from cant.reading.headings import MILES_CHAINS, MILES_YARDS, analyse, matches
-from cant.reading.meanings import decide
 from cant.reading.layout import Block, BlockColumn
-from cant.files.grid import Sheet
+from cant.reading.meanings import decide
 from cant.reading.text import fold
 from cant.units import UNITS
 
@@ -38,7 +39,19 @@ def test_every_column_is_whole() -> None:
 
 @pytest.mark.parametrize("language", LANGUAGES)
 def test_every_language_has_the_main_columns_of_a_curve_list(language: str) -> None:
-    for name in ("Line", "Track", "Curve", "Start", "End", "Radius", "Hand", "Length", "Transition", "Cant", "Speed"):
+    for name in (
+        "Line",
+        "Track",
+        "Curve",
+        "Start",
+        "End",
+        "Radius",
+        "Hand",
+        "Length",
+        "Transition",
+        "Cant",
+        "Speed",
+    ):
         info = next(c for c in all_columns() if c.table == "curves" and c.name == name)
         assert info.headings is not None
         assert info.headings.get(language), (name, language)

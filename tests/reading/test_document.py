@@ -6,6 +6,7 @@ import json
 
 import messy
 import messy_more
+
 from cant.reading import reading_document, reading_table
 
 

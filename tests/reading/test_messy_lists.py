@@ -8,8 +8,9 @@ import messy
 import messy_hard
 import messy_more
 import pytest
-from cant.model.reading import Reading
 from messy import Messy
+
+from cant.model.reading import Reading
 
 LISTS = [*messy.LAYOUTS, *messy_more.LAYOUTS, *messy_hard.LAYOUTS]
 
@@ -68,7 +69,11 @@ def test_no_row_with_content_vanishes_without_a_word(case: Messy) -> None:
         if sheet.role != "curves":
             continue
         source = next(s for s in case.sheets if s.name == sheet.sheet)
-        taken = {int(r) for r, name in zip(reading.curves.row, reading.curves.sheet, strict=True) if name == sheet.sheet}
+        taken = {
+            int(r)
+            for r, name in zip(reading.curves.row, reading.curves.sheet, strict=True)
+            if name == sheet.sheet
+        }
         words = " ".join(note for note in reading.notes)
         for row in range(sheet.header_row + 1, len(source.rows) + 1):
             if any(source.rows[row - 1]) and row not in taken:

@@ -5,13 +5,14 @@ from __future__ import annotations
 import numpy as np
 import pint
 import pytest
+from hypothesis import given
+from hypothesis import strategies as st
+
 from cant.reading.chainages import STATION, miles_chains, miles_yards, take_location
 from cant.reading.degrees import KINDS, radius_of_degree, radius_of_versine, take_degree
 from cant.reading.numbers import decimal_mark, parse_number, parse_quantity
 from cant.reading.takers import take_cant, take_radius, take_speed, take_transition
 from cant.units import UNITS
-from hypothesis import given
-from hypothesis import strategies as st
 
 PINT = pint.UnitRegistry()
 
@@ -46,7 +47,9 @@ def test_numbers_as_people_type_them(text: str, decimal: str, value: float) -> N
     assert parse_number(text, decimal) == pytest.approx(value)
 
 
-@pytest.mark.parametrize("text", ["", "abc", "1/3/4", "12+345", "1.2.3", "1,2,3", "5/4", "2°15'", "100/80", "--5"])
+@pytest.mark.parametrize(
+    "text", ["", "abc", "1/3/4", "12+345", "1.2.3", "1,2,3", "5/4", "2°15'", "100/80", "--5"]
+)
 def test_what_is_no_number_is_none(text: str) -> None:
     assert parse_number(text) is None
 
@@ -87,7 +90,9 @@ def test_a_value_with_its_unit_agrees_with_pint(unit: str, value: float) -> None
     assert found[0] * found[1].factor == pytest.approx(expected, rel=5e-6)
 
 
-@pytest.mark.parametrize(("texts", "mark"), [(["12,5", "1.200"], ","), (["12.5"], "."), (["1.200"], ""), (["650"], "")])
+@pytest.mark.parametrize(
+    ("texts", "mark"), [(["12,5", "1.200"], ","), (["12.5"], "."), (["1.200"], ""), (["650"], "")]
+)
 def test_a_sheet_shows_its_decimal_mark(texts: list[str], mark: str) -> None:
     assert decimal_mark(texts) == mark
 
@@ -134,7 +139,9 @@ def test_what_is_no_distance_is_refused(text: str) -> None:
 @given(st.integers(0, 300), st.integers(0, 79))
 def test_miles_and_chains_against_pint(miles: int, chains: int) -> None:
     # A chain is 66 international feet (NIST SP 811, appendix B.6 note on the foot).
-    expected = (miles * PINT.international_mile if hasattr(PINT, "international_mile") else miles * PINT.mile).to("km")
+    expected = (
+        miles * PINT.international_mile if hasattr(PINT, "international_mile") else miles * PINT.mile
+    ).to("km")
     expected = expected.magnitude + (chains * 66 * PINT.foot).to("km").magnitude
     assert miles_chains(miles, chains) == pytest.approx(expected, rel=3e-6, abs=1e-9)
 
@@ -222,7 +229,9 @@ def test_radii(text: str, value: float, unit: str, hand: int) -> None:
     assert (taken.value, taken.unit, taken.hand) == (value, unit, hand)
 
 
-@pytest.mark.parametrize("text", ["∞", "oo", "straight", "Gerade", "recta", "rettifilo", "tangent", "prosta", "přímá"])
+@pytest.mark.parametrize(
+    "text", ["∞", "oo", "straight", "Gerade", "recta", "rettifilo", "tangent", "prosta", "přímá"]
+)
 def test_straight_track_in_many_words(text: str) -> None:
     assert take_radius(text).state == "straight"
 

@@ -7,6 +7,7 @@ from collections.abc import Callable
 
 import pandas as pd
 import pytest
+
 from cant.errors import InputError
 from cant.files.grid import CellError, Sheet, Uncalculated, Value, Workbook
 from cant.model.curves import DOES_NOT_RUN
@@ -17,7 +18,19 @@ from cant.reading.traffic import read_traffic
 from cant.reading.turnouts import read_turnouts
 
 CURVES: list[list[Value]] = [
-    ["Line", "Track", "Curve", "Start", "End", "Radius", "Hand", "Transition in", "Transition out", "Cant", "Speed"],
+    [
+        "Line",
+        "Track",
+        "Curve",
+        "Start",
+        "End",
+        "Radius",
+        "Hand",
+        "Transition in",
+        "Transition out",
+        "Cant",
+        "Speed",
+    ],
     ["A", "1", "1", 1.0, 1.3, 800.0, "L", 80.0, None, 70.0, 100.0],
     ["A", "1", "2", 2.0, 2.4, 1200.0, "R", 0.0, 90.0, 60.0, 120.0],
 ]
@@ -29,7 +42,17 @@ TRAFFIC: list[list[Value]] = [
     ["Ore", "mineral", 0.0, 5.0, None, True, None, None],
 ]
 LIMITS: list[list[Value]] = [
-    ["Quantity", "Normal", "Exceptional", "Unit", "Category", "Situation", "Speed over (mph)", "Radius up to (ft)", "Kind"],
+    [
+        "Quantity",
+        "Normal",
+        "Exceptional",
+        "Unit",
+        "Category",
+        "Situation",
+        "Speed over (mph)",
+        "Radius up to (ft)",
+        "Kind",
+    ],
     ["cant", 6.0, 7.0, "in", None, None, None, None, "ceiling"],
     ["Cant Deficiency", 130.0, None, None, "Passenger", "Bahnsteig", 50.0, 1000.0, None],
     ["felt acceleration", "none", None, "m/s²", None, None, None, None, None],
@@ -39,7 +62,9 @@ LIMITS: list[list[Value]] = [
 
 
 def book(**sheets: list[list[Value]]) -> Workbook:
-    return Workbook("line.xlsx", "xlsx", [Sheet(name, [list(r) for r in rows]) for name, rows in sheets.items()])
+    return Workbook(
+        "line.xlsx", "xlsx", [Sheet(name, [list(r) for r in rows]) for name, rows in sheets.items()]
+    )
 
 
 def test_traffic_in_its_units() -> None:
@@ -57,7 +82,11 @@ def test_limits_as_stated() -> None:
     limits, _ = read_limits(Sheet("Limits", LIMITS), "line.xlsx")
     cant, deficiency, felt, gradient, excess = limits.rows
     assert (cant.normal, cant.exceptional, cant.unit, cant.kind) == (6.0, 7.0, "in", "ceiling")
-    assert (deficiency.quantity, deficiency.unit, deficiency.category) == ("cant deficiency", "mm", "passenger")
+    assert (deficiency.quantity, deficiency.unit, deficiency.category) == (
+        "cant deficiency",
+        "mm",
+        "passenger",
+    )
     assert deficiency.situation == "platform"
     assert deficiency.speed_over_kmh == pytest.approx(80.4672)
     assert deficiency.radius_up_to_m == pytest.approx(304.8)
@@ -121,14 +150,22 @@ def add(sheet: str, *cells: Value) -> Change:
 
 
 BAD: list[tuple[str, Change, tuple[str, ...]]] = [
-    ("unknown quantity", put("Limits", 1, 0, "cant of track"), ("Limits", "A2", "cant of track", "cant deficiency")),
+    (
+        "unknown quantity",
+        put("Limits", 1, 0, "cant of track"),
+        ("Limits", "A2", "cant of track", "cant deficiency"),
+    ),
     ("unknown unit", put("Limits", 1, 3, "furlong"), ("Limits", "D2", "furlong", "mm")),
     ("unit of another dimension", put("Limits", 1, 3, "km/h"), ("Limits", "D2", "km/h", "mm")),
     ("unknown kind", put("Limits", 1, 8, "maximum"), ("Limits", "I2", "maximum", "ceiling")),
     ("blank normal", put("Limits", 1, 1, None), ("Limits", "B2", "none")),
     ("a word for a number", put("Limits", 1, 1, "six"), ("Limits", "B2", "six")),
     ("negative condition", put("Limits", 2, 6, -5.0), ("Limits", "G3", "-5")),
-    ("unknown heading over numbers", put("Limits", 0, 6, "Axle load over"), ("Limits", "G1", "Axle load over", "Speed over")),
+    (
+        "unknown heading over numbers",
+        put("Limits", 0, 6, "Axle load over"),
+        ("Limits", "G1", "Axle load over", "Speed over"),
+    ),
     ("heading twice", put("Limits", 0, 8, "Unit"), ("Limits", "I1", "Unit")),
     ("missing heading", put("Limits", 0, 1, "Value"), ("Limits", "Normal")),
     ("error cell", put("Limits", 1, 1, CellError("#DIV/0!")), ("Limits", "B2", "#DIV/0!")),
@@ -178,13 +215,17 @@ def test_an_empty_table_is_refused(name: str) -> None:
 
 
 def test_a_sheet_twice_is_refused() -> None:
-    twice = Workbook("line.xlsx", "xlsx", [Sheet("Curves", CURVES), Sheet("Limits", LIMITS), Sheet("More limits", LIMITS)])
+    twice = Workbook(
+        "line.xlsx", "xlsx", [Sheet("Curves", CURVES), Sheet("Limits", LIMITS), Sheet("More limits", LIMITS)]
+    )
     with pytest.raises(InputError, match="twice"):
         read_workbook(twice)
 
 
 def test_a_file_given_separately_replaces_the_sheet() -> None:
-    other = Workbook("traffic.csv", "csv", [Sheet("", [["Class", "Category", "Speed"], ["Slow", "freight", 60.0]])])
+    other = Workbook(
+        "traffic.csv", "csv", [Sheet("", [["Class", "Category", "Speed"], ["Slow", "freight", 60.0]])]
+    )
     reading = read_workbook(book(Curves=CURVES, Traffic=TRAFFIC), traffic=other)
     assert reading.traffic is not None
     assert reading.traffic.class_names == ["Slow"]
@@ -238,12 +279,26 @@ def test_canonical_headings_without_units_are_the_usual_units_to_the_letter() ->
         ["1", 1.0, 1.2, 60.0, 5.0, 20.0, 60.0],
     ]
     read = read_workbook(book(Curves=rows)).curves.as_read(0)
-    assert (read["radius_m"], read["cant_mm"], read["transition_in_m"], read["start_km"]) == (60.0, 5.0, 20.0, 1.0)
+    assert (read["radius_m"], read["cant_mm"], read["transition_in_m"], read["start_km"]) == (
+        60.0,
+        5.0,
+        20.0,
+        1.0,
+    )
 
 
 def test_turnouts() -> None:
     rows: list[list[Value]] = [
-        ["Turnout", "Track", "Curve", "Chainage", "Radius on the straight (m)", "Hand", "Branch speed (mph)", "Category"],
+        [
+            "Turnout",
+            "Track",
+            "Curve",
+            "Chainage",
+            "Radius on the straight (m)",
+            "Hand",
+            "Branch speed (mph)",
+            "Category",
+        ],
         ["T1", "1", "2", "12+345", 500.0, "rechts", 40.0, "Goods"],
     ]
     [turnout], _ = read_turnouts(Sheet("Turnouts", rows), "line.xlsx")
@@ -260,7 +315,9 @@ def test_frames_and_sheets_are_read_alike() -> None:
     limits = pd.DataFrame(LIMITS[1:], columns=LIMITS[0])
     from_frames = read_frames(frame, traffic, limits, {"Rail spacing": 1500})
     from_book = read_workbook(book(Curves=CURVES, Traffic=TRAFFIC, Limits=LIMITS))
-    assert [from_frames.curves.as_read(i) for i in range(2)] == [from_book.curves.as_read(i) for i in range(2)]
+    assert [from_frames.curves.as_read(i) for i in range(2)] == [
+        from_book.curves.as_read(i) for i in range(2)
+    ]
     assert from_frames.traffic is not None
     assert from_book.traffic is not None
     assert from_frames.traffic.model_dump() == from_book.traffic.model_dump()

@@ -6,6 +6,7 @@ import io
 
 import openpyxl
 import pytest
+
 from cant.errors import InputError
 from cant.files.open import open_workbook
 from cant.reading import read_workbook
@@ -18,7 +19,15 @@ def filled(examples_left: bool) -> bytes:
     book = openpyxl.load_workbook(io.BytesIO(template_workbook()))
     row = 3 if examples_left else 2
     values = {
-        "Curves": {"Line": "A", "Track": "1", "Curve": "7", "Radius": 800, "Cant": 60, "Speed": 100, "Hand": "R"},
+        "Curves": {
+            "Line": "A",
+            "Track": "1",
+            "Curve": "7",
+            "Radius": 800,
+            "Cant": 60,
+            "Speed": 100,
+            "Hand": "R",
+        },
         "Traffic": {"Class": "Fast", "Category": "passenger", "Speed": 120},
         "Limits": {"Quantity": "cant", "Normal": 150, "Unit": "mm"},
     }
@@ -66,9 +75,13 @@ def test_every_heading_is_canonical_and_explained() -> None:
 
 def test_drop_downs_offer_what_the_reader_takes() -> None:
     book = openpyxl.load_workbook(io.BytesIO(template_workbook()))
-    rules = {str(r.sqref).split(":")[0]: str(r.formula1) for r in book["Curves"].data_validations.dataValidation}
+    rules = {
+        str(r.sqref).split(":")[0]: str(r.formula1) for r in book["Curves"].data_validations.dataValidation
+    }
     assert '"L,R"' in rules.values()
     assert any("bloss" in formula for formula in rules.values())
     limits = [str(r.formula1) for r in book["Limits"].data_validations.dataValidation]
     assert any("abrupt change of cant deficiency" in formula for formula in limits)
-    assert all(len(formula) <= 257 for formula in (*limits, *rules.values())), "a spreadsheet takes 255 characters"
+    assert all(len(formula) <= 257 for formula in (*limits, *rules.values())), (
+        "a spreadsheet takes 255 characters"
+    )
