@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Sequence
-from itertools import zip_longest
+from itertools import pairwise, zip_longest
 from typing import Any
 
 import numpy as np
@@ -33,7 +33,7 @@ NOT_USED = "not used"
 def read_sheet(sheet: Sheet, context: Context) -> list[Draft]:
     """Understand every curve table of one sheet."""
     blocks = find_blocks(sheet)
-    for before, after in zip(blocks, blocks[1:], strict=False):
+    for before, after in pairwise(blocks):
         if after.header_first > before.header_first:
             rows = ", ".join(
                 str(r) for r in range(before.last_row + 1, after.header_last + 1) if sheet.rows[r - 1]
@@ -60,7 +60,7 @@ def read_block(block: Block, context: Context) -> Draft:
     context.notes += sifted.notes(rows, block.sheet.name, elements)
     _note_hidden(block, [int(rows[i]) for i in sifted.curves], context)
     tracks = _tracks_by_row(sifted.sections, len(rows))
-    names = {c.index: _filled_down(c) for c in columns if c.meaning in ("Line", "Track")}
+    names = _filled_names(columns)
     keep = sifted.curves
     for item in columns:
         source = names.get(item.index, item.cells)
@@ -109,10 +109,22 @@ def _note_hidden(block: Block, rows: list[int], context: Context) -> None:
         context.notes.append(f"sheet '{block.sheet.name}', rows {listed}: hidden, read like the others")
 
 
-def _filled_down(item: Column) -> list[Value]:
-    cells = list(item.cells)
+def _filled_names(columns: list[Column]) -> dict[int, list[Value]]:
+    """Let blanks under the name of a line or track repeat it; a new line does not take the last one's track."""
+    line = next((c for c in columns if c.meaning == "Line"), None)
+    track = next((c for c in columns if c.meaning == "Track"), None)
+    found = {line.index: _filled_down(line.cells, [False] * len(line.cells))} if line else {}
+    if track:
+        lines = found[line.index] if line else [None] * len(track.cells)
+        new = [False, *(a != b for a, b in pairwise(lines))]
+        found[track.index] = _filled_down(track.cells, new)
+    return found
+
+
+def _filled_down(given: Sequence[Value], fresh: list[bool]) -> list[Value]:
+    cells = list(given)
     for index in range(1, len(cells)):
-        if is_blank(cells[index]):
+        if not fresh[index] and is_blank(cells[index]):
             cells[index] = cells[index - 1]
     return cells
 

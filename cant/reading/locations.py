@@ -172,6 +172,11 @@ def _mile_notations(first: Column, every: FloatArray, evidence: Evidence) -> lis
     hundredths, myriads = np.round(parts * 100, 4), np.round(parts * 10000, 2)
     two_digits = bool(np.all(np.abs(hundredths - np.round(hundredths)) < 1e-3))
     four_digits = bool(np.all(np.abs(myriads - np.round(myriads)) < 1e-1)) and not two_digits
+    spelled = "mile" in first.heading.text.casefold() and "mileage" not in first.heading.text.casefold()
+    if spelled and two_digits:
+        return [MILES]
+    if spelled:
+        return [MILES_YARDS, MILES] if four_digits and bool(np.all(parts < 0.1760)) else [MILES]
     milepost = "mp" in first.heading.text.casefold().split() or "milepost" in first.heading.text.casefold()
     if four_digits and len(every) >= 4 and bool(np.all(parts < 0.1760)):
         return [MILES_YARDS] if len(every) >= 6 else [MILES_YARDS, MILES]

@@ -20,8 +20,7 @@ from cant.reading.trains import known_train, names_only_trains, says_speed, trai
 from cant.reading.words import lexicon
 from cant.units import find_unit, unit
 
-PROPOSED = frozenset({"proposed", "new", "planned", "future", "neu", "gepl", "geplant", "projet", "propuesto", "nuevo", "proposto", "nova", "novo", "nowe", "nowa", "ny", "nytt", "nye", "proposal", "recommended"})  # fmt: skip
-EXISTING = frozenset({"existing", "exist", "today", "present", "current", "ist", "vorh", "vorhanden", "existant", "actuel", "existente", "actual", "esistente", "istniejaca", "stavajici", "eksisterende", "befintlig", "as built"})  # fmt: skip
+PROPOSED, EXISTING = "proposed", "existing"
 
 
 @dataclass
@@ -190,21 +189,45 @@ def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:
 def _set_meaning(result: Column, source: BlockColumn) -> None:
     words = _without_state(result.heading.words)
     best = _best(words, [analyse(part).words for part in reversed(source.parts)])
-    proposed = PROPOSED & set(result.heading.words.split())
-    if best is not None and best.score == 1.0 and best.meaning not in ("Speed",):
+    proposed = any(lexicon("states").get(t) == PROPOSED for t in result.heading.words.split())
+    if best is not None and (best.score == 1.0 or _rules_speed_out(best, words)) and best.meaning != "Speed":
         result.meaning = best.meaning
+        result.confidence = "certain" if best.score >= 0.6 else "likely"
     elif _as_speed(result, source, best):
         return
     elif best is not None and best.score >= 0.4:
         result.meaning = best.meaning
         result.confidence = "certain" if best.score >= 0.6 else "likely"
+    if best is None or best.score < 1.0:
+        _tell_ends_apart(result, words)
     if proposed and result.meaning:
         result.meaning = "Proposed cant" if result.meaning in ("Cant", "Proposed cant", "Design cant") else ""
         result.note = "a proposal: shown, not taken"
 
 
+def _rules_speed_out(best: Match, words: str) -> bool:
+    """Whether a heading that also says speed means something else: ``cant deficiency at vmax``."""
+    first = words.split()[0] if words else ""
+    return best.score >= 0.4 and best.meaning != "Curve" and not says_speed(first) and not known_train(first)
+
+
+_PLACES = frozenset("km chainage ch station sta pk mp mileage milepost location position kilometre kilometer".split())
+
+
+def _tell_ends_apart(result: Column, words: str) -> None:
+    """Make transition and chainage those of one end, where a word of the heading says which."""
+    ends = {lexicon("ends")[t] for t in words.split() if t in lexicon("ends")}
+    if len(ends) != 1:
+        return
+    first = ends == {"in"}
+    if result.meaning == "Transition":
+        result.meaning = "Transition in" if first else "Transition out"
+    elif not result.meaning and _PLACES & set(words.split()):
+        result.meaning, result.confidence = ("Start" if first else "End"), "likely"
+
+
 def _without_state(words: str) -> str:
-    tokens = [t for t in words.split() if t not in EXISTING]
+    tokens = [t for t in words.split() if lexicon("states").get(t) != EXISTING]
     kept = " ".join(tokens)
     return (
         kept

@@ -67,9 +67,23 @@ def _cants(draft: Draft, evidence: Evidence, speed: FloatArray) -> None:
         if item is None:
             continue
         numbers = take_column(item.cells, lambda text: take_cant(text, draft.decimal))
+        _existing_of_pairs(item, numbers)
         unit = settle_cant_unit(draft, item, numbers, evidence, draft.numbers["radius_m"], speed)
         draft.numbers[NUMERIC[meaning][0]] = _single(draft, item, numbers, unit, "mm", "cant")
         share_units(draft.columns)
+
+
+def _existing_of_pairs(item: Column, numbers: Numbers) -> None:
+    """Of ``90/105`` under a heading that names both states take the existing cant."""
+    states = [lexicon("states").get(token) for token in fold(item.heading.text).split()]
+    named = [state for state in states if state]
+    if sorted(named) != ["existing", "proposed"]:
+        return
+    for index in [i for i, state in numbers.states.items() if state == PAIR]:
+        if named[0] == "proposed":
+            numbers.values[index] = numbers.second[index]
+        del numbers.states[index]
+    item.note = "existing and proposed in one cell: the existing is taken"
 
 
 def _promote_design_cant(draft: Draft) -> None:

@@ -163,7 +163,7 @@ def _geometry(item: Column, decimal: str, sure: np.ndarray, straight: np.ndarray
 def _totals(columns: list[Column]) -> frozenset[int]:
     words = lexicon("totals")
     found: set[int] = set()
-    for item in columns[:4]:
+    for item in (c for c in columns[:5] if c.meaning not in ("Line", "Track", "Remarks")):
         verdicts: dict[str, bool] = {}
         for index, cell in enumerate(item.cells):
             if isinstance(cell, str) and cell[:2].strip().isalpha():
@@ -178,7 +178,16 @@ def _is_total(text: str, words: dict[str, str]) -> bool:
     if any(c.isdigit() for c in text.split(maxsplit=1)[0]):
         return False
     tokens = fold(text).split()
-    return bool(tokens) and len(tokens) <= 6 and any(" ".join(tokens[:n]) in words for n in (1, 2, 3))
+    for size in (3, 2, 1):
+        if " ".join(tokens[:size]) in words and len(tokens) >= size:
+            return all(token.isdigit() or token in _COUNTED for token in tokens[size:])
+    return False
+
+
+_COUNTED = frozenset(
+    "curve curves length of km m courbes courbe longueur curvas longitud curve sviluppo bogen kurven lange oblouky "
+    "oblouku luki lukow kurver kurvor radius cant page pages sheet track line section".split()
+)
 
 
 def _place(
@@ -192,6 +201,8 @@ def _place(
         result.headers.append(index)
     elif straight or any(is_straight(t) for t in texts):
         result.straights.append(index)
+    elif _is_named(filled, index) and len(filled) >= 2 and not after:
+        result.curves.append(index)
     elif not figures and len(filled) <= 2 and len(placed) <= 2 and texts:
         if after and len(placed) == 0 and not _is_place(texts[0]):
             result.legends.append(index)
@@ -201,6 +212,12 @@ def _place(
         result.legends.append(index)
     elif filled:
         result.curves.append(index)
+
+
+def _is_named(filled: list[Column], index: int) -> bool:
+    """Whether a row carries the number of a curve, so that its missing radius is a fault and no intent."""
+    name = next((c.cells[index] for c in filled if c.meaning == "Curve"), None)
+    return name is not None and len(shown(name)) <= 12 and any(c.isdigit() for c in shown(name))
 
 
 def _is_figure(value: Value) -> bool:

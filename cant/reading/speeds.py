@@ -119,6 +119,7 @@ def _part(item: Column, position: int, name: str) -> Column:
 
 def settle_speeds(draft: Draft) -> None:
     """Turn speed columns into the line's speed and those of the classes."""
+    _lone_speed_is_the_lines(draft)
     ranked: dict[str, tuple[int, int]] = {}
     for item in draft.columns:
         if item.meaning != "Speed":
@@ -132,6 +133,25 @@ def settle_speeds(draft: Draft) -> None:
         for name in names:
             if name not in ranked or rank < ranked[name]:
                 draft.class_speeds[name], ranked[name] = values.copy(), rank
+
+
+def _lone_speed_is_the_lines(draft: Draft) -> None:
+    """Take the one speed column whose words name no train for the line's, where the list has no other."""
+    if draft.column("Speed") is not None:
+        return
+    traffic = draft.context.traffic
+    strange = [
+        c
+        for c in draft.columns
+        if c.meaning == "Speed"
+        and not c.literal
+        and not known_train(c.train)
+        and not (traffic and (classes_meant(c.train, traffic) or classes_meant(c.train_part, traffic)))
+    ]
+    if len(strange) == 1 and len(strange[0].train) > 2:
+        item = strange[0]
+        item.train = item.train_name = ""
+        item.confidence, item.note = "likely", "names no train: taken for the line's speed"
 
 
 def _kilometres_an_hour(draft: Draft, item: Column) -> FloatArray:

@@ -11,13 +11,14 @@ from cant.reading.text import fold
 from cant.reading.words import lexicon
 
 _SPEED_WORDS = frozenset(lexicon("speed_words"))
+_FILLERS = frozenset(lexicon("speed_fillers"))
 _GLUED = re.compile(r"^(?:vmax|v)([^\W\d_]{1,8})$")
 
 
 @lru_cache(maxsize=2048)
 def train_words(words: str) -> str:
     """Give what folded heading words say beyond "speed": ``vmax pas`` gives ``pas``, ``vgz`` gives ``gz``."""
-    rest = [token for token in words.split() if token not in _SPEED_WORDS]
+    rest = [token for token in words.split() if token not in _SPEED_WORDS and token not in _FILLERS]
     if len(rest) == 1 and (glued := _GLUED.match(rest[0])) and known_train(glued[1]):
         return glued[1]
     joined = " ".join(rest)
@@ -31,11 +32,9 @@ def says_speed(words: str) -> bool:
     """Whether folded heading words say "speed" in so many words."""
     if not words.isascii() and (words.endswith(("v", "vmax")) or "速度" in words):
         return True
-    return any(
-        token in _SPEED_WORDS
-        and token not in ("max", "h", "line", "type", "tipo", "limit", "train", "trains")
-        for token in words.split()
-    ) or bool(words.startswith("v") and train_words(words) != words)
+    return any(token in _SPEED_WORDS for token in words.split()) or bool(
+        words.startswith("v") and train_words(words) != words
+    )
 
 
 @lru_cache(maxsize=2048)
@@ -56,7 +55,7 @@ def known_train(words: str) -> str:
 
 def names_only_trains(words: str) -> bool:
     """Whether folded heading words name a kind of train and nothing else (``booked goods``, no ``goods tonnage``)."""
-    known = {*lexicon("categories"), *lexicon("train_words"), *_SPEED_WORDS, "traffic", "services", "hauled"}
+    known = {*lexicon("categories"), *lexicon("train_words"), *_SPEED_WORDS, *_FILLERS}
     return bool(known_train(words)) and all(token in known for token in words.split())
 
 

@@ -7,12 +7,13 @@ from typing import Any
 import messy
 import messy_hard
 import messy_more
+import messy_wide
 import pytest
 from messy import Messy
 
 from cant.model.reading import Reading
 
-LISTS = [*messy.LAYOUTS, *messy_more.LAYOUTS, *messy_hard.LAYOUTS]
+LISTS = [*messy.LAYOUTS, *messy_more.LAYOUTS, *messy_hard.LAYOUTS, *messy_wide.LAYOUTS]
 
 
 def read_values(reading: Reading, index: int) -> dict[str, Any]:
