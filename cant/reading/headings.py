@@ -196,7 +196,7 @@ def matches(words: str, table: str = "curves") -> tuple[Match, ...]:
             if meaning not in found or score > found[meaning].score:
                 found[meaning] = Match(meaning, score, language)
     if not found:
-        found = _inside(words, strong)
+        found = _inside(words, strong) or _shortened(words, strong)
     if len(found) > 1:
         found.pop("Curve", None)
     return tuple(sorted(found.values(), key=lambda m: -m.score))
@@ -258,6 +258,14 @@ def _phrases(tokens: list[str]) -> list[tuple[str, int]]:
         for i in range(count - size + 1)
         if size > 1 or len(tokens[i]) > 2
     ]
+
+
+def _shortened(words: str, strong: dict[str, tuple[tuple[str, str], ...]]) -> dict[str, Match]:
+    """Understand a shortened heading: ``richt`` where every known heading of one word that starts so agrees."""
+    if " " in words or len(words) < 4:
+        return {}
+    hits = {m: lang for key, meanings in strong.items() if key.startswith(words) and " " not in key for m, lang in meanings}
+    return {m: Match(m, 0.6, lang) for m, lang in hits.items()} if len(hits) == 1 else {}
 
 
 def _inside(words: str, strong: dict[str, tuple[tuple[str, str], ...]]) -> dict[str, Match]:

@@ -23,11 +23,15 @@ HEADER_ROWS = 3
 
 @dataclass
 class BlockColumn:
-    """One column of a block: where it stands and the texts of its heading, from the top."""
+    """One column of a block: where it stands, the texts of its heading from the top, its unit row.
+
+    ``written`` is the heading as the user wrote it, where a legend has put other words into ``parts``.
+    """
 
     index: int
     parts: tuple[str, ...]
     unit_row: str = ""
+    written: str = ""
 
     @property
     def heading(self) -> str:

@@ -6,7 +6,7 @@ Decides only; values are turned into quantities elsewhere, with what is decided 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass, field, replace
 from itertools import islice
 
 from cant.files.grid import Value
@@ -14,6 +14,7 @@ from cant.reading.answers import Answers
 from cant.reading.columns import column
 from cant.reading.headings import Heading, Match, analyse, matches
 from cant.reading.layout import Block, BlockColumn
+from cant.reading.definitions import definitions
 from cant.reading.numbers import parse_number
 from cant.reading.text import fold, is_blank, shown, squeeze
 from cant.reading.trains import known_train, names_only_trains, says_speed, train_words
@@ -86,7 +87,8 @@ def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
     cells : dict of int to sequence of Value
         Values of the data rows by column.
     """
-    columns = [_from_heading(c, cells.get(c.index, [])) for c in block.columns]
+    said = definitions(block.title)
+    columns = [_from_heading(_as_defined(c, said), cells.get(c.index, [])) for c in block.columns]
     _continue_speeds(columns)
     _bracketed_trains(columns)
     _hand_by_values(columns)
@@ -99,15 +101,24 @@ def _hand_by_values(columns: list[Column]) -> None:
         return
     known = lexicon("hands")
     for item in columns:
-        texts = {fold(c) for c in item.cells[:2000] if isinstance(c, str) and not is_blank(c)}
-        if (
-            not item.meaning
-            and len(texts) >= 2
-            and texts <= set(known)
-            and len({known[t] for t in texts}) == 2
-        ):
+        texts = [fold(c) for c in item.cells[:2000] if isinstance(c, str) and not is_blank(c)]
+        hits = [known[t] for t in texts if t in known]
+        if not item.meaning and len(set(hits)) == 2 and len(hits) >= 0.8 * len(texts) - 1:
             item.meaning, item.confidence, item.note = "Hand", "likely", "by its values"
             return
+
+
+def _as_defined(source: BlockColumn, said: dict[str, str]) -> BlockColumn:
+    """Read a short heading that a legend explains as what the legend says: ``lp = transition``."""
+    if not said or not source.parts:
+        return source
+    words = analyse(source.parts[-1]).words
+    stem = words.rstrip("0123456789")
+    phrase = said.get(words) or said.get(stem)
+    if phrase is None or len(words) > 6:
+        return source
+    tail = words[len(stem) :] if words not in said else ""
+    return BlockColumn(source.index, (f"{phrase} {tail}".strip(),), source.unit_row, source.heading)
 
 
 def _continue_speeds(columns: list[Column]) -> None:
@@ -168,6 +179,8 @@ def correct(columns: list[Column], answers: Answers, sheet: str) -> None:
 
 def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:
     heading = analyse(source.heading)
+    if source.written:
+        heading = replace(heading, text=source.written)
     result = Column(source.index, heading, unit=heading.unit, cells=cells)
     result.unit_from = "heading" if heading.unit else ""
     if source.unit_row:
@@ -176,7 +189,7 @@ def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:
         if named is not None and not result.unit:
             result.unit, result.unit_from = named.symbol, "unit row"
         elif named is None:
-            result.heading = analyse(f"{source.heading} ({bare})")
+            result.heading = replace(analyse(f"{source.heading} ({bare})"), text=heading.text)
             if not result.unit and result.heading.unit:
                 result.unit, result.unit_from = result.heading.unit, "unit row"
     if not source.parts:
@@ -189,7 +202,8 @@ def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:
 def _set_meaning(result: Column, source: BlockColumn) -> None:
     words = _without_state(result.heading.words)
     best = _best(words, [analyse(part).words for part in reversed(source.parts)])
-    proposed = any(lexicon("states").get(t) == PROPOSED for t in result.heading.words.split())
+    states = {lexicon("states").get(t) for t in result.heading.words.split()}
+    proposed = PROPOSED in states and EXISTING not in states
     if best is not None and (best.score == 1.0 or _rules_speed_out(best, words)) and best.meaning != "Speed":
         result.meaning = best.meaning
         result.confidence = "certain" if best.score >= 0.6 else "likely"
@@ -227,13 +241,14 @@ def _tell_ends_apart(result: Column, words: str) -> None:
 
 
 def _without_state(words: str) -> str:
-    tokens = [t for t in words.split() if lexicon("states").get(t) != EXISTING]
-    kept = " ".join(tokens)
-    return (
-        kept
-        if tokens and matches(kept) and not (matches(words) and matches(words)[0].score == 1.0)
-        else words
-    )
+    """Leave out words such as "existing", and both where a heading names existing and proposed."""
+    states = {lexicon("states").get(t) for t in words.split()}
+    dropped = {EXISTING, PROPOSED} if {EXISTING, PROPOSED} <= states else {EXISTING}
+    kept = " ".join(t for t in words.split() if lexicon("states").get(t) not in dropped)
+    if len(dropped) == 2:
+        return kept
+    exact = matches(words) and matches(words)[0].score == 1.0
+    return kept if kept and matches(kept) and not exact else words
 
 
 def _best(words: str, parts: list[str]) -> Match | None:

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 import messy
+import messy_far
 import messy_hard
 import messy_more
 import messy_wide
@@ -13,7 +14,7 @@ from messy import Messy
 
 from cant.model.reading import Reading
 
-LISTS = [*messy.LAYOUTS, *messy_more.LAYOUTS, *messy_hard.LAYOUTS, *messy_wide.LAYOUTS]
+LISTS = [*messy.LAYOUTS, *messy_more.LAYOUTS, *messy_hard.LAYOUTS, *messy_wide.LAYOUTS, *messy_far.LAYOUTS]
 
 
 def read_values(reading: Reading, index: int) -> dict[str, Any]:
