@@ -6,6 +6,7 @@ A pattern takes the plainest, by far most frequent cells at once; every other ce
 from __future__ import annotations
 
 import re
+import sys
 from collections.abc import Sequence
 from dataclasses import dataclass
 from datetime import date, datetime
@@ -29,6 +30,7 @@ _ATTRIBUTE = re.compile(rb"""([\w:.-]+)\s*=\s*(?:"([^"]*)"|'([^']*)')""")
 _CELL_NAME = re.compile(rb"([A-Z]{1,3})[0-9]{1,7}\Z")
 _HIDDEN = re.compile(rb"""\shidden=["'](?:1|true)["']""")
 _MINUS = ord("-")
+_LARGEST = sys.float_info.max
 _BLANK_ROW: list[Value] = []
 
 
@@ -179,7 +181,8 @@ class CellReader:
                 elif style in dates:
                     cells.append(from_serial(float(text), self.book.epoch_1904))
                 else:
-                    cells.append(_number(text))
+                    number = float(text)
+                    cells.append(number if -_LARGEST <= number <= _LARGEST else CellError(text.decode()))
             except (ValueError, IndexError):
                 cells.append(self._unusable(kind, text, span.number, column))
 

@@ -23,6 +23,7 @@ _DECLARATION = re.compile(rb"\s*<\?xml[^>]*\?>\s*")
 _ENCODING = re.compile(rb"""encoding\s*=\s*["']([\w.-]+)["']""")
 _TAG = re.compile(rb"""<(?:[^>"']|"[^"]*"|'[^']*')*>""")
 _ENTITY = re.compile(r"&(?:#x([0-9A-Fa-f]+)|#([0-9]+)|(lt|gt|amp|quot|apos));")
+_SPECIAL = re.compile("[&<>\r]")
 _NAMED = {"lt": "<", "gt": ">", "amp": "&", "quot": '"', "apos": "'"}
 _UNPLAIN = (b" >", b"\n>", b"\t>", b"\r>")
 
@@ -159,6 +160,8 @@ def _check_depth(depth: int, name: str, place: Place) -> None:
 
 def escape(text: str) -> str:
     """Give text for the content of an XML element."""
+    if not _SPECIAL.search(text):
+        return text
     return text.replace("&", "&amp;").replace("<", "&lt;").replace(">", "&gt;").replace("\r", "&#13;")
 
 

@@ -53,6 +53,7 @@ class RowSplice:
         self.rows = sorted({row for cells in self.cells for row in cells})
         self.last_used = read.next_column - 1
         self.has_formulas = False
+        self._style_texts: dict[tuple[int, str | None, str | None, bool], str] = {}
         p = read.xml.prefix.decode()
         self._p = p
         self._last_cell = re.compile(rb"<" + p.encode() + rb'c r="([A-Z]{1,3})[0-9]+"')
@@ -114,8 +115,7 @@ class RowSplice:
 
     def _new_row(self, row: int) -> bytes:
         p = self._p
-        cells = "".join(text for _, text in self._row_cells(row, {}))
-        return f'<{p}row r="{row}">{cells}</{p}row>'.encode()
+        return f'<{p}row r="{row}">{self._row_text(row)}</{p}row>'.encode()
 
     def _spliced(self, span: RowSpan, has_new: bool) -> bytes:
         """Give a row with its new cells, and without those of an earlier annotation."""
@@ -125,8 +125,7 @@ class RowSplice:
             kept = self._kept_cells(inner, span.number)
             return self._row(tag, b"".join(content for _, content in kept))
         if self._is_simple(inner, span.number):
-            new = "".join([text for _, text in self._row_cells(span.number, {})])
-            return self._row(self._widened(tag), inner + new.encode("utf-8"))
+            return self._row(self._widened(tag), inner + self._row_text(span.number).encode("utf-8"))
         kept = self._kept_cells(inner, span.number)
         taken = {column: content for column, content in kept if column in self._own_columns}
         cells = [(column, content) for column, content in kept if column not in taken]
@@ -174,6 +173,15 @@ class RowSplice:
             lambda match: match[1] + match[2] + b":%d" % max(int(match[3]), last) + b'"', tag, count=1
         )
 
+    def _row_text(self, row: int) -> str:
+        """Give the new cells of a row as one text."""
+        base, number, out = self._base_style(row), str(row), []
+        for placed, letters, cells in zip(self.columns, self.letters, self.cells, strict=True):
+            cell = cells.get(row)
+            if cell is not None:
+                out.append(self._cell(letters + number, cell, placed.content, base))
+        return "".join(out)
+
     def _row_cells(self, row: int, taken: dict[int, bytes]) -> Iterator[tuple[int, str]]:
         """Give the new cells of a row, left to right; ``taken`` are the user's blank cells in their place."""
         base = self._base_style(row)
@@ -197,24 +205,26 @@ class RowSplice:
     def _cell(self, name: str, cell: OutCell, column: AddedColumn, base: int) -> str:
         value = cell.value
         is_number = value is not None and not isinstance(value, str | bool)
-        need = StyleNeed(base, cell.number_format or column.number_format, cell.fill, is_number)
-        style = self.styles.cell_style(need)
+        key = (base, cell.number_format or column.number_format, cell.fill, is_number)
+        style = self._style_texts.get(key)
+        if style is None:
+            number = self.styles.cell_style(StyleNeed(*key))
+            style = self._style_texts[key] = f' s="{number}"' if number else ""
         p = self._p
-        head = f'<{p}c r="{name}" s="{style}"' if style else f'<{p}c r="{name}"'
+        head = f'<{p}c r="{name}"{style}'
         formula = ""
         if cell.formula is not None:
             self.has_formulas = True
             formula = f"<{p}f>{escape(to_cell_text(cell.formula))}</{p}f>"
         if value is None:
             return f"{head}>{formula}</{p}c>" if formula else f"{head}/>"
-        if isinstance(value, bool):
-            return f'{head} t="b">{formula}<{p}v>{int(value)}</{p}v></{p}c>'
         if isinstance(value, str):
             return self._text_cell(head, formula, value)
-        number = float(value)
-        if number - number != 0:
+        if isinstance(value, bool):
+            return f'{head} t="b">{formula}<{p}v>{int(value)}</{p}v></{p}c>'
+        text = number_text(value)
+        if text is None:
             return f'{head} t="e">{formula}<{p}v>#N/A</{p}v></{p}c>'
-        text = repr(int(number)) if number.is_integer() and abs(number) < 1e15 else repr(number)
         return f"{head}>{formula}<{p}v>{text}</{p}v></{p}c>"
 
     def _text_cell(self, head: str, formula: str, value: str) -> str:
@@ -224,6 +234,14 @@ class RowSplice:
             return f'{head} t="str">{formula}<{p}v>{text}</{p}v></{p}c>'
         keep = ' xml:space="preserve"' if value != value.strip() or "\n" in value or "  " in value else ""
         return f'{head} t="inlineStr"><{p}is><{p}t{keep}>{text}</{p}t></{p}is></{p}c>'
+
+
+def number_text(value: float) -> str | None:
+    """Give a number as a cell stores it, None where it is no number or infinite."""
+    text = repr(float(value))
+    if text.endswith(".0"):
+        return text[:-2]
+    return None if "n" in text else text  # nan, inf
 
 
 def _style_of(cell: bytes) -> int:

@@ -24,9 +24,12 @@ def to_cell_text(text: str) -> str:
 
     Characters that XML forbids become ``_xHHHH_``, and what only looks like that notation is protected.
     """
-    text = text[:MAX_CELL_TEXT]
+    if len(text) > MAX_CELL_TEXT:
+        text = text[:MAX_CELL_TEXT]
     if "_x" in text:
         text = _LITERAL_ESCAPE.sub("_x005F_", text)
+    if text.isascii() and text.isprintable():
+        return text
     return _FORBIDDEN.sub(lambda match: f"_x{ord(match.group()):04X}_", text)
 
 
