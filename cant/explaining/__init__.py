@@ -1,5 +1,6 @@
-"""Why a plan is as it is, in words and in figures that no limit asks for."""
+"""Why a plan is as it is, what would help, what to notice, and figures that no limit asks for."""
 
+from cant.explaining.decisions import Decision, Inputs, apply
 from cant.explaining.explanation import Explanation, explain
 
-__all__ = ["Explanation", "explain"]
+__all__ = ["Decision", "Explanation", "Inputs", "apply", "explain"]

@@ -21,6 +21,8 @@ from cant.quantities.speeds import smallest_radius
 from cant.quantities.transitions import jerk, roll_rate
 
 Record = dict[str, Any]
+_QUANTITIES = ("cant deficiency", "cant excess", "felt acceleration")
+_LIMIT_KEYS = ("deficiency_limit_mm", "excess_limit_mm", "felt_limit_ms2")
 Classes = Callable[[Record], list[Record]]
 
 
@@ -39,8 +41,10 @@ def add_figures(plan: Plan, indices: Sequence[int], records: Sequence[Record]) -
         ``unbalanced_acceleration_exact_ms2`` [m/s2], ``wheel_load_shift`` and ``wheel_load_shift_at_rest``
         [-] (None without a height of the centre of gravity), and ``smallest_radius_m`` [m]: the radius at
         which it would just keep its deficiency limit at this cant and its run speed (None where deficiency is
-        not limited). Each class of a transition gains ``jerk_ms3`` [m/s3], from the change of deficiency,
-        and ``roll_rate_deg_s`` [deg/s].
+        not limited); ``deficiency_limit_mm``, ``excess_limit_mm`` [mm], ``felt_limit_ms2`` [m/s2]: its normal
+        limits at the run speed, ``share_of_limit`` [-] the largest share that it uses of one of them, and
+        ``share_of``, ``share_clause`` which one that is. Each class of a transition gains ``jerk_ms3``
+        [m/s3], from the change of deficiency, and ``roll_rate_deg_s`` [deg/s].
     """
     line = plan.outcome.line.take(np.asarray(indices, dtype=np.int64))
     names = plan.traffic.class_names
@@ -55,6 +59,8 @@ def add_figures(plan: Plan, indices: Sequence[int], records: Sequence[Record]) -
         unbalanced = _gather(records, classes, names, "equilibrium_cant_mm") - cant
         for key, values in _of_classes(line, cant, speed, unbalanced, exceptional).items():
             _spread(records, classes, names, key, values)
+        felt = _gather(records, classes, names, "felt_acceleration_ms2")
+        _add_shares(plan, line, records, classes, speed, unbalanced, felt)
     for side in ("in", "out"):
         _add_to_ends(line, records, side, names)
 
@@ -77,6 +83,42 @@ def _of_classes(
             np.isfinite(limit), smallest_radius(speed_kmh, cant_mm, limit, line.constant), np.nan
         ),
     }
+
+
+def _add_shares(
+    plan: Plan,
+    line: Line,
+    records: Sequence[Record],
+    classes: Classes,
+    speed_kmh: FloatArray,
+    unbalanced_mm: FloatArray,
+    felt_ms2: FloatArray,
+) -> None:
+    """Add the normal limits of each class and the largest share of one of them that it uses."""
+    names = plan.traffic.class_names
+    asked = Asked(line, np.nan_to_num(speed_kmh), False)
+    values = (np.maximum(unbalanced_mm, 0.0), np.maximum(-unbalanced_mm, 0.0), np.abs(felt_ms2))
+    shares, rows = [], []
+    for key, quantity, value in zip(_LIMIT_KEYS, _QUANTITIES, values, strict=True):
+        limit = asked.limit(quantity)
+        _spread(records, classes, names, key, np.where(np.isfinite(limit.value), limit.value, np.nan))
+        with np.errstate(divide="ignore", invalid="ignore"):
+            share = np.where(np.isfinite(limit.value) & (limit.value > 0), value / limit.value, np.nan)
+        shares.append(np.broadcast_to(share, speed_kmh.shape))
+        rows.append(np.broadcast_to(limit.row, speed_kmh.shape))
+    every = np.nan_to_num(np.stack(shares), nan=-1.0)
+    which = every.argmax(axis=0)
+    largest = every.max(axis=0)
+    row = np.take_along_axis(np.stack(rows), which[None], axis=0)[0]
+    _spread(records, classes, names, "share_of_limit", np.where(largest < 0, np.nan, largest))
+    column = {name: j for j, name in enumerate(names)}
+    for i, record in enumerate(records):
+        for entry in classes(record):
+            j = column[entry["class"]]
+            limited = largest[i, j] >= 0
+            stated = plan.limits.rows[int(row[i, j])] if limited and row[i, j] >= 0 else None
+            entry["share_of"] = _QUANTITIES[which[i, j]] if limited else None
+            entry["share_clause"] = stated.clause or None if stated is not None else None
 
 
 def _add_to_ends(line: Line, records: Sequence[Record], side: str, names: list[str]) -> None:

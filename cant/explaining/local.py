@@ -107,7 +107,9 @@ class Surroundings:
         ]
 
 
-def try_out(outcome: Outcome, surroundings: Surroundings, trials: Sequence[Trial]) -> list[Answer]:
+def try_out(
+    outcome: Outcome, surroundings: Surroundings, trials: Sequence[Trial], method: str | None = None
+) -> list[Answer]:
     """Plan trials, each as if it were the only change of the line.
 
     Parameters
@@ -117,6 +119,8 @@ def try_out(outcome: Outcome, surroundings: Surroundings, trials: Sequence[Trial
     surroundings : Surroundings
         Of the same plan.
     trials : sequence of Trial
+    method : str, optional
+        Method to plan them with, where it is another than the plan's.
 
     Returns
     -------
@@ -130,6 +134,8 @@ def try_out(outcome: Outcome, surroundings: Surroundings, trials: Sequence[Trial
     every = np.concatenate([np.array(part, dtype=np.int64) for part in parts])
     curves = outcome.curves.take(every)
     settings = open_exceptional(curves, outcome.settings)
+    if method is not None:
+        settings = settings.model_copy(update={"method": method})
     answers = []
     offset = 0.0
     for trial, part, begin in zip(trials, parts, begins.tolist(), strict=True):

@@ -37,11 +37,11 @@ class Options:
     ----------
     plan : Plan
     words : Words
+    surroundings : Surroundings
     """
 
-    def __init__(self, plan: Plan, words: Words) -> None:
-        self._plan, self._words = plan, words
-        self._surroundings = Surroundings(plan.outcome)
+    def __init__(self, plan: Plan, words: Words, surroundings: Surroundings) -> None:
+        self._plan, self._words, self._surroundings = plan, words, surroundings
         self._found: dict[int, list[dict[str, Any]]] = {}
         self._steps = _US_STEPS_M if words.us else _METRIC_STEPS_M
 

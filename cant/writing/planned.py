@@ -10,7 +10,6 @@ from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import TYPE_CHECKING, Any
 
-from cant.explaining.figures import add_figures
 from cant.model.display import Display
 from cant.model.reading import Reading
 from cant.writing import document, frames
@@ -61,18 +60,14 @@ class PlannedLine:
     def records(self) -> Iterator[dict[str, Any]]:
         """Give the records of all curves that were not rejected, in input order, one at a time."""
         chosen = [int(index) for index in self.plan.assessed]
+        self.explanation.prepare(chosen)
         for start in range(0, len(chosen), _BATCH):
             batch = chosen[start : start + _BATCH]
             yield from self._finished(batch, list(self.plan.records(batch)))
 
     def _finished(self, indices: list[int], records: list[dict[str, Any]]) -> list[dict[str, Any]]:
         """Add words and further figures to records of the planner."""
-        for index, record in zip(indices, records, strict=True):
-            record["reason"] = self.explanation.reason(index, record)
-            record["findings"] = [finding.as_json() for finding in self.explanation.findings(index)]
-            record["options"] = self.explanation.options(index)
-            record["methods"] = self.explanation.methods(index)
-        add_figures(self.plan, indices, records)
+        self.explanation.add_to(indices, records)
         return records
 
     def document(self) -> dict[str, Any]:

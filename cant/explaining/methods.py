@@ -1,0 +1,155 @@
+"""The methods side by side: what each would set on a curve and what that does to each class.
+
+One optimiser plans them all, within the same limits; they differ in the target alone. Where they agree within
+a step the choice of method does not matter; where they lie apart, it is the engineer's real choice.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Sequence
+from typing import Any
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.explaining.local import Surroundings, Trial, try_out
+from cant.explaining.reasons import METHOD_WORDS
+from cant.explaining.wording import Words, listed
+from cant.model.settings import METHODS
+from cant.planning import Plan
+from cant.planning.outcome import Outcome, plan_arrays
+from cant.quantities.kinematics import equilibrium_cant, unbalanced_acceleration
+
+FloatArray = npt.NDArray[np.float64]
+
+FEW = 24
+"""Up to so many curves are planned apart; for more the whole line is planned once with each method."""
+_SAME_MM = 1e-6
+
+
+class Methods:
+    """What the methods would set.
+
+    Parameters
+    ----------
+    plan : Plan
+    surroundings : Surroundings
+    words : Words
+    """
+
+    def __init__(self, plan: Plan, surroundings: Surroundings, words: Words) -> None:
+        self._plan, self._surroundings, self._words = plan, surroundings, words
+        self._whole: dict[str, _Figures] | None = None
+        self._found: dict[int, list[dict[str, Any]]] = {}
+
+    def prepare(self, indices: Sequence[int]) -> None:
+        """Get ready to answer for some curves: many of them cost little more than one."""
+        if self._whole is None and len(indices) > FEW:
+            outcome = self._plan.outcome
+            self._whole = {method: _Figures(self._with(outcome, method)) for method in METHODS}
+
+    def of(self, index: int) -> list[dict[str, Any]]:
+        """Give an entry for each method, in the order of METHODS; empty for a curve that is not planned.
+
+        An entry has ``method``, ``words``, ``chosen``, ``target_mm``, ``cant_mm``, ``tonnes_in_excess_a_day``
+        [t], ``seconds_lost_a_day`` [s], ``limits_passed`` (number), and by class ``unbalance_mm`` [mm] and
+        ``unbalanced_acceleration_ms2`` [m/s2]: positive is deficiency, negative excess.
+        """
+        if not self._plan.outcome.planned[index]:
+            return []
+        if self._whole is not None:
+            return [self._entry(method, figures, index) for method, figures in self._whole.items()]
+        if index not in self._found:
+            outcome = self._plan.outcome
+            answers = {
+                method: try_out(outcome, self._surroundings, [Trial(index)], method=method)[0]
+                for method in METHODS
+                if method != outcome.settings.method
+            }
+            self._found[index] = [
+                self._entry(method, _Figures(answers[method].outcome), answers[method].at[index])
+                if method in answers
+                else self._entry(method, _Figures(outcome), index)
+                for method in METHODS
+            ]
+        return self._found[index]
+
+    def verdict(self, entries: Sequence[dict[str, Any]], step_mm: float) -> str:
+        """Say whether the choice of method matters on a curve.
+
+        Parameters
+        ----------
+        entries : sequence of dict
+            As :meth:`of` gives them.
+        step_mm : float
+            Step of the grid of cants.
+        """
+        if not entries:
+            return ""
+        words = self._words
+        cants = [entry["cant_mm"] for entry in entries]
+        low, high = min(cants), max(cants)
+        if high - low <= _SAME_MM:
+            return f"All methods give {words.cant(low)}."
+        if high - low <= step_mm + _SAME_MM:
+            return f"All methods agree within a step: {words.cant(low)} to {words.cant(high)}."
+        ends = [
+            listed(e["method"] for e in entries if abs(e["cant_mm"] - cant) <= _SAME_MM)
+            for cant in (low, high)
+        ]
+        return (
+            f"The methods lie {words.cant(high - low)} apart, from {words.cant(low)} ({ends[0]}) to "
+            f"{words.cant(high)} ({ends[1]}): a real choice between them."
+        )
+
+    def _with(self, outcome: Outcome, method: str) -> Outcome:
+        if method == outcome.settings.method:
+            return outcome
+        settings = outcome.settings.model_copy(update={"method": method})
+        return plan_arrays(
+            outcome.curves, outcome.traffic, outcome.limits, settings, turnouts=outcome.turnouts
+        )
+
+    def _entry(self, method: str, figures: _Figures, i: int) -> dict[str, Any]:
+        return {
+            "method": method,
+            "words": METHOD_WORDS[method],
+            "chosen": method == self._plan.settings.method,
+            **figures.of(i),
+        }
+
+
+class _Figures:
+    """What one plan does to each class, as arrays."""
+
+    def __init__(self, outcome: Outcome) -> None:
+        line = outcome.line
+        run = np.where(line.runs, outcome.proposed.run_kmh, np.nan)
+        cant = outcome.cant_mm[:, None]
+        balance = equilibrium_cant(run, line.radius_m, line.constant)
+        self._names = outcome.traffic.class_names
+        self._cant = outcome.cant_mm
+        self._target = outcome.target(line, np.nan_to_num(run))[:, 0]
+        self._unbalance: FloatArray = np.round(balance - cant, 2)
+        self._acceleration: FloatArray = np.round(unbalanced_acceleration(balance, cant, line.spacing_mm), 4)
+        tonnes = line.trains * line.mass_t
+        with np.errstate(invalid="ignore"):
+            over = line.runs & (run > 0) & (balance - cant < -_SAME_MM)
+        self._tonnes = np.where(over, tonnes, 0.0).sum(axis=-1)
+        self._lost = outcome.proposed.lost_s
+        self._passed = np.broadcast_to(outcome.proposed.passed.count, self._cant.shape)
+        self._runs = [np.flatnonzero(row).tolist() for row in line.runs]
+
+    def of(self, i: int) -> dict[str, Any]:
+        tonnes = float(self._tonnes[i])
+        runs = self._runs[i]
+        unbalance, acceleration = self._unbalance[i].tolist(), self._acceleration[i].tolist()
+        return {
+            "target_mm": float(self._target[i]),
+            "cant_mm": float(self._cant[i]),
+            "tonnes_in_excess_a_day": tonnes if np.isfinite(tonnes) else None,
+            "seconds_lost_a_day": float(self._lost[i]),
+            "limits_passed": int(self._passed[i]),
+            "unbalance_mm": {self._names[k]: unbalance[k] for k in runs},
+            "unbalanced_acceleration_ms2": {self._names[k]: acceleration[k] for k in runs},
+        }
