@@ -46,6 +46,7 @@ def test_corrected_column_is_read_otherwise_and_can_be_taken_back(browser: Brows
     assert answer.status_code == 303
     browser.post(f"{plan}/trains", TRAINS)
     browser.post(f"{plan}/limits/choose", {"source": "set:typical"})
+    browser.post(f"{plan}/confirm")
     document = json.loads(browser.get(f"{plan}/plan.json").data)
     assert [c["existing_cant_mm"] for c in document["curves"]] == [60, 100, 40]
     field = field_of(browser.get(f"{plan}/list").text, "Height")

@@ -27,6 +27,8 @@ def show(address: str) -> ResponseReturnValue:
 def _page(address: str, problem: str) -> str:
     plan = stored(address)
     reading = reading_of(plan)
+    asked = {question.question for question in reading.questions}
+    refused = [row for row in reading.rejected if row.problem not in asked]
     return render_template(
         "reading.html",
         reading=reading,
@@ -34,7 +36,9 @@ def _page(address: str, problem: str) -> str:
         others=reading_form.other_sheets(reading),
         questions=reading_form.shown_questions(reading),
         problem=problem,
-        rejected=reading.rejected[:SHOWN_PROBLEMS],
+        rejected=refused[:SHOWN_PROBLEMS],
+        refused=len(refused),
+        waiting=len(reading.rejected) - len(refused),
         good=int((~reading.curves.rejected).sum()),
         complete=_complete(plan, reading),
         answered=bool(plan.decided.answers),
