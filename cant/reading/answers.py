@@ -8,9 +8,9 @@ The format, as JSON or TOML::
     }
 
 ``answers`` takes the text of a choice exactly as the question gives it, or a list of them where a column has
-several questions. ``columns`` corrects a column: ``meaning`` is a canonical heading, ``Speed NAME``, or ``""``
-(also the bare text ``"ignore"``) for a column that is not to be used; ``unit`` is a unit's symbol; either may be
-left out. ``"*"`` as sheet stands for every sheet.
+several questions. ``columns`` corrects a column: ``meaning`` is a canonical heading, ``Speed NAME``, or
+``""`` (the bare text ``"ignore"`` as well) for a column that is not to be used; ``unit`` is a unit's symbol;
+either may be left out. ``"*"`` as sheet stands for every sheet.
 """
 
 from __future__ import annotations

@@ -6,12 +6,16 @@ The location text goes to the output untouched; what is made here only orders cu
 from __future__ import annotations
 
 import re
+from typing import TypeVar
 
 import numpy as np
 
+from cant.model.curves import FloatArray
 from cant.reading.cells import Taken
 from cant.reading.numbers import parse_number
 from cant.units import CHAIN_M, MILE_KM, YARD_M, find_unit
+
+Amount = TypeVar("Amount", float, FloatArray)
 
 STATION = "station"
 """Unit of a station of 100 (``1234+56``) whose unit, foot or metre, the column must settle."""
@@ -57,12 +61,12 @@ def take_location(text: str, decimal: str = "") -> Taken:
         return Taken(-value if match["sign"] else value, unit=STATION)
     if _MAST.fullmatch(word):
         return Taken(
-            problem=f"'{text}' names a kilometre and a mast, which is no distance; a chainage such as 12+345 is"
+            problem=f"'{text}' names a kilometre and a mast, no distance; a chainage such as 12+345 is one"
         )
-    value, unit = _bare(word, decimal)
-    if value is None:
+    number, unit = _bare(word, decimal)
+    if number is None:
         return Taken(problem=f"'{text}' is no chainage; one such as 12.345 or 12+345 belongs there")
-    return Taken(value, unit=unit)
+    return Taken(number, unit=unit)
 
 
 def _float(text: str) -> float:
@@ -98,17 +102,17 @@ def _bare(word: str, decimal: str) -> tuple[float | None, str]:
     return parse_number(match["number"], decimal), unit.symbol
 
 
-def miles_chains(miles: float, chains: float) -> float:
+def miles_chains(miles: Amount, chains: Amount) -> Amount:
     """Give miles and chains in kilometres (80 chains to the mile)."""
     return miles * MILE_KM + chains * CHAIN_M / 1000
 
 
-def miles_yards(miles: float, yards: float) -> float:
+def miles_yards(miles: Amount, yards: Amount) -> Amount:
     """Give miles and yards in kilometres (1760 yards to the mile)."""
     return miles * MILE_KM + yards * YARD_M / 1000
 
 
-def split_decimals(values: np.ndarray, digits: int) -> tuple[np.ndarray, np.ndarray]:
+def split_decimals(values: FloatArray, digits: int) -> tuple[FloatArray, FloatArray]:
     """Split ``12.34`` into 12 and 34 (two digits), ``12.0748`` into 12 and 748 (four digits)."""
     whole = np.floor(values + 1e-9)
     return whole, np.round((values - whole) * 10**digits, 6)

@@ -94,7 +94,7 @@ def _ask_meaning(draft: Draft, doubt: Doubt) -> None:
     samples = ", ".join(doubt.column.samples())
     draft.ask(
         doubt.column,
-        f"The heading may mean {' or '.join(doubt.meanings)}, and the values ({samples}) fit each. Which is it?",
+        f"The heading may mean {' or '.join(doubt.meanings)}; the values ({samples}) fit each. Which is it?",
         choices,
         where,
     )
@@ -110,7 +110,7 @@ def _note_hidden(block: Block, rows: list[int], context: Context) -> None:
 
 
 def _filled_names(columns: list[Column]) -> dict[int, list[Value]]:
-    """Let blanks under the name of a line or track repeat it; a new line does not take the last one's track."""
+    """Let blanks below the name of a line or track repeat it; a new line takes no track of the last."""
     line = next((c for c in columns if c.meaning == "Line"), None)
     track = next((c for c in columns if c.meaning == "Track"), None)
     found = {line.index: _filled_down(line.cells, [False] * len(line.cells))} if line else {}

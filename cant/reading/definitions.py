@@ -8,12 +8,14 @@ from collections.abc import Iterable
 from cant.reading.text import fold, squeeze
 from cant.units import find_unit
 
-_DEFINED = re.compile(r"(?:^|[,;.(]\s*)(?P<symbol>[^\W\d_]{1,4}\d?)\s*(?:=|:)\s*(?P<words>[^\W\d_][^,;=()]{2,60})")
+_DEFINED = re.compile(
+    r"(?:^|[,;.(]\s*)(?P<symbol>[^\W\d_]{1,4}\d?)\s*(?:=|:)\s*(?P<words>[^\W\d_][^,;=()]{2,60})"
+)
 _IN_UNIT = re.compile(r"\s+(?:in|en|em|w|v|i)\s+(?P<unit>[^\s]+)\.?$", re.IGNORECASE)
 
 
 def definitions(texts: Iterable[str]) -> dict[str, str]:
-    """Give what titles and legends say of short symbols: folded symbol to words, a unit in brackets behind them."""
+    """Give what titles and legends say of short symbols: folded symbol to words, a unit in brackets."""
     found: dict[str, str] = {}
     for text in texts:
         if len(text) > 400 or ("=" not in text and ":" not in text):

@@ -1,4 +1,4 @@
-"""How a file was understood, for ``cant read``: as JSON, and as a table that a person checks in half a minute."""
+"""How a file was understood, for ``cant read``: JSON, and a table that a person checks in half a minute."""
 
 from __future__ import annotations
 
@@ -89,9 +89,7 @@ def _cells(column: ColumnReading) -> tuple[str, ...]:
 
 
 def _table(rows: list[tuple[str, ...]]) -> list[str]:
-    cut = [
-        tuple(c if len(c) <= _WIDTH else c[: _WIDTH - 1] + "…" for c in row[:-1]) + (row[-1],) for row in rows
-    ]
+    cut = [(*(c if len(c) <= _WIDTH else c[: _WIDTH - 1] + "…" for c in row[:-1]), row[-1]) for row in rows]
     widths = [max(len(row[i]) for row in cut) for i in range(len(cut[0]) - 1)]
     return [
         "  ".join([*(c.ljust(w) for c, w in zip(row, widths, strict=False)), row[-1]]).rstrip() for row in cut

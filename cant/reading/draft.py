@@ -1,4 +1,4 @@
-"""One block of a curve sheet while it is being understood: rows, columns, numbers, and what is wrong with rows."""
+"""One block of a curve sheet while it is being understood: rows, columns, numbers, faults of rows."""
 
 from __future__ import annotations
 
@@ -119,7 +119,7 @@ class Draft:
 
     @property
     def canonical(self) -> bool:
-        """Whether every understood heading is the canonical one: then units that are not named are the usual ones."""
+        """Whether every understood heading is canonical: then units that are not named are the usual ones."""
         return all(item.is_canonical for item in self.columns if item.meaning)
 
     @property

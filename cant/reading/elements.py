@@ -1,10 +1,12 @@
 """Element lists (straight, transition, circle row by row) turned into one row a curve.
 
-A circle is a curve; the transitions that touch it in the list are its transitions, and no transition beside it
-is a length of 0: an element list leaves nothing out.
+A circle is a curve; the transitions that touch it in the list are its transitions, and no transition beside
+it is a length of 0: an element list leaves nothing out.
 """
 
 from __future__ import annotations
+
+from dataclasses import replace
 
 import numpy as np
 
@@ -156,13 +158,7 @@ def _shapes(draft: Draft, kinds: list[str | None]) -> dict[int, str]:
 
 
 def _taken(draft: Draft, indices: list[int]) -> Draft:
-    columns = [
-        Column(
-            c.index, c.heading, c.meaning, c.unit, c.unit_from, c.train, c.train_name, c.confidence, c.note, c.literal,
-            [c.cells[i] for i in indices],
-        )
-        for c in draft.columns
-    ]  # fmt: skip
+    columns = [replace(c, cells=[c.cells[i] for i in indices]) for c in draft.columns]
     return Draft(draft.block, columns, draft.rows[indices], draft.decimal, draft.context)
 
 
@@ -170,6 +166,6 @@ def _note(draft: Draft, kinds: list[str | None]) -> None:
     where = f"sheet '{draft.sheet}': " if draft.sheet else ""
     count = {kind: kinds.count(kind) for kind in (STRAIGHT_ELEMENT, TRANSITION, CIRCLE)}
     draft.context.notes.append(
-        f"{where}a list of elements: {count[CIRCLE]} circles are the curves, {count[TRANSITION]} transitions were "
-        f"given to them, {count[STRAIGHT_ELEMENT]} straights set apart"
+        f"{where}a list of elements: {count[CIRCLE]} circles are the curves, {count[TRANSITION]} transitions "
+        f"were given to them, {count[STRAIGHT_ELEMENT]} straights set apart"
     )

@@ -3,7 +3,6 @@
 from __future__ import annotations
 
 import re
-from collections import Counter
 from collections.abc import Iterable, Sequence
 from dataclasses import dataclass
 
@@ -75,13 +74,13 @@ def gather(columns: Sequence[Column], texts: Iterable[str]) -> Evidence:
 
 def language_of(columns: Sequence[Column]) -> str:
     """Give the language that most headings are in, ``en`` where it cannot be told."""
-    votes: Counter[str] = Counter()
+    votes: dict[str, float] = {}
     for item in columns:
         found = {m.language for m in matches(item.heading.words) if m.score == 1.0 and m.language}
         found |= {m.language for m in matches(fold(item.heading.text)) if m.score == 1.0 and m.language}
         if found and "en" not in found:
             for language in found:
-                votes[language] += 1 / len(found)
+                votes[language] = votes.get(language, 0.0) + 1 / len(found)
         elif found == {"en"}:
-            votes["en"] += 1
-    return votes.most_common(1)[0][0] if votes else "en"
+            votes["en"] = votes.get("en", 0.0) + 1
+    return max(votes, key=lambda language: votes[language]) if votes else "en"

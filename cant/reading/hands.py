@@ -105,8 +105,8 @@ def _from_signs(draft: Draft, signs: np.ndarray, item: Column) -> None:
         where = [int(i) for i in np.flatnonzero(signs != 0)]
         draft.ask(
             item,
-            "Values carry a sign and nothing says which hand it means: positive is left-hand in some lists and "
-            "right-hand in others. Which is it?",
+            "Values carry a sign and nothing says which hand it means: positive is left-hand in some lists "
+            "and right-hand in others. Which is it?",
             _CHOICES,
             where,
         )
@@ -157,7 +157,7 @@ def _free_cant(draft: Draft) -> None:
 
 
 def sign_rule(texts: Iterable[str]) -> int:
-    """Tell from headings and legends what a sign means: 1 where positive is left-hand, -1 right, 0 not said."""
+    """Tell from legends what a sign means: 1 where positive is left-hand, -1 right-hand, 0 not said."""
     words = lexicon("hands")
     for text in texts:
         for pattern in (_SIGN, _WORD_SIGN):

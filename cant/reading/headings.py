@@ -23,7 +23,8 @@ _NOTATIONS = (
     (re.compile(r"d(?:eg)?[ .:-]+m(?:in)?(?:[ .:-]+s(?:ec)?)?", re.IGNORECASE), DEGREES_MINUTES),
 )
 _CHORD = re.compile(
-    r"(?:(?:c|corda|chord|corde|cuerda|sehne|base)\s*[/=]?\s*)?(?<![\w.,])(\d{1,3}(?:[.,]\d+)?)\s*[- ]?(m|ft|feet)\b"
+    r"(?:(?:c|corda|chord|corde|cuerda|sehne|base)\s*[/=]?\s*)?"
+    r"(?<![\w.,])(\d{1,3}(?:[.,]\d+)?)\s*[- ]?(m|ft|feet)\b"
     r"(?:\s*(?:chord|sehne|corde|cuerda|corda|c(?=\W|$)))?",
     re.IGNORECASE,
 )
@@ -261,10 +262,15 @@ def _phrases(tokens: list[str]) -> list[tuple[str, int]]:
 
 
 def _shortened(words: str, strong: dict[str, tuple[tuple[str, str], ...]]) -> dict[str, Match]:
-    """Understand a shortened heading: ``richt`` where every known heading of one word that starts so agrees."""
+    """Understand a shortened heading where every known heading of one word that starts so agrees."""
     if " " in words or len(words) < 4:
         return {}
-    hits = {m: lang for key, meanings in strong.items() if key.startswith(words) and " " not in key for m, lang in meanings}
+    hits = {
+        m: lang
+        for key, meanings in strong.items()
+        if key.startswith(words) and " " not in key
+        for m, lang in meanings
+    }
     return {m: Match(m, 0.6, lang) for m, lang in hits.items()} if len(hits) == 1 else {}
 
 

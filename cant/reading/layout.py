@@ -82,7 +82,7 @@ def heading_score(text: str) -> float:
 
 
 def _scores(cells: list[Value]) -> list[float]:
-    return [heading_score(cell) if is_text(cell) else 0.0 for cell in cells]  # type: ignore[arg-type]
+    return [heading_score(cell) if is_text(cell) else 0.0 for cell in cells]
 
 
 def _has_figures(cells: list[Value]) -> bool:

@@ -9,6 +9,7 @@ from cant.reading.columns import column, strong_headings, weak_headings
 from cant.reading.headings import MILES_CHAINS, MILES_YARDS, analyse
 from cant.reading.meanings import Column
 from cant.reading.text import fold
+from cant.reading.words import lexicon
 from cant.units import find_unit, unit
 
 _UNIT_WORD = (
@@ -21,12 +22,6 @@ _SAID = re.compile(
     rf"(?:in|en|em|w|v|i)\b)\s*(?P<unit>{_UNIT_WORD})(?![\w/])",
     re.IGNORECASE,
 )
-_PLAIN = {
-    "metern": "m", "meter": "m", "metre": "m", "metres": "m", "metros": "m", "metro": "m", "metri": "m", "mètre": "m",
-    "mètres": "m", "metrach": "m", "metrech": "m", "millimetern": "mm", "millimeter": "mm", "millimètre": "mm",
-    "millimètres": "mm", "milímetro": "mm", "milímetros": "mm", "millimetri": "mm", "milimetrach": "mm",
-    "millimetre": "mm", "millimetres": "mm", "kilometre": "km", "kilometres": "km", "yard": "yd", "zoll": "in",
-}  # fmt: skip
 _FAMILIES: tuple[tuple[str, ...], ...] = (
     ("Start", "End", "Transition start", "Transition end"),
     ("Radius", "Radius at start", "Radius at end"),
@@ -62,7 +57,7 @@ def units_said(texts: Iterable[str]) -> dict[str, str]:
 
 
 def _symbol(word: str) -> str:
-    known = find_unit(_PLAIN.get(word.casefold(), word))
+    known = find_unit(lexicon("unit_words").get(fold(word), word))
     return known.symbol if known else ""
 
 
@@ -88,7 +83,7 @@ def apply_legends(columns: Sequence[Column], texts: Iterable[str]) -> None:
 
 
 def notation_said(texts: Iterable[str]) -> str:
-    """Give the notation of chainages that a title names (``mileages in miles.chains``), "" where none does."""
+    """Give the notation of chainages that a title names (``in miles.chains``), "" where none does."""
     for text in texts:
         for match in re.finditer(r"\bm(?:iles)?[.,/ &]+(?:chains|ch|yards|yds)\b", text, re.IGNORECASE):
             taken = analyse(f"x ({match.group()})")

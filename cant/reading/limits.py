@@ -51,7 +51,8 @@ def _refuse_unknown_conditions(sheet: Sheet, table: RecordTable) -> None:
             for record in table.records
         ):
             place = table.records[0][next(iter(table.records[0]))].place.at(table.where.header_row, index)
-            message = f"the heading '{heading}' over numbers is not known; the headings are {known_headings('limits')}"
+            known = known_headings("limits")
+            message = f"the heading '{heading}' over numbers is not known; the headings are {known}"
             raise InputError(message, place)
 
 

@@ -1,7 +1,8 @@
 """Chainages of a block: which unit or notation bare numbers are in, told from headings, spans and lengths.
 
-``12.0748`` is 12 miles 748 yards or 12.0748 miles, ``12.34`` 12 miles 34 chains or 12.34 miles or km, ``45320``
-metres or feet: the columns of a block are looked at together, and asked about where they do not settle it.
+``12.0748`` is 12 miles 748 yards or 12.0748 miles, ``12.34`` 12 miles 34 chains or 12.34 miles or km,
+``45320`` metres or feet: the columns of a block are looked at together, and asked about where they do not
+settle it.
 """
 
 from __future__ import annotations

@@ -7,14 +7,14 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass, field, replace
-from itertools import islice
+from itertools import islice, pairwise
 
 from cant.files.grid import Value
 from cant.reading.answers import Answers
 from cant.reading.columns import column
+from cant.reading.definitions import definitions
 from cant.reading.headings import Heading, Match, analyse, matches
 from cant.reading.layout import Block, BlockColumn
-from cant.reading.definitions import definitions
 from cant.reading.numbers import parse_number
 from cant.reading.text import fold, is_blank, shown, squeeze
 from cant.reading.trains import known_train, names_only_trains, says_speed, train_words
@@ -123,7 +123,7 @@ def _as_defined(source: BlockColumn, said: dict[str, str]) -> BlockColumn:
 
 def _continue_speeds(columns: list[Column]) -> None:
     """Let short unknown headings right of a speed column go on with its row: ``V rango A | B | C``."""
-    for left, item in zip(columns, columns[1:], strict=False):
+    for left, item in pairwise(columns):
         words = item.heading.words
         unsure = not item.meaning or item.confidence == "likely"
         if left.meaning != "Speed" or not left.train or not words or not unsure or len(words) > 8:
@@ -225,7 +225,23 @@ def _rules_speed_out(best: Match, words: str) -> bool:
     return best.score >= 0.4 and best.meaning != "Curve" and not says_speed(first) and not known_train(first)
 
 
-_PLACES = frozenset("km chainage ch station sta pk mp mileage milepost location position kilometre kilometer".split())
+_PLACES = frozenset(
+    [
+        "km",
+        "chainage",
+        "ch",
+        "station",
+        "sta",
+        "pk",
+        "mp",
+        "mileage",
+        "milepost",
+        "location",
+        "position",
+        "kilometre",
+        "kilometer",
+    ]
+)
 
 
 def _tell_ends_apart(result: Column, words: str) -> None:

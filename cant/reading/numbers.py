@@ -39,8 +39,8 @@ def parse_number(text: str, decimal: str = "") -> float | None:
     text : str
         Such as ``1.200``, ``1 200,5``, ``-20``, ``3 1/2``, ``1½``.
     decimal : str
-        ``","`` or ``"."`` where the sheet has shown which mark is the decimal one; "" where it has not: then a
-        single mark before exactly three digits is a decimal point and a decimal comma is a thousands comma.
+        ``","`` or ``"."`` where the sheet has shown which mark is the decimal one; "" where it has not: then
+        a single mark before exactly three digits is a decimal point and a decimal comma is a thousands comma.
     """
     word = " ".join(text.replace("−", "-").replace("–", "-").split())
     word = _VULGAR_SIGN.sub(lambda m: " " + _VULGAR[m.group()], word).strip()
@@ -81,7 +81,7 @@ def _with_point(word: str, decimal: str) -> str:
 
 
 def decimal_mark(texts: Iterable[str]) -> str:
-    """Tell from the texts of a sheet which mark is the decimal one: ``","``, ``"."`` or "" where none shows it."""
+    """Tell from the texts of a sheet which mark is the decimal one, "" where none shows it."""
     commas = points = 0
     for text in texts:
         commas += bool(_COMMA_DECIMAL.search(text))

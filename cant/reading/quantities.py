@@ -1,4 +1,4 @@
-"""From the cells of a block to quantities in canonical units: the order in which columns settle one another."""
+"""From the cells of a block to quantities in canonical units: in which order columns settle one another."""
 
 from __future__ import annotations
 
@@ -137,7 +137,7 @@ def _single(draft: Draft, item: Column, numbers: Numbers, unit: str, target: str
 
 
 def _place(draft: Draft, located: dict[str, FloatArray]) -> None:
-    """Set the arc's ends; from the points of the transitions make their lengths where no column gives them."""
+    """Set the arc's ends; from the transitions' points make their lengths where no column gives them."""
     for name, attribute in (("Start", "start_km"), ("End", "end_km")):
         if name in located:
             draft.numbers[attribute] = located[name]
@@ -192,7 +192,7 @@ def _situations(draft: Draft) -> None:
 
 
 def _remarks(draft: Draft) -> None:
-    """Take situation words out of remarks where the limits have rules for them: that only makes limits stricter."""
+    """Take situations out of remarks where limits have rules for them: that only makes limits stricter."""
     limits = draft.context.limits
     item = draft.column("Remarks")
     ruled = (

@@ -60,7 +60,7 @@ def settle_radius(draft: Draft, evidence: Evidence, speed_kmh: FloatArray) -> Fl
 
 
 def _mend_thousands(draft: Draft, item: Column, numbers: Numbers, evidence: Evidence) -> None:
-    """Read 1.2 as 1200 among radii of hundreds: 1.200 with a thousands dot, kept as a number (or kilometres)."""
+    """Read 1.2 as 1200 among radii of hundreds: 1.200 with a thousands dot, or kilometres."""
     sizes = np.abs(numbers.values)
     with np.errstate(invalid="ignore"):
         tiny = (sizes < 20) & (sizes >= 0.1)
@@ -233,8 +233,8 @@ def _degree_kind(
     where = [int(i) for i in np.flatnonzero(missing)]
     draft.ask(
         item,
-        "A degree of curve over 100 ft (or 30.5 m) is 1746 m / degree, over 20 m it is 1146 m / degree; the file "
-        "does not say which. Over which length is it?",
+        "A degree of curve over 100 ft (or 30.5 m) is 1746 m / degree, over 20 m it is 1146 m / degree; the "
+        "file does not say which. Over which length is it?",
         choices,
         where,
     )
@@ -255,8 +255,8 @@ def _contradictions(
         draft.fail(
             int(index),
             item,
-            f"it makes a radius of {abs(other[index]):.0f} m, the row says {abs(radius[index]):.0f} m; one of them "
-            "is wrong",
+            f"it makes a radius of {abs(other[index]):.0f} m, the row says {abs(radius[index]):.0f} m; one "
+            "of them is wrong",
         )
 
 

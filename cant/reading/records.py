@@ -187,7 +187,10 @@ def _columns(
             continue
         meaning = meanings[0]
         if meaning in found:
-            message = f"the heading '{heading}' is there twice ({found[meaning].heading}); each column belongs there once"
+            first = found[meaning].heading
+            message = (
+                f"the heading '{heading}' is there twice ('{first}' too); each column belongs there once"
+            )
             raise InputError(message, place.at(header, index))
         found[meaning] = _column_reading(sheet, header, index, meaning, table, bracket, place)
     _need_required(table, found, place.at(header))

@@ -185,8 +185,38 @@ def _is_total(text: str, words: dict[str, str]) -> bool:
 
 
 _COUNTED = frozenset(
-    "curve curves length of km m courbes courbe longueur curvas longitud curve sviluppo bogen kurven lange oblouky "
-    "oblouku luki lukow kurver kurvor radius cant page pages sheet track line section".split()
+    [
+        "curve",
+        "curves",
+        "length",
+        "of",
+        "km",
+        "m",
+        "courbes",
+        "courbe",
+        "longueur",
+        "curvas",
+        "longitud",
+        "curve",
+        "sviluppo",
+        "bogen",
+        "kurven",
+        "lange",
+        "oblouky",
+        "oblouku",
+        "luki",
+        "lukow",
+        "kurver",
+        "kurvor",
+        "radius",
+        "cant",
+        "page",
+        "pages",
+        "sheet",
+        "track",
+        "line",
+        "section",
+    ]
 )
 
 

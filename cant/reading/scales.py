@@ -106,7 +106,7 @@ def _choose_cant(draft: Draft, item: Column, fitting: list[str], evidence: Evide
     where = [int(i) for i in np.flatnonzero(~np.isnan(bare))]
     draft.ask(
         item,
-        f"The cant names no unit; values such as {item.samples(1)[0]} may be {' or '.join(choices)}. Which is it?",
+        f"The cant names no unit; {item.samples(1)[0]} may be {' or '.join(choices)}. Which is it?",
         choices,
         where,
     )

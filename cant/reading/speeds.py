@@ -78,7 +78,7 @@ def _names(draft: Draft, item: Column, parts: int) -> list[str] | None:
     where = [i for i, c in enumerate(item.cells) if is_text(c) and "/" in str(c)]
     draft.ask(
         item,
-        f"Two speeds stand in one cell ({squeeze(str(item.cells[where[0]]))}) and nothing says whose they are. Which?",
+        f"Two speeds stand in one cell ({squeeze(str(item.cells[where[0]]))}) and nothing says whose. Which?",
         choices,
         where,
     )
@@ -112,9 +112,17 @@ def _part(item: Column, position: int, name: str) -> Column:
             cells.append(cell)
     heading = replace(analyse(item.heading.text), brackets=())
     return Column(
-        item.index, heading, "Speed", item.unit, item.unit_from, fold(name), name, "likely", "one of several in a cell",
-        False, cells,
-    )  # fmt: skip
+        item.index,
+        heading,
+        "Speed",
+        item.unit,
+        item.unit_from,
+        train=fold(name),
+        train_name=name,
+        confidence="likely",
+        note="one of several in a cell",
+        cells=cells,
+    )
 
 
 def settle_speeds(draft: Draft) -> None:
@@ -170,13 +178,9 @@ def _kilometres_an_hour(draft: Draft, item: Column) -> FloatArray:
                 draft.fail(index, item, "two speeds stand in one cell; give each its own column")
     if item.train:
         with np.errstate(invalid="ignore"):
-            wrong = np.flatnonzero((values < 0) & (values != DOES_NOT_RUN))
-        for index in wrong:
-            draft.fail(int(index), item, "a speed is 0 or more; none where the class does not run")
-            values[index] = np.nan
-        minus_one = [i for i in np.flatnonzero(values == DOES_NOT_RUN) if numbers.states.get(int(i)) != NONE]
-        for index in minus_one:
-            draft.fail(int(index), item, "a speed is 0 or more; none where the class does not run")
+            negative = [int(i) for i in np.flatnonzero(values < 0)]
+        for index in (i for i in negative if numbers.states.get(i) != NONE):
+            draft.fail(index, item, "a speed is 0 or more; none where the class does not run")
             values[index] = np.nan
     return values
 

@@ -26,7 +26,8 @@ def read_traffic(sheet: Sheet, file: str) -> tuple[Traffic, RecordTable]:
         key = (row.name.casefold(), row.line, row.track)
         if key in seen:
             where = f" on line '{row.line}', track '{row.track}'" if row.line or row.track else ""
-            message = f"class '{row.name}' is there twice{where} (row {seen[key].place.row} too); each belongs there once"
+            first = seen[key].place.row
+            message = f"class '{row.name}' is there twice{where} (row {first} too); each belongs there once"
             raise InputError(message, row.place)
         seen[key] = row
     return Traffic.of(rows), table

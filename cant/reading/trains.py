@@ -54,7 +54,7 @@ def known_train(words: str) -> str:
 
 
 def names_only_trains(words: str) -> bool:
-    """Whether folded heading words name a kind of train and nothing else (``booked goods``, no ``goods tonnage``)."""
+    """Whether words name a kind of train and nothing else: ``booked goods``, not ``goods tonnage``."""
     known = {*lexicon("categories"), *lexicon("train_words"), *_SPEED_WORDS, *_FILLERS}
     return bool(known_train(words)) and all(token in known for token in words.split())
 

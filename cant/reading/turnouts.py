@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from typing import Literal
 
 from cant.errors import InputError
 from cant.files.grid import Sheet
@@ -74,9 +75,9 @@ def _positive(cell: Cell, unit: str) -> float:
     return value
 
 
-def _hand(cell: Cell) -> str:
+def _hand(cell: Cell) -> Literal["L", "R"]:
     found = None if cell.blank else meaning_of("hands", cell.text)
     if found is None:
         message = f"'{cell.text}' is no hand; L or R belongs there"
         raise InputError(message, cell.place)
-    return found
+    return "L" if found == "L" else "R"

@@ -1,7 +1,7 @@
-"""Headings of one or two letters (R, D, E, h, p): decided by the values, by the other columns and the language.
+"""Headings of one or two letters (R, D, E, h, p): decided by values, other columns and the language.
 
-``D`` is a degree, a cant or a deficiency. What the values exclude is dropped, what another column already is as
-well; where two meanings remain, the file is asked about, never guessed.
+``D`` is a degree, a cant or a deficiency. What the values exclude is dropped, and what another column already
+is; where two meanings remain, the file is asked about, never guessed.
 """
 
 from __future__ import annotations

@@ -1,4 +1,4 @@
-"""Words in cells (words.toml): hands, situations, elements, shapes, kinds of train, totals, in many languages."""
+"""Words in cells and headings (words.toml): hands, situations, elements, trains, totals, in all languages."""
 
 from __future__ import annotations
 

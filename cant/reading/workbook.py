@@ -31,19 +31,7 @@ from cant.reading.situations import known_situations
 from cant.reading.text import fold
 from cant.reading.traffic import read_traffic
 from cant.reading.turnouts import read_turnouts
-
-ROLE_NAMES: dict[str, str] = {
-    "traffic": "traffic", "verkehr": "traffic", "trafic": "traffic", "trafico": "traffic", "traffico": "traffic",
-    "trafego": "traffic", "ruch": "traffic", "doprava": "traffic", "trafikk": "traffic", "trafik": "traffic",
-    "trains": "traffic",
-    "limits": "limits", "grenzwerte": "limits", "limites": "limits", "limiti": "limits", "limity": "limits",
-    "grenser": "limits", "gransvarden": "limits", "graenser": "limits",
-    "settings": "settings", "einstellungen": "settings", "reglages": "settings", "ajustes": "settings",
-    "impostazioni": "settings", "ustawienia": "settings", "nastaveni": "settings", "innstillinger": "settings",
-    "installningar": "settings", "indstillinger": "settings", "definicoes": "settings",
-    "turnouts": "turnouts", "weichen": "turnouts",
-}  # fmt: skip
-"""Folded names of sheets that hold something else than curves."""
+from cant.reading.words import lexicon
 
 
 @dataclass
@@ -144,7 +132,7 @@ def _roles(workbook: Workbook) -> dict[str, list[Sheet]]:
 
 
 def _role(sheet: Sheet) -> str:
-    named = ROLE_NAMES.get(fold(sheet.name))
+    named = lexicon("sheets").get(fold(sheet.name))
     if named is not None:
         return named
     if not any(sheet.rows):
@@ -186,10 +174,10 @@ def _read_tables(
     if found := _table_sheet("traffic", roles, workbook, traffic):
         tables.traffic, table = read_traffic(*found)
         _note_table(tables, table.columns, table.where, table.unknown, found[0])
-    if limits_table is not None or tables.limits is None:
-        if found := _table_sheet("limits", roles, workbook, limits_table):
-            tables.limits, table = read_limits(*found)
-            _note_table(tables, table.columns, table.where, table.unknown, found[0])
+    wanted = limits_table is not None or tables.limits is None
+    if wanted and (found := _table_sheet("limits", roles, workbook, limits_table)):
+        tables.limits, table = read_limits(*found)
+        _note_table(tables, table.columns, table.where, table.unknown, found[0])
     if found := _table_sheet("settings", roles, workbook, settings):
         tables.settings, where, columns = read_settings(*found, methods)
         _note_table(tables, columns, where, {}, found[0])
@@ -207,7 +195,7 @@ def _table_sheet(
     if not sheets:
         message = f"the file holds no table; a {role} table belongs there"
         raise InputError(message, Place(given.file))
-    chosen = [s for s in sheets if ROLE_NAMES.get(fold(s.name)) == role] or [
+    chosen = [s for s in sheets if lexicon("sheets").get(fold(s.name)) == role] or [
         s for s in sheets if _role(s) == role
     ]
     if len(chosen) > 1:
@@ -231,8 +219,8 @@ def _read_curves(sheets: list[Sheet], workbook: Workbook, context: Context) -> l
     drafts = [draft for sheet in sheets for draft in read_sheet(sheet, context)]
     if not drafts:
         message = (
-            "no curve table found: a header row with at least a radius (or degree or versine) is needed, such as "
-            "Curve, Start, End, Radius, Hand, Cant, Speed"
+            "no curve table found: a header row with at least a radius (or degree or versine) is needed, "
+            "such as Curve, Start, End, Radius, Hand, Cant, Speed"
         )
         raise InputError(
             message, Place(workbook.file, workbook.sheets[0].name if len(workbook.sheets) == 1 else "")

@@ -1,4 +1,4 @@
-"""The empty workbook of ``cant template``: canonical headings, notes, drop-downs, one marked example row a sheet.
+"""The empty workbook of ``cant template``: canonical headings, notes, drop-downs, marked example rows.
 
 Made from the columns dictionary, so that it can never ask for what the reader does not know.
 """
@@ -79,7 +79,10 @@ _SETTINGS: tuple[tuple[str, str], ...] = (
     ("Tiers", "normal when blank; or normal, exceptional"),
     ("Keep within", "mm; today's cant stays where it lies no further than this from the best"),
     ("Maintenance allowance", "mm, taken off a ceiling on cant"),
-    ("Fraction of fastest", "method fraction: share of the fastest class's equilibrium cant, 0.65 when blank"),
+    (
+        "Fraction of fastest",
+        "method fraction: share of the fastest class's equilibrium cant, 0.65 when blank",
+    ),
     ("Underbalance", "method underbalance: mm under the equilibrium cant of the class with most tonnes"),
     ("Today within", "method today: mm; today's cant is the target where it is this close to that of rms"),
     ("Units", "metric or us: in which units the plan is shown"),
@@ -139,8 +142,8 @@ def _table_sheet(sheet: Worksheet, table: str) -> None:
 def _speed_of_class(sheet: Worksheet, at: int) -> None:
     cell = sheet.cell(row=1, column=at)
     cell.comment = Comment(
-        "For any class of the traffic table a column 'Speed NAME' may follow here: its speed on the curve, none "
-        "where it does not run.",
+        "For any class of the traffic table a column 'Speed NAME' may follow here: its speed on the curve, "
+        "none where it does not run.",
         "cant",
         height=110,
         width=260,
@@ -195,13 +198,15 @@ def _settings_sheet(sheet: Worksheet) -> None:
 
 
 _HOW = (
-    "One row a curve on sheet Curves; several curve sheets are fine. Start, End and Length are those of the circular arc.",
-    "A unit in brackets behind a heading holds for the column: change (m) to (ft), (mm) to (in), (km/h) to (mph).",
+    "One row a curve on sheet Curves; several curve sheets are fine. Start, End and Length are those of the "
+    "circular arc.",
+    "A unit in brackets behind a heading holds for the column: change (m) to (ft), (mm) to (in), (km/h) to "
+    "(mph).",
     "A blank transition means not known; 0 means none. Leave cells blank where nothing is known.",
     "Columns of your own may stand anywhere: they come back untouched.",
     f"Rows that carry the words '{EXAMPLE_MARK}' are ignored; write over them or delete them.",
-    "The limits are those of your railway's own standard. A plan serves a competent, licensed engineer, who checks "
-    "and approves it; the standard and local codes rule.",
+    "The limits are those of your railway's own standard. A plan serves a competent, licensed engineer, who "
+    "checks and approves it; the standard and local codes rule.",
 )
 
 

@@ -1,4 +1,4 @@
-# ruff: noqa: E501, W291 - rows of lists stand as the user has them
+# ruff: noqa: E501 - rows of lists stand as the user has them
 """Invented curve lists as they come: each a text of cells, with what a careful colleague reads in them.
 
 Lines, places and figures are invented. A cell ends at ``|``; a bare number with a point becomes a number cell,
@@ -58,6 +58,7 @@ class Messy:
     extra: dict[str, Any] = field(default_factory=dict)
 
     def read(self):  # type: ignore[no-untyped-def]
+        """Read the list with its answers."""
         return read_workbook(Workbook(f"{self.name}.xlsx", "xlsx", self.sheets), answers=self.answers)
 
 
@@ -80,7 +81,7 @@ def curve(
     t_in: float | None = None, t_out: float | None = None, cant: float | None = None, speed: float | None = None,
     **more: Any,
 ) -> dict[str, Any]:  # fmt: skip
-    """What is read of one curve; None is a blank."""
+    """Give what is read of one curve; None is a blank."""
     return {
         "radius_m": radius, "hand": hand, "start_km": start, "end_km": end, "transition_in_m": t_in,
         "transition_out_m": t_out, "cant_mm": cant, "speed_kmh": speed, **more,

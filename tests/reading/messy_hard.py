@@ -1,4 +1,4 @@
-# ruff: noqa: E501, W291 - rows of lists stand as the user has them
+# ruff: noqa: E501 - rows of lists stand as the user has them
 """Invented lists with the traps that catch a hurried reader."""
 
 from __future__ import annotations

@@ -1,4 +1,4 @@
-# ruff: noqa: E501, W291 - rows of lists stand as the user has them
+# ruff: noqa: E501 - rows of lists stand as the user has them
 """More invented lists: layouts and notations that the first collection has not."""
 
 from __future__ import annotations

@@ -16,11 +16,12 @@ from cant.units import UNITS
 
 LANGUAGES = ("en", "de", "fr", "es", "it", "pt", "pl", "cs", "no", "sv", "da")
 CONTRACT = {
-    "curves": "Line, Track, Curve, Start, End, Radius, Hand, Length, Transition in, Transition out, Cant ramp in, "
-    "Cant ramp out, Shape, Cant, Cant fixed, Cant at most, Cant at least, Speed, Situation",
-    "traffic": "Class, Category, Speed, Trains per day, Mass, Roll coefficient, Centre of gravity, Regular, Line, Track",
-    "limits": "Quantity, Normal, Exceptional, Unit, Category, Situation, Speed over, Speed up to, Radius over, "
-    "Radius up to, Per metre of radius, Kind, Clause, Note",
+    "curves": "Line, Track, Curve, Start, End, Radius, Hand, Length, Transition in, Transition out, "
+    "Cant ramp in, Cant ramp out, Shape, Cant, Cant fixed, Cant at most, Cant at least, Speed, Situation",
+    "traffic": "Class, Category, Speed, Trains per day, Mass, Roll coefficient, Centre of gravity, Regular, "
+    "Line, Track",
+    "limits": "Quantity, Normal, Exceptional, Unit, Category, Situation, Speed over, Speed up to, "
+    "Radius over, Radius up to, Per metre of radius, Kind, Clause, Note",
 }
 
 

@@ -1,4 +1,4 @@
-"""Whole lists as engineers have them: every value as a careful colleague reads it, no row lost, few questions."""
+"""Whole lists as engineers have them: every value read as meant, no row lost, few questions."""
 
 from __future__ import annotations
 

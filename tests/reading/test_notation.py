@@ -1,4 +1,4 @@
-"""Notations of single values: numbers, fractions, chainages, degrees, versines, against pint and published tables."""
+"""Notations of single values: numbers, chainages, degrees, versines, against pint and published tables."""
 
 from __future__ import annotations
 
@@ -73,8 +73,8 @@ def test_inches_and_sixteenths_are_read_back(whole: int, sixteenths: int) -> Non
 
 
 _PINT_NAMES = {
-    "mm": "millimeter", "cm": "centimeter", "m": "meter", "km": "kilometer", "in": "inch", "ft": "foot", "yd": "yard",
-    "ch": "chain", "mi": "mile", "km/h": "kilometer/hour", "mph": "mile/hour", "m/s": "meter/second",
+    "mm": "millimeter", "cm": "centimeter", "m": "meter", "km": "kilometer", "in": "inch", "ft": "foot",
+    "yd": "yard", "ch": "chain", "mi": "mile", "km/h": "kilometer/hour", "mph": "mile/hour", "m/s": "meter/second",
 }  # fmt: skip
 
 
@@ -177,9 +177,9 @@ def test_what_is_no_degree_is_refused(text: str) -> None:
 
 
 def test_one_degree_of_each_kind_is_the_printed_radius() -> None:
-    """Radii of one degree as handbooks print them: 5729.58 ft by arc, 5729.65 ft by chord of 100 ft, 1145.9 m by 20 m.
+    """Radii of one degree as handbooks print them: 5729.58 ft (arc), 5729.65 ft (chord of 100 ft), 1145.9 m.
 
-    Common practice of route surveying; the 1750 / degree of Indian practice is its rounding for 30.5 m chords.
+    Common practice of route surveying; the 1750 / degree of Indian practice rounds that of 30.5 m chords.
     """
     one = np.array([1.0])
     assert radius_of_degree(one, "100 ft arc")[0] / 0.3048 == pytest.approx(5729.578, abs=0.001)
@@ -197,7 +197,7 @@ def test_a_degree_is_the_angle_that_its_chord_or_arc_spans(kind: str, degrees: f
 
 
 def test_versines_give_the_radii_of_the_manuals() -> None:
-    """50000 / v for a 20 m chord, 12500 / v for one of 10 m (v in mm, track maintenance manuals); 83.33 mm is 600 m."""
+    """50000 / v for a 20 m chord, 12500 / v for 10 m (v in mm), as track maintenance manuals print them."""
     versines = np.array([50.0, 83.3333333, 100.0]) / 1000
     assert radius_of_versine(versines, 20.0) == pytest.approx([1000.0, 600.0, 500.0])
     assert radius_of_versine(np.array([0.0125]), 10.0) == pytest.approx([1000.0])

@@ -1,4 +1,4 @@
-"""Traffic, limits, settings and turnouts: canonical tables read to the letter, and every mistake one clear error."""
+"""Traffic, limits, settings and turnouts read to the letter, and every mistake one clear error."""
 
 from __future__ import annotations
 
