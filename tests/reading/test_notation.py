@@ -74,7 +74,8 @@ def test_inches_and_sixteenths_are_read_back(whole: int, sixteenths: int) -> Non
 
 _PINT_NAMES = {
     "mm": "millimeter", "cm": "centimeter", "m": "meter", "km": "kilometer", "in": "inch", "ft": "foot",
-    "yd": "yard", "ch": "chain", "mi": "mile", "km/h": "kilometer/hour", "mph": "mile/hour", "m/s": "meter/second",
+    "yd": "yard", "ch": "chain", "mi": "mile",
+    "km/h": "kilometer/hour", "mph": "mile/hour", "m/s": "meter/second",
 }  # fmt: skip
 
 
