@@ -8,7 +8,7 @@ from __future__ import annotations
 
 import threading
 from collections import OrderedDict
-from collections.abc import Callable, Sequence
+from collections.abc import Callable, Iterator, Sequence
 from dataclasses import replace
 from typing import Any, Generic, TypeVar
 
@@ -17,7 +17,7 @@ from cant.explaining import explain
 from cant.model.plan import Finding
 from cant.model.reading import Reading
 from cant.planning import Plan
-from cant.service import PlannedLine
+from cant.service import AnnotatedFile, PlannedLine
 from webapp.listing import Listing
 from webapp.measures import SYSTEMS
 from webapp.store import StoredPlan
@@ -84,6 +84,8 @@ class Computed:
     def __init__(self, planned: PlannedLine) -> None:
         self.planned = planned
         self.listing = Listing(planned)
+        self.speaking = threading.RLock()
+        """Held while words are made: they are made when asked for, and kept, by one at a time."""
         self._shown: Latest[PlannedLine] = Latest(len(SYSTEMS))
         self._findings: Latest[list[Finding]] = Latest(len(SYSTEMS))
 
@@ -102,9 +104,28 @@ class Computed:
 
     def records(self, indices: Sequence[int], system: str) -> list[tuple[int, dict[str, Any]]]:
         """Give the records of some curves, with their indices and with words in a system of units."""
+        with self.speaking:
+            return list(zip(indices, self.shown_in(system).records_of(indices), strict=True))
+
+    def record(self, index: int, system: str) -> dict[str, Any]:
+        """Give the record of one curve with words in a system of units."""
+        return self.records([index], system)[0][1]
+
+    def json_chunks(self) -> Iterator[bytes]:
+        """Give the JSON of the plan in pieces; between two of them others may ask for records."""
+        chunks = self.planned.json_chunks()
+        while True:
+            with self.speaking:
+                chunk = next(chunks, None)
+            if chunk is None:
+                return
+            yield chunk
+
+    def workbook(self, data: bytes, file: str, system: str) -> AnnotatedFile:
+        """Give the workbook with the plan in it, in a system of units."""
         planned = self.shown_in(system)
-        planned.plan.hold(indices)
-        return [(index, planned.record(index)) for index in indices]
+        with self.speaking:
+            return service.annotated_workbook(planned, data, file)
 
     def findings(self, system: str) -> list[Finding]:
         """Give all findings, those of the whole plan first, then by curve in input order."""
@@ -112,8 +133,9 @@ class Computed:
 
     def _gather(self, system: str) -> list[Finding]:
         explanation = self.shown_in(system).explanation
-        of_curves = (f for i in self.planned.plan.assessed for f in explanation.findings(int(i)))
-        return [*explanation.plan_findings, *of_curves]
+        with self.speaking:
+            of_curves = (f for i in self.planned.plan.assessed for f in explanation.findings(int(i)))
+            return [*explanation.plan_findings, *of_curves]
 
 
 class Computations:

@@ -34,6 +34,13 @@ SHOWN_OF_CLASS = frozenset(
         "excess_mm",
         "unbalanced_acceleration_ms2",
         "felt_acceleration_ms2",
+        "deficiency_limit_mm",
+        "excess_limit_mm",
+        "felt_limit_ms2",
+        "share_of_limit",
+        "share_of",
+        "share_clause",
+        "regular",
     )
 )
 SHOWN = frozenset(
@@ -56,6 +63,7 @@ SHOWN = frozenset(
         "equilibrium_speed_kmh",
         "shares_transition_with_next",
         "reason",
+        "methods_verdict",
     )
 )
 """What the page of a curve shows in its own places; all else follows as it is named in the JSON."""
@@ -87,13 +95,47 @@ def limit_rows(found: Sequence[Record], measures: Measures) -> list[dict[str, An
     for item in found:
         kind = KIND_OF_UNIT.get(QUANTITIES[item["quantity"]].canonical) if "quantity" in item else None
         row = dict(item)
-        for key in ("value", "limit"):
+        for key in ("value", "limit", "exceptional_limit"):
             if kind is not None and isinstance(row.get(key), (int, float)):
                 row[key] = measures.with_unit(kind, row[key])
         if "place" in row:
             row["place"] = PLACE_WORDS.get(row["place"], row["place"])
         rows.append(row)
     return rows
+
+
+def bound_rows(record: Record, measures: Measures) -> list[dict[str, str]]:
+    """Give the bounds of the cant as rows of words, the governing one first on each side."""
+    because = record.get("because") or {}
+    rows = []
+    for side, label in (("lower", "at least"), ("upper", "at most")):
+        for bound in limit_rows(because.get(side) or [], measures):
+            rows.append(
+                {
+                    "bound": f"{label} {measures.with_unit('cant exact', bound['mm'])}",
+                    "from": bound["quantity"],
+                    "class": bound.get("class") or "",
+                    "limit": bound.get("limit") or "",
+                    "place": bound.get("place") or "",
+                    "clause": bound.get("clause") or "",
+                }
+            )
+    return rows
+
+
+def mix_facts(record: Record, measures: Measures) -> list[tuple[str, str]]:
+    """Give what the bounds leave: room or shortfall, and the radius below which no cant serves the mix."""
+    because = record.get("because") or {}
+    facts = []
+    if because.get("shortfall_mm") is not None:
+        facts.append(("Shortfall", measures.with_unit("cant exact", because["shortfall_mm"])))
+    elif because.get("room_mm") is not None:
+        facts.append(("Room between the bounds", measures.with_unit("cant exact", because["room_mm"])))
+    if because.get("smallest_radius_for_mix_m") is not None:
+        classes = " and ".join(because.get("classes_of_mix") or ())
+        radius = measures.with_unit("radius", because["smallest_radius_for_mix_m"])
+        facts.append(("Smallest radius that any cant serves", f"{radius}, for {classes}"))
+    return facts
 
 
 def transition_rows(record: Record) -> list[tuple[str, Record]]:

@@ -6,7 +6,6 @@ from typing import Any
 
 from flask import Response
 
-from cant import service
 from cant.model.plan import PlanDocument
 from webapp.api.models import CurvesAnswer, CurvesQuery, NumberedCurve
 from webapp.api.operations import operation
@@ -21,7 +20,7 @@ XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
 def get_result(address: str) -> Response:
     """Give the whole plan, metric always."""
     computed = computed_of(stored(address))
-    return Response(computed.planned.json_chunks(), mimetype="application/json")
+    return Response(computed.json_chunks(), mimetype="application/json")
 
 
 @operation("GET", "/plans/{address}/curves", answer=CurvesAnswer, query=CurvesQuery)
@@ -57,12 +56,13 @@ def get_curve(address: str, number: int) -> dict[str, Any]:
     if not computed.listing.has(number - 1):
         message = f"this plan has no curve number {number} that could be read"
         raise NotThereError(message)
-    return {"number": number, **computed.planned.record(number - 1)}
+    return {"number": number, **computed.record(number - 1, computed.planned.plan.settings.units)}
 
 
 @operation("GET", "/plans/{address}/workbook", answer=XLSX)
 def get_workbook(address: str) -> Response:
     """Give the workbook with the plan written into it."""
     plan = stored(address)
-    made = service.annotated_workbook(computed_of(plan).planned, file_of(plan), plan.file_name)
+    computed = computed_of(plan)
+    made = computed.workbook(file_of(plan), plan.file_name, computed.planned.plan.settings.units)
     return Response(made.data, mimetype=XLSX)

@@ -23,7 +23,7 @@ def show(address: str, number: int) -> ResponseReturnValue:
     if not computed.listing.has(index):
         message = f"this plan has no curve number {number} that could be assessed"
         raise NotThereError(message)
-    record = computed.shown_in(current_measures().system).record(index)
+    record = computed.record(index, current_measures().system)
     before, after = computed.listing.neighbours(index)
     return render_template(
         "curve.html",
@@ -37,6 +37,8 @@ def show(address: str, number: int) -> ResponseReturnValue:
         heights_assumed=curve_view.heights_assumed(computed, record),
         nearby=line_view.around(computed, plan.address, index, current_measures()),
         classes=curve_view.class_rows(record),
+        bounds=curve_view.bound_rows(record, current_measures()),
+        mix=curve_view.mix_facts(record, current_measures()),
         further=curve_view.further(record),
         further_classes=curve_view.further_classes(record),
         passed=curve_view.limit_rows(record.get("limits_passed") or [], current_measures()),

@@ -8,7 +8,6 @@ from urllib.parse import quote
 from flask import Blueprint, Response, render_template
 from flask.typing import ResponseReturnValue
 
-from cant import service
 from webapp.context import computed_of, current_measures, file_of, stored, unconfirmed
 from webapp.tables import file_name
 
@@ -40,9 +39,7 @@ def workbook(address: str) -> ResponseReturnValue:
     if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
-    made = service.annotated_workbook(
-        computed.shown_in(current_measures().system), file_of(plan), plan.file_name
-    )
+    made = computed.workbook(file_of(plan), plan.file_name, current_measures().system)
     path = PurePath(plan.file_name)
     ending = ".xlsm" if path.suffix.lower() == ".xlsm" else ".xlsx"
     answer = Response(made.data, mimetype=MACROS if ending == ".xlsm" else XLSX)
@@ -57,7 +54,7 @@ def document(address: str) -> ResponseReturnValue:
     if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
-    answer = Response(computed.planned.json_chunks(), mimetype="application/json")
+    answer = Response(computed.json_chunks(), mimetype="application/json")
     answer.headers["Content-Disposition"] = attachment(f"{PurePath(plan.file_name).stem}-cants.json")
     return answer
 
