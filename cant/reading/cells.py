@@ -110,7 +110,23 @@ def take_column(cells: Sequence[Value], taker: Taker) -> Numbers:
                 taken = cache[cell] = take(cell, taker)
             if taken is not NOTHING:
                 _put(result, index, taken)
+    _refuse_absurd(result)
     return result
+
+
+LARGEST, SMALLEST = 1e8, 1e-6
+"""Beyond these no quantity of a curve list lies, whatever its unit."""
+
+
+def _refuse_absurd(result: Numbers) -> None:
+    """Refuse numbers that are none of a railway, before anything is computed with them."""
+    for numbers in (result.values, result.second):
+        with np.errstate(invalid="ignore"):
+            sizes = np.abs(numbers)
+            absurd = (sizes > LARGEST) | ((sizes < SMALLEST) & (sizes > 0))
+        for index in np.flatnonzero(absurd):
+            result.problems[int(index)] = f"{numbers[index]:g} is no possible value here"
+            numbers[index] = np.nan
 
 
 def _put(result: Numbers, index: int, taken: Taken) -> None:

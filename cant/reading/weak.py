@@ -8,7 +8,7 @@ from __future__ import annotations
 
 from collections import Counter
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 import numpy as np
 
@@ -70,7 +70,10 @@ def settle_weak(columns: Sequence[Column], decimal: str, language: str) -> list[
         candidates = open_ones[id(item)]
         if not candidates:
             continue
-        left = [m for m in candidates if not taken[m] and _fits(m, item, columns, decimal)]
+        free = [m for m in candidates if not taken[m]]
+        left = [m for m in free if _fits(m, item, columns, decimal)] or [
+            m for m in free if _fits(m, _usable(item, m, decimal), columns, decimal)
+        ]
         if "Degree" in left and not any(taken[m] for m in _GEOMETRY) and not _may_be_radius(columns, item):
             left = ["Degree"]
         if len(left) > 1:
@@ -102,6 +105,35 @@ def _open_meanings(item: Column) -> list[str]:
         found = matches(item.heading.words.split()[-1]) if item.heading.words else ()
     weak = [m.meaning for m in found if m.score == 0.5]
     return weak if item.meaning in weak else []
+
+
+def _usable(item: Column, meaning: str, decimal: str) -> Column:
+    """Give the column with the cells alone that its meaning can use: a few bad ones must not hide it."""
+    kind = column("curves", meaning).kind
+    if kind in _LEXICONS:
+        known = lexicon(_LEXICONS[kind])
+        words = [cell for cell in item.cells[:_SAMPLE] if (fold(shown(cell)) or shown(cell).strip()) in known]
+        return replace(item, cells=words) if words else item
+    taker = _TAKERS.get(kind)
+    if taker is None:
+        return item
+    found = take_column(item.cells[:_SAMPLE], lambda text: taker(text, decimal))
+    kept = [cell for i, cell in enumerate(item.cells[:_SAMPLE]) if i not in found.problems]
+    return replace(item, cells=kept)
+
+
+_LEXICONS = {"hand": "hands", "element": "elements", "shape": "shapes"}
+_TAKERS = {
+    "radius": take_radius,
+    "degree": take_degree,
+    "cant": take_cant,
+    "length": take_length,
+    "transition": take_transition,
+    "transition_pair": take_transition,
+    "speed": take_speed,
+    "versine": take_length,
+    "location": take_location,
+}
 
 
 def _preferred(item: Column, left: list[str], language: str) -> list[str]:
