@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import ast
+from collections import Counter
 from collections.abc import Iterator
 from pathlib import Path
 
@@ -133,6 +134,12 @@ def circle(arrows: dict[str, set[str]]) -> list[str] | None:
 def test_the_check_for_circles_finds_one() -> None:
     assert circle({"a": {"b"}, "b": {"c"}, "c": {"a"}}) == ["a", "b", "c", "a"]
     assert circle({"a": {"b", "c"}, "b": {"c"}, "c": set()}) is None
+
+
+def test_no_two_test_files_bear_the_same_name() -> None:
+    """They are modules without a package, found by name: of two alike one would not run."""
+    names = Counter(path.name for path in (ROOT / "tests").rglob("*.py") if path.name != "conftest.py")
+    assert [name for name, count in names.items() if count > 1 and name != "__init__.py"] == []
 
 
 def test_the_top_of_the_repository_holds_what_it_should() -> None:
