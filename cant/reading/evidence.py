@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import re
 from collections.abc import Iterable, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 
 from cant.reading.headings import DEGREES_MINUTES, MILES_CHAINS, MILES_YARDS, matches
 from cant.reading.meanings import Column
@@ -31,6 +31,10 @@ class Evidence:
     imperial: frozenset[str]
     metric: frozenset[str]
     language: str
+
+    def with_imperial(self, unit: str) -> Evidence:
+        """Give the same evidence with one more imperial unit."""
+        return replace(self, imperial=self.imperial | {unit})
 
     @property
     def only_imperial(self) -> bool:

@@ -19,7 +19,6 @@ from cant.reading.evidence import Evidence
 from cant.reading.headings import MILES_CHAINS, MILES_YARDS
 from cant.reading.legends import notation_said
 from cant.reading.meanings import Column
-from cant.reading.text import fold
 from cant.units import FOOT_M, ratio
 
 LOCATIONS = ("Transition start", "Start", "End", "Transition end")
@@ -135,6 +134,32 @@ def _spread(located: _Located, first: Column) -> None:
         item.unit_from = item.unit_from or (first.unit_from and "other columns") or "values"
 
 
+SURE = 8
+"""So many decimals below .1760 are no chance."""
+
+
+def counts_miles_and_yards(draft: Draft) -> bool:
+    """Whether chainages without a unit are miles and yards: told by an answer, or all decimals are below .1760."""
+    items = [item for name in LOCATIONS if (item := draft.column(name)) is not None]
+    if not items or any(item.unit or item.notation for item in items) or draft.canonical:
+        return False
+    answer = (_WORDS[MILES_YARDS],)
+    if any(draft.context.answers.choice(draft.sheet, item.heading.text, answer) for item in items):
+        return True
+    bare = [_bare(take_column(item.cells, lambda text: take_location(text, draft.decimal))) for item in items]
+    every = np.concatenate(bare)
+    every = every[~np.isnan(every)]
+    return len(every) >= SURE and _like_miles_and_yards(every)
+
+
+def _like_miles_and_yards(every: FloatArray) -> bool:
+    parts = np.round(every - np.floor(every + 1e-9), 6)
+    hundredths, myriads = np.round(parts * 100, 4), np.round(parts * 10000, 2)
+    two_digits = bool(np.all(np.abs(hundredths - np.round(hundredths)) < 1e-3))
+    four_digits = bool(np.all(np.abs(myriads - np.round(myriads)) < 1e-1))
+    return four_digits and not two_digits and bool(np.all(parts < 0.1760)) and float(np.max(every)) < 1000
+
+
 def _candidates(
     draft: Draft, first: Column, every: FloatArray, bare: dict[str, FloatArray], evidence: Evidence
 ) -> list[str]:
@@ -146,22 +171,20 @@ def _candidates(
         open_ones = (
             [named, METRES] if named == KM and first.unit_from not in ("answer", "legend") else [named]
         )
-    elif _is_canonical(first):
+    elif draft.canonical:
         open_ones = [KM, METRES]
     elif evidence.counts_miles and not _says_km(draft):
         open_ones = [*_mile_notations(first, every, evidence), KM, METRES, FEET]
+    elif len(every) >= 4 and _like_miles_and_yards(every):
+        open_ones = [MILES_YARDS, KM]
     else:
         open_ones = [KM, METRES]
     fitting = [unit for unit in open_ones if _spans_fit(bare, unit, every)]
-    if named == KM or _is_canonical(first) or not named:
+    if named == KM or not named:
         metric = [unit for unit in fitting if unit in (KM, METRES)]
         if fitting and set(metric) == set(fitting):
             return metric[:1]
     return fitting or open_ones[:1]
-
-
-def _is_canonical(item: Column) -> bool:
-    return fold(item.heading.text) in ("start", "end")
 
 
 def _says_km(draft: Draft) -> bool:

@@ -9,9 +9,10 @@ from cant.reading.cells import PAIR, Numbers, take_column
 from cant.reading.columns import column
 from cant.reading.draft import NUMERIC, Draft
 from cant.reading.evidence import Evidence, gather
+from cant.reading.headings import MILES_YARDS
 from cant.reading.hands import settle_hands
 from cant.reading.legends import apply_legends
-from cant.reading.locations import settle_locations
+from cant.reading.locations import counts_miles_and_yards, settle_locations
 from cant.reading.meanings import Column
 from cant.reading.radii import settle_radius
 from cant.reading.scales import (
@@ -37,19 +38,43 @@ def fill(draft: Draft) -> Evidence:
         _usual_units(draft)
     apply_legends(draft.columns, draft.block.title)
     share_units(draft.columns)
-    evidence = gather(draft.columns, draft.block.title)
-    settle_speed_unit(draft, evidence)
     split_speed_columns(draft)
-    settle_speeds(draft)
-    located = settle_locations(draft, evidence)
-    speed = highest_speed(draft)
-    draft.numbers["radius_m"] = settle_radius(draft, evidence, speed)
+    evidence = gather(draft.columns, draft.block.title)
+    if counts_miles_and_yards(draft):
+        evidence = evidence.with_imperial(MILES_YARDS)
+    located, speed, evidence = _settle_together(draft, evidence)
     _cants(draft, evidence, speed)
     _transitions(draft, evidence)
     _place(draft, located)
     _length(draft, evidence)
     settle_hands(draft)
     return evidence
+
+
+def _settle_together(
+    draft: Draft, evidence: Evidence
+) -> tuple[dict[str, FloatArray], FloatArray, Evidence]:
+    """Settle speeds, chainages and radii; again where the radii turn out to be chains or feet."""
+    asked, noted = len(draft.context.questions), len(draft.context.notes)
+    problems = {index: list(found) for index, found in draft.problems.items()}
+    open_ones = [(c, c.unit, c.unit_from, c.confidence) for c in draft.columns if not c.unit]
+    for again in (True, False):
+        settle_speed_unit(draft, evidence)
+        settle_speeds(draft)
+        located = settle_locations(draft, evidence)
+        speed = highest_speed(draft)
+        draft.numbers["radius_m"] = settle_radius(draft, evidence, speed)
+        radius = draft.column("Radius")
+        implied = radius.unit if radius is not None and radius.unit_from == "values" else ""
+        if not again or implied not in ("ch", "ft") or implied in evidence.imperial:
+            break
+        evidence = evidence.with_imperial(implied)
+        del draft.context.questions[asked:], draft.context.notes[noted:]
+        draft.problems = {index: list(found) for index, found in problems.items()}
+        for item, unit, unit_from, confidence in open_ones:
+            if item is not radius:
+                item.unit, item.unit_from, item.confidence = unit, unit_from, confidence
+    return located, speed, evidence
 
 
 def _usual_units(draft: Draft) -> None:

@@ -19,7 +19,7 @@ from cant.reading.meanings import Column
 from cant.reading.numbers import parse_quantity
 from cant.reading.takers import take_length, take_radius
 from cant.reading.text import shown, squeeze
-from cant.units import FOOT_M, ratio
+from cant.units import FOOT_M, UNITS, ratio
 
 _UNIT_WORDS = {"m": "metres", "ch": "chains", "ft": "feet"}
 _CHORDS = {"20 m chord": 20.0, "10 m chord": 10.0, "62 ft chord": 62 * FOOT_M}
@@ -323,6 +323,7 @@ def _chord_column(draft: Draft, column: Column) -> FloatArray:
         found = parse_quantity(squeeze(shown(cell)), draft.decimal) if cell is not None else None
         if found is not None:
             unit = found[1].symbol if found[1] else column.unit or "m"
-            values[index] = found[0] * ratio(unit, "m")
+            length = found[0] * ratio(unit, "m") if UNITS[unit].dimension == "length" else np.nan
+            values[index] = length if 1.0 <= length <= 100.0 else np.nan
     column.unit = column.unit or "m"
     return values
