@@ -22,7 +22,8 @@ from cant.files.sheet_xml import COLUMNS, MAX_COLUMN, RowSpan, SheetXml
 from cant.files.strings import rich_text
 from cant.files.text import from_cell_text
 
-MAX_CELLS = 6_000_000
+MAX_CELLS = 5_000_000
+MAX_BLANK_CELLS = 20_000_000
 MAX_SLOTS = 12_000_000
 MAX_TEXT = 1_000_000
 
@@ -60,11 +61,26 @@ class Budget:
         self.cells -= cells
         self.slots -= slots
         if self.cells < 0 or self.slots < 0:
-            message = (
-                f"is too large: at most {MAX_CELLS // 1_000_000} million filled cells are read, and none far "
-                "to the right of all others in very many rows; keep the curve list in a file of its own"
-            )
-            raise FileError(message, place)
+            self._refuse(place)
+
+    def foresee(self, part: bytes, place: Place) -> None:
+        """Refuse a worksheet part, as it is, that is sure to hold more than may still be read.
+
+        Raises
+        ------
+        FileError
+            More than is read.
+        """
+        filled = part.count(b"</v>") + part.count(b"</is>") + (part.count(b":v>") + part.count(b":is>")) // 2
+        if filled > self.cells or part.count(b"<c ") + part.count(b"<c/") > MAX_BLANK_CELLS:
+            self._refuse(place)
+
+    def _refuse(self, place: Place) -> NoReturn:
+        message = (
+            f"is too large: at most {MAX_CELLS // 1_000_000} million filled cells are read, and none far "
+            "to the right of all others in very many rows; keep the curve list in a file of its own"
+        )
+        raise FileError(message, place)
 
 
 @dataclass(frozen=True, slots=True)
@@ -132,7 +148,7 @@ class CellReader:
     def _row(self, span: RowSpan) -> None:
         cells: list[Value] = []
         styles: list[int] = []
-        self._fill(span, cells, styles)
+        plain = self._fill(span, cells, styles)
         if self.ignored:
             self._ignore(span.number, cells, styles)
         while cells and cells[-1] is None and not styles[-1]:
@@ -145,7 +161,7 @@ class CellReader:
         if not cells:
             return
         self.last_value = max(self.last_value, len(cells) - 1)
-        self.book.budget.take(len(cells) - cells.count(None), len(cells), self.place)
+        self.book.budget.take(plain, len(cells), self.place)
         index = span.number - 1
         if index >= len(self.rows):
             self.rows.extend([_BLANK_ROW] * (index - len(self.rows)))
@@ -161,13 +177,15 @@ class CellReader:
                     styles[column] = 0
                     self.formulas.discard((row, column))
 
-    def _fill(self, span: RowSpan, cells: list[Value], styles: list[int]) -> None:
-        """Read the cells of a row; the loop is the hot one of the whole reading."""
+    def _fill(self, span: RowSpan, cells: list[Value], styles: list[int]) -> int:
+        """Read the cells of a row and count the plain ones; the loop is the hot one of all reading."""
+        others = 0
         strings = self.book.strings
         dates = self._date_styles
         for letters, style, kind, text, other in self._find(self.sheet.data, span.inner, span.inner_end):
             if other:
                 self._other(span.number, other, cells, styles)
+                others += 1
                 continue
             column = COLUMNS[letters]
             if column != len(cells):
@@ -185,6 +203,7 @@ class CellReader:
                     cells.append(number if -_LARGEST <= number <= _LARGEST else CellError(text.decode()))
             except (ValueError, IndexError):
                 cells.append(self._unusable(kind, text, span.number, column))
+        return max(0, len(cells) - cells.count(None) - others)
 
     def _unusable(self, kind: bytes, text: bytes, row: int, column: int) -> CellError:
         if kind == b"s":
@@ -207,6 +226,7 @@ class CellReader:
 
     def _other(self, row: int, cell: bytes, cells: list[Value], styles: list[int]) -> None:
         """Read a cell with a formula, a text of its own, or an unusual notation."""
+        self.book.budget.take(1, 0, self.place)
         head, inner = self._patterns.split(cell)
         attributes = {key: plain or quoted for key, plain, quoted in _ATTRIBUTE.findall(head)}
         name = attributes.get(b"r")

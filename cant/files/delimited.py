@@ -3,9 +3,9 @@
 from __future__ import annotations
 
 import csv
-import io
 import re
 from collections import Counter
+from collections.abc import Iterator
 from dataclasses import dataclass
 from typing import NoReturn
 
@@ -14,6 +14,7 @@ from cant.files.grid import CellError, Sheet, Value, Workbook
 
 MAX_COLUMNS = 500
 MAX_CELLS = 6_000_000
+MAX_BYTES = 100_000_000
 MAX_TEXT = 1_000_000
 _SEPARATORS = {";": "semicolon", "\t": "tab", ",": "comma", "|": "bar"}
 _NUMBER = re.compile(r"-?(?:0|[1-9][0-9]{0,14})(?:\.[0-9]{1,15})?\Z")
@@ -49,8 +50,11 @@ def read_delimited(data: bytes, file: str) -> Workbook:
         No text, no table, or a line of absurd length.
     """
     place = Place(file)
+    if len(data) > MAX_BYTES:
+        message = f"is too large: at most {MAX_BYTES // 1_000_000} MB of separated text are read"
+        raise FileError(message, place)
     decoded = _decode(data, place)
-    text, declared = _declared_separator(decoded.text)
+    text, declared = _declared_separator(decoded.text.replace("\r\n", "\n").replace("\r", "\n"))
     separator = declared or _separator(text)
     _check_width(text, separator, place)
     rows = _rows(text, separator, place)
@@ -107,7 +111,7 @@ def _unmarked_utf16(data: bytes) -> str | None:
 
 def _declared_separator(text: str) -> tuple[str, str | None]:
     """Take off the first line ``sep=;`` that some programs write."""
-    match = re.match(r'"?sep=(.)"?\r?\n', text, re.IGNORECASE)
+    match = re.match(r'"?sep=(.)"?\n', text, re.IGNORECASE)
     return (text[match.end() :], match.group(1)) if match else (text, None)
 
 
@@ -150,7 +154,7 @@ def _rows(text: str, separator: str, place: Place) -> list[list[str]]:
         _too_large(place)
     limit = csv.field_size_limit(MAX_TEXT)
     try:
-        for number, row in enumerate(csv.reader(io.StringIO(text, newline=""), delimiter=separator), start=1):
+        for number, row in enumerate(csv.reader(_lines(text), delimiter=separator), start=1):
             left -= len(row)
             if left < 0:
                 _too_large(place)
@@ -166,6 +170,15 @@ def _rows(text: str, separator: str, place: Place) -> list[list[str]]:
     finally:
         csv.field_size_limit(limit)
     return rows
+
+
+def _lines(text: str) -> Iterator[str]:
+    """Give the lines one by one; a copy of them all would be several times the file."""
+    at = 0
+    while at < len(text):
+        end = text.find("\n", at) + 1 or len(text)
+        yield text[at:end]
+        at = end
 
 
 def _too_large(place: Place) -> NoReturn:

@@ -20,6 +20,7 @@ _STRING_CELL = re.compile(rb'<c r="([A-Z]{1,3}[0-9]+)"((?: s="[0-9]+")?) t="s"><
 _STYLE = re.compile(rb'(<(?:c r="[A-Z0-9]+"|row [^>]*?|col [^>]*?)) (s|style)="([0-9]+)"')
 _CONDITIONAL_STYLE = re.compile(rb' (\w*[dD]xfId)="([0-9]+)"')
 _SELECTED = re.compile(rb' tabSelected="1"')
+_METADATA = re.compile(rb' cm="\d+"')
 _ITEM = re.compile(rb"<si>(.*?)</si>|<si/>", re.DOTALL)
 _FORMULAS = re.compile(rb"(<(f|c:f|formula|formula1|formula2)(?:\s[^>]*)?>)([^<]*)(</\2>)")
 _LOCATION = re.compile(rb'( location=")([^"]*)(")')
@@ -54,7 +55,6 @@ class Graft:
         self.strings = self._strings()
         self.renamed = self._names()
         self._parts: dict[str, str] = {}
-        self._tables = 0
 
     def _strings(self) -> list[bytes]:
         part = self.source.related(self.own.part, "sharedStrings")
@@ -147,6 +147,7 @@ class Graft:
     def _adapted_sheet(self, content: bytes) -> bytes:
         content = _STYLE.sub(self._style, content)
         content = _STRING_CELL.sub(self._inline, content)
+        content = _METADATA.sub(b"", content)
         return _SELECTED.sub(b"", _CONDITIONAL_STYLE.sub(self._conditional_style, content))
 
     def _style(self, match: re.Match[bytes]) -> bytes:
@@ -163,23 +164,28 @@ class Graft:
         )
 
     def _adapted_table(self, content: bytes) -> bytes:
-        self._tables += 1
-        number = 1 + max(self._table_numbers(), default=0)
+        others = self._tables_of_the_target()
+        numbers = [int(match[2]) for one in others for match in [_TABLE_ID.search(one)] if match]
+        number = 1 + max(numbers, default=0)
         content = _TABLE_ID.sub(lambda match: match[1] + b"%d" % number + match[3], content, count=1)
         head, tag, tail = content.partition(b"<tableColumns")
-        head = _TABLE_NAMES.sub(lambda match: match[1] + b"cant_%d_" % number + match[2] + match[3], head)
-        return _CONDITIONAL_STYLE.sub(self._conditional_style, head + tag + tail)
+        taken = {
+            match[2].lower()
+            for one in others
+            for match in _TABLE_NAMES.finditer(one.partition(b"<tableColumns")[0])
+        }
 
-    def _table_numbers(self) -> list[int]:
-        found = []
-        package = self.edit.package
-        for name in package.archive.members:
-            if name.startswith("xl/tables/") and name.endswith(".xml") and name not in self.edit.removed:
-                found += [int(match[2]) for match in [_TABLE_ID.search(package.xml(name))] if match]
-        for name, content in self.edit.changed.items():
-            if name.startswith("xl/tables/"):
-                found += [int(match[2]) for match in [_TABLE_ID.search(b"".join(content))] if match]
-        return found
+        def name(match: re.Match[bytes]) -> bytes:
+            is_taken = match[2].lower() in taken or self.book.has_name(match[2].decode("utf-8"))
+            return match[1] + match[2] + (b"_%d" % number if is_taken else b"") + match[3]
+
+        return _CONDITIONAL_STYLE.sub(self._conditional_style, _TABLE_NAMES.sub(name, head) + tag + tail)
+
+    def _tables_of_the_target(self) -> list[bytes]:
+        """Give the table parts that the target has so far."""
+        names = self.edit.package.archive.members.keys() - self.edit.removed | self.edit.changed.keys()
+        tables = [name for name in names if name.startswith("xl/tables/") and name.endswith(".xml")]
+        return [self.edit.xml(name) for name in tables if self.edit.changed.get(name) != (b"",)]
 
     def _renamed_formulas(self, content: bytes) -> bytes:
         if all(old == new for old, new in self.renamed.items()):

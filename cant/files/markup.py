@@ -16,7 +16,7 @@ from cant.errors import FileError, Place
 
 MAX_DEPTH = 256
 MAX_ELEMENTS = 600_000
-MAX_UNUSUAL_BYTES = 150_000_000
+MAX_UNUSUAL_BYTES = 40_000_000
 """Largest part that is rewritten to plain notation."""
 
 _DECLARATION = re.compile(rb"\s*<\?xml[^>]*\?>\s*")

@@ -18,6 +18,9 @@ from cant.files.grid import CellError, CellRange, Sheet, Uncalculated, Value, Wo
 from cant.files.markup import MAX_DEPTH
 from cant.files.sheet_xml import MAX_COLUMN, MAX_MERGED, MAX_ROW
 
+MAX_TAGS = 8_000_000
+"""Start and end tags of the content that are read; a filled cell has about four."""
+
 _NS = "urn:oasis:names:tc:opendocument:xmlns:"
 _OFFICE, _TABLE, _TEXT, _STYLE = (f"{_NS}{name}:1.0 " for name in ("office", "table", "text", "style"))
 _CALC = "urn:org:documentfoundation:names:experimental:calc:xmlns:calcext:1.0 "
@@ -49,8 +52,12 @@ def read_ods(archive: Archive, file: str) -> Workbook:
     if "content.xml" not in archive:
         message = "is damaged: it has no content; open it in a spreadsheet program and save it anew"
         raise FileError(message, place)
+    content = archive.read("content.xml")
+    if content.count(b"<") > MAX_TAGS:
+        message = "is too large to be read safely; keep the curve list in a file of its own"
+        raise FileError(message, place)
     reader = _ContentReader(place)
-    reader.parse(archive.read("content.xml"))
+    reader.parse(content)
     if not reader.sheets:
         message = "holds no sheet with cells; add a sheet with the curve list"
         raise FileError(message, place)

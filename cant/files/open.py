@@ -36,9 +36,18 @@ def open_workbook(data: bytes, file: str) -> Workbook:
     FileError
         Not a table, password-protected, damaged, or refused for safety: one clear sentence.
     """
+    place = Place(file)
     if len(data) > MAX_FILE_BYTES:
         message = f"is refused for safety: it is larger than {MAX_FILE_BYTES // 1_000_000} MB"
-        raise FileError(message, Place(file))
+        raise FileError(message, place)
+    try:
+        return _read(data, file)
+    except MemoryError:
+        message = "is too large for the memory there is; keep the curve list in a file of its own"
+        raise FileError(message, place) from None
+
+
+def _read(data: bytes, file: str) -> Workbook:
     kind = recognise(data, file)
     if kind is Kind.PACKAGE:
         return read_xlsx(Package(data, file), file)

@@ -10,7 +10,7 @@ from cant.files.book import Book, SheetEntry
 from cant.files.cells import BookValues, Budget, CellReader
 from cant.files.formats import CellFormats
 from cant.files.grid import CellRange, Sheet
-from cant.files.markup import Element
+from cant.files.markup import Element, utf8_part
 from cant.files.package import Package
 from cant.files.sheet_xml import MAX_COLUMN, SheetXml, parse_range
 from cant.files.strings import shared_strings
@@ -73,7 +73,6 @@ class BookReader:
         self.book = book
         self.added = book.added_columns()
         self.values = BookValues(self._strings(), self._formats(), book.epoch_1904, Budget())
-        self._parts: dict[str, bytes] = {}
 
     def _strings(self) -> list[str | None]:
         part = self.package.related(self.book.part, "sharedStrings")
@@ -95,7 +94,9 @@ class BookReader:
         place = Place(self.package.place.file, entry.name)
         if entry.part is None:
             self._missing(entry)
-        xml = SheetXml(self.package.xml(entry.part), entry.part, place)
+        raw = self.package.archive.read(entry.part)
+        self.values.budget.foresee(raw, place)
+        xml = SheetXml(utf8_part(raw, entry.part, place), entry.part, place)
         cells = CellReader(xml, self.values, self.added.get(entry.name.casefold(), ()))
         cells.read()
         return SheetRead(entry, xml, cells, xml.merged(), self._tables(entry.part))

@@ -82,7 +82,6 @@ def test_values_against_openpyxl(rows):
 
 def _same(found, value):
     if isinstance(value, str):
-        value = value.replace("\r\n", "\n").replace("\r", "\n") if "\r" in value else value
         assert found == (value if value and not value.isspace() else None)
     elif isinstance(value, bool) or value is None:
         assert found is value
