@@ -26,6 +26,9 @@ from cant.reading.rows import fill_merged, sift
 from cant.reading.text import is_blank, is_text, shown, squeeze
 from cant.reading.weak import Doubt, settle_weak
 
+EXAMPLES = 50
+"""Example rows of the template are looked for in so many rows below the header."""
+
 NOT_USED = "not used"
 """Answer that leaves a column as it is."""
 
@@ -174,7 +177,7 @@ def _cells(block: Block) -> tuple[np.ndarray, dict[int, Sequence[Value]]]:
     kept = [
         i
         for i, cells in enumerate(body)
-        if any(c is not None for c in cells[low : high + 1]) and not is_example(cells)
+        if any(c is not None for c in cells[low : high + 1]) and not (i < EXAMPLES and is_example(cells))
     ]
     turned: list[Sequence[Value]] = list(zip_longest(*(body[i] for i in kept), fillvalue=None))
     empty: list[Value] = [None] * len(kept)

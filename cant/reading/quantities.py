@@ -51,9 +51,7 @@ def fill(draft: Draft) -> Evidence:
     return evidence
 
 
-def _settle_together(
-    draft: Draft, evidence: Evidence
-) -> tuple[dict[str, FloatArray], FloatArray, Evidence]:
+def _settle_together(draft: Draft, evidence: Evidence) -> tuple[dict[str, FloatArray], FloatArray, Evidence]:
     """Settle speeds, chainages and radii; again where the radii turn out to be chains or feet."""
     asked, noted = len(draft.context.questions), len(draft.context.notes)
     problems = {index: list(found) for index, found in draft.problems.items()}

@@ -148,11 +148,15 @@ def _role(sheet: Sheet) -> str:
     return "settings" if is_settings_sheet(sheet) else "other"
 
 
+HEAD_ROWS = 200
+"""What a sheet holds is told from so many rows."""
+
 _GEOMETRY = frozenset({"Radius", "Degree", "Versine", "Radius at start", "Radius at end"})
 
 
 def _has_radius(sheet: Sheet) -> bool:
-    return any(item.meaning in _GEOMETRY for block in find_blocks(sheet) for item in decide(block, {}))
+    top = Sheet(sheet.name, sheet.rows[:HEAD_ROWS], [m for m in sheet.merged if m.last_row <= HEAD_ROWS])
+    return any(item.meaning in _GEOMETRY for block in find_blocks(top) for item in decide(block, {}))
 
 
 def _names_turnouts(sheet: Sheet) -> bool:
