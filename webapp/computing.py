@@ -14,7 +14,6 @@ from typing import Any, Generic, TypeVar
 
 from cant import service
 from cant.explaining import explain
-from cant.model.plan import Finding
 from cant.model.reading import Reading
 from cant.planning import Plan
 from cant.service import AnnotatedFile, PlannedLine
@@ -87,7 +86,6 @@ class Computed:
         self.speaking = threading.RLock()
         """Held while words are made: they are made when asked for, and kept, by one at a time."""
         self._shown: Latest[PlannedLine] = Latest(len(SYSTEMS))
-        self._findings: Latest[list[Finding]] = Latest(len(SYSTEMS))
 
     def shown_in(self, system: str) -> PlannedLine:
         """Give the same plan with its words in a system of units; its numbers are the same objects."""
@@ -126,16 +124,6 @@ class Computed:
         planned = self.shown_in(system)
         with self.speaking:
             return service.annotated_workbook(planned, data, file)
-
-    def findings(self, system: str) -> list[Finding]:
-        """Give all findings, those of the whole plan first, then by curve in input order."""
-        return self._findings.get(system, lambda: self._gather(system))
-
-    def _gather(self, system: str) -> list[Finding]:
-        explanation = self.shown_in(system).explanation
-        with self.speaking:
-            of_curves = (f for i in self.planned.plan.assessed for f in explanation.findings(int(i)))
-            return [*explanation.plan_findings, *of_curves]
 
 
 class Computations:

@@ -83,6 +83,20 @@ class Explanation:
             *(finding for finding in summaries if finding is not None),
         ]
 
+    def listed(self) -> list[tuple[int, int, str, str]]:
+        """List the findings of all curves without their words, which take far longer.
+
+        Returns
+        -------
+        list of (int, int, str, str)
+            Curve in input order, place among its :meth:`findings`, code, severity.
+        """
+        found = []
+        for index in self._plan.assessed.tolist():
+            here = [*self._of_planner.get(index, ()), *self._notices_by_curve.get(index, ())]
+            found += [(index, place, one.code, one.severity) for place, one in enumerate(here)]
+        return found
+
     def findings(self, index: int, record: Record | None = None) -> list[Finding]:
         """Give the findings of one curve, each short; the plan's own findings say what many have in common.
 

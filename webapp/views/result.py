@@ -7,15 +7,14 @@ from typing import Any
 from flask import Blueprint, render_template, request
 from flask.typing import ResponseReturnValue
 
-from cant.model.plan import Finding
 from webapp import line_view
 from webapp.computing import Computed
 from webapp.context import computed_of, current_measures, stored, unconfirmed
+from webapp.findings_view import page_of_findings
 from webapp.listing import PAGE_SIZES, SORTS, Wanted
 
 pages = Blueprint("result", __name__, url_prefix="/plans/<address>")
 PRINT_ROWS = 500
-FINDINGS_PAGE = 100
 
 
 def _wanted() -> Wanted:
@@ -60,33 +59,16 @@ def findings(address: str) -> ResponseReturnValue:
     if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
-    found = computed.findings(current_measures().system)
-    severity = request.args.get("severity", "")
-    code = request.args.get("kind", "")
-    chosen = [f for f in found if (not severity or f.severity == severity) and (not code or f.code == code)]
-    pages_in_all = max(-(-len(chosen) // FINDINGS_PAGE), 1)
-    number = min(Wanted.of(request.args, []).page, pages_in_all)
+    severity, kind = request.args.get("severity", ""), request.args.get("kind", "")
+    page = page_of_findings(computed, current_measures().system, severity, kind, _wanted().page)
     return render_template(
         "findings.html",
         **_shared(computed),
-        found=chosen[(number - 1) * FINDINGS_PAGE : number * FINDINGS_PAGE],
-        total=len(chosen),
-        number=number,
-        pages=pages_in_all,
-        kinds=_counted(found, "code"),
-        severities=_counted(found, "severity"),
+        page=page,
         severity=severity,
-        kind=code,
+        kind=kind,
         names=computed.planned.plan.curves.curve,
     )
-
-
-def _counted(found: list[Finding], attribute: str) -> dict[str, int]:
-    counts: dict[str, int] = {}
-    for finding in found:
-        key = str(getattr(finding, attribute))
-        counts[key] = counts.get(key, 0) + 1
-    return dict(sorted(counts.items()))
 
 
 @pages.get("/print")
