@@ -96,6 +96,18 @@ def from_serial(serial: float, epoch_1904: bool) -> datetime | date | time | flo
     return moment if moment.time() != time() else moment.date()
 
 
+def to_serial(moment: datetime | date | time) -> float | None:
+    """Give the serial number of days since 1900 of a date or time, None before 1900."""
+    if isinstance(moment, time):
+        seconds = moment.hour * 3600 + moment.minute * 60 + moment.second + moment.microsecond / 1e6
+        return seconds / 86_400
+    full = moment.replace(tzinfo=None) if isinstance(moment, datetime) else datetime.combine(moment, time())
+    if full.year < 1900:
+        return None
+    start = datetime(1899, 12, 30 if full >= datetime(1900, 3, 1) else 31)
+    return (full - start) / timedelta(days=1)
+
+
 class NumberFormats(Mapping[tuple[int, int], str]):
     """Number formats by cell, held as one row of style numbers that like rows share.
 

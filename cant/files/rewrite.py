@@ -1,26 +1,39 @@
-"""A new workbook with the rows of a file that cannot be annotated in place."""
+"""A new workbook with the rows of a file that cannot be annotated in place.
+
+The frame (sheets, widths, merged ranges) is made by XlsxWriter; the rows, which are nearly all of it, are
+written straight into the frame's sheets.
+"""
 
 from __future__ import annotations
 
 import io
 import re
+from collections.abc import Iterator
 from datetime import date, datetime, time
 from pathlib import PurePath
 from typing import Any
 
 import xlsxwriter
 
+from cant.errors import Place, column_letter
+from cant.files.additions import OutValue
+from cant.files.book import Book
+from cant.files.cell_xml import cell_xml
+from cant.files.edit import PackageEdit
+from cant.files.formats import to_serial
 from cant.files.graft import free_name
-from cant.files.grid import CellError, Sheet, Value, Workbook
-from cant.files.sheet_xml import MAX_COLUMN
-from cant.files.text import MAX_CELL_TEXT
+from cant.files.grid import CellError, CellRange, Sheet, Value, Workbook
+from cant.files.package import Package
+from cant.files.sheet_xml import MAX_COLUMN, reference
+from cant.files.style_edit import StyleEdit, StyleNeed
 
 _FORBIDDEN = re.compile(r"[\[\]:*?/\\\x00-\x1f]")
+_EXTENT = re.compile(rb'<dimension ref="[^"]*"/>')
 _DATE, _MOMENT, _TIME = "yyyy-mm-dd", "yyyy-mm-dd hh:mm", "hh:mm:ss"
 _ERRORS = frozenset(["#DIV/0!", "#N/A", "#NAME?", "#NULL!", "#NUM!", "#REF!", "#VALUE!"])
-_WIDEST = 40
+_NARROWEST, _WIDEST = 8.43, 40
+_SAMPLE_ROWS = 2000
 _LARGEST_MERGED = 10_000
-_FIRST_YEAR = 1900
 
 
 def rows_as_new_workbook(workbook: Workbook) -> bytes:
@@ -38,20 +51,15 @@ def rows_as_new_workbook(workbook: Workbook) -> bytes:
     bytes
         An xlsx that :func:`cant.files.annotate.annotate` takes.
     """
-    out = io.BytesIO()
-    options = {"in_memory": True, "strings_to_formulas": False, "strings_to_urls": False}
-    with xlsxwriter.Workbook(out, options) as book:
-        formats = _Formats(book)
-        visible = [sheet.visible for sheet in workbook.sheets]
-        for index, sheet in enumerate(workbook.sheets):
-            page = book.add_worksheet(sheet_name_in_new_workbook(workbook, index))
-            _write(page, sheet, formats)
-            if not sheet.visible and any(visible):
-                page.hide()
-            elif index == (visible.index(True) if any(visible) else 0):
-                page.activate()
-                page.set_first_sheet()
-    return out.getvalue()
+    package = Package(_frame(workbook))
+    edit, book = PackageEdit(package), Book(package)
+    part = package.related(book.part, "styles") or ""
+    styles = StyleEdit(package.plain_xml(part), part, Place())
+    for entry, sheet in zip(book.sheets, workbook.sheets, strict=True):
+        if entry.part is not None:
+            edit.replace(entry.part, list(_filled(package.xml(entry.part), sheet, styles)))
+    edit.replace(part, styles.result())
+    return edit.build()
 
 
 def sheet_name_in_new_workbook(workbook: Workbook, index: int) -> str:
@@ -64,38 +72,36 @@ def sheet_name_in_new_workbook(workbook: Workbook, index: int) -> str:
     return taken[-1]
 
 
-class _Formats:
-    """Cell formats by number format code, each made once."""
+def _frame(workbook: Workbook) -> bytes:
+    """Make a workbook with all sheets, their widths and merged ranges, and no values."""
+    out = io.BytesIO()
+    with xlsxwriter.Workbook(out, {"in_memory": True}) as book:
+        visible = [sheet.visible for sheet in workbook.sheets]
+        first = visible.index(True) if any(visible) else 0
+        for index, sheet in enumerate(workbook.sheets):
+            page = book.add_worksheet(sheet_name_in_new_workbook(workbook, index))
+            _set_widths(page, sheet)
+            _merge(page, sheet)
+            if not sheet.visible and any(visible):
+                page.hide()
+            elif index == first:
+                page.activate()
+                page.set_first_sheet()
+    return out.getvalue()
 
-    def __init__(self, book: Any) -> None:
-        self._book = book
-        self._known: dict[str, Any] = {}
 
-    def __getitem__(self, code: str) -> Any:
-        if code not in self._known:
-            self._known[code] = self._book.add_format({"num_format": code})
-        return self._known[code]
-
-
-def _write(page: Any, sheet: Sheet, formats: _Formats) -> None:
-    _merge(page, sheet)  # before the values, for it blanks the cells that it covers
+def _set_widths(page: Any, sheet: Sheet) -> None:
     widths: dict[int, int] = {}
-    for row, cells in enumerate(sheet.rows, start=1):
+    for cells in sheet.rows[:_SAMPLE_ROWS]:
         for column, value in enumerate(cells):
-            if value is not None:
-                code = sheet.number_formats.get((row, column))
-                _write_cell(page, row - 1, column, value, code, formats)
-                if isinstance(value, str):
-                    widths[column] = max(widths.get(column, 0), min(len(value), _WIDEST))
-                elif isinstance(value, datetime | date):
-                    widths[column] = max(widths.get(column, 0), len(_MOMENT))
+            if isinstance(value, str):
+                widths[column] = max(widths.get(column, 0), min(len(value), _WIDEST))
+            elif isinstance(value, datetime | date):
+                widths[column] = max(widths.get(column, 0), len(_MOMENT))
     for column in {*widths, *sheet.hidden_columns}:
         if column < MAX_COLUMN:
-            width = max(widths.get(column, 0) + 1, 8.43)
+            width = max(widths.get(column, 0) + 1, _NARROWEST)
             page.set_column(column, column, width, None, {"hidden": column in sheet.hidden_columns})
-    for row in sheet.hidden_rows:
-        if row <= len(sheet.rows):
-            page.set_row(row - 1, None, None, {"hidden": True})
 
 
 def _merge(page: Any, sheet: Sheet) -> None:
@@ -110,21 +116,40 @@ def _merge(page: Any, sheet: Sheet) -> None:
             continue
 
 
-def _write_cell(page: Any, row: int, column: int, value: Value, code: str | None, formats: _Formats) -> None:
-    style = formats[code] if code else None
-    if isinstance(value, CellError) and value in _ERRORS:
-        page.write_formula(row, column, f"={value}", style, str(value))
-    elif isinstance(value, str):
-        page.write_string(row, column, str(value)[:MAX_CELL_TEXT], style)
-    elif isinstance(value, bool):
-        page.write_boolean(row, column, value, style)
-    elif isinstance(value, datetime | date) and value.year < _FIRST_YEAR:
-        page.write_string(row, column, value.isoformat(), style)
-    elif isinstance(value, datetime):
-        page.write_datetime(row, column, value.replace(tzinfo=None), style or formats[_MOMENT])
-    elif isinstance(value, date):
-        page.write_datetime(row, column, value, style or formats[_DATE])
-    elif isinstance(value, time):
-        page.write_datetime(row, column, value.replace(tzinfo=None), style or formats[_TIME])
-    elif value is not None:
-        page.write_number(row, column, value, style)
+def _filled(frame: bytes, sheet: Sheet, styles: StyleEdit) -> Iterator[bytes]:
+    """Give a sheet's part with its rows."""
+    head, _, rest = frame.partition(b"<sheetData")
+    tail = rest.partition(b"</sheetData>" if rest.startswith(b">") else b"/>")[2]
+    if sheet.width:
+        extent = reference(CellRange(1, 0, len(sheet.rows), sheet.width - 1))
+        head = _EXTENT.sub(f'<dimension ref="{extent}"/>'.encode(), head)
+    yield head + b"<sheetData>"
+    letters = [column_letter(column) for column in range(sheet.width)]
+    texts: dict[str | None, str] = {None: ""}
+    for row, cells in enumerate(sheet.rows, start=1):
+        hidden = ' hidden="1"' if row in sheet.hidden_rows else ""
+        if not cells and not hidden:
+            continue
+        written = []
+        for column, value in enumerate(cells):
+            if value is None:
+                continue
+            out, code = _stored(value, sheet.number_formats.get((row, column)))
+            if code not in texts:
+                texts[code] = f' s="{styles.cell_style(StyleNeed(0, code, None, False))}"'
+            written.append(cell_xml("", f"{letters[column]}{row}", texts[code], out))
+        yield f'<row r="{row}"{hidden}>{"".join(written)}</row>'.encode()
+    yield b"</sheetData>" + tail
+
+
+def _stored(value: Value, code: str | None) -> tuple[OutValue, str | None]:
+    """Give what a cell stores for a value, and its number format."""
+    if isinstance(value, CellError):
+        return (value if value in _ERRORS else str(value)), code
+    if isinstance(value, str):
+        return str(value), code
+    if isinstance(value, datetime | date | time):
+        serial = to_serial(value)
+        default = _MOMENT if isinstance(value, datetime) else _DATE if isinstance(value, date) else _TIME
+        return (value.isoformat(), None) if serial is None else (serial, code or default)
+    return value, code

@@ -8,12 +8,11 @@ from dataclasses import dataclass
 
 from cant.errors import FileError, column_letter
 from cant.files.additions import AddedColumn, OutCell
+from cant.files.cell_xml import cell_xml
 from cant.files.grid import CellRange
-from cant.files.markup import escape
 from cant.files.sheet_xml import COLUMNS, MAX_ROW, RowSpan
 from cant.files.sheets import SheetRead
 from cant.files.style_edit import StyleEdit, StyleNeed
-from cant.files.text import to_cell_text
 
 _SPANS = re.compile(rb'(\sspans=")(\d{1,5}):(\d{1,5})"')
 _FLUSH_BYTES = 1 << 20
@@ -210,38 +209,9 @@ class RowSplice:
         if style is None:
             number = self.styles.cell_style(StyleNeed(*key))
             style = self._style_texts[key] = f' s="{number}"' if number else ""
-        p = self._p
-        head = f'<{p}c r="{name}"{style}'
-        formula = ""
         if cell.formula is not None:
             self.has_formulas = True
-            formula = f"<{p}f>{escape(to_cell_text(cell.formula))}</{p}f>"
-        if value is None:
-            return f"{head}>{formula}</{p}c>" if formula else f"{head}/>"
-        if isinstance(value, str):
-            return self._text_cell(head, formula, value)
-        if isinstance(value, bool):
-            return f'{head} t="b">{formula}<{p}v>{int(value)}</{p}v></{p}c>'
-        text = number_text(value)
-        if text is None:
-            return f'{head} t="e">{formula}<{p}v>#N/A</{p}v></{p}c>'
-        return f"{head}>{formula}<{p}v>{text}</{p}v></{p}c>"
-
-    def _text_cell(self, head: str, formula: str, value: str) -> str:
-        p = self._p
-        text = escape(to_cell_text(value))
-        if formula:
-            return f'{head} t="str">{formula}<{p}v>{text}</{p}v></{p}c>'
-        keep = ' xml:space="preserve"' if value != value.strip() or "\n" in value or "  " in value else ""
-        return f'{head} t="inlineStr"><{p}is><{p}t{keep}>{text}</{p}t></{p}is></{p}c>'
-
-
-def number_text(value: float) -> str | None:
-    """Give a number as a cell stores it, None where it is no number or infinite."""
-    text = repr(float(value))
-    if text.endswith(".0"):
-        return text[:-2]
-    return None if "n" in text else text  # nan, inf
+        return cell_xml(self._p, name, style, value, cell.formula)
 
 
 def _style_of(cell: bytes) -> int:
