@@ -157,10 +157,17 @@ def take(cell: Value, taker: Taker) -> Taken:
             "type the value"
         )
     if isinstance(cell, datetime | date | time):
-        return Taken(problem=f"a date ({shown(cell)}) stands here; type what was meant as text")
+        return Taken(problem=_date_problem(cell))
     if is_blank(cell):
         return NOTHING
     return taker(squeeze(_FOOTNOTE.sub("", str(cell))))
+
+
+def _date_problem(cell: date | time) -> str:
+    if isinstance(cell, date):
+        typed = f"perhaps {cell.month}/{cell.day} or {cell.day}/{cell.month} was typed"
+        return f"a date ({shown(cell)}) stands here, {typed}; type it as text"
+    return f"a time of day ({shown(cell)}) stands here; type what was meant as text"
 
 
 _FOOTNOTE = re.compile(r"(?<=[\w\"'″′)])\s*(?:[*†‡]+|\d\))\s*$")

@@ -45,9 +45,27 @@ def check(draft: Draft) -> None:
             f"a cant from {low:g} to 300 mm",
         )
     _class_speeds(draft)
+    _needed_cant(draft)
     _order(draft)
     _bounds(draft)
     _fixed(draft)
+
+
+NEEDED_CANT_MM = 700.0
+"""Equilibrium cant beyond which radius and speed of a row are doubted in a note."""
+
+
+def _needed_cant(draft: Draft) -> None:
+    with np.errstate(invalid="ignore", divide="ignore"):
+        needed = 11.8 * draft.numbers["speed_kmh"] ** 2 / np.abs(draft.numbers["radius_m"])
+        doubtful = np.flatnonzero(needed > NEEDED_CANT_MM)
+    if len(doubtful):
+        rows = ", ".join(str(int(draft.rows[i])) for i in doubtful[:12])
+        more = f" and {len(doubtful) - 12} more" if len(doubtful) > 12 else ""
+        where = f"sheet '{draft.sheet}', " if draft.sheet else ""
+        draft.context.notes.append(
+            f"{where}rows {rows}{more}: line speed and radius hardly belong together; check both"
+        )
 
 
 def _at(draft: Draft, bad: BoolArray) -> list[int]:

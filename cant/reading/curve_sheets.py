@@ -17,12 +17,13 @@ from cant.reading.draft import Context, Draft
 from cant.reading.elements import curves_of_elements, is_element_list
 from cant.reading.evidence import language_of
 from cant.reading.layout import Block, find_blocks
-from cant.reading.meanings import Column, correct, decide, settle_doubles
+from cant.reading.meanings import correct, decide, settle_doubles
 from cant.reading.numbers import decimal_mark
 from cant.reading.places import is_track, line_named, track_named
 from cant.reading.quantities import fill
 from cant.reading.records import is_example
 from cant.reading.rows import fill_merged, sift
+from cant.reading.sheet_column import Column
 from cant.reading.text import is_blank, is_text, shown, squeeze
 from cant.reading.weak import Doubt, settle_weak
 

@@ -13,7 +13,7 @@ from cant.files.grid import Sheet, Value
 from cant.reading.cells import PAIR, Taken
 from cant.reading.chainages import take_location
 from cant.reading.columns import column
-from cant.reading.meanings import Column
+from cant.reading.sheet_column import Column
 from cant.reading.takers import take_cant, take_transition
 
 _TAKERS: dict[str, Callable[[str, str], Taken]] = {

@@ -15,7 +15,7 @@ from cant.model.reading import Question, RejectedRow
 from cant.model.traffic import Traffic
 from cant.reading.answers import Answers
 from cant.reading.layout import Block
-from cant.reading.meanings import Column
+from cant.reading.sheet_column import Column
 from cant.reading.text import shown, squeeze
 
 NUMERIC: dict[str, tuple[str, str]] = {

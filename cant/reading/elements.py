@@ -13,8 +13,8 @@ import numpy as np
 from cant.model.curves import FloatArray
 from cant.reading.cells import STRAIGHT, take_column
 from cant.reading.draft import Draft
-from cant.reading.meanings import Column
 from cant.reading.quantities import fill
+from cant.reading.sheet_column import Column
 from cant.reading.takers import take_radius
 from cant.reading.text import fold, is_blank, is_text, shown, squeeze
 from cant.reading.words import lexicon

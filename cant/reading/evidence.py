@@ -7,7 +7,7 @@ from collections.abc import Iterable, Sequence
 from dataclasses import dataclass, replace
 
 from cant.reading.headings import DEGREES_MINUTES, MILES_CHAINS, MILES_YARDS, matches
-from cant.reading.meanings import Column
+from cant.reading.sheet_column import Column
 from cant.reading.text import fold
 
 IMPERIAL = frozenset({"in", "ft", "yd", "ch", "mi", "mph", MILES_CHAINS, MILES_YARDS})

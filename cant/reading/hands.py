@@ -13,7 +13,7 @@ import numpy as np
 
 from cant.model.curves import LEFT, RIGHT
 from cant.reading.draft import Draft
-from cant.reading.meanings import Column
+from cant.reading.sheet_column import Column
 from cant.reading.takers import HANDS
 from cant.reading.text import fold, is_blank, shown, squeeze
 from cant.reading.words import lexicon, meaning_of
@@ -89,13 +89,8 @@ def _signed_cant(draft: Draft, signs: np.ndarray) -> Column | None:
 
 
 def _from_signs(draft: Draft, signs: np.ndarray, item: Column) -> None:
-    known = (draft.hand != 0) & (signs != 0)
-    agree, differ = (
-        int((draft.hand[known] == signs[known]).sum()),
-        int((draft.hand[known] == -signs[known]).sum()),
-    )
-    if known.any():
-        _with_words(draft, signs, item, known, agree >= differ, agree, differ)
+    if ((draft.hand != 0) & (signs != 0)).any():
+        _beside_words(draft, signs, item)
         return
     turn = sign_rule([item.heading.text, *draft.block.title])
     if turn == 0:
@@ -114,18 +109,26 @@ def _from_signs(draft: Draft, signs: np.ndarray, item: Column) -> None:
     draft.hand[:] = np.where(signs == 0, draft.hand, np.where(signs * turn > 0, LEFT, RIGHT))
 
 
-def _with_words(
-    draft: Draft, signs: np.ndarray, item: Column, known: np.ndarray, same: bool, agree: int, differ: int
-) -> None:
-    turn = 1 if same else -1
-    if min(agree, differ) > 0:
-        few = known & (draft.hand == -turn * signs)
-        only_some_signed = (signs < 0).sum() < 0.1 * len(signs)
-        for index in np.flatnonzero(few):
-            if signs[index] < 0 or not only_some_signed:
-                draft.fail(int(index), item, "the sign contradicts the hand that the row names")
-    fillable = (draft.hand == 0) & (signs != 0)
-    draft.hand[fillable] = np.where(turn * signs[fillable] > 0, LEFT, RIGHT)
+def _beside_words(draft: Draft, signs: np.ndarray, item: Column) -> None:
+    """Let hands in words say what the signs mean, and refuse the rows whose sign says otherwise."""
+    plus, minus = _share_of_left(draft, signs, 1), _share_of_left(draft, signs, -1)
+    turn = 0
+    if (np.isnan(plus) or plus >= 0.8) and (np.isnan(minus) or minus <= 0.2):
+        turn = 1
+    elif (np.isnan(plus) or plus <= 0.2) and (np.isnan(minus) or minus >= 0.8):
+        turn = -1
+    known = (draft.hand != 0) & (signs != 0)
+    wrong = known & (draft.hand != turn * signs) if turn else known & (signs < 0)
+    for index in np.flatnonzero(wrong):
+        draft.fail(int(index), item, "the sign contradicts the hand that the row names")
+    if turn:
+        fillable = (draft.hand == 0) & (signs != 0)
+        draft.hand[fillable] = np.where(turn * signs[fillable] > 0, LEFT, RIGHT)
+
+
+def _share_of_left(draft: Draft, signs: np.ndarray, sign: int) -> float:
+    hands = draft.hand[(signs == sign) & (draft.hand != 0)]
+    return float((hands == LEFT).mean()) if len(hands) else np.nan
 
 
 def _free_cant(draft: Draft) -> None:
@@ -134,7 +137,7 @@ def _free_cant(draft: Draft) -> None:
     with np.errstate(invalid="ignore"):
         both = (cant != 0) & ~np.isnan(cant)
         below = both & (cant < 0)
-    if not below.any():
+    if not below.any() or draft.canonical:
         return
     item = draft.column("Cant")
     if item is not None and item.confidence == "asked":

@@ -7,18 +7,13 @@ that is known or not.
 from __future__ import annotations
 
 from dataclasses import dataclass, field
-from functools import lru_cache
 
 from cant.files.grid import Sheet, Value
-from cant.reading.headings import analyse, matches
+from cant.reading.headers import has_figures, header_parts, header_rows, heading_score, is_unit_row, scores
 from cant.reading.text import fold, is_blank, is_text, shown, squeeze
-from cant.reading.words import lexicon
-from cant.units import find_unit
 
 SEARCHED_ROWS = 120
 """A header is looked for in so many rows from the top."""
-
-HEADER_ROWS = 3
 
 
 @dataclass
@@ -66,37 +61,6 @@ class Block:
     group: str = ""
 
 
-@lru_cache(maxsize=8192)
-def heading_score(text: str) -> float:
-    """How surely a text is the heading of a column of a curve list, 0 to 1."""
-    heading = analyse(text)
-    if len(heading.text) > 60:
-        return 0.0
-    if (best := matches(heading.words)) and best[0].score >= 0.45:
-        return best[0].score
-    tokens = heading.words.split()
-    trains = lexicon("categories") | lexicon("train_words")
-    if tokens and any(t in trains and len(t) > 1 for t in tokens):
-        return 0.4
-    return 0.0
-
-
-def _scores(cells: list[Value]) -> list[float]:
-    return [heading_score(cell) if is_text(cell) else 0.0 for cell in cells]
-
-
-def _has_figures(cells: list[Value]) -> bool:
-    """Whether a row holds values rather than headings."""
-    for cell in cells:
-        if isinstance(cell, float | int) and not isinstance(cell, bool):
-            return True
-        if is_text(cell) and any(c.isdigit() for c in str(cell)) and heading_score(str(cell)) < 0.45:
-            head = str(cell).strip()
-            if head[:1].isdigit() or head[:1] in "+-":
-                return True
-    return False
-
-
 def find_blocks(sheet: Sheet, strict_from: int = 1) -> list[Block]:
     """Find the curve tables of a sheet.
 
@@ -109,9 +73,9 @@ def find_blocks(sheet: Sheet, strict_from: int = 1) -> list[Block]:
     best = _best_row(sheet, strict_from)
     if best is None:
         return []
-    first, last = _header_rows(sheet, best)
-    unit_row = _is_unit_row(sheet, last + 1)
-    parts = _header_parts(sheet, first, last)
+    first, last = header_rows(sheet, best)
+    unit_row = is_unit_row(sheet, last + 1)
+    parts = header_parts(sheet, first, last)
     columns = [
         BlockColumn(index, texts, squeeze(shown(sheet.value(last + 1, index))) if unit_row else "")
         for index, texts in sorted(parts.items())
@@ -169,109 +133,12 @@ def _best_row(sheet: Sheet, start: int) -> int | None:
         cells = sheet.rows[row - 1]
         if sum(is_text(cell) for cell in cells) < 2:
             continue
-        score = sum(_scores(cells))
-        if _has_figures(cells):
+        score = sum(scores(cells))
+        if has_figures(cells):
             score -= 1.5
         if score >= 1.4 and (best is None or score > best[0] + 0.01):
             best = (score, row)
     return best[1] if best else None
-
-
-def _header_rows(sheet: Sheet, best: int) -> tuple[int, int]:
-    first = last = best
-    while first > 1 and last - first + 1 < HEADER_ROWS and _belongs_above(sheet, first - 1, first):
-        first -= 1
-    while last - first + 1 < HEADER_ROWS and _belongs_below(sheet, last + 1):
-        last += 1
-    return first, last
-
-
-def _belongs_above(sheet: Sheet, row: int, below: int) -> bool:
-    cells = sheet.rows[row - 1]
-    texts = [i for i, cell in enumerate(cells) if is_text(cell)]
-    if _has_figures(cells) or not texts:
-        return False
-    wide = [m for m in sheet.merged if m.first_row <= row <= m.last_row and m.last_column > m.first_column]
-    grouped = [m for m in wide if m.last_column - m.first_column + 1 < max(4, sheet.width * 0.7)]
-    scored = sum(score >= 0.4 for score in _scores(cells))
-    if len(texts) == 1:
-        return bool(grouped) and scored == 1
-    beside = sum(len(shown(cells[i])) > 40 for i in texts)
-    return beside == 0 and (scored >= 1 or len(grouped) >= 2)
-
-
-def _belongs_below(sheet: Sheet, row: int) -> bool:
-    if row > len(sheet.rows):
-        return False
-    cells = sheet.rows[row - 1]
-    texts = [i for i, cell in enumerate(cells) if is_text(cell)]
-    if len(texts) < 2 or _has_figures(cells) or _is_unit_row(sheet, row):
-        return False
-    known = sum(
-        score >= 0.4 or _names_unit(str(cells[i])) for i, score in enumerate(_scores(cells)) if i in texts
-    )
-    return known >= max(2, 0.5 * len(texts))
-
-
-_UNIT_LIKE = frozenset(
-    {"sta", "station", "l r", "lh rh", "nr", "dms", "d m s", "text", "id", "g d", "h v", "l p", "type"}
-)
-
-
-def _is_unit_row(sheet: Sheet, row: int) -> bool:
-    if row > len(sheet.rows):
-        return False
-    cells = [squeeze(shown(c)) for c in sheet.rows[row - 1] if not is_blank(c)]
-    units = sum(_names_unit(c) for c in cells)
-    neutral = sum(fold(c) in _UNIT_LIKE for c in cells)
-    if any(heading_score(c) >= 0.5 and not _names_unit(c) and fold(c) not in _UNIT_LIKE for c in cells):
-        return False
-    return units >= 2 and units + neutral >= 0.6 * len(cells) and not any(c[:1].isdigit() for c in cells)
-
-
-def _names_unit(text: str) -> bool:
-    bare = text.strip("()[] .")
-    if find_unit(bare) is not None:
-        return True
-    taken = analyse(f"x ({bare})")
-    return bool(taken.notation) or taken.chord_m is not None or (bool(taken.unit) and len(bare) < 12)
-
-
-def _header_parts(sheet: Sheet, first: int, last: int) -> dict[int, tuple[str, ...]]:
-    filled = {row: _header_row(sheet, row, row < last, last) for row in range(first, last + 1)}
-    parts: dict[int, tuple[str, ...]] = {}
-    for index in range(sheet.width):
-        texts = [filled[row].get(index, "") for row in range(first, last + 1)]
-        kept = tuple(dict.fromkeys(t for t in texts if t))
-        if kept:
-            parts[index] = kept
-    return parts
-
-
-def _header_row(sheet: Sheet, row: int, is_group: bool, last: int) -> dict[int, str]:
-    cells = sheet.rows[row - 1]
-    found = {i: squeeze(shown(cell)) for i, cell in enumerate(cells) if not is_blank(cell)}
-    merged = [m for m in sheet.merged if m.first_row <= row <= m.last_row and m.last_column > m.first_column]
-    for area in merged:
-        text = squeeze(shown(sheet.value(area.first_row, area.first_column)))
-        for index in range(area.first_column, area.last_column + 1):
-            if text:
-                found[index] = text
-    if is_group and not merged:
-        _carry_right(sheet, row, last, found)
-    return found
-
-
-def _carry_right(sheet: Sheet, row: int, last: int, found: dict[int, str]) -> None:
-    current = ""
-    for index in range(sheet.width):
-        if index in found:
-            current = found[index]
-        elif any(not is_blank(sheet.value(r, index)) for r in range(row + 1, last + 1)):
-            if current:
-                found[index] = current
-        else:
-            current = ""
 
 
 def _unheaded(sheet: Sheet, headed: set[int], last: int) -> list[BlockColumn]:

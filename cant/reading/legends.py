@@ -7,7 +7,7 @@ from collections.abc import Iterable, Sequence
 
 from cant.reading.columns import column, strong_headings, weak_headings
 from cant.reading.headings import MILES_CHAINS, MILES_YARDS, analyse
-from cant.reading.meanings import Column
+from cant.reading.sheet_column import Column
 from cant.reading.text import fold
 from cant.reading.words import lexicon
 from cant.units import find_unit, unit

@@ -18,7 +18,8 @@ from cant.reading.draft import Draft
 from cant.reading.evidence import Evidence
 from cant.reading.headings import MILES_CHAINS, MILES_YARDS
 from cant.reading.legends import notation_said
-from cant.reading.meanings import Column
+from cant.reading.miles import like_miles_and_yards, mile_notations
+from cant.reading.sheet_column import Column
 from cant.units import FOOT_M, ratio
 
 LOCATIONS = ("Transition start", "Start", "End", "Transition end")
@@ -139,7 +140,7 @@ SURE = 8
 
 
 def counts_miles_and_yards(draft: Draft) -> bool:
-    """Whether chainages without a unit are miles and yards: told by an answer, or all decimals are below .1760."""
+    """Whether chainages without unit are miles and yards: by an answer, or all decimals are below .1760."""
     items = [item for name in LOCATIONS if (item := draft.column(name)) is not None]
     if not items or any(item.unit or item.notation for item in items) or draft.canonical:
         return False
@@ -149,15 +150,7 @@ def counts_miles_and_yards(draft: Draft) -> bool:
     bare = [_bare(take_column(item.cells, lambda text: take_location(text, draft.decimal))) for item in items]
     every = np.concatenate(bare)
     every = every[~np.isnan(every)]
-    return len(every) >= SURE and _like_miles_and_yards(every)
-
-
-def _like_miles_and_yards(every: FloatArray) -> bool:
-    parts = np.round(every - np.floor(every + 1e-9), 6)
-    hundredths, myriads = np.round(parts * 100, 4), np.round(parts * 10000, 2)
-    two_digits = bool(np.all(np.abs(hundredths - np.round(hundredths)) < 1e-3))
-    four_digits = bool(np.all(np.abs(myriads - np.round(myriads)) < 1e-1))
-    return four_digits and not two_digits and bool(np.all(parts < 0.1760)) and float(np.max(every)) < 1000
+    return len(every) >= SURE and like_miles_and_yards(every)
 
 
 def _candidates(
@@ -166,7 +159,7 @@ def _candidates(
     """Give the readings that headings, decimals and spans leave open, the likeliest first."""
     named = first.unit
     if named == "mi":
-        open_ones = _mile_notations(first, every, evidence)
+        open_ones = mile_notations(first, every, evidence)
     elif named:
         open_ones = (
             [named, METRES] if named == KM and first.unit_from not in ("answer", "legend") else [named]
@@ -174,8 +167,8 @@ def _candidates(
     elif draft.canonical:
         open_ones = [KM, METRES]
     elif evidence.counts_miles and not _says_km(draft):
-        open_ones = [*_mile_notations(first, every, evidence), KM, METRES, FEET]
-    elif len(every) >= 4 and _like_miles_and_yards(every):
+        open_ones = [*mile_notations(first, every, evidence), KM, METRES, FEET]
+    elif len(every) >= 4 and like_miles_and_yards(every):
         open_ones = [MILES_YARDS, KM]
     else:
         open_ones = [KM, METRES]
@@ -189,26 +182,6 @@ def _candidates(
 
 def _says_km(draft: Draft) -> bool:
     return any("km" in c.heading.text.casefold().split() for c in draft.columns)
-
-
-def _mile_notations(first: Column, every: FloatArray, evidence: Evidence) -> list[str]:
-    parts = np.round(every - np.floor(every + 1e-9), 6)
-    hundredths, myriads = np.round(parts * 100, 4), np.round(parts * 10000, 2)
-    two_digits = bool(np.all(np.abs(hundredths - np.round(hundredths)) < 1e-3))
-    four_digits = bool(np.all(np.abs(myriads - np.round(myriads)) < 1e-1)) and not two_digits
-    spelled = "mile" in first.heading.text.casefold() and "mileage" not in first.heading.text.casefold()
-    if spelled and two_digits:
-        return [MILES]
-    if spelled:
-        return [MILES_YARDS, MILES] if four_digits and bool(np.all(parts < 0.1760)) else [MILES]
-    milepost = "mp" in first.heading.text.casefold().split() or "milepost" in first.heading.text.casefold()
-    if four_digits and len(every) >= 4 and bool(np.all(parts < 0.1760)):
-        return [MILES_YARDS] if len(every) >= 6 else [MILES_YARDS, MILES]
-    if two_digits and bool(np.all(parts < 0.80)) and not milepost:
-        if "ch" in evidence.imperial or len(every) >= 30:
-            return [MILES_CHAINS]
-        return [MILES_CHAINS, MILES]
-    return [MILES]
 
 
 def _spans_fit(bare: dict[str, FloatArray], unit: str, every: FloatArray) -> bool:

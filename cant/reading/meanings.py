@@ -6,76 +6,22 @@ Decides only; values are turned into quantities elsewhere, with what is decided 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass, field, replace
-from itertools import islice, pairwise
+from dataclasses import replace
 
 from cant.files.grid import Value
 from cant.reading.answers import Answers
 from cant.reading.columns import column
 from cant.reading.definitions import definitions
-from cant.reading.headings import Heading, Match, analyse, matches
+from cant.reading.headings import Match, analyse, matches
 from cant.reading.layout import Block, BlockColumn
-from cant.reading.numbers import parse_number
-from cant.reading.text import fold, is_blank, shown, squeeze
+from cant.reading.neighbours import bracketed_trains, continue_speeds, hand_by_values
+from cant.reading.sheet_column import Column
+from cant.reading.text import fold, is_blank, squeeze
 from cant.reading.trains import known_train, names_only_trains, says_speed, train_words
 from cant.reading.words import lexicon
 from cant.units import find_unit, unit
 
 PROPOSED, EXISTING = "proposed", "existing"
-
-
-@dataclass
-class Column:
-    """One column of a curve table with its meaning.
-
-    Attributes
-    ----------
-    index : int
-    heading : Heading
-    meaning : str
-        Canonical name; ``Speed`` with ``train`` where it is a class's; "" where it is the user's own.
-    unit, unit_from : str
-        As far as heading or unit row say; "" where nothing says it yet.
-    train : str
-        Folded words of the train that a speed column names, "" for the line speed.
-    train_name : str
-        The same as the user wrote it.
-    confidence, note : str
-    train_part : str
-        Folded lowest part of a speed heading, whole: ``tipo n``.
-    literal : bool
-        True for a canonical ``Speed NAME``.
-    cells : list of Value
-        Values of the data rows.
-    """
-
-    index: int
-    heading: Heading
-    meaning: str = ""
-    unit: str = ""
-    unit_from: str = ""
-    train: str = ""
-    train_name: str = ""
-    confidence: str = "certain"
-    note: str = ""
-    literal: bool = False
-    cells: Sequence[Value] = field(default_factory=list)
-    train_part: str = ""
-
-    @property
-    def notation(self) -> str:
-        """Notation that the heading names."""
-        return self.heading.notation
-
-    @property
-    def is_canonical(self) -> bool:
-        """Whether the heading is the canonical one of the meaning, but for case and unit."""
-        return self.literal or (not self.train and self.heading.words == fold(self.meaning))
-
-    def samples(self, count: int = 3) -> tuple[str, ...]:
-        """Give some values as they stand."""
-        texts = (squeeze(shown(cell)) for cell in dict.fromkeys(self.cells) if not is_blank(cell))
-        return tuple(islice(dict.fromkeys(islice(texts, 4 * count)), count))
 
 
 def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
@@ -89,23 +35,10 @@ def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
     """
     said = definitions(block.title)
     columns = [_from_heading(_as_defined(c, said), cells.get(c.index, [])) for c in block.columns]
-    _continue_speeds(columns)
-    _bracketed_trains(columns)
-    _hand_by_values(columns)
+    continue_speeds(columns)
+    bracketed_trains(columns)
+    hand_by_values(columns)
     return columns
-
-
-def _hand_by_values(columns: list[Column]) -> None:
-    """Take a column of nothing but hands for the hand, where no heading names one."""
-    if any(c.meaning == "Hand" for c in columns):
-        return
-    known = lexicon("hands")
-    for item in columns:
-        texts = [fold(c) for c in item.cells[:2000] if isinstance(c, str) and not is_blank(c)]
-        hits = [known[t] for t in texts if t in known]
-        if not item.meaning and len(set(hits)) == 2 and len(hits) >= 0.8 * len(texts) - 1:
-            item.meaning, item.confidence, item.note = "Hand", "likely", "by its values"
-            return
 
 
 def _as_defined(source: BlockColumn, said: dict[str, str]) -> BlockColumn:
@@ -119,44 +52,6 @@ def _as_defined(source: BlockColumn, said: dict[str, str]) -> BlockColumn:
         return source
     tail = words[len(stem) :] if words not in said else ""
     return BlockColumn(source.index, (f"{phrase} {tail}".strip(),), source.unit_row, source.heading)
-
-
-def _continue_speeds(columns: list[Column]) -> None:
-    """Let short unknown headings right of a speed column go on with its row: ``V rango A | B | C``."""
-    for left, item in pairwise(columns):
-        words = item.heading.words
-        unsure = not item.meaning or item.confidence == "likely"
-        if left.meaning != "Speed" or not left.train or not words or not unsure or len(words) > 8:
-            continue
-        if item.unit and unit(item.unit).dimension != "speed":
-            continue
-        if _like_speeds(item.cells):
-            item.meaning, item.train, item.train_name = "Speed", words, item.heading.text
-            item.confidence, item.note = "likely", "goes on with the speeds left of it"
-            if not item.unit:
-                item.unit, item.unit_from = left.unit, left.unit_from and "other columns"
-
-
-def _like_speeds(cells: Sequence[Value]) -> bool:
-    values = [
-        c for c in cells[:500] if isinstance(c, float) or (isinstance(c, str) and parse_number(c) is not None)
-    ]
-    numbers = [v if isinstance(v, float) else parse_number(v) or 0.0 for v in values]
-    return (
-        bool(numbers)
-        and all(10 <= v <= 350 for v in numbers)
-        and sum(v % 5 == 0 for v in numbers) >= 0.8 * len(numbers)
-    )
-
-
-def _bracketed_trains(columns: list[Column]) -> None:
-    """Take the train from brackets: ``V (AUT)``, ``V (MERC)``."""
-    lines = [c for c in columns if c.meaning == "Speed" and not c.train and c.heading.brackets]
-    for item in lines:
-        content = item.heading.brackets[-1]
-        words = fold(content)
-        if "/" not in content and words and (known_train(words) or len(lines) > 1):
-            item.train, item.train_name = words, content
 
 
 def correct(columns: list[Column], answers: Answers, sheet: str) -> None:

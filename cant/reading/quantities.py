@@ -9,11 +9,10 @@ from cant.reading.cells import PAIR, Numbers, take_column
 from cant.reading.columns import column
 from cant.reading.draft import NUMERIC, Draft
 from cant.reading.evidence import Evidence, gather
-from cant.reading.headings import MILES_YARDS
 from cant.reading.hands import settle_hands
+from cant.reading.headings import MILES_YARDS
 from cant.reading.legends import apply_legends
 from cant.reading.locations import counts_miles_and_yards, settle_locations
-from cant.reading.meanings import Column
 from cant.reading.radii import settle_radius
 from cant.reading.scales import (
     settle_arc_unit,
@@ -22,6 +21,7 @@ from cant.reading.scales import (
     settle_speed_unit,
     share_units,
 )
+from cant.reading.sheet_column import Column
 from cant.reading.situations import known_situations, read_situations, situations_in
 from cant.reading.speeds import highest_speed, settle_speeds, split_speed_columns
 from cant.reading.takers import take_cant, take_length, take_transition

@@ -14,8 +14,9 @@ import numpy as np
 from cant.files.grid import Sheet, Value
 from cant.reading.cells import take_column
 from cant.reading.degrees import take_degree
-from cant.reading.layout import Block, heading_score
-from cant.reading.meanings import Column
+from cant.reading.headers import heading_score
+from cant.reading.layout import Block
+from cant.reading.sheet_column import Column
 from cant.reading.takers import is_straight, take_length, take_radius
 from cant.reading.text import fold, is_blank, is_text, shown, squeeze
 from cant.reading.words import lexicon

@@ -15,7 +15,7 @@ from cant.model.curves import FloatArray
 from cant.reading.cells import Numbers
 from cant.reading.draft import Draft
 from cant.reading.evidence import Evidence
-from cant.reading.meanings import Column
+from cant.reading.sheet_column import Column
 from cant.units import ratio, unit
 
 _FAMILIES = (

@@ -17,7 +17,7 @@ from cant.model.curves import DOES_NOT_RUN, FloatArray
 from cant.reading.cells import NONE, PAIR, Numbers, take_column
 from cant.reading.draft import Draft
 from cant.reading.headings import analyse
-from cant.reading.meanings import Column
+from cant.reading.sheet_column import Column
 from cant.reading.takers import take_speed
 from cant.reading.text import fold, is_text, squeeze
 from cant.reading.trains import classes_meant, known_train, ranked_classes
@@ -139,6 +139,8 @@ def settle_speeds(draft: Draft) -> None:
         sure, names = classes_of(draft, item)
         rank = (sure, len(names))
         for name in names:
+            if name in ranked and rank == ranked[name]:
+                _note_rival(draft, item, name, values)
             if name not in ranked or rank < ranked[name]:
                 draft.class_speeds[name], ranked[name] = values.copy(), rank
 
@@ -214,7 +216,16 @@ def classes_of(draft: Draft, item: Column) -> tuple[int, list[str]]:
         raise InputError(message, place)
     item.note = f"no class of the traffic is called '{item.train_name}'; not used"
     item.confidence = "likely"
+    draft.context.notes.append(f"column '{item.heading.text}': {item.note}")
     return sure, []
+
+
+def _note_rival(draft: Draft, item: Column, name: str, values: FloatArray) -> None:
+    """Say that a class has its speed from another column that fits it as well."""
+    if not np.array_equal(values, draft.class_speeds[name], equal_nan=True):
+        item.note = f"class '{name}' has its speed from an earlier column; not used"
+        item.confidence = "likely"
+        draft.context.notes.append(f"column '{item.heading.text}': {item.note}")
 
 
 def highest_speed(draft: Draft) -> FloatArray:

@@ -19,8 +19,8 @@ from cant.reading.chainages import take_location
 from cant.reading.columns import column
 from cant.reading.degrees import take_degree
 from cant.reading.headings import matches
-from cant.reading.meanings import Column
 from cant.reading.numbers import parse_number
+from cant.reading.sheet_column import Column
 from cant.reading.takers import take_cant, take_length, take_radius, take_speed, take_transition
 from cant.reading.text import fold, is_blank, shown
 from cant.reading.words import lexicon

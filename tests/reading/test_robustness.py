@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import random
 from datetime import date, datetime, time
+from typing import Any
 
 import messy
 import messy_far
@@ -12,12 +13,14 @@ import messy_more
 import messy_wide
 import numpy as np
 import pytest
-from cant.errors import CantError
-from cant.files.grid import CellError, Sheet, Uncalculated, Value, Workbook
-from cant.reading import read_workbook, reading_document, reading_table
 from hypothesis import HealthCheck, given, settings
 from hypothesis import strategies as st
 from messy import Messy
+
+from cant.errors import CantError
+from cant.files.grid import CellError, Sheet, Uncalculated, Value, Workbook
+from cant.model.reading import Reading
+from cant.reading import read_workbook, reading_document, reading_table
 
 LISTS = [
     *messy.LAYOUTS,
@@ -64,20 +67,55 @@ ODD: list[Value] = [
     "²",
 ]
 
-HEADINGS = ["Curve", "Radius", "R", "D", "Start", "km von", "MP", "Cant", "E", "Hand", "Speed", "V Gz", "Type", "Dévers"]
-HEADINGS += ["Transition", "ÜB", "Versine", "Chord", "Degree", "R1", "R2", "Length", "Track", "Line", "Remarks", "(mm)", ""]
+HEADINGS = [
+    "Curve",
+    "Radius",
+    "R",
+    "D",
+    "Start",
+    "km von",
+    "MP",
+    "Cant",
+    "E",
+    "Hand",
+    "Speed",
+    "V Gz",
+    "Type",
+]
+HEADINGS += [
+    "Transition",
+    "ÜB",
+    "Versine",
+    "Chord",
+    "Degree",
+    "R1",
+    "R2",
+    "Length",
+    "Track",
+    "Line",
+    "(mm)",
+    "",
+]
 
 cells = st.one_of(st.sampled_from(ODD), st.floats(-1e4, 1e4), st.text(max_size=8), st.sampled_from(HEADINGS))
+
+
+def read_or_refuse(workbook: Workbook, answers: dict[str, Any] | None = None) -> Reading | None:
+    """Read a workbook; None where it is refused, in one line."""
+    try:
+        return read_workbook(workbook, answers=answers)
+    except CantError as error:
+        message = str(error)
+    assert "\n" not in message
+    return None
 
 
 @settings(max_examples=150, suppress_health_check=[HealthCheck.too_slow])
 @given(st.lists(st.lists(cells, max_size=8), max_size=8), st.lists(st.sampled_from(HEADINGS), max_size=8))
 def test_any_grid_is_read_or_refused_in_one_line(rows: list[list[Value]], header: list[str]) -> None:
     grid = [[v if v != "" else None for v in row] for row in [list(header), *rows]]
-    try:
-        reading = read_workbook(Workbook("any.xlsx", "xlsx", [Sheet("Any", grid)]))
-    except CantError as error:
-        assert "\n" not in str(error)
+    reading = read_or_refuse(Workbook("any.xlsx", "xlsx", [Sheet("Any", grid)]))
+    if reading is None:
         return
     reading_document(reading)
     reading_table(reading)
@@ -95,12 +133,9 @@ def test_odd_cells_never_crash_the_reader(case: Messy) -> None:
             if rows[row]:
                 rows[row][chance.randrange(len(rows[row]))] = chance.choice(ODD)
         bent = Sheet(source.name, rows, source.merged, source.hidden_rows)
-        try:
-            reading = read_workbook(Workbook("bent.xlsx", "xlsx", [bent, *case.sheets[1:]]), answers=case.answers)
-        except CantError as error:
-            assert "\n" not in str(error)
-            continue
-        reading_document(reading)
+        reading = read_or_refuse(Workbook("bent.xlsx", "xlsx", [bent, *case.sheets[1:]]), case.answers)
+        if reading is not None:
+            reading_document(reading)
 
 
 @pytest.mark.parametrize("name", ["german", "stacked", "polish", "metres", "india-full", "decimal-miles"])
@@ -120,7 +155,8 @@ def test_a_bad_cell_changes_nothing_in_other_rows(name: str) -> None:
 
 
 @pytest.mark.parametrize(
-    "name", ["gb-chains", "german", "french", "polish", "czech", "brazil", "metres", "india-full", "portuguese-old"]
+    "name",
+    ["gb-chains", "german", "french", "polish", "czech", "brazil", "metres", "india-full", "portuguese-old"],
 )
 def test_the_order_of_columns_does_not_matter(name: str) -> None:
     case = next(c for c in LISTS if c.name == name)
@@ -135,9 +171,10 @@ def test_the_order_of_columns_does_not_matter(name: str) -> None:
         for number, row in enumerate(source.rows, start=1):
             padded = [*row, *[None] * (width - len(row))]
             rows.append([padded[i] for i in order] if number >= header else list(row))
-        shuffled = read_workbook(Workbook("x.xlsx", "xlsx", [Sheet(source.name, rows), *case.sheets[1:]])).curves
+        sheets = [Sheet(source.name, rows), *case.sheets[1:]]
+        shuffled = read_workbook(Workbook("x.xlsx", "xlsx", sheets)).curves
         keys = {k for row in case.expected.values() for k in row} & set(whole.as_read(0))
         for index in range(len(whole)):
             at = int(np.flatnonzero(shuffled.row == whole.row[index])[0])
-            for key in keys - ({"transition_in_m", "transition_out_m"} if "Trans out" in str(source.rows) else set()):
+            for key in keys:
                 assert shuffled.as_read(at)[key] == whole.as_read(index)[key], (seed, key)
