@@ -115,7 +115,8 @@ class _Side:
         bounds, limits, rows = (
             np.concatenate(part, axis=1) for part in (self._bounds, self._limits, self._rows)
         )
-        order = np.argsort(bounds if self._rising else -bounds, axis=1, kind="stable")[:, :2]
+        strict = bounds if self._rising else np.negative(bounds)
+        order = np.argsort(strict, axis=1, kind="stable")[:, :2]
         if classes == 1:
             self._labels = [(rule, 0 if rule.of_class else -1) for rule, _ in self._labels]
         return [

@@ -15,6 +15,7 @@ import numpy.typing as npt
 from cant.explaining.decisions import (
     Change,
     ClassSpeed,
+    CurveKey,
     ExceptionalValues,
     ExcessWaived,
     Flatter,
@@ -77,6 +78,11 @@ class Candidate:
     def exceptional(self) -> bool:
         """Whether exceptional values are part of it."""
         return any(isinstance(change, ExceptionalValues) for _, change in self.changes)
+
+    @property
+    def moves(self) -> bool:
+        """Whether the ends of the curve move towards its neighbours."""
+        return any(isinstance(change, Flatter | TransitionLength) for _, change in self.changes)
 
 
 class Proposals:
@@ -187,8 +193,7 @@ class Proposals:
         return Candidate("exceptional value", curve, tuple(changes), departure, facts)
 
     def _on(self, kind: Any, curve: int, **values: Any) -> Any:
-        curves = self._outcome.curves
-        return kind(sheet=curves.sheet[curve], row=int(curves.row[curve]), **values)
+        return kind(on=CurveKey.of(self._outcome.curves, curve), **values)
 
     def _faster_slow(self, j: int) -> Iterator[Candidate]:
         line, curve = self._line, int(self._at[j])
@@ -256,8 +261,8 @@ class Proposals:
             departure = max(departure, (wanted - has) / max(has, 20.0))
             taken += (wanted - has) / 2
         for first, second, has, wanted in self._shared.get(curve, []):
-            where = {"next_sheet": curves.sheet[second], "next_row": int(curves.row[second])}
-            changes.append((first, self._on(SharedLength, first, length_m=wanted, **where)))
+            after = CurveKey.of(curves, second)
+            changes.append((first, self._on(SharedLength, first, length_m=wanted, next=after)))
             bend = abs(
                 curves.hand[first] / curves.radius_m[first] - curves.hand[second] / curves.radius_m[second]
             )
@@ -320,9 +325,9 @@ class Proposals:
         )
 
 
-def best_of_each_kind(found: Sequence[Candidate]) -> list[Candidate]:
-    """Give one candidate of each kind, the smallest departure first."""
-    chosen: dict[str, Candidate] = {}
-    for candidate in sorted(found, key=lambda one: (one.departure, one.kind)):
-        chosen.setdefault(candidate.kind, candidate)
+def best_of_each_kind(found: Sequence[tuple[Candidate, Answer]]) -> list[tuple[Candidate, Answer]]:
+    """Give one candidate of each kind with its answer, the smallest departure first."""
+    chosen: dict[str, tuple[Candidate, Answer]] = {}
+    for pair in sorted(found, key=lambda one: (one[0].departure, one[0].kind)):
+        chosen.setdefault(pair[0].kind, pair)
     return list(chosen.values())

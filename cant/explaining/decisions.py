@@ -25,13 +25,35 @@ Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
 NonNegative = Annotated[float, Field(ge=0, allow_inf_nan=False)]
 
 
-class _Change(BaseModel):
-    """A change on one curve, which is known by its sheet and row."""
+class CurveKey(BaseModel):
+    """How a curve of a list is known: by its names and by where it stands (a row may hold two curves)."""
 
     model_config = ConfigDict(frozen=True, extra="forbid")
 
     sheet: str
     row: int
+    line: str = ""
+    track: str = ""
+    curve: str = ""
+
+    @classmethod
+    def of(cls, curves: CurveList, index: int) -> CurveKey:
+        """Give the key of a curve."""
+        return cls(
+            sheet=curves.sheet[index],
+            row=int(curves.row[index]),
+            line=curves.line[index],
+            track=curves.track[index],
+            curve=curves.curve[index],
+        )
+
+
+class _Change(BaseModel):
+    """A change on one curve."""
+
+    model_config = ConfigDict(frozen=True, extra="forbid")
+
+    on: CurveKey
 
 
 class ClassSpeed(_Change):
@@ -66,13 +88,12 @@ class TransitionLength(_Change):
 class SharedLength(_Change):
     """The transition shared with the next curve of the list of chainages gets another length.
 
-    Its middle stays where it is, so both arcs give half of what is added; ``row`` is the curve at the smaller
-    chainage, ``next_row`` the other one.
+    Its middle stays where it is, so both arcs give half of what is added; ``on`` is the curve at the smaller
+    chainage, ``next`` the other one.
     """
 
     what: Literal["shared transition length"] = "shared transition length"
-    next_sheet: str
-    next_row: int
+    next: CurveKey
     length_m: Positive
 
 
@@ -138,18 +159,20 @@ def apply(decision: Decision, inputs: Inputs) -> Inputs:
     Raises
     ------
     InputError
-        A change names a row that the list does not have.
+        A change names a curve that the list does not have.
     """
     curves = inputs.curves
-    position = {key: i for i, key in enumerate(zip(curves.sheet, curves.row.tolist(), strict=True))}
+    position = {CurveKey.of(curves, i): i for i in range(len(curves))}
     placed = []
     for change in decision.changes:
-        if (change.sheet, change.row) not in position:
+        if change.on not in position:
             message = (
-                f"the list has no row {change.row} on sheet '{change.sheet}': the decision is of another list"
+                f"the list has no curve '{change.on.curve}' in row {change.on.row} on sheet "
+                f"'{change.on.sheet}': "
+                "the decision is of another list"
             )
             raise InputError(message)
-        placed.append((position[change.sheet, change.row], change))
+        placed.append((position[change.on], change))
     changed = curves.take(np.arange(len(curves)))
     settings = inputs.settings
     if any(isinstance(change, ExceptionalValues) for _, change in placed):
@@ -169,7 +192,7 @@ def open_exceptional(curves: CurveList, settings: Settings) -> Settings:
 
 
 def make_changes(
-    curves: CurveList, placed: Iterable[tuple[int, Change]], position: Mapping[tuple[str, int], int]
+    curves: CurveList, placed: Iterable[tuple[int, Change]], position: Mapping[CurveKey, int]
 ) -> None:
     """Make changes in a list, in place.
 
@@ -178,8 +201,8 @@ def make_changes(
     curves : CurveList
     placed : iterable of (int, Change)
         Each with the index of its curve. Exceptional values need :func:`open_exceptional` first.
-    position : mapping of (str, int) to int
-        Index of a sheet and row, for the second curve of a shared transition.
+    position : mapping of CurveKey to int
+        Index of a curve, for the second one of a shared transition.
     """
     for index, change in placed:
         match change:
@@ -196,7 +219,7 @@ def make_changes(
             case TransitionLength():
                 _lengthen(curves, index, change)
             case SharedLength():
-                _lengthen_shared(curves, index, position[change.next_sheet, change.next_row], change.length_m)
+                _lengthen_shared(curves, index, position[change.next], change.length_m)
             case Flatter():
                 _flatten(curves, index, change.radius_m)
             case SiteBounds():

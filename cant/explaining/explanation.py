@@ -143,6 +143,20 @@ class Explanation:
             return " ".join(texts) or "Not assessed."
         return self._reason(index, record).sentence()
 
+    def reasons(self, indices: Sequence[int], records: Sequence[Record]) -> list[str]:
+        """Give the reasons of some curves, made together, and no other words, for a table of many curves.
+
+        Parameters
+        ----------
+        indices : sequence of int
+            Curves that were not rejected.
+        records : sequence of dict
+            Their records as :meth:`cant.planning.Plan.records` gives them; each gains figures.
+        """
+        add_figures(self._plan, indices, records)
+        self._bind(indices)
+        return [self.reason(index, record) for index, record in zip(indices, records, strict=True)]
+
     def because(self, index: int, record: Record | None = None) -> dict[str, Any] | None:
         """Give the numbers behind the reason, metric; None for a curve that is not assessed."""
         record = record or self._plan.record(index)

@@ -14,7 +14,7 @@ from functools import cached_property
 import numpy as np
 import numpy.typing as npt
 
-from cant.explaining.decisions import Change, make_changes, open_exceptional
+from cant.explaining.decisions import Change, CurveKey, make_changes, open_exceptional
 from cant.model.plan import STATUSES
 from cant.planning.neighbours import chains_of
 from cant.planning.outcome import Outcome, plan_arrays
@@ -38,11 +38,14 @@ class Trial:
         Each with the curve that it changes, all of one chain.
     exceptional : bool or None
         Whether exceptional values may be used on the whole chain; None: as the plan has it.
+    moves : bool
+        The ends of the curve move: the room of the chains on either side changes, so they are planned too.
     """
 
     curve: int
     changes: Sequence[tuple[int, Change]] = ()
     exceptional: bool | None = None
+    moves: bool = False
 
 
 @dataclass(frozen=True)
@@ -54,7 +57,7 @@ class Answer:
     outcome : Outcome
         Of all the copies together.
     at : dict of int to int
-        Position in it of each curve of the chain.
+        Position in it of each curve that was planned as in the whole line.
     """
 
     outcome: Outcome
@@ -96,14 +99,25 @@ class Surroundings:
         found = self._chain_of.get(curve)
         return [curve] if found is None else [int(i) for i in found]
 
-    def around(self, curve: int) -> list[int]:
-        """Give the chain of a curve and what lies next to it on either side."""
+    def planned_with(self, curve: int, moves: bool) -> list[int]:
+        """Give the curves that a change can touch: the chain; where its ends move, those beside it too."""
         chain = self.chain(curve)
+        if not moves:
+            return chain
         before, after = self._beside
         return [
-            *([before[chain[0]]] if chain[0] in before else []),
+            *(self.chain(before[chain[0]]) if chain[0] in before else []),
             *chain,
-            *([after[chain[-1]]] if chain[-1] in after else []),
+            *(self.chain(after[chain[-1]]) if chain[-1] in after else []),
+        ]
+
+    def around(self, curves: list[int]) -> list[int]:
+        """Give consecutive curves and what lies next to them on either side."""
+        before, after = self._beside
+        return [
+            *([before[curves[0]]] if curves[0] in before else []),
+            *curves,
+            *([after[curves[-1]]] if curves[-1] in after else []),
         ]
 
 
@@ -129,7 +143,8 @@ def try_out(
     """
     if not trials:
         return []
-    parts = [surroundings.around(trial.curve) for trial in trials]
+    cores = [surroundings.planned_with(trial.curve, trial.moves) for trial in trials]
+    parts = [surroundings.around(core) for core in cores]
     begins = np.cumsum([0, *(len(part) for part in parts[:-1])])
     every = np.concatenate([np.array(part, dtype=np.int64) for part in parts])
     curves = outcome.curves.take(every)
@@ -138,7 +153,7 @@ def try_out(
         settings = settings.model_copy(update={"method": method})
     answers = []
     offset = 0.0
-    for trial, part, begin in zip(trials, parts, begins.tolist(), strict=True):
+    for trial, core, part, begin in zip(trials, cores, parts, begins.tolist(), strict=True):
         own = slice(begin, begin + len(part))
         ends = np.stack([curves.start_km[own], curves.end_km[own]])
         if not np.isnan(ends).all():
@@ -147,12 +162,11 @@ def try_out(
             curves.end_km[own] += offset - low
             offset += high - low + APART_KM
         at = {curve: begin + j for j, curve in enumerate(part)}
-        chain = {curve: at[curve] for curve in surroundings.chain(trial.curve)}
         if trial.exceptional is not None and curves.exceptional_allowed is not None:
-            curves.exceptional_allowed[list(chain.values())] = trial.exceptional
-        rows = {(curves.sheet[p], int(curves.row[p])): p for p in at.values()}
+            curves.exceptional_allowed[[at[curve] for curve in core]] = trial.exceptional
+        rows = {CurveKey.of(curves, p): p for p in at.values()} if trial.changes else {}
         make_changes(curves, [(at[curve], change) for curve, change in trial.changes], rows)
-        answers.append(chain)
+        answers.append({curve: at[curve] for curve in core})
     planned = plan_arrays(
         curves,
         outcome.traffic,
@@ -177,7 +191,7 @@ def _placed(outcome: Outcome, every: IntArray) -> dict[int, list[int]]:
 
 
 def no_worse(outcome: Outcome, answer: Answer, curve: int) -> bool:
-    """Tell whether no other curve of the chain has a graver status than in the plan."""
+    """Tell whether no other curve that the change can touch has a graver status than in the plan."""
     return all(
         _RANK[answer.status(other)] >= _RANK[outcome.status[other]] for other in answer.at if other != curve
     )

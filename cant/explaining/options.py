@@ -65,21 +65,21 @@ class Options:
         outcome = self._plan.outcome
         proposals = Proposals(outcome, np.array(curves, dtype=np.int64), *self._steps)
         candidates = self._candidates(curves, proposals)
-        answers = try_out(outcome, self._surroundings, [Trial(one.curve, one.changes) for one in candidates])
+        trials = [Trial(one.curve, one.changes, moves=one.moves) for one in candidates]
+        answers = try_out(outcome, self._surroundings, trials)
         good = [
             (one, answer) for one, answer in zip(candidates, answers, strict=True) if self._fits(one, answer)
         ]
-        records = self._records(good)
-        offered: dict[int, list[Candidate]] = {curve: [] for curve in curves}
-        results = {}
-        for (one, _), record in zip(good, records, strict=True):
-            ranked = _ranked(one, record)
-            offered[one.curve].append(ranked)
-            results[id(ranked)] = record
-        return {
-            curve: [self._option(one, results[id(one)]) for one in best_of_each_kind(found)[:MOST]]
-            for curve, found in offered.items()
-        }
+        # The rank of an approval is known only from its record; of the others only the best are looked at.
+        records = self._records([(one, answer) for one, answer in good if one.exceptional])
+        offered: dict[int, list[tuple[Candidate, Answer]]] = {curve: [] for curve in curves}
+        for one, answer in good:
+            ranked = _ranked(one, records[one.curve]) if one.exceptional else one
+            offered[one.curve].append((ranked, answer))
+        best = {curve: best_of_each_kind(found)[:MOST] for curve, found in offered.items()}
+        last = [pair for found in best.values() for pair in found]
+        told = iter(self._record_list(last))
+        return {curve: [self._option(one, next(told)) for one, _ in found] for curve, found in best.items()}
 
     def _candidates(self, curves: list[int], proposals: Proposals) -> list[Candidate]:
         outcome, status = self._plan.outcome, self._plan.status
@@ -114,7 +114,11 @@ class Options:
             good.add("exceptional")
         return answer.status(curve) in good and no_worse(self._plan.outcome, answer, curve)
 
-    def _records(self, good: list[tuple[Candidate, Answer]]) -> list[dict[str, Any]]:
+    def _records(self, good: list[tuple[Candidate, Answer]]) -> dict[int, dict[str, Any]]:
+        """Give the records of curves as planned with a candidate, by curve."""
+        return dict(zip((one.curve for one, _ in good), self._record_list(good), strict=True))
+
+    def _record_list(self, good: list[tuple[Candidate, Answer]]) -> list[dict[str, Any]]:
         if not good:
             return []
         planned = Plan(good[0][1].outcome)

@@ -134,7 +134,7 @@ class Reason:
             return f"as near to {named} as {self._bound(low)} lets it{self._other_side(high, 'at most')}"
         if self._shares():
             return f"best together with the curves that share its transitions, {named} being out of reach, "
-            return f"best together with the curves that share its transitions, {named} being out of reach, {between}"
+            return f"best with the curves that share its transitions, {named} being out of reach, {between}"
         return f"the best that the limits leave, {named} being out of reach, {between}"
 
     def _other_side(self, bound: Bound | None, word: str) -> str:
