@@ -22,7 +22,7 @@ from cant.reading.scales import (
     share_units,
 )
 from cant.reading.sheet_column import Column
-from cant.reading.situations import known_situations, read_situations, situations_in
+from cant.reading.site_words import fill_situations
 from cant.reading.speeds import highest_speed, settle_speeds, split_speed_columns
 from cant.reading.takers import take_cant, take_length, take_transition
 from cant.reading.text import fold, is_blank, shown, squeeze
@@ -32,7 +32,7 @@ from cant.reading.words import lexicon, meaning_of
 def fill(draft: Draft) -> Evidence:
     """Turn every column of a block into quantities, and note what cannot be used."""
     _shapes(draft)
-    _situations(draft)
+    fill_situations(draft)
     _fixed(draft)
     if draft.canonical:
         _usual_units(draft)
@@ -197,42 +197,6 @@ def _shapes(draft: Draft) -> None:
             draft.shape[index] = found
         elif meaning_of("nothing", text) is None:
             draft.fail(index, item, f"'{text}' is no shape of a transition; it is one of {', '.join(SHAPES)}")
-
-
-def _situations(draft: Draft) -> None:
-    item = draft.column("Situation")
-    if item is not None:
-        known = draft.context.situations
-        for index, cell in enumerate(item.cells):
-            if is_blank(cell):
-                continue
-            words, unknown = read_situations(squeeze(shown(cell)), known)
-            draft.situations[index] = words
-            if unknown:
-                listed = ", ".join(sorted(known_situations(draft.context.limits)))
-                draft.fail(index, item, f"the situation '{unknown[0]}' is not known; known are {listed}")
-    _remarks(draft)
-
-
-def _remarks(draft: Draft) -> None:
-    """Take situations out of remarks where limits have rules for them: that only makes limits stricter."""
-    limits = draft.context.limits
-    item = draft.column("Remarks")
-    ruled = (
-        {row.situation.casefold() for row in limits.rows if row.situation} - {"plain"} if limits else set()
-    )
-    if item is None or not ruled:
-        return
-    found: dict[str, int] = {}
-    for index, cell in enumerate(item.cells):
-        words = situations_in(shown(cell), ruled) if cell is not None else frozenset()
-        if words:
-            draft.situations[index] = (draft.situations[index] - {"plain"}) | words
-            for word in words:
-                found[word] = found.get(word, 0) + 1
-    if found:
-        listed = ", ".join(f"{word} ({count} rows)" for word, count in sorted(found.items()))
-        item.note = f"situations taken from here, for which the limits have rules: {listed}"
 
 
 def _fixed(draft: Draft) -> None:

@@ -63,7 +63,7 @@ def _mend_thousands(draft: Draft, item: Column, numbers: Numbers, evidence: Evid
     """Read 1.2 as 1200 among radii of hundreds: 1.200 with a thousands dot, or kilometres."""
     sizes = np.abs(numbers.values)
     with np.errstate(invalid="ignore"):
-        tiny = (sizes < 20) & (sizes >= 0.1)
+        tiny = (sizes < 20) & (sizes >= 1)
         most = float(np.nanmedian(sizes)) if np.any(~np.isnan(sizes)) else 0.0
     all_tiny = item.unit in ("", "m") and not evidence.imperial and bool(np.all(tiny | np.isnan(sizes)))
     if tiny.any() and (most > 100 or all_tiny):

@@ -275,18 +275,21 @@ def _is_header(block: Block, columns: list[Column], index: int) -> bool:
 
 
 def fill_merged(sheet: Sheet, rows: Sequence[int], columns: list[Column]) -> None:
-    """Give every cell of a merged range the value of its first cell, down the rows."""
+    """Give all cells of a merged range the value of its first: down the rows, and over both transitions."""
     position = {row: i for i, row in enumerate(rows)}
     for area in sheet.merged:
-        if area.last_row == area.first_row or not any(
-            r in position for r in range(area.first_row, area.last_row + 1)
-        ):
+        inside = [position[r] for r in range(area.first_row, area.last_row + 1) if r in position]
+        over = [c for c in columns if area.first_column <= c.index <= area.last_column]
+        sisters = len(over) == 2 and {c.meaning for c in over} in _SISTERS
+        if not inside or (area.last_row == area.first_row and not sisters):
             continue
         value = sheet.value(area.first_row, area.first_column)
-        for item in columns:
-            if area.first_column <= item.index <= area.last_column:
+        for item in over:
+            if item.index == area.first_column or sisters or area.first_column == area.last_column:
                 cells = list(item.cells)
-                for row in range(area.first_row, area.last_row + 1):
-                    if row in position:
-                        cells[position[row]] = value
+                for index in inside:
+                    cells[index] = value
                 item.cells = cells
+
+
+_SISTERS = ({"Transition in", "Transition out"}, {"Cant ramp in", "Cant ramp out"})
