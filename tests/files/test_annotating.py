@@ -10,7 +10,7 @@ import pytest
 import python_calamine
 import xlsxwriter
 from lxml import etree
-from parts import changed_parts, lost_elements, office_pdf, one_column, parts_of
+from parts import changed_parts, lost_elements, office_converted, office_pdf, one_column, parts_of
 from rich import ROWS, rich_workbook, with_macros
 
 from cant.files.additions import AddedColumn, CellMark, ConditionalFill, OutCell, SheetAddition
@@ -66,7 +66,12 @@ def additions():
     columns = [
         AddedColumn("Proposed cant (mm)", proposed, width=14, heading_note="On the grid of 5 mm"),
         AddedColumn(
-            "Change", {row: OutCell(2.0 * row, formula=f"K{row}-D{row}") for row in rows}, number_format="0.0"
+            "Change",
+            {
+                row: OutCell(proposed[row].value - 5 * ((row - 1) % 30), formula=f"K{row}-D{row}")
+                for row in rows
+            },
+            number_format="0.0",
         ),
         AddedColumn("Reason", {row: OutCell("=cant & <excess>_x0041_\x07") for row in rows}, width=30),
         AddedColumn(
@@ -146,7 +151,7 @@ def test_added_cells_arrive(annotated):
     assert page["N5"].value is None
     assert page["N6"].value == "#N/A"
     values = _openpyxl(annotated.data, data_only=True)["Curves"]
-    assert values["L5"].value == 10.0
+    assert values["L5"].value == 5.0
 
 
 def test_added_text_stays_text(annotated):
@@ -284,3 +289,24 @@ def _openpyxl(data, **options):
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")  # it warns of what it would lose
         return openpyxl.load_workbook(io.BytesIO(data), **options)
+
+
+@pytest.mark.office
+def test_marks_survive_another_program_that_saves_the_file(annotated, additions, new_sheets, tmp_path):
+    """LibreOffice writes the whole file anew; the annotation is still found and replaced, not doubled."""
+    if shutil.which("soffice") is None:
+        pytest.skip("LibreOffice (soffice) is not installed")
+    saved = office_converted(annotated.data, tmp_path, "xlsx")
+    workbook = open_workbook(saved, "a.xlsx")
+    assert workbook.sheets[0].earlier_columns == (10, 11, 12, 13)
+    assert not {"Cant plan", "Limits"} & {sheet.name for sheet in workbook.sheets}
+    again = annotate(saved, additions, new_sheets)
+    book = _openpyxl(again.data)
+    assert [name for name in book.sheetnames if name.startswith("Cant plan")] == ["Cant plan"]
+    page = book["Curves"]
+    assert page["K5"].value == 25
+    assert [page.cell(3, column).value for column in (11, 14, 15)] == ["Proposed cant (mm)", "Approved", None]
+    assert page["C7"].comment.text == "Radius doubtful"
+    assert len([one for one in page.conditional_formatting if str(one.sqref) == "C7:C8"]) == 1
+    values = _openpyxl(saved, data_only=True)["Curves"]
+    assert values["L5"].value == values["K5"].value - values["D5"].value
