@@ -112,7 +112,15 @@ class Options:
         good = {"kept", "change"}
         if was != "exceptional" and (candidate.exceptional or self._plan.settings.allows_exceptional):
             good.add("exceptional")
+        if candidate.exceptional and not self._worth_approval(candidate, answer):
+            return False
         return answer.status(curve) in good and no_worse(self._plan.outcome, answer, curve)
+
+    def _worth_approval(self, candidate: Candidate, answer: Answer) -> bool:
+        """Tell whether an exceptional value is used, and saves time where classes are slowed all the same."""
+        used = bool(answer.outcome.exceptional[list(answer.at.values())].any())
+        lost = self._plan.outcome.proposed.lost_s[candidate.curve]
+        return used and candidate.facts.get("seconds", 0.0) < lost + (0.0 if candidate.facts else 1.0)
 
     def _records(self, good: list[tuple[Candidate, Answer]]) -> dict[int, dict[str, Any]]:
         """Give the records of curves as planned with a candidate, by curve."""

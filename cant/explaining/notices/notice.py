@@ -40,6 +40,8 @@ class Notice:
         Gives the clause of the limit concerned for a curve.
     whole_severity : str
         Where it differs from that of a curve.
+    of_plan : bool
+        It is told of the plan alone, however many curves it rests on.
     """
 
     code: str
@@ -49,6 +51,7 @@ class Notice:
     whole: str = ""
     clause: Callable[[int], str] | None = None
     whole_severity: Severity | None = None
+    of_plan: bool = False
 
     def finding(self, curve: int, record: Record | None) -> Finding:
         """Give the finding of one curve."""
@@ -57,7 +60,7 @@ class Notice:
 
     def summary(self) -> Finding | None:
         """Give the finding of the whole plan; None where fewer than two curves are concerned."""
-        if len(self.curves) < 2 or not self.whole:
+        if not self.whole or (len(self.curves) < 2 and not self.of_plan):
             return None
         return Finding(self.code, self.whole_severity or self.severity, self.whole)
 

@@ -232,6 +232,7 @@ def _ceiling(scene: Scene) -> Iterator[Notice]:
             f"On {len(found)} curves the cant rests on a value that track in service may not pass"
             f"{' (' + clause + ')' if clause else ''}, and no maintenance allowance is set: cants of up to "
             f"{words.cant(highest)} leave no room for how track moves.",
+            of_plan=True,
         )
 
 
