@@ -102,8 +102,25 @@ class Computed:
 
     def records(self, indices: Sequence[int], system: str) -> list[tuple[int, dict[str, Any]]]:
         """Give the records of some curves, with their indices and with words in a system of units."""
+        if not indices:
+            return []
         with self.speaking:
             return list(zip(indices, self.shown_in(system).records_of(indices), strict=True))
+
+    def rows(self, indices: Sequence[int], system: str) -> list[tuple[int, dict[str, Any]]]:
+        """Give what a table shows of some curves: figures and reason, without findings, options and methods.
+
+        The methods are compared over the whole line, which a long table need not wait for.
+        """
+        if not indices:
+            return []
+        planned = self.shown_in(system)
+        with self.speaking:
+            records = list(planned.plan.records(indices))
+            reasons = planned.explanation.reasons(indices, records)
+        for record, reason in zip(records, reasons, strict=True):
+            record["reason"] = reason
+        return list(zip(indices, records, strict=True))
 
     def record(self, index: int, system: str) -> dict[str, Any]:
         """Give the record of one curve with words in a system of units."""

@@ -93,7 +93,7 @@ def limit_rows(found: Sequence[Record], measures: Measures) -> list[dict[str, An
     """Give limits passed as rows of words: value and limit in the units of the page."""
     rows = []
     for item in found:
-        kind = KIND_OF_UNIT.get(QUANTITIES[item["quantity"]].canonical) if "quantity" in item else None
+        kind = _kind_of(str(item.get("quantity", "")))
         row = dict(item)
         for key in ("value", "limit", "exceptional_limit"):
             if kind is not None and isinstance(row.get(key), (int, float)):
@@ -102,6 +102,13 @@ def limit_rows(found: Sequence[Record], measures: Measures) -> list[dict[str, An
             row["place"] = PLACE_WORDS.get(row["place"], row["place"])
         rows.append(row)
     return rows
+
+
+def _kind_of(quantity: str) -> str | None:
+    """Give the kind of number of a limited quantity; what a site says of its cant is a cant."""
+    if quantity in QUANTITIES:
+        return KIND_OF_UNIT.get(QUANTITIES[quantity].canonical)
+    return "cant exact" if quantity.startswith("cant") else None
 
 
 def bound_rows(record: Record, measures: Measures) -> list[dict[str, str]]:

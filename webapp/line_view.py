@@ -83,7 +83,7 @@ def _draw(
     computed: Computed, address: str, indices: Sequence[int], measures: Measures
 ) -> tuple[LineDrawing, list[tuple[int, dict[str, Any]]]]:
     names = computed.planned.plan.traffic.class_names
-    records = computed.records(indices, measures.system)
+    records = computed.rows(indices, measures.system)
     curves = [drawn_curve(i, record, names, address, measures) for i, record in records]
     return draw_line(curves, measures), records
 

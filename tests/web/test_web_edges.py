@@ -52,6 +52,10 @@ def test_every_page_stands_whatever_the_list(browser: Browser, tmp_path: Path, n
         answer = browser.get(f"{plan}/curves/{number}")
         assert answer.status_code == 200
         assert not UNSAID.search(answer.text.split("<main", 1)[-1])
+    answer = browser.get(f"/api/v1{plan}/curves")
+    assert answer.status_code == 200
+    assert answer.json is not None
+    assert answer.json["total"] == len(document["curves"])
     if not document["curves"]:
         assert "Cants of 0 curves" in browser.get(f"{plan}/cants").text
         assert "nothing to draw" in browser.get(f"{plan}/line").text

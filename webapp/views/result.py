@@ -35,7 +35,7 @@ def show(address: str) -> ResponseReturnValue:
         **_shared(computed),
         wanted=wanted,
         page=page,
-        records=computed.records(page.indices, current_measures().system),
+        records=computed.rows(page.indices, current_measures().system),
         sorts=SORTS,
         sizes=PAGE_SIZES,
     )
@@ -87,7 +87,7 @@ def print_page(address: str) -> ResponseReturnValue:
         "print.html",
         **_shared(computed),
         wanted=wanted,
-        records=computed.records(rows, current_measures().system),
+        records=computed.rows(rows, current_measures().system),
         total=len(found),
         number=number,
         pages=pages_in_all,
