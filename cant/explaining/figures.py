@@ -10,7 +10,7 @@ from typing import Any
 
 import numpy as np
 
-from cant.model.curves import FloatArray, none_if_nan
+from cant.model.curves import FloatArray
 from cant.planning import Plan
 from cant.planning.line import Line
 from cant.planning.rules import Asked
@@ -149,6 +149,8 @@ def _spread(
 ) -> None:
     column = {name: j for j, name in enumerate(names)}
     whole = np.broadcast_to(values, (len(records), len(names)))
-    for i, record in enumerate(records):
+    plain = whole.astype(object)
+    plain[~np.isfinite(whole)] = None
+    for row, record in zip(plain.tolist(), records, strict=True):
         for entry in classes(record):
-            entry[key] = none_if_nan(whole[i, column[entry["class"]]])
+            entry[key] = row[column[entry["class"]]]
