@@ -6,6 +6,7 @@ import html
 import io
 import json
 import re
+from concurrent.futures import ThreadPoolExecutor
 from pathlib import Path
 from typing import Any
 
@@ -110,3 +111,32 @@ def test_workbook_holds_the_numbers_of_the_json(browser: Browser, sample: Path) 
             row,
         )
         assert curve["status"] in row
+
+
+def test_many_at_once_see_each_their_own_curve(browser: Browser, sample_file: Path) -> None:
+    """Words and records are made when asked for; eight askers at once must not get each other's."""
+    plan = planned(browser, sample_file)
+    curves = json.loads(browser.get(f"{plan}/plan.json").data)["curves"]
+    numbers = [c["number"] for c in json.loads(browser.get(f"/api/v1{plan}/curves?size=250").data)["curves"]]
+    cookie = browser.client.get_cookie("cant")
+    assert cookie is not None
+    key = cookie.value
+
+    def ask(place: int) -> tuple[str, str]:
+        client = browser.client.application.test_client()
+        client.set_cookie("cant", key)
+        units = ("metric", "us")[place % 2]
+        with client.get(f"{plan}/curves/{numbers[place]}?units={units}") as page:
+            text = html.unescape(page.text)
+        with client.get(f"/api/v1{plan}/curves/{numbers[place]}") as answer:
+            assert answer.json == {"number": numbers[place], **curves[place]}
+        shown = measures(units).with_unit("cant", curves[place]["recommended_cant_mm"])
+        return text, f"Cant {shown}" if curves[place][
+            "recommended_cant_mm"
+        ] is not None else "No cant proposed"
+
+    with ThreadPoolExecutor(8) as threads:
+        answers = list(threads.map(ask, list(range(len(curves))) * 2))
+    for place, (text, said) in enumerate(answers):
+        assert f"<h1>Curve {curves[place % len(curves)]['curve']} " in text
+        assert said in text
