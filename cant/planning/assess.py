@@ -142,31 +142,46 @@ def shared_hard_kept(
     return kept, total
 
 
-def _trains_that_count(line: Line) -> FloatArray:
-    trains = np.where(np.isnan(line.trains), 1.0, line.trains)
-    return np.where(trains == 0, NO_TRAINS, trains)
+@dataclass(frozen=True)
+class Services:
+    """What running times hang on; arrays (n, k), the lengths that weigh (n,)."""
 
+    moving: BoolArray
+    planned_kmh: FloatArray
+    trains: FloatArray
+    length_m: FloatArray
 
-def trains_stopped(line: Line, run_kmh: FloatArray) -> FloatArray:
-    """Give trains a day x length of the classes that may not run at all [m], shape (..., n).
+    @classmethod
+    def of(cls, line: Line) -> Services:
+        """Look at the trains of a line: where their number is not known one, of none still a few."""
+        trains = np.where(np.isnan(line.trains), 1.0, line.trains)
+        trains = np.where(trains == 0, NO_TRAINS, trains)
+        return cls(line.moving, line.planned_kmh, trains, line.weight_length_m[:, 0])
 
-    The time that they lose has no bound; counted as :data:`STOPPED_KMH` it outweighs all other time lost, so
-    it is compared first and apart, where it cannot drown the rest in its rounding.
-    """
-    stopped = line.moving & (run_kmh <= STOPPED_KMH)
-    return np.asarray((stopped * _trains_that_count(line)).sum(axis=-1) * line.weight_length_m[:, 0])
+    def take(self, curves: npt.NDArray[np.int64]) -> Services:
+        """Give those of some curves."""
+        at = curves
+        return Services(self.moving[at], self.planned_kmh[at], self.trains[at], self.length_m[at])
 
+    def stopped(self, run_kmh: FloatArray) -> FloatArray:
+        """Give trains a day x length of the classes that may not run at all [m], shape (..., n).
 
-def time_lost(line: Line, run_kmh: FloatArray) -> FloatArray:
-    """Give the running time lost a day [s], shape (..., n): sum of n x length x (1/V_run - 1/V_planned).
+        The time that they lose has no bound; counted as :data:`STOPPED_KMH` it outweighs all other time lost,
+        so it is compared first and apart, where it cannot drown the rest in its rounding.
+        """
+        stopped = self.moving & (run_kmh <= STOPPED_KMH)
+        return np.asarray((stopped * self.trains).sum(axis=-1) * self.length_m)
 
-    Classes that may not run at all are left out (:func:`trains_stopped`).
-    """
-    counts = line.moving & (run_kmh > STOPPED_KMH) & (run_kmh < line.planned_kmh)
-    slow = np.where(counts, run_kmh, 1.0)
-    fast = np.where(counts, line.planned_kmh, 1.0)
-    lost = np.where(counts, _trains_that_count(line) * (1.0 / slow - 1.0 / fast), 0.0)
-    return np.asarray(lost.sum(axis=-1) * line.weight_length_m[:, 0] * KMH_PER_MS)
+    def lost_s(self, run_kmh: FloatArray) -> FloatArray:
+        """Give the running time lost a day [s], shape (..., n): sum of n x length x (1/V_run - 1/V_planned).
+
+        Classes that may not run at all are left out (:meth:`stopped`).
+        """
+        counts = self.moving & (run_kmh > STOPPED_KMH) & (run_kmh < self.planned_kmh)
+        slow = np.where(counts, run_kmh, 1.0)
+        fast = np.where(counts, self.planned_kmh, 1.0)
+        lost = np.where(counts, self.trains * (1.0 / slow - 1.0 / fast), 0.0)
+        return np.asarray(lost.sum(axis=-1) * self.length_m * KMH_PER_MS)
 
 
 @dataclass
@@ -270,10 +285,11 @@ def assess(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool) -> 
     meeting = Meeting.of(line, pairs)
     cants = (cant_mm[pairs.first][:, None], cant_mm[pairs.second][:, None])
     together = np.minimum(run[pairs.first], run[pairs.second])
+    services = Services.of(line)
     return Assessment(
         run_kmh=run,
-        stopped=trains_stopped(line, run),
-        lost_s=time_lost(line, run),
+        stopped=services.stopped(run),
+        lost_s=services.lost_s(run),
         passed=passed_alone(line, cant_mm[:, None], run),
         passed_between=passed_shared(meeting, cants, together),
     )

@@ -1,10 +1,13 @@
-"""The best cants of any chain, also where its transitions make trains slow down or cannot all be kept.
+"""The best cants of chains whose transitions make trains slow down or cannot all be kept; any chains.
 
 The speed of a class on a curve then hangs on the cants of three curves, and what it passes on a transition on
 those of four. So a path is followed from the smaller chainage on with all that its end still needs: the last
 two cants, the speeds run on the last curve but one, and what the last transition permits. Paths that cannot
 become best are dropped by a bound from below; of paths that need the same from here on, the better is kept.
 Nothing that could be best is dropped: the result is exact.
+
+The paths of all chains stand in one list and go from curve to curve together. Each search goes over the pairs
+that keep what no lower speed can mend; a chain that has no such path is searched again over all pairs.
 """
 
 from __future__ import annotations
@@ -15,12 +18,13 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from cant.planning.assess import passed_alone, passed_shared, time_lost, trains_stopped
-from cant.planning.chain_choice import Stage, shortest_path
-from cant.planning.lexicographic import slack
+from cant.planning.assess import Services, passed_alone, passed_shared
+from cant.planning.levels import Levels
+from cant.planning.lexicographic import least_of_groups, slack
 from cant.planning.line import Line
-from cant.planning.meetings import PairTable
-from cant.planning.nodes import squares
+from cant.planning.meetings import PairList, make_pair_list, spread_ranges
+from cant.planning.neighbours import Pairs
+from cant.planning.nodes import Nodes, squares
 from cant.planning.permissible import Permitted
 from cant.planning.shared import Meeting
 from cant.planning.targets import Target
@@ -34,284 +38,307 @@ LEADING = 4
 _QUANTUM = 1e-8
 
 
-@dataclass
-class Member:
-    """One curve of a chain with the levels that it may take.
+def search_chains(
+    line: Line,
+    pairs: Pairs,
+    nodes: Nodes,
+    chains: Sequence[IntArray],
+    target: Target,
+    exceptional: bool,
+    also_broken: bool,
+) -> tuple[IntArray, FloatArray]:
+    """Find the best cants of some chains.
 
-    Attributes
+    Parameters
     ----------
     line : Line
-        One curve.
-    cant_mm : ndarray, shape (a,)
-    alone : Permitted
-        What the curve by itself permits, shape (a, k).
+        n curves, with their limits in bands.
+    pairs : Pairs
+    nodes : Nodes
+        Of the same curves.
+    chains : sequence of ndarray of int
+        Each in order of chainage.
+    target : Target
+    exceptional : bool
+        Last tier allowed.
+    also_broken : bool
+        Also over pairs that do not keep what no lower speed can mend.
+
+    Returns
+    -------
+    curves : ndarray of int, shape (c,)
+        Of the chains, in their order.
+    cant_mm : ndarray, shape (c,)
+        nan on a chain without a path.
     """
-
-    line: Line
-    cant_mm: FloatArray
-    alone: Permitted
-
-    def run(self, left: Permitted | None, right: Permitted | None, level: IntArray) -> FloatArray:
-        """Give the speeds run at some levels with what the transitions beside permit, shape (s, k)."""
-        up_to, planned = self.alone.up_to_kmh[level], self.alone.planned[level]
-        for beside in (left, right):
-            if beside is not None:
-                up_to = np.minimum(up_to, beside.up_to_kmh)
-                planned = planned & beside.planned
-        return Permitted(up_to, planned).run_speed(self.line.planned_kmh)
-
-    def time(self, run_kmh: FloatArray) -> FloatArray:
-        """Give trains stopped and time lost at speeds (s, k): shape (s, 2)."""
-        run = run_kmh[:, None, :]
-        return np.stack([trains_stopped(self.line, run)[:, 0], time_lost(self.line, run)[:, 0]], axis=-1)
-
-    def rest(self, run_kmh: FloatArray, level: IntArray, target: Target) -> FloatArray:
-        """Give approvals, overrun, square and cant at levels (s,) and speeds (s, k): shape (s, 4)."""
-        cant, run = self.cant_mm[level][:, None, None], run_kmh[:, None, :]
-        passed = passed_alone(self.line, cant, run)
-        square = squares(self.line, cant, run, target)
-        return np.stack([passed.count[:, 0], passed.total[:, 0], square[:, 0], self.cant_mm[level]], axis=-1)
-
-
-@dataclass
-class Link:
-    """The transition between two members with the table of all pairs of their levels."""
-
-    meeting: Meeting
-    table: PairTable
-
-    def permitted(self, before: IntArray, after: IntArray) -> tuple[Permitted, Permitted]:
-        """Give what it permits on the two curves at pairs of levels, shape (s, k)."""
-        one, other = self.table.before, self.table.after
-        return (
-            Permitted(one.up_to_kmh[before, after], one.planned[before, after]),
-            Permitted(other.up_to_kmh[before, after], other.planned[before, after]),
-        )
-
-    def broken(self, before: IntArray, after: IntArray) -> FloatArray:
-        """Give 1 where the pair is not allowed, and its overrun: shape (s, 2)."""
-        hard = self.table.hard[before, after]
-        return np.stack([~hard, np.where(hard, 0.0, self.table.hard_overrun[before, after])], axis=-1)
-
-    def approvals(
-        self, before: FloatArray, after: FloatArray, run_before: FloatArray, run_after: FloatArray
-    ) -> FloatArray:
-        """Give number and overrun of normal limits passed at cants (s,) and speeds (s, k): shape (s, 2)."""
-        passed = passed_shared(
-            self.meeting,
-            (before[:, None, None], after[:, None, None]),
-            np.minimum(run_before, run_after)[:, None, :],
-        )
-        if not passed.by_rule:
-            return np.zeros((len(before), 2))
-        return np.stack([np.asarray(passed.count)[:, 0], np.asarray(passed.total)[:, 0]], axis=-1)
+    curves = np.concatenate(chains)
+    chain = np.repeat(np.arange(len(chains)), [len(some) for some in chains])
+    part = line.take(curves)
+    levels = Levels.of(part, nodes.take(curves), chain, exceptional)
+    meeting = Meeting.of(line, pairs.take(pairs.after(len(line))[curves[levels.begins]]))
+    listed = make_pair_list(meeting, levels, exceptional, also_broken)
+    best = _Search(part, meeting, levels, listed, target).best()
+    return curves, np.where(best < 0, np.nan, levels.cant_mm[best])
 
 
 @dataclass
 class _Paths:
-    """Paths that end at one curve; s of them.
+    """Paths of several chains that end at the curve of one position; s of them.
 
-    ``level`` (s, i + 1); ``before`` (s, k) the speeds run on the last curve but one; ``left`` what the last
-    transition permits on the last curve; ``measures`` (s, 8): the leading four, approvals, overrun, square,
-    sum of cants, of everything that is settled.
+    ``level`` (s, i + 1) numbers of the levels; ``before`` (s, k) the speeds run on the last curve but one,
+    nan on the first; ``left`` what the last transition permits on the last curve, ``extra`` (s, 2) the time
+    that this alone costs there; ``measures`` (s, 8): the leading four, approvals, overrun, square, sum of
+    cants, of everything that is settled.
     """
 
     level: IntArray
-    before: FloatArray | None
-    left: Permitted | None
+    before: FloatArray
+    left: Permitted
+    extra: FloatArray
     measures: FloatArray
 
-    def take(self, at: IntArray) -> _Paths:
-        return _Paths(
-            self.level[at],
-            None if self.before is None else self.before[at],
-            None if self.left is None else Permitted(self.left.up_to_kmh[at], self.left.planned[at]),
-            self.measures[at],
-        )
+    def take(self, at: IntArray | BoolArray) -> _Paths:
+        return _Paths(self.level[at], self.before[at], self.left.take(at), self.extra[at], self.measures[at])
 
 
-def _extra(member: Member, beside: Permitted, own_time: FloatArray) -> FloatArray:
-    """Give what a transition's permission alone adds to a curve's time at every pair, shape (a, b, 2).
-
-    ``beside`` has the levels of the member first.
-    """
-    a, b, k = beside.up_to_kmh.shape
-    level = np.repeat(np.arange(a), b)
-    flat = Permitted(beside.up_to_kmh.reshape(a * b, k), beside.planned.reshape(a * b, k))
-    time = member.time(member.run(flat, None, level)).reshape(a, b, 2)
-    return time - own_time[:, None, :]
-
-
-def _turned(permitted: Permitted) -> Permitted:
-    return Permitted(permitted.up_to_kmh.swapaxes(0, 1), permitted.planned.swapaxes(0, 1))
-
-
-class ChainSearch:
-    """The search over one chain.
+class _Search:
+    """The search over several chains.
 
     Parameters
     ----------
-    members : sequence of Member
-        In order of chainage.
-    links : sequence of Link
-        One fewer.
+    line : Line
+        Whole chains, one after the other, with limits in bands.
+    meeting : Meeting
+        The transitions between their curves.
+    levels : Levels
+    pairs : PairList
     target : Target
     """
 
-    def __init__(self, members: Sequence[Member], links: Sequence[Link], target: Target) -> None:
-        self.members = members
-        self.links = links
-        self.target = target
-        self._own = [
-            member.time(member.run(None, None, np.arange(len(member.cant_mm)))) for member in members
-        ]
-        self._extras = []
-        for i, link in enumerate(links):
-            on_before = _extra(members[i], link.table.before, self._own[i])
-            on_after = _extra(members[i + 1], _turned(link.table.after), self._own[i + 1]).swapaxes(0, 1)
-            self._extras.append((on_before, on_after))
-        self._to_go = self._bounds_from_below()
+    def __init__(self, line: Line, meeting: Meeting, levels: Levels, pairs: PairList, target: Target) -> None:
+        self._line, self._meeting, self._levels, self._pairs = line, meeting, levels, pairs
+        self._target = target
+        self._services = Services.of(line)
+        every = np.arange(len(levels.curve))
+        self._own = self._time(every, levels.run_kmh)
+        self._first = np.searchsorted(pairs.before, np.arange(len(every) + 1))
+        self._broken = np.stack([pairs.broken, pairs.overrun], axis=-1)
+        self._extra = (
+            self._extra_time(pairs.before, pairs.on_before),
+            self._extra_time(pairs.after, pairs.on_after),
+        )
+        start = np.flatnonzero(np.diff(levels.chain, prepend=-1))
+        self._position = np.arange(len(levels.chain)) - start[levels.chain]
+        self._length = np.bincount(levels.chain)
 
-    def best(self) -> list[int]:
-        """Give the best level of each curve."""
-        ceiling = self._ceiling()
-        first = len(self.members[0].cant_mm)
-        paths = _Paths(np.arange(first)[:, None], None, None, np.zeros((first, 8)))
-        for i in range(len(self.links)):
-            paths = self._step(i, paths, ceiling)
-        return self._finish(paths)
+    # -- time -------------------------------------------------------------------------------------------
 
-    def _bounds_from_below(self) -> list[FloatArray]:
-        """Give for each curve and level the least that is still to come, shape (a, LEADING).
+    def _run(self, level: IntArray, *beside: Permitted) -> FloatArray:
+        """Give the speeds run at some levels with what the transitions beside permit, shape (s, k)."""
+        up_to, planned = self._levels.alone.up_to_kmh[level], self._levels.alone.planned[level]
+        for permitted in beside:
+            up_to = np.minimum(up_to, permitted.up_to_kmh)
+            planned = planned & permitted.planned
+        return Permitted(up_to, planned).run_speed(self._line.planned_kmh[self._levels.curve[level]])
 
-        A curve between two transitions loses at least half of what each by itself would make it lose.
+    def _time(self, level: IntArray, run_kmh: FloatArray) -> FloatArray:
+        """Give trains stopped and time lost at levels (s,) and speeds (s, k): shape (s, 2)."""
+        services = self._services.take(self._levels.curve[level])
+        return np.stack([services.stopped(run_kmh), services.lost_s(run_kmh)], axis=-1)
+
+    def _extra_time(self, level: IntArray, beside: Permitted) -> FloatArray:
+        """Give what a transition's permission alone adds to the time of some levels, shape (s, 2)."""
+        extra = np.zeros((len(level), 2))
+        at = np.flatnonzero((~beside.planned | np.isfinite(beside.up_to_kmh)).any(axis=-1))
+        run = self._run(level[at], beside.take(at))
+        extra[at] = self._time(level[at], run) - self._own[level[at]]
+        return extra
+
+    # -- bounds -----------------------------------------------------------------------------------------
+
+    def _to_go(self, share: float) -> tuple[FloatArray, IntArray]:
+        """Give the least leading measures from each level to the end of its chain, and the pair taken first.
+
+        ``share`` of the time that each transition by itself makes a curve lose: a curve between two loses at
+        least half of both together (then it is a bound from below), and hardly more than both.
+
+        Returns
+        -------
+        to_go : ndarray, shape (l, LEADING)
+            inf where no path leads to the end.
+        choice : ndarray of int, shape (l,)
         """
-        last = self._own[-1]
-        to_go = [np.concatenate([np.zeros((len(last), 2)), last], axis=1)]
-        for i in range(len(self.links) - 1, -1, -1):
-            pair = self._pair_bound(i) + to_go[0][None, :, :]
-            best = _lexicographic_least(pair)
-            best[:, 2:] += self._own[i]
-            to_go.insert(0, best)
-        return to_go
-
-    def _pair_bound(self, i: int) -> FloatArray:
-        table = self.links[i].table
-        broken = np.stack([~table.hard, np.where(table.hard, 0.0, table.hard_overrun)], axis=-1)
-        on_before, on_after = self._extras[i]
-        return np.concatenate([broken, (on_before + on_after) / 2], axis=-1)
+        levels, pairs = self._levels, self._pairs
+        to_go = np.concatenate([np.zeros_like(self._own), self._own], axis=1)
+        choice = np.zeros(len(to_go), dtype=np.int64)
+        cost = np.concatenate([self._broken, share * (self._extra[0] + self._extra[1])], axis=1)
+        position = self._position[levels.curve]
+        goes_on = position < (self._length[levels.chain] - 1)[levels.curve]
+        at_position = position[pairs.before]
+        for i in range(int(self._length.max()) - 2, -1, -1):
+            pair = np.flatnonzero(at_position == i)
+            here, least, best = least_of_groups(cost[pair] + to_go[pairs.after[pair]], pairs.before[pair])
+            to_go[(position == i) & goes_on] = np.inf
+            to_go[here] = least
+            to_go[here, 2:] += self._own[here]
+            choice[here] = pair[best]
+        return to_go, choice
 
     def _ceiling(self) -> FloatArray:
-        """Give the leading measures of a good path, shape (LEADING,): no better one is worth more."""
-        stages = []
-        for i, own in enumerate(self._own):
-            measures = [np.zeros(len(own)), np.zeros(len(own)), own[:, 0], own[:, 1]]
-            if i == len(self.links):
-                stages.append(Stage(measures))
-                continue
-            pair = self._pair_bound(i)
-            pair[..., 2:] *= 2
-            every = np.ones(pair.shape[:2], dtype=np.bool_)
-            stages.append(Stage(measures, every, [pair[..., j] for j in range(LEADING)]))
-        path = shortest_path(stages)
-        if path is None:
-            message = "a chain without levels"
-            raise ValueError(message)
-        return self._leading_of(np.array(path)[None, :])
+        """Give the leading measures of a good path of each chain, (q, LEADING): no better one is worth more.
 
-    def _leading_of(self, level: IntArray) -> FloatArray:
-        total = np.zeros(LEADING)
-        for i, member in enumerate(self.members):
-            left = self.links[i - 1].permitted(level[:, i - 1], level[:, i])[1] if i > 0 else None
-            right = None
-            if i < len(self.links):
-                right = self.links[i].permitted(level[:, i], level[:, i + 1])[0]
-                total[:2] += self.links[i].broken(level[:, i], level[:, i + 1])[0]
-            total[2:] += member.time(member.run(left, right, level[:, i]))[0]
+        inf where there is no path.
+        """
+        pairs = self._pairs
+        to_go, choice = self._to_go(1.0)
+        starts = np.flatnonzero(self._position[self._levels.curve] == 0)
+        _, least, best = least_of_groups(to_go[starts], self._levels.chain[self._levels.curve[starts]])
+        total = np.where(np.isfinite(least), 0.0, np.inf)
+        chain = np.flatnonzero(np.isfinite(least).all(axis=1))
+        level, left = starts[best[chain]], _free(len(chain), self._line.classes)
+        for i in range(int(self._length.max())):
+            on = self._length[chain] > i + 1
+            ends = chain[~on]
+            total[ends, 2:] += self._time(level[~on], self._run(level[~on], left.take(~on)))
+            chain, level, left = chain[on], level[on], left.take(on)
+            pair = choice[level]
+            total[chain, :2] += self._broken[pair]
+            total[chain, 2:] += self._time(level, self._run(level, left, pairs.on_before.take(pair)))
+            level, left = pairs.after[pair], pairs.on_after.take(pair)
         return total
 
-    def _step(self, i: int, paths: _Paths, ceiling: FloatArray) -> _Paths:
-        """Go from curve i to the next: settle the speeds of curve i."""
-        member, link = self.members[i], self.links[i]
-        ahead = len(self.members[i + 1].cant_mm)
-        source = np.repeat(np.arange(len(paths.level)), ahead)
-        after = np.tile(np.arange(ahead), len(paths.level))
-        here = paths.level[source, -1]
-        right, left_of_next = link.permitted(here, after)
-        left = paths.left
-        beside = None if left is None else Permitted(left.up_to_kmh[source], left.planned[source])
-        run = member.run(beside, right, here)
-        measures = paths.measures[source]
-        measures[:, :2] += link.broken(here, after)
-        measures[:, 2:LEADING] += member.time(run)
-        low = measures[:, :LEADING] + self._to_go[i + 1][after]
-        low[:, 2:] += self._extras[i][1][here, after] / 2
+    # -- the way forward --------------------------------------------------------------------------------
+
+    def best(self) -> IntArray:
+        """Give the best level of each curve by number, shape (c,); -1 where its chain has no path."""
+        levels, k = self._levels, self._line.classes
+        best = np.full(len(levels.chain), -1, dtype=np.int64)
+        ceiling, (to_go, _) = self._ceiling(), self._to_go(0.5)
+        level = np.flatnonzero(self._position[levels.curve] == 0)
+        level = level[np.isfinite(ceiling[self._chain(level)]).all(axis=1)]
+        level = level[_not_above(to_go[level], ceiling[self._chain(level)])]
+        paths = _Paths(
+            level[:, None],
+            np.full((len(level), k), np.nan),
+            _free(len(level), k),
+            np.zeros((len(level), 2)),
+            np.zeros((len(level), 8)),
+        )
+        for i in range(int(self._length.max())):
+            ends = self._length[self._chain(paths.level[:, -1])] == i + 1
+            self._finish(paths.take(ends), ceiling, best)
+            paths = self._step(paths.take(~ends), ceiling, to_go)
+        return best
+
+    def _chain(self, level: IntArray) -> IntArray:
+        return self._levels.chain[self._levels.curve[level]]
+
+    def _step(self, paths: _Paths, ceiling: FloatArray, to_go: FloatArray) -> _Paths:
+        """Go from one curve to the next: settle the speeds of the one."""
+        pairs, last = self._pairs, paths.level[:, -1]
+        source, pair = spread_ranges(self._first[last], self._first[last + 1])
+        here, after = last[source], pairs.after[pair]
+        ceiling = ceiling[self._chain(here)]
+        to_come = to_go[after]
+        to_come[:, :2] += self._broken[pair]
+        to_come[:, 2:] += self._extra[1][pair] / 2
+        low = paths.measures[source, :LEADING] + to_come
+        low[:, 2:] += self._own[here] + (paths.extra[source] + self._extra[0][pair]) / 2
         keep = np.flatnonzero(_not_above(low, ceiling))
-        source, after, here, run, measures = source[keep], after[keep], here[keep], run[keep], measures[keep]
-        measures[:, LEADING:] += member.rest(run, here, self.target)
-        if i > 0 and paths.before is not None:
-            measures[:, 4:6] += self._approvals_before(i, paths, source, here, run)
+        source, pair, here = source[keep], pair[keep], here[keep]
+        run = self._run(here, paths.left.take(source), pairs.on_before.take(pair))
+        measures = paths.measures[source]
+        measures[:, 2:LEADING] += self._time(here, run)
+        good = np.flatnonzero(_not_above(measures[:, :LEADING] + to_come[keep], ceiling[keep]))
+        source, pair, here, run, measures = source[good], pair[good], here[good], run[good], measures[good]
+        measures[:, :2] += self._broken[pair]
+        measures[:, LEADING:] += self._rest(here, run)
+        measures[:, 4:6] += self._approvals(paths, source, run)
         grown = _Paths(
-            np.concatenate([paths.level[source], after[:, None]], axis=1),
+            np.concatenate([paths.level[source], pairs.after[pair][:, None]], axis=1),
             run,
-            Permitted(left_of_next.up_to_kmh[keep], left_of_next.planned[keep]),
+            pairs.on_after.take(pair),
+            self._extra[1][pair],
             measures,
         )
-        return grown.take(_best_of_alike(grown))
+        return grown.take(self._best_of_alike(grown))
 
-    def _approvals_before(
-        self, i: int, paths: _Paths, source: IntArray, here: IntArray, run: FloatArray
-    ) -> FloatArray:
-        before_cant = self.members[i - 1].cant_mm[paths.level[source, -2]]
-        before_run = paths.before[source] if paths.before is not None else run
-        return self.links[i - 1].approvals(before_cant, self.members[i].cant_mm[here], before_run, run)
-
-    def _finish(self, paths: _Paths) -> list[int]:
-        i = len(self.members) - 1
-        member, here = self.members[i], paths.level[:, -1]
-        run = member.run(paths.left, None, here)
+    def _finish(self, paths: _Paths, ceiling: FloatArray, best: IntArray) -> None:
+        """Settle the last curve of chains that end here, and enter their best levels."""
+        last = paths.level[:, -1]
+        run = self._run(last, paths.left)
         measures = paths.measures.copy()
-        measures[:, 2:LEADING] += member.time(run)
-        measures[:, LEADING:] += member.rest(run, here, self.target)
-        measures[:, 4:6] += self._approvals_before(i, paths, np.arange(len(here)), here, run)
-        order = _in_order(measures, paths.level)
-        return [int(level) for level in paths.level[order[0]]]
+        measures[:, 2:LEADING] += self._time(last, run)
+        good = np.flatnonzero(_not_above(measures[:, :LEADING], ceiling[self._chain(last)]))
+        paths, run, measures, last = paths.take(good), run[good], measures[good], last[good]
+        measures[:, LEADING:] += self._rest(last, run)
+        measures[:, 4:6] += self._approvals(paths, np.arange(len(last)), run)
+        order = self._in_order(measures, paths.level)
+        chain = self._chain(last[order])
+        level = paths.level[order[np.flatnonzero(np.diff(chain, prepend=-1))]]
+        best[self._levels.curve[level]] = level
+
+    def _rest(self, level: IntArray, run_kmh: FloatArray) -> FloatArray:
+        """Give approvals, overrun, square and cant at levels (s,) and speeds (s, k): shape (s, 4)."""
+        seen, place = _distinct(np.concatenate([level[:, None], run_kmh], axis=1))
+        level, run = level[seen], run_kmh[seen]
+        line, cant = self._line.take(self._levels.curve[level]), self._levels.cant_mm[level]
+        passed = passed_alone(line, cant[:, None], run)
+        square = squares(line, cant[:, None], run, self._target)
+        return np.stack([passed.count, passed.total, square, cant], axis=-1)[place]
+
+    def _approvals(self, paths: _Paths, source: IntArray, run_kmh: FloatArray) -> FloatArray:
+        """Give number and overrun of the limits passed on the transitions before the last curve, (s, 2)."""
+        if paths.level.shape[1] < 2 or not len(source):
+            return np.zeros((len(source), 2))
+        before, here = paths.level[source, -2], paths.level[source, -1]
+        run = np.minimum(paths.before[source], run_kmh)
+        seen, place = _distinct(np.concatenate([before[:, None], here[:, None], run], axis=1))
+        before, here, run = before[seen], here[seen], run[seen]
+        meeting = self._meeting.take(np.searchsorted(self._levels.begins, self._levels.curve[before]))
+        cants = (self._levels.cant_mm[before][:, None], self._levels.cant_mm[here][:, None])
+        passed = passed_shared(meeting, cants, run)
+        if not passed.by_rule:
+            return np.zeros((len(source), 2))
+        return np.stack([passed.count, passed.total], axis=-1)[place]
+
+    # -- the order of paths -----------------------------------------------------------------------------
+
+    def _in_order(self, measures: FloatArray, level: IntArray) -> IntArray:
+        """Sort paths by chain, the best of each first; then the lower cant at the smaller chainage."""
+        chain = self._chain(level[:, 0])
+        size = np.ones((len(self._length), measures.shape[1]))
+        np.maximum.at(size, chain, np.abs(measures))
+        exact = np.round(measures / (size[chain] * _QUANTUM))
+        return np.lexsort([chain, *exact.T, *level.T][::-1])
+
+    def _best_of_alike(self, paths: _Paths) -> IntArray:
+        """Of the paths that need the same from here on, give the best: indices."""
+        order = self._in_order(paths.measures, paths.level)
+        need = np.concatenate([paths.level[:, -2:], paths.before], axis=1)
+        seen, _ = _distinct(need[order])
+        return np.asarray(order[np.sort(seen)])
 
 
-def _lexicographic_least(measures: FloatArray) -> FloatArray:
-    """Give the least row along axis 1 of (a, b, c), c measures in their order: (a, c)."""
-    left: BoolArray = np.ones(measures.shape[:2], dtype=np.bool_)
-    for j in range(measures.shape[2]):
-        value = np.where(left, measures[:, :, j], np.inf)
-        least = value.min(axis=1, keepdims=True)
-        left &= value <= least + slack(least)
-    return np.asarray(measures[np.arange(len(measures)), np.argmax(left, axis=1)])
+def _free(n: int, k: int) -> Permitted:
+    """Give what permits everything."""
+    return Permitted(np.full((n, k), np.inf), np.ones((n, k), dtype=np.bool_))
+
+
+def _distinct(rows: FloatArray) -> tuple[IntArray, IntArray]:
+    """Give the first of each kind of rows (s, c), nan like nan, and the place of each row's kind in these."""
+    if not len(rows):
+        return np.zeros(0, dtype=np.int64), np.zeros(0, dtype=np.int64)
+    _, first, place = np.unique(np.nan_to_num(rows, nan=-1.0), axis=0, return_index=True, return_inverse=True)
+    return first, place.reshape(-1)
 
 
 def _not_above(low: FloatArray, ceiling: FloatArray) -> BoolArray:
-    """Tell which rows (s, c) are not larger than a row (c,), in the order of the measures."""
+    """Tell which rows (s, c) are not larger than others (s, c), in the order of the measures."""
     above: BoolArray = np.zeros(len(low), dtype=np.bool_)
     level: BoolArray = np.ones(len(low), dtype=np.bool_)
     for j in range(low.shape[1]):
-        room = 10 * slack(ceiling[j])
-        above |= level & (low[:, j] > ceiling[j] + room)
-        level &= np.abs(low[:, j] - ceiling[j]) <= room
+        room = 10 * slack(ceiling[:, j])
+        above |= level & (low[:, j] > ceiling[:, j] + room)
+        level &= np.abs(low[:, j] - ceiling[:, j]) <= room
     return ~above
-
-
-def _in_order(measures: FloatArray, level: IntArray) -> IntArray:
-    """Sort paths, the best first: by the measures, then the lower cant at the smaller chainage."""
-    size = np.maximum(1.0, np.abs(measures).max(axis=0))
-    exact = np.round(measures / (size * _QUANTUM))
-    keys = [*exact.T, *level.T]
-    return np.lexsort(keys[::-1])
-
-
-def _best_of_alike(paths: _Paths) -> IntArray:
-    """Of the paths that need the same from here on, give the best: indices."""
-    if paths.before is None or not len(paths.level):
-        return np.arange(len(paths.level))
-    order = _in_order(paths.measures, paths.level)
-    need = np.concatenate([paths.level[:, -2:], np.nan_to_num(paths.before, nan=-1.0)], axis=1)
-    _, first = np.unique(need[order], axis=0, return_index=True)
-    return np.asarray(order[np.sort(first)])

@@ -44,3 +44,37 @@ def first_best(measures: Sequence[FloatArray], allowed: BoolArray, axis: int) ->
         with np.errstate(invalid="ignore"):
             left = left & (value <= least + slack(np.where(np.isfinite(least), least, 0.0)))
     return np.argmax(left, axis=axis), np.asarray(allowed.any(axis=axis))
+
+
+def least_of_groups(measures: FloatArray, group: IntArray) -> tuple[IntArray, FloatArray, IntArray]:
+    """Find the best row of each group.
+
+    Parameters
+    ----------
+    measures : ndarray, shape (s, c)
+        Rows, the most important measure first.
+    group : ndarray of int, shape (s,)
+        Ascending.
+
+    Returns
+    -------
+    groups : ndarray of int, shape (g,)
+        Those that have a row.
+    least : ndarray, shape (g, c)
+        The least of each measure among the rows that are best by the measures before it.
+    best : ndarray of int, shape (g,)
+        The first of the best rows.
+    """
+    start = np.flatnonzero(np.diff(group, prepend=-1))
+    least = np.zeros((len(start), measures.shape[1]))
+    rows = np.arange(len(group))
+    if not len(rows):
+        return group, least, rows
+    owner = np.repeat(np.arange(len(start)), np.diff(start, append=len(group)))
+    left = np.ones(len(group), dtype=np.bool_)
+    for j in range(measures.shape[1]):
+        value = np.where(left, measures[:, j], np.inf)
+        least[:, j] = np.minimum.reduceat(value, start)
+        most = least[:, j] + slack(np.where(np.isfinite(least[:, j]), least[:, j], 0.0))
+        left &= value <= most[owner]
+    return group[start], least, np.minimum.reduceat(np.where(left, rows, len(rows)), start)

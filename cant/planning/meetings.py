@@ -1,4 +1,9 @@
-"""Every pair of cants over one shared transition: whether it is allowed, what it permits, what it costs."""
+"""Pairs of cants over shared transitions on which trains may have to give way: what each pair permits.
+
+All pairs are compared with windows (:mod:`cant.planning.windows`) at the few speeds that can occur: the
+planned ones and the multiples of the speed steps. The windows of all multiples up to one, met, tell how far a
+pair keeps everything; a class that is in no danger over any pair is left out before.
+"""
 
 from __future__ import annotations
 
@@ -7,137 +12,283 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from cant.planning.assess import passed_shared, shared_hard_kept
-from cant.planning.permissible import Permitted, permitted_shared, shared_held, speed_steps
-from cant.planning.shared import Meeting
+from cant.planning.assess import shared_hard_kept
+from cant.planning.levels import Levels
+from cant.planning.permissible import (
+    FASTEST_KMH,
+    Permitted,
+    next_multiple,
+    shared_gap,
+    slower_after,
+    speed_steps,
+    surely_held,
+)
+from cant.planning.shared import Meeting, SharedAsked
+from cant.planning.windows import Window, hard_window, speed_windows
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
+IntArray = npt.NDArray[np.int64]
+
+_SLACK = 1e-9
 
 
 @dataclass
-class PairTable:
-    """All pairs of a levels before and b levels after one transition: arrays (a, b), of a class (a, b, k).
+class PairList:
+    """Pairs of levels over the transitions of a line, in order of the level before; arrays (p,), (p, k).
 
     Attributes
     ----------
-    hard : ndarray of bool
-        Keeps what no lower speed can mend.
-    hard_overrun : ndarray
-        By how much it does not.
-    before, after : Permitted
+    transition, before, after : ndarray of int
+        Transition, and the numbers of the two levels.
+    broken, overrun : ndarray
+        1 where the pair does not keep what no lower speed can mend, and by how much.
+    on_before, on_after : Permitted
         What the transition permits on the two curves.
     """
 
-    hard: BoolArray
-    hard_overrun: FloatArray
-    before: Permitted
-    after: Permitted
+    transition: IntArray
+    before: IntArray
+    after: IntArray
+    broken: FloatArray
+    overrun: FloatArray
+    on_before: Permitted
+    on_after: Permitted
+
+    def __len__(self) -> int:
+        return len(self.before)
 
 
-def _spread(before: FloatArray, after: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Put levels (a, x) and (b, x) on axes of their own: (a, 1, 1, x) and (1, b, 1, x)."""
-    return before[:, None, None, :], after[None, :, None, :]
-
-
-def make_pair_table(
-    meeting: Meeting,
-    cant_before_mm: FloatArray,
-    cant_after_mm: FloatArray,
-    own: tuple[Permitted, Permitted],
-    exceptional: bool,
-) -> PairTable:
-    """Evaluate all pairs of cants over one transition, for speeds up to the planned ones.
+def make_pair_list(meeting: Meeting, levels: Levels, exceptional: bool, also_broken: bool) -> PairList:
+    """List the pairs of levels over the transitions between consecutive curves.
 
     Parameters
     ----------
     meeting : Meeting
-        One transition.
-    cant_before_mm, cant_after_mm : ndarray, shapes (a,) and (b,)
-        Levels of the two curves [mm].
-    own : pair of Permitted, shapes (a, k) and (b, k)
-        What each curve by itself permits.
+        m transitions.
+    levels : Levels
+        Of all curves, with the tables of the curves before and after each transition.
     exceptional : bool
+        Last tier allowed.
+    also_broken : bool
+        Also pairs that do not keep what no lower speed can mend.
+
+    Returns
+    -------
+    PairList
     """
-    cants = _spread(cant_before_mm[:, None], cant_after_mm[:, None])
-    hard, hard_overrun = shared_hard_kept(meeting, cants, exceptional)
-    planned = (meeting.before.planned_kmh, meeting.after.planned_kmh)
-    steps = (speed_steps(meeting.before), speed_steps(meeting.after))
-    shape = (len(cant_before_mm), len(cant_after_mm), meeting.both.shape[1])
-    permitted = [
-        Permitted(
-            np.broadcast_to(part.up_to_kmh[:, :, 0], shape), np.broadcast_to(part.planned[:, :, 0], shape)
-        )
-        for part in permitted_shared(meeting, cants, _spread_own(own), steps, exceptional, planned)
-    ]
-    flat = shape[:2]
-    return PairTable(
-        np.broadcast_to(hard[:, :, 0], flat), np.broadcast_to(hard_overrun[:, :, 0], flat), *permitted
+    before, after = levels.table[:, levels.begins], levels.table[:, levels.begins + 1]
+    cant_before, cant_after = levels.cants(before), levels.cants(after)
+    window = hard_window(SharedAsked(meeting, meeting.planned_kmh, exceptional), cant_before[:, :, None])
+    wanted = (before >= 0)[:, None] & (after >= 0)[None]
+    if not also_broken:
+        wanted &= window.holds(cant_after)
+    transition, row, column = np.nonzero(wanted.transpose(2, 0, 1))
+    broken, overrun = np.zeros((2, len(transition)))
+    if also_broken and len(transition):
+        cants = (cant_before[:, None, :, None], cant_after[None, :, :, None])
+        kept, over = shared_hard_kept(meeting, cants, exceptional)
+        cell = (row, column, transition)
+        good = np.broadcast_to(kept, wanted.shape)[cell]
+        broken = np.where(good, 0.0, 1.0)
+        overrun = np.where(good, 0.0, np.broadcast_to(over, wanted.shape)[cell])
+    number = (before[row, transition], after[column, transition])
+    shape = (len(transition), levels.run_kmh.shape[1])
+    listed = PairList(
+        transition,
+        *number,
+        broken,
+        overrun,
+        Permitted(np.full(shape, np.inf), np.ones(shape, dtype=np.bool_)),
+        Permitted(np.full(shape, np.inf), np.ones(shape, dtype=np.bool_)),
     )
+    _permit(listed, meeting, levels, (cant_before, cant_after), row, exceptional)
+    return listed
 
 
-def _spread_own(own: tuple[Permitted, Permitted]) -> tuple[Permitted, Permitted]:
-    up_to = _spread(own[0].up_to_kmh, own[1].up_to_kmh)
-    planned = own[0].planned[:, None, None, :], own[1].planned[None, :, None, :]
-    return Permitted(up_to[0], planned[0]), Permitted(up_to[1], planned[1])
+def _in_danger(
+    meeting: Meeting, cants: tuple[FloatArray, FloatArray], exceptional: bool
+) -> tuple[IntArray, IntArray]:
+    """Give the transitions and classes that a pair of cants may slow: all rules are worst at the ends."""
+    with np.errstate(invalid="ignore"):
+        ends = [np.stack([np.fmin.reduce(cant), np.fmax.reduce(cant)])[:, :, None] for cant in cants]
+    sure = surely_held(
+        meeting,
+        (np.nan_to_num(ends[0][:, None]), np.nan_to_num(ends[1][None])),
+        np.nan_to_num(np.minimum(*_ceilings(meeting))),
+        exceptional,
+    )
+    sure = np.broadcast_to(sure, (2, 2, *meeting.both.shape))
+    at, column = np.nonzero(meeting.both & ~sure.all(axis=(0, 1)))
+    return at, column
 
 
-def unhindered(
-    meeting: Meeting,
-    cant_before_mm: FloatArray,
-    cant_after_mm: FloatArray,
-    own: tuple[Permitted, Permitted],
-    exceptional: bool,
-) -> BoolArray:
-    """Tell which pairs a transition allows without slowing any train further, shape (a, b).
+def _ceilings(meeting: Meeting) -> tuple[FloatArray, FloatArray]:
+    """Give the speeds on the two curves above which nothing need be tried [km/h], shape (m, k)."""
+    before, after = (
+        np.fmin(next_multiple(line.planned_kmh, speed_steps(line)), FASTEST_KMH)
+        for line in (meeting.before, meeting.after)
+    )
+    return before, after
 
-    Parameters
-    ----------
-    meeting : Meeting
-        One transition.
-    cant_before_mm, cant_after_mm : ndarray, shapes (a,) and (b,)
-        Levels of the two curves [mm].
-    own : pair of Permitted, shapes (a, k) and (b, k)
-        What each curve by itself permits.
-    exceptional : bool
+
+@dataclass
+class _Asked:
+    """The windows of e transitions with one class each at every speed that can occur.
+
+    ``window`` (v, a, e): at the planned speed before, after, and the multiples 0, 1, 2 ... of the steps
+    before and after; ``gap`` (v, e) for each end where the limits of its curve have one above the planned
+    speed; ``up_to`` for each end the windows of all multiples up to one, met.
     """
-    cants = _spread(cant_before_mm[:, None], cant_after_mm[:, None])
-    sides = (meeting.before, meeting.after)
-    alone = _spread_own(own)
-    run = [part.run_speed(line.planned_kmh) for part, line in zip(alone, sides, strict=True)]
-    hard, _ = shared_hard_kept(meeting, cants, exceptional)
-    held = np.asarray(shared_held(meeting, cants, np.minimum(*run), exceptional).all(axis=-1))
-    free: BoolArray = np.asarray(hard[:, :, 0] & held[:, :, 0])
-    # A train that is slow by itself must find every multiple of the step below its speed in order too.
-    ceiling = [np.where(part.planned, 0.0, line.planned_kmh) for part, line in zip(alone, sides, strict=True)]
-    if not free.any() or not any((speed > 0).any() for speed in ceiling):
-        return np.broadcast_to(free, (len(cant_before_mm), len(cant_after_mm)))
-    steps = (speed_steps(meeting.before), speed_steps(meeting.after))
-    shared = permitted_shared(meeting, cants, alone, steps, exceptional, (ceiling[0], ceiling[1]))
-    for part, beside, line, speed in zip(alone, shared, sides, run, strict=True):
-        together = Permitted(
-            np.minimum(part.up_to_kmh, beside.up_to_kmh), np.logical_and(part.planned, beside.planned)
+
+    planned: tuple[FloatArray, FloatArray]
+    ceiling: tuple[FloatArray, FloatArray]
+    step: tuple[FloatArray, FloatArray]
+    first: tuple[int, int]
+    window: Window
+    gap: tuple[BoolArray, BoolArray]
+    up_to: tuple[Window, Window]
+
+    @classmethod
+    def of(cls, part: Meeting, cant_before: FloatArray, exceptional: bool) -> _Asked:
+        planned, ceiling = (part.before.planned_kmh, part.after.planned_kmh), _ceilings(part)
+        step = (speed_steps(part.before), speed_steps(part.after))
+        most = int(np.floor((np.maximum(*ceiling) / np.minimum(*step)).max() + _SLACK))
+        count = np.arange(most + 1)[:, None, None, None]
+        multiples = [count * step[0]]
+        if (step[0] != step[1]).any():
+            multiples.append(count * step[1])
+        speeds = np.concatenate([planned[0][None, None], planned[1][None, None], *multiples])
+        asked = SharedAsked(part, speeds, exceptional)
+        window = speed_windows(asked, cant_before[:, :, None]).over_classes()
+        gaps = [
+            (shared_gap(part, speeds, np.full((1, 1), end == 1), exceptional))
+            & (speeds > planned[end] + _SLACK)
+            for end in (0, 1)
+        ]
+        gap = [np.broadcast_to(there, speeds.shape)[:, 0, :, 0] for there in gaps]
+        first = (2, 2 + (len(multiples) - 1) * (most + 1))
+        up_to = [_met(window, gap[end], slice(first[end], first[end] + most + 1)) for end in (0, 1)]
+        return cls(
+            planned=(planned[0][:, 0], planned[1][:, 0]),
+            ceiling=(ceiling[0][:, 0], ceiling[1][:, 0]),
+            step=(step[0][:, 0], step[1][:, 0]),
+            first=first,
+            window=window,
+            gap=(gap[0], gap[1]),
+            up_to=(up_to[0], up_to[1]),
         )
-        same = np.logical_or(np.equal(together.run_speed(line.planned_kmh), speed), ~line.runs)
-        free = np.logical_and(free, np.asarray(same.all(axis=-1))[:, :, 0])
-    return free
+
+    def at(self, end: int, run: FloatArray, entry: IntArray) -> IntArray:
+        """Give the positions of speeds run on one of the curves (0 before, 1 after)."""
+        multiple = np.rint(run / self.step[end][entry]).astype(np.int64)
+        return np.where(run == self.planned[end][entry], end, self.first[end] + multiple)
 
 
-def pair_approvals(
+def _met(window: Window, gap: BoolArray, multiples: slice) -> Window:
+    """Give what all multiples of a step up to one allow; that of 0 km/h is not asked."""
+    low = np.where(gap[multiples, None], np.inf, window.low[multiples])
+    high = window.high[multiples].copy()
+    low[0], high[0] = -np.inf, np.inf
+    return Window(np.maximum.accumulate(low), np.minimum.accumulate(high))
+
+
+def _permit(
+    listed: PairList,
     meeting: Meeting,
-    cant_before_mm: FloatArray,
-    cant_after_mm: FloatArray,
-    run_before_kmh: FloatArray,
-    run_after_kmh: FloatArray,
-) -> tuple[FloatArray, FloatArray]:
-    """Give number and overrun of the normal limits passed over one transition by all pairs, each (a, b).
+    levels: Levels,
+    cants: tuple[FloatArray, FloatArray],
+    row: IntArray,
+    exceptional: bool,
+) -> None:
+    """Enter what the pairs permit; ``row`` is the row of the level before in its table."""
+    at, column = _in_danger(meeting, cants, exceptional)
+    if not len(at) or not len(listed):
+        return
+    cant_before = np.nan_to_num(cants[0][:, at])
+    asked = _Asked.of(meeting.unfold(at, column), cant_before, exceptional)
+    begin = np.searchsorted(listed.transition, np.arange(len(meeting) + 1))
+    entry, pair = spread_ranges(begin[at], begin[at + 1])
+    classes = column[entry]
+    run = (
+        levels.run_kmh[listed.before[pair], classes],
+        levels.run_kmh[listed.after[pair], classes],
+    )
+    shorter = meeting.after.weight_length_m[:, 0] < meeting.before.weight_length_m[:, 0]
+    on_after = slower_after(shorter[at][entry], run)
+    cant_after = levels.cant_mm[listed.after[pair]]
+    question = _Question(asked, entry, row[pair], cant_after, on_after, run)
+    up_to, held = question.answer()
+    for mine, permitted in ((~on_after, listed.on_before), (on_after, listed.on_after)):
+        permitted.up_to_kmh[pair[mine], classes[mine]] = up_to[mine]
+        permitted.planned[pair[mine], classes[mine]] = held[mine]
 
-    Speeds are those run on the two curves, (a, k) and (b, k).
+
+def spread_ranges(begin: IntArray, end: IntArray) -> tuple[IntArray, IntArray]:
+    """Give all whole numbers of ranges one after the other, each with the position of its range."""
+    count = end - begin
+    owner = np.repeat(np.arange(len(count)), count)
+    offset = np.arange(len(owner)) - np.repeat(np.cumsum(count) - count, count)
+    return owner, begin[owner] + offset
+
+
+@dataclass
+class _Question:
+    """How fast the slower curve may be run over f pairs of cants with one class each.
+
+    The rule is that of :func:`cant.planning.permissible.permitted_shared`.
     """
-    cants = _spread(cant_before_mm[:, None], cant_after_mm[:, None])
-    passed = passed_shared(meeting, cants, np.minimum(*_spread(run_before_kmh, run_after_kmh)))
-    shape = (len(cant_before_mm), len(cant_after_mm))
-    count, total = (np.asarray(x) for x in (passed.count, passed.total))
-    if count.ndim == 0:
-        return np.zeros(shape), np.zeros(shape)
-    return np.broadcast_to(count[..., 0], shape), np.broadcast_to(total[..., 0], shape)
+
+    asked: _Asked
+    entry: IntArray
+    row: IntArray
+    cant_after: FloatArray
+    on_after: BoolArray
+    run: tuple[FloatArray, FloatArray]
+
+    def answer(self) -> tuple[FloatArray, BoolArray]:
+        """Give the highest multiple permitted (inf: as far as asked) and whether the planned speed is."""
+        asked, on_after = self.asked, self.on_after
+        place = [asked.at(end, self.run[end], self.entry) for end in (0, 1)]
+        other, other_place = np.where(on_after, self.run[0], self.run[1]), np.where(on_after, *place)
+        planned, ceiling, step = (
+            np.where(on_after, x[1][self.entry], x[0][self.entry])
+            for x in (asked.planned, asked.ceiling, asked.step)
+        )
+        every = np.arange(len(self.entry))
+        at_other = self._inside(asked.window, other_place, every)
+        at_planned = self._inside(asked.window, on_after.astype(np.int64), every)
+        held = np.where(planned <= other, at_planned, at_other)
+        gap = np.where(on_after, *(asked.gap[end][other_place, self.entry] for end in (1, 0)))
+        beyond = np.ceil(other / step - _SLACK)
+        tried = np.minimum(beyond - 1, np.floor(ceiling / step + _SLACK))
+        tried = np.maximum(tried, 0).astype(np.int64)
+        reached = self._reached(tried)
+        up_to = np.where(reached < tried, reached * step, np.inf)
+        last = (reached >= tried) & (beyond * step <= ceiling + _SLACK)
+        up_to = np.where(last & (~at_other | gap), (beyond - 1) * step, up_to)
+        return np.where(other > 0, np.where(ceiling > 0, up_to, np.inf), np.inf), held
+
+    def _inside(self, window: Window, place: IntArray, which: IntArray) -> BoolArray:
+        at = (place, self.row[which], self.entry[which])
+        cant = self.cant_after[which]
+        return np.asarray((cant >= window.low[at]) & (cant <= window.high[at]))
+
+    def _reached(self, tried: IntArray) -> IntArray:
+        """Give up to which multiple everything holds, of those to try."""
+        reached = np.zeros(len(tried), dtype=np.int64)
+        for end in (0, 1):
+            which = np.flatnonzero(self.on_after == bool(end))
+            window = self.asked.up_to[end]
+            good = self._inside(window, tried[which], which)
+            reached[which[good]] = tried[which[good]]
+            which = which[~good]
+            # What holds up to a multiple holds up to every lower one: halving finds the last.
+            jump = 1 << int(tried.max(initial=0)).bit_length()
+            while jump > 1:
+                jump //= 2
+                trial = reached[which] + jump
+                further = trial < tried[which]
+                further &= self._inside(window, np.minimum(trial, tried[which]), which)
+                reached[which] = np.where(further, trial, reached[which])
+        return reached

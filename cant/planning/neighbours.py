@@ -64,6 +64,12 @@ class Pairs:
         at = np.asarray(indices, dtype=np.int64)
         return Pairs(self.first[at], self.second[at], self.length_m[at], self.ramp_m[at], self.factor[at])
 
+    def after(self, n: int) -> IntArray:
+        """Give for each of n curves the position of the pair that it begins, -1 where none, shape (n,)."""
+        position = np.full(n, -1, dtype=np.int64)
+        position[self.first] = np.arange(len(self))
+        return position
+
     def among(self, curves: IntArray) -> Pairs:
         """Give the pairs among some curves, the curves numbered by their position among them."""
         order = np.argsort(curves)

@@ -1,24 +1,25 @@
-"""Every cant of the grid on some curves, each curve by itself: what it costs in time, approvals and target.
+"""The cants of the grid that some curves may take, each by itself: the cost in time, approvals and target.
 
 Made only for the curves that a closed form does not settle.
 """
 
 from __future__ import annotations
 
-from collections.abc import Iterator
-from dataclasses import dataclass
+from collections.abc import Iterable, Iterator, Sequence
+from dataclasses import dataclass, fields
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
 
 from cant.planning.assess import (
     LIMIT_OF_NOTHING,
+    Services,
     hard_kept,
     overrun,
     passed_alone,
-    time_lost,
-    trains_stopped,
 )
+from cant.planning.bounds import hard_bounds
 from cant.planning.grid import Grid
 from cant.planning.lexicographic import first_best, slack
 from cant.planning.line import Line
@@ -36,16 +37,17 @@ BLOCK = 128
 
 @dataclass
 class Nodes:
-    """All levels of some curves: arrays (levels, n), those of a class (levels, n, k).
+    """The levels of some curves: arrays (levels, n), those of a class (levels, n, k).
 
     Attributes
     ----------
     cant_mm : ndarray
-        Levels, ascending; nan where a curve has fewer.
+        Levels, ascending, that keep what no lower speed can mend, for a curve that is not compliant the one
+        that it must take; nan where there is none.
     allowed : ndarray of bool
-        Keeps what no lower speed can mend; for a curve that is not compliant only the level it must take.
+        Where there is a level.
     alone : Permitted
-        What the curve by itself permits.
+        What the curve by itself permits; not searched below a planned speed that all levels permit.
     run_kmh : ndarray
         Speeds run as far as the curve by itself decides.
     stopped, lost_s, count, overrun, square : ndarray
@@ -65,6 +67,46 @@ class Nodes:
     square: FloatArray
     not_compliant: BoolArray
 
+    def take(self, curves: IntArray) -> Nodes:
+        """Give the nodes of some of the curves."""
+        chosen: dict[str, Any] = {
+            item.name: getattr(self, item.name)[:, curves]
+            for item in fields(self)
+            if item.name not in ("alone", "not_compliant")
+        }
+        alone = Permitted(self.alone.up_to_kmh[:, curves], self.alone.planned[:, curves])
+        return Nodes(**chosen, alone=alone, not_compliant=self.not_compliant[curves])
+
+    @classmethod
+    def join(cls, parts: Sequence[Nodes]) -> Nodes:
+        """Put the nodes of several blocks side by side."""
+        most = max(len(part.cant_mm) for part in parts)
+
+        def side_by_side(arrays: Iterable[npt.NDArray[Any]], missing: float | bool) -> npt.NDArray[Any]:
+            return np.concatenate(
+                [
+                    np.pad(a, [(0, most - len(a))] + [(0, 0)] * (a.ndim - 1), constant_values=missing)
+                    for a in arrays
+                ],
+                axis=1,
+            )
+
+        return cls(
+            cant_mm=side_by_side((part.cant_mm for part in parts), np.nan),
+            allowed=side_by_side((part.allowed for part in parts), False),
+            alone=Permitted(
+                side_by_side((part.alone.up_to_kmh for part in parts), np.inf),
+                side_by_side((part.alone.planned for part in parts), False),
+            ),
+            run_kmh=side_by_side((part.run_kmh for part in parts), np.nan),
+            stopped=side_by_side((part.stopped for part in parts), np.inf),
+            lost_s=side_by_side((part.lost_s for part in parts), np.inf),
+            count=side_by_side((part.count for part in parts), np.inf),
+            overrun=side_by_side((part.overrun for part in parts), np.inf),
+            square=side_by_side((part.square for part in parts), np.inf),
+            not_compliant=np.concatenate([part.not_compliant for part in parts]),
+        )
+
     @property
     def cheapest(self) -> BoolArray:
         """Allowed levels that lose as little time as any, by the curve alone, (levels, n)."""
@@ -82,29 +124,22 @@ def squares(line: Line, cant_mm: FloatArray, run_kmh: FloatArray, target: Target
     return np.asarray((distance**2 * line.weight_length_m)[..., 0])
 
 
-def make_nodes(line: Line, grid: Grid, target: Target, exceptional: bool, complete: bool) -> Nodes:
-    """Evaluate every level of every curve of a (small) line.
-
-    ``complete``: also what holds below a planned speed that is permissible, for curves in chains.
-    """
+def make_nodes(line: Line, grid: Grid, target: Target, exceptional: bool) -> Nodes:
+    """Evaluate the levels of every curve of a (small) line."""
     line = line.with_bands()
-    levels = grid.levels()
-    known = ~np.isnan(levels)
-    cant = np.where(known, levels, 0.0)[:, :, None]
-    allowed = known & hard_kept(line, cant, exceptional)
-    not_compliant: BoolArray = np.asarray(~allowed.any(axis=0))
-    if not_compliant.any():
-        bad = np.flatnonzero(not_compliant)
-        allowed[:, bad] = _least_bad(line.take(bad), cant[:, bad], known[:, bad], exceptional)
-    alone = _alone(line, cant, allowed, exceptional, complete)
+    levels, not_compliant = _levels(line, grid, exceptional)
+    allowed = ~np.isnan(levels)
+    cant = np.where(allowed, levels, 0.0)[:, :, None]
+    alone = _alone(line, cant, allowed, exceptional)
     run = np.where(line.runs, alone.run_speed(line.planned_kmh), np.nan)
+    services = Services.of(line)
     nodes = Nodes(
         cant_mm=levels,
         allowed=allowed,
         alone=alone,
         run_kmh=run,
-        stopped=trains_stopped(line, run),
-        lost_s=time_lost(line, run),
+        stopped=services.stopped(run),
+        lost_s=services.lost_s(run),
         count=np.full(levels.shape, np.inf),
         overrun=np.full(levels.shape, np.inf),
         square=squares(line, cant, run, target),
@@ -117,19 +152,40 @@ def make_nodes(line: Line, grid: Grid, target: Target, exceptional: bool, comple
     return nodes
 
 
-def _alone(
-    line: Line, cant_mm: FloatArray, allowed: BoolArray, exceptional: bool, complete: bool
-) -> Permitted:
-    """Give what each level permits as far as it is run; searched only where the planned speed fails.
+def _levels(line: Line, grid: Grid, exceptional: bool) -> tuple[FloatArray, BoolArray]:
+    """Give the levels that may be taken, (levels, n) [mm], and which curves are not compliant.
 
-    ``complete``: searched everywhere, for curves whose transitions may forbid the planned speed.
+    They keep what no lower speed can mend; where none does, the curve has one level: the least bad.
     """
+    bounds = hard_bounds(line, exceptional)
+    levels = grid.between(bounds.low_mm, bounds.high_mm)
+    allowed = ~np.isnan(levels)
+    allowed &= hard_kept(line, np.where(allowed, levels, 0.0)[:, :, None], exceptional)
+    levels = np.where(allowed, levels, np.nan)
+    not_compliant: BoolArray = np.asarray(~allowed.any(axis=0))
+    if not_compliant.any():
+        bad = np.flatnonzero(not_compliant)
+        every = grid.take(bad).levels()
+        known = ~np.isnan(every)
+        cants = np.where(known, every, 0.0)
+        chosen = _least_bad(line.take(bad), cants[:, :, None], known, exceptional)
+        levels[0, bad] = cants[chosen, np.arange(len(bad))]
+    return levels, not_compliant
+
+
+def _alone(line: Line, cant_mm: FloatArray, allowed: BoolArray, exceptional: bool) -> Permitted:
+    """Give what each level permits as far as it is run; searched only where the planned speed fails."""
     shape = (*cant_mm.shape[:2], line.classes)
     held: BoolArray = np.ones(shape, dtype=np.bool_)
     for terms in speed_terms(Asked(line, line.planned_kmh, exceptional)):
         held &= terms.kept(cant_mm)
-    wanted = line.runs if complete else line.runs & (allowed[:, :, None] & ~held).any(axis=0)
-    up_to = np.full(shape, np.inf)
+    wanted = line.runs & (allowed[:, :, None] & ~held).any(axis=0)
+    return Permitted(_searched(line, cant_mm, wanted, exceptional), held)
+
+
+def _searched(line: Line, cant_mm: FloatArray, wanted: BoolArray, exceptional: bool) -> FloatArray:
+    """Search how fast some classes on some curves may run at all levels [km/h]: inf elsewhere."""
+    up_to = np.full((*cant_mm.shape[:2], line.classes), np.inf)
     curve, column = np.nonzero(wanted)
     if len(curve):
         steps = speed_steps(line)[curve, column][:, None]
@@ -137,20 +193,29 @@ def _alone(
             line.unfold(curve, column), cant_mm[:, curve], steps, exceptional, as_run=True
         )
         up_to[:, curve, column] = found.up_to_kmh[:, :, 0]
-    return Permitted(up_to, held)
+    return up_to
+
+
+def searched_below_planned(line: Line, nodes: Nodes, exceptional: bool) -> Permitted:
+    """Give what the nodes permit also below a planned speed that is permissible.
+
+    For curves in chains: a transition may forbid the planned speed, and what the curve permits then counts.
+    """
+    cant = np.where(nodes.allowed, nodes.cant_mm, 0.0)[:, :, None]
+    return Permitted(_searched(line.with_bands(), cant, line.runs, exceptional), nodes.alone.planned)
 
 
 def node_blocks(
-    line: Line, grid: Grid, target: Target, exceptional: bool, complete: bool
+    line: Line, grid: Grid, target: Target, exceptional: bool
 ) -> Iterator[tuple[IntArray, Nodes]]:
     """Yield the nodes of a long line block by block, each with the positions of its curves."""
     for begin in range(0, len(line), BLOCK):
         at = np.arange(begin, min(begin + BLOCK, len(line)))
-        yield at, make_nodes(line.take(at), grid.take(at), target, exceptional, complete)
+        yield at, make_nodes(line.take(at), grid.take(at), target, exceptional)
 
 
-def _least_bad(line: Line, cant_mm: FloatArray, known: BoolArray, exceptional: bool) -> BoolArray:
-    """Mark the level that a curve takes where none keeps what no lower speed can mend, (levels, n).
+def _least_bad(line: Line, cant_mm: FloatArray, known: BoolArray, exceptional: bool) -> IntArray:
+    """Give the level that a curve takes where none keeps what no lower speed can mend, shape (n,).
 
     Smallest overrun of ``at most``, then of ``at least``, then the smallest sum of overruns of the others,
     then the lower cant.
@@ -172,9 +237,7 @@ def _least_bad(line: Line, cant_mm: FloatArray, known: BoolArray, exceptional: b
         else:
             others = others + worst
     chosen, _ = first_best((most, least, others), known, axis=0)
-    marked = np.zeros(known.shape, dtype=np.bool_)
-    marked[chosen, np.arange(known.shape[1])] = True
-    return marked
+    return chosen
 
 
 def best_alone(nodes: Nodes) -> IntArray:

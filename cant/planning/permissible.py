@@ -46,7 +46,7 @@ class Permitted:
     up_to_kmh: FloatArray
     planned: BoolArray
 
-    def take(self, curves: npt.NDArray[np.int64]) -> Permitted:
+    def take(self, curves: npt.NDArray[np.int64] | BoolArray) -> Permitted:
         """Give some of the curves, from arrays (n, k)."""
         return Permitted(self.up_to_kmh[curves], self.planned[curves])
 
@@ -70,6 +70,14 @@ def speed_steps(line: Line) -> FloatArray:
         radius=line.radius_m,
     ).value
     return np.where(np.isfinite(step) & (step > 0), step, DEFAULT_SPEED_STEP_KMH)
+
+
+def next_multiple(speed_kmh: FloatArray, step_kmh: FloatArray) -> FloatArray:
+    """Give the multiple of a step at or next above a speed [km/h].
+
+    A speed that is itself no multiple may be run where the rules hold up to this one.
+    """
+    return np.asarray(np.ceil(speed_kmh / step_kmh - _SLACK) * step_kmh)
 
 
 def gap_at(asked: Asked) -> BoolArray:
@@ -171,7 +179,8 @@ def permitted_alone(
     exceptional : bool
         Tier.
     as_run : bool
-        Only speeds up to the planned ones are asked for: the search ends with the band of the fastest.
+        Only what is run is asked for: the search ends with the band of the multiple at or next above the
+        fastest planned speed.
 
     Returns
     -------
@@ -182,7 +191,7 @@ def permitted_alone(
     up_to = np.zeros(shape)
     alive = np.ones(shape, dtype=np.bool_)
     planned = np.nan_to_num(line.planned_kmh)
-    enough = planned.max(initial=0.0) if as_run else FASTEST_KMH
+    enough = next_multiple(planned, steps).max(initial=0.0) if as_run else FASTEST_KMH
     for low, high in _bands(line):
         if low >= enough:
             break
@@ -206,10 +215,13 @@ def slows_after(meeting: Meeting, own_kmh: tuple[FloatArray, FloatArray]) -> Boo
 
     It binds where the class is slower by itself; where alike, the shorter curve; then the one before.
     """
-    shorter_after = meeting.after.weight_length_m < meeting.before.weight_length_m
-    slower_after = own_kmh[1] < own_kmh[0] - _SLACK
+    return slower_after(meeting.after.weight_length_m < meeting.before.weight_length_m, own_kmh)
+
+
+def slower_after(shorter_after: BoolArray, own_kmh: tuple[FloatArray, FloatArray]) -> BoolArray:
+    """Tell where a class is slower after a transition than before, the shorter curve deciding equal ones."""
     alike = np.abs(own_kmh[1] - own_kmh[0]) <= _SLACK
-    return np.asarray(slower_after | (alike & shorter_after))
+    return np.asarray((own_kmh[1] < own_kmh[0] - _SLACK) | (alike & shorter_after))
 
 
 def permitted_shared(
@@ -323,7 +335,7 @@ class _Search:
         up_to = np.full(shape, np.inf)
         cap = np.where(meeting.both, np.fmin(self.other, np.fmin(self.ceiling, FASTEST_KMH)), 0.0)
         cap = np.nan_to_num(cap)
-        doubtful = np.broadcast_to(meeting.both & (cap > 0), shape) & ~_surely_held(
+        doubtful = np.broadcast_to(meeting.both & (cap > 0), shape) & ~surely_held(
             meeting, cant_mm, cap, self.exceptional
         )
         flat = doubtful.reshape(-1, *shape[-2:])
@@ -381,7 +393,7 @@ class _Search:
         return np.where(reached & failing, (beyond - 1) * self.step, up_to)
 
 
-def _surely_held(
+def surely_held(
     meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray], fastest_kmh: FloatArray, exceptional: bool
 ) -> BoolArray:
     """Tell where the rules hold at every speed up to one, by their largest values and smallest limits."""

@@ -82,6 +82,17 @@ class Meeting:
             self.factor,
         )
 
+    def unfold(self, transitions: npt.NDArray[np.int64], columns: npt.NDArray[np.int64]) -> Meeting:
+        """Give some classes over some transitions, each as a transition of its own with one class."""
+        at = transitions
+        return Meeting(
+            self.before.unfold(at, columns),
+            self.after.unfold(at, columns),
+            self.length_m[at],
+            self.ramp_m[at],
+            self.factor[at],
+        )
+
     def __len__(self) -> int:
         return len(self.length_m)
 

@@ -1,10 +1,13 @@
 """The rules over shared transitions read the other way: which cants of the next curve a cant allows.
 
-At given speeds every such rule allows an interval; where nothing needs approval and nothing gives way, a
-chain is a shortest path through these intervals, and no pair of cants need be tried.
+At given speeds every such rule allows an interval. So pairs of cants are compared with two numbers a cant,
+and no rule need be evaluated for every pair: what holds together is the meeting of intervals, what holds at
+every speed up to one is the meeting of theirs.
 """
 
 from __future__ import annotations
+
+from typing import NamedTuple
 
 import numpy as np
 import numpy.typing as npt
@@ -18,25 +21,39 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 
 
-def _largest_change_of_cant(asked: SharedAsked) -> FloatArray:
-    """Give the largest signed change of cant that gradient, rate and equality allow [mm], shape (m, 1)."""
-    meeting = asked.meeting
-    gradient, rate = asked.limit("cant gradient"), asked.limit("rate of change of cant")
-    with np.errstate(divide="ignore", invalid="ignore"):
-        length = meeting.ramp_m / meeting.factor
-        by_gradient = (gradient.value + gradient.tolerance) * length
-        by_rate = (rate.value + rate.tolerance) * length * KMH_PER_MS / asked.speed_kmh
-    both = meeting.both
-    largest = np.where(both, np.fmin(by_gradient, by_rate), np.inf).min(axis=-1, keepdims=True)
-    alone = np.logical_not(both.any(axis=-1, keepdims=True))
-    if alone.any():
-        limit = asked.curve_limit("cant gradient")
-        largest = np.where(alone, (limit.value + limit.tolerance) * length, largest)
-    return np.where(meeting.equal_cants, TOLERANCE, largest)
+class Window(NamedTuple):
+    """Intervals of cants on the curve after, bounds included [mm]; low is inf where no cant is allowed."""
+
+    low: FloatArray
+    high: FloatArray
+
+    def within(self, other: Window) -> Window:
+        """Give what both allow."""
+        return Window(np.maximum(self.low, other.low), np.minimum(self.high, other.high))
+
+    def over_classes(self) -> Window:
+        """Give what all classes on the last axis allow."""
+        return Window(self.low.max(axis=-1), self.high.min(axis=-1))
+
+    def holds(self, cant_after_mm: FloatArray) -> BoolArray:
+        """Tell which cants (b, ...) of the curve after are allowed beside those (a, ...) before: (a, b, ...).
+
+        nan is never allowed.
+        """
+        with np.errstate(invalid="ignore"):
+            above = cant_after_mm >= self.low[:, None]
+            return np.asarray(above & (cant_after_mm <= self.high[:, None]))
 
 
-def allowed_after(asked: SharedAsked, cant_before_mm: FloatArray) -> tuple[FloatArray, FloatArray]:
-    """Give the interval of cants that a cant of the curve before allows on the curve after.
+def _around(asked: SharedAsked, cant_before_mm: FloatArray, change_mm: FloatArray) -> Window:
+    """Give the cants whose signed change is no larger than a size."""
+    hands = asked.meeting.before.hand * asked.meeting.after.hand
+    middle = hands * cant_before_mm
+    return Window(middle - change_mm, middle + change_mm)
+
+
+def hard_window(asked: SharedAsked, cant_before_mm: FloatArray) -> Window:
+    """Give what gradient and equality of cants allow: no lower speed can mend these.
 
     Parameters
     ----------
@@ -47,14 +64,58 @@ def allowed_after(asked: SharedAsked, cant_before_mm: FloatArray) -> tuple[Float
 
     Returns
     -------
-    low, high : ndarray, shape (..., m)
-        Bounds included [mm]; low is inf where no cant at all is allowed.
+    Window
+        Shape (..., m).
+    """
+    meeting = asked.meeting
+    both = meeting.both
+    limit = asked.limit("cant gradient")
+    length = meeting.ramp_m / meeting.factor
+    with np.errstate(invalid="ignore"):
+        by_class = (limit.value + limit.tolerance) * length
+    change = np.where(both & ~np.isnan(by_class), by_class, np.inf).min(axis=-1, keepdims=True)
+    alone = np.logical_not(both.any(axis=-1, keepdims=True))
+    if alone.any():
+        limit = asked.curve_limit("cant gradient")
+        with np.errstate(invalid="ignore"):
+            change = np.where(alone, (limit.value + limit.tolerance) * length, change)
+    change = np.where(meeting.equal_cants, TOLERANCE, change)
+    return Window(*(bound[..., 0] for bound in _around(asked, cant_before_mm, change)))
+
+
+def speed_windows(asked: SharedAsked, cant_before_mm: FloatArray) -> Window:
+    """Give what the rates and the jump of deficiency allow to each class at the speeds asked.
+
+    Parameters
+    ----------
+    asked : SharedAsked
+        m transitions, speeds of shape (..., m, k), and the tier; tolerances are included.
+    cant_before_mm : ndarray, shape (..., m, 1)
+        Cants of the curve before [mm].
+
+    Returns
+    -------
+    Window
+        Shape (..., m, k).
     """
     meeting, speed = asked.meeting, asked.speed_kmh
-    hands = meeting.before.hand * meeting.after.hand
-    change = _largest_change_of_cant(asked)
-    low = (hands * cant_before_mm - change)[..., 0]
-    high = (hands * cant_before_mm + change)[..., 0]
+    both = meeting.both
+    rate = asked.limit("rate of change of cant")
+    with np.errstate(divide="ignore", invalid="ignore"):
+        change = (rate.value + rate.tolerance) * KMH_PER_MS * meeting.ramp_m / (meeting.factor * speed)
+    change = np.where(both & ~np.isnan(change), change, np.inf)
+    window = _around(asked, cant_before_mm, change).within(_deficiency_window(asked, cant_before_mm))
+    touching = both & (meeting.length_m == 0)
+    if not touching.any():
+        return window
+    limit = asked.limit("abrupt change of cant deficiency")
+    broken = touching & (jump_of_deficiency(meeting, speed) > limit.value + limit.tolerance)
+    return Window(np.where(broken, np.inf, window.low), window.high)
+
+
+def _deficiency_window(asked: SharedAsked, cant_before_mm: FloatArray) -> Window:
+    """Give what the rate of change of deficiency allows to each class, excess counting as deficiency 0."""
+    meeting, speed = asked.meeting, asked.speed_kmh
     limit = asked.limit("rate of change of cant deficiency")
     with np.errstate(divide="ignore", invalid="ignore"):
         room = (limit.value + limit.tolerance) * KMH_PER_MS * meeting.length_m / (meeting.factor * speed)
@@ -63,21 +124,29 @@ def allowed_after(asked: SharedAsked, cant_before_mm: FloatArray) -> tuple[Float
     before, after = (
         equilibrium_cant(speed, line.radius_m, line.constant) for line in (meeting.before, meeting.after)
     )
-    signed = hands * np.maximum(before - cant_before_mm, 0.0)
-    with np.errstate(invalid="ignore"):
-        lowest = np.where(signed + room >= 0, after - signed - room, np.inf)
-        highest = np.where(signed - room > 0, after - signed + room, np.inf)
-    low = np.maximum(low, np.where(active, lowest, -np.inf).max(axis=-1))
-    high = np.minimum(high, np.where(active, highest, np.inf).min(axis=-1))
-    return np.where(_jump_kept(asked), low, np.inf), high
+    after = np.where(active, after, 0.0)
+    hands = meeting.before.hand * meeting.after.hand
+    signed = hands * np.maximum(np.where(active, before, 0.0) - cant_before_mm, 0.0)
+    # The deficiency after lies in [signed - room, signed + room] and is at least 0.
+    low = np.where(signed + room >= 0, after - signed - room, np.inf)
+    high = np.where(signed - room > 0, after - signed + room, np.inf)
+    return Window(low, high)
 
 
-def _jump_kept(asked: SharedAsked) -> BoolArray:
-    """Tell where the jump of deficiency is within its limit, shape (m,): cants have no part in it."""
-    meeting = asked.meeting
-    touching = meeting.length_m == 0
-    if not touching.any():
-        return np.ones(len(meeting), dtype=np.bool_)
-    limit = asked.limit("abrupt change of cant deficiency")
-    within = jump_of_deficiency(meeting, asked.speed_kmh) <= limit.value + limit.tolerance
-    return np.asarray((within | ~(meeting.both & touching)).all(axis=-1))
+def allowed_after(asked: SharedAsked, cant_before_mm: FloatArray) -> Window:
+    """Give the interval of cants that a cant of the curve before allows on the curve after, by all rules.
+
+    Parameters
+    ----------
+    asked : SharedAsked
+        m transitions, speeds of shape (m, k), and the tier; tolerances are included.
+    cant_before_mm : ndarray, shape (..., m, 1)
+        Cants of the curve before [mm].
+
+    Returns
+    -------
+    Window
+        Shape (..., m).
+    """
+    hard = hard_window(asked, cant_before_mm)
+    return hard.within(speed_windows(asked, cant_before_mm).over_classes())

@@ -1,0 +1,60 @@
+"""The cants between which curves by themselves keep their limits, tolerance included: a closed form for each.
+
+Apart from the choice because both the curves that normal limits settle and the levels worth weighing on the
+others are found from it.
+"""
+
+from __future__ import annotations
+
+from collections.abc import Iterable
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.planning.line import Line
+from cant.planning.rules import Asked, Terms, curve_terms, hard_terms
+
+FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
+IntArray = npt.NDArray[np.int64]
+
+
+@dataclass
+class Bounds:
+    """Bounds on each curve's cant by itself, arrays of shape (n,).
+
+    Attributes
+    ----------
+    low_mm, high_mm : ndarray
+        Infinite where nothing binds.
+    kept : ndarray of bool
+        The rules in which cant has no part are kept.
+    """
+
+    low_mm: FloatArray
+    high_mm: FloatArray
+    kept: BoolArray
+
+    @classmethod
+    def of(cls, terms: Iterable[Terms], n: int) -> Bounds:
+        """Find the bounds that rules set to n curves."""
+        found = cls(np.full(n, -np.inf), np.full(n, np.inf), np.ones(n, dtype=np.bool_))
+        for term in terms:
+            if term.rule.sense == 0:
+                found.kept &= term.kept(np.zeros((n, 1))).all(axis=-1)
+            elif term.rule.sense < 0:
+                found.low_mm = np.maximum(found.low_mm, term.bound(with_tolerance=True).max(axis=-1))
+            else:
+                found.high_mm = np.minimum(found.high_mm, term.bound(with_tolerance=True).min(axis=-1))
+        return found
+
+
+def normal_bounds(line: Line) -> Bounds:
+    """Give the bounds of every rule at planned speeds and normal values."""
+    return Bounds.of(curve_terms(Asked(line, line.planned_kmh, False)), len(line))
+
+
+def hard_bounds(line: Line, exceptional: bool) -> Bounds:
+    """Give the bounds of what no lower speed can mend, at planned speeds, in one tier."""
+    return Bounds.of(hard_terms(Asked(line, line.planned_kmh, exceptional)), len(line))
