@@ -11,6 +11,7 @@ from functools import lru_cache
 
 from cant.reading.columns import strong_headings, weak_headings
 from cant.reading.text import fold, squeeze
+from cant.reading.words import words_of
 from cant.units import find_unit
 
 MILES_CHAINS, MILES_YARDS, DEGREES_MINUTES = "miles.chains", "miles.yards", "degrees-minutes"
@@ -24,7 +25,7 @@ _NOTATIONS = (
 )
 _CHORD = re.compile(
     r"(?:(?:c|corda|chord|corde|cuerda|sehne|base)\s*[/=]?\s*)?"
-    r"(?<![\w.,])(\d{1,3}(?:[.,]\d+)?)\s*[- ]?(m|ft|feet)\b"
+    r"(?<![\w.,])(\d{1,3}(?:[.,]\d+)?)\s*[- ]?(m|ft|feet|'|′)(?!\w)"
     r"(?:\s*(?:chord|sehne|corde|cuerda|corda|c(?=\W|$)))?",
     re.IGNORECASE,
 )
@@ -154,7 +155,7 @@ def _outside(rest: str, notation: str, chord: float | None) -> tuple[str, str, s
         rest = rest[: match.start()]
     if find_unit("mph") and re.search(r"(?<!\w)(MP|mileage|milepost)(?!\w)", rest, re.IGNORECASE):
         unit = unit or "mi"
-    elif re.search(r"(?<!\w)(km|PK|Kp|TP km)(?!\w)", rest) and not unit:
+    elif re.search(r"(?<!\w)(km|Km|KM|PK|Kp|TP km)(?!\w)", rest) and not unit:
         unit = "km"
     return squeeze(rest), unit, notation, chord
 
@@ -197,58 +198,15 @@ def matches(words: str, table: str = "curves") -> tuple[Match, ...]:
             if meaning not in found or score > found[meaning].score:
                 found[meaning] = Match(meaning, score, language)
     if not found:
-        found = _inside(words, strong) or _shortened(words, strong)
+        found = _inside(words, strong) or _shortened(words, table) or _in_compound(tokens, strong)
+    if "Length" in found and any(name.startswith(("Transition", "Cant ramp")) for name in found):
+        del found["Length"]
     if len(found) > 1:
         found.pop("Curve", None)
     return tuple(sorted(found.values(), key=lambda m: -m.score))
 
 
-_STOP = frozenset(
-    [
-        "of",
-        "the",
-        "de",
-        "da",
-        "do",
-        "des",
-        "der",
-        "du",
-        "del",
-        "della",
-        "di",
-        "la",
-        "le",
-        "el",
-        "av",
-        "on",
-        "at",
-        "in",
-        "the",
-        "a",
-        "w",
-        "od",
-    ]
-) - {"a", "in", "od", "do"}
-_PLACE = frozenset(
-    [
-        "km",
-        "m",
-        "chainage",
-        "station",
-        "sta",
-        "pk",
-        "mp",
-        "mileage",
-        "kp",
-        "progr",
-        "prog",
-        "staniceni",
-        "ch",
-        "pos",
-        "position",
-    ]
-)
-_GENERIC = frozenset(["curve", "curva", "courbe", "bogen", "kurve", "kurva", "luk", "oblouk", "curves"])
+_PLACE, _STOP, _GENERIC = (frozenset(words_of("little_words", kind)) for kind in ("place", "stop", "generic"))
 
 
 def _phrases(tokens: list[str]) -> list[tuple[str, int]]:
@@ -261,17 +219,23 @@ def _phrases(tokens: list[str]) -> list[tuple[str, int]]:
     ]
 
 
-def _shortened(words: str, strong: dict[str, tuple[tuple[str, str], ...]]) -> dict[str, Match]:
+def _in_compound(tokens: list[str], strong: dict[str, tuple[tuple[str, str], ...]]) -> dict[str, Match]:
+    """Find a heading inside a long compound: ``streckengeschwindigkeit``, ``overgangskurvelaengde``."""
+    hits = [
+        key for t in tokens if len(t) >= 9 for key in strong if len(key) >= 6 and " " not in key and key in t
+    ]
+    best = max(hits, key=len, default="")
+    return {m: Match(m, 0.6, lang) for m, lang in strong[best]} if best else {}
+
+
+def _shortened(words: str, table: str) -> dict[str, Match]:
     """Understand a shortened heading where every known heading of one word that starts so agrees."""
     if " " in words or len(words) < 4:
         return {}
-    hits = {
-        m: lang
-        for key, meanings in strong.items()
-        if key.startswith(words) and " " not in key
-        for m, lang in meanings
-    }
-    return {m: Match(m, 0.6, lang) for m, lang in hits.items()} if len(hits) == 1 else {}
+    longer = {key: [m for m, _ in found] for key, found in strong_headings(table).items()}
+    longer |= {key: [*longer.get(key, ()), *names] for key, names in weak_headings(table).items()}
+    hits = {m for key, names in longer.items() if key.startswith(words) and " " not in key for m in names}
+    return {m: Match(m, 0.6) for m in hits} if len(hits) == 1 else {}
 
 
 def _inside(words: str, strong: dict[str, tuple[tuple[str, str], ...]]) -> dict[str, Match]:

@@ -5,6 +5,7 @@ Decides only; values are turned into quantities elsewhere, with what is decided 
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import replace
 
@@ -18,7 +19,7 @@ from cant.reading.neighbours import bracketed_trains, continue_speeds, hand_by_v
 from cant.reading.sheet_column import Column
 from cant.reading.text import fold, is_blank, squeeze
 from cant.reading.trains import known_train, names_only_trains, says_speed, train_words
-from cant.reading.words import lexicon
+from cant.reading.words import lexicon, words_of
 from cant.units import find_unit, unit
 
 PROPOSED, EXISTING = "proposed", "existing"
@@ -95,6 +96,12 @@ def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:
 
 
 def _set_meaning(result: Column, source: BlockColumn) -> None:
+    if _RAMP_RATIO.search(result.heading.text):
+        result.meaning = "Other"
+        return
+    if any(m.score == 1.0 and m.meaning == "Hand" for b in result.heading.brackets for m in matches(fold(b))):
+        result.meaning = "Hand"
+        return
     words = _without_state(result.heading.words)
     best = _best(words, [analyse(part).words for part in reversed(source.parts)])
     states = {lexicon("states").get(t) for t in result.heading.words.split()}
@@ -107,48 +114,50 @@ def _set_meaning(result: Column, source: BlockColumn) -> None:
     elif best is not None and best.score >= 0.4:
         result.meaning = best.meaning
         result.confidence = "certain" if best.score >= 0.6 else "likely"
-    if best is None or best.score < 1.0:
+    if best is None or best.score < 1.0 or result.heading.brackets or result.unit == "in":
         _tell_ends_apart(result, words)
     if proposed and result.meaning:
         result.meaning = "Proposed cant" if result.meaning in ("Cant", "Proposed cant", "Design cant") else ""
         result.note = "a proposal: shown, not taken"
 
 
+_NO_RIVALS = frozenset({"Curve", "Line", "Track", "Number", "Start", "End"})
+
+
 def _rules_speed_out(best: Match, words: str) -> bool:
     """Whether a heading that also says speed means something else: ``cant deficiency at vmax``."""
     first = words.split()[0] if words else ""
-    return best.score >= 0.4 and best.meaning != "Curve" and not says_speed(first) and not known_train(first)
+    rival = best.score >= 0.4 and best.meaning not in _NO_RIVALS
+    return rival and not says_speed(first) and not known_train(first)
 
 
-_PLACES = frozenset(
-    [
-        "km",
-        "chainage",
-        "ch",
-        "station",
-        "sta",
-        "pk",
-        "mp",
-        "mileage",
-        "milepost",
-        "location",
-        "position",
-        "kilometre",
-        "kilometer",
-    ]
-)
+_PLACES = frozenset(words_of("little_words", "place"))
+_RAMP_RATIO = re.compile(r"\b1\s*:\s*[nmx]\b|\b1\s+in\s+[nx]\b|\b1/n\b", re.IGNORECASE)
+_END_OF = {
+    "Transition": ("Transition in", "Transition out"),
+    "Cant ramp": ("Cant ramp in", "Cant ramp out"),
+    "Start": ("Start", "End"),
+    "End": ("Start", "End"),
+}
 
 
 def _tell_ends_apart(result: Column, words: str) -> None:
     """Make transition and chainage those of one end, where a word of the heading says which."""
-    ends = {lexicon("ends")[t] for t in words.split() if t in lexicon("ends")}
+    if result.unit == "in" and result.meaning.startswith(("Transition", "Cant ramp")):
+        result.unit, result.unit_from, words = "", "", words + " in"
+    tokens = [*words.split(), *fold(" ".join(result.heading.brackets)).split()]
+    ends = {lexicon("ends")[t] for t in tokens if t in lexicon("ends")}
     if len(ends) != 1:
         return
-    first = ends == {"in"}
-    if result.meaning == "Transition":
-        result.meaning = "Transition in" if first else "Transition out"
-    elif not result.meaning and _PLACES & set(words.split()):
-        result.meaning, result.confidence = ("Start" if first else "End"), "likely"
+    at = 0 if ends == {"in"} else 1
+    if not result.meaning:
+        rest = " ".join(t for t in words.split() if t not in lexicon("ends"))
+        if any(m.meaning == "Transition" for m in matches(rest)):
+            result.meaning, result.confidence = "Transition", "likely"
+        elif _PLACES & set(words.split()):
+            result.meaning, result.confidence = "Start", "likely"
+    if result.meaning in _END_OF:
+        result.meaning = _END_OF[result.meaning][at]
 
 
 def _without_state(words: str) -> str:

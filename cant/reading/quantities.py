@@ -117,28 +117,30 @@ def _promote_design_cant(draft: Draft) -> None:
 
 
 def _transitions(draft: Draft, evidence: Evidence) -> None:
-    both = draft.column("Transition")
-    for meaning in ("Transition in", "Transition out", "Cant ramp in", "Cant ramp out", "Transition"):
+    for meaning in ("Transition in", "Transition out", "Cant ramp in", "Cant ramp out", *_BOTH):
         item = draft.column(meaning)
         if item is None:
             continue
         numbers = take_column(item.cells, lambda text: take_transition(text, draft.decimal))
         unit = settle_length_unit(draft, item, numbers, evidence)
-        if item is both:
-            _pairs(draft, item, numbers, unit)
+        if meaning in _BOTH:
+            _pairs(draft, item, numbers, unit, _BOTH[meaning])
         else:
             attribute = NUMERIC[meaning][0]
             draft.numbers[attribute] = _single(draft, item, numbers, unit, "m", "length")
         share_units(draft.columns)
 
 
-def _pairs(draft: Draft, item: Column, numbers: Numbers, unit: str) -> None:
+_BOTH = {"Transition": ("transition_in_m", "transition_out_m"), "Cant ramp": ("ramp_in_m", "ramp_out_m")}
+
+
+def _pairs(draft: Draft, item: Column, numbers: Numbers, unit: str, ends: tuple[str, str]) -> None:
     first, second = numbers.converted(unit, "m"), numbers.converted(unit, "m", second=True)
     paired = np.zeros(len(draft), dtype=np.bool_)
     paired[[i for i, state in numbers.states.items() if state == PAIR]] = True
     for attribute, values in (
-        ("transition_in_m", first),
-        ("transition_out_m", np.where(paired, second, first)),
+        (ends[0], first),
+        (ends[1], np.where(paired, second, first)),
     ):
         known = draft.numbers[attribute]
         draft.numbers[attribute] = np.where(np.isnan(known), values, known)

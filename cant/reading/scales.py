@@ -19,7 +19,7 @@ from cant.reading.sheet_column import Column
 from cant.units import ratio, unit
 
 _FAMILIES = (
-    ("Transition in", "Transition out", "Transition", "Cant ramp in", "Cant ramp out"),
+    ("Transition in", "Transition out", "Transition", "Cant ramp in", "Cant ramp out", "Cant ramp"),
     ("Cant", "Design cant", "Proposed cant", "Cant at most", "Cant at least", "Cant at start", "Cant at end"),
     ("Radius", "Radius at start", "Radius at end"),
 )

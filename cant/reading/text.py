@@ -33,6 +33,7 @@ _LETTERS = str.maketrans(
 _NUMBER_SIGN = re.compile(
     r"#|№|\bn\s?[.]?\s?[º°]|\bno\b\.?|\bnum\b\.?|\bnr\b\.?|(?<=\s)č\.|^č\.|(?<=\s)n\.(?=\s|$)|^n\."
 )
+_PK = re.compile(r"\b[pP]\.\s?[kK]\b\.?")
 _SUPERSCRIPT = re.compile("[¹²³⁴⁵⁶⁷⁸⁹⁰*†‡]")
 _WORD = re.compile(r"[^\W_]+", re.UNICODE)
 
@@ -46,6 +47,7 @@ BLANKS = frozenset(
 def fold(text: str) -> str:
     """Give the words of a text, lower case, without accents and punctuation, one blank between them."""
     text = _SUPERSCRIPT.sub("", text)
+    text = _PK.sub("pk", text)
     lowered = _NUMBER_SIGN.sub(" nr ", text.casefold().translate(_LETTERS))
     plain = "".join(c for c in unicodedata.normalize("NFKD", lowered) if not unicodedata.combining(c))
     return " ".join(_WORD.findall(plain))

@@ -141,6 +141,8 @@ def _preferred(item: Column, left: list[str], language: str) -> list[str]:
     if item.unit:
         dimension_fits = [m for m in left if column("curves", m).unit]
         left = dimension_fits or left
+    if set(left) == {"Hand", "Track"}:
+        return ["Hand"]
     first = LANGUAGE_FIRST.get((letter, language))
     if first in left:
         return [first]
@@ -184,6 +186,26 @@ def _window(taker: Callable[[str, str], object], low: float, high: float) -> Cal
         values, share = _numbers(cells, taker, decimal)
         values = values[values > 0]
         return share >= 0.6 and (not len(values) or low <= float(np.median(values)) <= high)
+
+    return rule
+
+
+def _beside(meaning: str) -> Callable[..., bool]:
+    """Make a rule for points of transitions: they lie beside the arc's ends, lengths do not."""
+
+    def rule(cells: Sequence[Value], item: Column, columns: Sequence[Column], decimal: str) -> bool:
+        arc = next((c for c in columns if c.meaning == meaning and c is not item), None)
+        if arc is None:
+            return not _window(take_transition, 3, 400)(cells, item, columns, decimal)
+        points = take_column(item.cells[:_SAMPLE], lambda t: take_location(t, decimal)).values
+        ends = take_column(arc.cells[:_SAMPLE], lambda t: take_location(t, decimal)).values
+        if len(points) != len(ends):
+            return False
+        off = np.abs(points - ends)
+        off = off[~np.isnan(off)]
+        return bool(len(off)) and float(np.median(off)) <= (
+            1.5 if float(np.nanmedian(ends)) < 2000 else 1500.0
+        )
 
     return rule
 
@@ -237,8 +259,8 @@ _RULES: dict[str, Callable[..., bool]] = {
     "Versine": _window(take_length, 0.3, 800),
     "Start": _window(take_location, 0, 1e9),
     "End": _window(take_location, 0, 1e9),
-    "Transition start": _window(take_location, 0, 1e9),
-    "Transition end": _window(take_location, 0, 1e9),
+    "Transition start": _beside("Start"),
+    "Transition end": _beside("End"),
     "Hand": _words("hands"),
     "Element": _words("elements"),
     "Shape": _words("shapes"),
