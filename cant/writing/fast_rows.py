@@ -69,6 +69,23 @@ class FastSheet(Worksheet):  # type: ignore[misc]  # XlsxWriter comes without ty
         self._check_dimensions(row, 0)
         self._check_dimensions(row, max(len(cells) - 1, 0))
 
+    def put_cells(self, row: int, cells: str, width: int) -> None:
+        """Write a row whose cells are XML already.
+
+        Parameters
+        ----------
+        row : int
+            Row from 0, below every row written before.
+        cells : str
+            The cells.
+        width : int
+            Number of columns that they take.
+        """
+        self._write_single_row(row)
+        self.row_data_fh.write(f'<row r="{row + 1}">{cells}</row>')
+        self._check_dimensions(row, 0)
+        self._check_dimensions(row, max(width - 1, 0))
+
     def _starts(self, styles: Sequence[Any]) -> list[tuple[str, str]]:
         """Give the two halves of each column's opening tag, around the row number; made once a table."""
         key = id(styles)

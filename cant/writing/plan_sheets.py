@@ -12,6 +12,8 @@ from typing import TYPE_CHECKING, Any
 from cant.limit_sets import as_table, headers
 from cant.model.plan import STATUSES
 from cant.version import __version__
+from cant.writing.book.calculation import Calculation
+from cant.writing.book.selection import Selection, chosen_curves
 from cant.writing.columns import DECISION, GEOMETRY, PLACE, WORDS, Cell, Column, Record, class_columns
 from cant.writing.document import cautions_of
 from cant.writing.figure_columns import END, FIGURES
@@ -32,6 +34,8 @@ STATUS_WORDS: dict[str, str] = {
 
 FULL_FIGURES = 5000
 """Up to this many curves the sheets of figures show all; of longer lists, those that need a decision."""
+
+CALCULATION_SHEETS = ("Calculation", "Calculation by class", "Calculation of ends")
 
 _DECIDED = ("kept", "change")
 
@@ -67,9 +71,21 @@ class PlanSheets:
         self._figures = self._table("Figures", [*PLACE, *FIGURES])
         self._ends = self._table("Transitions", [*PLACE, *END])
         self._findings = self._plain("Findings", ["Line", "Track", "Curve", "Severity", "Finding", "Clause"])
+        self._chosen = Selection(planned.plan, chosen_curves(planned.plan))
+        self._index = iter(planned.plan.assessed.tolist())
+        calculated = [book.table(name(wanted)) for wanted in CALCULATION_SHEETS]
+        names = [name(wanted) for wanted in ("Inputs", "Limits used", "Traffic used")]
+        self._calculation = Calculation(
+            self._chosen,
+            (calculated[0], calculated[1], calculated[2]),
+            (names[0], names[1], names[2]),
+        )
 
     def add(self, record: Record) -> None:
         """Write what the sheets hold of one curve."""
+        place = self._chosen.place.get(next(self._index))
+        if place is not None:
+            self._chosen.take(place, record)
         self._plan.row([column.cell(record, self._display) for column in self._plan_columns])
         names = [record["line"], record["track"], record["curve"]]
         self._write_findings(names, record["findings"])
@@ -95,10 +111,7 @@ class PlanSheets:
             [None, None, None], [finding.as_json() for finding in self._planned.explanation.plan_findings]
         )
         self._rejected()
-        self._dicts("Limits used", headers(plan.limits), as_table(plan.limits))
-        rows = [row.model_dump() for row in plan.traffic.rows]
-        self._dicts("Traffic used", list(rows[0]) if rows else [], rows)
-        self._settings()
+        self._calculation.write(self._book)
         self._how_read()
 
     def _figure_row(self, place: list[Cell], figures: Record) -> None:

@@ -33,6 +33,15 @@ LINE_HEIGHT = 15.0
 PAGE_WIDTH = 230.0
 """Widest table [characters] that is still legible on one page across, A4 landscape."""
 
+A4, LETTER = 9, 1
+"""Numbers of the paper sizes."""
+
+KINDS: dict[str, dict[str, Any]] = {
+    "input": {"bg_color": "#FFF6D5", "border": 4, "border_color": "#C9B458"},
+    "fixed": {"font_color": "#5A5A5A"},
+}
+"""How cells of a ledger look: what a checker may change stands on a ground of its own."""
+
 SMALLEST_PRINT = 60
 """Scale of wider tables [%], which run over several pages across."""
 
@@ -81,8 +90,9 @@ class TableSheet:
         self.name = name
         self.left_out = 0
         self._sheet.set_landscape()
-        self._sheet.set_paper(9)
-        self._sheet.set_footer("&L&F  &A&RPage &P of &N")
+        self._sheet.set_paper(book.paper)
+        self._sheet.set_margins(left=0.4, right=0.4, top=0.5, bottom=0.6)
+        self._sheet.set_footer(book.footer)
 
     def header(self, headings: Sequence[Heading], keep: int = 0) -> None:
         """Write the header of the table that follows; keep it and the first columns in view and in print."""
@@ -117,16 +127,76 @@ class TableSheet:
         self._next += 1
         return self._next
 
+    def header_rows(
+        self, headings: Sequence[Heading], further: Sequence[Sequence[str]], keep: int, tall: int = 4
+    ) -> None:
+        """Write a header of several rows: the headings, then a row of small text for each of the others.
+
+        Parameters
+        ----------
+        headings : sequence of Heading
+            First row.
+        further : sequence of sequence of str
+            The rows below it.
+        keep : int
+            Columns that stay in view and in print.
+        tall : int
+            Most lines that a header row takes.
+        """
+        self.header(headings, keep)
+        top = self._next - 1
+        for texts in further:
+            lines = [_lines(text, heading.width + 1) for text, heading in zip(texts, headings, strict=True)]
+            self._sheet.set_row(self._next, LINE_HEIGHT * 0.85 * min(max(lines), tall))
+            for column, text in enumerate(texts):
+                self._sheet.write_string(self._next, column, text, self._book.small_head)
+            self._next += 1
+        self._sheet.freeze_panes(self._next, keep)
+        self._sheet.repeat_rows(top, self._next - 1)
+
+    def raw_row(self, number: int, cells: str, width: int) -> None:
+        """Write a row of cells that are XML already.
+
+        Parameters
+        ----------
+        number : int
+            Row from 1, below every row written before.
+        cells : str
+            The cells.
+        width : int
+            Number of columns that they take.
+        """
+        self._sheet.put_cells(number - 1, cells, width)
+        self._next = number
+
+    def cell_style(self, number_format: str | None, kind: str, width: float) -> int:
+        """Give the index of a cell format: of a number or a text, of a kind (input, formula, fixed)."""
+        return int(self._book.styled(number_format, kind, width)._get_xf_index())
+
+    @property
+    def next_row(self) -> int:
+        """Row from 1 that is written next."""
+        return self._next + 1
+
+    @property
+    def raw(self) -> Any:
+        """XlsxWriter's worksheet, for charts, breaks and conditional formats."""
+        return self._sheet
+
+    def skip(self, rows: int = 1) -> None:
+        """Count rows that were written through :attr:`raw`, or leave them blank."""
+        self._next += rows
+
     def line(self, *cells: Cell, bold: bool = False) -> None:
         """Write a row outside any table."""
         for column, value in enumerate(cells):
             self._cell(column, value, self._book.bold if bold else self._book.plain)
         self._next += 1
 
-    def paragraph(self, text: str, columns: int) -> None:
-        """Write a text over several columns, its row as high as it needs to be."""
+    def paragraph(self, text: str, columns: int, width: float = 110.0) -> None:
+        """Write a text over several columns of a width together, its row as high as it needs to be."""
         self._sheet.fit_to_pages(1, 0)
-        self._sheet.set_row(self._next, LINE_HEIGHT * _lines(text, 110))
+        self._sheet.set_row(self._next, LINE_HEIGHT * _lines(text, width))
         self._sheet.merge_range(self._next, 0, self._next, columns - 1, text[:MAX_TEXT], self._book.wrapped)
         self._next += 1
 
@@ -153,8 +223,10 @@ class NewSheets:
         The xlsx, once closed.
     """
 
-    def __init__(self) -> None:
+    def __init__(self, footer: str = "", paper: int = A4) -> None:
         self._stream = io.BytesIO()
+        self.footer = footer or "&L&F  &A&RPage &P of &N"
+        self.paper = paper
         options = {
             "constant_memory": True,
             "strings_to_formulas": False,
@@ -169,7 +241,13 @@ class NewSheets:
         self.head = self.workbook.add_format(
             {"bold": True, "text_wrap": True, "valign": "top", "bottom": 1, "bg_color": "#DDE6E4"}
         )
+        self.small_head = self.workbook.add_format(
+            {"text_wrap": True, "valign": "top", "font_size": 8, "bottom": 1, "bg_color": "#EEF3F2"}
+        )
+        self.title = self.workbook.add_format({"bold": True, "font_size": 14, "valign": "top"})
+        self.box = self.workbook.add_format({"border": 1, "valign": "top", "text_wrap": True})
         self._numbers: dict[str, Any] = {}
+        self._styled: dict[tuple[str | None, str, bool], Any] = {}
         self.data = b""
 
     def cell_format(self, heading: Heading) -> Any:
@@ -180,6 +258,18 @@ class NewSheets:
         if code not in self._numbers:
             self._numbers[code] = self.workbook.add_format({"num_format": code, "valign": "top"})
         return self._numbers[code]
+
+    def styled(self, number_format: str | None, kind: str, width: float = 0.0) -> Any:
+        """Give the format of a cell of a kind: an input has a ground, what the program fixed is grey."""
+        key = (number_format, kind, number_format is None and width >= LONG_TEXT)
+        if key not in self._styled:
+            look: dict[str, Any] = {"valign": "top", **KINDS.get(kind, {})}
+            if number_format is not None:
+                look["num_format"] = number_format
+            if key[2]:
+                look["text_wrap"] = True
+            self._styled[key] = self.workbook.add_format(look)
+        return self._styled[key]
 
     def table(self, name: str) -> TableSheet:
         """Add a sheet."""

@@ -1,0 +1,1 @@
+"""The sheets of the signed workbook: each module makes one of them, or what several of them share."""

@@ -1,0 +1,436 @@
+"""The sheet "Calculation of ends": gradient, rates and lengths over every transition, for each class.
+
+A transition to a straight has a row for each class of its curve; a shared one stands once, at the curve of the
+smaller chainage, with both curves' cells in its formulas.
+"""
+
+from __future__ import annotations
+
+from dataclasses import dataclass
+
+import numpy as np
+import numpy.typing as npt
+
+from cant.planning.limit_table import LimitAt
+from cant.planning.neighbours import AFTER, BEFORE
+from cant.quantities.catalogue import CATALOGUE
+from cant.quantities.lengths import length_for_gradient, length_for_rate
+from cant.units import KMH_PER_MS
+from cant.writing.book.frame import Basis, Builder, FloatArray, share, share_text
+from cant.writing.book.ledger import BoolArray, Ledger, token
+from cant.writing.book.limits_sheet import Asking, kind_of
+from cant.writing.book.selection import IntArray, Selection
+
+_GRADIENT, _CANT_RATE = "cant gradient", "rate of change of cant"
+_DEFICIENCY_RATE, _ABRUPT = "rate of change of cant deficiency", "abrupt change of cant deficiency"
+
+
+@dataclass
+class EndRows:
+    """The rows: one a class over one end of a curve.
+
+    Attributes
+    ----------
+    entry, other : ndarray of int
+        Entry of the selection, and that of the same class on the curve at the other end of a shared
+        transition, -1 to a straight.
+    end : ndarray of int
+        BEFORE or AFTER.
+    length_m, ramp_m, factor : ndarray
+        Transition, cant ramp (nan: none known), and peak over mean of the shape.
+    """
+
+    entry: IntArray
+    other: IntArray
+    end: IntArray
+    length_m: FloatArray
+    ramp_m: FloatArray
+    factor: FloatArray
+
+    @classmethod
+    def of(cls, chosen: Selection) -> EndRows:
+        """Find them."""
+        line, pairs = chosen.line, chosen.plan.outcome.pairs
+        parts: list[tuple[npt.ArrayLike, ...]] = []
+        entries = np.arange(len(chosen.pos))
+        for end in (BEFORE, AFTER):
+            length, ramp = (array[end][chosen.pos, 0] for array in (line.transition_m, line.ramp_m))
+            at = np.flatnonzero(~np.isnan(length) | ~np.isnan(ramp))
+            factor = line.factor[chosen.pos[at], 0]
+            none = np.full(len(at), -1)
+            parts.append((entries[at], none, np.full(len(at), end), length[at], ramp[at], factor))
+        where = {(int(p), int(k)): j for j, (p, k) in enumerate(zip(chosen.pos, chosen.column, strict=True))}
+        for m in range(len(pairs)):
+            first, second = (chosen.place.get(int(i), -1) for i in (pairs.first[m], pairs.second[m]))
+            if first < 0 or second < 0:
+                continue
+            for j in range(int(chosen.start[first]), int(chosen.start[first + 1])):
+                other = where.get((second, int(chosen.column[j])))
+                if other is not None:
+                    row = (j, other, AFTER, pairs.length_m[m], pairs.ramp_m[m], pairs.factor[m])
+                    parts.append(tuple([value] for value in row))
+        columns = [np.concatenate([np.asarray(part[i]) for part in parts]) for i in range(6)]
+        order = np.lexsort((columns[2], columns[0]))
+        entry, other, end, length, ramp, factor = (column[order] for column in columns)
+        return cls(entry.astype(np.int64), other.astype(np.int64), end.astype(np.int64), length, ramp, factor)
+
+    @property
+    def shared(self) -> BoolArray:
+        """Which rows are shared transitions."""
+        return np.asarray(self.other >= 0)
+
+    def __len__(self) -> int:
+        return len(self.entry)
+
+
+class EndCalculation:
+    """Builds the columns.
+
+    Parameters
+    ----------
+    basis : Basis
+    ledger : Ledger
+    rows : EndRows
+    curves, classes : Ledger
+        The other two sheets.
+    """
+
+    def __init__(
+        self, basis: Basis, ledger: Ledger, rows: EndRows, curves: Ledger, classes: Ledger
+    ) -> None:
+        self._basis = basis
+        self._rows = rows
+        self._chosen = basis.chosen
+        self._ledger = ledger
+        self._build = Builder(basis, ledger)
+        pos = self._chosen.pos
+        self._first = pos[rows.entry]
+        # Where there is no other curve the reference points to the curve itself and is not used.
+        self._other_entry = np.where(rows.shared, rows.other, rows.entry)
+        self._second = pos[self._other_entry]
+        for side, places, entries in (("1", self._first, rows.entry), ("2", self._second, self._other_entry)):
+            of_curve = (curves.first_row + places).tolist()
+            of_class = (classes.first_row + entries).tolist()
+            for key in ("R", "D", "h", "situation", "tier"):
+                ledger.refer(f"{key} {side}", curves.address(key), of_curve)
+            for key in ("V run", "V planned", "category"):
+                ledger.refer(f"{key} {side}", classes.address(key), of_class)
+
+    def make(self) -> None:
+        """Add every column."""
+        self._names()
+        self._motion()
+        self._changes()
+        self._limited()
+        self._at_planned_speed()
+
+    def _names(self) -> None:
+        chosen, rows, build = self._chosen, self._rows, self._build
+        curves, names = chosen.plan.curves, chosen.plan.traffic.class_names
+        turned = chosen.plan.outcome.neighbourhood.descending
+        at = chosen.curves[self._first].tolist()
+        for key, heading, column, width in (
+            ("line", "Line", curves.line, 16.0),
+            ("track", "Track", curves.track, 7.0),
+            ("curve", "Curve", curves.curve, 9.0),
+        ):
+            build.words(key, heading, [column[i] for i in at], width)
+        sides = [
+            "in" if (end == BEFORE) != bool(turned[i]) else "out"
+            for end, i in zip(rows.end.tolist(), at, strict=True)
+        ]
+        build.words("end", "End", sides, 6.0)
+        others = chosen.curves[self._second].tolist()
+        build.words(
+            "other",
+            "Shared with",
+            [curves.curve[i] if s else None for i, s in zip(others, rows.shared.tolist(), strict=True)],
+            9.0,
+        )
+        classes = [names[k] for k in chosen.column[rows.entry].tolist()]
+        build.words("class", "Class", classes, 14.0)
+        build.number("k", "Peak over mean of the shape", "k", rows.factor, "number", "shape")
+        build.number("L", "Transition", "L", rows.length_m, "length")
+        build.number("Lr", "Cant ramp", "L", rows.ramp_m, "length", "ramp as stated, else transition or room")
+
+    def _both(self, key: str) -> list[tuple[str, BoolArray | None]]:
+        shared = self._rows.shared
+        one, two = token(f"{key} 1"), token(f"{key} 2")
+        return [(one, ~shared), (f'IF(COUNT({one},{two})=2,MIN({one},{two}),"")', shared)]
+
+    def _motion(self) -> None:
+        chosen, rows, build = self._chosen, self._rows, self._build
+        entry, other = rows.entry, self._other_entry
+        self._run = np.minimum(chosen.run_kmh[entry], chosen.run_kmh[other])
+        self._planned = np.minimum(chosen.planned_kmh[entry], chosen.planned_kmh[other])
+        words = "by class; shared: the lower of the two"
+        build.computed("V", "Run speed", "V", self._run, "speed exact", self._both("V run"), words)
+        build.computed("Vp", "Planned speed", "V", self._planned, "speed exact", self._both("V planned"), words)
+
+    def _balance(self, side: str, speed: str) -> str:
+        basis = self._basis
+        text = CATALOGUE["equilibrium_cant"].text(
+            C=basis.C, V=basis.ref(speed, "speed exact"), R=basis.ref(f"R {side}", "radius")
+        )
+        return basis.inputs.shown(text, "cant exact")
+
+    def _deficiency_change(self, speed: str) -> list[tuple[str, BoolArray | None]]:
+        parts = [f"MAX({self._balance(side, speed)}-{token(f'D {side}')},0)" for side in "12"]
+        shared = self._rows.shared
+        there = f"ISNUMBER({token(speed)})"
+        signed = f"ABS({token('h 1')}*{parts[0]}-{token('h 2')}*{parts[1]})"
+        return [(f'IF({there},{parts[0]},"")', ~shared), (f'IF({there},{signed},"")', shared)]
+
+    def _changes(self) -> None:
+        chosen, rows, build = self._chosen, self._rows, self._build
+        shared = rows.shared
+        line = chosen.line
+        hands = [line.hand[part, 0].astype(np.float64) for part in (self._first, self._second)]
+        cants = [chosen.cant_mm[part] for part in (self._first, self._second)]
+        self._cant_change = np.where(
+            shared, np.abs(hands[0] * cants[0] - hands[1] * cants[1]), np.abs(cants[0])
+        )
+        signed = f"ABS({token('h 1')}*{token('D 1')}-{token('h 2')}*{token('D 2')})"
+        texts: list[tuple[str, BoolArray | None]] = [(f"ABS({token('D 1')})", ~shared), (signed, shared)]
+        build.computed(
+            "dD", "Change of cant", "dD", self._cant_change, "cant exact", texts, "signed: left +, right -"
+        )
+        changes, jumps = [], []
+        for speed in (self._run, self._planned):
+            balances = [chosen.balance(speed, part) for part in (rows.entry, self._other_entry)]
+            parts = [np.maximum(b - d, 0.0) for b, d in zip(balances, cants, strict=True)]
+            changes.append(np.where(shared, np.abs(hands[0] * parts[0] - hands[1] * parts[1]), parts[0]))
+            jumps.append(
+                np.where(shared, np.abs(hands[0] * balances[0] - hands[1] * balances[1]), balances[0])
+            )
+        self._run_change, self._planned_change = changes
+        self._jump = np.where(rows.length_m == 0, jumps[0], np.nan)
+        build.computed(
+            "dI",
+            "Change of cant deficiency",
+            "dI",
+            self._run_change,
+            "cant exact",
+            self._deficiency_change("V"),
+            "at run speed; excess counts as 0",
+        )
+        build.computed(
+            "dIp",
+            "Change of cant deficiency, planned speed",
+            "dI",
+            self._planned_change,
+            "cant exact",
+            self._deficiency_change("Vp"),
+            "excess counts as 0",
+        )
+        one, two = (self._balance(side, "V") for side in "12")
+        there = f"AND({token('L')}=0,ISNUMBER({token('L')}),ISNUMBER({token('V')}))"
+        jump = f"ABS({token('h 1')}*{one}-{token('h 2')}*{two})"
+        build.computed(
+            "jump",
+            "Abrupt change of cant deficiency",
+            "dI",
+            self._jump,
+            "cant exact",
+            [(f'IF({there},{one},"")', ~shared), (f'IF({there},{jump},"")', shared)],
+            "where there is no transition",
+        )
+
+    def _asked(
+        self, quantity: str, speed: FloatArray, tier: bool
+    ) -> LimitAt:
+        """Ask the limit of each row: over a shared transition the stricter of the two curves'."""
+        chosen = self._chosen
+        ask = chosen.tier_limit if tier else (lambda q, v, at: chosen.limit(q, v, False, at))
+        one, two = (ask(quantity, speed, at) for at in (self._rows.entry, self._other_entry))
+        first = one.value <= two.value
+        pick = lambda a, b: np.where(first, a, b)  # noqa: E731
+        return LimitAt(
+            pick(one.value, two.value), pick(one.tolerance, two.tolerance), pick(one.row, two.row), one.gap
+        )
+
+    def _asking(self, side: str, speed: str, tier: bool) -> Asking:
+        return Asking(
+            token(speed),
+            token(f"R {side}"),
+            token(f"category {side}"),
+            token(f"situation {side}"),
+            token(f"tier {side}") if tier else "1",
+        )
+
+    def _limit_texts(self, quantity: str, speed: str, tier: bool) -> list[tuple[str, BoolArray | None]]:
+        limits, shared = self._basis.limits, self._rows.shared
+        one, two = (limits.value(quantity, self._asking(side, speed, tier)) for side in "12")
+        if not limits.has(quantity):
+            return [('"none"', None)]
+        both = f'IF(COUNT({one},{two})=0,"none",MIN({one},{two}))'
+        return [(one, ~shared), (both, shared)]
+
+    def _limit(self, quantity: str, key: str, speed: str, tier: bool) -> FloatArray:
+        values = self._asked(quantity, self._planned if speed == "Vp" else self._run, tier).value
+        words = "at planned speed, in the tier of the curve" if tier else "normal, at run speed"
+        self._build.computed(
+            key,
+            f"Limit of {quantity}, {words}",
+            "lim",
+            self._build.shown(values, kind_of(quantity)),
+            kind_of(quantity),
+            self._limit_texts(quantity, speed, tier),
+            "Limits used: strictest row that holds",
+        )
+        return values
+
+    def _limited(self) -> None:
+        """Add what is limited, each with its limit and the share used."""
+        rows, basis, build = self._rows, self._basis, self._build
+        with np.errstate(divide="ignore", invalid="ignore"):
+            gradient = np.where(rows.ramp_m > 0, rows.factor * self._cant_change / rows.ramp_m, np.nan)
+            cant_rate = gradient * self._run / KMH_PER_MS
+            rate = rows.factor * self._run_change * self._run / (KMH_PER_MS * rows.length_m)
+            rate = np.where(rows.length_m > 0, rate, np.nan)
+        ramp, length = (f"N({token(key)})>0" for key in ("Lr", "L"))
+        there = f"ISNUMBER({token('V')})"
+        k, speed = token("k"), basis.ref("V", "speed exact")
+        dD, dI = (basis.ref(key, "cant exact") for key in ("dD", "dI"))  # noqa: N806
+        build.catalogued(
+            "g", "cant_gradient", gradient, "gradient", ramp, k=k, dD=dD, L=basis.ref("Lr", "length")
+        )
+        self._share(_GRADIENT, "g", gradient)
+        build.catalogued(
+            "rD",
+            "rate_of_change_of_cant",
+            cant_rate,
+            "rate",
+            f"AND({ramp},{there})",
+            k=k,
+            dD=dD,
+            V=speed,
+            L=basis.ref("Lr", "length"),
+        )
+        self._share(_CANT_RATE, "rD", cant_rate)
+        build.catalogued(
+            "rI",
+            "rate_of_change_of_deficiency",
+            rate,
+            "rate",
+            f"AND({length},{there})",
+            k=k,
+            dI=dI,
+            V=speed,
+            L=basis.ref("L", "length"),
+        )
+        self._share(_DEFICIENCY_RATE, "rI", rate)
+        self._share(_ABRUPT, "jump", self._jump)
+
+    def _share(self, quantity: str, key: str, value: FloatArray) -> None:
+        limit = self._limit(quantity, f"{key} lim", "V", False)
+        used = share(value, limit) * 100
+        text = f'IFERROR(({share_text(token(key), token(f"{key} lim"))})*100,"")'
+        self._build.computed(f"u {key}", "Share of this limit", "u", used, "", text, "")
+        self._ledger.columns[-1].number_format = '0.0"%"'
+
+    def _at_planned_speed(self) -> None:
+        """Add the bounds to a straight, and the lengths needed."""
+        gradient = self._limit(_GRADIENT, "g limp", "Vp", True)
+        cant_rate = self._limit(_CANT_RATE, "rD limp", "Vp", True)
+        deficiency_rate = self._limit(_DEFICIENCY_RATE, "rI limp", "Vp", True)
+        self._bounds(gradient, cant_rate, deficiency_rate)
+        self._needed()
+
+    def _bounds(self, gradient: FloatArray, cant_rate: FloatArray, deficiency_rate: FloatArray) -> None:
+        rows, basis, build = self._rows, self._basis, self._build
+        alone, planned = ~rows.shared, self._planned
+        k, speed = token("k"), basis.ref("Vp", "speed exact")
+        ramp, length = basis.ref("Lr", "length"), basis.ref("L", "length")
+        inputs = basis.inputs
+        with np.errstate(divide="ignore", invalid="ignore"):
+            by_gradient = gradient * rows.ramp_m / rows.factor
+            by_rate = KMH_PER_MS * cant_rate * rows.ramp_m / (rows.factor * planned)
+            room = KMH_PER_MS * deficiency_rate * rows.length_m / (rows.factor * planned)
+        balance = self._chosen.balance(planned, rows.entry)
+        ramped, long = rows.ramp_m > 0, rows.length_m > 0
+        text = inputs.shown(
+            CATALOGUE["most_cant_for_gradient"].text(
+                grad_lim=inputs.canonical(token("g limp"), "gradient"), L=ramp, k=k
+            ),
+            "cant exact",
+        )
+        usable = f"AND(N({token('Lr')})>0,ISNUMBER({token('g limp')}))"
+        build.computed(
+            "up g",
+            "Most cant by the gradient",
+            "D_high",
+            _where(alone & ramped & np.isfinite(gradient), by_gradient),
+            "cant exact",
+            [(f'IF({usable},{text},"")', alone)],
+            "to a straight",
+        )
+        for key, limit, span, where, values, heading in (
+            ("rD limp", cant_rate, ("Lr", ramp), ramped, by_rate, "Most cant by its rate of change"),
+            ("rI limp", deficiency_rate, ("L", length), long, balance - room, "Least cant by rate of deficiency"),
+        ):
+            text = inputs.shown(
+                CATALOGUE["most_change_for_rate"].text(
+                    r_lim=inputs.canonical(token(key), "rate"), L=span[1], k=k, V=speed
+                ),
+                "cant exact",
+            )
+            usable = f"AND(N({token(span[0])})>0,ISNUMBER({token(key)}),{token('Vp')}>0)"
+            if key == "rI limp":
+                text = f"{self._balance('1', 'Vp')}-{text}"
+            build.computed(
+                "up r" if key == "rD limp" else "low r",
+                heading,
+                "D_high" if key == "rD limp" else "D_low",
+                _where(alone & where & np.isfinite(limit) & (planned > 0), values),
+                "cant exact",
+                [(f'IF({usable},{text},"")', alone)],
+                "to a straight",
+            )
+
+    def _needed(self) -> None:
+        """Add the lengths that the normal limits need at planned speeds."""
+        rows, basis, build = self._rows, self._basis, self._build
+        normal = ~(self._chosen.tier[self._first] | self._chosen.tier[self._second])
+        inputs = basis.inputs
+        for key, heading, quantity, change, words in (
+            ("needed g", "Ramp needed by the gradient", _GRADIENT, "dD", "gradient"),
+            ("needed r", "Ramp needed by the rate of cant", _CANT_RATE, "dD", "rate"),
+            ("needed I", "Transition needed by the rate of deficiency", _DEFICIENCY_RATE, "dIp", "rate"),
+        ):
+            limit = self._asked(quantity, self._planned, False).value
+            size = self._cant_change if change == "dD" else self._planned_change
+            reference = inputs.canonical(token(change), "cant exact")
+            if words == "gradient":
+                values = np.asarray(length_for_gradient(size, limit, rows.factor))
+            else:
+                values = np.asarray(length_for_rate(size, self._planned, limit, rows.factor))
+            cell = {"needed g": "g limp", "needed r": "rD limp", "needed I": "rI limp"}[key]
+            texts: list[tuple[str, BoolArray | None]] = []
+            for limit_text, limit_kind_where in self._needed_limits(quantity, cell, normal):
+                used = inputs.canonical(limit_text, words)
+                if words == "gradient":
+                    text = CATALOGUE["length_for_gradient"].text(k=token("k"), dD=reference, grad_lim=used)
+                else:
+                    text = CATALOGUE["length_for_rate"].text(
+                        k=token("k"), dD=reference, r_lim=used, V=basis.ref("Vp", "speed exact")
+                    )
+                texts.append((f'IFERROR({inputs.shown(text, "length")},"")', limit_kind_where))
+            known = np.isfinite(limit) & np.isfinite(values)
+            build.computed(
+                key, heading, "L", _where(known, values), "length", texts, "normal limits, planned speed"
+            )
+
+    def _needed_limits(
+        self, quantity: str, cell: str, normal: BoolArray
+    ) -> list[tuple[str, BoolArray | None]]:
+        """Give the normal limit as a cell where it stands in one, else as its own lookup."""
+        texts: list[tuple[str, BoolArray | None]] = [(token(cell), normal)]
+        for text, where in self._limit_texts(quantity, "Vp", False):
+            here = ~normal if where is None else ~normal & where
+            texts.append((f"({text})", here))
+        return texts
+
+
+def _where(condition: BoolArray, values: FloatArray) -> FloatArray:
+    return np.where(condition, values, np.nan)
