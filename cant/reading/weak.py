@@ -112,13 +112,13 @@ def _usable(item: Column, meaning: str, decimal: str) -> Column:
     kind = column("curves", meaning).kind
     if kind in _LEXICONS:
         known = lexicon(_LEXICONS[kind])
-        words = [cell for cell in item.cells[:_SAMPLE] if (fold(shown(cell)) or shown(cell).strip()) in known]
-        return replace(item, cells=words) if words else item
+        words = [c if (fold(shown(c)) or shown(c).strip()) in known else None for c in item.cells[:_SAMPLE]]
+        return replace(item, cells=words) if any(words) else item
     taker = _TAKERS.get(kind)
     if taker is None:
         return item
     found = take_column(item.cells[:_SAMPLE], lambda text: taker(text, decimal))
-    kept = [cell for i, cell in enumerate(item.cells[:_SAMPLE]) if i not in found.problems]
+    kept = [None if i in found.problems else cell for i, cell in enumerate(item.cells[:_SAMPLE])]
     return replace(item, cells=kept)
 
 
@@ -199,8 +199,6 @@ def _beside(meaning: str) -> Callable[..., bool]:
             return not _window(take_transition, 3, 400)(cells, item, columns, decimal)
         points = take_column(item.cells[:_SAMPLE], lambda t: take_location(t, decimal)).values
         ends = take_column(arc.cells[:_SAMPLE], lambda t: take_location(t, decimal)).values
-        if len(points) != len(ends):
-            return False
         off = np.abs(points - ends)
         off = off[~np.isnan(off)]
         return bool(len(off)) and float(np.median(off)) <= (
