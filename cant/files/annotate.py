@@ -118,11 +118,12 @@ def annotate(
         The file cannot be read, cannot be annotated (:func:`can_annotate`), or has no such sheet.
     """
     kind = recognise(original, file)
-    reason = _REASONS[kind] if kind is not Kind.PACKAGE else _reason_against(Package(original, file))
-    if reason is not None:
+    package = Package(original, file) if kind is Kind.PACKAGE else None
+    reason = _REASONS[kind] if package is None else _reason_against(package)
+    if package is None or reason is not None:
         message = f"cannot be annotated in place because {reason}; write its rows to a new workbook"
         raise FileError(message, Place(file))
-    return _Annotation(Package(original, file)).run(additions, new_sheets)
+    return _Annotation(package).run(additions, new_sheets)
 
 
 def free_sheet_name(workbook: Workbook, wanted: str) -> str:

@@ -16,6 +16,7 @@ MAX_COLUMNS = 500
 MAX_CELLS = 6_000_000
 MAX_BYTES = 100_000_000
 MAX_TEXT = 1_000_000
+csv.field_size_limit(MAX_TEXT)  # once and for all: setting it for each file would not be safe among threads
 _SEPARATORS = {";": "semicolon", "\t": "tab", ",": "comma", "|": "bar"}
 _NUMBER = re.compile(r"-?(?:0|[1-9][0-9]{0,14})(?:\.[0-9]{1,15})?\Z")
 _DECIMAL_COMMA = re.compile(r"-?[0-9]{1,15},[0-9]+\Z")
@@ -152,7 +153,6 @@ def _rows(text: str, separator: str, place: Place) -> list[list[str]]:
     left = MAX_CELLS - text.count("\n")
     if left < 0:
         _too_large(place)
-    limit = csv.field_size_limit(MAX_TEXT)
     try:
         for number, row in enumerate(csv.reader(_lines(text), delimiter=separator), start=1):
             left -= len(row)
@@ -167,8 +167,6 @@ def _rows(text: str, separator: str, place: Place) -> list[list[str]]:
             f"has a cell of more than {MAX_TEXT} characters; look for a quotation mark that is never closed"
         )
         raise FileError(message, place.at(len(rows) + 1)) from None
-    finally:
-        csv.field_size_limit(limit)
     return rows
 
 

@@ -47,6 +47,7 @@ _MARKUP = (
     (b"<html", "a web page"),
     (b"<?xml", "an XML document"),
     (b"<svg", "a picture (SVG)"),
+    (b"mime-version:", "a web archive"),
 )
 _TEXT_ODS = b"application/vnd.oasis.opendocument.spreadsheet"
 

@@ -106,6 +106,8 @@ def main() -> None:
         answer = read(sys.stdin.buffer.read())
     except MemoryError:
         answer = {"problem": "large"}
+    except ImportError:
+        answer = {"problem": "missing"}
     except Exception:  # whatever a forged file provokes: the parent says that it is damaged
         answer = {"problem": "damaged"}
     sys.stdout.write(json.dumps(answer))

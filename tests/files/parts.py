@@ -13,6 +13,8 @@ import xlsxwriter
 from lxml import etree
 
 from cant.files.additions import AddedColumn, OutCell, SheetAddition
+from cant.files.package import resolve
+from cant.files.sheet_edit import _ORDER
 
 
 def parts_of(data: bytes) -> dict[str, bytes]:
@@ -54,6 +56,39 @@ def _elements(data: bytes) -> Counter[str]:
         path = "/".join(etree.QName(above).localname for above in one.iterancestors())
         found[f"{path}|{name}|{attributes}|{(one.text or '').strip()}"] += 1
     return found
+
+
+def check_package(data: bytes) -> None:
+    """Check what a strict reader asks of a package: types, targets, unique names, order in a sheet."""
+    parts = parts_of(data)
+    types = etree.fromstring(parts["[Content_Types].xml"])
+    named = [one.get("PartName") for one in types if one.get("PartName")]
+    assert len(named) == len(set(named))
+    assert {name.lstrip("/").lower() for name in named} <= {name.lower() for name in parts}
+    extensions = {one.get("Extension").lower() for one in types if one.get("Extension")}
+    for name, content in parts.items():
+        assert "/" + name in named or name.rpartition(".")[2].lower() in extensions or name.startswith("[")
+        if name.endswith(".rels"):
+            _check_relations(name, content, parts)
+        if name.startswith("xl/worksheets/sheet"):
+            children = [etree.QName(one).localname for one in etree.fromstring(content)]
+            known = [_ORDER.index(one) for one in children if one in _ORDER]
+            assert known == sorted(known), children
+    book = etree.fromstring(parts["xl/workbook.xml"])
+    for path, key in (("sheets", "name"), ("sheets", "sheetId")):
+        found = [one.get(key) for one in book.find(f"{{*}}{path}")]
+        assert len(found) == len(set(found))
+
+
+def _check_relations(name: str, content: bytes, parts: dict[str, bytes]) -> None:
+    relations = list(etree.fromstring(content))
+    assert len({one.get("Id") for one in relations}) == len(relations)
+    lower = {part.lower() for part in parts}
+    for one in relations:
+        if one.get("TargetMode") != "External":
+            source = name.replace("_rels/", "").removesuffix(".rels")
+            assert resolve(source, one.get("Target")).lower() in lower
+            assert not one.get("Target").startswith("//")
 
 
 def simple_workbook(rows: Sequence[Sequence[object]], name: str = "Curves") -> bytes:

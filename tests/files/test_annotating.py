@@ -10,7 +10,15 @@ import pytest
 import python_calamine
 import xlsxwriter
 from lxml import etree
-from parts import changed_parts, lost_elements, office_converted, office_pdf, one_column, parts_of
+from parts import (
+    changed_parts,
+    check_package,
+    lost_elements,
+    office_converted,
+    office_pdf,
+    one_column,
+    parts_of,
+)
 from rich import ROWS, rich_workbook, with_macros
 
 from cant.files.additions import AddedColumn, CellMark, ConditionalFill, OutCell, SheetAddition
@@ -100,6 +108,13 @@ def additions():
 @pytest.fixture(scope="module")
 def annotated(original, additions, new_sheets):
     return annotate(original, additions, new_sheets, "line.xlsx")
+
+
+def test_package_holds_together(original, annotated, additions, new_sheets):
+    check_package(annotated.data)
+    check_package(annotate(annotated.data, additions, new_sheets).data)
+    check_package(annotate(annotated.data, []).data)
+    check_package(annotate(with_macros(original), additions, new_sheets).data)
 
 
 def test_all_other_parts_are_byte_identical(original, annotated):

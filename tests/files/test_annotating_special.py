@@ -7,7 +7,7 @@ import warnings
 import openpyxl
 import pytest
 from hostile import GOOD_ROWS, HEAD, MAIN, OFFICE, book, book_parts, sheet
-from parts import changed_parts, one_column, parts_of, simple_workbook, zipped
+from parts import changed_parts, check_package, one_column, parts_of, simple_workbook, zipped
 
 from cant.errors import FileError
 from cant.files.additions import AddedColumn, CellMark, OutCell, SheetAddition
@@ -28,6 +28,7 @@ def sheet_of(data):
 
 
 def values(data, name="Curves"):
+    check_package(data)
     with warnings.catch_warnings():
         warnings.simplefilter("ignore")
         page = openpyxl.load_workbook(io.BytesIO(data))[name]
