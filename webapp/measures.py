@@ -9,6 +9,7 @@ import math
 from dataclasses import dataclass
 from typing import Literal
 
+from cant.explaining import Words
 from cant.model.display import Display
 
 System = Literal["metric", "us"]
@@ -28,6 +29,11 @@ class Measures:
     def display(self) -> Display:
         """How each kind of number is shown."""
         return Display(self.system)
+
+    @property
+    def words(self) -> Words:
+        """How the plan's own sentences say a number."""
+        return Words(self.display)
 
     def unit(self, kind: str) -> str:
         """Give the unit in which a kind of number is shown."""
@@ -51,6 +57,8 @@ class Measures:
 
     def with_unit(self, kind: str, value: float | None) -> str:
         """Give a canonical value as text with its unit, which a line break never parts from it."""
+        if kind == "radius" and value is not None and math.isfinite(value):
+            return self.words.radius(value).replace(" ", NO_BREAK, 1)
         text = self.show(kind, value)
         if text in (ABSENT, "not limited") or not self.unit(kind):
             return text

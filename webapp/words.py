@@ -108,10 +108,8 @@ def kind_of(key: str) -> str | None:
 
 def heading(key: str) -> str:
     """Give a key of the JSON as words, its unit left out."""
-    if key.endswith(SECONDS):
-        return sentence(key.removesuffix(SECONDS).replace("_", " "))
-    bare = next((key.removesuffix(ending) for ending, _ in UNIT_ENDINGS if key.endswith(ending)), key)
-    return sentence(bare.replace("_", " "))
+    endings = [ending for ending, _ in UNIT_ENDINGS if key.endswith(ending)] or [SECONDS]
+    return sentence(key.removesuffix(endings[0]).replace("_", " "))
 
 
 def value(key: str, found: Any, measures: Measures, *, unit: bool = True) -> str:

@@ -2,5 +2,6 @@
 
 from cant.explaining.decisions import Decision, Inputs, apply
 from cant.explaining.explanation import Explanation, explain
+from cant.explaining.wording import Words
 
-__all__ = ["Decision", "Explanation", "Inputs", "apply", "explain"]
+__all__ = ["Decision", "Explanation", "Inputs", "Words", "apply", "explain"]

@@ -21,6 +21,7 @@ from webapp.drawings.scale import Panel, panel_for, step_for
 from webapp.drawings.section import Acting, acting, draw_section
 from webapp.line_view import CURVES_A_PAGE, page_of_line
 from webapp.measures import measures
+from webapp.words import heading, value
 
 METRIC = measures("metric")
 SPACING = 1500.0
@@ -77,6 +78,7 @@ def test_panel_puts_zero_and_values_where_they_belong() -> None:
     half = (panel.low + panel.high) / 2
     assert panel.y(half) == pytest.approx(60)
     assert Panel(0, 10, 0, 1, ()).y(5) == 0
+    assert panel_for(10, 100, [149.0], METRIC, "cant").y(149.0) > 12
 
 
 @pytest.mark.parametrize(
@@ -198,3 +200,15 @@ def test_line_pages_hold_every_curve_once(sample_file: Path, app: Flask) -> None
                 seen += linked
                 number, pages = number + 1, page.pages
             assert seen == [int(i) for i in computed.listing.along[track]]
+
+
+def test_keys_become_headings_without_their_units() -> None:
+    assert heading("rate_of_change_of_cant_mm_per_s") == "Rate of change of cant"
+    assert heading("roll_rate_deg_s") == "Roll rate"
+    assert heading("running_time_lost_s") == "Running time lost"
+    assert heading("class") == "Class"
+    assert value("running_time_lost_s", 13.92, METRIC) == "13.9 s"
+    assert value("ramp_needed_m", 93.333, METRIC) == "93.3\u00a0m"
+    assert value("wheel_load_shift", 0.2049, METRIC) == "20.5\u00a0%"
+    assert value("regular", False, METRIC) == "no"
+    assert value("anything", None, METRIC) == "–"

@@ -12,6 +12,8 @@ from webapp.drawings import svg
 from webapp.measures import Measures
 
 FEWEST_STEPS = 3
+MARGIN = 0.15
+"""Steps left free beyond the outermost value, so that its marker stays within the panel."""
 
 
 @dataclass(frozen=True)
@@ -59,7 +61,7 @@ def step_for(span: float) -> float:
     if span <= 0:
         return 1.0
     power = 10.0 ** math.floor(math.log10(span / FEWEST_STEPS))
-    return max(step for step in (power, 2 * power, 5 * power) if span / step >= FEWEST_STEPS)
+    return max((s for s in (2 * power, 5 * power) if span / s >= FEWEST_STEPS), default=power)
 
 
 def panel_for(top: float, height: float, values: Sequence[float], measures: Measures, kind: str) -> Panel:
@@ -69,7 +71,7 @@ def panel_for(top: float, height: float, values: Sequence[float], measures: Meas
     if high - low < 1e-9:
         high = low + 1.0
     step = step_for(high - low)
-    first, last = math.floor(low / step - 1e-9), math.ceil(high / step + 1e-9)
+    first, last = math.floor(low / step - MARGIN * (low < 0)), math.ceil(high / step + MARGIN)
     size = measures.canonical(kind, 1.0)
     ticks = tuple((i * step * size, f"{abs(i) * step:g}") for i in range(first + (first < 0), last) if i != 0)
     return Panel(top, height, first * step * size, last * step * size, ticks)

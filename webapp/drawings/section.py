@@ -19,9 +19,10 @@ from cant.units import GRAVITY_MS2
 from webapp.drawings import svg
 from webapp.measures import Measures
 
-WIDTH, HEIGHT, ROW = 560.0, 470.0, 18.0
-PIXELS_PER_MM = 0.17
-WEIGHT_PIXELS = 250.0
+WIDTH, HEIGHT, ROW = 430.0, 396.0, 20.0
+PIXELS_PER_MM = 0.135
+WEIGHT_PIXELS = 190.0
+LONGEST_NAME = 16
 USUAL_HEIGHT_M = 1.8
 """Height at which a class is drawn whose centre of gravity is not known; the page says so."""
 RAIL_HEIGHT_MM, RAIL_HEAD_MM, SLEEPER_MM = 172.0, 72.0, 2600.0
@@ -100,7 +101,7 @@ def draw_section(
     outward = -1.0 if hand < 0 else 1.0
     slope = math.asin(max(-1.0, min(1.0, cant_mm / spacing_mm)))
     frame = _Frame(
-        (WIDTH / 2, HEIGHT - 110.0),
+        (WIDTH / 2, HEIGHT - 92.0),
         (outward * math.cos(slope), -math.sin(slope)),
         (-outward * math.sin(slope), -math.cos(slope)),
     )
@@ -172,13 +173,14 @@ def _cant_mark(
 ) -> Markup:
     """Draw the cant as the height of the outer rail over the level through the inner one."""
     inner, outer = frame.at(-spacing_mm / 2, 0), frame.at(spacing_mm / 2, 0)
+    edge = (WIDTH - 4.0 if outward > 0 else 4.0, min(inner[1], outer[1]) - 8)
     label = f"D {measures.with_unit('cant', cant_mm)}"
-    beyond = frame.at(SLEEPER_MM / 2, 0)[0] + outward * 26
+    beyond = frame.at(SLEEPER_MM / 2, 0)[0] + outward * 16
     return svg.group(
         svg.line(inner, (beyond, inner[1]), "level"),
         svg.line((outer[0], outer[1]), (beyond, outer[1]), "level"),
         svg.line((beyond, inner[1]), (beyond, outer[1]), "measure"),
-        svg.words(beyond, min(inner[1], outer[1]) - 8, label, "value", "middle"),
+        svg.words(*edge, label, "value", "end" if outward > 0 else "start"),
     )
 
 
@@ -203,7 +205,8 @@ def _foot(frame: _Frame, item: Acting, order: int, measures: Measures) -> Markup
     x, y = frame.at(item.offset_mm, 0)
     row, kind = HEIGHT + ROW * order, f"class-{order % 6}"
     side = "outwards" if item.offset_mm >= 0 else "inwards"
-    text = f"{item.name}: {measures.with_unit('cant', abs(item.offset_mm))} {side}"
+    name = item.name if len(item.name) <= LONGEST_NAME else f"{item.name[: LONGEST_NAME - 1]}…"
+    text = f"{name}: {measures.with_unit('cant', abs(item.offset_mm))} {side}"
     beside, anchor = (x + 12, "start") if x < WIDTH / 2 else (x - 12, "end")
     return svg.group(
         svg.line((x, y), (x, row), f"reach {kind}"),
