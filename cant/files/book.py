@@ -21,6 +21,9 @@ COLUMN_MARK = "_cant_column_"
 SHEET_MARK = "_cant_sheet_"
 TOUCHED_MARK = "_cant_touched_"
 MARKS = (COLUMN_MARK, SHEET_MARK, TOUCHED_MARK)
+MAX_NAME = 255
+"""Longest name of a sheet that is read; spreadsheet programs allow 31 characters."""
+
 _AREA = re.compile(r"(?:'((?:[^']|'')+)'|([^'!,()]+))!([$A-Za-z0-9:]+)")
 
 
@@ -94,6 +97,8 @@ class Book:
             if part is not None and part in parts:
                 self.package.damaged(f"two of its sheets are one and the same part, {part}")
             parts.add(part or "")
+            if len(one.get("name")) > MAX_NAME:
+                self.package.damaged(f"a sheet has a name of {len(one.get('name'))} characters")
             yield SheetEntry(
                 one.get("name"), part, kind == "worksheet", one.get("state", "visible") == "visible", one
             )

@@ -13,7 +13,7 @@ from xml.parsers import expat
 
 from cant.errors import FileError, Place
 from cant.files.archive import Archive
-from cant.files.cells import Budget
+from cant.files.budget import Budget
 from cant.files.grid import CellError, CellRange, Sheet, Uncalculated, Value, Workbook
 from cant.files.markup import MAX_DEPTH
 from cant.files.sheet_xml import MAX_COLUMN, MAX_MERGED, MAX_ROW

@@ -7,7 +7,8 @@ from typing import NoReturn
 
 from cant.errors import Place
 from cant.files.book import Book, SheetEntry
-from cant.files.cells import BookValues, Budget, CellReader
+from cant.files.budget import Budget
+from cant.files.cells import BookValues, CellReader
 from cant.files.formats import CellFormats
 from cant.files.grid import CellRange, Sheet
 from cant.files.markup import Element, utf8_part

@@ -17,7 +17,7 @@ _CHILD = Path(__file__).with_name("xls_child.py")
 _PROBLEMS = {
     "password": "is password-protected; open it, save it without a password, and try again",
     "large": "is too large to be read safely; keep the curve list in a file of its own",
-    "missing": "cannot be read because the package xlrd is not installed; install it or save the file as .xlsx",
+    "missing": "cannot be read because the package xlrd is missing; install it, or save the file as .xlsx",
     "damaged": "is damaged or no workbook; open it in a spreadsheet program and save it as .xlsx",
 }
 

@@ -3,6 +3,7 @@
 import io
 import re
 import warnings
+import zipfile
 
 import openpyxl
 import pytest
@@ -319,3 +320,27 @@ def test_rows_out_of_order_are_not_edited():
     assert open_workbook(data, "a").sheets[0].rows == [[1.0], [2.0]]
     with pytest.raises(FileError, match="not in order"):
         annotate(data, [one_column("Curves", 1)])
+
+
+@pytest.mark.parametrize("way", ["sizes behind the content", "64-bit sizes", "stored"])
+def test_other_ways_to_write_the_archive(way):
+    """Streaming writers put sizes behind the content, some state 64-bit sizes, some do not compress."""
+
+    class Unseekable(io.BytesIO):
+        def seekable(self):
+            return False
+
+        def seek(self, *_):
+            raise io.UnsupportedOperation
+
+    out = Unseekable() if way.startswith("sizes") else io.BytesIO()
+    method = zipfile.ZIP_STORED if way == "stored" else zipfile.ZIP_DEFLATED
+    with zipfile.ZipFile(out, "w", method) as archive:
+        for name, content in parts_of(simple_workbook(TABLE)).items():
+            with archive.open(name, "w", force_zip64=way.startswith("64")) as member:
+                member.write(content)
+    data = out.getvalue()
+    assert open_workbook(data, "a").sheets[0].rows[1] == ["C1", 400.0]
+    result = annotate(data, [one_column("Curves", 1)])
+    assert values(result.data)[1] == ["C1", 400, 60]
+    assert "xl/theme/theme1.xml" not in changed_parts(data, result.data)
