@@ -104,6 +104,9 @@ def _add_shares(
         _spread(records, classes, names, key, np.where(np.isfinite(limit.value), limit.value, np.nan))
         with np.errstate(divide="ignore", invalid="ignore"):
             share = np.where(np.isfinite(limit.value) & (limit.value > 0), value / limit.value, np.nan)
+        if quantity != "cant deficiency":
+            # The excess of an occasional train is shown and does not bind.
+            share = np.where(line.regular | (unbalanced_mm > 0), share, np.nan)
         shares.append(np.broadcast_to(share, speed_kmh.shape))
         rows.append(np.broadcast_to(limit.row, speed_kmh.shape))
     every = np.nan_to_num(np.stack(shares), nan=-1.0)

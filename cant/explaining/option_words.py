@@ -5,7 +5,7 @@ from __future__ import annotations
 from collections.abc import Callable
 from typing import Any
 
-from cant.explaining.candidates import Candidate
+from cant.explaining.candidate import Candidate
 from cant.explaining.wording import Words, listed, seconds
 
 Record = dict[str, Any]

@@ -12,7 +12,8 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
-from cant.explaining.candidates import Candidate, Proposals, best_of_each_kind
+from cant.explaining.candidate import Candidate, best_of_each_kind
+from cant.explaining.candidates import Proposals
 from cant.explaining.decisions import Decision
 from cant.explaining.local import Answer, Surroundings, Trial, no_worse, try_out
 from cant.explaining.option_words import option_text

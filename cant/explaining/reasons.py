@@ -132,10 +132,10 @@ class Reason:
             return f"as near to {named} as {self._bound(high)} lets it{self._other_side(low, 'at least')}"
         if low is not None and target < low.mm and -_SAME_MM <= cant - low.mm < self._step:
             return f"as near to {named} as {self._bound(low)} lets it{self._other_side(high, 'at most')}"
+        with_whom = "best"
         if self._shares():
-            return f"best together with the curves that share its transitions, {named} being out of reach, "
-            return f"best with the curves that share its transitions, {named} being out of reach, {between}"
-        return f"the best that the limits leave, {named} being out of reach, {between}"
+            with_whom = "best together with the curves that share its transitions"
+        return f"{with_whom}, {named} being out of reach, {between}"
 
     def _other_side(self, bound: Bound | None, word: str) -> str:
         if bound is None or (word == "at least" and bound.mm <= 0):
@@ -174,6 +174,8 @@ class Reason:
                     f"no multiple of {words.cant(self._step)} lies between {self._bound(low)} and "
                     f"{self._bound(high)}"
                 )
+            if self._shares():
+                return "no cants of the curves that share transitions serve all classes at planned speeds"
             return "no cant serves all classes at their planned speeds"
         said = (
             f"at least {self._bound(low)} is needed and at most {self._bound(high)} allowed, "

@@ -9,10 +9,10 @@ import numpy as np
 from cant.explaining.notices.notice import Notice, Record, Scene, most, worst_class
 from cant.planning.rules import Asked
 from cant.planning.targets import traffic_weights
-from cant.units import KMH_PER_MS
+from cant.units import INCH_MM, KMH_PER_MS
 
-COUNTS_AS_EXCESS_MM = 10.0
-"""Excess below this is within what cant in service varies by; own value."""
+COUNTS_AS_EXCESS_MM = {"metric": 10.0, "us": INCH_MM / 2}
+"""Excess below this is within what cant in service varies by; own values."""
 HIGH_CANT_MM = 100.0
 """From here on a train that stands is worth a word; own value, below the usual largest cant at platforms."""
 
@@ -27,11 +27,12 @@ def trains(scene: Scene) -> Iterator[Notice]:
 
 def _tonnes_in_excess(scene: Scene) -> Iterator[Notice]:
     line = scene.outcome.line
+    counts = COUNTS_AS_EXCESS_MM["us" if scene.words.us else "metric"]
     moving = line.runs & (np.nan_to_num(scene.run) > 0)
     weight = traffic_weights(line, moving)
     total = weight.sum(axis=-1)
     with np.errstate(invalid="ignore"):
-        over = scene.unbalance < -COUNTS_AS_EXCESS_MM
+        over = scene.unbalance < -counts
     part = np.where(over, weight, 0.0).sum(axis=-1)
     share = np.divide(part, total, out=np.zeros_like(total), where=total > 0)
     column, excess = worst_class(-scene.unbalance, over & (weight > 0))
@@ -47,11 +48,11 @@ def _tonnes_in_excess(scene: Scene) -> Iterator[Notice]:
         "advice",
         found,
         lambda i, _: (
-            f"{words.share(share[i])} of the {what} run with more than {words.exact(COUNTS_AS_EXCESS_MM)} "
+            f"{words.share(share[i])} of the {what} run with more than {words.exact(counts)} "
             f"excess, "
             f"{scene.names[column[i]]} with {words.exact(excess[i])}."
         ),
-        f"On {len(found)} curves most {what} run with more than {words.exact(COUNTS_AS_EXCESS_MM)} cant "
+        f"On {len(found)} curves most {what} run with more than {words.exact(counts)} cant "
         f"excess "
         f"({words.share(share[worst])} on {scene.label(worst)}): more cant would load the low rail further.",
     )
