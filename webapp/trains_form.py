@@ -2,7 +2,7 @@
 
 from __future__ import annotations
 
-from collections.abc import Mapping
+from collections.abc import Mapping, Sequence
 
 from pydantic import ValidationError
 
@@ -22,8 +22,18 @@ NUMBERS: tuple[tuple[str, str | None], ...] = (
 TEXTS = ("name", "category", "line", "track")
 
 
-def shown_rows(traffic: Traffic | None, measures: Measures) -> list[dict[str, str]]:
+def shown_rows(
+    traffic: Traffic | None, measures: Measures, named: Sequence[str] = ()
+) -> list[dict[str, str]]:
     """Give the rows of the form for a traffic table, and blank ones to fill in.
+
+    Parameters
+    ----------
+    traffic : Traffic or None
+    measures : Measures
+        Units in which the form is shown.
+    named : sequence of str
+        Classes that the curve list names in its speed columns; proposed where there is no traffic yet.
 
     Returns
     -------
@@ -36,6 +46,8 @@ def shown_rows(traffic: Traffic | None, measures: Measures) -> list[dict[str, st
         shown = {name: getattr(row, name) for name in TEXTS}
         shown |= {name: fields.shown(getattr(row, name), kind) for name, kind in NUMBERS}
         rows.append({**shown, "regular": "yes" if row.regular else "", "from": str(number)})
+    if not rows:
+        rows = [{**blank_row(), "name": name} for name in named]
     return rows + [blank_row() for _ in range(SPARE_ROWS if rows else SPARE_ROWS + 2)]
 
 

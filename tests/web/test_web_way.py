@@ -194,3 +194,30 @@ def test_units_switch_holds_everywhere(browser: Browser) -> None:
     assert "Proposed, mm" in metric
     document = json.loads(browser.get(f"{plan}/plan.json").data)
     assert document["settings"]["units"] == "metric"
+
+
+def test_classes_named_by_the_list_stand_in_the_form(browser: Browser, tmp_path: Path) -> None:
+    file = tmp_path / "line.csv"
+    file.write_text(
+        "Curve,Radius (m),Hand,Cant (mm),Speed Express (km/h),Speed Goods (km/h)\n"
+        "A,500,L,60,100,60\nB,600,R,70,110,70\n"
+    )
+    plan = browser.upload(file)
+    page = browser.get(f"{plan}/trains").text
+    assert re.findall(r'name="\d-name" value="([^"]+)"', page) == ["Express", "Goods"]
+    form = {
+        "rows": "2",
+        "units": "metric",
+        "0-name": "Express",
+        "0-category": "passenger",
+        "0-regular": "yes",
+    }
+    form |= {"1-name": "Goods", "1-category": "freight", "1-regular": "yes"}
+    answer = browser.post(f"{plan}/trains", form)
+    assert answer.status_code == 303, answer.text
+    browser.post(f"{plan}/limits/choose", {"source": "set:typical"})
+    assert browser.post(f"{plan}/confirm").status_code == 303
+    document = json.loads(browser.get(f"{plan}/plan.json").data)
+    assert [c["speed_kmh"] for c in document["curves"][0]["classes"]] == [100, 60]
+    assert "a new workbook is made" in browser.get(f"{plan}/files").text
+    assert "a new workbook is made" not in browser.get(f"{browser.sample()}/files").text

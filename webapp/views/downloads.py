@@ -8,6 +8,7 @@ from urllib.parse import quote
 from flask import Blueprint, Response, render_template
 from flask.typing import ResponseReturnValue
 
+from cant.files.annotate import can_annotate
 from webapp.context import computed_of, current_measures, file_of, stored, unconfirmed
 from webapp.tables import file_name
 
@@ -29,7 +30,12 @@ def show(address: str) -> ResponseReturnValue:
     if not plan.decided.confirmed:
         return render_template("files.html", ready=False)
     computed = computed_of(plan)
-    return render_template("files.html", ready=True, limits=computed.planned.plan.limits)
+    return render_template(
+        "files.html",
+        ready=True,
+        limits=computed.planned.plan.limits,
+        why_new=can_annotate(file_of(plan)),
+    )
 
 
 @pages.get("/workbook")

@@ -24,6 +24,11 @@ def _traffic(plan: StoredPlan) -> Traffic | None:
     return plan.decided.traffic or reading_of(plan).traffic
 
 
+def _rows(plan: StoredPlan) -> list[dict[str, str]]:
+    named = list(reading_of(plan).curves.class_speeds)
+    return trains_form.shown_rows(_traffic(plan), current_measures(), named)
+
+
 def _page(
     plan: StoredPlan, rows: list[dict[str, str]], problems: dict[str, str], problem: str = "", code: int = 200
 ) -> ResponseReturnValue:
@@ -33,6 +38,7 @@ def _page(
         problems=problems,
         problem=problem,
         edited=plan.decided.traffic is not None,
+        named=list(reading_of(plan).curves.class_speeds),
         has_traffic=_traffic(plan) is not None,
     )
     return Response(shown, code)
@@ -42,7 +48,7 @@ def _page(
 def show(address: str) -> ResponseReturnValue:
     """Show the traffic as a form."""
     plan = stored(address)
-    return _page(plan, trains_form.shown_rows(_traffic(plan), current_measures()), {})
+    return _page(plan, _rows(plan), {})
 
 
 @pages.post("/trains")
@@ -76,8 +82,7 @@ def from_file(address: str) -> ResponseReturnValue:
             raise InputError(message)
         _keep(plan, read.traffic)
     except CantError as error:
-        rows = trains_form.shown_rows(_traffic(plan), current_measures())
-        return _page(plan, rows, {}, str(error), 422)
+        return _page(plan, _rows(plan), {}, str(error), 422)
     flash(f"The trains of {given[1]} have been taken.")
     return redirect(url_for("trains.show", address=address), 303)
 

@@ -1,0 +1,90 @@
+"""Time the pages of a long register, as a browser asks for them; run by hand.
+
+``python tests/benchmarks/bench_web.py [ROWS]`` makes a register of 20,000 rows (or as told), brings it, plans
+it, and prints how long each page takes the second time: a page must cost what it shows, not what the plan is.
+"""
+
+from __future__ import annotations
+
+import io
+import re
+import sys
+import tempfile
+import time
+from collections.abc import Callable
+from pathlib import Path
+
+import numpy as np
+from werkzeug.test import TestResponse
+
+from webapp.app import create_app
+from webapp.config import Config
+from webapp.context import EXTENSION
+
+HEADER = "Line,Track,Curve,Start (km),End (km),Radius (m),Hand,Transition in,Transition out,Cant,Speed"
+COMMON = {"trains_per_day": "20", "mass_t": "900", "regular": "yes"}
+CLASSES = (
+    {"name": "Express", "category": "passenger", "speed_kmh": "160", **COMMON},
+    {"name": "Goods", "category": "freight", "speed_kmh": "80", **COMMON},
+)
+TRAINS = {
+    "rows": "2",
+    "units": "metric",
+    **{f"{n}-{key}": value for n, row in enumerate(CLASSES) for key, value in row.items()},
+}
+PAGES = (
+    "cants",
+    "cants?sort=change&order=falling",
+    "cants?search=c12",
+    "cants?size=250",
+    "line?page=20",
+    "findings",
+    "curves/777",
+    "print",
+)
+
+
+def register(rows: int) -> bytes:
+    """Make a register of some rows, 2000 curves a line."""
+    rng = np.random.default_rng(3)
+    lines = [HEADER]
+    for i in range(rows):
+        start = (i % 2000) * 1.2 + rng.uniform(0, 0.3)
+        radius, length = rng.choice([400, 500, 600, 800, 1000, 1500, 2000]), rng.uniform(0.15, 0.5)
+        ramps, hand = rng.choice([60, 80, 100], 2), rng.choice(["L", "R"])
+        lines.append(
+            f"L{i // 2000},1,C{i},{start:.3f},{start + length:.3f},{radius},{hand},{ramps[0]},{ramps[1]},"
+            f"{rng.choice([50, 60, 80, 100])},{rng.choice([80, 100, 120])}"
+        )
+    return "\n".join(lines).encode()
+
+
+def timed(name: str, ask: Callable[[], TestResponse]) -> TestResponse:
+    """Print how long an answer takes."""
+    begin = time.perf_counter()
+    answer = ask()
+    print(f"{name:36s} {1000 * (time.perf_counter() - begin):9.0f} ms  {answer.status_code}")
+    return answer
+
+
+def main(rows: int) -> None:
+    """Run the benchmark."""
+    with tempfile.TemporaryDirectory() as folder:
+        app = create_app({"CANT": Config(Path(folder))})
+        client = app.test_client()
+        found = re.search(r'name="token" value="([^"]+)"', client.get("/").text)
+        token = {"token": found.group(1) if found else ""}
+        file = (io.BytesIO(register(rows)), "register.csv")
+        plan = timed("bring", lambda: client.post("/plans", data={**token, "file": file})).headers["Location"]
+        plan = plan.removesuffix("/list")
+        timed("trains", lambda: client.post(f"{plan}/trains", data={**token, **TRAINS}))
+        timed("limits", lambda: client.post(f"{plan}/limits/choose", data={**token, "source": "set:typical"}))
+        timed("plan", lambda: client.post(f"{plan}/confirm", data=token))
+        for page in PAGES:
+            timed(f"{page} (first)", lambda page=page: client.get(f"{plan}/{page}"))  # type: ignore[misc]
+            timed(page, lambda page=page: client.get(f"{plan}/{page}"))  # type: ignore[misc]
+        app.extensions[EXTENSION].database.close()
+
+
+if __name__ == "__main__":
+    main(int(sys.argv[1]) if len(sys.argv) > 1 else 20_000)
