@@ -17,21 +17,12 @@ from cant.files.rewrite import rows_as_new_workbook, sheet_name_in_new_workbook
 from cant.model.display import Display
 from cant.model.reading import Reading, RejectedRow, SheetReading
 from cant.writing.columns import DECISION, WORDS, Column, Record, class_columns
-from cant.writing.plan_sheets import PlanSheets
-from cant.writing.sheets import MAX_TEXT, NewSheets
+from cant.writing.book.status import FILLS, NOT_ASSESSED
+from cant.writing.plan_sheets import PlanSheets, footer_of
+from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
 
 if TYPE_CHECKING:
     from cant.writing.planned import PlannedLine
-
-NOT_ASSESSED = "not assessed"
-FILLS: dict[str, str] = {
-    NOT_ASSESSED: "D9D9D9",
-    "not compliant": "F2B8B0",
-    "restrict": "F7D9A8",
-    "exceptional": "F6EFB0",
-}
-"""Ground of the status cell; a cant that simply changes or stays has none."""
-
 
 @dataclass(frozen=True)
 class AnnotatedFile:
@@ -134,7 +125,7 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
     display = planned.display
     columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *WORDS]
     added = AddedColumns(columns, display)
-    with NewSheets() as book:
+    with NewSheets(footer_of(planned), LETTER if display.units == "us" else A4) as book:
         sheets = PlanSheets(book, planned, _name_giver(workbook))
         for record in planned.records():
             added.add(record)

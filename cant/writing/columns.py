@@ -7,11 +7,13 @@ column is one entry here.
 
 from __future__ import annotations
 
+import math
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
 from typing import Any, TypeAlias
 
 from cant.model.display import Display
+from cant.quantities.geometry import degree_from_radius
 
 Cell: TypeAlias = float | str | None
 Record: TypeAlias = dict[str, Any]
@@ -161,6 +163,25 @@ GEOMETRY: tuple[Column, ...] = (
     ),
     Column("Tier", "", path("tier"), 11, "Normal, or exceptional where a normal limit is passed."),
 )
+
+
+def _degree(record: Record) -> float | None:
+    """Give the degree of curve over a chord of 100 ft [deg]."""
+    radius = record["radius_m"]
+    if not radius:
+        return None
+    degree = float(degree_from_radius(radius, "100 ft chord"))
+    return degree if math.isfinite(degree) else None
+
+
+_DEGREE = Column("Degree of curve", "number", _degree, 9, "Over a chord of 100 ft, in degrees.")
+
+
+def geometry_columns(display: Display) -> list[Column]:
+    """Give the columns of a curve's geometry; in US units its degree too."""
+    if display.units != "us":
+        return list(GEOMETRY)
+    return [GEOMETRY[0], _DEGREE, *GEOMETRY[1:]]
 
 
 def class_columns(names: Iterable[str]) -> list[Column]:

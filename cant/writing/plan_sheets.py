@@ -1,43 +1,62 @@
-"""The sheets of our own that follow the user's: summary, plan, figures, transitions, findings, inputs.
+"""The sheets of our own that follow the user's: which there are, in which order, and who writes each.
 
-Filled record by record in one pass; each table is a list of columns from :mod:`cant.writing.columns` and
-:mod:`cant.writing.figure_columns`.
+Filled record by record in one pass, so that a register never stands in memory; each sheet is a module of
+:mod:`cant.writing.book`.
 """
 
 from __future__ import annotations
 
 from collections.abc import Callable, Iterable, Sequence
+from datetime import date
 from typing import TYPE_CHECKING, Any
 
-from cant.limit_sets import as_table, headers
-from cant.model.plan import STATUSES
-from cant.version import __version__
 from cant.writing.book.calculation import Calculation
-from cant.writing.book.selection import Selection, chosen_curves
-from cant.writing.columns import DECISION, GEOMETRY, PLACE, WORDS, Cell, Column, Record, class_columns
-from cant.writing.document import cautions_of
+from cant.writing.book.exceptions import Exceptions, SpeedChanges
+from cant.writing.book.lifting import LiftingSchedule, RampValues
+from cant.writing.book.pictures import Pictures
+from cant.writing.book.reading_sheets import write_how_read, write_rejected
+from cant.writing.book.selection import Selection, chosen_curves, rule_of_choice
+from cant.writing.book.status import STATUS_WORDS
+from cant.writing.book.summary import Summary
+from cant.writing.book.terms import write_terms
+from cant.writing.columns import (
+    DECISION,
+    PLACE,
+    WORDS,
+    Cell,
+    Column,
+    Record,
+    class_columns,
+    geometry_columns,
+)
 from cant.writing.figure_columns import END, FIGURES
 from cant.writing.sheets import Heading, NewSheets, TableSheet
 
 if TYPE_CHECKING:
     from cant.writing.planned import PlannedLine
 
-STATUS_WORDS: dict[str, str] = {
-    "not assessed": "the limits or the data have a gap there",
-    "not compliant": "its fixed or site-bound cant keeps no limit that no lower speed can mend",
-    "restrict": "some class may not run at its planned speed",
-    "exceptional": "an exceptional value is needed, which takes approval",
-    "kept": "today's cant is the one to have",
-    "change": "another cant than today's is proposed, within normal limits",
-}
-"""What each status means, for people."""
+__all__ = ["FULL_FIGURES", "STATUS_WORDS", "PlanSheets", "footer_of"]
 
 FULL_FIGURES = 5000
 """Up to this many curves the sheets of figures show all; of longer lists, those that need a decision."""
 
-CALCULATION_SHEETS = ("Calculation", "Calculation by class", "Calculation of ends")
-
 _DECIDED = ("kept", "change")
+_FINDING = (
+    ("Line", 16.0),
+    ("Track", 7.0),
+    ("Curve", 9.0),
+    ("Severity", 10.0),
+    ("Finding", 100.0),
+    ("Clause", 20.0),
+)
+
+
+def footer_of(planned: PlannedLine) -> str:
+    """Give the footer of every page: input file and digest, sheet, page."""
+    file = planned.reading.file[-60:].replace("&", "&&")
+    digest = planned.reading.sha256[:16]
+    left = file + (f"  sha256 {digest}" if digest else "")
+    return f"&L&8{left}&C&8&A&R&8Page &P of &N"
 
 
 class PlanSheets:
@@ -51,44 +70,53 @@ class PlanSheets:
         The plan.
     name : callable
         Gives a sheet name that the user's workbook does not have yet.
+    day : date, optional
+        Date of the issue; today when not told.
     """
 
-    def __init__(self, book: NewSheets, planned: PlannedLine, name: Callable[[str], str]) -> None:
-        self._planned = planned
-        self._display = planned.display
-        self._plan_columns = [
-            *PLACE,
-            *GEOMETRY,
-            *DECISION,
-            *class_columns(planned.plan.traffic.class_names),
-            *WORDS,
-        ]
-        self._name = name
-        self._book = book
-        self._all = len(planned.plan.assessed) <= FULL_FIGURES
-        self._summary()
+    def __init__(
+        self, book: NewSheets, planned: PlannedLine, name: Callable[[str], str], day: date | None = None
+    ) -> None:
+        plan, self._display = planned.plan, planned.display
+        self._planned, self._book, self._name = planned, book, name
+        self._index = iter(plan.assessed.tolist())
+        self._all = len(plan.assessed) <= FULL_FIGURES
+        self._chosen = Selection(plan, chosen_curves(plan))
+        self._summary = Summary(book, name("Plan summary"), planned, day)
+        self._pictures = Pictures(
+            book, (name("Line in pictures"), name("Picture data")), self._display, plan.traffic.class_names
+        )
+        self._exceptions = Exceptions(book, name("Exceptions"), self._display)
+        self._speeds = SpeedChanges(book, name("Speed changes"), self._display)
+        lifting = book.table(name("Lifting schedule"))
+        rule = "" if self._all else "Ramps of: " + rule_of_choice(plan, len(self._chosen))
+        self._ramps = RampValues(book, name("Ramp values"), self._display, plan, rule)
+        classes = class_columns(plan.traffic.class_names)
+        self._plan_columns = [*PLACE, *geometry_columns(self._display), *DECISION, *classes, *WORDS]
         self._plan = self._table("Plan", self._plan_columns)
         self._figures = self._table("Figures", [*PLACE, *FIGURES])
         self._ends = self._table("Transitions", [*PLACE, *END])
-        self._findings = self._plain("Findings", ["Line", "Track", "Curve", "Severity", "Finding", "Clause"])
-        self._chosen = Selection(planned.plan, chosen_curves(planned.plan))
-        self._index = iter(planned.plan.assessed.tolist())
-        calculated = [book.table(name(wanted)) for wanted in CALCULATION_SHEETS]
-        names = [name(wanted) for wanted in ("Inputs", "Limits used", "Traffic used")]
-        self._calculation = Calculation(
-            self._chosen,
-            (calculated[0], calculated[1], calculated[2]),
-            (names[0], names[1], names[2]),
+        self._findings = self._plain("Findings", _FINDING)
+        self._calculation = self._calculated()
+        self._lifting = LiftingSchedule(lifting, self._calculation.inputs)
+
+    def _calculated(self) -> Calculation:
+        first, second, third = (
+            self._book.table(self._name(wanted))
+            for wanted in ("Calculation", "Calculation by class", "Calculation of ends")
         )
+        inputs, limits, traffic = (self._name(wanted) for wanted in ("Inputs", "Limits used", "Traffic used"))
+        return Calculation(self._chosen, (first, second, third), (inputs, limits, traffic))
 
     def add(self, record: Record) -> None:
-        """Write what the sheets hold of one curve."""
+        """Write what the sheets hold of one curve; the records come in the order of the plan."""
         place = self._chosen.place.get(next(self._index))
         if place is not None:
             self._chosen.take(place, record)
+        for part in (self._summary, self._pictures, self._exceptions, self._speeds, self._lifting):
+            part.add(record)
         self._plan.row([column.cell(record, self._display) for column in self._plan_columns])
-        names = [record["line"], record["track"], record["curve"]]
-        self._write_findings(names, record["findings"])
+        self._write_findings([record["line"], record["track"], record["curve"]], record["findings"])
         if self._all or record["status"] not in _DECIDED:
             self._add_figures(record)
 
@@ -105,84 +133,23 @@ class PlanSheets:
             self._ends.row([*place, *(column.cell(shown, self._display) for column in END)])
 
     def finish(self) -> None:
-        """Write the sheets that need no curves."""
-        plan = self._planned.plan
-        self._write_findings(
-            [None, None, None], [finding.as_json() for finding in self._planned.explanation.plan_findings]
-        )
-        self._rejected()
+        """Write what needs all curves, and the sheets that need none."""
+        nowhere: list[Cell] = [None, None, None]
+        self._write_findings(nowhere, [f.as_json() for f in self._planned.explanation.plan_findings])
+        self._exceptions.finish()
+        self._speeds.finish()
+        self._lifting.write()
+        curves = self._planned.plan.assessed.tolist() if self._all else self._chosen.curves.tolist()
+        self._ramps.write(curves)
         self._calculation.write(self._book)
-        self._how_read()
+        write_how_read(self._book, self._name("How it was read"), self._planned)
+        write_rejected(self._book, self._name("Not assessed"), self._planned)
+        write_terms(self._book, self._name("Terms and formulas"))
+        self._pictures.write()
+        self._summary.write(self._chosen)
 
     def _figure_row(self, place: list[Cell], figures: Record) -> None:
         self._figures.row([*place, *(column.cell(figures, self._display) for column in FIGURES)])
-
-    def _summary(self) -> None:
-        """Write the first of our sheets: what was planned with what, counts, cautions."""
-        planned, plan = self._planned, self._planned.plan
-        sheet = self._book.table(self._name("Plan summary"))
-        sheet.widths(28, 14, 70)
-        sheet.line("Plan of cant", bold=True)
-        edited = ", edited" if plan.limits.edited else ""
-        verified = "" if plan.limits.verified else " (UNVERIFIED)"
-        for name, value in (
-            ("Curve file", planned.reading.file),
-            ("SHA-256 of it", planned.reading.sha256),
-            ("Limits", f"{plan.limits.title or plan.limits.name}{verified}"),
-            ("Edition", f"{plan.limits.edition}{edited}"),
-            ("Method", plan.settings.method),
-            ("Tiers", ", ".join(plan.settings.tiers)),
-            ("Program", f"cant {__version__}"),
-        ):
-            if value:
-                sheet.line(name, value)
-        sheet.line()
-        sheet.line("Status", "Curves", "Meaning", bold=True)
-        counts = plan.counts()
-        for status in STATUSES:
-            sheet.line(status, counts.get(status, 0), STATUS_WORDS[status])
-        sheet.line(
-            "rejected", float(plan.curves.rejected.sum()), "rows that cannot be read: see 'Not assessed'"
-        )
-        if not self._all:
-            text = (
-                f"The list has more than {FULL_FIGURES} curves: the sheets 'Figures' and 'Transitions' hold "
-                "those that need a decision; the JSON holds all."
-            )
-            sheet.paragraph(text, 3)
-        sheet.line()
-        sheet.line("Cautions", bold=True)
-        for caution in cautions_of(plan.limits):
-            sheet.paragraph(caution, 3)
-        sheet.line()
-        for role in ("Prepared", "Checked", "Approved"):
-            sheet.line(f"{role} by / date", "", "")
-
-    def _rejected(self) -> None:
-        sheet = self._plain("Not assessed", ["Sheet", "Row", "Column", "Value", "Problem"])
-        for row in self._planned.reading.rejected:
-            sheet.row([row.sheet, row.row, row.column, row.value, row.problem])
-
-    def _settings(self) -> None:
-        settings = self._planned.plan.settings
-        sheet = self._plain("Settings used", ["Setting", "Value"])
-        for name, value in settings.model_dump().items():
-            sheet.row([name, _cell(value)])
-        sheet.row(["equilibrium constant used [mm m/(km/h)2]", settings.constant])
-        sheet.row(["rail spacing used [mm]", settings.spacing_mm])
-
-    def _how_read(self) -> None:
-        reading = self._planned.reading
-        names = ["Sheet", "Column", "Understood as", "Unit", "Unit from", "Confidence", "Note"]
-        sheet = self._plain("How it was read", names)
-        for c in reading.columns:
-            meaning = c.meaning or "left alone"
-            sheet.row([c.sheet, c.heading, meaning, c.unit, c.unit_from, c.confidence, c.note])
-        for q in reading.questions:
-            choices = "; ".join(q.choices)
-            sheet.row([q.sheet, q.column, "ASKED", "", "", "asked", f"{q.question} Choices: {choices}"])
-        for note in reading.notes:
-            sheet.row(["", "", "", "", "", "", note])
 
     def _write_findings(self, names: Sequence[Cell], findings: Iterable[dict[str, Any]]) -> None:
         for finding in findings:
@@ -190,34 +157,23 @@ class PlanSheets:
 
     def _table(self, name: str, columns: Sequence[Column]) -> TableSheet:
         sheet = self._book.table(self._name(name))
+        if not self._all and name != "Plan":
+            text = (
+                f"The list has more than {FULL_FIGURES} curves: this sheet holds those that need a decision (not "
+                "compliant, speed restricted, exceptional, not assessed); the sheet 'Plan' and the JSON hold all."
+            )
+            sheet.paragraph(text, 10, 110)
         display = self._display
         heads = [Heading(c.title(display), c.width, c.number_format(display)) for c in columns]
         sheet.header(heads, keep=len(PLACE))
         return sheet
 
-    def _plain(self, name: str, titles: Sequence[str]) -> TableSheet:
+    def _plain(self, name: str, heads: Sequence[tuple[str, float]]) -> TableSheet:
         sheet = self._book.table(self._name(name))
-        wide = {"Finding": 90.0, "Problem": 90.0, "Note": 70.0, "Setting": 40.0, "Clause": 24.0}
-        sheet.header([Heading(title, wide.get(title, 16.0)) for title in titles])
+        sheet.header([Heading(title, width) for title, width in heads], keep=3)
         return sheet
-
-    def _dicts(self, name: str, titles: Sequence[str], rows: Iterable[dict[str, Any]]) -> None:
-        sheet = self._plain(name, titles)
-        for row in rows:
-            sheet.row([_cell(row[title]) for title in titles])
 
 
 def _over_ends(ends: Record, name: str) -> dict[str, Record]:
     """Give what a class has over each end of a curve."""
     return {side: entry for side, end in ends.items() for entry in end["classes"] if entry["class"] == name}
-
-
-def _cell(value: Any) -> Cell:
-    """Turn a value of a model into a cell: yes and no in words, lists with commas, blanks blank."""
-    if value is None or (isinstance(value, str | float | int) and not isinstance(value, bool)):
-        return value
-    if isinstance(value, bool):
-        return "yes" if value else "no"
-    if isinstance(value, tuple | list):
-        return ", ".join(str(part) for part in value)
-    return str(value)

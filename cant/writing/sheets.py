@@ -173,6 +173,21 @@ class TableSheet:
         """Give the index of a cell format: of a number or a text, of a kind (input, formula, fixed)."""
         return int(self._book.styled(number_format, kind, width)._get_xf_index())
 
+    def frame(self, first: int, columns: tuple[int, int]) -> None:
+        """Frame cells that are to be written in by hand.
+
+        Parameters
+        ----------
+        first : int
+            First row from 1; the last is the one written last.
+        columns : tuple of int
+            First and last column from 0.
+        """
+        if self._next < first:
+            return
+        look = {"type": "formula", "criteria": "=TRUE", "format": self._book.frame}
+        self._sheet.conditional_format(first - 1, columns[0], self._next - 1, columns[1], look)
+
     @property
     def next_row(self) -> int:
         """Row from 1 that is written next."""
@@ -245,6 +260,7 @@ class NewSheets:
             {"text_wrap": True, "valign": "top", "font_size": 8, "bottom": 1, "bg_color": "#EEF3F2"}
         )
         self.title = self.workbook.add_format({"bold": True, "font_size": 14, "valign": "top"})
+        self.frame = self.workbook.add_format({"border": 1})
         self.box = self.workbook.add_format({"border": 1, "valign": "top", "text_wrap": True})
         self._numbers: dict[str, Any] = {}
         self._styled: dict[tuple[str | None, str, bool], Any] = {}

@@ -107,6 +107,18 @@ class Inputs:
                 "Settings" if s.maintenance_allowance_mm is not None else "not stated: 0",
                 INPUT,
             ),
+            *(
+                _Entry(
+                    key,
+                    f"Height of {title} above the rails",
+                    height,
+                    "m",
+                    "h",
+                    "assumed: put in the height of the place",
+                    INPUT,
+                )
+                for key, (title, height) in HEIGHTS.items()
+            ),
             _Entry("method", "Method of the target cant", s.method, "", "", "Settings; planned with it"),
             _Entry("tiers", "Tiers of limits allowed", ", ".join(s.tiers), "", "", "Settings; planned with it"),
             _Entry("keep", "Keep today's cant within", s.keep_within_mm, "mm", "", "Settings; planned with it"),
@@ -153,6 +165,9 @@ class Inputs:
             if self.display[kind].factor != 1.0
         ]
 
+
+HEIGHTS: dict[str, tuple[str, float]] = {"platform": ("the platform edge", 0.915), "wire": ("the contact wire", 5.0)}
+"""Heights above the rails [m] at which the shift is shown where nobody says another: common practice."""
 
 FIRST_ROW = 3
 """Row of the first input, below the explanation and the header."""

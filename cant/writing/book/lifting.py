@@ -1,0 +1,287 @@
+"""What the gang and the planner of track work need: which rail is lifted by how much, and the ramps' values.
+
+The shift of what stands beside and above the track is a formula over heights that are inputs.
+"""
+
+from __future__ import annotations
+
+from typing import Any
+
+import numpy as np
+
+from cant.model.display import Display
+from cant.planning import Plan
+from cant.planning.neighbours import AFTER, BEFORE
+from cant.quantities.catalogue import CATALOGUE
+from cant.quantities.lifting import lateral_shift, ramp_ordinates, rise_of_centre, stations
+from cant.writing.book.inputs import HEIGHTS, Inputs
+from cant.writing.book.ledger import FIXED, FORMULA, INPUT, Ledger, LedgerColumn, Value, token
+from cant.writing.columns import Cell, Record
+from cant.writing.sheets import Heading, NewSheets, TableSheet
+
+FIRST_ROW = 5
+_SAME_MM = 1e-6
+
+
+def is_changed(record: Record) -> bool:
+    """Tell whether a curve's cant is known today and another one is proposed."""
+    old, new = record["existing_cant_mm"], record["recommended_cant_mm"]
+    return old is not None and new is not None and abs(new - old) > _SAME_MM
+
+
+def lifted_rail(change: float, hand: str | None) -> str:
+    """Say which rail is lifted: the outer one for more cant, the inner one for less."""
+    outer = change > 0
+    side = {"L": ("right", "left"), "R": ("left", "right")}.get(hand or "")
+    words = "outer" if outer else "inner"
+    return f"{words} ({side[0 if outer else 1]})" if side else words
+
+
+class LiftingSchedule:
+    """One row a curve whose cant changes.
+
+    Parameters
+    ----------
+    sheet : TableSheet
+    inputs : Inputs
+    """
+
+    def __init__(self, sheet: TableSheet, inputs: Inputs) -> None:
+        self._sheet = sheet
+        self._inputs = inputs
+        self._rows: list[tuple[list[Cell], list[float], str]] = []
+
+    def add(self, record: Record) -> None:
+        """Take a curve."""
+        if not is_changed(record):
+            return
+        read = record["as_read"]
+        words = [record["line"], record["track"], record["curve"], record["hand"], read["situation"]]
+        old, new = record["existing_cant_mm"], record["recommended_cant_mm"]
+        numbers = [_number(read["start_km"]), _number(read["end_km"]), old, new]
+        self._rows.append((words, numbers, _order_of_work(record)))
+
+    def write(self) -> None:
+        """Write the sheet."""
+        self._sheet.paragraph(
+            "A tamper lifts and does not lower: more cant lifts the outer rail, less cant the inner one (general "
+            "lift, ballast, clearance). Sides are seen in the direction of the list. Where cant comes down, speed "
+            "before track; where it goes up, track before speed. The shift is towards the inside of the curve "
+            f"where cant is added, at the heights on the sheet '{self._inputs.name}'; confirm clearances, "
+            "platforms, overhead line and the stress-free temperature of the rail.",
+            14,
+            150,
+        )
+        ledger = Ledger(self._sheet, FIRST_ROW, len(self._rows))
+        for column in self._columns():
+            ledger.add(column)
+        ledger.write(keep=3)
+        if not self._rows:
+            self._sheet.line("No cant changes.")
+
+    def _columns(self) -> list[LedgerColumn]:
+        words = list(zip(*(row[0] for row in self._rows), strict=True)) or [()] * 5
+        numbers = np.array([row[1] for row in self._rows], dtype=np.float64).reshape(-1, 4)
+        heads = (
+            ("line", "Line", 16.0),
+            ("track", "Track", 7.0),
+            ("curve", "Curve", 9.0),
+            ("hand", "Hand", 6.0),
+            ("place", "Situation", 12.0),
+        )
+        columns = [
+            LedgerColumn(key, title, "", "", list(values), None, FIXED, None, width)
+            for (key, title, width), values in zip(heads, words, strict=True)
+        ]
+        for i, (key, title, kind, cell) in enumerate(
+            (
+                ("from", "Arc from", "chainage", FIXED),
+                ("to", "Arc to", "chainage", FIXED),
+                ("today", "Cant today", "cant", INPUT),
+                ("D", "Cant to set", "cant", INPUT),
+            )
+        ):
+            columns.append(self._number(key, title, "", kind, numbers[:, i], cell))
+        change = numbers[:, 3] - numbers[:, 2]
+        columns += self._computed(change)
+        rails: list[Value] = [
+            lifted_rail(float(c), row[0][3]) for c, row in zip(change, self._rows, strict=True)  # type: ignore[arg-type]
+        ]
+        columns.append(LedgerColumn("rail", "Rail to lift", "", "", rails, None, FIXED, None, 13.0))
+        orders: list[Value] = [row[2] for row in self._rows]
+        columns.append(LedgerColumn("order", "Order of work", "", "", orders, None, FIXED, None, 60.0))
+        return columns
+
+    def _number(
+        self, key: str, title: str, symbol: str, kind: str, values: Any, cell: str, text: str = "", source: str = ""
+    ) -> LedgerColumn:
+        shown = self._inputs.display[kind]
+        unit = f"{symbol} ({shown.unit})" if symbol else shown.unit
+        formulas = [(text, None)] if text else None
+        return LedgerColumn(
+            key, title, unit, source, values * shown.factor, shown.number_format, cell, formulas, 10.0
+        )
+
+    def _computed(self, change: Any) -> list[LedgerColumn]:
+        inputs, spacing = self._inputs, self._inputs.settings.spacing_mm
+        dD = inputs.canonical(token("dD"), "cant")  # noqa: N806  # the symbol of the trade
+        columns = [
+            self._number(
+                "dD", "Change", "dD", "cant", change, FORMULA, f"{token('D')}-{token('today')}", "to set less today"
+            ),
+            self._number("lift", "Lift", "", "cant", np.abs(change), FORMULA, f"ABS({token('dD')})", "of the rail"),
+            self._number(
+                "rise",
+                "Rise of the centre line",
+                CATALOGUE["rise_of_centre"].symbol,
+                "cant exact",
+                rise_of_centre(change),
+                FORMULA,
+                inputs.shown(CATALOGUE["rise_of_centre"].text(dD=dD), "cant exact"),
+                CATALOGUE["rise_of_centre"].source,
+            ),
+        ]
+        for key, (title, height) in HEIGHTS.items():
+            text = CATALOGUE["lateral_shift"].text(h=inputs.cell(key), dD=dD, e=inputs.cell("spacing"))
+            columns.append(
+                self._number(
+                    key,
+                    f"Shift at {title}",
+                    CATALOGUE["lateral_shift"].symbol,
+                    "cant exact",
+                    lateral_shift(change, height, spacing),
+                    FORMULA,
+                    inputs.shown(text, "cant exact"),
+                    CATALOGUE["lateral_shift"].source,
+                )
+            )
+        return columns
+
+
+def _order_of_work(record: Record) -> str:
+    down = record["recommended_cant_mm"] < record["existing_cant_mm"]
+    slow = [
+        entry["class"]
+        for entry in record["classes"]
+        if entry["run_speed_kmh"] is not None and entry["run_speed_kmh"] < entry["speed_kmh"] - 1e-6
+    ]
+    first = "Speed before track: prove or lower the speeds, then lift the inner rail." if down else (
+        "Track before speed: lift the outer rail, then raise speeds."
+    )
+    if slow and not down:
+        first = "Lift the outer rail; no higher speed before."
+    return first + (f" Lower {', '.join(slow)} first: see the speed changes." if slow else "")
+
+
+def _number(value: float | None) -> float:
+    return float("nan") if value is None else value
+
+
+_RAMP_HEADS = (
+    ("Line", 16.0, ""),
+    ("Track", 7.0, ""),
+    ("Curve", 9.0, ""),
+    ("End", 6.0, ""),
+    ("Station", 11.0, "chainage"),
+    ("Cant today", 10.0, "cant exact"),
+    ("Cant to set", 10.0, "cant exact"),
+    ("Lift", 9.0, "cant exact"),
+    ("Rail to lift", 12.0, ""),
+)
+
+
+class RampValues:
+    """Cant along the ramps of changed curves, at round chainages.
+
+    Parameters
+    ----------
+    book : NewSheets
+    name : str
+    display : Display
+    plan : Plan
+    """
+
+    def __init__(self, book: NewSheets, name: str, display: Display, plan: Plan, rule: str) -> None:
+        self._plan = plan
+        self._display = display
+        self._sheet = book.table(name)
+        self._spacing = 10.0 if display.units == "metric" else 31.0 / 3.280839895
+        step = "10 m" if display.units == "metric" else "31 ft"
+        self._sheet.paragraph(
+            f"Cant along the cant ramps of changed curves, every {step} (half of that on ramps below six steps) and "
+            "at both ends, with the shape of the transition. Cant is that of the curve named: positive with its "
+            "outer rail high, negative in the other curve of a reverse. Ramps whose length or chainage is not "
+            f"known are left out. {rule}",
+            9,
+            105,
+        )
+        heads = []
+        for title, width, kind in _RAMP_HEADS:
+            shown = display[kind] if kind else None
+            unit = f" ({shown.unit})" if shown else ""
+            heads.append(Heading(title + unit, width, shown.number_format if shown else None))
+        self._sheet.header(heads, keep=3)
+
+    def write(self, curves: list[int]) -> None:
+        """Write the ramps of some curves, those whose cant changes."""
+        outcome = self._plan.outcome
+        after = {int(i): m for m, i in enumerate(outcome.pairs.first)}
+        before = {int(i): m for m, i in enumerate(outcome.pairs.second)}
+        for i in curves:
+            self._end(i, BEFORE, None if i not in before else -1)
+            self._end(i, AFTER, after.get(i))
+
+    def _changes(self, i: int) -> bool:
+        with np.errstate(invalid="ignore"):
+            return bool(abs(self._plan.outcome.cant_mm[i] - self._plan.curves.cant_mm[i]) > _SAME_MM)
+
+    def _end(self, i: int, end: int, pair: int | None) -> None:
+        """Write one ramp; a shared one stands at the curve of the smaller chainage (-1: left to that)."""
+        outcome, curves = self._plan.outcome, self._plan.curves
+        if pair == -1:
+            return
+        other = None if pair is None else int(outcome.pairs.second[pair])
+        if not (self._changes(i) or (other is not None and self._changes(other))):
+            return
+        ramp = float(outcome.neighbourhood.ramp_m[end][i] if pair is None else outcome.pairs.ramp_m[pair])
+        low, high = sorted((float(curves.start_km[i]), float(curves.end_km[i])))
+        if not ramp > 0 or not np.isfinite(low + high):
+            return
+        at = 1000.0 * (low if end == BEFORE else high)
+        out = at - ramp if end == BEFORE else at + ramp
+        sign = 0.0 if other is None else float(curves.hand[other]) * float(curves.hand[i])
+        cants = []
+        for values in (curves.cant_mm, outcome.cant_mm):
+            far = sign * float(values[other]) if other is not None else 0.0
+            cants.append((far, float(values[i])))
+        self._stations(i, end, (out, at), cants)
+
+    def _stations(
+        self, i: int, end: int, ramp: tuple[float, float], cants: list[tuple[float, float]]
+    ) -> None:
+        curves = self._plan.curves
+        spacing = self._spacing if abs(ramp[1] - ramp[0]) >= 6 * self._spacing else self._spacing / 2
+        points = stations(ramp[0], ramp[1], spacing)
+        today, new = (
+            ramp_ordinates(points, ramp[0], ramp[1], far, near, curves.shape[i]) for far, near in cants
+        )
+        turned = bool(self._plan.outcome.neighbourhood.descending[i])
+        side = "in" if (end == BEFORE) != turned else "out"
+        chainage, cant = self._display["chainage"], self._display["cant exact"]
+        hand = {1: "L", -1: "R"}.get(int(curves.hand[i]))
+        for point, old, set_to in sorted(zip(points.tolist(), today.tolist(), new.tolist(), strict=True)):
+            lift = set_to - old
+            rail = "" if not np.isfinite(lift) or abs(lift) < 0.05 else lifted_rail(lift, hand)
+            self._sheet.row(
+                [
+                    curves.line[i],
+                    curves.track[i],
+                    curves.curve[i],
+                    side,
+                    chainage.value(point / 1000.0),
+                    cant.value(old) if np.isfinite(old) else None,
+                    cant.value(set_to),
+                    cant.value(abs(lift)) if np.isfinite(lift) else None,
+                    rail,
+                ]
+            )
