@@ -21,6 +21,7 @@ from cant.reading.meanings import correct, decide, settle_doubles
 from cant.reading.numbers import decimal_mark
 from cant.reading.places import is_track, line_named, track_named
 from cant.reading.quantities import fill
+from cant.reading.ranges import split_ranges
 from cant.reading.records import is_example
 from cant.reading.rows import fill_merged, sift
 from cant.reading.sheet_column import Column
@@ -51,6 +52,7 @@ def read_block(block: Block, context: Context) -> Draft:
     rows, cells = _cells(block)
     columns = decide(block, cells)
     correct(columns, context.answers, block.sheet.name)
+    split_ranges(columns)
     fill_merged(block.sheet, [int(r) for r in rows], columns)
     texts = (str(c) for item in columns for c in item.cells[:2000] if is_text(c))
     decimal = decimal_mark(texts)

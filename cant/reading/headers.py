@@ -83,9 +83,23 @@ def _belongs_below(sheet: Sheet, row: int) -> bool:
     if len(texts) < 2 or has_figures(cells) or is_unit_row(sheet, row):
         return False
     known = sum(
-        score >= 0.4 or _names_unit(str(cells[i])) for i, score in enumerate(scores(cells)) if i in texts
+        score >= 0.4 or _names_unit(str(cells[i])) or fold(str(cells[i])) in lexicon("ends")
+        for i, score in enumerate(scores(cells))
+        if i in texts
     )
-    return known >= max(2, 0.5 * len(texts))
+    return known >= max(2, 0.5 * len(texts)) or _names_under_a_group(sheet, row, texts)
+
+
+def _names_under_a_group(sheet: Sheet, row: int, texts: list[int]) -> bool:
+    """Whether a row names the columns of a title that stands over several, the other cells above it blank."""
+    under = [
+        i
+        for i in texts
+        if i > 0 and is_blank(sheet.value(row - 1, i)) and not is_blank(sheet.value(row - 1, i - 1))
+    ]
+    short = all(len(shown(sheet.value(row, i))) <= 15 for i in texts)
+    follows = row < len(sheet.rows) and has_figures(sheet.rows[row])
+    return bool(under) and short and follows and all(i - 1 in texts for i in under)
 
 
 def is_unit_row(sheet: Sheet, row: int) -> bool:

@@ -10,6 +10,7 @@ from dataclasses import dataclass, field
 
 from cant.files.grid import Sheet, Value
 from cant.reading.headers import has_figures, header_parts, header_rows, heading_score, is_unit_row, scores
+from cant.reading.headings import matches
 from cant.reading.text import fold, is_blank, is_text, shown, squeeze
 
 SEARCHED_ROWS = 120
@@ -148,7 +149,7 @@ def _unheaded(sheet: Sheet, headed: set[int], last: int) -> list[BlockColumn]:
 
 
 def _side_by_side(columns: list[BlockColumn]) -> list[list[BlockColumn]]:
-    """Split columns where the same run of headings starts again."""
+    """Split columns where the same run of headings starts again; columns before the runs belong to each."""
     names = [fold(c.parts[-1]) if c.parts else "" for c in columns]
     start = next((i for i, name in enumerate(names) if name), 0)
     for at in range(start + 3, len(names) - 2):
@@ -159,7 +160,29 @@ def _side_by_side(columns: list[BlockColumn]) -> list[list[BlockColumn]]:
         shared = sum(n in right for n in left)
         if shared >= 3 and shared >= 0.6 * min(len(left), len(right)):
             return [columns[:at], *_side_by_side(columns[at:])]
-    return [columns]
+    return _runs_under_groups(columns, names) or [columns]
+
+
+_GEOMETRY = frozenset({"Radius", "Degree", "Versine"})
+
+
+def _runs_under_groups(columns: list[BlockColumn], names: list[str]) -> list[list[BlockColumn]]:
+    """Split runs of columns that repeat under titles of their own (two tracks) beside shared columns."""
+    for first in range(1, len(names)):
+        group = columns[first].parts[:-1]
+        if not group or columns[first - 1].parts[:-1] == group:
+            continue
+        runs: list[list[BlockColumn]] = []
+        at = first
+        while at < len(names) and columns[at].parts[:-1]:
+            run = [c for c in columns[at:] if c.parts[:-1] == columns[at].parts[:-1]]
+            runs.append(run)
+            at += len(run)
+        tails = [[fold(c.parts[-1]) for c in run] for run in runs]
+        meant = {m.meaning for tail in tails[0] for m in matches(tail)[:1]}
+        if len(runs) > 1 and all(t == tails[0] for t in tails) and len(tails[0]) >= 2 and meant & _GEOMETRY:
+            return [[*columns[:first], *run, *columns[at:]] for run in runs]
+    return []
 
 
 def _title(sheet: Sheet, start: int, first: int) -> list[str]:

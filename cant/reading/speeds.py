@@ -6,6 +6,7 @@ traffic leaves one reading; else it is asked about.
 
 from __future__ import annotations
 
+import re
 from collections.abc import Sequence
 from dataclasses import replace
 
@@ -64,7 +65,8 @@ def _names(draft: Draft, item: Column, parts: int) -> list[str] | None:
         if len(named) == parts:
             return _with_base(draft, item, named)
     tail = [squeeze(p) for p in item.heading.text.split("/")]
-    if parts == 2 and len(tail) == 2 and known_train(fold(tail[1])):
+    letters = {fold(t).removeprefix("v") for t in tail}
+    if parts == 2 and len(tail) == 2 and (known_train(fold(tail[1])) or letters <= set(_LETTERS)):
         first = " ".join(tail[0].split()[-1:])
         return [first, tail[1]]
     if parts != 2:
@@ -127,6 +129,7 @@ def _part(item: Column, position: int, name: str) -> Column:
 
 def settle_speeds(draft: Draft) -> None:
     """Turn speed columns into the line's speed and those of the classes."""
+    _letters_are_categories(draft)
     _lone_speed_is_the_lines(draft)
     ranked: dict[str, tuple[int, int]] = {}
     for item in draft.columns:
@@ -143,6 +146,34 @@ def settle_speeds(draft: Draft) -> None:
                 _note_rival(draft, item, name, values)
             if name not in ranked or rank < ranked[name]:
                 draft.class_speeds[name], ranked[name] = values.copy(), rank
+
+
+_LETTER = re.compile(r"v?[a-z]")
+_LETTERS = {
+    "p": "passenger",
+    "r": "passenger",
+    "f": "freight",
+    "g": "freight",
+    "t": "freight",
+    "n": "freight",
+}
+
+
+def _letters_are_categories(draft: Draft) -> None:
+    """Take two speeds ``P`` and ``F`` (``Vp`` and ``Vt``) for passenger and freight."""
+    traffic = draft.context.traffic
+    trains = [c for c in draft.columns if c.meaning == "Speed" and _LETTER.fullmatch(c.train)]
+    letters = [c.train.removeprefix("v") if len(c.train) == 2 else c.train for c in trains]
+    meant = [_LETTERS.get(letter) for letter in letters]
+    if sorted(str(m) for m in meant) != ["freight", "passenger"] or (
+        "p" not in letters and "r" not in letters
+    ):
+        return
+    own = {*letters, *(c.train for c in trains)}
+    if traffic and any(fold(name) in own for name in traffic.class_names):
+        return
+    for item, category in zip(trains, meant, strict=True):
+        item.train, item.note = str(category), f"{category}, beside the other letter"
 
 
 def _lone_speed_is_the_lines(draft: Draft) -> None:

@@ -16,9 +16,8 @@ from cant.reading.text import fold
 from cant.reading.words import lexicon, meaning_of
 
 _PAIR = re.compile(r"(?P<first>[^/|;]+?)\s*[/|;]\s*(?P<second>[^/|;]+)")
-_HAND_WORD = re.compile(
-    r"^(?:(?P<front>[^\W\d_]{1,9})[\s.:]+)?(?P<body>[^A-Za-z]*\d.*?)(?:[\s.]*(?P<back>[^\W\d_]{1,9})\.?)?$"
-)
+_HAND_BEHIND = re.compile(r"^(?P<body>.*\d.*?)[\s,(]+(?P<word>[^\W\d_]{1,10})\.?\)?$")
+_HAND_BEFORE = re.compile(r"^(?P<word>[^\W\d_]{1,10})[\s.:,]+(?P<body>\S*\d.*)$")
 HANDS = {"L": LEFT, "R": RIGHT}
 
 
@@ -94,14 +93,13 @@ def take_radius(text: str, decimal: str = "") -> Taken:
         return single
     if pair := _take_pair(text, decimal, take_length):
         return pair
-    match = _HAND_WORD.match(text)
-    if match is not None:
-        for word in (match["front"], match["back"]):
-            hand = meaning_of("hands", word) if word else None
-            if hand is not None:
-                bare = take_amount(match["body"].strip(), decimal, "length", "radius")
-                if not bare.problem:
-                    return Taken(bare.value, unit=bare.unit, hand=HANDS[hand])
+    for pattern in (_HAND_BEHIND, _HAND_BEFORE):
+        match = pattern.match(text)
+        hand = meaning_of("hands", match["word"]) if match else None
+        if match is not None and hand is not None:
+            bare = take_amount(match["body"].strip(), decimal, "length", "radius")
+            if not bare.problem:
+                return Taken(bare.value, unit=bare.unit, hand=HANDS[hand])
     return Taken(problem=f"'{text}' is no radius; a number such as 650 belongs there")
 
 

@@ -12,6 +12,7 @@ from cant.reading.words import lexicon
 
 _SPEED_WORDS = frozenset(lexicon("speed_words"))
 _FILLERS = frozenset(lexicon("speed_fillers"))
+_V_LETTER = re.compile(r"v[a-z]")
 _GLUED = re.compile(r"^(?:vmax|v)([^\W\d_]{1,8})$")
 
 
@@ -31,6 +32,8 @@ def train_words(words: str) -> str:
 def says_speed(words: str) -> bool:
     """Whether folded heading words say "speed" in so many words."""
     if not words.isascii() and (words.endswith(("v", "vmax")) or "速度" in words):
+        return True
+    if len(words) > 2 and all(_V_LETTER.fullmatch(token) for token in words.split()):
         return True
     return any(token in _SPEED_WORDS for token in words.split()) or bool(
         words.startswith("v") and train_words(words) != words

@@ -8,13 +8,21 @@ import messy
 import messy_far
 import messy_hard
 import messy_more
+import messy_odd
 import messy_wide
 import pytest
 from messy import Messy
 
 from cant.model.reading import Reading
 
-LISTS = [*messy.LAYOUTS, *messy_more.LAYOUTS, *messy_hard.LAYOUTS, *messy_wide.LAYOUTS, *messy_far.LAYOUTS]
+LISTS = [
+    *messy.LAYOUTS,
+    *messy_more.LAYOUTS,
+    *messy_hard.LAYOUTS,
+    *messy_wide.LAYOUTS,
+    *messy_far.LAYOUTS,
+    *messy_odd.LAYOUTS,
+]
 
 
 def read_values(reading: Reading, index: int) -> dict[str, Any]:

@@ -10,6 +10,7 @@ import messy
 import messy_far
 import messy_hard
 import messy_more
+import messy_odd
 import messy_wide
 import numpy as np
 import pytest
@@ -28,6 +29,7 @@ LISTS = [
     *messy_hard.LAYOUTS,
     *messy_wide.LAYOUTS,
     *messy_far.LAYOUTS,
+    *messy_odd.LAYOUTS,
 ]
 
 ODD: list[Value] = [
