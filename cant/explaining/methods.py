@@ -22,8 +22,10 @@ from cant.quantities.kinematics import equilibrium_cant, unbalanced_acceleration
 
 FloatArray = npt.NDArray[np.float64]
 
-FEW = 24
-"""Up to so many curves are planned apart; for more the whole line is planned once with each method."""
+SHORT_LINE = 400
+"""A line of so many curves is planned as a whole whatever is asked."""
+ROUND_A_CURVE = 8
+"""A curve planned apart, with what lies around it, costs as much as so many of a whole line."""
 _SAME_MM = 1e-6
 
 
@@ -43,10 +45,29 @@ class Methods:
         self._found: dict[int, list[dict[str, Any]]] = {}
 
     def prepare(self, indices: Sequence[int]) -> None:
-        """Get ready to answer for some curves: many of them cost little more than one."""
-        if self._whole is None and len(indices) > FEW:
-            outcome = self._plan.outcome
+        """Get ready to answer for some curves: many of them cost little more than one.
+
+        A few of a long line are planned apart; for many the whole line is planned once with each method.
+        """
+        wanted = [i for i in indices if i not in self._found and self._plan.outcome.planned[i]]
+        if self._whole is not None or not wanted:
+            return
+        outcome = self._plan.outcome
+        if len(outcome.curves) <= SHORT_LINE + ROUND_A_CURVE * len(wanted):
             self._whole = {method: _Figures(self._with(outcome, method)) for method in METHODS}
+            return
+        entries: dict[int, list[dict[str, Any]]] = {index: [] for index in wanted}
+        for method in METHODS:
+            if method == outcome.settings.method:
+                figures, at = _Figures(outcome), dict(zip(wanted, wanted, strict=True))
+            else:
+                trials = [Trial(index) for index in wanted]
+                answers = try_out(outcome, self._surroundings, trials, method=method)
+                figures = _Figures(answers[0].outcome)
+                at = {index: answer.at[index] for index, answer in zip(wanted, answers, strict=True)}
+            for index in wanted:
+                entries[index].append(self._entry(method, figures, at[index]))
+        self._found |= entries
 
     def of(self, index: int) -> list[dict[str, Any]]:
         """Give an entry for each method, in the order of METHODS; empty for a curve that is not planned.
@@ -57,21 +78,9 @@ class Methods:
         """
         if not self._plan.outcome.planned[index]:
             return []
+        self.prepare([index])
         if self._whole is not None:
             return [self._entry(method, figures, index) for method, figures in self._whole.items()]
-        if index not in self._found:
-            outcome = self._plan.outcome
-            answers = {
-                method: try_out(outcome, self._surroundings, [Trial(index)], method=method)[0]
-                for method in METHODS
-                if method != outcome.settings.method
-            }
-            self._found[index] = [
-                self._entry(method, _Figures(answers[method].outcome), answers[method].at[index])
-                if method in answers
-                else self._entry(method, _Figures(outcome), index)
-                for method in METHODS
-            ]
         return self._found[index]
 
     def verdict(self, entries: Sequence[dict[str, Any]], step_mm: float) -> str:

@@ -69,12 +69,14 @@ def test_within_a_step_they_agree() -> None:
     assert words.methods_verdict(0) == "All methods agree within a step: 110 mm to 115 mm."
 
 
-def test_few_curves_and_the_whole_line_give_the_same() -> None:
-    radii = [600.0 + 37 * i for i in range(40)]
-    made = plan(radii)
+def test_few_curves_and_the_whole_line_give_the_same(monkeypatch: pytest.MonkeyPatch) -> None:
+    made = plan([600.0 + 37 * i for i in range(40)])
     whole, apart = explain(made), explain(made)
     whole.prepare(list(range(40)))
-    for index in (0, 7, 39):
+    monkeypatch.setattr("cant.explaining.methods.SHORT_LINE", 0)
+    apart.prepare([0, 7, 39])
+    assert apart._methods._whole is None
+    for index in (0, 7, 39, 12):
         assert whole.methods(index) == apart.methods(index)
 
 
