@@ -79,6 +79,10 @@ class Passed:
         """Give the same for n places of which only some pass anything."""
         return Passed({key: _spread(over, at, n) for key, over in self.by_rule.items()})
 
+    def gathered(self, begin: npt.NDArray[np.int64]) -> Passed:
+        """Give the same for groups of consecutive places that begin at some of them: the largest of each."""
+        return Passed({key: np.maximum.reduceat(over, begin, axis=-1) for key, over in self.by_rule.items()})
+
     @property
     def count(self) -> FloatArray:
         """Number of limits passed, shape (..., n)."""

@@ -19,6 +19,9 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
+BLOCK = 2048
+"""Curves bounded together: keeps their arrays within the processor's cache."""
+
 
 @dataclass
 class Bounds:
@@ -52,7 +55,20 @@ class Bounds:
 
 def normal_bounds(line: Line) -> Bounds:
     """Give the bounds of every rule at planned speeds and normal values."""
-    return Bounds.of(curve_terms(Asked(line, line.planned_kmh, False)), len(line))
+    parts = []
+    for begin in range(0, max(len(line), 1), BLOCK):
+        part = line.take(np.arange(begin, min(begin + BLOCK, len(line))))
+        parts.append(bounds_at(part, part.planned_kmh))
+    return Bounds(
+        np.concatenate([part.low_mm for part in parts]),
+        np.concatenate([part.high_mm for part in parts]),
+        np.concatenate([part.kept for part in parts]),
+    )
+
+
+def bounds_at(line: Line, speed_kmh: FloatArray) -> Bounds:
+    """Give the bounds of every rule at some speeds (n, k) and normal values."""
+    return Bounds.of(curve_terms(Asked(line, speed_kmh, False)), len(line))
 
 
 def hard_bounds(line: Line, exceptional: bool) -> Bounds:

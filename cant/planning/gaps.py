@@ -49,7 +49,7 @@ def find_gaps(line: Line, pairs: Pairs, curves: CurveList, traffic: Traffic) -> 
     names = traffic.class_names
     findings = []
     for quantity, where in needed(line, pairs).items():
-        if not line.table.has(quantity):
+        if not line.table.may_have_gap(quantity):
             continue
         gap = asked.limit(quantity).gap & where
         for i in np.flatnonzero(gap.any(axis=-1)):

@@ -314,6 +314,8 @@ class _Search:
 
     def _best_of_alike(self, paths: _Paths) -> IntArray:
         """Of the paths that need the same from here on, give the best: indices."""
+        if paths.level.shape[1] == 2:
+            return np.arange(len(paths.level))
         order = self._in_order(paths.measures, paths.level)
         need = np.concatenate([paths.level[:, -2:], paths.before], axis=1)
         seen, _ = _distinct(need[order])

@@ -72,6 +72,11 @@ class _Condition:
     radius_over: float | None
     radius_up_to: float | None
 
+    @property
+    def conditional(self) -> bool:
+        sizes = (self.speed_over, self.speed_up_to, self.radius_over, self.radius_up_to)
+        return any(condition is not None for condition in (self.categories, self.situations, *sizes))
+
     def holds_by_kind(self, category: IntArray, situation: IntArray) -> BoolArray:
         holds: BoolArray = _ALWAYS
         if self.categories is not None:
@@ -230,6 +235,10 @@ class LimitTable:
     def has(self, quantity: str) -> bool:
         """Tell whether the set has any row of a quantity."""
         return bool(self._rows[quantity])
+
+    def may_have_gap(self, quantity: str) -> bool:
+        """Tell whether a quantity can have a gap anywhere: not where a row without any condition holds."""
+        return bool(self._rows[quantity]) and all(row.conditional for row in self._rows[quantity])
 
     def bands(self, quantity: str) -> FloatArray:
         """Give the upper edges of the bands of speed of one quantity [km/h], ascending, the last one inf."""

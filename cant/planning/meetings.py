@@ -17,6 +17,7 @@ from cant.planning.levels import Levels
 from cant.planning.permissible import (
     FASTEST_KMH,
     Permitted,
+    first_alike,
     next_multiple,
     shared_gap,
     slower_after,
@@ -106,10 +107,8 @@ def make_pair_list(meeting: Meeting, levels: Levels, exceptional: bool, also_bro
     return listed
 
 
-def _in_danger(
-    meeting: Meeting, cants: tuple[FloatArray, FloatArray], exceptional: bool
-) -> tuple[IntArray, IntArray]:
-    """Give the transitions and classes that a pair of cants may slow: all rules are worst at the ends."""
+def _in_danger(meeting: Meeting, cants: tuple[FloatArray, FloatArray], exceptional: bool) -> BoolArray:
+    """Tell which classes a pair of cants may slow, (m, k); at the ends all rules are worst."""
     with np.errstate(invalid="ignore"):
         ends = [np.stack([np.fmin.reduce(cant), np.fmax.reduce(cant)])[:, :, None] for cant in cants]
     sure = surely_held(
@@ -119,8 +118,7 @@ def _in_danger(
         exceptional,
     )
     sure = np.broadcast_to(sure, (2, 2, *meeting.both.shape))
-    at, column = np.nonzero(meeting.both & ~sure.all(axis=(0, 1)))
-    return at, column
+    return np.asarray(meeting.both & ~sure.all(axis=(0, 1)))
 
 
 def _ceilings(meeting: Meeting) -> tuple[FloatArray, FloatArray]:
@@ -168,7 +166,9 @@ class _Asked:
         ]
         gap = [np.broadcast_to(there, speeds.shape)[:, 0, :, 0] for there in gaps]
         first = (2, 2 + (len(multiples) - 1) * (most + 1))
-        up_to = [_met(window, gap[end], slice(first[end], first[end] + most + 1)) for end in (0, 1)]
+        up_to = [_met(window, gap[0], slice(first[0], first[0] + most + 1))]
+        alike = first[0] == first[1] and not (gap[0].any() or gap[1].any())
+        up_to.append(up_to[0] if alike else _met(window, gap[1], slice(first[1], first[1] + most + 1)))
         return cls(
             planned=(planned[0][:, 0], planned[1][:, 0]),
             ceiling=(ceiling[0][:, 0], ceiling[1][:, 0]),
@@ -202,26 +202,29 @@ def _permit(
     exceptional: bool,
 ) -> None:
     """Enter what the pairs permit; ``row`` is the row of the level before in its table."""
-    at, column = _in_danger(meeting, cants, exceptional)
-    if not len(at) or not len(listed):
+    danger = _in_danger(meeting, cants, exceptional)
+    if not danger.any() or not len(listed):
         return
-    cant_before = np.nan_to_num(cants[0][:, at])
-    asked = _Asked.of(meeting.unfold(at, column), cant_before, exceptional)
+    # What is found for a class holds for those treated alike; the first of them is in danger with them.
+    first = first_alike(meeting.before, meeting.after)
+    at, column = np.nonzero(danger & (first == np.arange(first.shape[1])))
+    asked = _Asked.of(meeting.unfold(at, column), np.nan_to_num(cants[0][:, at]), exceptional)
     begin = np.searchsorted(listed.transition, np.arange(len(meeting) + 1))
     entry, pair = spread_ranges(begin[at], begin[at + 1])
-    classes = column[entry]
     run = (
-        levels.run_kmh[listed.before[pair], classes],
-        levels.run_kmh[listed.after[pair], classes],
+        levels.run_kmh[listed.before[pair], column[entry]],
+        levels.run_kmh[listed.after[pair], column[entry]],
     )
     shorter = meeting.after.weight_length_m[:, 0] < meeting.before.weight_length_m[:, 0]
     on_after = slower_after(shorter[at][entry], run)
     cant_after = levels.cant_mm[listed.after[pair]]
-    question = _Question(asked, entry, row[pair], cant_after, on_after, run)
-    up_to, held = question.answer()
-    for mine, permitted in ((~on_after, listed.on_before), (on_after, listed.on_after)):
-        permitted.up_to_kmh[pair[mine], classes[mine]] = up_to[mine]
-        permitted.planned[pair[mine], classes[mine]] = held[mine]
+    up_to, held = _Question(asked, entry, row[pair], cant_after, on_after, run).answer()
+    for j in range(first.shape[1]):
+        which = np.flatnonzero(danger[at, j][entry] & (first[at, j] == column)[entry])
+        for mine, permitted in ((~on_after, listed.on_before), (on_after, listed.on_after)):
+            chosen = which[mine[which]]
+            permitted.up_to_kmh[pair[chosen], j] = up_to[chosen]
+            permitted.planned[pair[chosen], j] = held[chosen]
 
 
 def spread_ranges(begin: IntArray, end: IntArray) -> tuple[IntArray, IntArray]:

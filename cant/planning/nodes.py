@@ -19,11 +19,11 @@ from cant.planning.assess import (
     overrun,
     passed_alone,
 )
-from cant.planning.bounds import hard_bounds
+from cant.planning.bounds import bounds_at, hard_bounds
 from cant.planning.grid import Grid
 from cant.planning.lexicographic import first_best, slack
 from cant.planning.line import Line
-from cant.planning.permissible import Permitted, permitted_alone, speed_steps
+from cant.planning.permissible import Permitted, first_alike, permitted_alone, speed_steps
 from cant.planning.rules import AT_LEAST, AT_MOST, Asked, hard_terms, speed_terms
 from cant.planning.targets import Target
 
@@ -145,11 +145,24 @@ def make_nodes(line: Line, grid: Grid, target: Target, exceptional: bool) -> Nod
         square=squares(line, cant, run, target),
         not_compliant=not_compliant,
     )
-    # Approvals count among the levels that lose least time: no others can be chosen for their sake.
-    level, curve = np.nonzero(nodes.cheapest)
-    passed = passed_alone(line.take(curve), cant[level, curve], run[level, curve])
-    nodes.count[level, curve], nodes.overrun[level, curve] = passed.count, passed.total
+    _count_approvals(line, nodes)
     return nodes
+
+
+def _count_approvals(line: Line, nodes: Nodes) -> None:
+    """Enter what is passed at the levels that lose least time: no others can be chosen for its sake."""
+    cheapest = nodes.cheapest
+    every = np.arange(len(line))
+    run = nodes.run_kmh[cheapest.argmax(axis=0), every]
+    # Where the speeds run are the same, bounds tell which levels pass nothing.
+    bounds = bounds_at(line, run)
+    with np.errstate(invalid="ignore"):
+        clean = (nodes.cant_mm >= bounds.low_mm) & (nodes.cant_mm <= bounds.high_mm) & bounds.kept
+    clean &= cheapest & ((nodes.run_kmh == run) | ~line.runs).all(axis=-1)
+    nodes.count[clean], nodes.overrun[clean] = 0.0, 0.0
+    level, curve = np.nonzero(cheapest & ~clean)
+    passed = passed_alone(line.take(curve), nodes.cant_mm[level, curve][:, None], nodes.run_kmh[level, curve])
+    nodes.count[level, curve], nodes.overrun[level, curve] = passed.count, passed.total
 
 
 def _levels(line: Line, grid: Grid, exceptional: bool) -> tuple[FloatArray, BoolArray]:
@@ -186,13 +199,17 @@ def _alone(line: Line, cant_mm: FloatArray, allowed: BoolArray, exceptional: boo
 def _searched(line: Line, cant_mm: FloatArray, wanted: BoolArray, exceptional: bool) -> FloatArray:
     """Search how fast some classes on some curves may run at all levels [km/h]: inf elsewhere."""
     up_to = np.full((*cant_mm.shape[:2], line.classes), np.inf)
+    if not wanted.any():
+        return up_to
+    first = first_alike(line)
+    asked = np.zeros_like(wanted)
+    np.put_along_axis(asked, np.where(wanted, first, first[:, :1]), True, axis=1)
+    curve, column = np.nonzero(asked)
+    steps = speed_steps(line)[curve, column][:, None]
+    found = permitted_alone(line.unfold(curve, column), cant_mm[:, curve], steps, exceptional, as_run=True)
+    up_to[:, curve, column] = found.up_to_kmh[:, :, 0]
     curve, column = np.nonzero(wanted)
-    if len(curve):
-        steps = speed_steps(line)[curve, column][:, None]
-        found = permitted_alone(
-            line.unfold(curve, column), cant_mm[:, curve], steps, exceptional, as_run=True
-        )
-        up_to[:, curve, column] = found.up_to_kmh[:, :, 0]
+    up_to[:, curve, column] = up_to[:, curve, first[curve, column]]
     return up_to
 
 

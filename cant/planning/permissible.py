@@ -21,6 +21,7 @@ from cant.units import GRAVITY_MS2, KMH_PER_MS
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
+IntArray = npt.NDArray[np.int64]
 
 FASTEST_KMH = 400.0
 DEFAULT_SPEED_STEP_KMH = 5.0
@@ -70,6 +71,26 @@ def speed_steps(line: Line) -> FloatArray:
         radius=line.radius_m,
     ).value
     return np.where(np.isfinite(step) & (step > 0), step, DEFAULT_SPEED_STEP_KMH)
+
+
+def first_alike(*lines: Line) -> IntArray:
+    """Give for each class the first one that the speed rules treat alike on a curve, shape (n, k).
+
+    On several lines of n curves each: alike on all of them. Such classes have the same permissible speeds at
+    the same cants, so these are searched once.
+    """
+    n, k = lines[0].runs.shape
+    first = np.tile(np.arange(k), (n, 1))
+    for c in range(k):
+        for d in range(c - 1, -1, -1):
+            alike: BoolArray = np.ones(n, dtype=np.bool_)
+            for line in lines:
+                for part in (line.planned_kmh, line.category):
+                    alike &= part[:, c] == part[:, d]
+                roll = line.roll[:, [c, d]]
+                alike &= (roll[:, 0] == roll[:, 1]) | np.isnan(roll).all(axis=1)
+            first[alike, c] = d
+    return first
 
 
 def next_multiple(speed_kmh: FloatArray, step_kmh: FloatArray) -> FloatArray:
@@ -124,7 +145,24 @@ def _root_of_rate(cant_mm: FloatArray, line: Line, ceiling: FloatArray) -> Float
     return root
 
 
-def _fastest_in_band(line: Line, cant_mm: FloatArray, asked: Asked) -> FloatArray:
+class _Roots:
+    """Roots of the rate of deficiency at some cants: bands and ends of one limit and length share theirs."""
+
+    def __init__(self, line: Line, cant_mm: FloatArray) -> None:
+        self._line, self._cant_mm = line, cant_mm
+        self._found: list[tuple[FloatArray, FloatArray]] = []
+
+    def under(self, ceiling: FloatArray) -> FloatArray:
+        """Give the speed [km/h] at which the rate, times what makes it mm km/h, reaches a ceiling."""
+        for known, root in self._found:
+            if np.array_equal(known, ceiling):
+                return root
+        root = _root_of_rate(self._cant_mm, self._line, ceiling)
+        self._found.append((ceiling, root))
+        return root
+
+
+def _fastest_in_band(line: Line, cant_mm: FloatArray, asked: Asked, roots: _Roots) -> FloatArray:
     """Give the highest speed at which the rules of the curve hold with a band's limits [km/h]."""
     deficiency = asked.limit("cant deficiency")
     allowed = deficiency.value + deficiency.tolerance
@@ -142,11 +180,11 @@ def _fastest_in_band(line: Line, cant_mm: FloatArray, asked: Asked) -> FloatArra
     fastest = np.sqrt(np.maximum(unbalanced, 0.0) * line.radius_m / line.constant)
     fastest = np.where(unbalanced < 0, -1.0, fastest)
     for end in (BEFORE, AFTER):
-        fastest = np.minimum(fastest, _fastest_over_end(line, cant_mm, asked, end))
+        fastest = np.minimum(fastest, _fastest_over_end(line, cant_mm, asked, end, roots))
     return fastest
 
 
-def _fastest_over_end(line: Line, cant_mm: FloatArray, asked: Asked, end: int) -> FloatArray:
+def _fastest_over_end(line: Line, cant_mm: FloatArray, asked: Asked, end: int, roots: _Roots) -> FloatArray:
     fastest: FloatArray = np.full((1, 1), np.inf)
     ramp, length = line.ramp_m[end], line.transition_m[end]
     known, long = ~np.isnan(ramp), length > 0
@@ -158,8 +196,7 @@ def _fastest_over_end(line: Line, cant_mm: FloatArray, asked: Asked, end: int) -
         if long.any():
             rate = asked.limit("rate of change of cant deficiency")
             ceiling = (rate.value + rate.tolerance) * KMH_PER_MS * length / line.factor
-            root = _root_of_rate(cant_mm, line, np.where(long, ceiling, np.inf))
-            fastest = np.minimum(fastest, root)
+            fastest = np.minimum(fastest, roots.under(np.where(long, ceiling, np.inf)))
     return fastest
 
 
@@ -190,13 +227,14 @@ def permitted_alone(
     shape = np.broadcast_shapes(cant_mm.shape, line.runs.shape)
     up_to = np.zeros(shape)
     alive = np.ones(shape, dtype=np.bool_)
+    roots = _Roots(line, cant_mm)
     planned = np.nan_to_num(line.planned_kmh)
     enough = next_multiple(planned, steps).max(initial=0.0) if as_run else FASTEST_KMH
     for low, high in _bands(line):
         if low >= enough:
             break
         asked = Asked(line, np.full((1, 1), high), exceptional)
-        fastest = _fastest_in_band(line, cant_mm, asked)
+        fastest = _fastest_in_band(line, cant_mm, asked, roots)
         gap = gap_at(asked)
         fastest = np.where(gap & (planned < high), np.minimum(fastest, planned), fastest)
         last = np.floor(high / steps + _SLACK)

@@ -19,15 +19,22 @@ from cant.planning.chain_choice import Stage, best_paths, by_length
 from cant.planning.line import Line
 from cant.planning.neighbours import Pairs
 from cant.planning.nodes import Nodes
-from cant.planning.permissible import Permitted, next_multiple, shared_gap, slows_after, speed_steps
+from cant.planning.permissible import (
+    Permitted,
+    first_alike,
+    next_multiple,
+    shared_gap,
+    slows_after,
+    speed_steps,
+)
 from cant.planning.shared import Meeting, SharedAsked
-from cant.planning.windows import Window, allowed_after, hard_window, speed_windows
+from cant.planning.windows import Window, hard_window, speed_windows
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-TOGETHER = 200
+TOGETHER = 100
 """Chains that step together: keeps the arrays of a step within the processor's cache."""
 _SLACK = 1e-9
 
@@ -123,20 +130,46 @@ def _meet(stage: Stage, meeting: Meeting, before: _Cheap, after: _Cheap, excepti
     window = hard_window(SharedAsked(meeting, meeting.planned_kmh, exceptional), cants)
     window = window.within(at_run.over_classes()).within(below)
     allowed = window.holds(after.cant_mm) & stage.possible[:, None, :] & after.possible
-    normal = allowed_after(SharedAsked(meeting, run, False), cants).holds(after.cant_mm)
     stage.pair_allowed = allowed
     stage.pair_measures = [None, None, None, None]
-    passing = np.flatnonzero((allowed & ~normal).any(axis=(0, 1)))
+    passing, at, column = _passing(meeting, run, cants, window, after)
     if len(passing):
+        cants_after = after.cant_mm[None]
         passed = passed_shared(
-            meeting.take(passing),
-            (cants[:, None, passing], after.cant_mm[None][:, :, passing, None]),
-            run[passing],
-        )
+            meeting.unfold(at, column),
+            (cants[:, None, at], cants_after[:, :, at, None]),
+            run[at, column][:, None],
+        ).gathered(np.searchsorted(at, passing))
         count, total = np.zeros(allowed.shape), np.zeros(allowed.shape)
         count[:, :, passing], total[:, :, passing] = passed.count, passed.total
         stage.pair_measures = [count, total, None, None]
     return sure
+
+
+def _passing(
+    meeting: Meeting, run_kmh: FloatArray, cants_mm: FloatArray, window: Window, after: _Cheap
+) -> tuple[IntArray, IntArray, IntArray]:
+    """Find the transitions over which an allowed pair may pass a normal limit, and for which classes.
+
+    Returns
+    -------
+    passing : ndarray of int
+        Transitions.
+    at, column : ndarray of int
+        Transitions again, with a class each: of those treated alike one. One class where none runs on both.
+    """
+    low = np.maximum(window.low, np.where(after.possible, after.cant_mm, np.inf).min(axis=0))
+    high = np.minimum(window.high, np.where(after.possible, after.cant_mm, -np.inf).max(axis=0))
+    asked = SharedAsked(meeting, run_kmh, False)
+    hard, each = hard_window(asked, cants_mm), speed_windows(asked, cants_mm)
+    outside_hard = ((low <= high) & ((hard.low > low) | (hard.high < high))).any(axis=0)
+    low, high = low[:, :, None], high[:, :, None]
+    outside = ((low <= high) & ((each.low > low) | (each.high < high))).any(axis=0)
+    both = meeting.both
+    danger = both & (outside | outside_hard[:, None])
+    danger[:, 0] |= outside_hard & ~both.any(axis=1)
+    at, column = np.nonzero(danger & (first_alike(meeting.before, meeting.after) == np.arange(both.shape[1])))
+    return np.unique(at), at, column
 
 
 def _below_run_speed(
