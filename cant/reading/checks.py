@@ -8,7 +8,6 @@ from __future__ import annotations
 import numpy as np
 
 from cant.model.curves import DOES_NOT_RUN, BoolArray
-from cant.model.traffic import Traffic
 from cant.reading.draft import Draft
 
 LARGEST_CANT_MM = 300.0
@@ -191,21 +190,3 @@ def _twice(draft: Draft, index: int, other: Draft, at: int, word: str, hidden: b
         word == "already" or index not in draft.problems
     ):
         draft.fail(index, draft.column("Curve"), text)
-
-
-def check_speeds(drafts: list[Draft], traffic: Traffic | None) -> None:
-    """Find rows on which a class has no planned speed: neither its own, nor the row's, nor the line's."""
-    if traffic is None or all(row.speed_kmh is not None for row in traffic.rows):
-        return
-    for draft in drafts:
-        slow = np.flatnonzero(np.isnan(draft.numbers["speed_kmh"]))
-        on: dict[tuple[str, str], list[str]] = {}
-        for index in (int(i) for i in slow if int(i) not in draft.problems):
-            key = draft.line[index], draft.track[index]
-            if key not in on:
-                on[key] = [name for name, row in traffic.on(*key).items() if row.speed_kmh is None]
-            for name in on[key]:
-                given = draft.class_speeds.get(name)
-                if given is None or np.isnan(given[index]):
-                    why = f"no speed for class '{name}': neither the class, the row nor the line has one"
-                    draft.fail(index, draft.column("Speed"), why)

@@ -16,10 +16,10 @@ from cant.files.grid import Sheet, Workbook
 from cant.model.limits import LimitSet
 from cant.model.reading import ColumnReading, Reading, SheetReading
 from cant.model.settings import METHODS, Settings
-from cant.model.traffic import Traffic
+from cant.model.traffic import Traffic, TrainClass
 from cant.model.turnouts import Turnout
 from cant.reading.answers import answers_from
-from cant.reading.checks import check_duplicates, check_speeds
+from cant.reading.checks import check_duplicates
 from cant.reading.curve_sheets import column_readings, join, read_sheet, sheet_readings, tell_sheets_apart
 from cant.reading.draft import Context, Draft
 from cant.reading.layout import find_blocks
@@ -95,7 +95,6 @@ def read_workbook(
     drafts = _read_curves(roles["curves"], workbook, context)
     tell_sheets_apart(drafts)
     check_duplicates(drafts)
-    check_speeds(drafts, tables.traffic)
     _need_class_speeds(tables.traffic, drafts)
     return Reading(
         file=workbook.file,
@@ -236,22 +235,24 @@ def _read_curves(sheets: list[Sheet], workbook: Workbook, context: Context) -> l
 
 
 def _need_class_speeds(traffic: Traffic | None, drafts: list[Draft]) -> None:
-    """Refuse a class without speed, unless every usable curve row gives that class's speed."""
-    if traffic is None:
+    """Refuse a class without speed, unless every usable curve row on which it runs gives that class's speed."""
+    if traffic is None or all(row.speed_kmh is not None for row in traffic.rows):
         return
-    for row in traffic.rows:
-        if row.speed_kmh is not None:
-            continue
-        for draft in drafts:
-            given = draft.class_speeds.get(row.name, np.full(len(draft), np.nan))
-            usable = np.ones(len(draft), dtype=np.bool_)
-            usable[list(draft.problems)] = False
-            if np.any(np.isnan(given) & usable):
-                message = (
-                    f"class '{row.name}' has no speed, and not every curve row gives it; fill in Speed, or a "
-                    f"column 'Speed {row.name}' with a value in each row"
-                )
-                raise InputError(message, row.place)
+    for draft in drafts:
+        usable = [index for index in range(len(draft)) if index not in draft.problems]
+        on: dict[tuple[str, str], list[TrainClass]] = {}
+        for index in usable:
+            key = draft.line[index], draft.track[index]
+            if key not in on:
+                on[key] = [row for row in traffic.on(*key).values() if row.speed_kmh is None]
+            for row in on[key]:
+                given = draft.class_speeds.get(row.name)
+                if given is None or np.isnan(given[index]):
+                    message = (
+                        f"class '{row.name}' has no speed, and not every curve row gives it (row "
+                        f"{draft.rows[index]} does not); fill in Speed, or a column 'Speed {row.name}'"
+                    )
+                    raise InputError(message, row.place)
 
 
 def _others(sheets: list[Sheet]) -> list[SheetReading]:

@@ -328,3 +328,15 @@ def test_frames_and_sheets_are_read_alike() -> None:
 def test_a_frame_with_a_named_index_gives_its_index_as_a_column() -> None:
     frame = pd.DataFrame({"Curve": ["1"], "Radius": [500]}).set_index("Curve")
     assert sheet_from_frame(frame, "Curves").rows == [["Curve", "Radius"], ["1", 500.0]]
+
+
+def test_a_class_without_speed_is_refused_also_where_the_list_has_no_speeds_at_all() -> None:
+    traffic = [*TRAFFIC[:1], ["Fast", "passenger", None, 1.0, None, None, None, None]]
+    with pytest.raises(InputError, match="class 'Fast' has no speed"):
+        read_workbook(book(Curves=[row[:-1] for row in CURVES], Traffic=traffic))
+
+
+def test_a_class_without_speed_on_another_track_asks_for_nothing_here() -> None:
+    traffic = [*TRAFFIC[:2], ["Ore", "mineral", None, 1.0, None, None, "A", "2"]]
+    reading = read_workbook(book(Curves=CURVES, Traffic=traffic))
+    assert not reading.rejected
