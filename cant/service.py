@@ -16,7 +16,7 @@ import pandas as pd
 
 from cant import limit_sets
 from cant.errors import InputError, Place
-from cant.explaining import explain
+from cant.explaining import Decision, Inputs, apply, explain, read_decision
 from cant.files.grid import Workbook
 from cant.files.open import open_workbook
 from cant.model.limits import LimitSet
@@ -40,6 +40,7 @@ __all__ = [
     "limits_named",
     "make_plan",
     "plan_frames",
+    "plan_option",
     "read_curves",
     "reading_json",
     "reading_text",
@@ -152,6 +153,35 @@ def make_plan(
         progress=progress,
     )
     return PlannedLine(reading, plan, explain(plan))
+
+
+def plan_option(planned: PlannedLine, decision: Decision | Mapping[str, Any]) -> PlannedLine:
+    """Plan a line again with a decision taken, such as an option of a curve holds.
+
+    Parameters
+    ----------
+    planned : PlannedLine
+        The plan as it is; it stays so.
+    decision : Decision or mapping
+        ``option["decision"]`` of a record, or one that was read.
+
+    Returns
+    -------
+    PlannedLine
+        The plan with it. Its reading holds the changed curve list, its settings the tiers that it needs.
+
+    Raises
+    ------
+    InputError
+        The mapping is no decision, or it is of another list.
+    """
+    taken = decision if isinstance(decision, Decision) else read_decision(decision)
+    plan, reading = planned.plan, planned.reading
+    inputs = apply(
+        taken, Inputs(plan.curves, plan.traffic, plan.limits, plan.settings, tuple(reading.turnouts))
+    )
+    changed = replace(reading, curves=inputs.curves)
+    return make_plan(changed, traffic=inputs.traffic, limits=inputs.limits, settings=inputs.settings)
 
 
 def settings_for(settings: Settings, limits: LimitSet) -> Settings:

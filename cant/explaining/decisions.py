@@ -11,7 +11,7 @@ from dataclasses import dataclass, replace
 from typing import Annotated, Any, Literal
 
 import numpy as np
-from pydantic import BaseModel, ConfigDict, Field
+from pydantic import BaseModel, ConfigDict, Field, ValidationError
 
 from cant.errors import InputError
 from cant.model.curves import CurveList, FloatArray
@@ -135,6 +135,28 @@ class Decision(BaseModel):
     def as_json(self) -> dict[str, Any]:
         """Give the decision as JSON has it; ``Decision.model_validate`` reads it back."""
         return self.model_dump(mode="json")
+
+
+def read_decision(data: Mapping[str, Any]) -> Decision:
+    """Read a decision as JSON has it.
+
+    Parameters
+    ----------
+    data : mapping
+        As :meth:`Decision.as_json` gives it, and as an option of a plan holds it.
+
+    Raises
+    ------
+    InputError
+        It is no decision; says where it is wrong.
+    """
+    try:
+        return Decision.model_validate(data)
+    except ValidationError as error:
+        first = error.errors()[0]
+        where = ".".join(str(part) for part in first["loc"]) or "the whole"
+        message = f"this is no decision of a plan: {where}: {first['msg']}"
+        raise InputError(message) from error
 
 
 @dataclass(frozen=True)

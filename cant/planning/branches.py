@@ -119,9 +119,12 @@ def place_turnouts(
     """
     placed: dict[int, list[int]] = {}
     findings = []
+    usable = ~curves.rejected & np.isfinite(curves.radius_m)
     for number, turnout in enumerate(turnouts):
-        name = turnout.name or f"of row {turnout.place.row}" if turnout.place.row else turnout.name
-        at = _curves_of(turnout, curves)
+        name = turnout.name or (
+            f"of row {turnout.place.row}" if turnout.place.row else f"number {number + 1}"
+        )
+        at = _curves_of(turnout, curves, usable)
         if len(at) != 1:
             where = "no curve" if not at else f"{len(at)} curves"
             text = f"Turnout {name} lies in {where} of the list by its line, track, curve or chainage: "
@@ -134,31 +137,33 @@ def place_turnouts(
     return placed, findings
 
 
-def _curves_of(turnout: Turnout, curves: CurveList) -> list[int]:
-    found = []
-    for i in range(len(curves)):
-        if curves.rejected[i] or not np.isfinite(curves.radius_m[i]):
-            continue
-        if (turnout.line and turnout.line != curves.line[i]) or (
-            turnout.track and turnout.track != curves.track[i]
-        ):
-            continue
-        if turnout.curve:
-            if turnout.curve == curves.curve[i]:
-                found.append(i)
-        elif turnout.chainage_km is not None and _within(turnout.chainage_km, curves, i):
-            found.append(i)
-    if len(found) > 1 and turnout.chainage_km is not None:
-        return [i for i in found if _within(turnout.chainage_km, curves, i, arc=True)]
+def _curves_of(turnout: Turnout, curves: CurveList, usable: BoolArray) -> list[int]:
+    at = turnout.chainage_km
+    if turnout.curve:
+        found = [i for i in np.flatnonzero(usable).tolist() if turnout.curve == curves.curve[i]]
+    else:
+        found = np.flatnonzero(usable & _within(at, curves)).tolist()
+    found = [
+        i for i in found if turnout.line in ("", curves.line[i]) and turnout.track in ("", curves.track[i])
+    ]
+    if len(found) > 1 and at is not None:
+        in_arc = _within(at, curves, arc=True)
+        return [i for i in found if in_arc[i]]
     return found
 
 
-def _within(chainage_km: float, curves: CurveList, i: int, arc: bool = False) -> bool:
-    turned = curves.start_km[i] > curves.end_km[i]
-    ends = (curves.transition_in_m[i], curves.transition_out_m[i])
-    before, after = np.nan_to_num(ends[::-1] if turned else ends) * (0.0 if arc else 0.001)
-    low, high = sorted((curves.start_km[i], curves.end_km[i]))
-    return bool(low - before - 1e-9 <= chainage_km <= high + after + 1e-9)
+def _within(chainage_km: float | None, curves: CurveList, arc: bool = False) -> BoolArray:
+    """Tell on which curves a chainage lies, shape (n,): within the arc, or within its transitions too."""
+    if chainage_km is None:
+        return np.zeros(len(curves), dtype=np.bool_)
+    turned = curves.start_km > curves.end_km
+    ends = np.nan_to_num(np.stack([curves.transition_in_m, curves.transition_out_m])) * (
+        0.0 if arc else 0.001
+    )
+    before, after = np.where(turned, ends[1], ends[0]), np.where(turned, ends[0], ends[1])
+    low, high = np.minimum(curves.start_km, curves.end_km), np.maximum(curves.start_km, curves.end_km)
+    with np.errstate(invalid="ignore"):
+        return np.asarray((low - before - 1e-9 <= chainage_km) & (chainage_km <= high + after + 1e-9))
 
 
 def make_branches(

@@ -14,10 +14,12 @@ from cant.explaining import Decision, Inputs, apply, explain
 from cant.model.curves import CurveList
 from cant.model.limits import LimitRow, LimitSet
 from cant.model.plan import STATUSES
+from cant.model.reading import Reading
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic, TrainClass
 from cant.planning import Plan, plan_line
 from cant.planning.neighbours import chains_of
+from cant.service import make_plan, plan_option
 
 C = 11.8
 HELPED = ("restrict", "not compliant", "exceptional")
@@ -283,3 +285,26 @@ def test_applying_a_decision_leaves_the_tables_as_they_are() -> None:
     assert plan.curves.as_read(0) == before.as_read(0)
     assert plan.curves.class_speeds == {}
     assert plan.settings.tiers == ("normal",)
+
+
+def test_the_service_plans_an_option_in_one_action() -> None:
+    given = planned(720)
+    reading = Reading("list.xlsx", given.curves, given.traffic, given.limits, given.settings)
+    line = make_plan(reading)
+    for option in line.record(0)["options"]:
+        after = plan_option(line, json.loads(json.dumps(option["decision"])))
+        assert after.record(0)["status"] == option["status"]
+        assert after.record(0)["recommended_cant_mm"] == option["cant_mm"]
+    with pytest.raises(InputError, match="no decision of a plan: changes"):
+        plan_option(line, {"changes": []})
+
+
+def test_two_curves_of_one_row_are_told_apart() -> None:
+    """Lists with blocks side by side: one row holds a curve of either track."""
+    curve = {"curve": "1", "row": 2, "radius_m": 720.0, "hand": "L", "start_km": 1.0, "end_km": 1.4}
+    curves = CurveList.from_rows([{**curve, "track": "up"}, {**curve, "track": "down"}])
+    plan = plan_line(
+        curves, Traffic.of([FAST, SLOW]), LimitSet(name="x", rows=ROWS), Settings(equilibrium_constant=C)
+    )
+    option = explain(plan).options(1)[0]
+    assert replanned(plan, option).status == ["restrict", option["status"]]
