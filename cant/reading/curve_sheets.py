@@ -152,7 +152,7 @@ def _name(draft: Draft, tracks: list[str]) -> None:
     title = [*block.title, *([block.group] if block.group else [])]
     draft.line = _texts(line, count) if line else [line_named(title)] * count
     fallback = block.group if block.group and len(block.group) <= 30 else ""
-    named = fallback or track_named(title) or track_named([block.sheet.name])
+    named = fallback or track_named([*title, *([] if draft.canonical else [block.sheet.name])])
     draft.track = _texts(track, count) if track else [t or named for t in tracks]
     draft.curve = _texts(curve, count)
 
@@ -164,11 +164,19 @@ def _texts(item: Column | None, count: int) -> list[str]:
 
 
 def tell_sheets_apart(drafts: list[Draft]) -> None:
-    """Let the sheet's name be the track, where several sheets hold curves and nothing else names one."""
-    if len({draft.sheet for draft in drafts}) < 2:
+    """Let the sheet's name be the track, where curves of the same name stand on several sheets without one.
+
+    Canonical sheets are never told apart by their names: there the order along the line is by chainage,
+    whatever the sheet.
+    """
+    sheets: dict[tuple[str, str, str], set[str]] = {}
+    for draft in drafts:
+        for key in zip(draft.line, draft.track, draft.curve, strict=True):
+            sheets.setdefault(key, set()).add(draft.sheet)
+    if not any(len(found) > 1 and key[2] for key, found in sheets.items()):
         return
     for draft in drafts:
-        if draft.column("Track") is None:
+        if draft.column("Track") is None and not draft.canonical:
             draft.track = [t or draft.sheet for t in draft.track]
 
 

@@ -235,7 +235,7 @@ def _read_curves(sheets: list[Sheet], workbook: Workbook, context: Context) -> l
 
 
 def _need_class_speeds(traffic: Traffic | None, drafts: list[Draft]) -> None:
-    """Refuse a class without speed, unless every usable curve row on which it runs gives that class's speed."""
+    """Refuse a class without speed, unless every usable row of a track on which it runs gives its speed."""
     if traffic is None or all(row.speed_kmh is not None for row in traffic.rows):
         return
     for draft in drafts:

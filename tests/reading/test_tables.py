@@ -340,3 +340,11 @@ def test_a_class_without_speed_on_another_track_asks_for_nothing_here() -> None:
     traffic = [*TRAFFIC[:2], ["Ore", "mineral", None, 1.0, None, None, "A", "2"]]
     reading = read_workbook(book(Curves=CURVES, Traffic=traffic))
     assert not reading.rejected
+
+
+def test_canonical_sheets_without_a_track_are_one_line_whatever_the_sheet() -> None:
+    first = [[row[i] for i in range(len(row)) if i not in (0, 1)] for row in CURVES]
+    second = [first[0], ["7", *first[1][1:]], ["8", *first[2][1:]]]
+    reading = read_workbook(book(Up=first, Down=second))
+    assert set(reading.curves.track) == {""}
+    assert reading.curves.sheet == ["Up", "Up", "Down", "Down"]
