@@ -2,9 +2,11 @@
 
 from __future__ import annotations
 
+from random import Random
 from typing import Any
 
 import pytest
+from reference.cases import random_case
 
 from cant.model.curves import CurveList
 from cant.model.limits import LimitRow, LimitSet
@@ -12,6 +14,7 @@ from cant.model.settings import Settings
 from cant.model.traffic import Traffic, TrainClass
 from cant.model.turnouts import Turnout
 from cant.planning import Plan, plan_line
+from cant.quantities.turnouts import branch_curvature, branch_deficiency, curvature
 
 C = 11.8
 FAST = TrainClass(name="Fast", category="passenger", speed_kmh=100, trains_per_day=10, mass_t=400)
@@ -171,3 +174,47 @@ def test_today_is_judged_by_the_branch_too() -> None:
 
 def test_without_turnouts_nothing_changes() -> None:
     assert plan([]).record(0) == plan([turnout(300, "R", 25, curve="elsewhere")]).record(0)
+
+
+@pytest.mark.parametrize("first", range(0, 120, 40))
+def test_on_random_lines_every_branch_keeps_its_limits(first: int) -> None:
+    """What the cant does to a branch is worked out by the physics room, not by the planner's rule."""
+    checked = 0
+    for seed in range(first, first + 40):
+        chance, case = Random(seed), random_case(seed)
+        named = [i for i in range(len(case.curves)) if not case.curves.rejected[i]]
+        turnouts = [
+            Turnout(
+                line=case.curves.line[i],
+                track=case.curves.track[i],
+                curve=case.curves.curve[i],
+                radius_m=chance.choice([190.0, 300.0, 500.0, 1200.0]),
+                hand=chance.choice(["L", "R"]),
+                branch_speed_kmh=chance.choice([25.0, 40.0, 60.0]),
+                category=chance.choice(["", "passenger", "freight"]),
+            )
+            for i in named
+            if chance.random() < 0.5
+        ]
+        made = plan_line(*case, turnouts=turnouts)
+        branches = made.outcome.line.branches
+        if branches is None:
+            continue
+        tier = case.settings.allows_exceptional
+        deficiency, excess = (
+            branches.limit(made.outcome.line.table, f"cant {name}", tier).value
+            for name in ("deficiency", "excess")
+        )
+        for i in named:
+            if made.status[i] in ("not compliant", "not assessed") or not branches.there[i, 0]:
+                continue
+            turnout = turnouts[int(branches.number[i, 0])]
+            hand = int(case.curves.hand[i])
+            main = curvature(case.curves.radius_m[i], hand)
+            bend = branch_curvature(main, curvature(turnout.radius_m, 1 if turnout.hand == "L" else -1))
+            unbalance = branch_deficiency(
+                turnout.branch_speed_kmh, bend, hand * made.proposed_mm[i], case.settings.constant
+            )
+            assert -excess[i, 0] - 0.03 <= unbalance <= deficiency[i, 0] + 0.03, (seed, i)
+            checked += 1
+    assert checked > 20

@@ -144,7 +144,7 @@ def _excess_on_straight(scene: Scene) -> Iterator[Notice]:
             f"On {len(found)} curves the cant ramp lies on the straight with more cant than the excess "
             f"limit, up "
             f"to {words.cant(cant[most(found, cant[:, 0]), 0])}.",
-            lambda i: scene.clause(int(row[i, column[i]])),
+            lambda i, _: scene.clause(int(row[i, column[i]])),
         )
 
 

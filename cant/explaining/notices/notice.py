@@ -37,7 +37,7 @@ class Notice:
     whole : str
         One sentence for the whole plan, with the number of curves; "" where each curve says it all.
     clause : callable or None
-        Gives the clause of the limit concerned for a curve.
+        Gives the clause of the limit concerned for a curve and its record (or None).
     whole_severity : str
         Where it differs from that of a curve.
     of_plan : bool
@@ -49,13 +49,13 @@ class Notice:
     curves: IntArray
     say: Callable[[int, Record | None], str]
     whole: str = ""
-    clause: Callable[[int], str] | None = None
+    clause: Callable[[int, Record | None], str] | None = None
     whole_severity: Severity | None = None
     of_plan: bool = False
 
     def finding(self, curve: int, record: Record | None) -> Finding:
         """Give the finding of one curve."""
-        clause = self.clause(curve) if self.clause else ""
+        clause = self.clause(curve, record) if self.clause else ""
         return Finding(self.code, self.severity, self.say(curve, record), curve, clause)
 
     def summary(self) -> Finding | None:

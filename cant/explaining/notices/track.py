@@ -76,7 +76,13 @@ def _today(scene: Scene) -> Iterator[Notice]:
         found,
         say,
         f"On {len(found)} curves today's cant breaks a limit at the planned speeds.",
+        _clause_of_today,
     )
+
+
+def _clause_of_today(_: int, record: Record | None) -> str:
+    breaks = record["today"]["breaks"] if record else []
+    return str(breaks[0]["clause"] or "") if breaks else ""
 
 
 def _movement(scene: Scene) -> Iterator[Notice]:

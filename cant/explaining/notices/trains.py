@@ -76,7 +76,7 @@ def _standing(scene: Scene) -> Iterator[Notice]:
         lambda i, _: f"{scene.names[column[i]]} stands on {words.cant(cant[i])} of cant, all of it excess.",
         f"On {len(found)} curves trains stand on {words.cant(HIGH_CANT_MM)} of cant or more "
         f"({words.cant(cant[worst])} on {scene.label(worst)}).",
-        lambda i: scene.clause(int(row[i, column[i]])),
+        lambda i, _: scene.clause(int(row[i, column[i]])),
     )
 
 
@@ -112,7 +112,7 @@ def _restricted_in_excess(scene: Scene) -> Iterator[Notice]:
                 say,
                 f"On {len(part)} curves a class that is restricted has cant excess there, {kind} "
                 f"({words.exact(excess[most(part, excess)])} on {scene.label(most(part, excess))}).",
-                lambda i: scene.clause(int(row[i, column[i]])),
+                lambda i, _: scene.clause(int(row[i, column[i]])),
             )
 
 
@@ -140,5 +140,5 @@ def _time_on_arc(scene: Scene) -> Iterator[Notice]:
             f"{time[i, column[i]]:.2f} s, less than {wanted[i, column[i]]:.2f} s."
         ),
         f"{len(found)} curves are passed in less time than the limits ask for.",
-        lambda i: scene.clause(int(row[i, column[i]])),
+        lambda i, _: scene.clause(int(row[i, column[i]])),
     )
