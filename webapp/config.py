@@ -6,6 +6,7 @@ that no other module reads the environment.
 
 from __future__ import annotations
 
+import contextlib
 import os
 import secrets
 from collections.abc import Mapping
@@ -81,9 +82,14 @@ class Config:
         path = self.data_directory / KEY_FILE
         if not path.exists():
             self.data_directory.mkdir(parents=True, exist_ok=True)
-            descriptor = os.open(path, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o600)
+            draft = path.with_name(f"{KEY_FILE}-{secrets.token_hex(8)}")
+            descriptor = os.open(draft, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o600)
             with os.fdopen(descriptor, "w", encoding="ascii") as file:
                 file.write(secrets.token_urlsafe(48))
+            # Whole or not at all, and the first of two processes wins.
+            with contextlib.suppress(FileExistsError):
+                os.link(draft, path)
+            draft.unlink()
         return path.read_text(encoding="ascii").strip()
 
     @classmethod

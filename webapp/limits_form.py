@@ -16,7 +16,6 @@ from webapp.forms import Fields
 from webapp.measures import Measures
 
 SPARE_ROWS = 2
-MOST_ROWS = 1000
 QUANTITY_NAMES: tuple[str, ...] = get_args(Quantity)
 KINDS = ("design", "ceiling")
 CONDITIONS: tuple[tuple[str, str], ...] = (

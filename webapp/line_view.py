@@ -9,7 +9,8 @@ from typing import Any
 from flask import url_for
 
 from webapp.computing import Computed
-from webapp.drawings.line import DrawnCurve, LineDrawing, draw_line
+from webapp.drawings.layout import DrawnCurve
+from webapp.drawings.line import LineDrawing, draw_line
 from webapp.measures import Measures
 
 CURVES_A_PAGE = 24

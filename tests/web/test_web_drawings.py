@@ -16,7 +16,8 @@ from cant.model.settings import Settings
 from cant.units import GRAVITY_MS2
 from webapp.computing import Computed
 from webapp.drawings import svg
-from webapp.drawings.line import STRIP_WIDTH, DrawnCurve, draw_line
+from webapp.drawings.layout import STRIP_WIDTH, DrawnCurve
+from webapp.drawings.line import draw_line
 from webapp.drawings.scale import Panel, panel_for, step_for
 from webapp.drawings.section import Acting, acting, draw_section
 from webapp.line_view import CURVES_A_PAGE, page_of_line

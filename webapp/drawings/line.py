@@ -9,71 +9,16 @@ zero line, right-hand ones below.
 from __future__ import annotations
 
 from collections.abc import Callable, Sequence
-from dataclasses import dataclass, field
+from dataclasses import dataclass
 
 from markupsafe import Markup
 
 from webapp.drawings import svg
+from webapp.drawings.layout import LETTER, DrawnCurve, Placed, Strip, lay_out
 from webapp.drawings.scale import Panel, panel_for
 from webapp.measures import Measures
 
-STRIP_WIDTH = 340.0
-PIXELS_PER_METRE = 0.12
-ARC_PIXELS = (46.0, 120.0)
-TRANSITION_PIXELS = (10.0, 34.0)
-STRAIGHT_PIXELS = (14.0, 44.0)
 TOP, CANT_HEIGHT, CURVATURE_HEIGHT, DEFICIENCY_HEIGHT, GAP, FOOT = 34.0, 150.0, 64.0, 110.0, 14.0, 34.0
-LETTER = 6.2
-"""Width of a letter of the drawing [px]."""
-
-
-@dataclass(frozen=True)
-class DrawnCurve:
-    """What the drawing needs of one curve; lengths in m, cants in mm, signed by nothing.
-
-    ``deficiency_mm`` holds for each class the deficiency, or less the excess; None where it does not run.
-    """
-
-    name: str
-    address: str
-    words: str
-    hand: int
-    start_m: float | None
-    end_m: float | None
-    length_m: float | None
-    transition_in_m: float | None
-    transition_out_m: float | None
-    radius_m: float | None
-    today_mm: float | None
-    proposed_mm: float | None
-    lower_mm: float | None
-    upper_mm: float | None
-    status: str
-    shares_with_next: bool
-    deficiency_mm: Sequence[float | None] = ()
-
-
-@dataclass
-class _Placed:
-    """A curve with its places across the strip [px]."""
-
-    curve: DrawnCurve
-    begin: float
-    arc_begin: float
-    arc_end: float
-    end: float
-    joined_before: bool
-    shortened_before: bool = False
-
-
-@dataclass
-class _Strip:
-    """A strip; ``before`` and ``after`` are curves of other strips with which it shares a transition."""
-
-    placed: list[_Placed] = field(default_factory=list)
-    width: float = 0.0
-    before: DrawnCurve | None = None
-    after: DrawnCurve | None = None
 
 
 @dataclass(frozen=True)
@@ -96,7 +41,7 @@ def draw_line(curves: Sequence[DrawnCurve], measures: Measures) -> LineDrawing:
     """
     if not curves:
         return LineDrawing([], False)
-    strips = _lay_out(curves)
+    strips = lay_out(curves)
     cants = [v for c in curves for v in _signed_cants(c)]
     cant = panel_for(TOP, CANT_HEIGHT, cants, measures, "cant")
     bend = Panel(
@@ -112,80 +57,6 @@ def draw_line(curves: Sequence[DrawnCurve], measures: Measures) -> LineDrawing:
     return LineDrawing(drawn, any(p.shortened_before for s in strips for p in s.placed))
 
 
-def _clamp(metres: float | None, bounds: tuple[float, float]) -> float:
-    low, high = bounds
-    return low if metres is None else min(max(metres * PIXELS_PER_METRE, low), high)
-
-
-def _lay_out(curves: Sequence[DrawnCurve]) -> list[_Strip]:
-    strips = [_Strip()]
-    for at, curve in enumerate(curves):
-        before = curves[at - 1] if at else None
-        joined = before is not None and before.shares_with_next
-        straight = None if before is None else _straight_between(before, curve)
-        gap = 0.0 if joined else _clamp(straight, STRAIGHT_PIXELS)
-        lead = _transition_pixels(before.transition_out_m if joined and before else curve.transition_in_m)
-        strip = strips[-1]
-        if strip.placed and strip.width + gap + lead + _room(curves, at) > STRIP_WIDTH:
-            strip = _next_strip(strips, before if joined else None, curve, lead)
-        if not strip.placed:
-            gap = 0.0 if joined else max(gap / 2, STRAIGHT_PIXELS[0])
-            lead = lead / 2 if joined else lead
-        begin = strip.width + gap
-        arc_end = begin + lead + _arc_pixels(curve)
-        tail = 0.0 if curve.shares_with_next else _transition_pixels(curve.transition_out_m)
-        placed = _Placed(curve, begin, begin + lead, arc_end, arc_end + tail, joined)
-        placed.shortened_before = straight is not None and straight * PIXELS_PER_METRE > STRAIGHT_PIXELS[1]
-        strip.placed.append(placed)
-        strip.width = placed.end
-    strips[-1].width += STRAIGHT_PIXELS[0]
-    return strips
-
-
-def _next_strip(strips: list[_Strip], before: DrawnCurve | None, curve: DrawnCurve, lead: float) -> _Strip:
-    """Begin a strip; where a shared transition is cut, each strip shows half of it."""
-    strips[-1].width += STRAIGHT_PIXELS[0] / 2 if before is None else lead / 2
-    if before is not None:
-        strips[-1].after = curve
-    strips.append(_Strip(before=before))
-    return strips[-1]
-
-
-def _room(curves: Sequence[DrawnCurve], at: int) -> float:
-    """Give the width that must still fit: of a whole chain at its first curve where a strip can hold it."""
-    width, here = 0.0, at
-    while True:
-        width += _arc_pixels(curves[here])
-        width += _transition_pixels(curves[here].transition_out_m)
-        if here + 1 == len(curves) or not curves[here].shares_with_next:
-            break
-        here += 1
-    alone = _arc_pixels(curves[at]) + _transition_pixels(curves[at].transition_out_m)
-    first = at == 0 or not curves[at - 1].shares_with_next
-    return (width if first and width < STRIP_WIDTH - STRAIGHT_PIXELS[1] else alone) + STRAIGHT_PIXELS[0]
-
-
-def _arc_pixels(curve: DrawnCurve) -> float:
-    return max(_clamp(_arc_length(curve), ARC_PIXELS), LETTER * min(len(curve.name), 12))
-
-
-def _transition_pixels(metres: float | None) -> float:
-    return 0.0 if not metres else _clamp(metres, TRANSITION_PIXELS)
-
-
-def _arc_length(curve: DrawnCurve) -> float | None:
-    if curve.start_m is not None and curve.end_m is not None:
-        return abs(curve.end_m - curve.start_m)
-    return curve.length_m
-
-
-def _straight_between(before: DrawnCurve, curve: DrawnCurve) -> float | None:
-    if before.end_m is None or curve.start_m is None:
-        return None
-    between = curve.start_m - before.end_m
-    return max(between - (before.transition_out_m or 0.0) - (curve.transition_in_m or 0.0), 0.0)
-
-
 def _side(curve: DrawnCurve) -> int:
     return -1 if curve.hand < 0 else 1
 
@@ -195,7 +66,7 @@ def _signed_cants(curve: DrawnCurve) -> list[float]:
     return [0.0] + [_side(curve) * v for v in values if v is not None]
 
 
-def _draw_strip(strip: _Strip, panels: tuple[Panel, Panel, Panel], measures: Measures, order: int) -> Markup:
+def _draw_strip(strip: Strip, panels: tuple[Panel, Panel, Panel], measures: Measures, order: int) -> Markup:
     cant, bend, deficiency = panels
     width = max(strip.width, 120.0)
     height = deficiency.bottom + FOOT
@@ -247,7 +118,7 @@ def _bends(curve: DrawnCurve) -> float | None:
     return _side(curve) / curve.radius_m if curve.radius_m else None
 
 
-def _permitted(placed: _Placed, panel: Panel) -> Markup:
+def _permitted(placed: Placed, panel: Panel) -> Markup:
     curve, side = placed.curve, _side(placed.curve)
     width = placed.arc_end - placed.arc_begin
     if curve.status == "not assessed":
@@ -263,7 +134,7 @@ def _permitted(placed: _Placed, panel: Panel) -> Markup:
 
 
 def _profiles(
-    strip: _Strip, width: float, panel: Panel, of: Callable[[DrawnCurve], float | None], class_: str
+    strip: Strip, width: float, panel: Panel, of: Callable[[DrawnCurve], float | None], class_: str
 ) -> list[Markup]:
     """Draw a quantity along the strip: level over arcs, ramps over transitions, broken where not known."""
     path: list[svg.Point] = []
@@ -299,7 +170,7 @@ def _add_middle(
         path.append((x, panel.y((before + after) / 2)))
 
 
-def _markers(placed: _Placed, panel: Panel) -> list[Markup]:
+def _markers(placed: Placed, panel: Panel) -> list[Markup]:
     runs = [(i, v) for i, v in enumerate(placed.curve.deficiency_mm) if v is not None]
     width = placed.arc_end - placed.arc_begin
     step = width / (len(runs) + 1)
@@ -309,7 +180,7 @@ def _markers(placed: _Placed, panel: Panel) -> list[Markup]:
     ]
 
 
-def _labels(placed: _Placed, panels: tuple[Panel, Panel, Panel], measures: Measures) -> list[Markup]:
+def _labels(placed: Placed, panels: tuple[Panel, Panel, Panel], measures: Measures) -> list[Markup]:
     curve = placed.curve
     _, bend, deficiency = panels
     middle = (placed.arc_begin + placed.arc_end) / 2
@@ -329,7 +200,7 @@ def _labels(placed: _Placed, panels: tuple[Panel, Panel, Panel], measures: Measu
     return drawn
 
 
-def _link(placed: _Placed, height: float) -> Markup:
+def _link(placed: Placed, height: float) -> Markup:
     """Cover the curve with a link to its page, wide enough for a finger."""
     area = svg.rectangle(
         placed.arc_begin,
