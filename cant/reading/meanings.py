@@ -13,7 +13,7 @@ from cant.files.grid import Value
 from cant.reading.answers import Answers
 from cant.reading.columns import column
 from cant.reading.definitions import definitions
-from cant.reading.headings import Match, analyse, matches
+from cant.reading.headings import Match, analyse, matches, split_unit
 from cant.reading.layout import Block, BlockColumn
 from cant.reading.neighbours import bracketed_trains, continue_speeds, hand_by_values
 from cant.reading.sheet_column import Column
@@ -201,13 +201,18 @@ def _as_speed(result: Column, source: BlockColumn, best: Match | None) -> bool:
 
 def _take_speed(result: Column, source: BlockColumn, train: str) -> bool:
     result.meaning = "Speed"
-    text = squeeze(source.heading)
-    result.literal = bool(train) and text.casefold().startswith("speed ") and len(source.parts) == 1
     result.train = train
-    if train:
+    if not train:
+        return True
+    text = squeeze(source.heading)
+    name, bracket = split_unit(text)
+    whole = name if not bracket or find_unit(bracket) is not None else text
+    result.literal = text.casefold().startswith("speed ") and len(source.parts) == 1
+    if result.literal:
+        result.train_name, result.train_part = whole[6:].strip(), fold(whole[6:])
+    else:
+        result.train_name = _own_words(squeeze(text.split("(")[0].split("[")[0]), train)
         result.train_part = analyse(source.parts[-1]).words
-        bare = squeeze(text.split("(")[0].split("[")[0])
-        result.train_name = bare[6:] if result.literal else _own_words(bare, train)
     return True
 
 

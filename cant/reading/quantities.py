@@ -23,7 +23,7 @@ from cant.reading.scales import (
 )
 from cant.reading.sheet_column import Column
 from cant.reading.site_words import fill_situations
-from cant.reading.speeds import highest_speed, settle_speeds, split_speed_columns
+from cant.reading.speeds import highest_speed, name_classes, settle_speeds, split_speed_columns
 from cant.reading.takers import take_cant, take_length, take_transition
 from cant.reading.text import fold, is_blank, shown, squeeze
 from cant.reading.words import lexicon, meaning_of
@@ -34,6 +34,7 @@ def fill(draft: Draft) -> Evidence:
     _shapes(draft)
     fill_situations(draft)
     _fixed(draft)
+    name_classes(draft)
     if draft.canonical:
         _usual_units(draft)
     apply_legends(draft.columns, draft.block.title)

@@ -17,11 +17,12 @@ from cant.files.grid import Value
 from cant.model.curves import DOES_NOT_RUN, FloatArray
 from cant.reading.cells import NONE, PAIR, Numbers, take_column
 from cant.reading.draft import Draft
-from cant.reading.headings import analyse
+from cant.reading.headings import analyse, split_unit
 from cant.reading.sheet_column import Column
 from cant.reading.takers import take_speed
 from cant.reading.text import fold, is_text, squeeze
 from cant.reading.trains import classes_meant, known_train, ranked_classes
+from cant.units import find_unit
 
 PASSENGER_FREIGHT = "first passenger, second freight"
 LINE_OTHER = "the first is the line speed"
@@ -30,6 +31,20 @@ LINE_OTHER = "the first is the line speed"
 def speed_numbers(draft: Draft, item: Column) -> Numbers:
     """Read the numbers of a speed column as they stand."""
     return take_column(item.cells, lambda text: take_speed(text, draft.decimal))
+
+
+def name_classes(draft: Draft) -> None:
+    """Let ``Speed NAME`` be the speed of the class of just that name, whatever else its words may say."""
+    traffic = draft.context.traffic
+    names = {fold(name) for name in traffic.class_names} if traffic else set()
+    for item in draft.columns:
+        text = squeeze(item.heading.text)
+        words, bracket = split_unit(text)
+        whole = words if not bracket or find_unit(bracket) is not None else text
+        if text.casefold().startswith("speed ") and fold(whole[6:]) in names and item.note != "as told":
+            item.meaning, item.literal, item.confidence, item.note = "Speed", True, "certain", ""
+            item.train = item.train_part = fold(whole[6:])
+            item.train_name = whole[6:].strip()
 
 
 def split_speed_columns(draft: Draft) -> None:

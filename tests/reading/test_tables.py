@@ -348,3 +348,18 @@ def test_canonical_sheets_without_a_track_are_one_line_whatever_the_sheet() -> N
     reading = read_workbook(book(Up=first, Down=second))
     assert set(reading.curves.track) == {""}
     assert reading.curves.sheet == ["Up", "Up", "Down", "Down"]
+
+
+def test_a_class_is_found_by_its_whole_name_also_with_brackets_and_common_words() -> None:
+    traffic: list[list[Value]] = [
+        ["Class", "Category", "Speed"],
+        ["Freight", "freight", 100.0],
+        ["Freight (heavy)", "freight", 80.0],
+        ["Line train", "passenger", 120.0],
+    ]
+    header: list[Value] = ["Speed Freight (heavy) (mph)", "Speed Freight", "Speed Line train"]
+    rows = [[*CURVES[0], *header], [*CURVES[1], 10.0, 60.0, 70.0], [*CURVES[2], "none", 61.0, None]]
+    speeds = read_workbook(book(Curves=rows, Traffic=traffic)).curves.class_speeds
+    assert speeds["Freight (heavy)"].tolist() == [pytest.approx(16.09344), DOES_NOT_RUN]
+    assert speeds["Freight"].tolist() == [60.0, 61.0]
+    assert speeds["Line train"][0] == 70.0
