@@ -16,8 +16,8 @@ from cant.files.open import open_workbook
 from cant.files.rewrite import rows_as_new_workbook, sheet_name_in_new_workbook
 from cant.model.display import Display
 from cant.model.reading import Reading, RejectedRow, SheetReading
-from cant.writing.columns import DECISION, WORDS, Column, Record, class_columns
 from cant.writing.book.status import FILLS, NOT_ASSESSED
+from cant.writing.columns import DECISION, WORDS, Column, Record, class_columns
 from cant.writing.plan_sheets import PlanSheets, footer_of
 from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
 

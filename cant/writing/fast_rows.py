@@ -69,7 +69,7 @@ class FastSheet(Worksheet):  # type: ignore[misc]  # XlsxWriter comes without ty
         self._check_dimensions(row, 0)
         self._check_dimensions(row, max(len(cells) - 1, 0))
 
-    def put_cells(self, row: int, cells: str, width: int) -> None:
+    def put_cells(self, row: int, cells: str, width: int, height: float | None = None) -> None:
         """Write a row whose cells are XML already.
 
         Parameters
@@ -80,9 +80,12 @@ class FastSheet(Worksheet):  # type: ignore[misc]  # XlsxWriter comes without ty
             The cells.
         width : int
             Number of columns that they take.
+        height : float or None
+            Height of the row [points].
         """
         self._write_single_row(row)
-        self.row_data_fh.write(f'<row r="{row + 1}">{cells}</row>')
+        tall = f' ht="{height:g}" customHeight="1"' if height is not None else ""
+        self.row_data_fh.write(f'<row r="{row + 1}"{tall}>{cells}</row>')
         self._check_dimensions(row, 0)
         self._check_dimensions(row, max(width - 1, 0))
 

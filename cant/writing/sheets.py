@@ -99,7 +99,7 @@ class TableSheet:
         sheet, row = self._sheet, self._next
         self._formats = [self._book.cell_format(heading) for heading in headings]
         self._long = [(i, h.width) for i, h in enumerate(headings) if h.is_long]
-        lines = max(_lines(heading.title, heading.width) for heading in headings)
+        lines = max(lines_of(heading.title, heading.width) for heading in headings)
         sheet.set_row(row, LINE_HEIGHT * lines)
         for column, heading in enumerate(headings):
             sheet.set_column(column, column, heading.width)
@@ -121,14 +121,14 @@ class TableSheet:
         if self._next >= MAX_ROWS:
             self.left_out += 1
             return None
-        lines = max((_lines(cells[i], width) for i, width in self._long), default=1)
+        lines = max((lines_of(cells[i], width) for i, width in self._long), default=1)
         height = LINE_HEIGHT * lines if lines > 1 else None
         self._sheet.put_row(self._next, [_cut(value) for value in cells], self._formats, height)
         self._next += 1
         return self._next
 
     def header_rows(
-        self, headings: Sequence[Heading], further: Sequence[Sequence[str]], keep: int, tall: int = 4
+        self, headings: Sequence[Heading], further: Sequence[Sequence[str]], keep: int, tall: int = 6
     ) -> None:
         """Write a header of several rows: the headings, then a row of small text for each of the others.
 
@@ -146,15 +146,15 @@ class TableSheet:
         self.header(headings, keep)
         top = self._next - 1
         for texts in further:
-            lines = [_lines(text, heading.width + 1) for text, heading in zip(texts, headings, strict=True)]
-            self._sheet.set_row(self._next, LINE_HEIGHT * 0.85 * min(max(lines), tall))
+            lines = [lines_of(text, heading.width * 1.15) for text, heading in zip(texts, headings, strict=True)]
+            self._sheet.set_row(self._next, LINE_HEIGHT * 0.78 * min(max(lines), tall) + 2)
             for column, text in enumerate(texts):
                 self._sheet.write_string(self._next, column, text, self._book.small_head)
             self._next += 1
         self._sheet.freeze_panes(self._next, keep)
         self._sheet.repeat_rows(top, self._next - 1)
 
-    def raw_row(self, number: int, cells: str, width: int) -> None:
+    def raw_row(self, number: int, cells: str, width: int, lines: int = 1) -> None:
         """Write a row of cells that are XML already.
 
         Parameters
@@ -165,8 +165,10 @@ class TableSheet:
             The cells.
         width : int
             Number of columns that they take.
+        lines : int
+            Lines of text that the row holds.
         """
-        self._sheet.put_cells(number - 1, cells, width)
+        self._sheet.put_cells(number - 1, cells, width, LINE_HEIGHT * lines if lines > 1 else None)
         self._next = number
 
     def cell_style(self, number_format: str | None, kind: str, width: float) -> int:
@@ -211,7 +213,7 @@ class TableSheet:
     def paragraph(self, text: str, columns: int, width: float = 110.0) -> None:
         """Write a text over several columns of a width together, its row as high as it needs to be."""
         self._sheet.fit_to_pages(1, 0)
-        self._sheet.set_row(self._next, LINE_HEIGHT * _lines(text, width))
+        self._sheet.set_row(self._next, LINE_HEIGHT * lines_of(text, width))
         self._sheet.merge_range(self._next, 0, self._next, columns - 1, text[:MAX_TEXT], self._book.wrapped)
         self._next += 1
 
@@ -282,8 +284,10 @@ class NewSheets:
             look: dict[str, Any] = {"valign": "top", **KINDS.get(kind, {})}
             if number_format is not None:
                 look["num_format"] = number_format
-            if key[2]:
+            elif key[2]:
                 look["text_wrap"] = True
+            else:
+                look["indent"] = 1
             self._styled[key] = self.workbook.add_format(look)
         return self._styled[key]
 
@@ -308,7 +312,7 @@ def _cut(value: Cell) -> Cell:
     return value
 
 
-def _lines(value: Cell, width: float) -> int:
+def lines_of(value: Cell, width: float) -> int:
     """Estimate how many lines a text takes in a column."""
     if not isinstance(value, str):
         return 1

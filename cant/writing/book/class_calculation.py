@@ -7,9 +7,11 @@ import numpy as np
 from cant.quantities import bounds, kinematics
 from cant.quantities.catalogue import CATALOGUE
 from cant.quantities.loads import wheel_load_shift
+from cant.writing.book.end_calculation import EndRows
 from cant.writing.book.frame import Basis, Builder, FloatArray, share, share_text
-from cant.writing.book.ledger import Ledger, token
+from cant.writing.book.ledger import FORMULA, BoolArray, Ledger, token
 from cant.writing.book.limits_sheet import Asking, kind_of
+from cant.writing.book.speed_search import SpeedSearch, deficiency, felt, permissible
 from cant.writing.columns import Cell, governing_text
 
 _RUN = Asking(token("V run"), token("R"), token("category"), token("situation"), "1")
@@ -124,15 +126,7 @@ class ClassCalculation:
             text,
             "as stated here, else the lower of Traffic used and line speed",
         )
-        build.number(
-            "V permissible",
-            "Permissible speed",
-            "V_max",
-            chosen.permissible_kmh,
-            "speed exact",
-            "a search over multiples of the speed step",
-            "fixed",
-        )
+        self._search()
         lowest = f"IF(ISNUMBER({token('V permissible')}),MIN({token('V planned')},{token('V permissible')}),\"\")"
         build.computed(
             "V run", "Run speed", "V", chosen.run_kmh, "speed exact", lowest, "lower of planned and permissible"
@@ -144,6 +138,95 @@ class ClassCalculation:
             by += [governing_text(entry) for entry in entries] or [None] * count
         build.words("V by", "Permissible speed ends by", by, 28.0)
         self._weight()
+
+    def _search(self) -> None:
+        """Add the permissible speed by the class's rules on the curve and over its ends."""
+        chosen, build, basis = self._chosen, self._build, self._basis
+        build.number("step", "Speed step", "", chosen.step_kmh, "speed exact", "limits, else 5 km/h")
+        self._ledger.refer("c.last tier", self._curve_sheet("last tier"), self._curve_rows)
+        line = chosen.line
+        cant, radius = chosen.of_curve(chosen.cant_mm), chosen.of_curve(line.radius_m)
+        cells = (basis.ref("D", "cant exact"), basis.ref("R", "radius"))
+        rules = [deficiency(*cells, basis, cant, radius)]
+        if basis.limits.has("felt acceleration"):
+            rules.append(felt(*cells, token("t.roll"), basis, (cant, radius, chosen.of_class(line.roll))))
+        search = SpeedSearch(basis, chosen.last_tier)
+        asking = Asking(
+            token("V planned"), token("R"), token("category"), token("situation"), token("c.last tier")
+        )
+        every = np.arange(len(chosen.pos))
+        self._failing = np.full(len(every), np.inf)
+        self._broken = np.zeros(len(every), dtype=np.bool_)
+        for rule in rules:
+            self._failing = np.minimum(self._failing, search.failing(rule, every, chosen.step_kmh))
+            self._broken |= search.broken(rule, every, chosen.planned_kmh)
+        build.computed(
+            "fails",
+            "First multiple of the speed step at which deficiency or felt acceleration fails",
+            "V",
+            search.shown(self._failing),
+            "speed exact",
+            f"MIN({','.join(search.failing_text(rule, asking, token('step')) for rule in rules)})",
+            "last tier allowed",
+        )
+        build.computed(
+            "broken",
+            "Planned speed fails on the curve: 1 yes",
+            "",
+            self._broken.astype(np.float64),
+            "count",
+            f"MAX({','.join(search.broken_text(rule, asking) for rule in rules)})",
+            "last tier allowed",
+        )
+        build.number(
+            "V permissible", "Permissible speed", "V_max", chosen.permissible_kmh, "speed exact", "", "fixed"
+        )
+        build.words("V basis", "Permissible speed is", [None] * len(every), 14.0)
+
+    def join_ends(self, ends: Ledger, rows: EndRows, failing: FloatArray, broken: BoolArray) -> None:
+        """Make the permissible speed live where the rules of curve and ends alone give the plan's speed.
+
+        Parameters
+        ----------
+        ends : Ledger
+        rows : EndRows
+        failing, broken : ndarray
+            Of each row of the ends: first failing multiple [km/h], and whether the planned speed fails.
+        """
+        chosen = self._chosen
+        first = np.searchsorted(rows.entry, np.arange(len(chosen.pos)))
+        stop = np.searchsorted(rows.entry, np.arange(len(chosen.pos)), side="right")
+        total, fails = self._failing.copy(), self._broken.copy()
+        np.minimum.at(total, rows.entry, failing)
+        np.logical_or.at(fails, rows.entry, broken)
+        own = permissible(total, chosen.step_kmh, chosen.planned_kmh, fails)
+        live = np.abs(own - chosen.permissible_kmh) < 1e-6
+        for key in ("fails", "broken"):
+            self._ledger.refer(f"e.{key} from", ends.address(key), (ends.first_row + first).tolist())
+            self._ledger.refer(f"e.{key} to", f"${ends.letter(key)}$", (ends.first_row + stop - 1).tolist())
+        shared = np.zeros(len(chosen.pos), dtype=np.bool_)
+        shared[rows.entry[rows.shared]] = True
+        shared[rows.other[rows.shared]] = True
+        basis_words = np.where(live, np.where(shared, "live but for shared ends", "live"), "fixed by the plan")
+        texts: list[tuple[str, BoolArray | None]] = []
+        for ended in (True, False):
+            where = live & ((stop > first) == ended)
+            texts.append((self._permissible_text(ended), where))
+        column = next(c for c in self._ledger.columns if c.key == "V permissible")
+        column.formulas, column.kind = texts, FORMULA
+        column.source = "first failing multiple less one step, at most 400 km/h; the planned speed where it keeps all"
+        column.number_format = "0.0"
+        next(c for c in self._ledger.columns if c.key == "V basis").values = basis_words.tolist()
+
+    def _permissible_text(self, ended: bool) -> str:
+        fails, broken = token("fails"), token("broken")
+        if ended:
+            spans = {key: f"{token(f'e.{key} from')}:{token(f'e.{key} to')}" for key in ("fails", "broken")}
+            fails, broken = f"MIN({fails},{spans['fails']})", f"MAX({broken},{spans['broken']})"
+        step = token("step")
+        fastest = self._basis.inputs.shown("400", "speed exact")
+        multiple = f"MIN({fails}-{step},INT({fastest}/{step}+0.000000001)*{step})"
+        return f"IF({broken}=1,{multiple},MAX({multiple},{token('V planned')}))"
 
     def _weight(self) -> None:
         """Add the weight in the rms speed; by which rule it is weighed is fixed for each curve."""

@@ -73,6 +73,14 @@ class CurveCalculation:
             "count",
             "exceptional where the plan needs it",
         )
+        build.number(
+            "last tier",
+            "Last tier allowed: 1 normal, 2 exceptional",
+            "",
+            chosen.last_tier + 1.0,
+            "count",
+            "for permissible speeds",
+        )
 
     def make_results(self, classes: Ledger, ends: Ledger, rows: EndRows) -> None:
         """Add what follows from the other two sheets."""

@@ -20,6 +20,7 @@ from cant.writing.book.frame import Basis, Builder, FloatArray, share, share_tex
 from cant.writing.book.ledger import BoolArray, Ledger, token
 from cant.writing.book.limits_sheet import Asking, kind_of
 from cant.writing.book.selection import IntArray, Selection
+from cant.writing.book.speed_search import NEVER, SpeedSearch, cant_rate, deficiency_rate, jump
 
 _GRADIENT, _CANT_RATE = "cant gradient", "rate of change of cant"
 _DEFICIENCY_RATE, _ABRUPT = "rate of change of cant deficiency", "abrupt change of cant deficiency"
@@ -111,9 +112,9 @@ class EndCalculation:
         for side, places, entries in (("1", self._first, rows.entry), ("2", self._second, self._other_entry)):
             of_curve = (curves.first_row + places).tolist()
             of_class = (classes.first_row + entries).tolist()
-            for key in ("R", "D", "h", "situation", "tier"):
+            for key in ("R", "D", "h", "situation", "tier", "last tier"):
                 ledger.refer(f"{key} {side}", curves.address(key), of_curve)
-            for key in ("V run", "V planned", "category"):
+            for key in ("V run", "V planned", "category", "step"):
                 ledger.refer(f"{key} {side}", classes.address(key), of_class)
 
     def make(self) -> None:
@@ -123,6 +124,7 @@ class EndCalculation:
         self._changes()
         self._limited()
         self._at_planned_speed()
+        self._failing()
 
     def _names(self) -> None:
         chosen, rows, build = self._chosen, self._rows, self._build
@@ -291,7 +293,7 @@ class EndCalculation:
         ramp, length = (f"N({token(key)})>0" for key in ("Lr", "L"))
         there = f"ISNUMBER({token('V')})"
         k, speed = token("k"), basis.ref("V", "speed exact")
-        dD, dI = (basis.ref(key, "cant exact") for key in ("dD", "dI"))  # noqa: N806
+        dD, dI = (basis.ref(key, "cant exact") for key in ("dD", "dI"))
         build.catalogued(
             "g", "cant_gradient", gradient, "gradient", ramp, k=k, dD=dD, L=basis.ref("Lr", "length")
         )
@@ -420,6 +422,59 @@ class EndCalculation:
             build.computed(
                 key, heading, "L", _where(known, values), "length", texts, "normal limits, planned speed"
             )
+
+    def _failing(self) -> None:
+        """Add where the curve's own rules over the end fail: the first multiple, and the planned speed."""
+        rows, chosen, basis = self._rows, self._chosen, self._basis
+        search = SpeedSearch(basis, chosen.last_tier)
+        radius = chosen.line.radius_m[self._first, 0]
+        cant = chosen.cant_mm[self._first]
+        cells = (basis.ref("D 1", "cant exact"), basis.ref("R 1", "radius"), basis.ref("L", "length"))
+        ramped, long, none = rows.ramp_m > 0, rows.length_m > 0, rows.length_m == 0
+        alone = ~rows.shared
+        asking = Asking(token("Vp"), token("R 1"), token("category 1"), token("situation 1"), token("last tier 1"))
+        rules = (
+            (
+                cant_rate(f"ABS({cells[0]})", basis.ref("Lr", "length"), np.abs(cant), rows.ramp_m, rows.factor),
+                ramped,
+                f"N({token('Lr')})>0",
+            ),
+            (
+                deficiency_rate(cells, basis, (cant, radius, rows.length_m, rows.factor)),
+                long,
+                f"N({token('L')})>0",
+            ),
+            (jump(cells[1], basis, radius), none, f"AND(ISNUMBER({token('L')}),{token('L')}=0)"),
+        )
+        step = chosen.step_kmh[rows.entry]
+        self.failing = np.full(len(rows), np.inf)
+        self.broken = np.zeros(len(rows), dtype=np.bool_)
+        failing_texts, broken_texts = [], []
+        for critical, there, condition in rules:
+            here = there & alone
+            self.failing = np.minimum(self.failing, search.failing(critical, rows.entry, step, here))
+            self.broken |= search.broken(critical, rows.entry, self._planned, here)
+            text = search.failing_text(critical, asking, token("step 1"))
+            failing_texts.append(f"IF({condition},{text},{NEVER:.0f})")
+            broken_texts.append(f"IF({condition},{search.broken_text(critical, asking)},0)")
+        self._build.computed(
+            "fails",
+            "First multiple of the speed step at which a rate fails",
+            "V",
+            np.where(alone, search.shown(self.failing), np.nan),
+            "speed exact",
+            [(f"MIN({','.join(failing_texts)})", alone)],
+            "last tier allowed; to a straight",
+        )
+        self._build.computed(
+            "broken",
+            "Planned speed fails here: 1 yes",
+            "",
+            np.where(alone, self.broken.astype(np.float64), np.nan),
+            "count",
+            [(f"MAX({','.join(broken_texts)})", alone)],
+            "last tier allowed; to a straight",
+        )
 
     def _needed_limits(
         self, quantity: str, cell: str, normal: BoolArray

@@ -10,22 +10,22 @@ from cant.writing.columns import Cell, Record, governing_text
 from cant.writing.sheets import Heading, NewSheets, TableSheet
 
 _EXCEPTION_HEADS = (
-    ("Line", 16.0),
+    ("Line", 14.0),
     ("Track", 7.0),
-    ("Curve", 9.0),
-    ("Limit passed", 26.0),
-    ("Where", 12.0),
-    ("Class", 14.0),
-    ("Value", 9.0),
-    ("Normal limit", 9.0),
+    ("Curve", 8.0),
+    ("Limit passed", 24.0),
+    ("Where", 10.0),
+    ("Class", 12.0),
+    ("Value", 8.0),
+    ("Normal limit", 8.0),
     ("Exceptional limit", 11.0),
-    ("Unit", 8.0),
-    ("Clause", 18.0),
-    ("Kept", 14.0),
-    ("Reason", 50.0),
-    ("Decided by (name)", 16.0),
-    ("Decision", 16.0),
-    ("Date", 11.0),
+    ("Unit", 7.0),
+    ("Clause", 15.0),
+    ("Kept", 12.0),
+    ("Reason", 56.0),
+    ("Decided by (name)", 14.0),
+    ("Decision", 14.0),
+    ("Date", 10.0),
 )
 _PLACES = {"curve": "curve", "between": "shared end", "before": "lower end", "after": "upper end"}
 
@@ -107,9 +107,9 @@ _SPEED_HEADS = (
     ("Speed to set", 9.0, "speed"),
     ("Change", 9.0, "speed"),
     ("At normal limits", 9.0, "speed"),
-    ("Ends by", 34.0, ""),
+    ("Ends by", 40.0, ""),
     ("Order of work", 40.0, ""),
-    ("Reason", 50.0, ""),
+    ("Reason", 44.0, ""),
 )
 
 

@@ -43,7 +43,7 @@ class Basis:
         return self.inputs.canonical(token(name), kind)
 
     @property
-    def C(self) -> str:  # noqa: N802  # the symbol of the trade
+    def C(self) -> str:  # the symbol of the trade
         """Cell of the equilibrium constant."""
         return self.inputs.cell("constant")
 

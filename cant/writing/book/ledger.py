@@ -18,7 +18,7 @@ import numpy.typing as npt
 
 from cant.errors import column_letter
 from cant.writing.fast_rows import cell_text
-from cant.writing.sheets import Heading, TableSheet
+from cant.writing.sheets import LONG_TEXT, Heading, TableSheet, lines_of
 
 Value: TypeAlias = float | str | None
 Values: TypeAlias = Sequence[Value] | npt.NDArray[np.float64]
@@ -131,8 +131,10 @@ class Ledger:
             self._cells(column, number, row_words) for number, column in enumerate(self.columns, start=1)
         ]
         width = len(self.columns)
-        for number, cells in enumerate(zip(*columns, strict=True), start=self.first_row):
-            self.sheet.raw_row(number, "".join(cells), width)
+        long = [c for c in self.columns if c.number_format is None and c.width >= LONG_TEXT]
+        for i, cells in enumerate(zip(*columns, strict=True)):
+            lines = max((lines_of(c.values[i], c.width) for c in long), default=1)
+            self.sheet.raw_row(self.first_row + i, "".join(cells), width, lines)
 
     def _header(self, keep: int) -> None:
         heads = [Heading(c.heading, c.width, c.number_format) for c in self.columns]

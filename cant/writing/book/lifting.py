@@ -109,7 +109,7 @@ class LiftingSchedule:
         ]
         columns.append(LedgerColumn("rail", "Rail to lift", "", "", rails, None, FIXED, None, 13.0))
         orders: list[Value] = [row[2] for row in self._rows]
-        columns.append(LedgerColumn("order", "Order of work", "", "", orders, None, FIXED, None, 60.0))
+        columns.append(LedgerColumn("order", "Order of work", "", "", orders, None, FIXED, None, 70.0))
         return columns
 
     def _number(
@@ -124,7 +124,7 @@ class LiftingSchedule:
 
     def _computed(self, change: Any) -> list[LedgerColumn]:
         inputs, spacing = self._inputs, self._inputs.settings.spacing_mm
-        dD = inputs.canonical(token("dD"), "cant")  # noqa: N806  # the symbol of the trade
+        dD = inputs.canonical(token("dD"), "cant")  # the symbol of the trade
         columns = [
             self._number(
                 "dD", "Change", "dD", "cant", change, FORMULA, f"{token('D')}-{token('today')}", "to set less today"

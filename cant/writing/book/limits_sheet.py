@@ -111,9 +111,22 @@ class LimitsSheet:
         """Give the cells of one column over the rows of a quantity."""
         return self._block(quantity, key)
 
-    def conditions(self, quantity: str, asking: Asking) -> str:
-        """Give the formula that is 1 in the rows that hold, for arrays over the rows of a quantity."""
-        return self._conditions(quantity, asking)
+    def conditions(self, quantity: str, asking: Asking, speed: bool = True) -> str:
+        """Give the formula that is 1 in the rows that hold, without their bands of speed where told so."""
+        return self._conditions(quantity, asking, speed)
+
+    def speed_edges(self, quantity: str) -> tuple[str, str]:
+        """Give the cells of the lower and the upper edges of speed; "" where no row states any."""
+        rows = [row for row in self._rows if row.quantity == quantity]
+        return (
+            self._block(quantity, "speed_over_kmh") if any(r.speed_over_kmh is not None for r in rows) else "",
+            self._block(quantity, "speed_up_to_kmh") if any(r.speed_up_to_kmh is not None for r in rows) else "",
+        )
+
+    @staticmethod
+    def kind(quantity: str) -> str:
+        """Give the kind of number in which a quantity is shown."""
+        return kind_of(quantity)
 
     def values(self, quantity: str, asking: Asking) -> str:
         """Give the formula of the limits of all rows of a quantity."""
@@ -137,7 +150,7 @@ class LimitsSheet:
             return f"({value}+{self._block(quantity, 'slope used')}*{asking.radius})"
         return value
 
-    def _conditions(self, quantity: str, asking: Asking) -> str:
+    def _conditions(self, quantity: str, asking: Asking, speed: bool = True) -> str:
         rows = [row for row in self._rows if row.quantity == quantity]
         parts = []
         if any(row.category for row in rows):
@@ -151,6 +164,8 @@ class LimitsSheet:
             ("radius_over_m", asking.radius, "{0}>{1}+" + _EDGE),
             ("radius_up_to_m", asking.radius, "{0}<={1}+" + _EDGE),
         ):
+            if not speed and key.startswith("speed"):
+                continue
             if any(getattr(row, key) is not None for row in rows):
                 block = self._block(quantity, key)
                 # A blank condition holds always; the sum keeps a blank from counting as the number 0.

@@ -113,6 +113,7 @@ class Pictures:
             )
         raw.merge_range(0, 0, 0, 15, text, self._book.wrapped)
         raw.set_row(0, 32)
+        raw.set_portrait()
         raw.fit_to_pages(1, 0)
         if shown > 1:
             raw.set_h_pagebreaks([1 + _ROWS_OF_CHART * 3 * n for n in range(1, shown)])
@@ -158,6 +159,9 @@ class Pictures:
         self, kind: str, first: int, rows: list[list[Cell]], series: list[tuple[str, int]], is_cant: bool
     ) -> Any:
         chart = self._book.workbook.add_chart({"type": kind})
+        if kind == "line":
+            # Where it is not said, some programs draw a curve through the points.
+            chart._write_c_smooth = lambda smooth: chart._xml_empty_tag("c:smooth", [("val", int(bool(smooth)))])
         sheet = quoted(self._names[1])
         last = first + len(rows) - 1
         for number, (name, column) in enumerate(series):

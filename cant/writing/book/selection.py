@@ -13,6 +13,7 @@ import numpy.typing as npt
 
 from cant.planning import Plan
 from cant.planning.limit_table import LimitAt
+from cant.planning.permissible import speed_steps
 from cant.quantities.kinematics import equilibrium_cant
 
 FloatArray = npt.NDArray[np.float64]
@@ -71,7 +72,11 @@ class Selection:
         Curve (its place among the chosen) and class of each entry.
     tier : ndarray of bool, shape (curves,)
         Whether exceptional values count on the curve.
-    run_kmh, permissible_kmh : ndarray, shape (entries,)
+    last_tier : ndarray of bool, shape (curves,)
+        Whether exceptional values count there for permissible speeds.
+    step_kmh : ndarray, shape (entries,)
+        Speed step.
+    run_kmh, permissible_kmh, lowest_kmh : ndarray, shape (entries,)
         Filled by :meth:`take`; nan until then.
     """
 
@@ -85,9 +90,14 @@ class Selection:
         allowed = outcome.curves.exceptional_allowed
         tier = outcome.exceptional[curves] & outcome.settings.allows_exceptional
         self.tier: BoolArray = tier if allowed is None else tier & allowed[curves]
+        last = np.full(len(curves), outcome.settings.allows_exceptional)
+        self.last_tier: BoolArray = last if allowed is None else last & allowed[curves]
         self.pos, self.column = (part.astype(np.int64) for part in np.nonzero(self.line.runs))
         self.start = np.searchsorted(self.pos, np.arange(len(curves) + 1))
         self.planned_kmh: FloatArray = self.line.planned_kmh[self.pos, self.column]
+        self.step_kmh: FloatArray = np.broadcast_to(speed_steps(self.line), self.line.runs.shape)[
+            self.pos, self.column
+        ]
         self.run_kmh: FloatArray = np.full(len(self.pos), np.nan)
         self.permissible_kmh: FloatArray = np.full(len(self.pos), np.nan)
         self.lowest_kmh: FloatArray = np.full(len(self.pos), np.nan)

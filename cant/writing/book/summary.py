@@ -22,7 +22,7 @@ _WIDTHS = (24.0, 13.0, 26.0, 13.0, 26.0, 26.0)
 _WIDE = sum(_WIDTHS)
 _SHOWN = 7
 _GRAVE = ("not compliant", "restrict", "exceptional")
-_CUT = 260
+_CUT = 420
 
 
 class Summary:
@@ -77,7 +77,7 @@ class Summary:
         raw.print_area(0, 0, self._sheet.next_row - 2, len(_WIDTHS) - 1)
 
     def _text(self, text: str) -> None:
-        self._sheet.paragraph(text, len(_WIDTHS), _WIDE)
+        self._sheet.paragraph(text, len(_WIDTHS), _WIDE * 1.08)
 
     def _heading(self, text: str) -> None:
         self._sheet.skip()
@@ -123,9 +123,11 @@ class Summary:
             look = {"valign": "top", **({"bg_color": f"#{fill}"} if fill else {})}
             self._sheet.raw.write_string(row, 0, status, self._book.workbook.add_format(look))
             self._sheet.raw.write_number(row, 1, counts.get(status, 0), self._book.plain)
-            self._sheet.raw.write_string(row, 2, STATUS_WORDS[status], self._book.plain)
+            self._sheet.raw.write_string(row, 2, STATUS_WORDS[status], self._book.word)
             self._sheet.skip()
-        self._sheet.line("rejected", float(rejected), "rows that cannot be read: see 'Not assessed'")
+        row = self._sheet.next_row - 1
+        self._sheet.raw.write_string(row, 2, "rows that cannot be read: see 'Not assessed'", self._book.word)
+        self._sheet.line("rejected", float(rejected))
 
     def _matters(self) -> None:
         self._heading("What matters most")
