@@ -36,6 +36,9 @@ def decide(block: Block, cells: dict[int, Sequence[Value]]) -> list[Column]:
     """
     said = definitions(block.title)
     columns = [_from_heading(_as_defined(c, said), cells.get(c.index, [])) for c in block.columns]
+    for item in columns:
+        if item.index in block.sheet.hidden_columns and item.meaning:
+            item.confidence, item.note = "likely", "a hidden column"
     continue_speeds(columns)
     bracketed_trains(columns)
     hand_by_values(columns)

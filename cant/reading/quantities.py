@@ -111,6 +111,11 @@ def _existing_of_pairs(item: Column, numbers: Numbers) -> None:
 
 
 def _promote_design_cant(draft: Draft) -> None:
+    start = draft.column("Cant at start")
+    if start is not None and draft.column("Cant") is None and draft.column("Cant at end") is None:
+        start.meaning = "Cant"
+        if not start.unit and fold(start.heading.text).endswith(" in"):
+            start.unit, start.unit_from = "in", "heading"
     design = draft.column("Design cant")
     if design is not None and draft.column("Cant") is None:
         design.meaning, design.confidence = "Cant", "likely"

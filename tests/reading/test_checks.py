@@ -178,3 +178,19 @@ Curve | km from | km to | Radius (m) | Cant (mm) | Speed
     assert question.rows == (2,)
     answers = {"answers": {"Curves": {"Speed": "the first is the line speed"}}}
     assert read(sheet(text), three, answers=answers).curves.speed_kmh.tolist() == [90]
+
+
+def test_a_hidden_column_gives_way_to_a_visible_one() -> None:
+    text = """
+Curve | km from | km to | Radius (m) | Existing cant (mm) | Cant (mm) | Speed (km/h)
+1 | 1.100 | 1.350 | 600 | 100 | 90 | 90
+"""
+    shown, hidden = sheet(text), sheet(text)
+    hidden.hidden_columns = frozenset({4})
+    assert read(shown).curves.cant_mm.tolist() == [100]
+    assert read(hidden).curves.cant_mm.tolist() == [90]
+
+
+def test_cant_in_is_inches_where_no_cant_out_stands_beside_it() -> None:
+    text = "Curve | MP from | MP to | Degree | Cant in | Psgr mph\n1 | 1.1 | 1.3 | 2°15' | 3.5 | 45"
+    assert read(sheet(text)).curves.cant_mm.tolist() == [pytest.approx(88.9)]
