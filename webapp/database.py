@@ -96,7 +96,11 @@ def _engine(url: str) -> Engine:
         event.listen(engine, "connect", _prepare_sqlite)
         return engine
     if url.startswith("postgresql"):
-        return create_engine(url, pool_pre_ping=True)
+        try:
+            return create_engine(url, pool_pre_ping=True)
+        except ModuleNotFoundError as error:
+            message = f"PostgreSQL needs the driver {error.name}: install the package with [postgresql]"
+            raise InputError(message) from error
     message = "plans can be kept in SQLite (sqlite:///file) or PostgreSQL (postgresql://...) only"
     raise InputError(message)
 

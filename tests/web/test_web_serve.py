@@ -148,3 +148,16 @@ def test_configuration_from_the_environment(tmp_path: Path) -> None:
         Config.from_environment({"CANT_KEEP_DAYS": "soon"})
     with pytest.raises(InputError, match="URL"):
         _ = Config(tmp_path, "not a url").database
+
+
+def test_every_variable_is_in_the_readme(root: Path) -> None:
+    read: set[str] = set()
+
+    class Recorder(dict[str, str]):
+        def get(self, key: str, default: str | None = None) -> str | None:  # type: ignore[override]
+            read.add(key)
+            return default
+
+    Config.from_environment(Recorder())
+    text = (root / "README.md").read_text(encoding="utf-8")
+    assert read == set(re.findall(r"`(CANT_[A-Z_]+)` \|", text))

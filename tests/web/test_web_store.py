@@ -150,3 +150,13 @@ def test_unusable_database_is_told_in_one_line(tmp_path: Path) -> None:
         Database(f"sqlite:///{tmp_path / 'plans.sqlite3'}")
     with pytest.raises(InputError, match="SQLite"):
         Database("mysql://somewhere/else")
+
+
+def test_missing_driver_is_told_in_one_line(monkeypatch: pytest.MonkeyPatch) -> None:
+    monkeypatch.setattr("webapp.database.create_engine", missing)
+    with pytest.raises(InputError, match=r"driver nodriver.*\[postgresql\]"):
+        Database("postgresql+psycopg://somewhere/plans")
+
+
+def missing(*_args: object, **_options: object) -> None:
+    raise ModuleNotFoundError(name="nodriver")
