@@ -148,7 +148,9 @@ def _name(draft: Draft, tracks: list[str]) -> None:
     count = len(draft)
     block = draft.block
     line, track = draft.column("Line"), draft.column("Track")
-    curve = draft.column("Curve") or draft.column("Number")
+    curve, number = draft.column("Curve"), draft.column("Number")
+    if curve is None and number is not None:
+        curve, number.meaning, number.confidence = number, "Curve", "likely"
     title = [*block.title, *([block.group] if block.group else [])]
     draft.line = _texts(line, count) if line else [line_named(title)] * count
     fallback = block.group if block.group and len(block.group) <= 30 else ""

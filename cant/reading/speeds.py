@@ -156,6 +156,8 @@ def settle_speeds(draft: Draft) -> None:
             continue
         sure, names = classes_of(draft, item)
         rank = (sure, len(names))
+        if names and draft.context.traffic and [fold(n) for n in names] != [fold(item.train_name)]:
+            item.note = "; ".join(filter(None, (item.note, "speed of " + ", ".join(names))))
         for name in names:
             if name in ranked and rank == ranked[name]:
                 _note_rival(draft, item, name, values)
