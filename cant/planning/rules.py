@@ -168,7 +168,11 @@ class Asked:
 
 
 def _felt_factor(line: Line) -> FloatArray:
-    """Felt acceleration per mm of deficiency [m/s2 per mm], shape (n, k)."""
+    """Felt acceleration per mm of deficiency [m/s2 per mm], shape (n, k); nan without a roll coefficient.
+
+    A class without one is a class that no row of the quantity speaks of (others were refused before): the
+    rules leave it out.
+    """
     return (1.0 + line.roll) * GRAVITY_MS2 / line.spacing_mm
 
 
@@ -217,7 +221,8 @@ def _felt_outwards_terms(asked: Asked) -> Iterator[Terms]:
         return
     balance = equilibrium_cant(asked.speed_kmh, line.radius_m, line.constant)
     factor = _felt_factor(line)
-    yield Terms(FELT_OUTWARDS, factor * balance, -factor, asked.limit("felt acceleration"), line.runs)
+    felt = line.runs & ~np.isnan(line.roll)
+    yield Terms(FELT_OUTWARDS, factor * balance, -factor, asked.limit("felt acceleration"), felt)
 
 
 def _felt_inwards_terms(asked: Asked) -> Iterator[Terms]:
@@ -226,7 +231,8 @@ def _felt_inwards_terms(asked: Asked) -> Iterator[Terms]:
         return
     balance = equilibrium_cant(asked.speed_kmh, line.radius_m, line.constant)
     factor = _felt_factor(line)
-    yield Terms(FELT_INWARDS, -factor * balance, factor, asked.limit("felt acceleration"), line.regular)
+    felt = line.regular & ~np.isnan(line.roll)
+    yield Terms(FELT_INWARDS, -factor * balance, factor, asked.limit("felt acceleration"), felt)
 
 
 def _branch_terms(asked: Asked) -> Iterator[Terms]:
