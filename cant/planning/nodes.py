@@ -31,7 +31,7 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-BLOCK = 128
+BLOCK = 256
 """Curves evaluated together: keeps the arrays of a block within the processor's cache."""
 
 
