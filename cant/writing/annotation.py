@@ -9,7 +9,8 @@ from collections.abc import Callable
 from dataclasses import dataclass, field
 from typing import TYPE_CHECKING
 
-from cant.files.additions import AddedColumn, CellMark, OutCell, SheetAddition
+from cant.errors import column_letter
+from cant.files.additions import AddedColumn, CellMark, ConditionalFill, OutCell, SheetAddition
 from cant.files.annotate import annotate, can_annotate, free_sheet_name
 from cant.files.grid import Workbook
 from cant.files.open import open_workbook
@@ -17,12 +18,17 @@ from cant.files.rewrite import rows_as_new_workbook, sheet_name_in_new_workbook
 from cant.model.display import Display
 from cant.model.reading import Reading, RejectedRow, SheetReading
 from cant.writing.book.status import FILLS, NOT_ASSESSED
-from cant.writing.columns import DECISION, WORDS, Column, Record, class_columns
+from cant.writing.columns import DECISION, NEEDED, WORDS, Column, Record, class_columns
+from cant.writing.own_units import units_of_sheet
 from cant.writing.plan_sheets import PlanSheets, footer_of
 from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
 
 if TYPE_CHECKING:
     from cant.writing.planned import PlannedLine
+
+OUTSIDE = "F2B8B0"
+"""Ground of a proposed cant outside the curve's own bounds."""
+
 
 @dataclass(frozen=True)
 class AnnotatedFile:
@@ -49,7 +55,7 @@ class AddedColumns:
     Where two curves stand side by side in one row, the second gets columns of its own.
     """
 
-    def __init__(self, columns: list[Column], display: Display) -> None:
+    def __init__(self, columns: list[Column], display: Callable[[str], Display]) -> None:
         self._columns = columns
         self._display = display
         self._cells: dict[str, list[list[dict[int, OutCell]]]] = {}
@@ -58,8 +64,9 @@ class AddedColumns:
     def add(self, record: Record) -> None:
         """Take the cells of one curve."""
         cells = self._place(record["sheet"], record["row"])
+        display = self._display(record["sheet"])
         for column, into in zip(self._columns, cells, strict=True):
-            value = column.cell(record, self._display)
+            value = column.cell(record, display)
             if value is None:
                 continue
             if isinstance(value, str):
@@ -78,22 +85,47 @@ class AddedColumns:
             elif column.heading == "Reason":
                 into[row.row] = OutCell(row.problem[:MAX_TEXT])
 
-    def of(self, sheet: str) -> list[AddedColumn]:
-        """Give the columns that a sheet gains, in order."""
+    def of(self, sheet: str, letters: Callable[[int], list[str]]) -> list[AddedColumn]:
+        """Give the columns that a sheet gains, in order.
+
+        Parameters
+        ----------
+        sheet : str
+        letters : callable
+            Gives the letters of a number of added columns.
+        """
         added: list[AddedColumn] = []
-        for number, group in enumerate(self._cells.get(sheet, [[{} for _ in self._columns]])):
+        display = self._display(sheet)
+        groups = self._cells.get(sheet, [[{} for _ in self._columns]])
+        every = letters(len(groups) * len(self._columns))
+        for number, group in enumerate(groups):
             suffix = f" [{number + 1}]" if number else ""
+            own = every[number * len(self._columns) :]
             added += [
                 AddedColumn(
-                    heading=column.title(self._display) + suffix,
+                    heading=column.title(display) + suffix,
                     cells=cells,
                     width=column.width,
-                    number_format=column.number_format(self._display),
+                    number_format=column.number_format(display),
                     heading_note=column.help or None,
+                    conditional=self._conditions(column, cells, own),
                 )
                 for column, cells in zip(self._columns, group, strict=True)
             ]
         return added
+
+    def _conditions(
+        self, column: Column, cells: dict[int, OutCell], letters: list[str]
+    ) -> list[ConditionalFill]:
+        """Let a proposed cant that somebody edits show where it leaves the curve's own bounds."""
+        if column.heading != "Proposed cant" or not cells:
+            return []
+        at = {one.heading: letters[i] for i, one in enumerate(self._columns)}
+        row = min(cells)
+        cant, low, high = (f"${at[name]}{row}" for name in ("Proposed cant", "Lower bound", "Upper bound"))
+        below = f"AND(ISNUMBER({low}),{cant}<{low}-0.001)"
+        above = f"AND(ISNUMBER({high}),{cant}>{high}+0.001)"
+        return [ConditionalFill(f"AND(ISNUMBER({cant}),OR({below},{above}))", OUTSIDE)]
 
     def _place(self, sheet: str, row: int) -> list[dict[int, OutCell]]:
         number = self._taken.get((sheet, row), 0)
@@ -123,8 +155,12 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
     workbook = open_workbook(data, file)
     base, names, notes = _base(workbook, data)
     display = planned.display
-    columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *WORDS]
-    added = AddedColumns(columns, display)
+    columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *NEEDED, *WORDS]
+    units = {
+        entry.sheet: units_of_sheet(display, planned.reading.columns, entry.sheet)
+        for entry in _curve_sheets(planned.reading)
+    }
+    added = AddedColumns(columns, lambda sheet: units.get(sheet, display))
     with NewSheets(footer_of(planned), LETTER if display.units == "us" else A4) as book:
         sheets = PlanSheets(book, planned, _name_giver(workbook))
         for record in planned.records():
@@ -134,8 +170,14 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
     for row in planned.reading.rejected:
         added.add_rejected(row)
     marks = _marks(planned.reading)
+    target = workbook if base is data else open_workbook(base, file)
     additions = [
-        SheetAddition(names(entry.sheet), entry.header_row, added.of(entry.sheet), marks.get(entry.sheet, []))
+        SheetAddition(
+            names(entry.sheet),
+            entry.header_row,
+            added.of(entry.sheet, _letters(target, names(entry.sheet))),
+            marks.get(entry.sheet, []),
+        )
         for entry in _curve_sheets(planned.reading)
     ]
     result = annotate(base, additions, book.data, file)
@@ -159,6 +201,11 @@ def _base(workbook: Workbook, data: bytes) -> tuple[bytes, Callable[[str], str],
 
 def _name_giver(workbook: Workbook) -> Callable[[str], str]:
     return lambda wanted: free_sheet_name(workbook, wanted)
+
+
+def _letters(workbook: Workbook, sheet: str) -> Callable[[int], list[str]]:
+    found = next(one for one in workbook.sheets if one.name == sheet)
+    return lambda count: [column_letter(index) for index in found.added_columns(count)]
 
 
 def _curve_sheets(reading: Reading) -> list[SheetReading]:

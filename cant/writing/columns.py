@@ -18,6 +18,9 @@ from cant.quantities.geometry import degree_from_radius
 Cell: TypeAlias = float | str | None
 Record: TypeAlias = dict[str, Any]
 
+SAME_MM = 1e-6
+"""Cants that differ by no more than this are the same."""
+
 
 @dataclass(frozen=True, slots=True)
 class Column:
@@ -99,6 +102,35 @@ def change_mm(record: Record) -> float | None:
     return None if new is None or old is None else new - old
 
 
+def rail_to_lift(record: Record) -> str | None:
+    """Say which rail is lifted and on which side it lies; None where nothing changes."""
+    change = change_mm(record)
+    if change is None or abs(change) <= SAME_MM:
+        return None
+    return lifted_rail(change, record["hand"])
+
+
+def lifted_rail(change: float, hand: str | None) -> str:
+    """Say which rail is lifted: the outer one for more cant, the inner one for less."""
+    outer = change > 0
+    side = {"L": ("right", "left"), "R": ("left", "right")}.get(hand or "")
+    words = "outer" if outer else "inner"
+    return f"{words} ({side[0 if outer else 1]})" if side else words
+
+
+def longest_needed(side: str) -> Callable[[Record], float | None]:
+    """Give a getter of the length that one end needs, of ramp and transition the longer."""
+
+    def get(record: Record) -> float | None:
+        end = record["transitions"].get(side)
+        if not end:
+            return None
+        lengths = [end[key] for key in ("ramp_needed_m", "transition_needed_m") if end[key] is not None]
+        return max(lengths, default=None)
+
+    return get
+
+
 def findings_text(record: Record) -> str | None:
     """Give the sentences of a curve's findings, one a line."""
     return "\n".join(finding["text"] for finding in record["findings"]) or None
@@ -132,12 +164,26 @@ PLACE: tuple[Column, ...] = (
 DECISION: tuple[Column, ...] = (
     Column("Proposed cant", "cant", path("recommended_cant_mm"), 10, "Cant to set."),
     Column("Change of cant", "cant", change_mm, 10, "Proposed cant less today's."),
-    Column("Status", "", path("status"), 14, "What the proposal needs: see the terms in the README."),
+    Column(
+        "Rail to lift", "", rail_to_lift, 13, "A tamper lifts: the outer rail for more cant, else the inner."
+    ),
+    Column("Status", "", path("status"), 14, "What the proposal needs: see the sheet 'Terms and formulas'."),
     Column("Lower bound", "cant exact", path("lower_mm"), 10, "Lower bound of the curve's own cant."),
     Column("Lower bound set by", "", governing("lower_by"), 28, "Limit that makes the lower bound."),
     Column("Upper bound", "cant exact", path("upper_mm"), 10, "Upper bound of the curve's own cant."),
     Column("Upper bound set by", "", governing("upper_by"), 28, "Limit that makes the upper bound."),
     Column("Cant of today", "", path("today", "status"), 22, "Whether today's cant keeps the limits."),
+)
+
+NEEDED: tuple[Column, ...] = tuple(
+    Column(
+        f"Length needed, {side}",
+        "length",
+        longest_needed(side),
+        10,
+        f"Length that cant ramp and transition {side} need at planned speeds and normal limits.",
+    )
+    for side in ("in", "out")
 )
 
 WORDS: tuple[Column, ...] = (

@@ -21,6 +21,7 @@ from cant.writing.book.summary import Summary
 from cant.writing.book.terms import write_terms
 from cant.writing.columns import (
     DECISION,
+    NEEDED,
     PLACE,
     WORDS,
     Cell,
@@ -92,7 +93,7 @@ class PlanSheets:
         rule = "" if self._all else "Ramps of: " + rule_of_choice(plan, len(self._chosen))
         self._ramps = RampValues(book, name("Ramp values"), self._display, plan, rule)
         classes = class_columns(plan.traffic.class_names)
-        self._plan_columns = [*PLACE, *geometry_columns(self._display), *DECISION, *classes, *WORDS]
+        self._plan_columns = [*PLACE, *geometry_columns(self._display), *DECISION, *classes, *NEEDED, *WORDS]
         self._plan = self._table("Plan", self._plan_columns)
         self._figures = self._table("Figures", [*PLACE, *FIGURES])
         self._ends = self._table("Transitions", [*PLACE, *END])
@@ -159,8 +160,10 @@ class PlanSheets:
         sheet = self._book.table(self._name(name))
         if not self._all and name != "Plan":
             text = (
-                f"The list has more than {FULL_FIGURES} curves: this sheet holds those that need a decision (not "
-                "compliant, speed restricted, exceptional, not assessed); the sheet 'Plan' and the JSON hold all."
+                f"The list has more than {FULL_FIGURES} curves: this sheet holds those that need a "
+                "decision (not "
+                "compliant, speed restricted, exceptional, not assessed); the sheet 'Plan' and the JSON "
+                "hold all."
             )
             sheet.paragraph(text, 10, 110)
         display = self._display

@@ -146,7 +146,9 @@ class TableSheet:
         self.header(headings, keep)
         top = self._next - 1
         for texts in further:
-            lines = [lines_of(text, heading.width * 1.15) for text, heading in zip(texts, headings, strict=True)]
+            lines = [
+                lines_of(text, heading.width * 1.15) for text, heading in zip(texts, headings, strict=True)
+            ]
             self._sheet.set_row(self._next, LINE_HEIGHT * 0.78 * min(max(lines), tall) + 2)
             for column, text in enumerate(texts):
                 self._sheet.write_string(self._next, column, text, self._book.small_head)

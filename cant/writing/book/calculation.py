@@ -20,7 +20,8 @@ from cant.writing.book.traffic_sheet import TrafficSheet
 from cant.writing.sheets import NewSheets, TableSheet
 
 _HOW = (
-    "Formulas with their values stored: change a cell on a pale ground here or on the sheets {inputs}, {limits} and "
+    "Formulas with their values stored: change a cell on a pale ground here or on the sheets {inputs}, "
+    "{limits} and "
     "{traffic}, and everything that depends on it follows, the row of the limits that governs too. "
     "Grey cells are fixed by the program. {rule}"
 )

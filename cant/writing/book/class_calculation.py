@@ -114,9 +114,8 @@ class ClassCalculation:
                 stated[here] = given[at[here]]
         build.number("V stated", "Speed stated for the class here", "V", stated, "speed exact")
         self._ledger.refer("c.V line", self._curve_sheet("V line"), self._curve_rows)
-        text = (
-            f'IF(ISNUMBER({token("V stated")}),{token("V stated")},MIN({token("t.speed")},{token("c.V line")}))'
-        )
+        own, general = token("V stated"), f"MIN({token('t.speed')},{token('c.V line')})"
+        text = f"IF(ISNUMBER({own}),{own},{general})"
         build.computed(
             "V planned",
             "Planned speed",
@@ -127,9 +126,17 @@ class ClassCalculation:
             "as stated here, else the lower of Traffic used and line speed",
         )
         self._search()
-        lowest = f"IF(ISNUMBER({token('V permissible')}),MIN({token('V planned')},{token('V permissible')}),\"\")"
+        lowest = (
+            f'IF(ISNUMBER({token("V permissible")}),MIN({token("V planned")},{token("V permissible")}),"")'
+        )
         build.computed(
-            "V run", "Run speed", "V", chosen.run_kmh, "speed exact", lowest, "lower of planned and permissible"
+            "V run",
+            "Run speed",
+            "V",
+            chosen.run_kmh,
+            "speed exact",
+            lowest,
+            "lower of planned and permissible",
         )
         by: list[Cell] = []
         for number, record in enumerate(chosen.records):
@@ -207,14 +214,18 @@ class ClassCalculation:
         shared = np.zeros(len(chosen.pos), dtype=np.bool_)
         shared[rows.entry[rows.shared]] = True
         shared[rows.other[rows.shared]] = True
-        basis_words = np.where(live, np.where(shared, "live but for shared ends", "live"), "fixed by the plan")
+        basis_words = np.where(
+            live, np.where(shared, "live but for shared ends", "live"), "fixed by the plan"
+        )
         texts: list[tuple[str, BoolArray | None]] = []
         for ended in (True, False):
             where = live & ((stop > first) == ended)
             texts.append((self._permissible_text(ended), where))
         column = next(c for c in self._ledger.columns if c.key == "V permissible")
         column.formulas, column.kind = texts, FORMULA
-        column.source = "first failing multiple less one step, at most 400 km/h; the planned speed where it keeps all"
+        column.source = (
+            "first failing multiple less one step, at most 400 km/h; the planned speed where it keeps all"
+        )
         column.number_format = "0.0"
         next(c for c in self._ledger.columns if c.key == "V basis").values = basis_words.tolist()
 
@@ -387,7 +398,9 @@ class ClassCalculation:
         ):
             entry = CATALOGUE[name]
             text = f'IF({known},{entry.text(D_EQ=token("DEQ"), D=token("D"))},"")'
-            build.computed(key, entry.words.capitalize(), entry.symbol, values, "cant exact", text, entry.source)
+            build.computed(
+                key, entry.words.capitalize(), entry.symbol, values, "cant exact", text, entry.source
+            )
         build.catalogued(
             "a_q",
             "unbalanced_acceleration",
@@ -410,7 +423,7 @@ class ClassCalculation:
             s=token("t.roll"),
             a=token("a_q"),
         )
-        values = {
+        limited = {
             "I": kinematics.cant_deficiency(balance, cant),
             "E": kinematics.cant_excess(balance, cant),
             "a_felt": np.abs(felt),
@@ -421,8 +434,10 @@ class ClassCalculation:
             text = share_text(cell, token(f"{key} normal"))
             if key == "a_felt":
                 text = f'IF(ISNUMBER({token(key)}),{text},"")'
-            used = share(values[key], limit)
-            build.computed(f"u {key}", "Share of this limit", "u", used * 100, "", f'IFERROR(({text})*100,"")', "")
+            used = share(limited[key], limit)
+            build.computed(
+                f"u {key}", "Share of this limit", "u", used * 100, "", f'IFERROR(({text})*100,"")', ""
+            )
             self._ledger.columns[-1].number_format = '0.0"%"'
         height = chosen.of_class(line.gravity_height_m)
         build.catalogued(

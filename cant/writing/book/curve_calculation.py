@@ -106,9 +106,7 @@ class CurveCalculation:
         for key in ("up g", "up r", "low r"):
             self._span(key, ends, key, begin, end)
 
-    def _span(
-        self, name: str, ledger: Ledger, key: str, first: Sequence[int], last: Sequence[int]
-    ) -> None:
+    def _span(self, name: str, ledger: Ledger, key: str, first: Sequence[int], last: Sequence[int]) -> None:
         self._ledger.refer(f"{name} from", ledger.address(key), first)
         self._ledger.refer(f"{name} to", f"${ledger.letter(key)}$", last)
         # The address of the first cell lacks the second dollar sign only for looks; both name one row.
@@ -117,7 +115,10 @@ class CurveCalculation:
     def _speeds(self) -> None:
         chosen, basis, build = self._chosen, self._basis, self._build
         rms = np.array(
-            [np.nan if r is None or r["rms_speed_kmh"] is None else r["rms_speed_kmh"] for r in chosen.records]
+            [
+                np.nan if r is None or r["rms_speed_kmh"] is None else r["rms_speed_kmh"]
+                for r in chosen.records
+            ]
         )
         text = CATALOGUE["rms_speed"].text(ws=self._spans["w"], Vs=self._spans["V planned"])
         build.computed(
@@ -132,7 +133,9 @@ class CurveCalculation:
         build.catalogued(
             "D rms",
             "equilibrium_cant",
-            np.asarray(CATALOGUE["equilibrium_cant"].function(rms, chosen.line.radius_m[:, 0], chosen.line.constant)),
+            np.asarray(
+                CATALOGUE["equilibrium_cant"].function(rms, chosen.line.radius_m[:, 0], chosen.line.constant)
+            ),
             "cant exact",
             f"ISNUMBER({token('V rms')})",
             "Equilibrium cant of the rms speed",
@@ -140,7 +143,9 @@ class CurveCalculation:
             V=basis.ref("V rms", "speed exact"),
             R=basis.ref("R", "radius"),
         )
-        speeds = np.asarray(equilibrium_speed(chosen.cant_mm, chosen.line.radius_m[:, 0], chosen.line.constant))
+        speeds = np.asarray(
+            equilibrium_speed(chosen.cant_mm, chosen.line.radius_m[:, 0], chosen.line.constant)
+        )
         build.catalogued(
             "V eq",
             "equilibrium_speed",
@@ -156,8 +161,12 @@ class CurveCalculation:
     def _bounds(self) -> None:
         low_fixed, high_fixed = self._fixed_bounds()
         shape = ("cant exact", "fixed")
-        self._build.number("low fixed", "Least cant of other rules", "D", low_fixed, shape[0], "turnouts", shape[1])
-        self._build.number("up fixed", "Most cant of other rules", "D", high_fixed, shape[0], "turnouts", shape[1])
+        self._build.number(
+            "low fixed", "Least cant of other rules", "D", low_fixed, shape[0], "turnouts", shape[1]
+        )
+        self._build.number(
+            "up fixed", "Most cant of other rules", "D", high_fixed, shape[0], "turnouts", shape[1]
+        )
         for key, keys, site, function, heading in (
             ("low", ("low I", "low a", "low r"), ("least", "low fixed"), "MAX", "Lower bound"),
             ("up", ("up D", "up E", "up a", "up g", "up r"), ("most", "up fixed"), "MIN", "Upper bound"),
@@ -197,11 +206,14 @@ class CurveCalculation:
 
     def _recorded(self, key: str) -> FloatArray:
         return np.array(
-            [np.nan if r is None or r[key] is None else r[key] for r in self._chosen.records], dtype=np.float64
+            [np.nan if r is None or r[key] is None else r[key] for r in self._chosen.records],
+            dtype=np.float64,
         )
 
     def _within(self) -> list[Cell]:
-        low, high = (np.nan_to_num(self._recorded(k), nan=s) for k, s in (("lower_mm", -1e9), ("upper_mm", 1e9)))
+        low, high = (
+            np.nan_to_num(self._recorded(k), nan=s) for k, s in (("lower_mm", -1e9), ("upper_mm", 1e9))
+        )
         factor = self._basis.inputs.display["cant"].factor
         room = TOLERANCE_MM / factor
         within = (self._chosen.cant_mm >= low - room) & (self._chosen.cant_mm <= high + room)
@@ -216,7 +228,9 @@ class CurveCalculation:
         table, tier = self._chosen.line.table, self._chosen.tier[:, None]
         deficiency, excess = (
             np.where(
-                tier, branches.limit(table, quantity, True).value, branches.limit(table, quantity, False).value
+                tier,
+                branches.limit(table, quantity, True).value,
+                branches.limit(table, quantity, False).value,
             )
             for quantity in ("cant deficiency", "cant excess")
         )

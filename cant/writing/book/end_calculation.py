@@ -1,7 +1,7 @@
 """The sheet "Calculation of ends": gradient, rates and lengths over every transition, for each class.
 
-A transition to a straight has a row for each class of its curve; a shared one stands once, at the curve of the
-smaller chainage, with both curves' cells in its formulas.
+A transition to a straight has a row for each class of its curve; a shared one stands once, at the curve of
+the smaller chainage, with both curves' cells in its formulas.
 """
 
 from __future__ import annotations
@@ -72,8 +72,9 @@ class EndRows:
                     parts.append(tuple([value] for value in row))
         columns = [np.concatenate([np.asarray(part[i]) for part in parts]) for i in range(6)]
         order = np.lexsort((columns[2], columns[0]))
-        entry, other, end, length, ramp, factor = (column[order] for column in columns)
-        return cls(entry.astype(np.int64), other.astype(np.int64), end.astype(np.int64), length, ramp, factor)
+        numbers = [column[order].astype(np.int64) for column in columns[:3]]
+        length, ramp, peak = (column[order] for column in columns[3:])
+        return cls(numbers[0], numbers[1], numbers[2], length, ramp, peak)
 
     @property
     def shared(self) -> BoolArray:
@@ -96,9 +97,7 @@ class EndCalculation:
         The other two sheets.
     """
 
-    def __init__(
-        self, basis: Basis, ledger: Ledger, rows: EndRows, curves: Ledger, classes: Ledger
-    ) -> None:
+    def __init__(self, basis: Basis, ledger: Ledger, rows: EndRows, curves: Ledger, classes: Ledger) -> None:
         self._basis = basis
         self._rows = rows
         self._chosen = basis.chosen
@@ -167,7 +166,9 @@ class EndCalculation:
         self._planned = np.minimum(chosen.planned_kmh[entry], chosen.planned_kmh[other])
         words = "by class; shared: the lower of the two"
         build.computed("V", "Run speed", "V", self._run, "speed exact", self._both("V run"), words)
-        build.computed("Vp", "Planned speed", "V", self._planned, "speed exact", self._both("V planned"), words)
+        build.computed(
+            "Vp", "Planned speed", "V", self._planned, "speed exact", self._both("V planned"), words
+        )
 
     def _balance(self, side: str, speed: str) -> str:
         basis = self._basis
@@ -238,17 +239,19 @@ class EndCalculation:
             "where there is no transition",
         )
 
-    def _asked(
-        self, quantity: str, speed: FloatArray, tier: bool
-    ) -> LimitAt:
+    def _asked(self, quantity: str, speed: FloatArray, tier: bool) -> LimitAt:
         """Ask the limit of each row: over a shared transition the stricter of the two curves'."""
         chosen = self._chosen
-        ask = chosen.tier_limit if tier else (lambda q, v, at: chosen.limit(q, v, False, at))
-        one, two = (ask(quantity, speed, at) for at in (self._rows.entry, self._other_entry))
+        one, two = (
+            chosen.tier_limit(quantity, speed, at) if tier else chosen.limit(quantity, speed, False, at)
+            for at in (self._rows.entry, self._other_entry)
+        )
         first = one.value <= two.value
-        pick = lambda a, b: np.where(first, a, b)  # noqa: E731
         return LimitAt(
-            pick(one.value, two.value), pick(one.tolerance, two.tolerance), pick(one.row, two.row), one.gap
+            np.where(first, one.value, two.value),
+            np.where(first, one.tolerance, two.tolerance),
+            np.where(first, one.row, two.row),
+            one.gap,
         )
 
     def _asking(self, side: str, speed: str, tier: bool) -> Asking:
@@ -369,7 +372,14 @@ class EndCalculation:
         )
         for key, limit, span, where, values, heading in (
             ("rD limp", cant_rate, ("Lr", ramp), ramped, by_rate, "Most cant by its rate of change"),
-            ("rI limp", deficiency_rate, ("L", length), long, balance - room, "Least cant by rate of deficiency"),
+            (
+                "rI limp",
+                deficiency_rate,
+                ("L", length),
+                long,
+                balance - room,
+                "Least cant by rate of deficiency",
+            ),
         ):
             text = inputs.shown(
                 CATALOGUE["most_change_for_rate"].text(
@@ -432,10 +442,14 @@ class EndCalculation:
         cells = (basis.ref("D 1", "cant exact"), basis.ref("R 1", "radius"), basis.ref("L", "length"))
         ramped, long, none = rows.ramp_m > 0, rows.length_m > 0, rows.length_m == 0
         alone = ~rows.shared
-        asking = Asking(token("Vp"), token("R 1"), token("category 1"), token("situation 1"), token("last tier 1"))
+        asking = Asking(
+            token("Vp"), token("R 1"), token("category 1"), token("situation 1"), token("last tier 1")
+        )
         rules = (
             (
-                cant_rate(f"ABS({cells[0]})", basis.ref("Lr", "length"), np.abs(cant), rows.ramp_m, rows.factor),
+                cant_rate(
+                    f"ABS({cells[0]})", basis.ref("Lr", "length"), np.abs(cant), rows.ramp_m, rows.factor
+                ),
                 ramped,
                 f"N({token('Lr')})>0",
             ),

@@ -45,7 +45,8 @@ class Exceptions:
         self._display = display
         self._sheet = book.table(name)
         self._sheet.paragraph(
-            "Every limit that the proposal passes at its normal value, at the speeds run. A row without a signed "
+            "Every limit that the proposal passes at its normal value, at the speeds run. A row without a "
+            "signed "
             "decision is no permission. 'Lower' and 'upper end' are the ends at the smaller and the greater "
             "chainage.",
             13,
@@ -127,7 +128,8 @@ class SpeedChanges:
         self._display = display
         self._sheet: TableSheet = book.table(name)
         self._sheet.paragraph(
-            "Classes that may not run at their planned speed with the proposed cants. Speeds are put down before "
+            "Classes that may not run at their planned speed with the proposed cants. Speeds are put down "
+            "before "
             "the track is changed. Braking and accelerating, signalling and boards are not examined.",
             11,
             150,

@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -17,6 +18,7 @@ from cant.writing.book.traffic_sheet import TrafficSheet
 from cant.writing.columns import Cell
 
 FloatArray = npt.NDArray[np.float64]
+AnyFloats = npt.NDArray[np.floating[Any]]
 FIRST_ROW = 5
 """First row of data of a sheet of calculation: below the explanation and three rows of header."""
 
@@ -80,7 +82,7 @@ class Builder:
         key: str,
         heading: str,
         symbol: str,
-        values: FloatArray,
+        values: AnyFloats,
         kind: str,
         source: str = "curve list",
         cell: str = INPUT,
@@ -101,7 +103,7 @@ class Builder:
             )
         )
 
-    def refer(self, key: str, heading: str, symbol: str, values: FloatArray, kind: str) -> None:
+    def refer(self, key: str, heading: str, symbol: str, values: AnyFloats, kind: str) -> None:
         """Add a column that repeats a cell of another sheet, named ``from KEY`` in the ledger."""
         shown = self.basis.inputs.display[kind]
         column = LedgerColumn(
@@ -133,6 +135,7 @@ class Builder:
             shown = self.basis.inputs.display[kind]
             unit, number_format, factor = shown.unit, shown.number_format, shown.factor
         stored = values * factor if isinstance(values, np.ndarray) else list(values)
+        texts: list[tuple[str, BoolArray | None]]
         texts = [(formulas, None)] if isinstance(formulas, str) else formulas
         self.ledger.add(
             LedgerColumn(
@@ -144,7 +147,7 @@ class Builder:
         self,
         key: str,
         name: str,
-        values: FloatArray,
+        values: AnyFloats,
         kind: str,
         where: str = "",
         heading: str = "",
@@ -175,9 +178,9 @@ class Builder:
         words = heading or entry.words[0].upper() + entry.words[1:]
         self.computed(key, words, entry.symbol, np.asarray(values), kind, text, entry.source)
 
-    def shown(self, values: FloatArray, kind: str, word: str = "none") -> list[Cell]:
+    def shown(self, values: AnyFloats, kind: str, word: str = "none") -> list[Cell]:
         """Give values as shown, a word where there is none."""
-        return number_or(np.asarray(values) * self.basis.inputs.display[kind].factor, word)
+        return number_or(np.asarray(values, dtype=np.float64) * self.basis.inputs.display[kind].factor, word)
 
 
 def share(value: FloatArray, limit: FloatArray) -> FloatArray:

@@ -1,4 +1,4 @@
-"""The sheet of inputs: settings as used and the constants that follow, each in a cell that formulas refer to."""
+"""The sheet of inputs: settings as used and the constants that follow, in cells that formulas refer to."""
 
 from __future__ import annotations
 
@@ -73,7 +73,8 @@ class Inputs:
         sheet = book.table(self.name)
         titles = ("Input", "Value", "Unit", "Symbol", "Where from")
         sheet.paragraph(
-            "Settings as used and the constants that follow from them. Cells on a pale ground are inputs: the "
+            "Settings as used and the constants that follow from them. Cells on a pale ground are inputs: "
+            "the "
             "sheets of calculation refer to them.",
             5,
             130,
@@ -120,8 +121,12 @@ class Inputs:
                 for key, (title, height) in HEIGHTS.items()
             ),
             _Entry("method", "Method of the target cant", s.method, "", "", "Settings; planned with it"),
-            _Entry("tiers", "Tiers of limits allowed", ", ".join(s.tiers), "", "", "Settings; planned with it"),
-            _Entry("keep", "Keep today's cant within", s.keep_within_mm, "mm", "", "Settings; planned with it"),
+            _Entry(
+                "tiers", "Tiers of limits allowed", ", ".join(s.tiers), "", "", "Settings; planned with it"
+            ),
+            _Entry(
+                "keep", "Keep today's cant within", s.keep_within_mm, "mm", "", "Settings; planned with it"
+            ),
             _Entry("fraction", "Method fraction: share", s.fraction_of_fastest, "-", "", "Settings"),
             _Entry("underbalance", "Method underbalance: margin", s.underbalance_mm, "mm", "", "Settings"),
             _Entry("today", "Method today: within", s.today_within_mm, "mm", "", "Settings"),
@@ -138,7 +143,9 @@ class Inputs:
             first: _Origin = ("from the printed constant: 12.96 g C", FORMULA, formula)
             second: _Origin = ("as printed or set", INPUT, None)
         else:
-            source = "Settings or limit set" if s.rail_spacing_mm is not None else "1500 where nothing is stated"
+            source = (
+                "Settings or limit set" if s.rail_spacing_mm is not None else "1500 where nothing is stated"
+            )
             first = (source, INPUT, None)
             second = (
                 "from the rail spacing: e / (12.96 g)",
@@ -166,7 +173,10 @@ class Inputs:
         ]
 
 
-HEIGHTS: dict[str, tuple[str, float]] = {"platform": ("the platform edge", 0.915), "wire": ("the contact wire", 5.0)}
+HEIGHTS: dict[str, tuple[str, float]] = {
+    "platform": ("the platform edge", 0.915),
+    "wire": ("the contact wire", 5.0),
+}
 """Heights above the rails [m] at which the shift is shown where nobody says another: common practice."""
 
 FIRST_ROW = 3

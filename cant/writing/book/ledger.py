@@ -28,7 +28,7 @@ _SHARED_FROM = 60
 """A formula at least this long [characters] is written once and shared by the rows below it."""
 
 INPUT, FORMULA, FIXED = "input", "formula", "fixed"
-"""What a cell of a ledger is: to be changed by a checker, computed, or the program's and not computed here."""
+"""What a cell of a ledger is: to be changed by a checker, computed, or fixed by the program."""
 
 
 @dataclass(frozen=True)
@@ -138,7 +138,10 @@ class Ledger:
 
     def _header(self, keep: int) -> None:
         heads = [Heading(c.heading, c.width, c.number_format) for c in self.columns]
-        rows = ([c.symbol for c in self.columns], [f"{c.kind}: {c.source}".rstrip(": ") for c in self.columns])
+        rows = (
+            [c.symbol for c in self.columns],
+            [f"{c.kind}: {c.source}".rstrip(": ") for c in self.columns],
+        )
         self.sheet.header_rows(heads, rows, keep)
 
     def _cells(self, column: LedgerColumn, number: int, row_words: list[str]) -> list[str]:
@@ -196,9 +199,7 @@ def _cell(head: str, row: str, tail: str, value: Value, formula: str) -> str:
             return f'{head}{row}{tail} t="str">{formula}<v>{cell_text(value)}</v></c>'
         if not value:
             return f"{head}{row}{tail}/>"
-        return (
-            f'{head}{row}{tail} t="inlineStr"><is><t xml:space="preserve">{cell_text(value)}</t></is></c>'
-        )
+        return f'{head}{row}{tail} t="inlineStr"><is><t xml:space="preserve">{cell_text(value)}</t></is></c>'
     if value is None or not math.isfinite(value):
         return f'{head}{row}{tail} t="str">{formula}<v></v></c>' if formula else f"{head}{row}{tail}/>"
     return f"{head}{row}{tail}>{formula}<v>{value!r}</v></c>"
@@ -212,5 +213,3 @@ def quoted(sheet: str) -> str:
 def token(name: str) -> str:
     """Give the reference to a column by its name within a formula."""
     return f"⟦{name}⟧"
-
-

@@ -15,26 +15,17 @@ from cant.planning.neighbours import AFTER, BEFORE
 from cant.quantities.catalogue import CATALOGUE
 from cant.quantities.lifting import lateral_shift, ramp_ordinates, rise_of_centre, stations
 from cant.writing.book.inputs import HEIGHTS, Inputs
-from cant.writing.book.ledger import FIXED, FORMULA, INPUT, Ledger, LedgerColumn, Value, token
-from cant.writing.columns import Cell, Record
+from cant.writing.book.ledger import FIXED, FORMULA, INPUT, BoolArray, Ledger, LedgerColumn, Value, token
+from cant.writing.columns import SAME_MM, Cell, Record, change_mm, lifted_rail
 from cant.writing.sheets import Heading, NewSheets, TableSheet
 
 FIRST_ROW = 5
-_SAME_MM = 1e-6
 
 
 def is_changed(record: Record) -> bool:
     """Tell whether a curve's cant is known today and another one is proposed."""
-    old, new = record["existing_cant_mm"], record["recommended_cant_mm"]
-    return old is not None and new is not None and abs(new - old) > _SAME_MM
-
-
-def lifted_rail(change: float, hand: str | None) -> str:
-    """Say which rail is lifted: the outer one for more cant, the inner one for less."""
-    outer = change > 0
-    side = {"L": ("right", "left"), "R": ("left", "right")}.get(hand or "")
-    words = "outer" if outer else "inner"
-    return f"{words} ({side[0 if outer else 1]})" if side else words
+    change = change_mm(record)
+    return change is not None and abs(change) > SAME_MM
 
 
 class LiftingSchedule:
@@ -64,9 +55,12 @@ class LiftingSchedule:
     def write(self) -> None:
         """Write the sheet."""
         self._sheet.paragraph(
-            "A tamper lifts and does not lower: more cant lifts the outer rail, less cant the inner one (general "
-            "lift, ballast, clearance). Sides are seen in the direction of the list. Where cant comes down, speed "
-            "before track; where it goes up, track before speed. The shift is towards the inside of the curve "
+            "A tamper lifts and does not lower: more cant lifts the outer rail, less cant the inner one "
+            "(general "
+            "lift, ballast, clearance). Sides are seen in the direction of the list. Where cant comes "
+            "down, speed "
+            "before track; where it goes up, track before speed. The shift is towards the inside of the "
+            "curve "
             f"where cant is added, at the heights on the sheet '{self._inputs.name}'; confirm clearances, "
             "platforms, overhead line and the stress-free temperature of the rail.",
             14,
@@ -105,7 +99,7 @@ class LiftingSchedule:
         change = numbers[:, 3] - numbers[:, 2]
         columns += self._computed(change)
         rails: list[Value] = [
-            lifted_rail(float(c), row[0][3]) for c, row in zip(change, self._rows, strict=True)  # type: ignore[arg-type]
+            lifted_rail(float(c), str(row[0][3] or "")) for c, row in zip(change, self._rows, strict=True)
         ]
         columns.append(LedgerColumn("rail", "Rail to lift", "", "", rails, None, FIXED, None, 13.0))
         orders: list[Value] = [row[2] for row in self._rows]
@@ -113,11 +107,19 @@ class LiftingSchedule:
         return columns
 
     def _number(
-        self, key: str, title: str, symbol: str, kind: str, values: Any, cell: str, text: str = "", source: str = ""
+        self,
+        key: str,
+        title: str,
+        symbol: str,
+        kind: str,
+        values: Any,
+        cell: str,
+        text: str = "",
+        source: str = "",
     ) -> LedgerColumn:
         shown = self._inputs.display[kind]
         unit = f"{symbol} ({shown.unit})" if symbol else shown.unit
-        formulas = [(text, None)] if text else None
+        formulas: list[tuple[str, BoolArray | None]] | None = [(text, None)] if text else None
         return LedgerColumn(
             key, title, unit, source, values * shown.factor, shown.number_format, cell, formulas, 10.0
         )
@@ -127,9 +129,18 @@ class LiftingSchedule:
         dD = inputs.canonical(token("dD"), "cant")  # the symbol of the trade
         columns = [
             self._number(
-                "dD", "Change", "dD", "cant", change, FORMULA, f"{token('D')}-{token('today')}", "to set less today"
+                "dD",
+                "Change",
+                "dD",
+                "cant",
+                change,
+                FORMULA,
+                f"{token('D')}-{token('today')}",
+                "to set less today",
             ),
-            self._number("lift", "Lift", "", "cant", np.abs(change), FORMULA, f"ABS({token('dD')})", "of the rail"),
+            self._number(
+                "lift", "Lift", "", "cant", np.abs(change), FORMULA, f"ABS({token('dD')})", "of the rail"
+            ),
             self._number(
                 "rise",
                 "Rise of the centre line",
@@ -165,8 +176,10 @@ def _order_of_work(record: Record) -> str:
         for entry in record["classes"]
         if entry["run_speed_kmh"] is not None and entry["run_speed_kmh"] < entry["speed_kmh"] - 1e-6
     ]
-    first = "Speed before track: prove or lower the speeds, then lift the inner rail." if down else (
-        "Track before speed: lift the outer rail, then raise speeds."
+    first = (
+        "Speed before track: prove or lower the speeds, then lift the inner rail."
+        if down
+        else ("Track before speed: lift the outer rail, then raise speeds.")
     )
     if slow and not down:
         first = "Lift the outer rail; no higher speed before."
@@ -208,9 +221,12 @@ class RampValues:
         self._spacing = 10.0 if display.units == "metric" else 31.0 / 3.280839895
         step = "10 m" if display.units == "metric" else "31 ft"
         self._sheet.paragraph(
-            f"Cant along the cant ramps of changed curves, every {step} (half of that on ramps below six steps) and "
-            "at both ends, with the shape of the transition. Cant is that of the curve named: positive with its "
-            "outer rail high, negative in the other curve of a reverse. Ramps whose length or chainage is not "
+            f"Cant along the cant ramps of changed curves, every {step} (half of that on ramps below six "
+            "steps) and "
+            "at both ends, with the shape of the transition. Cant is that of the curve named: positive "
+            "with its "
+            "outer rail high, negative in the other curve of a reverse. Ramps whose length or chainage is "
+            "not "
             f"known are left out. {rule}",
             9,
             105,
@@ -233,7 +249,7 @@ class RampValues:
 
     def _changes(self, i: int) -> bool:
         with np.errstate(invalid="ignore"):
-            return bool(abs(self._plan.outcome.cant_mm[i] - self._plan.curves.cant_mm[i]) > _SAME_MM)
+            return bool(abs(self._plan.outcome.cant_mm[i] - self._plan.curves.cant_mm[i]) > SAME_MM)
 
     def _end(self, i: int, end: int, pair: int | None) -> None:
         """Write one ramp; a shared one stands at the curve of the smaller chainage (-1: left to that)."""

@@ -1,6 +1,7 @@
 """The limits as used, one row a rule, and the formulas that find the strictest of them at a speed.
 
-The value as stated stands beside the value in the unit of the sheets of calculation; those look up the latter.
+The value as stated stands beside the value in the unit of the sheets of calculation; those look up the
+latter.
 A lookup weighs only the conditions that some row of its quantity states, so that it stays short enough to be
 checked; which rule governs therefore follows a changed speed, radius, situation or value.
 """
@@ -119,8 +120,12 @@ class LimitsSheet:
         """Give the cells of the lower and the upper edges of speed; "" where no row states any."""
         rows = [row for row in self._rows if row.quantity == quantity]
         return (
-            self._block(quantity, "speed_over_kmh") if any(r.speed_over_kmh is not None for r in rows) else "",
-            self._block(quantity, "speed_up_to_kmh") if any(r.speed_up_to_kmh is not None for r in rows) else "",
+            self._block(quantity, "speed_over_kmh")
+            if any(r.speed_over_kmh is not None for r in rows)
+            else "",
+            self._block(quantity, "speed_up_to_kmh")
+            if any(r.speed_up_to_kmh is not None for r in rows)
+            else "",
         )
 
     @staticmethod
@@ -177,7 +182,8 @@ class LimitsSheet:
         sheet = book.table(self.name)
         sheet.paragraph(
             f"{self._title()} Of all rows that hold, the strictest governs; a blank condition holds always; "
-            "'over' is exclusive, 'up to' inclusive. Change a stated value here and the sheets of calculation "
+            "'over' is exclusive, 'up to' inclusive. Change a stated value here and the sheets of "
+            "calculation "
             "follow; a condition counts there where some row of the quantity states it.",
             12,
             150,
@@ -246,7 +252,13 @@ class LimitsSheet:
             values = [self._value(row, exceptional) for row in self._rows]
             texts = [self._value_text(row, exceptional) for row in self._rows]
             column = LedgerColumn(
-                key, key.capitalize(), "in the unit used", "from the value as stated", values, "0.0##", FORMULA
+                key,
+                key.capitalize(),
+                "in the unit used",
+                "from the value as stated",
+                values,
+                "0.0##",
+                FORMULA,
             )
             column.formulas = _by_row(texts)
             columns.append(column)

@@ -102,13 +102,16 @@ class Pictures:
     def _explain(self, shown: int, left: int) -> None:
         raw = self._sheet.raw
         text = (
-            "Curves in the order of chainage. Permitted range: the curve's own bounds at planned speeds, shared "
-            "transitions left out; where the lower bound lies above the upper one no cant serves all classes. "
+            "Curves in the order of chainage. Permitted range: the curve's own bounds at planned speeds, "
+            "shared "
+            "transitions left out; where the lower bound lies above the upper one no cant serves all "
+            "classes. "
             "Curvature: left positive. Deficiency at run speeds: excess is negative."
         )
         if left:
             text += (
-                f" {shown} stretches of up to {STRETCH} curves are shown, the first of the list; {left} further "
+                f" {shown} stretches of up to {STRETCH} curves are shown, the first of the list; {left} "
+                "further "
                 "curves are on the sheet 'Plan' alone."
             )
         raw.merge_range(0, 0, 0, 15, text, self._book.wrapped)
@@ -161,7 +164,9 @@ class Pictures:
         chart = self._book.workbook.add_chart({"type": kind})
         if kind == "line":
             # Where it is not said, some programs draw a curve through the points.
-            chart._write_c_smooth = lambda smooth: chart._xml_empty_tag("c:smooth", [("val", int(bool(smooth)))])
+            chart._write_c_smooth = lambda smooth: chart._xml_empty_tag(
+                "c:smooth", [("val", int(bool(smooth)))]
+            )
         sheet = quoted(self._names[1])
         last = first + len(rows) - 1
         for number, (name, column) in enumerate(series):
@@ -196,12 +201,22 @@ def _line_look(number: int, colour: str, is_cant: bool) -> dict[str, Any]:
     if is_cant and number >= 2:
         return {
             "line": {"none": True},
-            "marker": {"type": "long_dash", "size": 9, "border": {"color": colour}, "fill": {"color": colour}},
+            "marker": {
+                "type": "long_dash",
+                "size": 9,
+                "border": {"color": colour},
+                "fill": {"color": colour},
+            },
         }
     if is_cant and number == 0:
         return {
             "line": {"color": "#7A7A7A", "width": 1.0, "dash_type": "dash"},
-            "marker": {"type": "circle", "size": 5, "border": {"color": "#7A7A7A"}, "fill": {"color": "white"}},
+            "marker": {
+                "type": "circle",
+                "size": 5,
+                "border": {"color": "#7A7A7A"},
+                "fill": {"color": "white"},
+            },
         }
     return {
         "line": {"color": colour, "width": 1.75},

@@ -37,13 +37,15 @@ def write_how_read(book: NewSheets, name: str, planned: PlannedLine) -> None:
     sheet.paragraph(
         f"File {reading.file or '(no file)'}"
         + (f", SHA-256 {reading.sha256}" if reading.sha256 else "")
-        + ". 'certain' rests on the heading or its unit, 'likely' on the values, 'answer' on what was answered.",
+        + ". 'certain' rests on the heading or its unit, 'likely' on the values, 'answer' on what was "
+        "answered.",
         8,
         180,
     )
     sheet.header([Heading(title, width) for title, width in _READ])
     for sheet_read in reading.sheets:
-        rows = f"header to row {sheet_read.header_row}, data rows {sheet_read.first_row} to {sheet_read.last_row}"
+        rows = f"header to row {sheet_read.header_row}, data rows {sheet_read.first_row} to "
+        f"{sheet_read.last_row}"
         sheet.row([sheet_read.sheet, "(whole sheet)", f"table: {sheet_read.role}", "", "", "", "", rows])
     for c in reading.columns:
         meaning = c.meaning or "left alone"

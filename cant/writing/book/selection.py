@@ -1,6 +1,7 @@
 """Which curves the sheets of calculation hold, and their figures as flat arrays: one entry a curve and class.
 
-Long registers are thinned by a rule that the sheets state: a workbook of a million formulas is nobody's to check.
+Long registers are thinned by a rule that the sheets state: a workbook of a million formulas is nobody's to
+check.
 """
 
 from __future__ import annotations
@@ -49,7 +50,8 @@ def rule_of_choice(plan: Plan, count: int) -> str:
     if count == every:
         return "All curves that were planned."
     return (
-        f"{count} of the {every} planned curves, so that the sheet can be checked and opened: the gravest first "
+        f"{count} of the {every} planned curves, so that the sheet can be checked and opened: the gravest "
+        "first "
         "(not compliant, then speed restricted, exceptional, changed, kept), in the order of the list. The "
         "sheet 'Plan' and the JSON hold all."
     )

@@ -1,9 +1,9 @@
-"""The permissible speed as a formula: the first multiple of the speed step at which a row of the limits fails.
+"""The permissible speed as a formula: the first multiple of the speed step at which a limit's row fails.
 
-Within one row every rule of a curve by itself holds up to a speed that has a closed form. The row fails first at
-the lowest multiple above that speed and above the row's lower edge, unless that lies above its upper edge; the
-lowest over all rows, less one step, is the permissible speed. What shared transitions and gaps in the limits
-forbid is not in it; where they bind, the sheet holds the plan's speed and says so.
+Within one row every rule of a curve by itself holds up to a speed that has a closed form. The row fails first
+at the lowest multiple above that speed and above the row's lower edge, unless that lies above its upper edge;
+the lowest over all rows, less one step, is the permissible speed. What shared transitions and gaps in the
+limits forbid is not in it; where they bind, the sheet holds the plan's speed and says so.
 """
 
 from __future__ import annotations
@@ -89,7 +89,9 @@ def felt(
     )
 
 
-def cant_rate(change: str, ramp: str, cant_mm: FloatArray, ramp_m: FloatArray, factor: FloatArray) -> Critical:
+def cant_rate(
+    change: str, ramp: str, cant_mm: FloatArray, ramp_m: FloatArray, factor: FloatArray
+) -> Critical:
     """Give the speed at which the rate of change of cant reaches a limit."""
 
     def value(limit: FloatArray) -> FloatArray:

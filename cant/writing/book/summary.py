@@ -141,7 +141,8 @@ class Summary:
         up, down = self._changed["up"], self._changed["down"]
         self._text(
             f"- Cant goes up on {up} and comes down on {down} curves (see the lifting schedule). "
-            f"Running time lost against the planned speeds: {self._lost:.0f} s a day over all trains, over the "
+            f"Running time lost against the planned speeds: {self._lost:.0f} s a day over all trains, "
+            "over the "
             "curves alone."
         )
         for finding in self._planned.explanation.plan_findings[:5]:
@@ -157,12 +158,16 @@ class Summary:
         if missing:
             parts.append(f"{missing} rows were not assessed: see 'Not assessed'.")
         if self._unknown_ends:
-            parts.append(f"{self._unknown_ends} transitions are not known: their rates and gradients are unchecked.")
+            parts.append(
+                f"{self._unknown_ends} transitions are not known: their rates and gradients are unchecked."
+            )
         if self._unknown_today:
             parts.append(f"Today's cant is not known on {self._unknown_today} curves.")
         every = int(self._plan.outcome.planned.sum())
         if len(chosen) < every:
-            parts.append(f"The sheets of calculation hold {len(chosen)} of {every} curves, the gravest first.")
+            parts.append(
+                f"The sheets of calculation hold {len(chosen)} of {every} curves, the gravest first."
+            )
         parts.append(
             "Signalling and braking distance, level crossings, structures, overhead line, track quality and "
             "vehicle approval are not examined."
@@ -177,7 +182,10 @@ class Summary:
     def _signatures(self) -> None:
         self._sheet.skip()
         raw, box = self._sheet.raw, self._book.box
-        for titles in (("", "Name", "", "Signature", "", "Date"), *((role, "", "", "", "", "") for role in _ROLES)):
+        for titles in (
+            ("", "Name", "", "Signature", "", "Date"),
+            *((role, "", "", "", "", "") for role in _ROLES),
+        ):
             row = self._sheet.next_row - 1
             raw.set_row(row, 16 if not titles[0] else 26)
             raw.write_string(row, 0, titles[0], box)

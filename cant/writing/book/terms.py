@@ -8,13 +8,19 @@ from cant.writing.book.status import STATUS_WORDS
 from cant.writing.sheets import Heading, NewSheets
 
 TERMS: tuple[tuple[str, str], ...] = (
-    ("cant", "height of the outer rail above the inner one, over the rail spacing; negative: outer rail lower"),
+    (
+        "cant",
+        "height of the outer rail above the inner one, over the rail spacing; negative: outer rail lower",
+    ),
     ("rail spacing", "distance between the two wheel-rail contact points, about gauge plus one rail head"),
     ("equilibrium cant", "cant at which a train at a speed presses on both rails alike: C V^2 / R"),
     ("cant deficiency", "equilibrium cant less cant, where positive"),
     ("cant excess", "cant less equilibrium cant, where positive"),
     ("unbalanced acceleration", "lateral acceleration in the track plane; negative: towards the inside"),
-    ("felt acceleration", "the same on the vehicle floor: (1 + s) times, s the roll coefficient of the class"),
+    (
+        "felt acceleration",
+        "the same on the vehicle floor: (1 + s) times, s the roll coefficient of the class",
+    ),
     ("planned speed", "the speed stated for the class on the curve, else the lower of class and line speed"),
     ("permissible speed", "highest multiple of the speed step at which all limits that depend on speed hold"),
     ("run speed", "the lower of planned and permissible speed"),
@@ -22,7 +28,10 @@ TERMS: tuple[tuple[str, str], ...] = (
     ("lowest speed", "speed below which cant excess goes over its limit"),
     ("normal, exceptional", "tiers of a limit: the exceptional value needs approval"),
     ("lower, upper bound", "range of cants that the curve itself permits at planned speeds, before the grid"),
-    ("shared transition", "the transition between two curves that follow each other; changes are signed there"),
+    (
+        "shared transition",
+        "the transition between two curves that follow each other; changes are signed there",
+    ),
     ("cant ramp", "length over which the cant is built up, where it is not the transition's"),
 )
 

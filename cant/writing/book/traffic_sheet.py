@@ -100,6 +100,4 @@ class TrafficSheet:
 
 def _place(row: TrainClass) -> str:
     place = row.place
-    return ", ".join(
-        word for word in (place.sheet or "", f"row {place.row}" if place.row else "") if word
-    )
+    return ", ".join(word for word in (place.sheet or "", f"row {place.row}" if place.row else "") if word)
