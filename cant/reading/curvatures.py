@@ -142,7 +142,9 @@ def with_versine(draft: Draft, radius: FloatArray, known: np.ndarray, versine: N
     assert item is not None  # noqa: S101
     known = ~np.isnan(radius)
     if not item.unit:
-        item.unit, item.unit_from = "mm", "canonical"
+        feet = (item.heading.chord_m or 0.0) / FOOT_M
+        in_feet = feet > 0 and abs(feet - round(feet)) < 1e-6 and (item.heading.chord_m or 0.0) % 1 != 0
+        item.unit, item.unit_from = ("in", "other columns") if in_feet else ("mm", "canonical")
     for index, text in versine.problems.items():
         if not known[index]:
             draft.fail(index, item, text)

@@ -85,7 +85,7 @@ def find_blocks(sheet: Sheet, strict_from: int = 1) -> list[Block]:
     columns.sort(key=lambda c: c.index)
     title = _title(sheet, strict_from, first)
     end, following = _next_table(sheet, last + unit_row + 1, columns)
-    title += _legend(sheet, end)
+    title += _legend(sheet, last + unit_row, end)
     blocks = [Block(sheet, first, last + unit_row, end, part, title) for part in _side_by_side(columns)]
     if len(blocks) > 1:
         for block in blocks:
@@ -116,9 +116,9 @@ def _has_plain_figures(cells: list[Value]) -> bool:
     return any(isinstance(c, str) and c[:1].isdigit() for c in cells)
 
 
-def _legend(sheet: Sheet, end: int) -> list[str]:
+def _legend(sheet: Sheet, header: int, end: int) -> list[str]:
     """Give the texts of the last rows, where legends stand."""
-    rows = sheet.rows[max(0, end - 12) : end]
+    rows = sheet.rows[max(header, end - 12) : end]
     return [
         squeeze(" ".join(shown(c) for c in cells if c is not None))
         for cells in rows

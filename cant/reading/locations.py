@@ -160,6 +160,8 @@ def _candidates(
     named = first.unit
     if named == "mi":
         open_ones = mile_notations(first, every, evidence)
+        if _may_be_kilometres(first, evidence):
+            open_ones = [*open_ones, KM]
     elif named:
         open_ones = (
             [named, METRES] if named == KM and first.unit_from not in ("answer", "legend") else [named]
@@ -178,6 +180,13 @@ def _candidates(
         if fitting and set(metric) == set(fitting):
             return metric[:1]
     return fitting or open_ones[:1]
+
+
+def _may_be_kilometres(first: Column, evidence: Evidence) -> bool:
+    """Whether a mileage may be in kilometres: it names no unit, and nothing else of the sheet is imperial."""
+    spelled = "mile" in first.heading.text.casefold() and "mileage" not in first.heading.text.casefold()
+    metric = bool(evidence.metric & {"km/h", "km", "kmh", "kmph"})
+    return first.unit_from == "heading" and not spelled and metric and not evidence.imperial - {"mi"}
 
 
 def _says_km(draft: Draft) -> bool:

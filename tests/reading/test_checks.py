@@ -194,3 +194,20 @@ Curve | km from | km to | Radius (m) | Existing cant (mm) | Cant (mm) | Speed (k
 def test_cant_in_is_inches_where_no_cant_out_stands_beside_it() -> None:
     text = "Curve | MP from | MP to | Degree | Cant in | Psgr mph\n1 | 1.1 | 1.3 | 2°15' | 3.5 | 45"
     assert read(sheet(text)).curves.cant_mm.tolist() == [pytest.approx(88.9)]
+
+
+def test_a_mid_ordinate_over_a_chord_of_feet_is_in_inches() -> None:
+    """On a chord of 62 ft an inch is a degree of curve (practice of 49 CFR 213): 2 in is about 873 m."""
+    header = "Curve | MP from | MP to | Mid-ordinate (62 ft chord) | Elev (in) | Psgr mph"
+    text = f"{header}\n1 | 1.1 | 1.3 | 2 | 3.5 | 45"
+    assert read(sheet(text)).curves.radius_m.tolist() == [pytest.approx(873, rel=0.01)]
+
+
+def test_a_mileage_in_a_metric_sheet_is_asked_for() -> None:
+    text = """
+Curve | Mileage from | Mileage to | Radius (m) | Cant (mm) | Speed (km/h)
+1 | 1.134 | 1.395 | 600 | 100 | 90
+2 | 2.116 | 2.352 | 700 | 80 | 90
+"""
+    [question] = read(sheet(text)).questions
+    assert set(question.choices) == {"decimal miles", "kilometres"}
