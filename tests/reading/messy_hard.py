@@ -14,7 +14,7 @@ BLANK_COLUMN = Messy(
     [
         sheet(
             f"""
- | Curve register of the Marlow Vale line | | | | | | | | |
+ | Curve register of the Marlen Vale line | | | | | | | | |
  | revised by maintenance | | | | | | | | |
  | | | | | | | | | |
  | Curve\nNo. | Chainage\nfrom (km) | Chainage\nto (km) | Radius\n(m) | Hand of\ncurve | Super-\nelevation\n(mm) | | Max. speed\n(km/h) | Goods\ntrains
@@ -61,7 +61,7 @@ GERMAN_PAIR = Messy(
     "german-pair",
     [
         sheet("""
-Bogenverzeichnis Strecke 1234 Auental – Breitfeld, Richtungsgleis
+Bogenverzeichnis Strecke 1234 Auenquell – Breitmoor, Richtungsgleis
 Bogen-Nr | Bogenanfang | Bogenende | Halbmesser | Krümmung | Überhöhung Ist | Überhöhung Soll | Übergangsbogen | V Reise/Güter
 1 | 12,3+45 | 12,6+05 | 600 m | links | 95 | 100 | 60/60 | 100/80
 2 | 13,0+00 | 13,2+10 | 1.100 m | rechts | 45 | 50 | 40/50 | 100/80
@@ -173,7 +173,7 @@ SECTIONS_SWITCH_TRACK = Messy(
     "sections-switch-track",
     [
         sheet("""
-Seznam oblouků trati Dolní Lhota – Horní Ves
+Seznam oblouků trati Dolní Mlžná – Horní Mlžná
 Č. oblouku | km začátek | km konec | Poloměr [m] | Směr | Převýšení [mm] | Délka přechodnice [m] | Rychlost [km/h]
 kolej č. 1
 1 | 10,250 | 10,600 | 500 | levý | 92 | 70 | 80

@@ -210,7 +210,7 @@ MERGED_DOWN = Messy(
         sheet(
             """
 Line | Track | Curve | Start km | End km | Radius | L/R | Cant | Speed
-Ostrand | Up | 12a | 10.100 | 10.250 | 650 | L | 90 | 100
+Ostvang | Up | 12a | 10.100 | 10.250 | 650 | L | 90 | 100
  | | 12b | 10.250 | 10.400 | 720 | L | 80 | 100
  | Down | 12a | 10.102 | 10.251 | 654 | L | 90 | 100
  | | 13 | 11.102 | 11.251 | 900 | R | | 100
@@ -219,10 +219,10 @@ Ostrand | Up | 12a | 10.100 | 10.250 | 650 | L | 90 | 100
         )
     ],
     {
-        2: curve(650, "L", 10.1, 10.25, None, None, 90, 100, Line="Ostrand", Track="Up"),
-        3: curve(720, "L", 10.25, 10.4, None, None, 80, 100, Line="Ostrand", Track="Up"),
-        4: curve(654, "L", 10.102, 10.251, None, None, 90, 100, Line="Ostrand", Track="Down"),
-        5: curve(900, "R", 11.102, 11.251, None, None, None, 100, Line="Ostrand", Track="Down"),
+        2: curve(650, "L", 10.1, 10.25, None, None, 90, 100, Line="Ostvang", Track="Up"),
+        3: curve(720, "L", 10.25, 10.4, None, None, 80, 100, Line="Ostvang", Track="Up"),
+        4: curve(654, "L", 10.102, 10.251, None, None, 90, 100, Line="Ostvang", Track="Down"),
+        5: curve(900, "R", 11.102, 11.251, None, None, None, 100, Line="Ostvang", Track="Down"),
     },
 )
 
@@ -278,13 +278,13 @@ DANISH = Messy(
     [
         sheet("""
 Strækning | Spor | Kurve nr. | Fra km | Til km | Radius [m] | V/H | Overhøjde [mm] | Overgangskurve ind [m] | Overgangskurve ud [m] | Hastighed [km/t] | Gods
-Lund | 1 | 3 | 10,250 | 10,500 | 1.000 | V | 60 | 40 | 40 | 120 | 80
-Lund | 1 | 4 | 11,250 | 11,500 | 1.400 | H | 40 | 40 | 30 | 120 | 80
+Lundvang | 1 | 3 | 10,250 | 10,500 | 1.000 | V | 60 | 40 | 40 | 120 | 80
+Lundvang | 1 | 4 | 11,250 | 11,500 | 1.400 | H | 40 | 40 | 30 | 120 | 80
 """),
         PSGR_FRT,
     ],
     {
-        2: curve(1000, "L", 10.25, 10.5, 40, 40, 60, 120, Freight=80, Line="Lund", Track="1"),
+        2: curve(1000, "L", 10.25, 10.5, 40, 40, 60, 120, Freight=80, Line="Lundvang", Track="1"),
         3: curve(1400, "R", 11.25, 11.5, 40, 30, 40, 120, Freight=80),
     },
 )

@@ -43,7 +43,7 @@ GERMAN_TRACKS = Messy(
     [
         sheet(
             """
-Bogenliste Strecke 4321 Tiefenau - Hohenfels
+Bogenliste Strecke 4321 Tiefmoor - Hohenquell
  | | | Gleis 1 | | | | Gleis 2 | | |
 Bogen | von km | bis km | Radius | Überh. | L ÜB 1 | L ÜB 2 | Radius | Überh. | L ÜB 1 | L ÜB 2
 B1 | 10,250 | 10,480 | 500 | 105 | 60 | 60 | 504 | 100 | 55 | 60
@@ -133,7 +133,7 @@ POLISH_TWO = Messy(
     "polish-two-speeds",
     [
         sheet("""
-Linia kolejowa nr 998, szlak Brzozowa - Dębina, tor 1
+Linia kolejowa nr 998, szlak Brzoźnik - Dębosław, tor 1
 Nr | Km pocz. łuku | Km końca łuku | R | Kier. | h | Lp1 | Lp2 | Vp/Vt
 1 | 12+345 | 12+700 | 650 | L | 90 | 60 | 60 | 110/70
 2 | 13+100 | 13+300 | 1500 | P | 30 | 30 | 40 | 120/80

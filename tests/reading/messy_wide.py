@@ -13,7 +13,7 @@ NORDIC = Messy(
     "swedish-register",
     [
         sheet("""
-Bandel 931 Älvhult - Norrby
+Bandel 931 Älvdunga - Norrdunga
 Kurvregister, uppdaterat efter mätning
 
 Kurva nr | Spår | Km+m från | Km+m till | Radie | Riktning | Rälsförhöjning | Brist | ÖK 1 | ÖK 2 | Sth A | Sth B | Gods | Anm.
@@ -36,7 +36,7 @@ NORWEGIAN_STACKED = Messy(
     [
         sheet(
             """
-Sporgeometri Fjellbanen | | | | | | | | |
+Sporgeometri Fjellvangbanen | | | | | | | | |
 Kurve | Km | | Radius | Retning | Overhøyde | Overgangskurve | | Hastighet | 
 nr. | fra | til | [m] | | [mm] | inn [m] | ut [m] | pers.tog | godstog
 1 | 102,345 | 102,600 | 300 | V | 130 | 60 | 55 | 70 | 60
@@ -137,7 +137,7 @@ GB_MODERN = Messy(
     [
         sheet(
             """
-Route: Harrow Moor to Selby Fold | | | | | | | | | | |
+Route: Harrow Moor to Tarnby Fold | | | | | | | | | | |
 Data from alignment database; radii in metres, cant in mm | | | | | | | | | | |
 ELR | Track ID | Curve | Mileage (M.Yds) | | Hand | Radius | Cant | Transition | | Speeds (mph) |
  | | | From | To | | | | Lead-in | Lead-out | Passenger | Freight
@@ -215,7 +215,7 @@ POLISH_WIDE = Messy(
     "polish-wide",
     [
         sheet("""
-Wykaz łuków poziomych, linia 999 Brzozowa – Dębina
+Wykaz łuków poziomych, linia 999 Brzoźnik – Dębosław
 Lp. | Nr łuku | km początku | km końca | R | Kierunek | h | Długość KP | Długość łuku | Vmax | Vtow
 1 | 12 | 45,120 | 45,560 | 700 | w lewo | 80 | 60 | 440 | 100 | 70
 2 | 13 | 46,200 | 46,380 | 1200 | w prawo | 40 | 40 | 180 | 100 | 70
@@ -233,7 +233,7 @@ BRAZIL_DEGREE = Messy(
     "brazil-degree",
     [
         sheet("""
-Trecho Serra Alta, bitola 1,00 m
+Trecho Serra Verdal, bitola 1,00 m
 Nº | Estaca inicial | km inicial | km final | Grau (corda 20 m) | Sentido | Superelevação (mm) | Espiral | VMA (km/h)
 1 | 120 | 12,400 | 12,650 | 4°00' | E | 80 | 40 | 50
 2 | 180 | 13,600 | 13,700 | 2°30' | D | 50 | 30 | 60
@@ -269,7 +269,7 @@ CZECH_STACKED = Messy(
     [
         sheet(
             """
-Traťový úsek: Horní Ves - Dolní Lhota | | | | | | | | |
+Traťový úsek: Horní Mlžná - Dolní Mlžná | | | | | | | | |
 Číslo | Staničení | | Poloměr | Směr | Převýšení | Délka | | Rychlost |
 oblouku | začátek | konec | R [m] | | D [mm] | přechodnice 1 | přechodnice 2 | V [km/h] | nákladní
 1 | 5,120 | 5,405 | 350 | vlevo | 120 | 55 | 60 | 70 | 60
