@@ -11,6 +11,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
+from cant.explaining.alignment import Alignment
 from cant.explaining.candidate import Candidate
 from cant.explaining.decisions import (
     Change,
@@ -18,18 +19,11 @@ from cant.explaining.decisions import (
     CurveKey,
     ExceptionalValues,
     ExcessWaived,
-    Flatter,
-    SharedLength,
     SiteBounds,
-    TransitionLength,
 )
 from cant.explaining.local import Answer
 from cant.explaining.room import (
-    lengths_needed,
-    radius_needed,
-    shared_lengths_needed,
     speeds_for_excess,
-    without_ends,
     without_excess,
     without_site,
 )
@@ -37,18 +31,10 @@ from cant.model.curves import none_if_nan
 from cant.planning.line import Line
 from cant.planning.outcome import Outcome
 from cant.planning.rules import Asked
-from cant.quantities.geometry import apex_offset, turn_of_curve
 from cant.quantities.kinematics import equilibrium_cant
-from cant.quantities.shapes import shift_of_arc
 
 FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]
-
-_LARGEST_TURN_RAD = 2.5
-"""Curves that turn further have no useful apex between their tangents."""
-
-_WIDE_MOVE_M = 20.0
-"""Moving the apex of a curve this far departs from what is there as much as doubling its radius."""
 
 
 class Proposals:
@@ -63,7 +49,13 @@ class Proposals:
         To what lengths and radii are rounded up.
     """
 
-    def __init__(self, outcome: Outcome, at: IntArray, length_step_m: float, radius_step_m: float) -> None:
+    def __init__(
+        self,
+        outcome: Outcome,
+        at: IntArray,
+        length_step_m: float,
+        radius_step_m: float,
+    ) -> None:
         self._outcome, self._at = outcome, at
         self._names = outcome.traffic.class_names
         line: Line = outcome.line.take(at)
@@ -78,33 +70,13 @@ class Proposals:
             line.planned_kmh, line.radius_m, line.constant
         )
         self._unsited = without_site(line, grid, target)
-        self._lengths = lengths_needed(line, grid, target, length_step_m)
-        self._radius = radius_needed(line, grid, target, radius_step_m)
-        self._shared = self._shared_lengths(length_step_m)
-
-    def _shared_lengths(self, rounding_m: float) -> dict[int, list[tuple[int, int, float, float]]]:
-        """Give for each curve (first, second, length there is, length needed) of its shared transitions."""
-        outcome = self._outcome
-        every = outcome.pairs.beside(self._at)
-        line, pairs = outcome.line.take(every), outcome.pairs.among(every)
-        target = outcome.target(line, np.nan_to_num(line.planned_kmh))[:, 0]
-        cant = without_ends(line, outcome.grid.take(every), target)
-        needed = shared_lengths_needed(line, pairs, cant, rounding_m)
-        found: dict[int, list[tuple[int, int, float, float]]] = {}
-        for j in np.flatnonzero(~np.isnan(needed)):
-            first, second = int(every[pairs.first[j]]), int(every[pairs.second[j]])
-            for curve in (first, second):
-                found.setdefault(curve, []).append(
-                    (first, second, float(pairs.length_m[j]), float(needed[j]))
-                )
-        return found
+        self._alignment = Alignment(outcome, at, length_step_m, radius_step_m)
 
     def of(self, j: int) -> Iterator[Candidate]:
         """Yield what might help the j-th curve, but what needs another run of the planner to know."""
         yield from self._faster_slow(j)
         yield from self._waived(j)
-        yield from self._longer(j)
-        yield from self._flatter(j)
+        yield from self._alignment.of(j)
         yield from self._released(j)
 
     def slower(self, curve: int, outcome: Outcome, at: dict[int, int], kind: str) -> Candidate | None:
@@ -208,61 +180,6 @@ class Proposals:
                     for k, e, m in zip(classes, excess, limit, strict=True)
                 ]
             },
-        )
-
-    def _longer(self, j: int) -> Iterator[Candidate]:
-        curve, curves = int(self._at[j]), self._outcome.curves
-        turned = bool(self._outcome.neighbourhood.descending[curve])
-        changes, facts, departure, taken = [], [], 0.0, 0.0
-        for end in (0, 1):
-            wanted = self._lengths[end][j]
-            if np.isnan(wanted):
-                continue
-            has = float(np.nan_to_num(self._line.transition_m[end][j, 0]))
-            side = ("out" if end == 0 else "in") if turned else ("in" if end == 0 else "out")
-            changes.append((curve, self._on(TransitionLength, curve, end=side, length_m=float(wanted))))
-            radius, shape = float(self._line.radius_m[j, 0]), curves.shape[curve]
-            shift = float(shift_of_arc(wanted, radius, shape) - shift_of_arc(has, radius, shape))
-            facts.append({"end": side, "from_m": has, "to_m": float(wanted), "shift_m": shift})
-            departure = max(departure, (wanted - has) / max(has, 20.0))
-            taken += (wanted - has) / 2
-        for first, second, has, wanted in self._shared.get(curve, []):
-            after = CurveKey.of(curves, second)
-            changes.append((first, self._on(SharedLength, first, length_m=wanted, next=after)))
-            bend = abs(
-                curves.hand[first] / curves.radius_m[first] - curves.hand[second] / curves.radius_m[second]
-            )
-            radius = 1.0 / max(float(bend), 1e-9)
-            shift = float(shift_of_arc(wanted, radius, curves.shape[first])) - float(
-                shift_of_arc(has, radius, curves.shape[first])
-            )
-            other = curves.curve[second if first == curve else first]
-            facts.append({"shared_with": other, "from_m": has, "to_m": wanted, "shift_m": shift})
-            departure = max(departure, (wanted - has) / max(has, 20.0))
-            taken += (wanted - has) / 2
-        arc = self._outcome.neighbourhood.weight_length_m[curve]
-        if changes and taken < arc - 1.0:
-            yield Candidate("longer transition", curve, tuple(changes), departure, {"transitions": facts})
-
-    def _flatter(self, j: int) -> Iterator[Candidate]:
-        curve, curves = int(self._at[j]), self._outcome.curves
-        wanted, today = self._radius[j], float(self._line.radius_m[j, 0])
-        if np.isnan(wanted):
-            return
-        arc = np.nanmax(
-            [curves.length_m[curve], 1000 * abs(curves.end_km[curve] - curves.start_km[curve]), -1.0]
-        )
-        ends = np.nan_to_num([curves.transition_in_m[curve], curves.transition_out_m[curve]])
-        turn = float(turn_of_curve(arc, today, ends[0], ends[1])) if arc > 0 else np.nan
-        if turn > _LARGEST_TURN_RAD:
-            return
-        offset = none_if_nan(float(apex_offset(today, wanted, turn))) if not np.isnan(turn) else None
-        yield Candidate(
-            "flatter curve",
-            curve,
-            ((curve, self._on(Flatter, curve, radius_m=float(wanted))),),
-            max(float(wanted / today - 1.0), (offset or 0.0) / _WIDE_MOVE_M),
-            {"from_m": today, "to_m": float(wanted), "offset_m": offset},
         )
 
     def _released(self, j: int) -> Iterator[Candidate]:

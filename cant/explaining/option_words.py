@@ -106,6 +106,11 @@ def _flatter(facts: Record, record: Record, words: Words) -> str:
     return said + "."
 
 
+def _realigned(facts: Record, record: Record, words: Words) -> str:
+    longer = _longer(facts, record, words)
+    return f"{_flatter(facts, record, words)[:-1]}; and {longer[0].lower()}{longer[1:]}"
+
+
 def _released(facts: Record, record: Record, words: Words) -> str:
     parts = []
     if facts["fixed_mm"] is not None:
@@ -125,5 +130,6 @@ _SAY: dict[str, Callable[[Record, Record, Words], str]] = {
     "excess waived": _waived,
     "longer transition": _longer,
     "flatter curve": _flatter,
+    "flatter curve and longer transition": _realigned,
     "site bound": _released,
 }

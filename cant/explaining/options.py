@@ -12,6 +12,7 @@ from typing import Any
 import numpy as np
 import numpy.typing as npt
 
+from cant.explaining.alignment import realigned
 from cant.explaining.candidate import Candidate, best_of_each_kind
 from cant.explaining.candidates import Proposals
 from cant.explaining.decisions import Decision
@@ -25,10 +26,12 @@ IntArray = npt.NDArray[np.int64]
 
 HELPED = ("restrict", "not compliant", "exceptional")
 """Statuses for which options are looked for."""
-MOST = 4
+FEWEST, MOST = 2, 4
 AT_ONCE = 256
 _METRIC_STEPS_M = (5.0, 5.0)
 _US_STEPS_M = (10 * FOOT_M, 50 * FOOT_M)
+
+_Tried = tuple[Candidate, Answer]
 
 
 class Options:
@@ -65,22 +68,26 @@ class Options:
     def _look(self, curves: list[int]) -> dict[int, list[dict[str, Any]]]:
         outcome = self._plan.outcome
         proposals = Proposals(outcome, np.array(curves, dtype=np.int64), *self._steps)
-        candidates = self._candidates(curves, proposals)
+        offered: dict[int, list[_Tried]] = {curve: [] for curve in curves}
+        self._try(self._candidates(curves, proposals), offered)
+        poor = np.array([curve for curve in curves if len(offered[curve]) < FEWEST], dtype=np.int64)
+        if len(poor):
+            self._try(list(realigned(outcome, poor, *self._steps)), offered)
+        best = {curve: best_of_each_kind(found)[:MOST] for curve, found in offered.items()}
+        told = iter(self._records([pair for found in best.values() for pair in found]))
+        return {curve: [self._option(one, next(told)) for one, _ in found] for curve, found in best.items()}
+
+    def _try(self, candidates: list[Candidate], offered: dict[int, list[_Tried]]) -> None:
+        """Plan candidates and put those that fit to their curves."""
         trials = [Trial(one.curve, one.changes, moves=one.moves) for one in candidates]
-        answers = try_out(outcome, self._surroundings, trials)
-        good = [
-            (one, answer) for one, answer in zip(candidates, answers, strict=True) if self._fits(one, answer)
-        ]
+        answers = try_out(self._plan.outcome, self._surroundings, trials)
+        good = [pair for pair in zip(candidates, answers, strict=True) if self._fits(*pair)]
         # The rank of an approval is known only from its record; of the others only the best are looked at.
-        records = self._records([(one, answer) for one, answer in good if one.exceptional])
-        offered: dict[int, list[tuple[Candidate, Answer]]] = {curve: [] for curve in curves}
+        approvals = [pair for pair in good if pair[0].exceptional]
+        records = dict(zip((one.curve for one, _ in approvals), self._records(approvals), strict=True))
         for one, answer in good:
             ranked = _ranked(one, records[one.curve]) if one.exceptional else one
             offered[one.curve].append((ranked, answer))
-        best = {curve: best_of_each_kind(found)[:MOST] for curve, found in offered.items()}
-        last = [pair for found in best.values() for pair in found]
-        told = iter(self._record_list(last))
-        return {curve: [self._option(one, next(told)) for one, _ in found] for curve, found in best.items()}
 
     def _candidates(self, curves: list[int], proposals: Proposals) -> list[Candidate]:
         outcome, status = self._plan.outcome, self._plan.status
@@ -123,15 +130,17 @@ class Options:
         lost = self._plan.outcome.proposed.lost_s[candidate.curve]
         return used and candidate.facts.get("seconds", 0.0) < lost + (0.0 if candidate.facts else 1.0)
 
-    def _records(self, good: list[tuple[Candidate, Answer]]) -> dict[int, dict[str, Any]]:
-        """Give the records of curves as planned with a candidate, by curve."""
-        return dict(zip((one.curve for one, _ in good), self._record_list(good), strict=True))
-
-    def _record_list(self, good: list[tuple[Candidate, Answer]]) -> list[dict[str, Any]]:
-        if not good:
-            return []
-        planned = Plan(good[0][1].outcome)
-        return list(planned.records([answer.at[one.curve] for one, answer in good]))
+    def _records(self, found: list[_Tried]) -> list[dict[str, Any]]:
+        """Give the records of curves as planned with a candidate."""
+        by_outcome: dict[int, list[int]] = {}
+        for number, (_, answer) in enumerate(found):
+            by_outcome.setdefault(id(answer.outcome), []).append(number)
+        records: dict[int, dict[str, Any]] = {}
+        for numbers in by_outcome.values():
+            plan = Plan(found[numbers[0]][1].outcome)
+            positions = [found[number][1].at[found[number][0].curve] for number in numbers]
+            records |= dict(zip(numbers, plan.records(positions), strict=True))
+        return [records[number] for number in range(len(found))]
 
     def _option(self, candidate: Candidate, record: dict[str, Any]) -> dict[str, Any]:
         decision = Decision(changes=tuple(change for _, change in candidate.changes))

@@ -170,14 +170,19 @@ def _length_at(line: Line, cants_mm: FloatArray, end: int, rounding_m: float) ->
     return np.where(np.isnan(cants_mm), np.nan, np.where(known, needed, 0.0))
 
 
-def radius_needed(line: Line, grid: Grid, target_mm: FloatArray, rounding_m: float) -> FloatArray:
-    """Give the smallest radius [m] at which the curve by itself fits, up to twice today's; else nan: (n,)."""
+def radius_needed(
+    line: Line, grid: Grid, target_mm: FloatArray, rounding_m: float, arc_alone: bool = False
+) -> FloatArray:
+    """Give the smallest radius [m] at which the curve by itself fits, up to twice today's; else nan: (n,).
+
+    ``arc_alone``: whatever its transitions.
+    """
     n = len(line)
     wide = line.take(np.tile(np.arange(n), len(_FLATTER)))
     today = np.tile(line.radius_m, (len(_FLATTER), 1))
     tried = np.ceil(today * np.repeat(_FLATTER, n)[:, None] / rounding_m) * rounding_m
     wide.radius_m = tried
-    cant = room(wide).nearest(
+    cant = room(wide, lambda rule: arc_alone and rule.place != CURVE).nearest(
         grid.take(np.tile(np.arange(n), len(_FLATTER))), np.tile(target_mm, len(_FLATTER))
     )
     fits = ~np.isnan(cant.reshape(len(_FLATTER), n))

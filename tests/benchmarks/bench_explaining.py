@@ -2,8 +2,8 @@
 
 Run by hand: ``python tests/benchmarks/bench_explaining.py [curves ...]``. The register is that of
 :mod:`bench_planning` (8 classes, one curve in twelve too sharp). Told apart are the plan, the options, the
-methods side by side, the notices, the records, the rest of the words, and writing it as JSON; compare ratios of
-one run.
+methods side by side, the notices, the records, the rest of the words, and writing it as JSON; compare ratios
+of one run.
 """
 
 from __future__ import annotations
@@ -69,7 +69,8 @@ def main(sizes: list[int]) -> None:
             told = sum(spent[name] for name in ("options", "methods", "notices", "words"))
             parts = ", ".join(f"{name} {seconds:.2f}" for name, seconds in spent.items())
             print(
-                f"{n:7d} curves, tiers {'+'.join(tiers)}: {parts} s; {1000 * told / n:.2f} ms a curve in words"
+                f"{n:7d} curves, tiers {'+'.join(tiers)}: {parts} s; {1000 * told / n:.2f} ms a curve in "
+                "words"
             )
 
 
