@@ -5,7 +5,7 @@ from __future__ import annotations
 import numpy as np
 import numpy.typing as npt
 
-from cant.errors import InputError
+from cant.errors import InputError, Place
 from cant.model.curves import CurveList
 from cant.model.limits import QUANTITIES, LimitSet
 from cant.model.plan import Finding
@@ -101,7 +101,25 @@ def find_unlimited(line: Line, limits: LimitSet, traffic: Traffic) -> list[Findi
                     "it is not limited there and was not checked."
                 )
                 findings.append(Finding("not-limited", "warning", text))
-    return findings
+    return findings + _rows_of_no_class(limits, categories)
+
+
+def _rows_of_no_class(limits: LimitSet, categories: list[str]) -> list[Finding]:
+    """Say where a user's rows speak of a category that no class has: a typing error leaves them unused."""
+    usual = {"passenger", "freight", *(category.casefold() for category in categories)}
+    rows: dict[str, list[str]] = {}
+    for row in limits.rows:
+        if row.category and row.category.casefold() not in usual and row.place != Place():
+            rows.setdefault(row.category, []).append(str(row.place.row))
+    return [
+        Finding(
+            "category-without-class",
+            "warning",
+            f"No class of the traffic has the category '{category}': the limits of row{'s' * (len(at) > 1)} "
+            f"{', '.join(at)} hold for none.",
+        )
+        for category, at in rows.items()
+    ]
 
 
 def demand_roll_coefficients(line: Line, traffic: Traffic) -> None:

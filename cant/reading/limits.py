@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from typing import Any
 
 from pydantic import ValidationError
@@ -15,7 +16,7 @@ from cant.reading.situations import canonical_situation
 from cant.reading.text import fold
 from cant.reading.traffic import category_word
 from cant.reading.words import meaning_of
-from cant.units import UNITS, Unit, find_unit
+from cant.units import UNITS, find_unit
 
 _CONDITIONS = {
     "Speed over": ("speed_over_kmh", "km/h"),
@@ -80,10 +81,37 @@ def _row(record: Record) -> LimitRow:
     if "Situation" in record and not record["Situation"].blank:
         fields["situation"] = canonical_situation(record["Situation"].text)
     try:
-        return LimitRow(**fields)
+        row = LimitRow(**fields)
     except ValidationError as error:
         message = f"the limit is not usable: {error.errors()[0]['msg']}"
         raise InputError(message, record["Quantity"].place) from None
+    _refuse_contradictions(row, record)
+    return row
+
+
+def _refuse_contradictions(row: LimitRow, record: Record) -> None:
+    """Refuse a rule that can never hold, a step of nothing, an exceptional value stricter than the normal."""
+    for over, up_to, low, high in (
+        ("Speed over", "Speed up to", row.speed_over_kmh, row.speed_up_to_kmh),
+        ("Radius over", "Radius up to", row.radius_over_m, row.radius_up_to_m),
+    ):
+        if low is not None and high is not None and low >= high:
+            message = (
+                f"no value is over {record[over].text} and up to {record[up_to].text}: the rule never holds; "
+                f"{up_to} is the larger of the two"
+            )
+            raise InputError(message, record[up_to].place)
+    if row.quantity in ("cant step", "speed step") and row.normal <= 0:
+        message = f"'{record['Normal'].text}' is no {row.quantity}; a number above 0 belongs there"
+        raise InputError(message, record["Normal"].place)
+    if row.exceptional is not None and QUANTITIES[row.quantity].bounds:
+        normal, exceptional = (row.canonical(value, 1.0) for value in (row.normal, row.exceptional))
+        if exceptional < normal:
+            message = (
+                f"the exceptional value {record['Exceptional'].text} is stricter than the normal value "
+                f"{record['Normal'].text}; it is the looser of the two, or blank"
+            )
+            raise InputError(message, record["Exceptional"].place)
 
 
 def _quantity(cell: Cell) -> str:
@@ -98,33 +126,44 @@ def _quantity(cell: Cell) -> str:
 def _unit(cell: Cell | None, normal: Cell, quantity: str) -> str:
     info = QUANTITIES[quantity]
     if cell is None or cell.blank:
+        if "gradient" in info.dimensions and _one_in(normal) is not None:
+            return "1 in n"
+        if normal.unit and UNITS[normal.unit].dimension not in info.dimensions:
+            message = f"the heading '{normal.heading}' names no unit of {quantity}; write it under Unit"
+            raise InputError(message, normal.place)
         return normal.unit or info.canonical
-    found = _find(cell.text)
+    found = find_unit(cell.text)
     if found is None or found.dimension not in info.dimensions:
         fitting = ", ".join(u.symbol for u in UNITS.values() if u.dimension in info.dimensions)
         what = "is not known" if found is None else f"is no unit of {quantity}"
         message = f"the unit '{cell.text}' {what}; {quantity} is stated in {fitting}"
         raise InputError(message, cell.place)
+    if normal.unit and normal.unit != found.symbol:
+        message = (
+            f"the heading '{normal.heading}' says {normal.unit}, this cell {found.symbol}; one unit a rule"
+        )
+        raise InputError(message, cell.place)
     return found.symbol
 
 
-def _find(text: str) -> Unit | None:
-    return find_unit(text)
+def _one_in(cell: Cell) -> str | None:
+    """Give the n of ``1 in n`` or ``1:n`` as it is written, None where the cell is no such ratio."""
+    head, _, tail = cell.text.casefold().replace("1 in", "1:", 1).partition(":")
+    return tail.strip() or None if isinstance(cell.value, str) and head.strip() == "1" else None
 
 
 def _value(cell: Cell | None, unit: str, needed: bool) -> float | None:
-    if cell is None or cell.value is None or (cell.blank and not needed):
+    if cell is None or cell.blank:
         if needed and cell is not None:
             message = "a rule has no Normal value; a number, or none where it is not limited"
             raise InputError(message, cell.place)
         return None
     if isinstance(cell.value, str) and meaning_of("nothing", cell.text) == "none":
         return math.inf
-    if unit == "1 in n" and isinstance(cell.value, str):
-        head, _, tail = cell.text.replace("1 in", "1:").partition(":")
-        if head.strip() == "1" and tail:
-            return float(tail.replace(",", "."))
-    return cell.number()
+    if unit == "1 in n":
+        count = _one_in(cell)
+        return cell.number() if count is None else replace(cell, value=count).number()
+    return cell.number(unit)
 
 
 def _not_negative(cell: Cell, target: str) -> float | None:

@@ -215,8 +215,8 @@ def _column_reading(
         index,
         heading,
         meaning,
-        named.symbol if named and info.unit else info.unit,
-        "heading" if named and info.unit else ("canonical" if info.unit else ""),
+        named.symbol if named else info.unit,
+        "heading" if named else ("canonical" if info.unit else ""),
         tuple(s for s in samples if s),
     )
 
