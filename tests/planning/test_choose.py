@@ -111,7 +111,7 @@ def test_the_random_lines_reach_every_step(monkeypatch: pytest.MonkeyPatch) -> N
         monkeypatch.setattr(choosing, name, counted)
     for seed in SEEDS:
         plan_arrays(*random_case(seed))
-    assert min(settled.values()) >= 20, settled
+    assert min(settled.values()) >= 10, settled
 
 
 def least(left: list[int], worth: Callable[[int], float]) -> list[int]:
@@ -145,7 +145,7 @@ def best_by_trying(outcome: Outcome, curve: int, exceptional: bool) -> float:
         )
     left = list(range(len(found)))
     for j in range(6 if found else 0):
-        left = least(left, lambda i, j=j: float(found[i][j]))  # type: ignore[misc]
+        left = least(left, lambda i, j=j: float(found[i][j]))
     return float(found[left[0]][-1]) if found else np.nan
 
 

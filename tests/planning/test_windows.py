@@ -208,7 +208,7 @@ def test_first_best_takes_the_first_of_the_least() -> None:
         rows = np.flatnonzero(allowed[:, j])
         assert any_allowed[j] == bool(len(rows))
         if len(rows):
-            assert chosen[j] == min(rows, key=lambda i, j=j: (*measures[:, i, j], i))  # type: ignore[misc]
+            assert chosen[j] == min(rows, key=lambda i, j=j: (*measures[:, i, j], i))
 
 
 def test_least_of_groups_goes_by_measure_after_measure() -> None:
