@@ -2,7 +2,8 @@
 
 Prints for each size the time of the array work (tables in, cants, speeds and verdicts out), of making the
 records, and the largest memory of the process; the invented register has 8 classes and a third of its curves
-in chains. Run by hand: the machine's noise is in every figure, so compare ratios of one run.
+in chains. The share of the curves that each step of the choice is given stands beside. Run by hand: the
+machine's noise is in every figure, so compare ratios of one run.
 """
 
 from __future__ import annotations
@@ -10,9 +11,13 @@ from __future__ import annotations
 import resource
 import sys
 import time
+from collections.abc import Iterator
+from contextlib import contextmanager
+from typing import Any
 
 import numpy as np
 
+import cant.planning.choose as choosing
 from cant.limit_sets import load
 from cant.model.curves import PLAIN, CurveList
 from cant.model.settings import Settings
@@ -37,7 +42,7 @@ CLASSES = (
 
 
 def make_traffic() -> Traffic:
-    """Eight classes of an invented line."""
+    """Give eight classes of an invented line."""
     return Traffic.of(
         TrainClass(
             name=name,
@@ -52,7 +57,7 @@ def make_traffic() -> Traffic:
 
 
 def make_register(n: int, seed: int = 1) -> CurveList:
-    """An invented register: radii that mostly suit the line speed, a third of the curves in chains."""
+    """Invent a register: radii that mostly suit the line speed, a third of the curves in chains."""
     rng = np.random.default_rng(seed)
     line_speed = rng.choice([70.0, 80.0, 90.0, 100.0, 110.0, 120.0, 140.0, 160.0], n)
     # Mostly comfortable, one in twelve too sharp for its line speed.
@@ -107,38 +112,69 @@ def peak_mib() -> float:
     return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / MEBI
 
 
-def best_of(curves: CurveList, tiers: tuple[str, ...], rounds: int = 3) -> tuple[float, Outcome]:
-    """Plan some times; the shortest time [s] and the last outcome."""
+def plan_timed(curves: CurveList, tiers: tuple[str, ...], rounds: int) -> tuple[float, float, Outcome]:
+    """Plan some times; the shortest time by the clock and of the processor [s], and the last outcome."""
     traffic, limits = make_traffic(), load("typical")
-    times = []
+    clock, processor = [], []
     for _ in range(rounds):
-        begin = time.perf_counter()
+        begin, begin_processor = time.perf_counter(), time.process_time()
         outcome = plan_arrays(curves, traffic, limits, Settings(tiers=tiers))
         _ = outcome.status
-        times.append(time.perf_counter() - begin)
-    return min(times), outcome
+        clock.append(time.perf_counter() - begin)
+        processor.append(time.process_time() - begin_processor)
+    return min(clock), min(processor), outcome
+
+
+@contextmanager
+def counted_steps(counts: dict[str, int]) -> Iterator[None]:
+    """Count the curves that each step of the choice is given."""
+    given = {
+        "settle_within_normal": lambda chains, *_: sum(map(len, chains)),
+        "node_blocks": lambda line, *_: len(line),
+        "settle_unslowed": lambda chains, *_: sum(map(len, chains)),
+        "search_chains": lambda chains, *_: sum(map(len, chains)),
+    }
+    place = {"node_blocks": 0}
+    real = {name: getattr(choosing, name) for name in given}
+    for name in given:
+
+        def step(*args: Any, _name: str = name, **named: Any) -> Any:
+            counts[_name] = counts.get(_name, 0) + given[_name](args[place.get(_name, 3)])
+            return real[_name](*args, **named)
+
+        setattr(choosing, name, step)
+    try:
+        yield
+    finally:
+        for name, function in real.items():
+            setattr(choosing, name, function)
 
 
 def main(sizes: tuple[int, ...]) -> None:
-    """Print a row a size."""
+    """Print some lines a size."""
     for n in sizes:
         curves = make_register(n)
         before = peak_mib()
         for tiers in (("normal",), ("normal", "exceptional")):
-            seconds, outcome = best_of(curves, tiers, 3 if n <= 10_000 else 2)
+            clock, processor, outcome = plan_timed(curves, tiers, 3 if n <= 10_000 else 2)
             memory = peak_mib() - before
+            counts: dict[str, int] = {}
+            with counted_steps(counts):
+                plan_timed(curves, tiers, 1)
             plan = Plan(outcome)
             chained = len(np.union1d(outcome.pairs.first, outcome.pairs.second)) / n
-            begin = time.perf_counter()
             few = plan.assessed[: min(n, 2000)]
+            begin = time.process_time()
             for _ in plan.records(few):
                 pass
-            records = (time.perf_counter() - begin) / len(few)
+            each = (time.process_time() - begin) / len(few) * 1e6
             print(
-                f"{n:7d} curves, tiers {'+'.join(tiers):18s}: arrays {seconds:7.3f} s "
-                f"({seconds / n * 1e6:6.1f} us a curve), {memory:5.0f} MiB more, records {records * 1e6:5.0f} us "
-                f"each; in chains {chained:.0%}, {plan.counts()}"
+                f"{n:7d} curves, tiers {'+'.join(tiers)}: arrays {clock:.3f} s, of the processor "
+                f"{processor:.3f} s ({processor / n * 1e6:.1f} us a curve), {memory:.0f} MiB more"
             )
+            shares = ", ".join(f"{name} {count / n:.2%}" for name, count in counts.items())
+            print(f"        in chains {chained:.0%}; given to {shares}; records {each:.0f} us each")
+            print(f"        {plan.counts()}")
 
 
 if __name__ == "__main__":
