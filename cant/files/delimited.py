@@ -10,7 +10,7 @@ from dataclasses import dataclass
 from typing import NoReturn
 
 from cant.errors import FileError, Place
-from cant.files.grid import CellError, Sheet, Value, Workbook
+from cant.files.grid import CellError, Sheet, TypedNumber, Value, Workbook
 
 MAX_COLUMNS = 500
 MAX_CELLS = 6_000_000
@@ -193,7 +193,8 @@ def _values(row: list[str], decimal_comma: bool) -> list[Value]:
 
 def _value(cell: str, decimal_comma: bool) -> Value:
     if _NUMBER.match(cell) and not (decimal_comma and "." in cell):
-        return float(cell)
+        # A zero at the end is lost on the value, and a curve may be called 2.10.
+        return TypedNumber.of(cell) if cell.endswith("0") and "." in cell else float(cell)
     stripped = cell.strip()
     if not stripped:
         return None

@@ -21,6 +21,25 @@ class Uncalculated(str):
     __slots__ = ()
 
 
+class TypedNumber(float):
+    """A number of a text file whose digits say more than its value: ``1.10`` may be a name.
+
+    Attributes
+    ----------
+    typed : str
+        As it stands in the file.
+    """
+
+    typed: str
+
+    @classmethod
+    def of(cls, typed: str) -> TypedNumber:
+        """Make it from the text."""
+        number = cls(typed)
+        number.typed = typed
+        return number
+
+
 Value: TypeAlias = float | str | bool | datetime | date | time | CellError | Uncalculated | None
 """Content of a cell; numbers are float. A blank cell, and a text of nothing but blanks, is None."""
 

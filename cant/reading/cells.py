@@ -102,7 +102,7 @@ def take_column(cells: Sequence[Value], taker: Taker) -> Numbers:
     result = Numbers(values, np.full(count, np.nan))
     cache: dict[Value, Taken] = {}
     for index, cell in enumerate(cells):
-        if type(cell) is float:
+        if isinstance(cell, float):
             values[index] = cell
         elif cell is not None:
             taken = cache.get(cell)

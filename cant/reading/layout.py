@@ -98,7 +98,7 @@ def _next_table(sheet: Sheet, start: int, columns: list[BlockColumn]) -> tuple[i
     known = {c.index: {fold(part) for part in c.parts} for c in columns}
     for row in range(start, len(sheet.rows) + 1):
         cells = sheet.rows[row - 1]
-        if not cells or any(type(c) is float for c in cells) or _has_plain_figures(cells):
+        if not cells or any(isinstance(c, float) for c in cells) or _has_plain_figures(cells):
             continue
         texts = [(i, squeeze(str(c))) for i, c in enumerate(cells) if is_text(c)]
         if len(texts) < 3 or sum(heading_score(t) for _, t in texts) < max(2.5, 0.6 * len(texts)):
@@ -124,7 +124,7 @@ def _legend(sheet: Sheet, header: int, end: int) -> list[str]:
         for cells in rows
         if cells
         and is_text(next((c for c in cells if c is not None), None))
-        and not any(type(c) is float for c in cells)
+        and not any(isinstance(c, float) for c in cells)
     ]
 
 

@@ -10,7 +10,7 @@ import unicodedata
 from datetime import date, datetime, time
 from functools import lru_cache
 
-from cant.files.grid import CellError, Uncalculated, Value
+from cant.files.grid import CellError, TypedNumber, Uncalculated, Value
 
 _LETTERS = str.maketrans(
     {
@@ -66,6 +66,8 @@ def shown(value: Value) -> str:
         return ""
     if isinstance(value, bool):
         return "TRUE" if value else "FALSE"
+    if isinstance(value, TypedNumber):
+        return value.typed
     if isinstance(value, (int, float)):
         return f"{value:.12g}" if abs(value) < 1e12 else repr(value)
     if isinstance(value, datetime):

@@ -11,6 +11,7 @@ from cant.errors import FileError
 from cant.files.grid import CellError
 from cant.files.open import open_workbook
 from cant.files.text import csv_cell
+from cant.reading.text import shown
 
 ROWS = [["Curve", "Radius", "Cant"], ["C1", 400.0, 60.0], ["C2", 512.5, 45.0]]
 
@@ -129,3 +130,9 @@ def test_only_blanks_is_said_to_be_empty():
         open_workbook(b" \r\n\t\n", "a.csv")
     with pytest.raises(FileError, match="no values"):
         open_workbook(b";;;\n;;;\n", "a.csv")
+
+
+def test_a_zero_at_the_end_of_a_number_is_not_lost():
+    rows = open_workbook(b"Curve,Radius\n2.10,600\n2.1,700\n", "list.csv").sheets[0].rows
+    assert rows[1] == [2.1, 600.0]
+    assert [shown(row[0]) for row in rows[1:]] == ["2.10", "2.1"]
