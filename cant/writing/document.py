@@ -19,7 +19,7 @@ from cant.version import __version__
 from cant.writing.cautions import CAUTIONS, UNVERIFIED
 
 if TYPE_CHECKING:
-    from cant.writing.planned import PlannedLine
+    from cant.writing.records import PlannedRecords
 
 _BATCH = 200
 
@@ -55,12 +55,12 @@ def cautions_of(limits: LimitSet) -> list[str]:
     return [*([] if limits.verified else [UNVERIFIED]), *CAUTIONS]
 
 
-def frame_of(planned: PlannedLine) -> dict[str, Any]:
+def frame_of(planned: PlannedRecords) -> dict[str, Any]:
     """Give everything of the JSON but the curves.
 
     Parameters
     ----------
-    planned : PlannedLine
+    planned : PlannedRecords
         The plan with its reading.
     """
     plan, reading = planned.plan, planned.reading
@@ -79,12 +79,12 @@ def frame_of(planned: PlannedLine) -> dict[str, Any]:
     }
 
 
-def chunks(planned: PlannedLine) -> Iterator[bytes]:
+def chunks(planned: PlannedRecords) -> Iterator[bytes]:
     """Give the JSON as UTF-8 in pieces of some hundred curves.
 
     Parameters
     ----------
-    planned : PlannedLine
+    planned : PlannedRecords
         The plan with its reading.
     """
     yield b'{"curves": ['

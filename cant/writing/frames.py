@@ -13,17 +13,17 @@ from cant.limit_sets import as_table
 from cant.writing.document import traffic_entry
 
 if TYPE_CHECKING:
-    from cant.writing.planned import PlannedLine
+    from cant.writing.records import PlannedRecords
 
 _KEY = ("sheet", "row", "line", "track", "curve")
 
 
-def to_frames(planned: PlannedLine) -> dict[str, pd.DataFrame]:
+def to_frames(planned: PlannedRecords) -> dict[str, pd.DataFrame]:
     """Give a plan as data frames.
 
     Parameters
     ----------
-    planned : PlannedLine
+    planned : PlannedRecords
         The plan.
 
     Returns

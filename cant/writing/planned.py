@@ -1,86 +1,19 @@
-"""A planned line: what was read, what was decided and how it is put into words, as one thing to be shown.
-
-Every output takes its curves from here, one record at a time, so that page, JSON, workbook and data frame
-cannot tell different stories, and a register of 100,000 curves is never held as records.
-"""
+"""A planned line as everybody above sees it: its records, and the outputs made of them."""
 
 from __future__ import annotations
 
-from collections.abc import Iterator, Sequence
-from dataclasses import dataclass
+from collections.abc import Iterator
 from typing import TYPE_CHECKING, Any
 
-from cant.model.display import Display
-from cant.model.reading import Reading
 from cant.writing import document, frames
-
-_BATCH = 256
-"""Curves whose records are made together: whole arrays for the figures, little memory."""
+from cant.writing.records import PlannedRecords
 
 if TYPE_CHECKING:
     import pandas as pd
 
-    from cant.explaining import Explanation
-    from cant.planning import Plan
 
-
-@dataclass(frozen=True)
-class PlannedLine:
-    """A plan with the reading it came from and the words that go with it.
-
-    Attributes
-    ----------
-    reading : Reading
-        The file as it was understood.
-    plan : Plan
-        The decisions.
-    explanation : Explanation
-        Reasons, findings and options.
-    """
-
-    reading: Reading
-    plan: Plan
-    explanation: Explanation
-
-    @property
-    def display(self) -> Display:
-        """Units in which people are shown the plan."""
-        return Display(self.plan.settings.units)
-
-    def record(self, index: int) -> dict[str, Any]:
-        """Give everything the plan knows of one curve, as the JSON has it.
-
-        Parameters
-        ----------
-        index : int
-            Index of the curve in the list that was read, one of ``plan.assessed``.
-        """
-        return self._finished([index], [self.plan.record(index)])[0]
-
-    def records(self) -> Iterator[dict[str, Any]]:
-        """Give the records of all curves that were not rejected, in input order, one at a time."""
-        chosen = [int(index) for index in self.plan.assessed]
-        self.explanation.prepare(chosen)
-        for start in range(0, len(chosen), _BATCH):
-            batch = chosen[start : start + _BATCH]
-            yield from self._finished(batch, list(self.plan.records(batch)))
-
-    def records_of(self, indices: Sequence[int]) -> list[dict[str, Any]]:
-        """Give the records of some curves, made together: a page of them costs little more than one.
-
-        Parameters
-        ----------
-        indices : sequence of int
-            Of ``plan.assessed``, in any order.
-        """
-        chosen = [int(index) for index in indices]
-        self.explanation.prepare(chosen)
-        return self._finished(chosen, list(self.plan.records(chosen)))
-
-    def _finished(self, indices: list[int], records: list[dict[str, Any]]) -> list[dict[str, Any]]:
-        """Add words and further figures to records of the planner."""
-        self.explanation.add_to(indices, records)
-        return records
+class PlannedLine(PlannedRecords):
+    """A plan with the reading it came from, the words that go with it, and the forms it is given out in."""
 
     def document(self) -> dict[str, Any]:
         """Give the JSON of the plan as one dict (contract: metric always)."""
