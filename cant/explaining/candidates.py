@@ -187,6 +187,8 @@ class Proposals:
         cant = float(self._unsited[j])
         if np.isnan(cant):
             return
+        if curves.held(curve) is not None:
+            return
         fixed = bool(self._line.fixed[j, 0])
         most, least = (none_if_nan(v[curve]) for v in (curves.cant_at_most_mm, curves.cant_at_least_mm))
         old = curves.cant_mm[curve] if fixed else None

@@ -1,7 +1,8 @@
 """Decisions that an engineer can take where a plan does not satisfy him, and what each changes in the tables.
 
 A decision is data: it can be written down as JSON, read back, and applied to the tables of a plan, which can
-then be planned as they stand. It changes the list, never the cants: those remain the planner's answer.
+then be planned as they stand. It changes the list, never the plan: a cant held by hand too is a demand that
+the planner then answers, checked against every limit.
 """
 
 from __future__ import annotations
@@ -19,8 +20,10 @@ from cant.model.limits import LimitSet
 from cant.model.settings import EXCEPTIONAL_TIER, NORMAL_TIER, Settings
 from cant.model.traffic import Traffic
 from cant.model.turnouts import Turnout
+from cant.planning.grid import LARGEST_CANT_MM
 from cant.quantities.geometry import turn_of_curve
 
+LONGEST_REASON = 300
 Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
 NonNegative = Annotated[float, Field(ge=0, allow_inf_nan=False)]
 
@@ -113,8 +116,26 @@ class SiteBounds(_Change):
     cant_at_least_mm: float | None = None
 
 
+class CantHeld(_Change):
+    """The engineer sets the cant himself: it is held, and what shares transitions with it planned around it.
+
+    It takes the place of a cant held before.
+    """
+
+    what: Literal["cant held"] = "cant held"
+    cant_mm: Annotated[float, Field(ge=0, le=LARGEST_CANT_MM, allow_inf_nan=False)]
+    because: Annotated[str, Field(max_length=LONGEST_REASON)] = ""
+
+
 Change = Annotated[
-    ClassSpeed | ExcessWaived | ExceptionalValues | TransitionLength | SharedLength | Flatter | SiteBounds,
+    CantHeld
+    | ClassSpeed
+    | ExcessWaived
+    | ExceptionalValues
+    | TransitionLength
+    | SharedLength
+    | Flatter
+    | SiteBounds,
     Field(discriminator="what"),
 ]
 
@@ -228,6 +249,8 @@ def make_changes(
     """
     for index, change in placed:
         match change:
+            case CantHeld():
+                curves.hold(index, change.cant_mm, change.because)
             case ClassSpeed():
                 _column(curves, change.class_name)[index] = change.speed_kmh
             case ExcessWaived():

@@ -206,7 +206,7 @@ class Explanation:
             self._bindings[index],
             self._plan.settings,
             float(outcome.grid.step_mm[index]),
-            bool(outcome.line.fixed[index, 0]),
+            bool(self._plan.curves.cant_fixed[index] and outcome.line.fixed[index, 0]),
             self._words,
         )
 

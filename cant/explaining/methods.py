@@ -72,9 +72,10 @@ class Methods:
     def of(self, index: int) -> list[dict[str, Any]]:
         """Give an entry for each method, in the order of METHODS; empty for a curve that is not planned.
 
-        An entry has ``method``, ``words``, ``chosen``, ``target_mm``, ``cant_mm``, ``tonnes_in_excess_a_day``
-        [t], ``seconds_lost_a_day`` [s], ``limits_passed`` (number), and by class ``unbalance_mm`` [mm] and
-        ``unbalanced_acceleration_ms2`` [m/s2]: positive is deficiency, negative excess.
+        An entry has ``method``, ``words``, ``chosen``, ``target_mm``, ``cant_mm``,
+        ``tonnes_in_excess_a_day`` [t], ``seconds_lost_a_day`` [s], ``limits_passed`` (their number, on its
+        transitions too), and by class ``unbalance_mm`` [mm] and ``unbalanced_acceleration_ms2`` [m/s2]:
+        positive is deficiency, negative excess.
         """
         if not self._plan.outcome.planned[index]:
             return []
@@ -146,7 +147,10 @@ class _Figures:
             over = line.runs & (run > 0) & (balance - cant < -_SAME_MM)
         self._tonnes = np.where(over, tonnes, 0.0).sum(axis=-1)
         self._lost = outcome.proposed.lost_s
-        self._passed = np.broadcast_to(outcome.proposed.passed.count, self._cant.shape)
+        self._passed = np.array(np.broadcast_to(outcome.proposed.passed.count, self._cant.shape))
+        between = np.broadcast_to(outcome.proposed.passed_between.count, outcome.pairs.first.shape)
+        for own in (outcome.pairs.first, outcome.pairs.second):
+            np.add.at(self._passed, own, between)
         self._runs = [np.flatnonzero(row).tolist() for row in line.runs]
 
     def of(self, i: int) -> dict[str, Any]:

@@ -64,7 +64,8 @@ class Reason:
         status = self._record["status"]
         parts = [self._why()]
         if status in ("restrict", "not compliant"):
-            parts = [self._conflict(), *self._consequence()]
+            held = bool(self._record.get("cant_held"))
+            parts = [self._why() if held else self._conflict(), *self._consequence()]
         elif status == "exceptional":
             parts.append(self._approvals())
         if status != "not compliant":
@@ -114,6 +115,10 @@ class Reason:
         """Say why this cant among those that the limits allow."""
         record, words, low, high = self._record, self._words, self._low, self._high
         cant, target = record["recommended_cant_mm"], record["target_cant_mm"]
+        held = record.get("cant_held")
+        if held:
+            why = f" ({held['because'].rstrip('.')})" if held["because"] else ""
+            return f"held by hand{why}, {self._range()}"
         if self._fixed:
             return "today's cant is fixed here"
         method = METHOD_WORDS[self._settings.method]
@@ -201,7 +206,8 @@ class Reason:
             broken = [p for p in record["limits_passed"] if not p["within_exceptional"]] or record[
                 "limits_passed"
             ]
-            parts.append("the cant bound to this site breaks " + listed(map(self._passed, broken[:3])))
+            bound = "the cant held by hand" if record.get("cant_held") else "the cant bound to this site"
+            parts.append(f"{bound} breaks " + listed(map(self._passed, broken[:3])))
         slow: dict[tuple[float, float, str], list[str]] = {}
         for e in record["classes"]:
             if e["run_speed_kmh"] is not None and e["run_speed_kmh"] < e["speed_kmh"] - 1e-6:

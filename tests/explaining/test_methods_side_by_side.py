@@ -96,4 +96,9 @@ def test_each_entry_is_the_plan_with_that_method(seed: int) -> None:
                 continue
             entry = next(e for e in entries if e["method"] == method)
             assert entry["cant_mm"] == pytest.approx(other.proposed_mm[index])
-            assert entry["target_mm"] == pytest.approx(other.record(index)["target_cant_mm"])
+            record = other.record(index)
+            assert entry["target_mm"] == pytest.approx(record["target_cant_mm"])
+            site = [p for p in record["limits_passed"] if not p["quantity"].startswith("cant at")]
+            places = {(p["place"], p["quantity"]) for p in site if p["place"] != "between"}
+            between = [p for p in site if p["place"] == "between"]
+            assert entry["limits_passed"] == len(places) + len(between)
