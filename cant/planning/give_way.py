@@ -6,8 +6,9 @@ two cants, the speeds run on the last curve but one, and what the last transitio
 become best are dropped by a bound from below; of paths that need the same from here on, the better is kept.
 Nothing that could be best is dropped: the result is exact.
 
-The paths of all chains stand in one list and go from curve to curve together. Each search goes over the pairs
-that keep what no lower speed can mend; a chain that has no such path is searched again over all pairs.
+The paths of all chains stand in one list and go from curve to curve together. A search goes over the pairs
+that keep what no lower speed can mend; a chain that has no such path is searched again over all pairs. A good
+path over few of the levels comes first: levels that lose more time by themselves need not be looked at.
 """
 
 from __future__ import annotations
@@ -76,6 +77,11 @@ def search_chains(
     part = line.take(curves)
     levels = Levels.of(part, nodes.take(curves), chain, exceptional)
     meeting = Meeting.of(line, pairs.take(pairs.after(len(line))[curves[levels.begins]]))
+    if not also_broken:
+        few = levels.take(levels.few())
+        listed = make_pair_list(meeting, few, exceptional, also_broken)
+        ceiling = _Search(part, meeting, few, listed, target).ceiling()[chain[levels.curve]]
+        levels = levels.take(_not_above(levels.bound(), ceiling[:, 2:]))
     listed = make_pair_list(meeting, levels, exceptional, also_broken)
     best = _Search(part, meeting, levels, listed, target).best()
     return curves, np.where(best < 0, np.nan, levels.cant_mm[best])
@@ -119,9 +125,8 @@ class _Search:
         self._line, self._meeting, self._levels, self._pairs = line, meeting, levels, pairs
         self._target = target
         self._services = Services.of(line)
-        every = np.arange(len(levels.curve))
-        self._own = self._time(every, levels.run_kmh)
-        self._first = np.searchsorted(pairs.before, np.arange(len(every) + 1))
+        self._own = levels.own
+        self._first = np.searchsorted(pairs.before, np.arange(len(levels.curve) + 1))
         self._broken = np.stack([pairs.broken, pairs.overrun], axis=-1)
         self._extra = (
             self._extra_time(pairs.before, pairs.on_before),
@@ -184,7 +189,7 @@ class _Search:
             choice[here] = pair[best]
         return to_go, choice
 
-    def _ceiling(self) -> FloatArray:
+    def ceiling(self) -> FloatArray:
         """Give the leading measures of a good path of each chain, (q, LEADING): no better one is worth more.
 
         inf where there is no path.
@@ -213,7 +218,7 @@ class _Search:
         """Give the best level of each curve by number, shape (c,); -1 where its chain has no path."""
         levels, k = self._levels, self._line.classes
         best = np.full(len(levels.chain), -1, dtype=np.int64)
-        ceiling, (to_go, _) = self._ceiling(), self._to_go(0.5)
+        ceiling, (to_go, _) = self.ceiling(), self._to_go(0.5)
         level = np.flatnonzero(self._position[levels.curve] == 0)
         level = level[np.isfinite(ceiling[self._chain(level)]).all(axis=1)]
         level = level[_not_above(to_go[level], ceiling[self._chain(level)])]

@@ -111,10 +111,13 @@ def _in_danger(meeting: Meeting, cants: tuple[FloatArray, FloatArray], exception
     """Tell which classes a pair of cants may slow, (m, k); at the ends all rules are worst."""
     with np.errstate(invalid="ignore"):
         ends = [np.stack([np.fmin.reduce(cant), np.fmax.reduce(cant)])[:, :, None] for cant in cants]
+    # A planned speed above all multiples that are tried is asked about too.
+    lines = (meeting.before, meeting.after)
+    fastest = [np.maximum(line.planned_kmh, top) for line, top in zip(lines, _ceilings(meeting), strict=True)]
     sure = surely_held(
         meeting,
         (np.nan_to_num(ends[0][:, None]), np.nan_to_num(ends[1][None])),
-        np.nan_to_num(np.minimum(*_ceilings(meeting))),
+        np.nan_to_num(np.minimum(*fastest)),
         exceptional,
     )
     sure = np.broadcast_to(sure, (2, 2, *meeting.both.shape))

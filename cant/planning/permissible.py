@@ -435,8 +435,9 @@ def surely_held(
     meeting: Meeting, cant_mm: tuple[FloatArray, FloatArray], fastest_kmh: FloatArray, exceptional: bool
 ) -> BoolArray:
     """Tell where the rules hold at every speed up to one, by their largest values and smallest limits."""
-    edges = [e for e in meeting.before.table.speed_edges(SPEED_QUANTITIES) if e < FASTEST_KMH]
-    bands = [SharedAsked(meeting, np.full((1, 1), band), exceptional) for band in [*edges, FASTEST_KMH]]
+    edges = meeting.before.table.speed_edges(SPEED_QUANTITIES)
+    above = max([FASTEST_KMH, *edges]) + 1.0
+    bands = [SharedAsked(meeting, np.full((1, 1), band), exceptional) for band in [*edges, above]]
     held: BoolArray = np.ones(fastest_kmh.shape, dtype=np.bool_)
     for found in speed_values(SharedAsked(meeting, fastest_kmh, exceptional), *cant_mm):
         limits = [asked.limit(found.rule.quantity) for asked in bands]
