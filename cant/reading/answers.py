@@ -40,10 +40,14 @@ class Correction:
 
 @dataclass(frozen=True)
 class Answers:
-    """Answers and corrections, by sheet and heading (folded: case and blanks do not matter)."""
+    """Answers and corrections, by sheet and heading (folded: case and blanks do not matter).
+
+    They remember what was asked for, so that an answer which fits nothing in the file can be told.
+    """
 
     choices: dict[tuple[str, str], tuple[str, ...]] = field(default_factory=dict)
     corrections: dict[tuple[str, str], Correction] = field(default_factory=dict)
+    _taken: set[tuple[str, str, str]] = field(default_factory=set, repr=False, compare=False)
 
     def choice(self, sheet: str, heading: str, choices: tuple[str, ...]) -> str | None:
         """Give the choice that was made among some, None where none was."""
@@ -51,6 +55,7 @@ class Answers:
             for given in self.choices.get(key, ()):
                 for choice in choices:
                     if squeeze(choice).casefold() == squeeze(given).casefold():
+                        self._taken.add((*key, given))
                         return choice
         return None
 
@@ -59,8 +64,22 @@ class Answers:
         for name in (heading, column_letter(index)):
             for key in _keys(sheet, name):
                 if key in self.corrections:
+                    self._taken.add((*key, ""))
                     return self.corrections[key]
         return None
+
+    def not_used(self) -> list[str]:
+        """Say which answers and corrections fitted no column and no question so far."""
+        answers = [(*key, given) for key, texts in self.choices.items() for given in texts]
+        corrections = [(*key, "") for key in self.corrections]
+        return [
+            (f"the answer '{given}'" if given else "the correction")
+            + f" for the column '{heading}'"
+            + ("" if sheet == ANY_SHEET else f" of sheet '{sheet}'")
+            + " was not used: nothing in this file asks for it"
+            for sheet, heading, given in answers + corrections
+            if (sheet, heading, given) not in self._taken
+        ]
 
 
 def _keys(sheet: str, heading: str) -> tuple[tuple[str, str], ...]:
@@ -75,6 +94,8 @@ def read_answers(data: bytes, file: str) -> Mapping[str, Any]:
     ------
     FileError
         Neither of the two.
+    InputError
+        An unknown key, meaning or unit, or a value of the wrong kind.
     """
     try:
         text = data.decode("utf-8-sig")
@@ -85,6 +106,7 @@ def read_answers(data: bytes, file: str) -> Mapping[str, Any]:
     if not isinstance(found, dict):
         message = "answers are an object with 'answers' and 'columns'"
         raise FileError(message, Place(file))
+    answers_from(found, file)
     return found
 
 

@@ -8,6 +8,7 @@ from typing import Any
 
 import numpy as np
 
+from cant.errors import Place
 from cant.files.grid import Sheet, Value
 from cant.model.curves import CurveList
 from cant.model.reading import ColumnReading, SheetReading
@@ -51,7 +52,7 @@ def read_block(block: Block, context: Context) -> Draft:
     """Understand one curve table."""
     rows, cells = _cells(block)
     columns = decide(block, cells)
-    correct(columns, context.answers, block.sheet.name)
+    correct(columns, context.answers, Place(context.file, block.sheet.name))
     split_ranges(columns)
     fill_merged(block.sheet, [int(r) for r in rows], columns)
     texts = (str(c) for item in columns for c in item.cells[:2000] if is_text(c))

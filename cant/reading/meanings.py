@@ -9,6 +9,7 @@ import re
 from collections.abc import Sequence
 from dataclasses import replace
 
+from cant.errors import InputError, Place
 from cant.files.grid import Value
 from cant.reading.answers import Answers
 from cant.reading.columns import column
@@ -58,10 +59,16 @@ def _as_defined(source: BlockColumn, said: dict[str, str]) -> BlockColumn:
     return BlockColumn(source.index, (f"{phrase} {tail}".strip(),), source.unit_row, source.heading)
 
 
-def correct(columns: list[Column], answers: Answers, sheet: str) -> None:
-    """Put a person's corrections over what was decided."""
+def correct(columns: list[Column], answers: Answers, place: Place) -> None:
+    """Put a person's corrections over what was decided.
+
+    Raises
+    ------
+    InputError
+        A unit that measures something else than the column does.
+    """
     for item in columns:
-        given = answers.correction(sheet, item.heading.text, item.index)
+        given = answers.correction(place.sheet, item.heading.text, item.index)
         if given is None:
             continue
         if given.unit is not None:
@@ -73,7 +80,20 @@ def correct(columns: list[Column], answers: Answers, sheet: str) -> None:
             if given.meaning.startswith("Speed "):
                 item.meaning, item.train_name = "Speed", given.meaning[6:]
                 item.train, item.literal = fold(item.train_name), True
+        if given.unit is not None and item.meaning:
+            _refuse_foreign_unit(item, place)
         item.confidence, item.note = "certain", "as told"
+
+
+def _refuse_foreign_unit(item: Column, place: Place) -> None:
+    """Refuse a told unit that measures something else: a radius in mph."""
+    usual = column("curves", item.meaning).unit
+    if usual and unit(item.unit).dimension != unit(usual).dimension:
+        message = (
+            f"the answers give '{item.heading.text}', read as {item.meaning}, the unit {item.unit}; "
+            f"one like {usual} belongs there"
+        )
+        raise InputError(message, place.at(column=item.index))
 
 
 def _from_heading(source: BlockColumn, cells: Sequence[Value]) -> Column:

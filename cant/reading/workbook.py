@@ -93,6 +93,7 @@ def read_workbook(
         notes=tables.notes,
     )
     drafts = _read_curves(roles["curves"], workbook, context)
+    context.notes.extend(context.answers.not_used())
     tell_sheets_apart(drafts)
     check_duplicates(drafts)
     _need_class_speeds(tables.traffic, drafts)

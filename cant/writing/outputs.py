@@ -26,7 +26,7 @@ def check_places(paths: Iterable[Path], inputs: Iterable[Path]) -> None:
     Raises
     ------
     FileError
-        A folder is missing, two outputs are the same file, or an output is an input.
+        A folder is missing, two outputs are the same file, or an output is an input, a folder or a device.
     """
     read = {path.resolve() for path in inputs}
     seen: set[Path] = set()
@@ -40,6 +40,9 @@ def check_places(paths: Iterable[Path], inputs: Iterable[Path]) -> None:
             raise FileError(message, Place(str(path)))
         if target.is_dir():
             message = "is a folder: name a file"
+            raise FileError(message, Place(str(path)))
+        if target.exists() and not target.is_file():
+            message = "is a device or pipe, and a file put in its place would replace it: name a file"
             raise FileError(message, Place(str(path)))
         if not target.parent.is_dir():
             message = "cannot be written: its folder does not exist"

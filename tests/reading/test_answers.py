@@ -68,3 +68,27 @@ def test_a_file_that_is_neither_is_refused(data: bytes) -> None:
 def test_answers_that_make_no_sense_are_refused(answers: dict[str, Any], says: str) -> None:
     with pytest.raises(InputError, match=says):
         read(answers)
+
+
+@pytest.mark.parametrize("told", [{"Cant": {"unit": "km/h"}}, {"E": {"unit": "mph"}}])
+def test_a_told_unit_of_another_kind_is_refused(told: dict[str, Any]) -> None:
+    with pytest.raises(InputError, match=r"^list.xlsx, sheet 'Curves', column [EF]: .* belongs there"):
+        read({"columns": {"Curves": told}})
+
+
+def test_answers_that_fit_nothing_are_told() -> None:
+    notes = read(
+        {
+            "answers": {"Curves": {"D": "bananas"}},
+            "columns": {"*": {"Kant": "ignore", "Cant": {"unit": "mm"}}},
+        }
+    ).notes
+    told = [note for note in notes if "was not used" in note]
+    assert len(told) == 2
+    assert "'bananas' for the column 'd' of sheet 'curves'" in told[0]
+    assert "'kant'" in told[1]
+
+
+def test_a_fault_in_a_file_of_answers_names_the_file() -> None:
+    with pytest.raises(InputError, match=r"^told\.json: 'nonsense'"):
+        read_answers(b'{"nonsense": 3}', "told.json")

@@ -79,3 +79,11 @@ def test_places_that_cannot_be_are_refused_before_any_work(tmp_path: Path) -> No
         check_places([tmp_path], [])
     check_places([tmp_path / "a.xlsx", tmp_path / "b.json"], [source])
     assert os.listdir(tmp_path) == ["curves.xlsx"]
+
+
+def test_a_device_or_pipe_is_never_replaced_by_a_file(tmp_path: Path) -> None:
+    pipe = tmp_path / "pipe.json"
+    os.mkfifo(pipe)
+    with pytest.raises(FileError, match=r"pipe\.json: is a device or pipe"):
+        check_places([pipe], [])
+    assert pipe.is_fifo()
