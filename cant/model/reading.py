@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 from dataclasses import dataclass, field
+from pathlib import PurePath
 from typing import Any
 
 from cant.model.curves import CurveList
@@ -176,3 +177,8 @@ class Reading:
     notes: list[str] = field(default_factory=list)
     turnouts: list[Turnout] = field(default_factory=list)
     sha256: str = ""
+
+    @property
+    def name(self) -> str:
+        """Name of the curve file without its folders: outputs go to others, folders are nobody's business."""
+        return PurePath(self.file).name

@@ -74,7 +74,7 @@ def frame_of(planned: PlannedRecords) -> dict[str, Any]:
         "counts": {**plan.counts(), "rejected": int(np.count_nonzero(plan.curves.rejected))},
         "notes": list(reading.notes),
         "cautions": cautions_of(plan.limits),
-        "input": {"file": reading.file, "sha256": reading.sha256},
+        "input": {"file": reading.name, "sha256": reading.sha256},
         "program": {"name": "cant", "version": __version__},
     }
 

@@ -54,7 +54,7 @@ _FINDING = (
 
 def footer_of(planned: PlannedLine) -> str:
     """Give the footer of every page: input file and digest, sheet, page."""
-    file = planned.reading.file[-60:].replace("&", "&&")
+    file = planned.reading.name[-60:].replace("&", "&&")
     digest = planned.reading.sha256[:16]
     left = file + (f"  sha256 {digest}" if digest else "")
     return f"&L&8{left}&C&8&A&R&8Page &P of &N"

@@ -35,7 +35,7 @@ def write_how_read(book: NewSheets, name: str, planned: PlannedLine) -> None:
     reading = planned.reading
     sheet = book.table(name)
     sheet.paragraph(
-        f"File {reading.file or '(no file)'}"
+        f"File {reading.name or '(no file)'}"
         + (f", SHA-256 {reading.sha256}" if reading.sha256 else "")
         + ". 'certain' rests on the heading or its unit, 'likely' on the values, 'answer' on what was "
         "answered.",

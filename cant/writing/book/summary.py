@@ -92,7 +92,7 @@ class Summary:
         marks = ("" if limits.verified else " - UNVERIFIED") + (" - EDITED" if limits.edited else "")
         constant = f"C = {settings.constant:.6g} mm m/(km/h)2, e = {settings.spacing_mm:.6g} mm"
         for label, value in (
-            ("Curve file", planned.reading.file or "(tables given to the library)"),
+            ("Curve file", planned.reading.name or "(tables given to the library)"),
             ("SHA-256 of it", planned.reading.sha256),
             ("Limits", f"{limits.title or limits.name}{marks}"),
             ("Edition, document", ", ".join(word for word in (limits.edition, limits.document) if word)),
