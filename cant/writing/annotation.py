@@ -26,6 +26,7 @@ from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
 if TYPE_CHECKING:
     from cant.writing.planned import PlannedLine
 
+_KEPT = 100_000
 OUTSIDE = "F2B8B0"
 """Ground of a proposed cant outside the curve's own bounds."""
 
@@ -60,6 +61,7 @@ class AddedColumns:
         self._display = display
         self._cells: dict[str, list[list[dict[int, OutCell]]]] = {}
         self._taken: dict[tuple[str, int], int] = {}
+        self._made: dict[tuple[float | str, str | None], OutCell] = {}
 
     def add(self, record: Record) -> None:
         """Take the cells of one curve."""
@@ -72,7 +74,16 @@ class AddedColumns:
             if isinstance(value, str):
                 value = value[:MAX_TEXT]
             fill = FILLS.get(str(value)) if column.heading == "Status" else None
-            into[record["row"]] = OutCell(value, fill=fill)
+            into[record["row"]] = self._cell(value, fill)
+
+    def _cell(self, value: float | str, fill: str | None) -> OutCell:
+        """Give a cell; of equal ones there is one object, for a register holds millions."""
+        found = self._made.get((value, fill))
+        if found is None:
+            found = OutCell(value, fill=fill)
+            if len(self._made) < _KEPT:
+                self._made[value, fill] = found
+        return found
 
     def add_rejected(self, row: RejectedRow) -> None:
         """Take the cells of a row that was refused: its status, and why."""

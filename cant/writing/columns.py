@@ -102,6 +102,14 @@ def change_mm(record: Record) -> float | None:
     return None if new is None or old is None else new - old
 
 
+def held_text(record: Record) -> str | None:
+    """Say that the cant is held by hand, and why; None where the plan chose it."""
+    held = record["cant_held"]
+    if not held:
+        return None
+    return f"held by hand: {held['because']}" if held["because"] else "held by hand"
+
+
 def rail_to_lift(record: Record) -> str | None:
     """Say which rail is lifted and on which side it lies; None where nothing changes."""
     change = change_mm(record)
@@ -163,6 +171,13 @@ PLACE: tuple[Column, ...] = (
 
 DECISION: tuple[Column, ...] = (
     Column("Proposed cant", "cant", path("recommended_cant_mm"), 10, "Cant to set."),
+    Column(
+        "Cant held",
+        "",
+        held_text,
+        24,
+        "Held by hand, by a decision of the engineer, and his reason; else blank.",
+    ),
     Column("Change of cant", "cant", change_mm, 10, "Proposed cant less today's."),
     Column(
         "Rail to lift", "", rail_to_lift, 13, "A tamper lifts: the outer rail for more cant, else the inner."

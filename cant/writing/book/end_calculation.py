@@ -403,7 +403,8 @@ class EndCalculation:
     def _needed(self) -> None:
         """Add the lengths that the normal limits need at planned speeds."""
         rows, basis, build = self._rows, self._basis, self._build
-        normal = ~(self._chosen.tier[self._first] | self._chosen.tier[self._second])
+        # Where a checker may switch the tier of a curve, the cell of its limit is not the normal one.
+        normal = np.full(len(rows), not self._chosen.plan.settings.allows_exceptional)
         inputs = basis.inputs
         for key, heading, quantity, change, words in (
             ("needed g", "Ramp needed by the gradient", _GRADIENT, "dD", "gradient"),

@@ -24,6 +24,7 @@ Value: TypeAlias = float | str | None
 Values: TypeAlias = Sequence[Value] | npt.NDArray[np.float64]
 BoolArray: TypeAlias = npt.NDArray[np.bool_]
 _TOKEN = re.compile("⟦([^⟧]+)⟧")
+_ROWS_AT_ONCE = 500
 _SHARED_FROM = 60
 """A formula at least this long [characters] is written once and shared by the rows below it."""
 
@@ -99,6 +100,7 @@ class Ledger:
         self.columns: list[LedgerColumn] = []
         self._letters: dict[str, str] = {}
         self._references: dict[str, Reference] = {}
+        self._shared_at: dict[int, int] = {}
 
     def rows(self) -> list[int]:
         """Give the row numbers of the data."""
@@ -126,15 +128,16 @@ class Ledger:
     def write(self, keep: int) -> None:
         """Write header and rows."""
         self._header(keep)
-        row_words = [str(number) for number in self.rows()]
-        columns = [
-            self._cells(column, number, row_words) for number, column in enumerate(self.columns, start=1)
-        ]
         width = len(self.columns)
         long = [c for c in self.columns if c.number_format is None and c.width >= LONG_TEXT]
-        for i, cells in enumerate(zip(*columns, strict=True)):
-            lines = max((lines_of(c.values[i], c.width) for c in long), default=1)
-            self.sheet.raw_row(self.first_row + i, "".join(cells), width, lines)
+        for begin in range(0, self.count, _ROWS_AT_ONCE):
+            end = min(begin + _ROWS_AT_ONCE, self.count)
+            columns = [
+                self._cells(column, number, begin, end) for number, column in enumerate(self.columns, start=1)
+            ]
+            for i, cells in enumerate(zip(*columns, strict=True), start=begin):
+                lines = max((lines_of(c.values[i], c.width) for c in long), default=1)
+                self.sheet.raw_row(self.first_row + i, "".join(cells), width, lines)
 
     def _header(self, keep: int) -> None:
         heads = [Heading(c.heading, c.width, c.number_format) for c in self.columns]
@@ -144,46 +147,48 @@ class Ledger:
         )
         self.sheet.header_rows(heads, rows, keep)
 
-    def _cells(self, column: LedgerColumn, number: int, row_words: list[str]) -> list[str]:
-        """Give the XML of every cell of a column."""
+    def _cells(self, column: LedgerColumn, number: int, begin: int, end: int) -> list[str]:
+        """Give the XML of some cells of a column: those of the rows of data from ``begin`` to ``end``."""
         style = self.sheet.cell_style(column.number_format, column.kind, column.width)
-        values = column.values.tolist() if isinstance(column.values, np.ndarray) else column.values
+        part = column.values[begin:end]
+        values = part.tolist() if isinstance(part, np.ndarray) else part
+        row_words = [str(self.first_row + i) for i in range(begin, end)]
         head = f'<c r="{column_letter(number - 1)}'
         tail = f'" s="{style}"' if style else '"'
         formulas = [""] * len(row_words)
         for share, (text, where) in enumerate(column.formulas or ()):
-            self._fill(formulas, text, where, number * 100 + share, row_words, column_letter(number - 1))
+            self._fill(formulas, text, where, number * 100 + share, begin, column_letter(number - 1))
         return [
             _cell(head, word, tail, value, formula)
             for word, value, formula in zip(row_words, values, formulas, strict=True)
         ]
 
     def _fill(
-        self,
-        formulas: list[str],
-        text: str,
-        where: BoolArray | None,
-        share: int,
-        row_words: list[str],
-        letter: str,
+        self, formulas: list[str], text: str, where: BoolArray | None, share: int, begin: int, letter: str
     ) -> None:
-        at = range(len(formulas)) if where is None else np.flatnonzero(where).tolist()
+        """Put a formula into the rows in which it stands."""
+        end = begin + len(formulas)
+        at = range(begin, end) if where is None else (begin + np.flatnonzero(where[begin:end])).tolist()
         if not len(at):
             return
         pieces = _TOKEN.split(cell_text(text))
-        names = pieces[1::2]
-        references = [self._references[name] for name in names]
-        if len(text) >= _SHARED_FROM and all(one.rows is None for one in references):
-            last = row_words[at[-1]]
-            first = row_words[at[0]]
-            master = _joined(pieces, references, at[0], first)
-            formulas[at[0]] = f'<f t="shared" ref="{letter}{first}:{letter}{last}" si="{share}">{master}</f>'
-            follower = f'<f t="shared" si="{share}"/>'
-            for i in at[1:]:
-                formulas[i] = follower
+        references = [self._references[name] for name in pieces[1::2]]
+        if len(text) < _SHARED_FROM or any(one.rows is not None for one in references):
+            for i in at:
+                own = str(self.first_row + i)
+                formulas[i - begin] = f"<f>{_joined(pieces, references, i, own)}</f>"
             return
+        follower = f'<f t="shared" si="{share}"/>'
         for i in at:
-            formulas[i] = f"<f>{_joined(pieces, references, i, row_words[i])}</f>"
+            formulas[i - begin] = follower
+        if share not in self._shared_at:
+            self._shared_at[share] = at[0]
+            first = str(self.first_row + at[0])
+            last = self.first_row + (self.count - 1 if where is None else int(np.flatnonzero(where)[-1]))
+            master = _joined(pieces, references, at[0], first)
+            formulas[at[0] - begin] = (
+                f'<f t="shared" ref="{letter}{first}:{letter}{last}" si="{share}">{master}</f>'
+            )
 
 
 def _joined(pieces: list[str], references: list[Reference], i: int, own: str) -> str:

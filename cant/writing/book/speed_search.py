@@ -236,7 +236,7 @@ class SpeedSearch:
             fails = np.isfinite(limit.value) & (multiple <= high + 1e-9)
             first = np.where(fails, np.minimum(first, multiple), first)
             low = high
-        return np.where(np.asarray(there, dtype=np.bool_) & np.isfinite(first), first, np.inf)
+        return np.where(np.asarray(there, dtype=np.bool_) & (first < NEVER / 100), first, np.inf)
 
     def broken(
         self, critical: Critical, at: IntArray, planned_kmh: FloatArray, there: npt.ArrayLike = True
