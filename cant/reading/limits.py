@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import math
 from dataclasses import replace
+from pathlib import PurePath
 from typing import Any
 
 from pydantic import ValidationError
@@ -38,7 +39,7 @@ def read_limits(sheet: Sheet, file: str) -> tuple[LimitSet, RecordTable]:
     _refuse_unknown_conditions(sheet, table)
     rows = tuple(_row(record) for record in table.records)
     us = any(row.unit in {"in", "ft", "mph", "in/31 ft", "in/62 ft", "in/s"} for row in rows)
-    name = file or sheet.name or "Limits"
+    name = PurePath(file).name or sheet.name or "Limits"
     return LimitSet(
         name=name, title=f"limits of the user ({name})", rows=rows, units="us" if us else "metric"
     ), table
