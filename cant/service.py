@@ -106,6 +106,7 @@ def make_plan(
     traffic: Traffic | None = None,
     limits: LimitSet | None = None,
     settings: Settings | None = None,
+    decision: Decision | None = None,
     progress: Progress | None = None,
 ) -> PlannedLine:
     """Plan what was read.
@@ -116,6 +117,8 @@ def make_plan(
         The file as it was understood.
     traffic, limits, settings : optional
         What is given here replaces what the reading holds.
+    decision : Decision, optional
+        Changes that the engineer has taken over the list as read, such as a cant held by hand.
     progress : callable, optional
         Called with the share done (0 to 1) and what is being done.
 
@@ -127,7 +130,8 @@ def make_plan(
     Raises
     ------
     InputError
-        There is no traffic, or there are no limits; the message says how to give them.
+        There is no traffic, or there are no limits; the message says how to give them. Or the decision is of
+        another list.
     """
     used_traffic = traffic or reading.traffic
     used_limits = limits or reading.limits
@@ -144,11 +148,15 @@ def make_plan(
         )
         raise InputError(message, Place(reading.file))
     used_settings = settings_for(settings or reading.settings or Settings(), used_limits)
+    inputs = Inputs(reading.curves, used_traffic, used_limits, used_settings, tuple(reading.turnouts))
+    if decision is not None:
+        inputs = apply(decision, inputs)
+        reading = replace(reading, curves=inputs.curves)
     plan = plan_line(
-        reading.curves,
-        used_traffic,
-        used_limits,
-        used_settings,
+        inputs.curves,
+        inputs.traffic,
+        inputs.limits,
+        inputs.settings,
         turnouts=reading.turnouts,
         progress=progress,
     )
@@ -177,11 +185,9 @@ def plan_option(planned: PlannedLine, decision: Decision | Mapping[str, Any]) ->
     """
     taken = decision if isinstance(decision, Decision) else read_decision(decision)
     plan, reading = planned.plan, planned.reading
-    inputs = apply(
-        taken, Inputs(plan.curves, plan.traffic, plan.limits, plan.settings, tuple(reading.turnouts))
+    return make_plan(
+        reading, traffic=plan.traffic, limits=plan.limits, settings=plan.settings, decision=taken
     )
-    changed = replace(reading, curves=inputs.curves)
-    return make_plan(changed, traffic=inputs.traffic, limits=inputs.limits, settings=inputs.settings)
 
 
 def settings_for(settings: Settings, limits: LimitSet) -> Settings:

@@ -76,6 +76,10 @@ class CurveList:
         By class: its excess is shown on this curve and does not bind, by a decision that needs approval.
     exceptional_allowed : ndarray of bool, shape (n,), or None
         Where exceptional values may be used if the settings allow that tier; None: everywhere.
+    held_mm : ndarray, shape (n,), or None
+        Cant held by hand, by a decision of the engineer [mm]; nan, or None as a whole, where none is.
+    held_because : list of str, length n, or None
+        His reason for each.
     """
 
     file: str
@@ -104,6 +108,8 @@ class CurveList:
     class_speeds: dict[str, FloatArray] = field(default_factory=dict)
     excess_waived: dict[str, BoolArray] = field(default_factory=dict)
     exceptional_allowed: BoolArray | None = None
+    held_mm: FloatArray | None = None
+    held_because: list[str] | None = None
 
     def __len__(self) -> int:
         return len(self.curve)
@@ -123,6 +129,27 @@ class CurveList:
             else:
                 chosen[item.name] = value
         return CurveList(**chosen)
+
+    def hold(self, index: int, cant_mm: float, because: str) -> None:
+        """Hold the cant of a curve by hand, in place.
+
+        Parameters
+        ----------
+        index : int
+        cant_mm : float
+            The cant [mm].
+        because : str
+            The engineer's reason.
+        """
+        if self.held_mm is None or self.held_because is None:
+            self.held_mm, self.held_because = np.full(len(self), np.nan), [""] * len(self)
+        self.held_mm[index], self.held_because[index] = cant_mm, because
+
+    def held(self, index: int) -> dict[str, Any] | None:
+        """Give the cant held by hand on a curve and the reason for it, None where none is held."""
+        if self.held_mm is None or self.held_because is None or np.isnan(self.held_mm[index]):
+            return None
+        return {"cant_mm": float(self.held_mm[index]), "because": self.held_because[index]}
 
     def as_read(self, index: int) -> dict[str, Any]:
         """Give a curve after units and notation are resolved (``as_read`` of the JSON), None where blank."""

@@ -1,4 +1,4 @@
-"""The cants among which the choice is made: 0, step, 2 step ... up to 300 mm; today's where it is fixed."""
+"""The cants among which the choice is made: 0, step, 2 step ... up to 300 mm; one where fixed or held."""
 
 from __future__ import annotations
 
@@ -113,5 +113,5 @@ def make_grid(line: Line) -> Grid:
         step_mm=step,
         smallest=np.maximum(np.ceil(minimum / step - _SLACK), 1).astype(np.int64),
         largest=np.floor(LARGEST_CANT_MM / step + _SLACK).astype(np.int64),
-        fixed_mm=np.where(line.fixed[:, 0], line.cant_today_mm[:, 0], np.nan),
+        fixed_mm=line.only_mm[:, 0].copy(),
     )

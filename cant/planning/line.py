@@ -59,6 +59,9 @@ class Line:
     transition_m, ramp_m : tuple of two ndarrays, shape (n, 1)
         At each end, to a straight; nan where not known or shared.
     fixed : ndarray of bool, shape (n, 1)
+        The cant is not chosen: today's may not be changed, or one is held by hand.
+    only_mm : ndarray, shape (n, 1)
+        The one cant of such a curve; nan elsewhere.
     runs, regular : ndarray of bool, shape (n, k)
         Whether the class runs there, and whether its excess binds.
     planned_kmh, trains, mass_t, roll, gravity_height_m : ndarray, shape (n, k)
@@ -85,6 +88,7 @@ class Line:
     transition_m: tuple[FloatArray, FloatArray]
     ramp_m: tuple[FloatArray, FloatArray]
     fixed: BoolArray
+    only_mm: FloatArray
     runs: BoolArray
     regular: BoolArray
     planned_kmh: FloatArray
@@ -243,6 +247,9 @@ def make_line(
         if name in curves.excess_waived:
             of_class.regular[:, j] &= ~curves.excess_waived[name]
     lengths = (neighbourhood.transition_m, neighbourhood.ramp_m)
+    only = np.where(curves.cant_fixed, curves.cant_mm, np.nan)
+    if curves.held_mm is not None:
+        only = np.where(np.isnan(curves.held_mm), only, curves.held_mm)
     return Line(
         table=table,
         constant=settings.constant,
@@ -257,7 +264,8 @@ def make_line(
         factor=_column([SHAPES[name] for name in curves.shape]),
         transition_m=(_column(lengths[0][0]), _column(lengths[0][1])),
         ramp_m=(_column(lengths[1][0]), _column(lengths[1][1])),
-        fixed=curves.cant_fixed[:, None] & ~np.isnan(curves.cant_mm[:, None]),
+        fixed=_column(~np.isnan(only)) > 0,
+        only_mm=_column(only),
         runs=of_class.runs,
         regular=of_class.regular & of_class.runs,
         planned_kmh=np.where(of_class.runs, planned, np.nan),

@@ -222,7 +222,7 @@ def plan_arrays(
     choice = choose(line, grid, pairs, planned, target, tier)
     cant = choice.cant_mm
     if settings.keep_within_mm > 0:
-        keepable = planned & ~choice.not_compliant
+        keepable = planned & ~choice.not_compliant & ~line.fixed[:, 0]
         cant = keep_today(line, pairs, cant, settings.keep_within_mm, keepable, tier)
     tell(0.8, "assessing the plan")
     proposed = assess_some(line, pairs, cant, tier, np.flatnonzero(~choice.within_normal & planned))

@@ -152,6 +152,7 @@ class RecordBlock:
             "hand": {LEFT: "L", RIGHT: "R"}.get(int(curves.hand[i])),
             "existing_cant_mm": none_if_nan(curves.cant_mm[i]),
             "recommended_cant_mm": none_if_nan(cant),
+            "cant_held": curves.held(i),
             "status": outcome.status[i],
             "tier": "exceptional" if exceptional else "normal",
             "lower_mm": none_if_nan(low.value[j]) if planned else None,
