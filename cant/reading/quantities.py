@@ -8,7 +8,7 @@ from cant.model.curves import SHAPES, FloatArray
 from cant.reading.cells import PAIR, Numbers, take_column
 from cant.reading.columns import column
 from cant.reading.draft import NUMERIC, Draft
-from cant.reading.evidence import Evidence, gather
+from cant.reading.evidence import IMPERIAL, Evidence, gather
 from cant.reading.hands import settle_hands
 from cant.reading.headings import MILES_YARDS
 from cant.reading.legends import apply_legends
@@ -77,11 +77,29 @@ def _settle_together(draft: Draft, evidence: Evidence) -> tuple[dict[str, FloatA
 
 
 def _usual_units(draft: Draft) -> None:
-    """In a canonical table give every heading without a unit the usual one, chainages apart (km or m)."""
+    """In a canonical table give every heading without a unit the usual one, chainages apart (km or m).
+
+    Beside inches, feet, miles or mph a column whose values are hardly metres or millimetres is left to what
+    its values say: 40 is then no radius in metres.
+    """
+    imperial = any(item.unit in IMPERIAL for item in draft.columns if item.meaning)
     for item in draft.columns:
         usual = column("curves", item.meaning).unit if item.meaning else ""
-        if usual and not item.unit and not item.notation and item.meaning not in ("Start", "End"):
-            item.unit, item.unit_from = usual, "canonical"
+        if not usual or item.unit or item.notation or item.meaning in ("Start", "End"):
+            continue
+        if imperial and _too_small(item):
+            continue
+        item.unit, item.unit_from = usual, "canonical"
+
+
+_HARDLY_BELOW = {"Radius": 60.0, "Cant": 10.0}
+"""Radii [m] and cants [mm] whose median is below this are another unit's (common practice)."""
+
+
+def _too_small(item: Column) -> bool:
+    bound = _HARDLY_BELOW.get(item.meaning)
+    sizes = [abs(c) for c in item.cells if isinstance(c, int | float) and not isinstance(c, bool) and c != 0]
+    return bound is not None and bool(sizes) and float(np.median(sizes)) < bound
 
 
 def _cants(draft: Draft, evidence: Evidence, speed: FloatArray) -> None:

@@ -19,7 +19,7 @@ from cant.reading.layout import Block
 from cant.reading.sheet_column import Column
 from cant.reading.takers import is_straight, take_length, take_radius
 from cant.reading.text import fold, is_blank, is_text, shown, squeeze
-from cant.reading.words import lexicon
+from cant.reading.words import lexicon, meaning_of
 
 GEOMETRY: dict[str, Callable[[str, str], object]] = {
     "Radius": take_radius,
@@ -119,12 +119,28 @@ def sift(block: Block, columns: list[Column], decimal: str, elements: bool) -> S
     for index in range(count):
         if index in totals:
             result.totals.append(index)
-        elif sure[index] or (elements and straight[index]):
+        elif sure[index] or (straight[index] and (elements or _says_curve(columns, index))):
             result.curves.append(index)
         else:
             _place(result, block, columns, index, bool(straight[index]), index > last)
     _set_parents_apart(result, columns, sure)
     return result
+
+
+def _says_curve(columns: list[Column], index: int) -> bool:
+    """Whether a row without curvature has a hand or a cant: then its radius is a mistake, not a straight."""
+    for item in columns:
+        cell = item.cells[index]
+        if item.meaning == "Cant" and isinstance(cell, int | float) and cell != 0:
+            return True
+        if item.meaning == "Hand" and isinstance(cell, str) and _names_hand(cell):
+            return True
+    return False
+
+
+def _names_hand(cell: str) -> bool:
+    """Whether a cell names a hand beyond doubt: a bare G or S may say straight."""
+    return meaning_of("hands", cell) is not None and (len(cell.strip()) > 2 or fold(cell) in ("l", "r"))
 
 
 def _set_parents_apart(result: Sifted, columns: list[Column], sure: np.ndarray) -> None:

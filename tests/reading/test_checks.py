@@ -51,6 +51,9 @@ def row(name: str, **cells: Value) -> list[Value]:
     ("cells", "column"),
     [
         ({"radius": None}, "Radius"),
+        ({"radius": 0}, "Radius"),
+        ({"radius": "straight", "hand": None}, "Radius"),
+        ({"radius": 0, "hand": "right", "cant": 0}, "Radius"),
         ({"radius": 0.5}, "Radius"),
         ({"radius": 2e6}, "Radius"),
         ({"radius": "tight"}, "Radius"),
@@ -211,3 +214,40 @@ Curve | Mileage from | Mileage to | Radius (m) | Cant (mm) | Speed (km/h)
 """
     [question] = read(sheet(text)).questions
     assert set(question.choices) == {"decimal miles", "kilometres"}
+
+
+def test_a_row_without_curvature_hand_or_cant_is_straight_track() -> None:
+    reading = read(
+        canonical(row("1"), row("2", radius=0, hand=None, cant=None), row("3", radius=0, hand="G"))
+    )
+    assert [r.row for r in reading.rejected] == [4]
+    assert any("row 3: straight track" in note for note in reading.notes)
+
+
+@pytest.mark.parametrize(
+    ("header", "values", "radius_m", "cant_mm"),
+    [
+        (
+            ["Curve", "Start", "End", "Radius", "Cant", "Speed (mph)"],
+            ["1", 1000, 1300, 40, 75, 50],
+            804.672,
+            75,
+        ),
+        (
+            ["Curve", "Start", "End", "Radius (ft)", "Cant", "Speed (mph)"],
+            ["1", 1, 2, 2865, 3.5, 50],
+            873.252,
+            88.9,
+        ),
+        (["Curve", "Start", "End", "Radius", "Cant", "Speed (mph)"], ["1", 1000, 1300, 800, 75, 50], 800, 75),
+        (["Curve", "Start", "End", "Radius", "Cant", "Speed"], ["1", 1000, 1300, 800, 5, 80], 800, 5),
+    ],
+    ids=["chains", "inches", "metres beside mph", "a small cant in metric units"],
+)
+def test_canonical_headings_without_units_beside_imperial_ones(
+    header: list[Value], values: list[Value], radius_m: float, cant_mm: float
+) -> None:
+    reading = read(Sheet("Curves", [header, values]))
+    assert not reading.rejected
+    assert reading.curves.radius_m[0] == pytest.approx(radius_m)
+    assert reading.curves.cant_mm[0] == pytest.approx(cant_mm)
