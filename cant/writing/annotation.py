@@ -20,7 +20,7 @@ from cant.model.reading import Reading, RejectedRow, SheetReading
 from cant.writing.book.status import FILLS, NOT_ASSESSED
 from cant.writing.columns import DECISION, NEEDED, WORDS, Column, Record, class_columns
 from cant.writing.own_units import units_of_sheet
-from cant.writing.plan_sheets import PlanSheets, footer_of
+from cant.writing.plan_sheets import PlanSheets, footer_of, holds_all
 from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
 
 if TYPE_CHECKING:
@@ -166,7 +166,8 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
     workbook = open_workbook(data, file)
     base, names, notes = _base(workbook, data)
     display = planned.display
-    columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *NEEDED, *WORDS]
+    words = WORDS if holds_all(len(planned.plan.assessed)) else WORDS[:2]
+    columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *NEEDED, *words]
     units = {
         entry.sheet: units_of_sheet(display, planned.reading.columns, entry.sheet)
         for entry in _curve_sheets(planned.reading)

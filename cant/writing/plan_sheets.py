@@ -41,6 +41,9 @@ __all__ = ["FULL_FIGURES", "STATUS_WORDS", "PlanSheets", "footer_of"]
 FULL_FIGURES = 5000
 """Up to this many curves the sheets of figures show all; of longer lists, those that need a decision."""
 
+FULL_PLAN = 20_000
+"""Up to this many curves the sheets "Plan" and "Findings" show all, and added columns hold the findings."""
+
 _DECIDED = ("kept", "change")
 _FINDING = (
     ("Line", 16.0),
@@ -58,6 +61,11 @@ def footer_of(planned: PlannedLine) -> str:
     digest = planned.reading.sha256[:16]
     left = file + (f"  sha256 {digest}" if digest else "")
     return f"&L&8{left}&C&8&A&R&8Page &P of &N"
+
+
+def holds_all(curves: int) -> bool:
+    """Tell whether a list is short enough for every curve to stand on the sheets "Plan" and "Findings"."""
+    return curves <= FULL_PLAN
 
 
 class PlanSheets:
@@ -82,6 +90,7 @@ class PlanSheets:
         self._planned, self._book, self._name = planned, book, name
         self._index = iter(plan.assessed.tolist())
         self._all = len(plan.assessed) <= FULL_FIGURES
+        self._whole = holds_all(len(plan.assessed))
         self._chosen = Selection(plan, chosen_curves(plan))
         self._summary = Summary(book, name("Plan summary"), planned, day)
         self._pictures = Pictures(
@@ -116,9 +125,11 @@ class PlanSheets:
             self._chosen.take(place, record)
         for part in (self._summary, self._pictures, self._exceptions, self._speeds, self._lifting):
             part.add(record)
-        self._plan.row([column.cell(record, self._display) for column in self._plan_columns])
-        self._write_findings([record["line"], record["track"], record["curve"]], record["findings"])
-        if self._all or record["status"] not in _DECIDED:
+        needs_decision = record["status"] not in _DECIDED
+        if self._whole or needs_decision:
+            self._plan.row([column.cell(record, self._display) for column in self._plan_columns])
+            self._write_findings([record["line"], record["track"], record["curve"]], record["findings"])
+        if self._all or needs_decision:
             self._add_figures(record)
 
     def _add_figures(self, record: Record) -> None:
@@ -158,12 +169,13 @@ class PlanSheets:
 
     def _table(self, name: str, columns: Sequence[Column]) -> TableSheet:
         sheet = self._book.table(self._name(name))
-        if not self._all and name != "Plan":
+        if not (self._whole if name == "Plan" else self._all):
+            most = FULL_PLAN if name == "Plan" else FULL_FIGURES
             text = (
-                f"The list has more than {FULL_FIGURES} curves: this sheet holds those that need a "
-                "decision (not "
-                "compliant, speed restricted, exceptional, not assessed); the sheet 'Plan' and the JSON "
-                "hold all."
+                f"The list has more than {most} curves: this sheet holds those that need a decision (not "
+                "compliant, speed restricted, exceptional, not assessed). The added columns of the curve "
+                "list "
+                "and the JSON hold all."
             )
             sheet.paragraph(text, 10, 110)
         display = self._display

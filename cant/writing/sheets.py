@@ -254,7 +254,7 @@ class NewSheets:
         }
         self.workbook = xlsxwriter.Workbook(self._stream, options)
         self.plain = self.workbook.add_format({"valign": "top"})
-        self.word = self.workbook.add_format({"valign": "top", "indent": 1})
+        self.word = self.workbook.add_format({"valign": "top", "align": "left", "indent": 1})
         self.bold = self.workbook.add_format({"bold": True, "valign": "top"})
         self.wrapped = self.workbook.add_format({"text_wrap": True, "valign": "top"})
         self.head = self.workbook.add_format(
@@ -289,7 +289,7 @@ class NewSheets:
             elif key[2]:
                 look["text_wrap"] = True
             else:
-                look["indent"] = 1
+                look |= {"align": "left", "indent": 1}
             self._styled[key] = self.workbook.add_format(look)
         return self._styled[key]
 

@@ -4,7 +4,8 @@ Run by hand::
 
     python tests/benchmarks/bench_workbook.py [ROWS ...]
 
-For each size it prints the seconds of the whole command (wall clock and processor, in a process of its own), its
+For each size it prints the seconds of the whole command (wall clock and processor, in a process of its
+own), its
 peak of memory, the size of the file, and how long LibreOffice takes to load, recalculate and save it.
 """
 
@@ -29,7 +30,7 @@ PROFILE = """<?xml version="1.0" encoding="UTF-8"?>
 
 
 def timed(command: list[str]) -> tuple[float, float, float]:
-    """Run a command: wall clock and processor seconds, and the peak of memory of all children so far [MiB]."""
+    """Run a command; give wall clock and processor seconds, and the peak of all children so far [MiB]."""
     before = resource.getrusage(resource.RUSAGE_CHILDREN)
     begin = time.perf_counter()
     subprocess.run(command, check=True, stdout=subprocess.DEVNULL, stderr=subprocess.DEVNULL)

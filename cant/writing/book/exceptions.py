@@ -10,7 +10,7 @@ from cant.writing.columns import Cell, Record, governing_text
 from cant.writing.sheets import Heading, NewSheets, TableSheet
 
 _EXCEPTION_HEADS = (
-    ("Line", 14.0),
+    ("Line", 19.0),
     ("Track", 7.0),
     ("Curve", 8.0),
     ("Limit passed", 24.0),
@@ -22,7 +22,7 @@ _EXCEPTION_HEADS = (
     ("Unit", 7.0),
     ("Clause", 15.0),
     ("Kept", 12.0),
-    ("Reason", 56.0),
+    ("Reason", 51.0),
     ("Decided by (name)", 14.0),
     ("Decision", 14.0),
     ("Date", 10.0),

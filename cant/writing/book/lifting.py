@@ -20,6 +20,8 @@ from cant.writing.columns import SAME_MM, Cell, Record, change_mm, lifted_rail
 from cant.writing.sheets import Heading, NewSheets, TableSheet
 
 FIRST_ROW = 5
+MOST_ROWS = 10_000
+"""Most curves of the lifting schedule."""
 
 
 def is_changed(record: Record) -> bool:
@@ -41,10 +43,14 @@ class LiftingSchedule:
         self._sheet = sheet
         self._inputs = inputs
         self._rows: list[tuple[list[Cell], list[float], str]] = []
+        self._left_out = 0
 
     def add(self, record: Record) -> None:
         """Take a curve."""
         if not is_changed(record):
+            return
+        if len(self._rows) >= MOST_ROWS:
+            self._left_out += 1
             return
         read = record["as_read"]
         words = [record["line"], record["track"], record["curve"], record["hand"], read["situation"]]
@@ -62,7 +68,7 @@ class LiftingSchedule:
             "before track; where it goes up, track before speed. The shift is towards the inside of the "
             "curve "
             f"where cant is added, at the heights on the sheet '{self._inputs.name}'; confirm clearances, "
-            "platforms, overhead line and the stress-free temperature of the rail.",
+            "platforms, overhead line and the stress-free temperature of the rail." + self._thinned(),
             14,
             150,
         )
@@ -72,6 +78,15 @@ class LiftingSchedule:
         ledger.write(keep=3)
         if not self._rows:
             self._sheet.line("No cant changes.")
+
+    def _thinned(self) -> str:
+        if not self._left_out:
+            return ""
+        return (
+            f" The first {MOST_ROWS} curves that change, in the order of the list; {self._left_out} "
+            "further ones "
+            "have change and rail in the added columns of the curve list alone."
+        )
 
     def _columns(self) -> list[LedgerColumn]:
         words = list(zip(*(row[0] for row in self._rows), strict=True)) or [()] * 5

@@ -44,8 +44,8 @@ def write_how_read(book: NewSheets, name: str, planned: PlannedLine) -> None:
     )
     sheet.header([Heading(title, width) for title, width in _READ])
     for sheet_read in reading.sheets:
-        rows = f"header to row {sheet_read.header_row}, data rows {sheet_read.first_row} to "
-        f"{sheet_read.last_row}"
+        data = f"data rows {sheet_read.first_row} to {sheet_read.last_row}"
+        rows = f"header to row {sheet_read.header_row}, {data}"
         sheet.row([sheet_read.sheet, "(whole sheet)", f"table: {sheet_read.role}", "", "", "", "", rows])
     for c in reading.columns:
         meaning = c.meaning or "left alone"
