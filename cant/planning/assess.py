@@ -278,9 +278,9 @@ class Assessment:
     passed: Passed
     passed_between: Passed
 
-    def total(self, at: npt.NDArray[np.int64]) -> TimeLost:
-        """Give what some curves lose together."""
-        return TimeLost(self.stopped[at].sum(keepdims=True), self.lost_s[at].sum(keepdims=True))
+    def by_group(self, begin: npt.NDArray[np.int64]) -> TimeLost:
+        """Give what groups of consecutive curves that begin at some of them lose."""
+        return TimeLost(np.add.reduceat(self.stopped, begin), np.add.reduceat(self.lost_s, begin))
 
 
 def assess(line: Line, pairs: Pairs, cant_mm: FloatArray, exceptional: bool) -> Assessment:

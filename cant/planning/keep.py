@@ -1,8 +1,12 @@
-"""``Keep within``: today's cants stay where they are nearly as good: no tamping for nothing."""
+"""``Keep within``: today's cants stay where they are nearly as good: no tamping for nothing.
+
+Chains do not touch each other, so all of a block take the same step at once: first every chain all that is
+within its reach, then those that cannot their first, their second ...
+"""
 
 from __future__ import annotations
 
-from collections.abc import Sequence
+from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
 
 import numpy as np
@@ -29,6 +33,8 @@ IntArray = npt.NDArray[np.int64]
 
 SAME_MM = 1e-6
 """Cants closer than this [mm] are the same."""
+BLOCK = 1000
+"""Curves looked at together, about: keeps their arrays within the processor's cache."""
 
 
 def keep_today(
@@ -59,26 +65,83 @@ def keep_today(
     with np.errstate(invalid="ignore"):
         away = np.abs(today - cant_mm)
         reach = keepable & (away <= within_mm + SAME_MM) & (away > SAME_MM)
-    if not reach.any():
-        return cant_mm
-    chains = chains_of(len(line), pairs)
-    lone = np.ones(len(line), dtype=np.bool_)
+    result = cant_mm.copy()
+    after = pairs.after(len(line))
+    place = np.zeros(len(line), dtype=np.int64)
+    for curves, begin in _blocks(len(line), pairs, reach):
+        place[curves] = np.arange(len(curves))
+        own = pairs.take(after[curves][after[curves] >= 0])
+        own.first, own.second = place[own.first], place[own.second]
+        part = _Part(line.take(curves).with_bands(), own, begin, reach[curves], exceptional)
+        result[curves] = part.kept(cant_mm[curves])
+    return result
+
+
+def _blocks(n: int, pairs: Pairs, reach: BoolArray) -> Iterator[tuple[IntArray, IntArray]]:
+    """Yield whole chains with anything in reach, lone curves as chains of one, and where each begins."""
+    chains = chains_of(n, pairs)
+    lone = reach.copy()
     for chain in chains:
         lone[chain] = False
-    kept = np.where(reach, today, cant_mm)
-    before = _State.of(line, pairs, cant_mm, exceptional)
-    after = _State.of(line, pairs, kept, exceptional)
-    clean = _clean(pairs, before, after, reach)
-    slower = _slower(before.worth, after.worth)
-    result = np.where(lone & reach & clean & ~slower, today, cant_mm)
-    for chain in chains:
-        if not reach[chain].any():
-            continue
-        if clean[chain].all() and not _slower(before.worth.total(chain), after.worth.total(chain)).any():
-            result[chain] = kept[chain]
-        else:
-            result[chain] = _one_by_one(line, pairs, chain, cant_mm, reach, exceptional)
-    return result
+    groups = [chain for chain in chains if reach[chain].any()] + list(np.flatnonzero(lone)[:, None])
+    block: list[IntArray] = []
+    size = 0
+    for group in groups:
+        block.append(group)
+        size += len(group)
+        if size >= BLOCK:
+            yield _in_a_row(block)
+            block, size = [], 0
+    if block:
+        yield _in_a_row(block)
+
+
+def _in_a_row(groups: Sequence[IntArray]) -> tuple[IntArray, IntArray]:
+    lengths = np.array([len(group) for group in groups])
+    return np.concatenate(groups), np.cumsum(lengths) - lengths
+
+
+@dataclass(frozen=True)
+class _Part:
+    """Some whole chains: their line, the pairs among them, where each begins, and which cants may go back."""
+
+    line: Line
+    pairs: Pairs
+    begin: IntArray
+    reach: BoolArray
+    exceptional: bool
+
+    def kept(self, cant_mm: FloatArray) -> FloatArray:
+        """Put today's cants back: all of a chain together, else one after the other."""
+        state = self._state(cant_mm)
+        good = self._good(cant_mm, state, self.reach)
+        cants = np.where(good & self.reach, self.line.cant_today_mm[:, 0], cant_mm)
+        # Where only one is within reach, together and one by one are the same.
+        count = np.cumsum(self.reach, dtype=np.int64)
+        turn = count - np.repeat(count[self.begin] - self.reach[self.begin], self._lengths)
+        several = np.repeat(np.add.reduceat(self.reach, self.begin, dtype=np.int64) > 1, self._lengths)
+        left = self.reach & several & ~good
+        changed = good & self.reach
+        for i in range(1, int(turn[left].max(initial=0)) + 1):
+            state = self._state(cants) if changed.any() else state
+            exchanged = left & (turn == i)
+            changed = exchanged & self._good(cants, state, exchanged)
+            cants = np.where(changed, self.line.cant_today_mm[:, 0], cants)
+        return cants
+
+    @property
+    def _lengths(self) -> IntArray:
+        return np.diff(self.begin, append=len(self.line))
+
+    def _state(self, cant_mm: FloatArray) -> _State:
+        return _State.of(self.line, self.pairs, cant_mm, self.exceptional)
+
+    def _good(self, cant_mm: FloatArray, before: _State, exchanged: BoolArray) -> BoolArray:
+        """Tell for each curve whether its chain may have today's cants at some of its curves."""
+        after = self._state(np.where(exchanged, self.line.cant_today_mm[:, 0], cant_mm))
+        clean = np.logical_and.reduceat(_clean(self.pairs, before, after, exchanged), self.begin)
+        lost = (worth.by_group(self.begin) for worth in (before.worth, after.worth))
+        return np.repeat(clean & ~_slower(*lost), self._lengths)
 
 
 @dataclass(frozen=True)
@@ -110,7 +173,7 @@ class _State:
         )
 
 
-def _slower(before: TimeLost | Assessment, after: TimeLost | Assessment) -> BoolArray:
+def _slower(before: TimeLost, after: TimeLost) -> BoolArray:
     """Tell where running time is lost that was not lost before."""
     more_stopped = after.stopped > before.stopped + slack(before.stopped)
     return np.asarray(more_stopped | (after.lost_s > before.lost_s + slack(before.lost_s)))
@@ -140,28 +203,3 @@ def _clean(pairs: Pairs, before: _State, after: _State, exchanged: BoolArray) ->
         np.logical_and.at(clean, pairs.first, between)
         np.logical_and.at(clean, pairs.second, between)
     return np.asarray(clean)
-
-
-def _one_by_one(
-    line: Line,
-    pairs: Pairs,
-    chain: Sequence[int] | IntArray,
-    cant_mm: FloatArray,
-    reach: BoolArray,
-    exceptional: bool,
-) -> FloatArray:
-    at = np.asarray(chain)
-    part, own = line.take(at), pairs.among(at)
-    cants: FloatArray = cant_mm[at].copy()
-    best = _State.of(part, own, cants, exceptional)
-    every = np.arange(len(at))
-    for i in np.flatnonzero(reach[at]):
-        trial: FloatArray = cants.copy()
-        trial[i] = part.cant_today_mm[i, 0]
-        after = _State.of(part, own, trial, exceptional)
-        if (
-            _clean(own, best, after, every == i).all()
-            and not _slower(best.worth.total(every), after.worth.total(every)).any()
-        ):
-            cants = trial
-    return cants
