@@ -20,7 +20,7 @@ from cant.reading.draft import Draft
 from cant.reading.headings import analyse, split_unit
 from cant.reading.sheet_column import Column
 from cant.reading.takers import take_speed
-from cant.reading.text import fold, is_text, squeeze
+from cant.reading.text import fold, is_blank, is_text, squeeze
 from cant.reading.trains import classes_meant, known_train, ranked_classes
 from cant.units import find_unit
 
@@ -58,6 +58,8 @@ def split_speed_columns(draft: Draft) -> None:
             continue
         for position, name in enumerate(names):
             draft.columns.append(_part(item, position, name))
+        if "" not in names and not item.train and any(_alone(c) for c in item.cells):
+            draft.columns.append(_lone(item))
         item.meaning, item.note = (
             "",
             "several speeds in a cell: " + ", ".join(n or "line speed" for n in names),
@@ -126,7 +128,21 @@ def _part(item: Column, position: int, name: str) -> Column:
         if len(pieces) > 1:
             cells.append(squeeze(pieces[position]) if position < len(pieces) else None)
         else:
-            cells.append(cell)
+            cells.append(cell if item.train or not name else None)
+    return _speed_column(item, name, cells, "one of several in a cell")
+
+
+def _alone(cell: Value) -> bool:
+    return not is_blank(cell) and not (is_text(cell) and "/" in str(cell))
+
+
+def _lone(item: Column) -> Column:
+    """Give the cells with one speed: the line's, no train goes faster than its own for it."""
+    cells = [cell if _alone(cell) else None for cell in item.cells]
+    return _speed_column(item, "", cells, "where one speed stands in a cell")
+
+
+def _speed_column(item: Column, name: str, cells: list[Value], note: str) -> Column:
     heading = replace(analyse(item.heading.text), brackets=())
     return Column(
         item.index,
@@ -137,7 +153,7 @@ def _part(item: Column, position: int, name: str) -> Column:
         train=fold(name),
         train_name=name,
         confidence="likely",
-        note="one of several in a cell",
+        note=note,
         cells=cells,
     )
 

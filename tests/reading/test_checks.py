@@ -4,6 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
+import numpy as np
 import pytest
 from messy import sheet, traffic_of
 
@@ -251,3 +252,14 @@ def test_canonical_headings_without_units_beside_imperial_ones(
     assert not reading.rejected
     assert reading.curves.radius_m[0] == pytest.approx(radius_m)
     assert reading.curves.cant_mm[0] == pytest.approx(cant_mm)
+
+
+def test_one_speed_among_pairs_is_the_lines_and_speeds_up_no_class() -> None:
+    header: list[Value] = ["Curve", "Start", "End", "Radius", "Cant", "Speed"]
+    rows: list[list[Value]] = [["1", 1000, 1300, 800, 75, "80/60"], ["2", 2000, 2300, 800, 75, 90]]
+    traffic = traffic_of(("Fast", "passenger", 120.0), ("Goods", "freight", 60.0))
+    reading = read(Sheet("Curves", [header, *rows]), traffic)
+    speeds = reading.curves.class_speeds
+    assert (speeds["Fast"][0], speeds["Goods"][0]) == (80, 60)
+    assert np.isnan([speeds["Fast"][1], speeds["Goods"][1]]).all()
+    assert reading.curves.speed_kmh[1] == 90
