@@ -139,12 +139,15 @@ def _order(draft: Draft) -> None:
 
 
 def _bounds(draft: Draft) -> None:
+    """Note bounds of a site that contradict each other; the planner takes what breaks them least."""
     low, high = draft.numbers["cant_at_least_mm"], draft.numbers["cant_at_most_mm"]
     with np.errstate(invalid="ignore"):
         crossed = low > high
-    for index in _at(draft, crossed):
-        draft.fail(
-            index, draft.column("Cant at least"), "Cant at least is above Cant at most; no cant keeps both"
+    if crossed.any():
+        rows = ", ".join(str(int(draft.rows[i])) for i in _at(draft, crossed))
+        where = f"sheet '{draft.sheet}', " if draft.sheet else ""
+        draft.context.notes.append(
+            f"{where}row {rows}: Cant at least is above Cant at most; no cant keeps both, check them"
         )
 
 

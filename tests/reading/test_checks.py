@@ -63,7 +63,6 @@ def row(name: str, **cells: Value) -> list[Value]:
         ({"speed": -5.0}, "Speed"),
         ({"speed": 0.0}, "Speed"),
         ({"speed": 900.0}, "Speed"),
-        ({"low": 90.0, "high": 50.0}, "Cant at least"),
         ({"start": 5.0, "end": 5.0}, "End"),
         ({"hand": "Q"}, "Hand"),
         ({"start": "north"}, "Start"),
@@ -263,3 +262,9 @@ def test_one_speed_among_pairs_is_the_lines_and_speeds_up_no_class() -> None:
     assert (speeds["Fast"][0], speeds["Goods"][0]) == (80, 60)
     assert np.isnan([speeds["Fast"][1], speeds["Goods"][1]]).all()
     assert reading.curves.speed_kmh[1] == 90
+
+
+def test_bounds_of_a_site_that_cross_are_told_and_left_to_the_planner() -> None:
+    reading = read(canonical(row("1", low=90.0, high=50.0)))
+    assert not reading.rejected
+    assert any("row 2: Cant at least is above Cant at most" in note for note in reading.notes)
