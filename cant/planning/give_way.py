@@ -19,14 +19,15 @@ from dataclasses import dataclass
 import numpy as np
 import numpy.typing as npt
 
-from cant.planning.assess import Services, passed_alone, passed_shared
+from cant.planning.assess import passed_alone, passed_shared
 from cant.planning.levels import Levels
-from cant.planning.lexicographic import least_of_groups, slack
+from cant.planning.lexicographic import distinct_rows, least_of_groups, not_above
 from cant.planning.line import Line
 from cant.planning.meetings import PairList, make_pair_list, spread_ranges
 from cant.planning.neighbours import Pairs
 from cant.planning.nodes import Nodes, squares
 from cant.planning.permissible import Permitted
+from cant.planning.running_time import Services
 from cant.planning.shared import Meeting
 from cant.planning.targets import Target
 
@@ -81,7 +82,7 @@ def search_chains(
         few = levels.take(levels.few())
         listed = make_pair_list(meeting, few, exceptional, also_broken)
         ceiling = _Search(part, meeting, few, listed, target).ceiling()[chain[levels.curve]]
-        levels = levels.take(_not_above(levels.bound(), ceiling[:, 2:]))
+        levels = levels.take(not_above(levels.bound(), ceiling[:, 2:]))
     listed = make_pair_list(meeting, levels, exceptional, also_broken)
     best = _Search(part, meeting, levels, listed, target).best()
     return curves, np.where(best < 0, np.nan, levels.cant_mm[best])
@@ -221,7 +222,7 @@ class _Search:
         ceiling, (to_go, _) = self.ceiling(), self._to_go(0.5)
         level = np.flatnonzero(self._position[levels.curve] == 0)
         level = level[np.isfinite(ceiling[self._chain(level)]).all(axis=1)]
-        level = level[_not_above(to_go[level], ceiling[self._chain(level)])]
+        level = level[not_above(to_go[level], ceiling[self._chain(level)])]
         paths = _Paths(
             level[:, None],
             np.full((len(level), k), np.nan),
@@ -249,12 +250,12 @@ class _Search:
         to_come[:, 2:] += self._extra[1][pair] / 2
         low = paths.measures[source, :LEADING] + to_come
         low[:, 2:] += self._own[here] + (paths.extra[source] + self._extra[0][pair]) / 2
-        keep = np.flatnonzero(_not_above(low, ceiling))
+        keep = np.flatnonzero(not_above(low, ceiling))
         source, pair, here = source[keep], pair[keep], here[keep]
         run = self._run(here, paths.left.take(source), pairs.on_before.take(pair))
         measures = paths.measures[source]
         measures[:, 2:LEADING] += self._time(here, run)
-        good = np.flatnonzero(_not_above(measures[:, :LEADING] + to_come[keep], ceiling[keep]))
+        good = np.flatnonzero(not_above(measures[:, :LEADING] + to_come[keep], ceiling[keep]))
         source, pair, here, run, measures = source[good], pair[good], here[good], run[good], measures[good]
         measures[:, :2] += self._broken[pair]
         measures[:, LEADING:] += self._rest(here, run)
@@ -274,7 +275,7 @@ class _Search:
         run = self._run(last, paths.left)
         measures = paths.measures.copy()
         measures[:, 2:LEADING] += self._time(last, run)
-        good = np.flatnonzero(_not_above(measures[:, :LEADING], ceiling[self._chain(last)]))
+        good = np.flatnonzero(not_above(measures[:, :LEADING], ceiling[self._chain(last)]))
         paths, run, measures, last = paths.take(good), run[good], measures[good], last[good]
         measures[:, LEADING:] += self._rest(last, run)
         measures[:, 4:6] += self._approvals(paths, np.arange(len(last)), run)
@@ -285,7 +286,7 @@ class _Search:
 
     def _rest(self, level: IntArray, run_kmh: FloatArray) -> FloatArray:
         """Give approvals, overrun, square and cant at levels (s,) and speeds (s, k): shape (s, 4)."""
-        seen, place = _distinct(np.concatenate([level[:, None], run_kmh], axis=1))
+        seen, place = distinct_rows(np.concatenate([level[:, None], run_kmh], axis=1))
         level, run = level[seen], run_kmh[seen]
         line, cant = self._line.take(self._levels.curve[level]), self._levels.cant_mm[level]
         passed = passed_alone(line, cant[:, None], run)
@@ -298,7 +299,7 @@ class _Search:
             return np.zeros((len(source), 2))
         before, here = paths.level[source, -2], paths.level[source, -1]
         run = np.minimum(paths.before[source], run_kmh)
-        seen, place = _distinct(np.concatenate([before[:, None], here[:, None], run], axis=1))
+        seen, place = distinct_rows(np.concatenate([before[:, None], here[:, None], run], axis=1))
         before, here, run = before[seen], here[seen], run[seen]
         meeting = self._meeting.take(np.searchsorted(self._levels.begins, self._levels.curve[before]))
         cants = (self._levels.cant_mm[before][:, None], self._levels.cant_mm[here][:, None])
@@ -323,29 +324,10 @@ class _Search:
             return np.arange(len(paths.level))
         order = self._in_order(paths.measures, paths.level)
         need = np.concatenate([paths.level[:, -2:], paths.before], axis=1)
-        seen, _ = _distinct(need[order])
+        seen, _ = distinct_rows(need[order])
         return np.asarray(order[np.sort(seen)])
 
 
 def _free(n: int, k: int) -> Permitted:
     """Give what permits everything."""
     return Permitted(np.full((n, k), np.inf), np.ones((n, k), dtype=np.bool_))
-
-
-def _distinct(rows: FloatArray) -> tuple[IntArray, IntArray]:
-    """Give the first of each kind of rows (s, c), nan like nan, and the place of each row's kind in these."""
-    if not len(rows):
-        return np.zeros(0, dtype=np.int64), np.zeros(0, dtype=np.int64)
-    _, first, place = np.unique(np.nan_to_num(rows, nan=-1.0), axis=0, return_index=True, return_inverse=True)
-    return first, place.reshape(-1)
-
-
-def _not_above(low: FloatArray, ceiling: FloatArray) -> BoolArray:
-    """Tell which rows (s, c) are not larger than others (s, c), in the order of the measures."""
-    above: BoolArray = np.zeros(len(low), dtype=np.bool_)
-    level: BoolArray = np.ones(len(low), dtype=np.bool_)
-    for j in range(low.shape[1]):
-        room = 10 * slack(ceiling[:, j])
-        above |= level & (low[:, j] > ceiling[:, j] + room)
-        level &= np.abs(low[:, j] - ceiling[:, j]) <= room
-    return ~above

@@ -10,7 +10,8 @@ import numpy.typing as npt
 from cant.planning.assess import overrun
 from cant.planning.limit_table import LimitAt
 from cant.planning.line import Line
-from cant.planning.permissible import FASTEST_KMH, gap_at, shared_gap, slows_after
+from cant.planning.permissible import FASTEST_KMH, gap_at
+from cant.planning.permissible_shared import shared_gap, slows_after
 from cant.planning.rules import Asked, Rule, curve_terms, speed_terms
 from cant.planning.shared import Meeting, SharedAsked, speed_values
 

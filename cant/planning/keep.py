@@ -15,7 +15,6 @@ import numpy.typing as npt
 from cant.planning.assess import (
     Assessment,
     Passed,
-    TimeLost,
     assess,
     hard_kept,
     passed_alone,
@@ -25,6 +24,7 @@ from cant.planning.assess import (
 from cant.planning.lexicographic import slack
 from cant.planning.line import Line
 from cant.planning.neighbours import Pairs, chains_of
+from cant.planning.running_time import TimeLost
 from cant.planning.shared import Meeting
 
 FloatArray = npt.NDArray[np.float64]

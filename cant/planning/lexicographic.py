@@ -78,3 +78,22 @@ def least_of_groups(measures: FloatArray, group: IntArray) -> tuple[IntArray, Fl
         most = least[:, j] + slack(np.where(np.isfinite(least[:, j]), least[:, j], 0.0))
         left &= value <= most[owner]
     return group[start], least, np.minimum.reduceat(np.where(left, rows, len(rows)), start)
+
+
+def distinct_rows(rows: FloatArray) -> tuple[IntArray, IntArray]:
+    """Give the first of each kind of rows (s, c), nan like nan, and the place of each row's kind in these."""
+    if not len(rows):
+        return np.zeros(0, dtype=np.int64), np.zeros(0, dtype=np.int64)
+    _, first, place = np.unique(np.nan_to_num(rows, nan=-1.0), axis=0, return_index=True, return_inverse=True)
+    return first, place.reshape(-1)
+
+
+def not_above(low: FloatArray, ceiling: FloatArray) -> BoolArray:
+    """Tell which rows (s, c) are not larger than others (s, c), in the order of the measures."""
+    above: BoolArray = np.zeros(len(low), dtype=np.bool_)
+    level: BoolArray = np.ones(len(low), dtype=np.bool_)
+    for j in range(low.shape[1]):
+        room = 10 * slack(ceiling[:, j])
+        above |= level & (low[:, j] > ceiling[:, j] + room)
+        level &= np.abs(low[:, j] - ceiling[:, j]) <= room
+    return ~above

@@ -14,16 +14,8 @@ import numpy.typing as npt
 
 from cant.planning.assess import shared_hard_kept
 from cant.planning.levels import Levels
-from cant.planning.permissible import (
-    FASTEST_KMH,
-    Permitted,
-    first_alike,
-    next_multiple,
-    shared_gap,
-    slower_after,
-    speed_steps,
-    surely_held,
-)
+from cant.planning.permissible import FASTEST_KMH, Permitted, first_alike, next_multiple, speed_steps
+from cant.planning.permissible_shared import shared_gap, slower_after, surely_held
 from cant.planning.shared import Meeting, SharedAsked
 from cant.planning.windows import Window, hard_window, speed_windows
 
@@ -242,7 +234,7 @@ def spread_ranges(begin: IntArray, end: IntArray) -> tuple[IntArray, IntArray]:
 class _Question:
     """How fast the slower curve may be run over f pairs of cants with one class each.
 
-    The rule is that of :func:`cant.planning.permissible.permitted_shared`.
+    The rule is that of :func:`cant.planning.permissible_shared.permitted_shared`.
     """
 
     asked: _Asked

@@ -14,7 +14,6 @@ import numpy.typing as npt
 
 from cant.planning.assess import (
     LIMIT_OF_NOTHING,
-    Services,
     hard_kept,
     overrun,
     passed_alone,
@@ -25,6 +24,7 @@ from cant.planning.lexicographic import first_best, slack
 from cant.planning.line import Line
 from cant.planning.permissible import Permitted, first_alike, permitted_alone, speed_steps
 from cant.planning.rules import AT_LEAST, AT_MOST, Asked, hard_terms, speed_terms
+from cant.planning.running_time import Services
 from cant.planning.targets import Target
 
 FloatArray = npt.NDArray[np.float64]

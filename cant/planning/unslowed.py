@@ -19,14 +19,8 @@ from cant.planning.chain_choice import Stage, best_paths, by_length
 from cant.planning.line import Line
 from cant.planning.neighbours import Pairs
 from cant.planning.nodes import Nodes
-from cant.planning.permissible import (
-    Permitted,
-    first_alike,
-    next_multiple,
-    shared_gap,
-    slows_after,
-    speed_steps,
-)
+from cant.planning.permissible import Permitted, first_alike, next_multiple, speed_steps
+from cant.planning.permissible_shared import shared_gap, slows_after
 from cant.planning.shared import Meeting, SharedAsked
 from cant.planning.windows import Window, hard_window, speed_windows
 

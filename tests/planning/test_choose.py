@@ -17,13 +17,14 @@ from reference.cases import Case, random_case
 
 import cant.planning.choose as choosing
 from cant.model.curves import CurveList
-from cant.planning.assess import Services, hard_kept, line_speeds, passed_alone
+from cant.planning.assess import hard_kept, line_speeds, passed_alone
 from cant.planning.bounds import Bounds, bounds_at
 from cant.planning.grid import Grid
 from cant.planning.line import Line
 from cant.planning.neighbours import Pairs
 from cant.planning.nodes import Nodes
 from cant.planning.outcome import Outcome, plan_arrays
+from cant.planning.running_time import Services
 
 FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]

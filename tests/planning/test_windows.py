@@ -17,7 +17,8 @@ from cant.planning.meetings import make_pair_list, spread_ranges
 from cant.planning.neighbours import chains_of
 from cant.planning.nodes import make_nodes
 from cant.planning.outcome import Outcome, plan_arrays
-from cant.planning.permissible import Permitted, first_alike, permitted_alone, permitted_shared, speed_steps
+from cant.planning.permissible import Permitted, first_alike, permitted_alone, speed_steps
+from cant.planning.permissible_shared import permitted_shared
 from cant.planning.shared import Meeting, SharedAsked, hard_values, shared_values, speed_values
 from cant.planning.windows import allowed_after, hard_window, speed_windows
 
