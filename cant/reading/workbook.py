@@ -97,6 +97,7 @@ def read_workbook(
     tell_sheets_apart(drafts)
     check_duplicates(drafts)
     _need_class_speeds(tables.traffic, drafts)
+    _tell_traffic_without_curve(tables.traffic, drafts, context.notes)
     return Reading(
         file=workbook.file,
         curves=join(drafts, workbook.file),
@@ -254,6 +255,17 @@ def _need_class_speeds(traffic: Traffic | None, drafts: list[Draft]) -> None:
                         f"{draft.rows[index]} does not); fill in Speed, or a column 'Speed {row.name}'"
                     )
                     raise InputError(message, row.place)
+
+
+def _tell_traffic_without_curve(traffic: Traffic | None, drafts: list[Draft], notes: list[str]) -> None:
+    """Note rows of traffic for a line or track that no curve is on: a typing error leaves them unused."""
+    tracks = {where for draft in drafts for where in zip(draft.line, draft.track, strict=True)}
+    for row in traffic.rows if traffic is not None and tracks else ():
+        if not any(row.line in ("", line) and row.track in ("", track) for line, track in tracks):
+            named = [f"{what} '{name}'" for what, name in (("line", row.line), ("track", row.track)) if name]
+            notes.append(
+                f"{row.place}: no curve is on {', '.join(named)}: this row of '{row.name}' is not used"
+            )
 
 
 def _others(sheets: list[Sheet]) -> list[SheetReading]:

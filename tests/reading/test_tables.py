@@ -363,3 +363,12 @@ def test_a_class_is_found_by_its_whole_name_also_with_brackets_and_common_words(
     assert speeds["Freight (heavy)"].tolist() == [pytest.approx(16.09344), DOES_NOT_RUN]
     assert speeds["Freight"].tolist() == [60.0, 61.0]
     assert speeds["Line train"][0] == 70.0
+
+
+def test_traffic_for_a_track_that_no_curve_is_on_is_told() -> None:
+    stray: list[Value] = ["Goods", "freight", 30.0, None, None, None, "A", "9"]
+    notes = read_workbook(book(Curves=CURVES, Traffic=[*TRAFFIC, stray], Limits=LIMITS)).notes
+    told = [note for note in notes if "no curve is on" in note]
+    assert told == [
+        "line.xlsx, sheet 'Traffic', cell A6: no curve is on line 'A', track '9': this row of 'Goods' is not used"
+    ]
