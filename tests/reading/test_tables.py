@@ -370,5 +370,6 @@ def test_traffic_for_a_track_that_no_curve_is_on_is_told() -> None:
     notes = read_workbook(book(Curves=CURVES, Traffic=[*TRAFFIC, stray], Limits=LIMITS)).notes
     told = [note for note in notes if "no curve is on" in note]
     assert told == [
-        "line.xlsx, sheet 'Traffic', cell A6: no curve is on line 'A', track '9': this row of 'Goods' is not used"
+        "line.xlsx, sheet 'Traffic', cell A6: no curve is on line 'A', track '9': "
+        "this row of 'Goods' is not used"
     ]
