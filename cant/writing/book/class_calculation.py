@@ -85,9 +85,19 @@ class ClassCalculation:
         for key, heading, numbers in (
             ("situation", "Situation no.", self.situation_numbers),
             ("tier", "Limits: 1 normal, 2 exceptional", chosen.tier + 1.0),
+            ("last tier", "Last tier allowed: 1 normal, 2 exceptional", chosen.last_tier + 1.0),
         ):
             self._ledger.refer(f"from {key}", f"{self._curve_sheet(key)}", self._curve_rows)
             build.refer(key, heading, "", chosen.of_curve(np.asarray(numbers, dtype=np.float64)), "count")
+        build.computed(
+            "roll",
+            "Roll coefficient",
+            "s",
+            chosen.of_class(line.roll),
+            "number",
+            f'IF(ISNUMBER({token("t.roll")}),{token("t.roll")},"")',
+            "Traffic used",
+        )
         binds = ["yes" if flag else "no" for flag in chosen.of_class(line.regular)]
         build.words("regular", "Excess binds", binds, 8.0)
 
@@ -150,16 +160,15 @@ class ClassCalculation:
         """Add the permissible speed by the class's rules on the curve and over its ends."""
         chosen, build, basis = self._chosen, self._build, self._basis
         build.number("step", "Speed step", "", chosen.step_kmh, "speed exact", "limits, else 5 km/h")
-        self._ledger.refer("c.last tier", self._curve_sheet("last tier"), self._curve_rows)
         line = chosen.line
         cant, radius = chosen.of_curve(chosen.cant_mm), chosen.of_curve(line.radius_m)
         cells = (basis.ref("D", "cant exact"), basis.ref("R", "radius"))
         rules = [deficiency(*cells, basis, cant, radius)]
         if basis.limits.has("felt acceleration"):
-            rules.append(felt(*cells, token("t.roll"), basis, (cant, radius, chosen.of_class(line.roll))))
+            rules.append(felt(*cells, token("roll"), basis, (cant, radius, chosen.of_class(line.roll))))
         search = SpeedSearch(basis, chosen.last_tier)
         asking = Asking(
-            token("V planned"), token("R"), token("category"), token("situation"), token("c.last tier")
+            token("V planned"), token("R"), token("category"), token("situation"), token("last tier")
         )
         every = np.arange(len(chosen.pos))
         self._failing = np.full(len(every), np.inf)
@@ -325,7 +334,7 @@ class ClassCalculation:
         roll = chosen.of_class(chosen.line.roll)
         room = bounds.unbalance_for_felt_acceleration(felt, roll, chosen.line.spacing_mm)
         text = CATALOGUE["unbalance_for_felt_acceleration"].text(
-            a_lim=token("a lim"), s=token("t.roll"), e=basis.e, g=basis.g
+            a_lim=token("a lim"), s=token("roll"), e=basis.e, g=basis.g
         )
         room_shown = basis.inputs.shown(text, "cant exact")
         finite = np.isfinite(room)
@@ -418,9 +427,9 @@ class ClassCalculation:
             "felt_acceleration",
             felt,
             "acceleration",
-            f"AND(ISNUMBER({token('a_q')}),ISNUMBER({token('t.roll')}))",
+            f"AND(ISNUMBER({token('a_q')}),ISNUMBER({token('roll')}))",
             "Felt acceleration",
-            s=token("t.roll"),
+            s=token("roll"),
             a=token("a_q"),
         )
         limited = {

@@ -17,11 +17,13 @@ from cant.quantities.catalogue import CATALOGUE
 from cant.quantities.lengths import length_for_gradient, length_for_rate
 from cant.units import KMH_PER_MS
 from cant.writing.book.frame import Basis, Builder, FloatArray, share, share_text
-from cant.writing.book.ledger import BoolArray, Ledger, token
+from cant.writing.book.ledger import FORMULA, BoolArray, Ledger, LedgerColumn, token
 from cant.writing.book.limits_sheet import Asking, kind_of
 from cant.writing.book.selection import IntArray, Selection
 from cant.writing.book.speed_search import NEVER, SpeedSearch, cant_rate, deficiency_rate, jump
 
+_OF_CURVE = ("R", "D", "h", "situation", "tier", "last tier")
+_OF_CLASS = ("category", "step")
 _GRADIENT, _CANT_RATE = "cant gradient", "rate of change of cant"
 _DEFICIENCY_RATE, _ABRUPT = "rate of change of cant deficiency", "abrupt change of cant deficiency"
 
@@ -111,10 +113,15 @@ class EndCalculation:
         for side, places, entries in (("1", self._first, rows.entry), ("2", self._second, self._other_entry)):
             of_curve = (curves.first_row + places).tolist()
             of_class = (classes.first_row + entries).tolist()
-            for key in ("R", "D", "h", "situation", "tier", "last tier"):
-                ledger.refer(f"{key} {side}", curves.address(key), of_curve)
-            for key in ("V run", "V planned", "category", "step"):
+            # What belongs to the row's own curve gets a column here, so that long formulas stay in their row.
+            mark = "from " if side == "1" else ""
+            for key in _OF_CURVE:
+                ledger.refer(f"{mark}{key} {side}", curves.address(key), of_curve)
+            for key in _OF_CLASS:
+                ledger.refer(f"{mark}{key} {side}", classes.address(key), of_class)
+            for key in ("V run", "V planned"):
                 ledger.refer(f"{key} {side}", classes.address(key), of_class)
+        self._sources = (curves, classes)
 
     def make(self) -> None:
         """Add every column."""
@@ -150,9 +157,33 @@ class EndCalculation:
         )
         classes = [names[k] for k in chosen.column[rows.entry].tolist()]
         build.words("class", "Class", classes, 14.0)
+        self._repeated()
         build.number("k", "Peak over mean of the shape", "k", rows.factor, "number", "shape")
         build.number("L", "Transition", "L", rows.length_m, "length")
         build.number("Lr", "Cant ramp", "L", rows.ramp_m, "length", "ramp as stated, else transition or room")
+
+    def _repeated(self) -> None:
+        """Repeat the cells of the row's curve and class on which the limits depend."""
+        for keys, ledger, at in (
+            (_OF_CURVE, self._sources[0], self._first),
+            (_OF_CLASS, self._sources[1], self._rows.entry),
+        ):
+            for key in keys:
+                source = next(column for column in ledger.columns if column.key == key)
+                values = source.values.tolist() if isinstance(source.values, np.ndarray) else source.values
+                self._ledger.add(
+                    LedgerColumn(
+                        f"{key} 1",
+                        source.heading,
+                        source.symbol,
+                        "from its sheet",
+                        [values[i] for i in at.tolist()],
+                        source.number_format,
+                        FORMULA,
+                        [(token(f"from {key} 1"), None)],
+                        9.0,
+                    )
+                )
 
     def _both(self, key: str) -> list[tuple[str, BoolArray | None]]:
         shared = self._rows.shared
