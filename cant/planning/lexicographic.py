@@ -84,8 +84,13 @@ def distinct_rows(rows: FloatArray) -> tuple[IntArray, IntArray]:
     """Give the first of each kind of rows (s, c), nan like nan, and the place of each row's kind in these."""
     if not len(rows):
         return np.zeros(0, dtype=np.int64), np.zeros(0, dtype=np.int64)
-    _, first, place = np.unique(np.nan_to_num(rows, nan=-1.0), axis=0, return_index=True, return_inverse=True)
-    return first, place.reshape(-1)
+    known = np.nan_to_num(rows, nan=-1.0)
+    order = np.lexsort(known.T)
+    ahead = known[order]
+    new = np.concatenate([[True], (ahead[1:] != ahead[:-1]).any(axis=1)])
+    place = np.empty(len(rows), dtype=np.int64)
+    place[order] = np.cumsum(new) - 1
+    return order[new], place
 
 
 def not_above(low: FloatArray, ceiling: FloatArray) -> BoolArray:

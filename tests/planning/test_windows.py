@@ -11,7 +11,7 @@ from reference.cases import random_case
 
 from cant.planning.grid import Grid
 from cant.planning.levels import Levels
-from cant.planning.lexicographic import first_best, least_of_groups
+from cant.planning.lexicographic import distinct_rows, first_best, least_of_groups, not_above
 from cant.planning.line import Line
 from cant.planning.meetings import make_pair_list, spread_ranges
 from cant.planning.neighbours import chains_of
@@ -223,3 +223,20 @@ def test_least_of_groups_goes_by_measure_after_measure() -> None:
         expected = min(rows, key=lambda i: (*measures[i], i))
         assert row == expected
         np.testing.assert_array_equal(values, measures[expected])
+
+
+def test_distinct_rows_are_the_first_of_their_kind() -> None:
+    rng = np.random.default_rng(6)
+    rows = rng.choice([0.0, 1.5, np.nan], (300, 4))
+    first, place = distinct_rows(rows)
+    seen: dict[str, int] = {}
+    for i, row in enumerate(rows):
+        assert first[place[i]] == seen.setdefault(str(row), i)
+    assert len(first) == len(seen)
+
+
+def test_rows_not_above_others_in_the_order_of_measures() -> None:
+    low = np.array([[0.0, 5.0], [1.0, 0.0], [0.0, 3.0], [0.0, 4.0 + 1e-12]])
+    ceiling = np.tile([0.0, 4.0], (4, 1))
+    assert not_above(low, ceiling).tolist() == [False, False, True, True]
+    assert not_above(low, np.full((4, 2), np.inf)).all()
