@@ -19,10 +19,11 @@ from webapp.context import EXTENSION, Running, current_measures, running
 from webapp.database import Database
 from webapp.drawings import svg
 from webapp.errors import add_error_answers
+from webapp.history_view import remembered_name
 from webapp.measures import SYSTEM_WORDS
 from webapp.security import SESSION_COOKIE, check_form, form_token, protect
 from webapp.store import Store
-from webapp.views import curves, downloads, help, limits, reading, result, start, trains
+from webapp.views import comparing, curves, deciding, downloads, help, limits, reading, result, start, trains
 
 COOKIE_DAYS = 400
 MOST_FORM_BYTES = 4_000_000
@@ -73,7 +74,7 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
     app.extensions[EXTENSION] = Running(
         used, database, store, Computations(used.plans_in_memory), datetime.now(UTC)
     )
-    for part in (start, reading, trains, limits, result, curves, downloads, help):
+    for part in (start, reading, trains, limits, result, curves, deciding, comparing, downloads, help):
         app.register_blueprint(part.pages)
     app.register_blueprint(api)
     add_error_answers(app)
@@ -116,6 +117,7 @@ def _add_words(app: Flask) -> None:
             "version": __version__,
             "plan": g.get("plan"),
             "back_here": _back_here,
+            "my_name": remembered_name,
             "marker": lambda number: svg.marker(number, (8.0, 8.0), 5.0, f"class-{number % 6}"),
             "keep_days": running().config.keep_days,
         }

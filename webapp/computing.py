@@ -17,6 +17,7 @@ from cant.explaining import explain
 from cant.model.reading import Reading
 from cant.planning import Plan
 from cant.service import AnnotatedFile, PlannedLine
+from webapp.changes import together
 from webapp.listing import Listing
 from webapp.measures import SYSTEMS
 from webapp.store import StoredPlan
@@ -25,7 +26,7 @@ from webapp.tables import TRAFFIC_FILE, traffic_csv
 Kept = TypeVar("Kept")
 Bytes = Callable[[], bytes]
 READING_KINDS = ("answers", "traffic", "limits")
-PLAN_KINDS = ("answers", "traffic", "limits", "settings")
+PLAN_KINDS = ("answers", "traffic", "limits", "settings", "change")
 
 
 class Latest(Generic[Kept]):
@@ -193,6 +194,7 @@ class Computations:
             traffic=decided.traffic,
             limits=decided.limits,
             settings=decided.settings,
+            decision=together(decided.changes),
         )
         return Computed(planned)
 

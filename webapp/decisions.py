@@ -18,9 +18,12 @@ from typing import Any, Literal
 from cant.model.limits import LimitSet
 from cant.model.settings import Settings
 from cant.model.traffic import Traffic
+from webapp.changes import Taken, follow
 
-Kind = Literal["answers", "traffic", "limits", "settings", "confirmed"]
-KINDS: tuple[Kind, ...] = ("answers", "traffic", "limits", "settings", "confirmed")
+Kind = Literal["answers", "traffic", "limits", "settings", "confirmed", "change"]
+KINDS: tuple[Kind, ...] = ("answers", "traffic", "limits", "settings", "confirmed", "change")
+CHANGE = "change"
+"""The kind whose decisions are events that add up (:mod:`webapp.changes`), where of others the last rules."""
 UNLIMITED = "none"
 
 
@@ -38,12 +41,15 @@ class Decision:
         Why, in the engineer's words; may be "".
     made : datetime
         When, in UTC.
+    who : str
+        The name that the engineer gave, or "".
     """
 
     kind: str
     content: str
     reason: str
     made: datetime
+    who: str = ""
 
 
 @dataclass(frozen=True)
@@ -58,6 +64,8 @@ class Decided:
         What replaces the file's own.
     confirmed : bool
         The reading, the trains and the limits have been confirmed: cants may be shown.
+    changes : tuple of Taken
+        Changes over the list as read that hold, in the order in which they were taken.
     texts : dict of str to str
         The ruling text of each kind, from which :meth:`digest` is made.
     """
@@ -67,12 +75,20 @@ class Decided:
     limits: LimitSet | None = None
     settings: Settings | None = None
     confirmed: bool = False
+    changes: tuple[Taken, ...] = ()
     texts: Mapping[str, str] = field(default_factory=dict)
 
     @classmethod
     def of(cls, decisions: Iterable[Decision]) -> Decided:
         """Fold a list of decisions, oldest first."""
-        texts = {d.kind: d.content for d in decisions}
+        texts: dict[str, str] = {}
+        changes: tuple[Taken, ...] = ()
+        for decision in decisions:
+            texts[decision.kind] = decision.content
+            if decision.kind == CHANGE:
+                changes = follow(changes, json.loads(decision.content))
+                plain = [one.as_plain() for one in changes]
+                texts[CHANGE] = as_text(plain or None)
         values = {kind: json.loads(content) for kind, content in texts.items()}
         traffic, limits, settings = (values.get(kind) for kind in ("traffic", "limits", "settings"))
         return cls(
@@ -81,6 +97,7 @@ class Decided:
             limits=None if limits is None else limits_from_plain(limits),
             settings=None if settings is None else Settings.model_validate(settings),
             confirmed=bool(values.get("confirmed")),
+            changes=changes,
             texts=texts,
         )
 

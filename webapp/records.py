@@ -84,6 +84,7 @@ class DecisionRow(Base):
     content: Mapped[str] = mapped_column(Text)
     reason: Mapped[str] = mapped_column(Text, default="")
     made: Mapped[datetime] = mapped_column(UtcTime)
+    who: Mapped[str] = mapped_column(String(80), default="", server_default="")
 
 
 class KeptLimitsRow(Base):

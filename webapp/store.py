@@ -134,7 +134,9 @@ class Store:
                 raise NotThereError(message)
             return row.data
 
-    def decide(self, owner: str, address: str, decisions: dict[str, str], reason: str = "") -> StoredPlan:
+    def decide(
+        self, owner: str, address: str, decisions: dict[str, str], reason: str = "", who: str = ""
+    ) -> StoredPlan:
         """Add decisions, by kind, in one transaction; one that changes nothing is not added.
 
         Any decision starts the days until the plan expires anew.
@@ -153,7 +155,7 @@ class Store:
                     continue
                 number += 1
                 plan.decisions.append(
-                    DecisionRow(number=number, kind=kind, content=content, reason=reason, made=now)
+                    DecisionRow(number=number, kind=kind, content=content, reason=reason, made=now, who=who)
                 )
             plan.changed, plan.expires = now, now + self._keep
             session.flush()
@@ -246,7 +248,7 @@ def _find(session: Session, owner: str, address: str, *, for_change: bool = Fals
 
 
 def _stored(plan: PlanRow) -> StoredPlan:
-    history = tuple(Decision(d.kind, d.content, d.reason, d.made) for d in plan.decisions)
+    history = tuple(Decision(d.kind, d.content, d.reason, d.made, d.who) for d in plan.decisions)
     return StoredPlan(
         address=plan.address,
         name=plan.name,

@@ -1,7 +1,20 @@
 """Why a plan is as it is, what would help, what to notice, and figures that no limit asks for."""
 
-from cant.explaining.decisions import Decision, Inputs, apply, read_decision
+from cant.explaining.decisions import CantHeld, CurveKey, Decision, Inputs, apply, read_decision
+from cant.explaining.difference import CurveDifference, Difference
 from cant.explaining.explanation import Explanation, explain
 from cant.explaining.wording import Words
 
-__all__ = ["Decision", "Explanation", "Inputs", "Words", "apply", "explain", "read_decision"]
+__all__ = [
+    "CantHeld",
+    "CurveDifference",
+    "CurveKey",
+    "Decision",
+    "Difference",
+    "Explanation",
+    "Inputs",
+    "Words",
+    "apply",
+    "explain",
+    "read_decision",
+]

@@ -86,7 +86,7 @@ class Difference:
 
     @cached_property
     def changed(self) -> dict[str, BoolArray]:
-        """Tell for each pair whether ``verdict``, ``cant``, ``speed``, ``approvals``, ``seconds`` differ."""
+        """Tell for each pair, by name, whether verdict, cant, speed, approvals, seconds or inputs differ."""
         a, b = self.pairs[:, 0], self.pairs[:, 1]
         mine, theirs = self._values
         return {
@@ -95,6 +95,7 @@ class Difference:
             "speed": self._speeds_differ(a, b),
             "approvals": mine.approvals[a] != theirs.approvals[b],
             "seconds": _differ(mine.lost_s[a], theirs.lost_s[b], SAME_S),
+            "inputs": self._inputs_differ(a, b),
         }
 
     @cached_property
@@ -165,6 +166,15 @@ class Difference:
                 status: (self.before.counts()[status], self.after.counts()[status]) for status in STATUSES
             },
         }
+
+    def _inputs_differ(self, a: IntArray, b: IntArray) -> BoolArray:
+        mine, theirs = self.before.curves, self.after.curves
+        differ = np.zeros(len(a), dtype=np.bool_)
+        for name in _OF_LIST:
+            columns = (np.asarray(getattr(curves, name), dtype=np.float64) for curves in (mine, theirs))
+            differ |= _differ(next(columns)[a], next(columns)[b])
+        held = [np.full(len(c), np.nan) if c.held_mm is None else c.held_mm for c in (mine, theirs)]
+        return differ | _differ(held[0][a], held[1][b])
 
     def _speeds_differ(self, a: IntArray, b: IntArray) -> BoolArray:
         names = (self.before.traffic.class_names, self.after.traffic.class_names)

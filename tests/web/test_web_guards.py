@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import csv
+import functools
 import io
 import re
 from collections.abc import Callable
@@ -18,10 +19,12 @@ from webapp.security import HEADERS
 PAGES = (
     "", "/list", "/trains", "/limits", "/cants", "/line", "/findings", "/files", "/print",
     "/curves/1", "/workbook", "/plan.json", "/original", "/trains/file", "/limits/file", "/delete",
+    "/compare", "/history",
 )  # fmt: skip
 POSTS = (
     "/list", "/list/forget", "/trains", "/trains/file", "/trains/forget", "/limits", "/limits/choose",
     "/limits/file", "/limits/forget", "/choice", "/confirm", "/name", "/keep", "/delete",
+    "/compare", "/keep-proposal", "/curves/1/hold", "/curves/1/options/1", "/changes/abc/back",
 )  # fmt: skip
 
 
@@ -43,7 +46,8 @@ def test_every_address_of_a_plan_is_in_these_tests(app: Flask) -> None:
     gets = {r.rule.removeprefix("/plans/<address>") for r in rules if "GET" in (r.methods or ())}
     posts = {r.rule.removeprefix("/plans/<address>") for r in rules if "POST" in (r.methods or ())}
     assert gets == {p.replace("/1", "/<int:number>") for p in PAGES}
-    assert posts == set(POSTS)
+    asked = {"/curves/1": "/curves/<int:number>", "options/1": "options/<int:option>", "/abc/": "/<key>/"}
+    assert posts == {functools.reduce(lambda p, pair: p.replace(*pair), asked.items(), p) for p in POSTS}
 
 
 def test_forged_cookie_is_nobody(browser: Browser, app: Flask) -> None:

@@ -2,12 +2,15 @@
 
 from __future__ import annotations
 
+from collections.abc import Mapping
+
 from flask import Blueprint, render_template
 from flask.typing import ResponseReturnValue
 
+from cant.explaining import CurveKey
 from webapp import curve_view, line_view
 from webapp.context import computed_of, current_measures, stored, unconfirmed
-from webapp.store import NotThereError
+from webapp.store import NotThereError, StoredPlan
 
 pages = Blueprint("curves", __name__, url_prefix="/plans/<address>")
 
@@ -23,7 +26,20 @@ def show(address: str, number: int) -> ResponseReturnValue:
     if not computed.listing.has(index):
         message = f"this plan has no curve number {number} that could be assessed"
         raise NotThereError(message)
+    return page_of_curve(plan, index)
+
+
+def page_of_curve(
+    plan: StoredPlan,
+    index: int,
+    problems: Mapping[str, str] | None = None,
+    sent: Mapping[str, str] | None = None,
+) -> str:
+    """Give the page of a curve, with what was sent and what of it cannot be used."""
+    computed = computed_of(plan)
+    number = index + 1
     record = computed.record(index, current_measures().system)
+    key = CurveKey.of(computed.planned.plan.curves, index)
     before, after = computed.listing.neighbours(index)
     return render_template(
         "curve.html",
@@ -47,4 +63,7 @@ def show(address: str, number: int) -> ResponseReturnValue:
         track=computed.listing.track_of(index),
         limits=computed.planned.plan.limits,
         settings=computed.planned.plan.settings,
+        taken=[one for one in plan.decided.changes if one.on == key],
+        problems=problems or {},
+        sent=sent or {},
     )
