@@ -19,7 +19,7 @@ from cant.files.additions import (
 )
 from cant.files.book import Book, SheetEntry
 from cant.files.book_edit import BookEdit
-from cant.files.edit import OFFICE_RELATIONS, PackageEdit
+from cant.files.edit import OFFICE_RELATIONS, PackageEdit, Squeezed
 from cant.files.graft import Graft, free_name, renamed_sheets
 from cant.files.grid import Workbook
 from cant.files.kinds import Kind, recognise
@@ -206,7 +206,7 @@ class _Annotation:
         for _, areas in sorted(sheet.rows.areas(), key=lambda one: placed_order(placed, one[0])):
             self.marked_columns += 1
             self.book.mark_column(self.marked_columns, entry.name, areas)
-        content = list(sheet.chunks())
+        content = Squeezed(sheet.chunks())
         self.book.recalculate = self.book.recalculate or sheet.rows.has_formulas
         self.edit.replace(read.xml.name, content)
 

@@ -7,7 +7,8 @@ nobody touched goes into the new archive as it is, still compressed.
 from __future__ import annotations
 
 import re
-from collections.abc import Callable, Iterable
+import zlib
+from collections.abc import Callable, Iterable, Iterator
 
 from cant.files.archive import Packed, copied, packed, write_archive
 from cant.files.markup import Element, elements, escape_attribute
@@ -15,6 +16,9 @@ from cant.files.package import Package, relationships_part, resolve
 
 RELATIONS = "http://schemas.openxmlformats.org/package/2006/relationships"
 OFFICE_RELATIONS = "http://schemas.openxmlformats.org/officeDocument/2006/relationships"
+_LARGE = 1 << 18
+"""Parts larger than this [bytes] are held compressed."""
+
 _HEAD = '<?xml version="1.0" encoding="UTF-8" standalone="yes"?>\n'
 
 Change = tuple[int, int, bytes]
@@ -79,6 +83,26 @@ def before(root: Element, order: list[str], name: str, unknown: str = "extLst") 
     return root.inner_end
 
 
+class Squeezed:
+    """Content of a part held compressed until it is written: a sheet of ours is many times its packed size.
+
+    Parameters
+    ----------
+    pieces : iterable of bytes
+        The content; it is consumed at once.
+    """
+
+    def __init__(self, pieces: Iterable[bytes]) -> None:
+        squeeze = zlib.compressobj(1)
+        self._parts = [part for piece in pieces if (part := squeeze.compress(piece))]
+        self._parts.append(squeeze.flush())
+
+    def __iter__(self) -> Iterator[bytes]:
+        stretch = zlib.decompressobj()
+        for part in self._parts:
+            yield stretch.decompress(part)
+
+
 class PackageEdit:
     """A package under edit.
 
@@ -112,7 +136,10 @@ class PackageEdit:
 
     def replace(self, part: str, content: bytes | Iterable[bytes]) -> None:
         """Give an existing part new content."""
-        self.changed[part] = (content,) if isinstance(content, bytes) else content
+        if isinstance(content, bytes) and len(content) > _LARGE:
+            self.changed[part] = Squeezed((content,))
+        else:
+            self.changed[part] = (content,) if isinstance(content, bytes) else content
 
     def add(self, part: str, content: bytes | Iterable[bytes], content_type: str) -> None:
         """Add a part."""
