@@ -17,6 +17,7 @@ from cant.reading.dates import undo_dates
 from cant.reading.draft import Context, Draft
 from cant.reading.elements import curves_of_elements, is_element_list
 from cant.reading.evidence import language_of
+from cant.reading.foreign_units import refuse_foreign_units
 from cant.reading.layout import Block, find_blocks
 from cant.reading.meanings import correct, decide, settle_doubles
 from cant.reading.numbers import decimal_mark
@@ -52,7 +53,9 @@ def read_block(block: Block, context: Context) -> Draft:
     """Understand one curve table."""
     rows, cells = _cells(block)
     columns = decide(block, cells)
-    correct(columns, context.answers, Place(context.file, block.sheet.name))
+    place = Place(context.file, block.sheet.name, block.header_last)
+    correct(columns, context.answers, place)
+    refuse_foreign_units(columns, place)
     split_ranges(columns)
     fill_merged(block.sheet, [int(r) for r in rows], columns)
     texts = (str(c) for item in columns for c in item.cells[:2000] if is_text(c))

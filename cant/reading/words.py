@@ -28,6 +28,12 @@ def lexicon(group: str) -> dict[str, str]:
 
 
 @cache
+def every_word() -> frozenset[str]:
+    """Give the single folded words of all groups."""
+    return frozenset(word for group in _data() for phrase in lexicon(group) for word in phrase.split())
+
+
+@cache
 def words_of(group: str, meaning: str) -> tuple[str, ...]:
     """Give the folded words of one meaning of a group."""
     return tuple(dict.fromkeys(fold(word) or word.strip() for word in _data()[group][meaning]))
