@@ -38,10 +38,11 @@ if TYPE_CHECKING:
 
 __all__ = ["FULL_FIGURES", "STATUS_WORDS", "PlanSheets", "footer_of"]
 
-FULL_FIGURES = 5000
-"""Up to this many curves the sheets of figures show all; of longer lists, those that need a decision."""
+FULL_FIGURES = 2000
+"""Up to this many curves the sheets of figures show all; of longer lists, those that need a decision and are
+calculated."""
 
-FULL_PLAN = 20_000
+FULL_PLAN = 10_000
 """Up to this many curves the sheets "Plan" and "Findings" show all, and added columns hold the findings."""
 
 _DECIDED = ("kept", "change")
@@ -90,13 +91,14 @@ class PlanSheets:
         self._planned, self._book, self._name = planned, book, name
         self._index = iter(plan.assessed.tolist())
         self._all = len(plan.assessed) <= FULL_FIGURES
+        self._shown = 0
         self._whole = holds_all(len(plan.assessed))
         self._chosen = Selection(plan, chosen_curves(plan))
         self._summary = Summary(book, name("Plan summary"), planned, day)
         self._pictures = Pictures(
             book, (name("Line in pictures"), name("Picture data")), self._display, plan.traffic.class_names
         )
-        self._exceptions = Exceptions(book, name("Exceptions"), self._display)
+        self._exceptions = Exceptions(book, name("Exceptions"), self._display, self._whole)
         self._speeds = SpeedChanges(book, name("Speed changes"), self._display)
         lifting = book.table(name("Lifting schedule"))
         rule = "" if self._all else "Ramps of: " + rule_of_choice(plan, len(self._chosen))
@@ -126,10 +128,11 @@ class PlanSheets:
         for part in (self._summary, self._pictures, self._exceptions, self._speeds, self._lifting):
             part.add(record)
         needs_decision = record["status"] not in _DECIDED
-        if self._whole or needs_decision:
+        if self._whole or (needs_decision and self._shown < FULL_PLAN):
+            self._shown += 1
             self._plan.row([column.cell(record, self._display) for column in self._plan_columns])
             self._write_findings([record["line"], record["track"], record["curve"]], record["findings"])
-        if self._all or needs_decision:
+        if self._all or (needs_decision and place is not None):
             self._add_figures(record)
 
     def _add_figures(self, record: Record) -> None:
@@ -171,11 +174,11 @@ class PlanSheets:
         sheet = self._book.table(self._name(name))
         if not (self._whole if name == "Plan" else self._all):
             most = FULL_PLAN if name == "Plan" else FULL_FIGURES
+            which = "the first of them" if name == "Plan" else "those that the sheets of calculation hold"
             text = (
-                f"The list has more than {most} curves: this sheet holds those that need a decision (not "
-                "compliant, speed restricted, exceptional, not assessed). The added columns of the curve "
-                "list "
-                "and the JSON hold all."
+                f"The list has more than {most} curves: this sheet holds of those that need a decision (not "
+                f"compliant, speed restricted, exceptional, not assessed) {which}, at most {most}. The added "
+                "columns of the curve list and the JSON hold all."
             )
             sheet.paragraph(text, 10, 110)
         display = self._display

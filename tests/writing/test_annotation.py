@@ -10,7 +10,7 @@ from canonical import csv, tables, xlsx
 from openpyxl import Workbook, load_workbook
 
 from cant.service import AnnotatedFile, PlannedLine, annotated_workbook, limits_named, make_plan, read_curves
-from cant.writing.annotation import FILLS
+from cant.writing.book.status import FILLS
 
 
 def annotated(data: bytes, file: str = "line.xlsx") -> tuple[PlannedLine, AnnotatedFile]:
@@ -116,3 +116,34 @@ def test_curve_sheets_of_two_tracks_each_get_their_columns() -> None:
         at = found[0].index("Proposed cant (mm)")
         own = [r["recommended_cant_mm"] for r in planned.records() if r["sheet"] == name]
         assert [row[at] for row in found[1:]] == own
+
+
+def test_added_columns_speak_in_the_units_of_the_sheet() -> None:
+    """A list in centimetres gets its cants in centimetres, whatever the plan's own sheets show."""
+    sheets = tables()
+    at = next(i for i, head in enumerate(sheets["Curves"][0]) if str(head).startswith("Cant"))
+    sheets["Curves"][0][at] = "Cant (cm)"
+    for row in sheets["Curves"][1:]:
+        row[at] = None if row[at] in (None, "") else row[at] / 10
+    planned, result = annotated(xlsx(sheets))
+    found = cells(result.data, "Curves")
+    column = found[0].index("Proposed cant (cm)")
+    expected = [record["recommended_cant_mm"] / 10 for record in planned.records()]
+    assert [row[column] for row in found[1:]] == pytest.approx(expected)
+    assert "Proposed cant (mm)" in cells(result.data, "Plan")[0]
+
+
+def test_an_edited_cant_outside_its_bounds_shows() -> None:
+    data = xlsx(tables())
+    _, result = annotated(data)
+    sheet = load_workbook(io.BytesIO(result.data))["Curves"]
+    head = [cell.value for cell in sheet[1]]
+    letters = {name: sheet.cell(1, i + 1).column_letter for i, name in enumerate(head)}
+    cant, low, high = (letters[f"{name} (mm)"] for name in ("Proposed cant", "Lower bound", "Upper bound"))
+    rules = [
+        str(rule.formula[0])
+        for area in sheet.conditional_formatting
+        for rule in area.rules
+        if area.cells.ranges and str(next(iter(area.cells.ranges))).startswith(cant)
+    ]
+    assert any(f"${cant}2<${low}2" in rule and f"${cant}2>${high}2" in rule for rule in rules)

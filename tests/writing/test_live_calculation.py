@@ -93,13 +93,10 @@ def column_of(book: Workbook, sheet: str, heading: str, first: int = 5) -> list[
 
 @pytest.mark.office
 def test_a_changed_input_gives_what_a_new_plan_gives(tmp_path: Path) -> None:
-    """A speed, a limit, a radius and the chosen cants changed in the sheet, against a plan of the changed
-    tables.
+    """A speed, a limit, a radius and the chosen cants changed in the sheet, against a new plan.
 
     The checker's chosen cants and tiers are set to the new plan's; every other cell must follow by itself.
-    Rows
-    whose permissible speed the sheet declares fixed, or free of shared ends, may differ there and are left
-    out.
+    Rows whose permissible speed the sheet declares fixed, or free of shared ends, may differ there.
     """
     old = sample("dunmarrow_keldrith.xlsx")
     plan = old.plan

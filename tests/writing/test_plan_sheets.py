@@ -234,10 +234,11 @@ def test_sheets_print_on_pages_with_their_header(planned: PlannedLine, book: Wor
         assert sheet.freeze_panes in ("A2", "F2", "D2")
     for name, titles in (("Calculation", "$2:$4"), ("Exceptions", "$2:$2"), ("Limits used", "$2:$4")):
         assert book[name].print_title_rows == titles
-    for sheet in book:
-        footer = sheet.oddFooter
+    for page in book.worksheets:
+        footer = page.oddFooter
+        assert footer is not None
         assert planned.reading.sha256[:16] in str(footer.left.text)
-        assert "&P" in str(footer.right.text) or "Page" in str(footer.right.text)
+        assert "Page" in str(footer.right.text)
 
 
 def test_of_a_long_list_the_figures_show_what_needs_a_decision(
@@ -260,5 +261,5 @@ def test_of_a_very_long_list_the_plan_shows_what_needs_a_decision(
     monkeypatch.setattr("cant.writing.plan_sheets.FULL_PLAN", 3)
     book = sheets_of(planned)
     grave = [record["curve"] for record in planned.records() if record["status"] not in ("kept", "change")]
-    assert [row["Curve"] for row in rows_of(book, "Plan (2)", 2)] == grave
+    assert [row["Curve"] for row in rows_of(book, "Plan (2)", 2)] == grave[:3]
     assert "more than 3 curves" in str(book["Plan (2)"]["A1"].value)

@@ -38,10 +38,12 @@ class Exceptions:
     book : NewSheets
     name : str
     display : Display
+    repeat : bool
+        Whether the reason stands in every row of a curve, or in its first one alone.
     """
 
-    def __init__(self, book: NewSheets, name: str, display: Display) -> None:
-        self._book = book
+    def __init__(self, book: NewSheets, name: str, display: Display, repeat: bool = True) -> None:
+        self._repeat = repeat
         self._display = display
         self._sheet = book.table(name)
         self._sheet.paragraph(
@@ -57,10 +59,10 @@ class Exceptions:
 
     def add(self, record: Record) -> None:
         """Write the rows of a curve."""
-        for passed in record["limits_passed"]:
-            self._row(record, passed)
+        for number, passed in enumerate(record["limits_passed"]):
+            self._row(record, passed, record["reason"] if self._repeat or not number else None)
 
-    def _row(self, record: Record, passed: dict[str, Any]) -> None:
+    def _row(self, record: Record, passed: dict[str, Any], reason: str | None) -> None:
         shown = self._display[kind_of(passed["quantity"])]
         names: list[Cell] = [record["line"], record["track"], record["curve"]]
         values = [_rounded(shown.value(passed[key]), shown.decimals + 1) for key in _VALUES]
@@ -75,7 +77,7 @@ class Exceptions:
                 shown.unit,
                 passed.get("clause"),
                 kept,
-                record["reason"],
+                reason,
             ]
         )
         if number is not None:

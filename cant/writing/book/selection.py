@@ -21,7 +21,7 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-CALCULATED = 1500
+CALCULATED = 1000
 """Most curves that the sheets of calculation hold."""
 
 _GRAVEST_FIRST = ("not compliant", "restrict", "exceptional", "change", "kept")
