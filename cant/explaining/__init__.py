@@ -1,5 +1,6 @@
 """Why a plan is as it is, what would help, what to notice, and figures that no limit asks for."""
 
+from cant.explaining.at_cant import chain_around, records_at
 from cant.explaining.decisions import CantHeld, CurveKey, Decision, Inputs, apply, read_decision
 from cant.explaining.difference import CurveDifference, Difference
 from cant.explaining.explanation import Explanation, explain
@@ -15,6 +16,8 @@ __all__ = [
     "Inputs",
     "Words",
     "apply",
+    "chain_around",
     "explain",
     "read_decision",
+    "records_at",
 ]

@@ -70,6 +70,8 @@ class Difference:
     Parameters
     ----------
     before, after : Plan
+    pairs : ndarray of int, shape (p, 2), optional
+        The curves to compare, where their names are not to say it; others are then left out.
 
     Attributes
     ----------
@@ -79,9 +81,10 @@ class Difference:
         Curves that one plan has alone.
     """
 
-    def __init__(self, before: Plan, after: Plan) -> None:
+    def __init__(self, before: Plan, after: Plan, pairs: IntArray | None = None) -> None:
         self.before, self.after = before, after
-        self.pairs, self.only_before, self.only_after = _paired(before, after)
+        found = _paired(before, after) if pairs is None else (pairs, [], [])
+        self.pairs, self.only_before, self.only_after = found
         self._values = (_Values(before), _Values(after))
 
     @cached_property
