@@ -83,7 +83,7 @@ class Calculation:
             rule=rule_of_choice(chosen.plan, len(chosen)),
         )
         for ledger, keep in ((curves, 3), (classes, 4), (ends, 6)):
-            ledger.sheet.paragraph(text, 16, 170)
+            ledger.sheet.paragraph(text, 10, 105)
             ledger.write(keep)
         self.inputs.write(book)
         self.limits.write(book)

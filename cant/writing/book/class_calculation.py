@@ -46,7 +46,7 @@ class ClassCalculation:
         chosen, curves, names = self._chosen, self._chosen.plan.curves, self._chosen.plan.traffic.class_names
         at = chosen.curves[chosen.pos].tolist()
         for key, heading, column, width in (
-            ("line", "Line", curves.line, 16.0),
+            ("line", "Line", curves.line, 20.0),
             ("track", "Track", curves.track, 7.0),
             ("curve", "Curve", curves.curve, 9.0),
         ):
@@ -153,7 +153,7 @@ class ClassCalculation:
             entries = record["permissible_by"] if record is not None else []
             count = int(chosen.start[number + 1] - chosen.start[number])
             by += [governing_text(entry) for entry in entries] or [None] * count
-        build.words("V by", "Permissible speed ends by", by, 28.0)
+        build.words("V by", "Permissible speed ends by", by, 44.0)
         self._weight()
 
     def _search(self) -> None:
@@ -197,7 +197,7 @@ class ClassCalculation:
         build.number(
             "V permissible", "Permissible speed", "V_max", chosen.permissible_kmh, "speed exact", "", "fixed"
         )
-        build.words("V basis", "Permissible speed is", [None] * len(every), 14.0)
+        build.words("V basis", "Permissible speed is", [None] * len(every), 25.0)
 
     def join_ends(self, ends: Ledger, rows: EndRows, failing: FloatArray, broken: BoolArray) -> None:
         """Make the permissible speed live where the rules of curve and ends alone give the plan's speed.

@@ -41,7 +41,7 @@ class CurveCalculation:
         chosen, build = self._chosen, self._build
         curves, at = chosen.plan.curves, chosen.curves.tolist()
         for key, heading, column, width in (
-            ("line", "Line", curves.line, 16.0),
+            ("line", "Line", curves.line, 20.0),
             ("track", "Track", curves.track, 7.0),
             ("curve", "Curve", curves.curve, 9.0),
         ):

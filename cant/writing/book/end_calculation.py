@@ -138,7 +138,7 @@ class EndCalculation:
         turned = chosen.plan.outcome.neighbourhood.descending
         at = chosen.curves[self._first].tolist()
         for key, heading, column, width in (
-            ("line", "Line", curves.line, 16.0),
+            ("line", "Line", curves.line, 20.0),
             ("track", "Track", curves.track, 7.0),
             ("curve", "Curve", curves.curve, 9.0),
         ):

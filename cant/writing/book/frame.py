@@ -99,7 +99,7 @@ class Builder:
                 "General" if cell == INPUT else shown.number_format,
                 cell,
                 None,
-                10.0,
+                11.5,
             )
         )
 
@@ -115,6 +115,7 @@ class Builder:
             "General",
             FORMULA,
             [(token(f"from {key}"), None)],
+            11.5,
         )
         self.ledger.add(column)
 
@@ -127,7 +128,7 @@ class Builder:
         kind: str,
         formulas: str | list[tuple[str, BoolArray | None]],
         source: str,
-        width: float = 10.0,
+        width: float = 11.5,
     ) -> None:
         """Add a column of formulas; values are canonical where they are an array, as shown where a list."""
         unit, number_format, factor = "", None, 1.0

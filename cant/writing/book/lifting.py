@@ -92,7 +92,7 @@ class LiftingSchedule:
         words = list(zip(*(row[0] for row in self._rows), strict=True)) or [()] * 5
         numbers = np.array([row[1] for row in self._rows], dtype=np.float64).reshape(-1, 4)
         heads = (
-            ("line", "Line", 16.0),
+            ("line", "Line", 20.0),
             ("track", "Track", 7.0),
             ("curve", "Curve", 9.0),
             ("hand", "Hand", 6.0),
