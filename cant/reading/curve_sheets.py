@@ -55,7 +55,6 @@ def read_block(block: Block, context: Context) -> Draft:
     columns = decide(block, cells)
     place = Place(context.file, block.sheet.name, block.header_last)
     correct(columns, context.answers, place)
-    refuse_foreign_units(columns, place)
     split_ranges(columns)
     fill_merged(block.sheet, [int(r) for r in rows], columns)
     texts = (str(c) for item in columns for c in item.cells[:2000] if is_text(c))
@@ -65,6 +64,7 @@ def read_block(block: Block, context: Context) -> Draft:
     settle_doubles(columns)
     for doubt in doubts:
         _choose(doubt, context, block.sheet.name)
+    refuse_foreign_units(columns, place)
     elements = is_element_list(columns)
     sifted = sift(block, columns, decimal, elements)
     context.notes += sifted.notes(rows, block.sheet.name, elements)

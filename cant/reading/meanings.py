@@ -129,7 +129,12 @@ def _set_meaning(result: Column, source: BlockColumn) -> None:
     best = _best(words, [analyse(part).words for part in reversed(source.parts)])
     states = {lexicon("states").get(t) for t in result.heading.words.split()}
     proposed = PROPOSED in states and EXISTING not in states
-    if best is not None and (best.score == 1.0 or _rules_speed_out(best, words)) and best.meaning != "Speed":
+    if (
+        best is not None
+        and (best.score == 1.0 or _rules_speed_out(best, words))
+        and best.meaning != "Speed"
+        and not _unit_says_speed(result, best)
+    ):
         result.meaning = best.meaning
         result.confidence = "certain" if best.score >= 0.6 else "likely"
     elif _as_speed(result, source, best):
@@ -142,6 +147,17 @@ def _set_meaning(result: Column, source: BlockColumn) -> None:
     if proposed and result.meaning:
         result.meaning = "Proposed cant" if result.meaning in ("Cant", "Proposed cant", "Design cant") else ""
         result.note = "a proposal: shown, not taken"
+
+
+def _unit_says_speed(result: Column, best: Match) -> bool:
+    """Whether the unit is a speed's and what the words may mean is measured in something else: ``mph P``."""
+    usual = column("curves", best.meaning).unit
+    return (
+        bool(result.unit)
+        and unit(result.unit).dimension == "speed"
+        and bool(usual)
+        and unit(usual).dimension != "speed"
+    )
 
 
 _NO_RIVALS = frozenset({"Curve", "Line", "Track", "Number", "Start", "End"})

@@ -5,6 +5,7 @@ from __future__ import annotations
 from typing import Any
 
 import pytest
+from messy import traffic_of
 
 from cant.errors import InputError
 from cant.files.grid import Sheet, Value, Workbook
@@ -63,3 +64,14 @@ def test_in_a_canonical_table_a_word_in_brackets_is_a_unit() -> None:
     header: list[Value] = ["Curve", "Radius (cubits)", "Cant (approx.)", "Speed (max)"]
     with pytest.raises(InputError, match=r"cell B1: the unit 'cubits'"):
         read_workbook(Workbook("list.xlsx", "xlsx", [Sheet("Curves", [header, ["1", 800, 80, 80]])]))
+
+
+def test_a_letter_beside_mph_is_a_class_of_train_and_no_cant() -> None:
+    header: list[Value] = ["Curve", "PC Sta", "PT Sta", "Degree (chord)", "Superelev. in", "MPH P", "MPH F"]
+    row: list[Value] = ["1", "1234+56", "1245+06", "2-30", "3 1/2", 60, 40]
+    traffic = traffic_of(("Fast", "passenger", 120.0), ("Goods", "freight", 60.0))
+    reading = read_workbook(Workbook("list.xlsx", "xlsx", [Sheet("Curves", [header, row]), traffic]))
+    assert not reading.rejected
+    assert reading.curves.cant_mm[0] == pytest.approx(88.9)
+    assert reading.curves.class_speeds["Fast"][0] == pytest.approx(60 * 1.609344)
+    assert reading.curves.class_speeds["Goods"][0] == pytest.approx(40 * 1.609344)
