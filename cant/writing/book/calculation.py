@@ -10,7 +10,8 @@ import numpy as np
 
 from cant.writing.book.class_calculation import ClassCalculation
 from cant.writing.book.curve_calculation import CurveCalculation
-from cant.writing.book.end_calculation import EndCalculation, EndRows
+from cant.writing.book.end_calculation import EndCalculation
+from cant.writing.book.end_rows import EndRows
 from cant.writing.book.frame import FIRST_ROW, Basis
 from cant.writing.book.inputs import Inputs
 from cant.writing.book.ledger import Ledger

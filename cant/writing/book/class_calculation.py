@@ -7,7 +7,7 @@ import numpy as np
 from cant.quantities import bounds, kinematics
 from cant.quantities.catalogue import CATALOGUE
 from cant.quantities.loads import wheel_load_shift
-from cant.writing.book.end_calculation import EndRows
+from cant.writing.book.end_rows import EndRows
 from cant.writing.book.frame import Basis, Builder, FloatArray, share, share_text
 from cant.writing.book.ledger import FORMULA, BoolArray, Ledger, token
 from cant.writing.book.limits_sheet import Asking, kind_of

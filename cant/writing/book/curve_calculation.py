@@ -9,7 +9,7 @@ import numpy as np
 from cant.model.curves import LEFT, RIGHT, situation_text
 from cant.quantities.catalogue import CATALOGUE
 from cant.quantities.speeds import equilibrium_speed
-from cant.writing.book.end_calculation import EndRows
+from cant.writing.book.end_rows import EndRows
 from cant.writing.book.frame import Basis, Builder, FloatArray
 from cant.writing.book.ledger import BoolArray, Ledger, token
 from cant.writing.columns import Cell, governing_text
