@@ -8,7 +8,15 @@ import numpy as np
 
 from cant.model.curves import FloatArray
 from cant.reading.cells import Numbers, take_column
-from cant.reading.degrees import ARC_100_FT, CHORD_20_M, radius_of_degree, radius_of_versine, take_degree
+from cant.reading.degrees import (
+    ARC_100_FT,
+    CHORD_20_M,
+    CHORD_30_5_M,
+    CHORD_100_FT,
+    radius_of_degree,
+    radius_of_versine,
+    take_degree,
+)
 from cant.reading.draft import Draft
 from cant.reading.evidence import Evidence
 from cant.reading.numbers import parse_quantity
@@ -81,7 +89,7 @@ def _degree_kind(
     draft: Draft, item: Column, degree: Numbers, radius: FloatArray, evidence: Evidence, missing: np.ndarray
 ) -> str | None:
     if item.heading.chord_m is not None:
-        return CHORD_20_M if abs(item.heading.chord_m - 20.0) < 1 else ARC_100_FT
+        return _kind_of_length(draft, item, item.heading.chord_m, missing)
     both = {k: parted(np.abs(radius), radius_of_degree(np.abs(degree.values), k)) for k in DEGREES.values()}
     if (best := min(both, key=lambda k: both[k])) and both[best] < 0.06:
         return best
@@ -93,7 +101,7 @@ def _degree_kind(
     if re.search(r"20\s*m", titles):
         return CHORD_20_M
     if re.search(r"100\s*-?\s*(ft|feet|foot|')", titles, re.IGNORECASE) or _is_us(draft, evidence):
-        return ARC_100_FT
+        return _of_100_ft(f"{item.heading.text} {titles}")
     choices = tuple(DEGREES)
     answer = draft.context.answers.choice(draft.sheet, item.heading.text, choices)
     if answer is not None:
@@ -107,6 +115,33 @@ def _degree_kind(
         where,
     )
     return None
+
+
+def _kind_of_length(draft: Draft, item: Column, length_m: float, missing: np.ndarray) -> str | None:
+    """Give the kind over a length that the heading names; rows over any other length are refused."""
+    if abs(length_m - 20.0) < 0.01:
+        return CHORD_20_M
+    if abs(length_m - 30.5) < 0.001:
+        return CHORD_30_5_M
+    if abs(length_m - 100 * FOOT_M) < 0.01:
+        return _of_100_ft(item.heading.text)
+    for index in np.flatnonzero(missing):
+        draft.fail(
+            int(index),
+            item,
+            f"a degree of curve over {length_m:g} m is not known here; over 100 ft, 30.5 m or 20 m it is, "
+            "or give the radius",
+        )
+    return None
+
+
+def _of_100_ft(said: str) -> str:
+    """Tell the chord of 100 ft from the arc, taken where neither is said: at 10 degrees they part by 0.13 %."""
+    return CHORD_100_FT if _SAYS_CHORD.search(said) and not _SAYS_ARC.search(said) else ARC_100_FT
+
+
+_SAYS_CHORD = re.compile(r"\b(?:chord|corde|cuerda|corda|sehne)\b", re.IGNORECASE)
+_SAYS_ARC = re.compile(r"\barc\b", re.IGNORECASE)
 
 
 def _is_us(draft: Draft, evidence: Evidence) -> bool:

@@ -268,3 +268,26 @@ def test_bounds_of_a_site_that_cross_are_told_and_left_to_the_planner() -> None:
     reading = read(canonical(row("1", low=90.0, high=50.0)))
     assert not reading.rejected
     assert any("row 2: Cant at least is above Cant at most" in note for note in reading.notes)
+
+
+@pytest.mark.parametrize(
+    ("heading", "radius_m"),
+    [
+        # R = c / (2 sin(D / 2)) for a chord c, R = a / D for an arc a: the definitions themselves.
+        ("Degree (100 ft chord)", 15.24 / np.sin(np.radians(5))),
+        ("Degree (100 ft arc)", 30.48 / np.radians(10)),
+        ("Degree (30.5 m chord)", 15.25 / np.sin(np.radians(5))),
+        ("Degree (20 m chord)", 10 / np.sin(np.radians(5))),
+    ],
+)
+def test_a_degree_goes_by_the_chord_or_arc_that_its_heading_names(heading: str, radius_m: float) -> None:
+    header: list[Value] = ["Curve", "km", heading, "Cant (mm)", "Speed (km/h)"]
+    reading = read(Sheet("List", [header, ["1", 1.0, 10, 80, 40], ["2", 2.0, 8, 80, 45]]))
+    assert reading.curves.radius_m[0] == pytest.approx(radius_m, rel=1e-6)
+
+
+def test_a_degree_over_a_length_that_is_not_known_is_refused_and_not_taken_for_100_ft() -> None:
+    header: list[Value] = ["Curve", "km", "Degree (10 m chord)", "Cant (mm)", "Speed (km/h)"]
+    reading = read(Sheet("List", [header, ["1", 1.0, 2, 80, 40], ["2", 2.0, 1, 80, 45]]))
+    assert [r.row for r in reading.rejected] == [2, 3]
+    assert "over 10 m is not known" in reading.rejected[0].problem
