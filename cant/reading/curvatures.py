@@ -136,7 +136,7 @@ def _kind_of_length(draft: Draft, item: Column, length_m: float, missing: np.nda
 
 
 def _of_100_ft(said: str) -> str:
-    """Tell the chord of 100 ft from the arc, taken where neither is said: at 10 degrees they part by 0.13 %."""
+    """Tell the chord of 100 ft from the arc, taken where neither is said (0.13 % apart at 10 degrees)."""
     return CHORD_100_FT if _SAYS_CHORD.search(said) and not _SAYS_ARC.search(said) else ARC_100_FT
 
 
