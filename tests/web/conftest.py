@@ -6,6 +6,7 @@ import os
 import shutil
 import subprocess
 import tempfile
+import threading
 from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
@@ -13,6 +14,10 @@ from typing import Any
 import psycopg
 import pytest
 from flask import Flask
+from playwright.sync_api import Browser as Chromium
+from playwright.sync_api import BrowserContext, sync_playwright
+from screen_tools import ARGUMENTS, SCREENS, Visit, Visitor
+from waitress.server import create_server
 from web_tools import CURVES, Browser
 
 from webapp.app import create_app
@@ -99,3 +104,39 @@ def bare_list(tmp_path: Path) -> Path:
     file = tmp_path / "aldmere.csv"
     file.write_text(CURVES, encoding="utf-8")
     return file
+
+
+@pytest.fixture(scope="session")
+def chromium() -> Iterator[Chromium]:
+    """Give a real browser."""
+    with sync_playwright() as playwright:
+        started = playwright.chromium.launch(executable_path="/usr/bin/chromium", args=ARGUMENTS)
+        yield started
+        started.close()
+
+
+@pytest.fixture
+def address(start: Callable[..., Flask]) -> Iterator[str]:
+    """Run the service in this process, on a port of its own."""
+    server: Any = create_server(start(), host="127.0.0.1", port=0, threads=4)
+    thread = threading.Thread(target=server.run, daemon=True)
+    thread.start()
+    yield f"http://127.0.0.1:{server.effective_port}"
+    server.close()
+    thread.join(timeout=10)
+
+
+@pytest.fixture
+def visit(chromium: Chromium, address: str) -> Iterator[Visit]:
+    """Give a function that lets a person arrive at a screen."""
+    opened: list[BrowserContext] = []
+
+    def arrive(screen: str = "desktop", **options: Any) -> Visitor:
+        context = chromium.new_context(viewport=SCREENS[screen], accept_downloads=True, **options)
+        context.set_default_timeout(20_000)
+        opened.append(context)
+        return Visitor(context, address)
+
+    yield arrive
+    for context in opened:
+        context.close()

@@ -4,85 +4,17 @@ from __future__ import annotations
 
 import io
 import json
-import threading
-from collections.abc import Callable, Iterator
 from pathlib import Path
-from typing import Any
 
 import openpyxl
 import pytest
 from axe_playwright_python.sync_playwright import Axe
-from flask import Flask
-from playwright.sync_api import Browser as Chromium
-from playwright.sync_api import BrowserContext, Page, sync_playwright
-from waitress.server import create_server
+from screen_tools import SCREENS, Visit, Visitor, tab_to
 
 pytestmark = pytest.mark.browser
 
-ARGUMENTS = [
-    "--no-sandbox",
-    "--disable-gpu",
-    "--disable-background-networking",
-    "--disable-component-update",
-    "--disable-sync",
-    "--no-first-run",
-]
-SCREENS = {"desktop": {"width": 1280, "height": 900}, "phone": {"width": 360, "height": 740}}
 SERIOUS = ("serious", "critical")
 RULES = ["wcag2a", "wcag2aa", "wcag21a", "wcag21aa", "wcag22aa"]
-
-
-@pytest.fixture(scope="module")
-def chromium() -> Iterator[Chromium]:
-    with sync_playwright() as playwright:
-        started = playwright.chromium.launch(executable_path="/usr/bin/chromium", args=ARGUMENTS)
-        yield started
-        started.close()
-
-
-@pytest.fixture
-def address(start: Callable[..., Flask]) -> Iterator[str]:
-    """Run the service in this process, on a port of its own."""
-    server: Any = create_server(start(), host="127.0.0.1", port=0, threads=4)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    yield f"http://127.0.0.1:{server.effective_port}"
-    server.close()
-    thread.join(timeout=10)
-
-
-class Visitor:
-    """A person at a screen; whatever the console says is kept."""
-
-    def __init__(self, context: BrowserContext, address: str) -> None:
-        self.context, self.address = context, address
-        self.page: Page = context.new_page()
-        self.said: list[str] = []
-        self.page.on("console", lambda message: self.said.append(message.text))
-        self.page.on("pageerror", lambda error: self.said.append(str(error)))
-
-    def go(self, path: str) -> Page:
-        """Open a page of the service."""
-        self.page.goto(self.address + path)
-        return self.page
-
-
-Visit = Callable[..., Visitor]
-
-
-@pytest.fixture
-def visit(chromium: Chromium, address: str) -> Iterator[Visit]:
-    opened: list[BrowserContext] = []
-
-    def arrive(screen: str = "desktop", **options: Any) -> Visitor:
-        context = chromium.new_context(viewport=SCREENS[screen], accept_downloads=True, **options)
-        context.set_default_timeout(20_000)
-        opened.append(context)
-        return Visitor(context, address)
-
-    yield arrive
-    for context in opened:
-        context.close()
 
 
 def plan_bare_list(visitor: Visitor, file: Path) -> str:
@@ -126,16 +58,6 @@ def test_from_upload_to_downloaded_workbook(visit: Visit, bare_list: Path, scree
     page.locator("svg.strip a").first.click()
     page.get_by_role("heading", name="Curve A1").wait_for()
     assert visitor.said == []
-
-
-def tab_to(page: Page, selector: str, most: int = 90) -> None:
-    """Press Tab until the element has the focus."""
-    for _ in range(most):
-        page.keyboard.press("Tab")
-        if page.evaluate("s => document.activeElement.matches(s)", selector):
-            return
-    message = f"the keyboard does not reach {selector}"
-    raise AssertionError(message)
 
 
 def test_whole_way_by_keyboard_alone(visit: Visit) -> None:
