@@ -147,3 +147,15 @@ def test_an_edited_cant_outside_its_bounds_shows() -> None:
         if area.cells.ranges and str(next(iter(area.cells.ranges))).startswith(cant)
     ]
     assert any(f"${cant}2<${low}2" in rule and f"${cant}2>${high}2" in rule for rule in rules)
+
+
+def test_a_list_without_any_usable_row_still_gets_its_workbook() -> None:
+    sheets = tables()
+    at = next(i for i, head in enumerate(sheets["Curves"][0]) if str(head).startswith("Radius"))
+    for row in sheets["Curves"][1:]:
+        row[at] = "sharp"
+    planned, result = annotated(xlsx(sheets))
+    assert list(planned.plan.outcome.planned) == [False] * (len(sheets["Curves"]) - 1)
+    book = load_workbook(io.BytesIO(result.data))
+    assert book["Calculation"].max_row == 4
+    assert book["Not assessed"].max_row > len(sheets["Curves"]) - 1
