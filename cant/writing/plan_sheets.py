@@ -180,6 +180,11 @@ class PlanSheets:
                 f"compliant, speed restricted, exceptional, not assessed) {which}, at most {most}. The added "
                 "columns of the curve list and the JSON hold all."
             )
+            if name == "Plan":
+                text += (
+                    " Findings on single curves stand in the JSON alone; the exceptions give the reason once "
+                    "a curve."
+                )
             sheet.paragraph(text, 10, 110)
         display = self._display
         heads = [Heading(c.title(display), c.width, c.number_format(display)) for c in columns]

@@ -6,7 +6,16 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from cant.explaining.notices.notice import BoolArray, FloatArray, Notice, Record, Scene, most, worst_class
+from cant.explaining.notices.notice import (
+    BoolArray,
+    FloatArray,
+    Notice,
+    Record,
+    Scene,
+    most,
+    on_curves,
+    worst_class,
+)
 from cant.planning.needed import end_figures
 from cant.planning.neighbours import AFTER, BEFORE
 from cant.planning.rules import Asked
@@ -42,7 +51,7 @@ def _unknown(scene: Scene) -> Iterator[Notice]:
             "advice",
             found,
             lambda i, _: f"Transition {_either(scene, where, i)} not known: its rates are not checked.",
-            f"On {len(found)} curves a transition is not known: neither its rates nor its gradient are "
+            f"{on_curves(found)} a transition is not known: neither its rates nor its gradient are "
             f"checked; "
             "each reason says what length the proposed cant needs.",
             whole_severity="warning",
@@ -113,7 +122,7 @@ def _short(
         "advice" if code == "transition-short" else "warning",
         found,
         say,
-        f"On {len(found)} curves {thing} is shorter than planned speeds need with the proposed cant, by up "
+        f"{on_curves(found)} {thing} is shorter than planned speeds need with the proposed cant, by up "
         f"to "
         f"{words.length(lacking[worst])} on {scene.label(worst)}.",
     )
@@ -141,7 +150,7 @@ def _excess_on_straight(scene: Scene) -> Iterator[Notice]:
                 f"{words.cant(cant[i, 0])} are excess, over the {words.exact(value[i, column[i]])} of "
                 f"{scene.names[column[i]]}."
             ),
-            f"On {len(found)} curves the cant ramp lies on the straight with more cant than the excess "
+            f"{on_curves(found)} the cant ramp lies on the straight with more cant than the excess "
             f"limit, up "
             f"to {words.cant(cant[most(found, cant[:, 0]), 0])}.",
             lambda i, _: scene.clause(int(row[i, column[i]])),
@@ -177,7 +186,7 @@ def _jerk(scene: Scene) -> Iterator[Notice]:
                 f"{words.measured('rate', rate[i, column[i]])}, faster than the "
                 f"{words.measured('rate', limit[i, column[i]])} that deficiency may."
             ),
-            f"On {len(found)} curves excess builds up faster than deficiency may, up to "
+            f"{on_curves(found)} excess builds up faster than deficiency may, up to "
             f"{words.measured('rate', float(rate[at, column][found].max()))}: felt as jerk, and bound by "
             f"no limit.",
         )

@@ -121,6 +121,11 @@ class Scene:
         return self.outcome.limits.rows[row].clause if row >= 0 else ""
 
 
+def on_curves(found: IntArray) -> str:
+    """Begin a sentence on the whole plan: "On 1 curve", "On 12 curves"."""
+    return f"On {len(found)} curve{'' if len(found) == 1 else 's'}"
+
+
 def worst_class(values: FloatArray, where: BoolArray) -> tuple[IntArray, FloatArray]:
     """Give for each curve the class with the largest value of those that count, and that value: (n,)."""
     shown = np.where(where, np.nan_to_num(values, nan=-np.inf), -np.inf)

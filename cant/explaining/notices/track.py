@@ -6,7 +6,7 @@ from collections.abc import Callable, Iterator
 
 import numpy as np
 
-from cant.explaining.notices.notice import FloatArray, Notice, Record, Scene, most
+from cant.explaining.notices.notice import FloatArray, Notice, Record, Scene, most, on_curves
 from cant.explaining.wording import governing_words
 from cant.model.limits import LimitRow
 from cant.planning.branches import TURNOUT
@@ -45,7 +45,7 @@ def _reduction(scene: Scene) -> Iterator[Notice]:
             "advice",
             found,
             lambda i, _: f"Cant comes down by {words.cant(-scene.change[i])}: speed before track.",
-            f"On {len(found)} curves cant comes down, by up to {words.cant(-scene.change[found].min())}: "
+            f"{on_curves(found)} cant comes down, by up to {words.cant(-scene.change[found].min())}: "
             f"lower "
             "the speed, or show that today's speed keeps its limits with less cant, before the track is "
             "changed.",
@@ -75,7 +75,7 @@ def _today(scene: Scene) -> Iterator[Notice]:
         "warning",
         found,
         say,
-        f"On {len(found)} curves today's cant breaks a limit at the planned speeds.",
+        f"{on_curves(found)} today's cant breaks a limit at the planned speeds.",
         _clause_of_today,
     )
 
@@ -109,7 +109,7 @@ def _movement(scene: Scene) -> Iterator[Notice]:
             "warning" if what == "platform" else "advice",
             found,
             _movement_words(scene, shift, name),
-            f"On {len(found)} curves the change of cant moves vehicles sideways at {name} above the rail, "
+            f"{on_curves(found)} the change of cant moves vehicles sideways at {name} above the rail, "
             f"by up to "
             f"{words.movement(abs(shift[worst]))} {way(shift[worst])} on {scene.label(worst)}: clearances "
             f"to be "
@@ -177,7 +177,7 @@ def _turnouts(scene: Scene) -> Iterator[Notice]:
             "warning",
             found,
             lambda i, _: "A turnout lies here whose branch is not known: it is not checked.",
-            f"On {len(found)} curves a turnout lies whose branch is not checked: the table Turnouts says "
+            f"{on_curves(found)} a turnout lies whose branch is not checked: the table Turnouts says "
             f"nothing "
             "of it.",
         )
@@ -235,7 +235,7 @@ def _ceiling(scene: Scene) -> Iterator[Notice]:
             "warning",
             found[:0],
             lambda i, _: "",
-            f"On {len(found)} curves the cant rests on a value that track in service may not pass"
+            f"{on_curves(found)} the cant rests on a value that track in service may not pass"
             f"{' (' + clause + ')' if clause else ''}, and no maintenance allowance is set: cants of up to "
             f"{words.cant(highest)} leave no room for how track moves.",
             of_plan=True,

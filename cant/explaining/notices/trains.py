@@ -6,7 +6,7 @@ from collections.abc import Iterator
 
 import numpy as np
 
-from cant.explaining.notices.notice import Notice, Record, Scene, most, worst_class
+from cant.explaining.notices.notice import Notice, Record, Scene, most, on_curves, worst_class
 from cant.planning.rules import Asked
 from cant.planning.targets import traffic_weights
 from cant.units import INCH_MM, KMH_PER_MS
@@ -52,7 +52,7 @@ def _tonnes_in_excess(scene: Scene) -> Iterator[Notice]:
             f"excess, "
             f"{scene.names[column[i]]} with {words.exact(excess[i])}."
         ),
-        f"On {len(found)} curves most {what} run with more than {words.exact(counts)} cant "
+        f"{on_curves(found)} most {what} run with more than {words.exact(counts)} cant "
         f"excess "
         f"({words.share(share[worst])} on {scene.label(worst)}): more cant would load the low rail further.",
     )
@@ -74,7 +74,7 @@ def _standing(scene: Scene) -> Iterator[Notice]:
         "warning",
         found,
         lambda i, _: f"{scene.names[column[i]]} stands on {words.cant(cant[i])} of cant, all of it excess.",
-        f"On {len(found)} curves trains stand on {words.cant(HIGH_CANT_MM)} of cant or more "
+        f"{on_curves(found)} trains stand on {words.cant(HIGH_CANT_MM)} of cant or more "
         f"({words.cant(cant[worst])} on {scene.label(worst)}).",
         lambda i, _: scene.clause(int(row[i, column[i]])),
     )
