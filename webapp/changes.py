@@ -53,6 +53,18 @@ def take(words: str, decision: Decision) -> dict[str, Any]:
     return {"take": Taken(secrets.token_urlsafe(KEY_BYTES), words, decision).as_plain()}
 
 
+def with_reason(event: dict[str, Any], reason: str) -> dict[str, Any]:
+    """Give an event with the engineer's reason in the cant that it holds, where that has none yet."""
+    if "take" not in event:
+        return event
+    plain = event["take"]
+    changes = [
+        {**change, "because": change["because"] or reason} if change["what"] == "cant held" else change
+        for change in plain["decision"]["changes"]
+    ]
+    return {"take": {**plain, "decision": {"changes": changes}}}
+
+
 def take_back(key: str, words: str) -> dict[str, Any]:
     """Give the event that takes a change back."""
     return {"back": key, "words": words}

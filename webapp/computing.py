@@ -9,7 +9,7 @@ from __future__ import annotations
 import threading
 from collections import OrderedDict
 from collections.abc import Callable, Iterator, Sequence
-from dataclasses import replace
+from dataclasses import dataclass, replace
 from typing import Any, Generic, TypeVar
 
 from cant import service
@@ -25,6 +25,8 @@ from webapp.tables import TRAFFIC_FILE, traffic_csv
 
 Kept = TypeVar("Kept")
 Bytes = Callable[[], bytes]
+CURVES_MOVED = 16
+"""Curves of a plan whose records at every cant of the slider are kept."""
 READING_KINDS = ("answers", "traffic", "limits")
 PLAN_KINDS = ("answers", "traffic", "limits", "settings", "change")
 
@@ -72,6 +74,27 @@ class Latest(Generic[Kept]):
         return value
 
 
+@dataclass(frozen=True)
+class Slider:
+    """A curve as planned, and at every cant of its slider with the neighbours as they are.
+
+    Attributes
+    ----------
+    record : dict
+        As planned.
+    at : dict of float to dict
+        Record by cant [mm], ascending.
+    """
+
+    record: dict[str, Any]
+    at: dict[float, dict[str, Any]]
+
+    @property
+    def levels(self) -> list[float]:
+        """The cants [mm]."""
+        return list(self.at)
+
+
 class Computed:
     """A plan as computed, its list, and its words in either system of units.
 
@@ -87,6 +110,7 @@ class Computed:
         self.speaking = threading.RLock()
         """Held while words are made: they are made when asked for, and kept, by one at a time."""
         self._shown: Latest[PlannedLine] = Latest(len(SYSTEMS))
+        self._sliders: Latest[Slider] = Latest(CURVES_MOVED)
 
     def shown_in(self, system: str) -> PlannedLine:
         """Give the same plan with its words in a system of units; its numbers are the same objects."""
@@ -126,6 +150,10 @@ class Computed:
     def record(self, index: int, system: str) -> dict[str, Any]:
         """Give the record of one curve with words in a system of units."""
         return self.records([index], system)[0][1]
+
+    def slider(self, index: int, make: Callable[[], Slider]) -> Slider:
+        """Give what a curve is at every cant of its slider: made at the first question, and kept."""
+        return self._sliders.get(str(index), make)
 
     def json_chunks(self) -> Iterator[bytes]:
         """Give the JSON of the plan in pieces; between two of them others may ask for records."""

@@ -11,7 +11,7 @@ from markupsafe import Markup
 from cant.explaining import CurveDifference, chain_around, records_at
 from cant.planning import levels_of
 from webapp import curve_view, words
-from webapp.computing import Computed
+from webapp.computing import Computed, Slider
 from webapp.difference_view import pair_words
 from webapp.drawings.cant_scale import Mark, draw_scale
 from webapp.drawings.section import acting, draw_section
@@ -23,7 +23,7 @@ BEYOND_STEPS = 8
 Record = Mapping[str, Any]
 
 
-def levels(computed: Computed, index: int, record: Record) -> list[float]:
+def _levels(computed: Computed, index: int, record: Record) -> list[float]:
     """Give the cants of a slider [mm]: the grid as far as anything of the curve lies, and some steps more."""
     grid = levels_of(computed.planned.plan, index).tolist()
     keys = ("upper_mm", "lower_mm", "recommended_cant_mm", "existing_cant_mm", "target_cant_mm")
@@ -45,6 +45,8 @@ class Moved:
     as_planned_mm : float
     passed : list of dict
         Limits passed, as rows of words.
+    range_words : str
+        The permitted range at planned speeds, and what bounds it.
     scale, section : Markup
     transitions : list of (str, dict)
     """
@@ -52,21 +54,37 @@ class Moved:
     record: dict[str, Any]
     as_planned_mm: float
     passed: list[dict[str, Any]]
+    range_words: str
     scale: Markup
     section: Markup
     transitions: list[tuple[str, Record]]
 
 
-def moved(computed: Computed, index: int, record: Record, cant_mm: float, measures: Measures) -> Moved:
-    """Look at a curve at a cant, the neighbours as they are; ``record`` is that of the plan."""
-    at = records_at(computed.planned.plan, index, [cant_mm])[0]
-    largest = max(levels(computed, index, record)[-1], cant_mm)
+def slider(computed: Computed, index: int) -> Slider:
+    """Give a curve at every cant of its slider."""
+
+    def make() -> Slider:
+        plan = computed.planned.plan
+        record = computed.record(index, plan.settings.units)
+        offered = _levels(computed, index, record)
+        return Slider(record, dict(zip(offered, records_at(plan, index, offered), strict=True)))
+
+    return computed.slider(index, make)
+
+
+def moved(computed: Computed, index: int, cant_mm: float, measures: Measures) -> Moved:
+    """Look at a curve at a cant, the neighbours as they are."""
+    found = slider(computed, index)
+    record = found.record
+    at = found.at.get(cant_mm) or records_at(computed.planned.plan, index, [cant_mm])[0]
+    largest = max(found.levels[-1], cant_mm)
     bounds = (record["lower_mm"], record["upper_mm"])
     return Moved(
         record=at,
         as_planned_mm=record["recommended_cant_mm"],
         passed=curve_view.limit_rows(at["limits_passed"], measures),
-        scale=draw_scale(largest, cant_mm, bounds, _marks(record, measures), measures),
+        range_words=_range_words(record, measures),
+        scale=draw_scale(largest, cant_mm, bounds, _marks(record), measures),
         section=_section(computed, at, cant_mm, measures),
         transitions=curve_view.transition_rows(at),
     )
@@ -90,22 +108,28 @@ def around(computed: Computed, index: int, cant_mm: float, measures: Measures) -
     return Around(chain_around(computed.planned.plan, index, cant_mm), index, measures)
 
 
-def _marks(record: Record, measures: Measures) -> list[Mark]:
+def _marks(record: Record) -> list[Mark]:
     marks = []
+    for key, label in (("lower_mm", "at least"), ("upper_mm", "at most"), ("existing_cant_mm", "today")):
+        if record[key] is not None:
+            marks.append(Mark(record[key], label))
+    by_cant: dict[float, list[str]] = {}
+    for entry in record["methods"]:
+        by_cant.setdefault(entry["cant_mm"], []).append(entry["method"])
+    if not record.get("cant_held"):  # held, all methods give the same
+        marks += [Mark(cant, ", ".join(names)) for cant, names in sorted(by_cant.items())]
+    return marks
+
+
+def _range_words(record: Record, measures: Measures) -> str:
+    """Say the permitted range of the curve by itself, and what bounds it."""
+    parts = []
     for key, label in (("lower", "at least"), ("upper", "at most")):
         value = record[f"{key}_mm"]
         if value is not None:
             by = words.governing(record[f"{key}_by"])
-            said = f"{label} {measures.with_unit('cant exact', value)}" + (f", by {by}" if by else "")
-            marks.append(Mark(value, said))
-    if record["existing_cant_mm"] is not None:
-        marks.append(Mark(record["existing_cant_mm"], "today"))
-    by_cant: dict[float, list[str]] = {}
-    for entry in record["methods"]:
-        by_cant.setdefault(entry["cant_mm"], []).append(entry["method"])
-    label = "planned by" if record.get("cant_held") is None else "of"
-    marks += [Mark(cant, f"{label} {', '.join(names)}") for cant, names in sorted(by_cant.items())]
-    return marks
+            parts.append(f"{label} {measures.with_unit('cant exact', value)}" + (f", by {by}" if by else ""))
+    return "; ".join(parts)
 
 
 def _section(computed: Computed, at: Record, cant_mm: float, measures: Measures) -> Markup:

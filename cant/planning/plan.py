@@ -38,7 +38,7 @@ class Plan:
     def __init__(self, outcome: Outcome) -> None:
         self.outcome = outcome
         self.assessed: IntArray = np.flatnonzero(~outcome.curves.rejected)
-        self._held: tuple[dict[int, int], RecordBlock] = self.hold([])
+        self._held: tuple[dict[int, int], RecordBlock] | None = None
 
     @property
     def curves(self) -> CurveList:
@@ -92,7 +92,7 @@ class Plan:
             message = f"row {index} was rejected"
             raise KeyError(message)
         held = self._held
-        if index not in held[0]:
+        if held is None or index not in held[0]:
             held = self.hold([index])
         return held[1].record(held[0][index])
 

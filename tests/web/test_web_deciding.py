@@ -11,7 +11,7 @@ from typing import Any
 import openpyxl
 import pytest
 from flask import Flask
-from web_tools import CURVES, Browser
+from web_tools import CURVES, Browser, FormFields
 
 PROPOSAL = re.compile(r'name="proposal" value="([^"]+)"')
 BACK = re.compile(r'action="([^"]+/changes/[^"]+/back)"')
@@ -133,6 +133,7 @@ def test_comparing_first_keeps_nothing_until_it_is_kept(browser: Browser) -> Non
     assert browser.post(f"{plan}/keep-proposal", form).status_code == 303
     assert by_name(document(browser, plan), record)["recommended_cant_mm"] == 15.0
     assert "agreed on site" in browser.get(f"{plan}/history").text
+    assert by_name(document(browser, plan), record)["cant_held"]["because"] == "agreed on site"
 
 
 def test_option_is_planned_compared_and_taken(browser: Browser) -> None:
@@ -182,3 +183,58 @@ def test_two_revisions_of_a_list_are_compared(browser: Browser, app: Flask, tmp_
     assert "radius" in said
     assert browser.get(f"{plans[1]}/compare?with=nothing").status_code == 404
     assert "Compare with this plan" in browser.get(f"{plans[1]}/compare").text
+
+
+def kept_after_a_look(browser: Browser, plan: str, answer: Any) -> dict[str, Any]:
+    """Look at what a form would change, see that nothing is kept, keep it, and give the JSON then."""
+    before = document(browser, plan)
+    assert answer.status_code == 200, answer.text
+    assert "Nothing has been kept yet" in answer.text
+    assert document(browser, plan) == before
+    signed = PROPOSAL.search(answer.text)
+    assert signed is not None
+    form = {"proposal": html.unescape(signed.group(1)), "because": "what if"}
+    assert browser.post(f"{plan}/keep-proposal", form).status_code == 303
+    return document(browser, plan)
+
+
+def test_what_if_the_method_and_tiers_were_others(browser: Browser) -> None:
+    plan = browser.sample()
+    form = {"units": "metric", "method": "least", "tiers": "exceptional", "compare": "yes"}
+    after = kept_after_a_look(browser, plan, browser.post(f"{plan}/choice", form))
+    assert after["settings"]["method"] == "least"
+    assert "exceptional" in after["settings"]["tiers"]
+
+
+def test_what_if_a_limit_were_another(browser: Browser) -> None:
+    plan = browser.sample()
+    form = FormFields(browser.get(f"{plan}/limits").text, "/limits").sent
+    assert form["0-normal"]
+    form |= {"units": "metric", "compare": "yes", "keep-as": "", "0-normal": "61"}
+    answer = browser.post(f"{plan}/limits", form)
+    after = kept_after_a_look(browser, plan, answer)
+    assert any(row["Normal"] == 61 for row in after["limits"]["rows"])
+
+
+def test_what_if_a_class_ran_slower(browser: Browser) -> None:
+    plan = browser.sample()
+    form = FormFields(browser.get(f"{plan}/trains").text, "").sent
+    form |= {"units": "metric", "compare": "yes", "0-speed_kmh": "60"}
+    answer = browser.post(f"{plan}/trains", form)
+    kept_after_a_look(browser, plan, answer)
+    assert FormFields(browser.get(f"{plan}/trains").text, "").sent["0-speed_kmh"] == "60"
+
+
+def test_live_answer_is_the_plans_record(browser: Browser) -> None:
+    plan = browser.sample()
+    number, record = curve_number(browser, plan, "change")
+    cant = record["recommended_cant_mm"]
+    at = json.loads(browser.get(f"{plan}/curves/{number}/at?cant={cant}").data)["record"]
+    for key in ("status", "limits_passed", "lower_mm", "upper_mm", "upper_by"):
+        assert at[key] == record[key], key
+    for mine, theirs in zip(at["classes"], record["classes"], strict=True):
+        assert mine == {k: theirs[k] for k in mine}
+    for bad in ("", "x", "-5", "301", "nan", "inf"):
+        assert browser.get(f"{plan}/curves/{number}/at?cant={bad}").status_code == 422, bad
+        assert browser.get(f"{plan}/curves/{number}/held?cant={bad}").status_code == 422, bad
+    assert browser.get(f"{plan}/curves/999/at?cant=5").status_code == 404

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import re
+from html.parser import HTMLParser
 from pathlib import Path
 from typing import Any
 
@@ -71,3 +72,38 @@ TRAINS: dict[str, str] = {
     "1-regular": "yes",
 }
 """A traffic form as a person fills it in, one number with a decimal comma."""
+
+
+class FormFields(HTMLParser):
+    """Fields of one form of a page, as a browser sends them (``sent``); action "" is the page itself."""
+
+    def __init__(self, page: str, action: str) -> None:
+        super().__init__()
+        self.sent: dict[str, str] = {}
+        self._action, self._inside, self._select, self._chosen = action, False, "", False
+        self.feed(page)
+
+    def handle_starttag(self, tag: str, attrs: list[tuple[str, str | None]]) -> None:
+        """Take a field."""
+        given = {key: value or "" for key, value in attrs}
+        if tag == "form":
+            action = given.get("action", "")
+            self._inside = action.endswith(self._action) if self._action else not action
+        if not self._inside:
+            return
+        if tag == "input" and given.get("name"):
+            if given.get("type") not in ("checkbox", "radio", "file") or "checked" in given:
+                self.sent[given["name"]] = given.get("value", "")
+        elif tag == "select":
+            self._select, self._chosen = given["name"], False
+        elif tag == "option" and self._select and ("selected" in given or not self._chosen):
+            if self._select not in self.sent or "selected" in given:
+                self.sent[self._select] = given.get("value", "")
+            self._chosen = self._chosen or "selected" in given
+
+    def handle_endtag(self, tag: str) -> None:
+        """Leave a field."""
+        if tag == "select":
+            self._select = ""
+        elif tag == "form":
+            self._inside = False

@@ -10,7 +10,7 @@ from markupsafe import Markup
 from webapp.drawings import svg
 from webapp.measures import Measures
 
-WIDTH, EDGE = 640.0, 16.0
+WIDTH, EDGE = 440.0, 16.0
 BAR, ROW = 52.0, 15.0
 
 

@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import json
+
 from flask import Blueprint, flash, redirect, render_template, request, url_for
 from flask.typing import ResponseReturnValue
 
 from cant.errors import InputError
 from cant.explaining import read_decision
-from webapp.changes import take
+from webapp.changes import take, with_reason
 from webapp.computing import Computed
 from webapp.context import computed_of, current_measures, file_of, running, stored, unconfirmed
 from webapp.decisions import CHANGE, as_text
@@ -63,7 +65,10 @@ def keep(address: str) -> ResponseReturnValue:
     if problems:
         return page_of_proposal(plan, proposal, problems)
     _computed(proposal.on(plan))
-    running().store.decide(owner(), address, proposal.decisions, reason or proposal.reason, who)
+    decisions = dict(proposal.decisions)
+    if CHANGE in decisions:
+        decisions[CHANGE] = as_text(with_reason(json.loads(decisions[CHANGE]), reason))
+    running().store.decide(owner(), address, decisions, reason, who)
     flash(f"Kept: {proposal.words}")
     return redirect(url_for("result.show", address=address), 303)
 

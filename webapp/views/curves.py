@@ -38,8 +38,7 @@ def show(address: str, number: int) -> ResponseReturnValue:
 def at(address: str, number: int) -> ResponseReturnValue:
     """Give a curve at a cant in mm, the neighbours as they are: its record and the panel that shows it."""
     computed, index, cant = _asked(address, number)
-    record = computed.record(index, current_measures().system)
-    found = moving.moved(computed, index, record, cant, current_measures())
+    found = moving.moved(computed, index, cant, current_measures())
     return jsonify({"record": found.record, "markup": render_template("at_cant.html", moved=found)})
 
 
@@ -93,8 +92,8 @@ def _moved(
         return {}
     return {
         "looked_at": cant,
-        "offered": moving.levels(computed, index, record),
-        "moved": moving.moved(computed, index, record, cant, shown_in),
+        "offered": moving.slider(computed, index).levels,
+        "moved": moving.moved(computed, index, cant, shown_in),
         "around": moving.around(computed, index, cant, shown_in),
     }
 

@@ -14,10 +14,12 @@ from webapp.context import current_measures, file_of, reading_of, running, store
 from webapp.deciding import check_reading
 from webapp.decisions import as_text, limits_text, settings_text
 from webapp.measures import measures
+from webapp.proposals import Proposal
 from webapp.security import owner
 from webapp.store import StoredPlan
 from webapp.tables import file_name, limits_csv
 from webapp.uploads import needed
+from webapp.views.comparing import page_of_proposal
 
 pages = Blueprint("limits", __name__, url_prefix="/plans/<address>")
 
@@ -105,6 +107,9 @@ def change(address: str) -> ResponseReturnValue:
         sent = request.form.to_dict()
         return _page(plan, "Some fields cannot be used; each says why.", problems, sent, 422)
     try:
+        if "compare" in request.form and plan.decided.confirmed:
+            check_reading(plan, file_of(plan), limits=limits)
+            return page_of_proposal(plan, Proposal("Other limits", {"limits": limits_text(limits)}))
         _keep(plan, limits)
         name = request.form.get("keep-as", "").strip()
         if name:
@@ -165,6 +170,9 @@ def settings(address: str) -> ResponseReturnValue:
     if found is None:
         sent = request.form.to_dict()
         return _page(plan, "Some fields cannot be used; each says why.", problems, sent, 422)
+    if "compare" in request.form and plan.decided.confirmed:
+        words = f"Cants chosen otherwise: method {found.method}, limits {', '.join(found.tiers)}"
+        return page_of_proposal(plan, Proposal(words, {"settings": settings_text(found)}))
     if found != _settings(plan):
         running().store.decide(owner(), address, {"settings": settings_text(found)})
     flash("How cants are chosen has been taken.")

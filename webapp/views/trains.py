@@ -12,10 +12,12 @@ from webapp.context import current_measures, file_of, reading_of, running, store
 from webapp.deciding import check_reading
 from webapp.decisions import traffic_text
 from webapp.measures import measures
+from webapp.proposals import Proposal
 from webapp.security import owner
 from webapp.store import StoredPlan
 from webapp.tables import TRAFFIC_FILE, traffic_csv
 from webapp.uploads import needed
+from webapp.views.comparing import page_of_proposal
 
 pages = Blueprint("trains", __name__, url_prefix="/plans/<address>")
 
@@ -63,6 +65,9 @@ def change(address: str) -> ResponseReturnValue:
     if "more" in request.form:
         return _page(plan, [*rows, *(trains_form.blank_row() for _ in range(3))], {})
     try:
+        if "compare" in request.form and plan.decided.confirmed:
+            check_reading(plan, file_of(plan), traffic=traffic)
+            return page_of_proposal(plan, Proposal("Other trains", {"traffic": traffic_text(traffic)}))
         _keep(plan, traffic)
     except CantError as error:
         return _page(plan, rows, {}, str(error), 422)
