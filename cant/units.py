@@ -43,7 +43,12 @@ _TABLE: tuple[tuple[str, str, float, tuple[str, ...]], ...] = (
     ("yd", "length", YARD_M, ("yd", "yds", "yard", "yards")),
     ("ch", "length", CHAIN_M, ("ch", "chs", "chain", "chains")),
     ("mi", "length", MILE_KM * 1000, ("mi", "mile", "miles")),
-    ("km/h", "speed", 1.0, ("km/h", "kmh", "kmph", "kph", "km/hr", "km/u", "km/t", "km/tim", "km/godz", "km/hod")),
+    (
+        "km/h",
+        "speed",
+        1.0,
+        ("km/h", "kmh", "kmph", "kph", "km/hr", "km/u", "km/t", "km/tim", "km/godz", "km/hod"),
+    ),
     ("mph", "speed", MILE_KM, ("mph", "mi/h", "miles/h", "miles/hour")),
     ("m/s", "speed", KMH_PER_MS, ("m/s", "ms-1")),
     ("t", "mass", 1.0, ("t", "tonne", "tonnes", "to", "mg")),
