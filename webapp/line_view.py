@@ -14,6 +14,8 @@ from webapp.drawings.line import LineDrawing, draw_line
 from webapp.measures import Measures
 
 CURVES_A_PAGE = 24
+ZOOMS = (6, 12, CURVES_A_PAGE, 48, 96)
+"""Curves a page shows, from close to far."""
 NEIGHBOURS = 2
 
 
@@ -30,6 +32,8 @@ class LinePage:
     track : str
         The track shown.
     number, pages : int
+    each : int
+        Curves a page shows, one of :data:`ZOOMS`.
     records : list of (int, dict)
         The curves drawn, for the table beside the drawing.
     """
@@ -40,6 +44,7 @@ class LinePage:
     track: str
     number: int
     pages: int
+    each: int
     records: list[tuple[int, dict[str, Any]]]
 
 
@@ -54,7 +59,7 @@ def page_of_line(
     address : str
         Address of the plan, for links.
     given : mapping of str to str
-        Parameters ``track`` and ``page`` of the request.
+        Parameters ``track``, ``page`` and ``each`` (curves a page) of the request.
     measures : Measures
     """
     listing = computed.listing
@@ -63,13 +68,14 @@ def page_of_line(
     track = given.get("track", "")
     track = track if track in listing.along else listing.tracks[0]
     order = listing.along[track]
-    pages = max(-(-len(order) // CURVES_A_PAGE), 1)
-    text = given.get("page", "1")
-    number = min(max(int(text) if text.isascii() and text.isdigit() and len(text) < 9 else 1, 1), pages)
-    shown = [int(i) for i in order[(number - 1) * CURVES_A_PAGE : number * CURVES_A_PAGE]]
+    each = _whole(given.get("each", ""))
+    each = each if each in ZOOMS else CURVES_A_PAGE
+    pages = max(-(-len(order) // each), 1)
+    number = min(max(_whole(given.get("page", "")), 1), pages)
+    shown = [int(i) for i in order[(number - 1) * each : number * each]]
     drawing, records = _draw(computed, address, shown, measures)
     classes = computed.planned.plan.traffic.class_names
-    return LinePage(drawing, classes, listing.tracks, track, number, pages, records)
+    return LinePage(drawing, classes, listing.tracks, track, number, pages, each, records)
 
 
 def around(computed: Computed, address: str, index: int, measures: Measures) -> LineDrawing:
@@ -123,6 +129,10 @@ def curve_words(record: Mapping[str, Any], measures: Measures) -> str:
     today = measures.with_unit("cant", record["existing_cant_mm"])
     proposed = measures.with_unit("cant", record["recommended_cant_mm"])
     return f"Curve {record['curve']}: cant today {today}, proposed {proposed}, {record['status']}"
+
+
+def _whole(text: str) -> int:
+    return int(text) if text.isascii() and text.isdigit() and len(text) < 9 else 0
 
 
 def _metres(km: float | None) -> float | None:

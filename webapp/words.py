@@ -31,7 +31,11 @@ STATUS_MARK: dict[str, str] = {
 """A sign before each status, so that colour alone tells nothing."""
 
 SEVERITY_MARK: dict[str, str] = {"stop": "✕", "warning": "!", "advice": "i"}
-PLACE_WORDS: dict[str, str] = {"before": "transition in", "after": "transition out"}
+PLACE_WORDS: dict[str, str] = {
+    "before": "transition in",
+    "after": "transition out",
+    "between": "shared transition",
+}
 CONFIDENCE_WORDS: dict[str, str] = {
     "certain": "certain",
     "likely": "likely: please check",

@@ -41,7 +41,11 @@ PAGES = (
     "findings",
     "curves/777",
     "print",
+    "curves/777/at?cant=60",
+    "curves/777/held?cant=60",
+    "history",
 )
+LIVE_ASKED = 200
 
 
 def register(rows: int) -> bytes:
@@ -83,6 +87,13 @@ def main(rows: int) -> None:
         for page in PAGES:
             timed(f"{page} (first)", lambda page=page: client.get(f"{plan}/{page}"))  # type: ignore[misc]
             timed(page, lambda page=page: client.get(f"{plan}/{page}"))  # type: ignore[misc]
+        times = []
+        for i in range(LIVE_ASKED):
+            begin = time.perf_counter()
+            client.get(f"{plan}/curves/{700 + i // 20}/at?cant={5 * (i % 20)}")
+            times.append(1000 * (time.perf_counter() - begin))
+        slow = np.percentile(times, 95)
+        print(f"the slider moved: median {np.median(times):.1f} ms, 95 of 100 in {slow:.1f} ms")
         app.extensions[EXTENSION].database.close()
 
 

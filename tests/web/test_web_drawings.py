@@ -10,6 +10,7 @@ import pytest
 from flask import Flask
 from hypothesis import given
 from hypothesis import strategies as st
+from web_tools import Browser
 
 from cant import service
 from cant.model.settings import Settings
@@ -213,3 +214,16 @@ def test_keys_become_headings_without_their_units() -> None:
     assert value("wheel_load_shift", 0.2049, METRIC) == "20.5\u00a0%"
     assert value("regular", False, METRIC) == "no"
     assert value("anything", None, METRIC) == "–"
+
+
+def test_line_picture_is_seen_closer_and_further(browser: Browser) -> None:
+    plan = browser.sample()
+    drawn = {
+        each: browser.get(f"{plan}/line?each={each}").text.count('<tr><th scope="row"') for each in (6, 12)
+    }
+    assert drawn == {6: 6, 12: 12}
+    close = browser.get(f"{plan}/line?each=6&page=3").text
+    assert 'aria-current="true">6' in close
+    assert "each=12&amp;page=2" in close, "the same stretch of line from further away"
+    assert "each=6&amp;page=2" in close
+    assert 'aria-current="true">24' in browser.get(f"{plan}/line?each=7&page=x").text

@@ -49,7 +49,7 @@ def line(address: str) -> ResponseReturnValue:
         return away
     computed = computed_of(plan)
     shown = line_view.page_of_line(computed, plan.address, request.args, current_measures())
-    return render_template("line.html", **_shared(computed), drawn=shown)
+    return render_template("line.html", **_shared(computed), drawn=shown, zooms=line_view.ZOOMS)
 
 
 @pages.get("/findings")
