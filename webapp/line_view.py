@@ -3,7 +3,7 @@
 from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
-from dataclasses import dataclass
+from dataclasses import dataclass, replace
 from typing import Any
 
 from flask import url_for
@@ -34,6 +34,8 @@ class LinePage:
     number, pages : int
     each : int
         Curves a page shows, one of :data:`ZOOMS`.
+    governed : str
+        Quantity that bounds the cant of the curves shown; "" shows all.
     records : list of (int, dict)
         The curves drawn, for the table beside the drawing.
     """
@@ -45,6 +47,7 @@ class LinePage:
     number: int
     pages: int
     each: int
+    governed: str
     records: list[tuple[int, dict[str, Any]]]
 
 
@@ -59,7 +62,7 @@ def page_of_line(
     address : str
         Address of the plan, for links.
     given : mapping of str to str
-        Parameters ``track``, ``page`` and ``each`` (curves a page) of the request.
+        Parameters ``track``, ``page``, ``each`` (curves a page) and ``governed`` of the request.
     measures : Measures
     """
     listing = computed.listing
@@ -68,6 +71,11 @@ def page_of_line(
     track = given.get("track", "")
     track = track if track in listing.along else listing.tracks[0]
     order = listing.along[track]
+    governed = given.get("governed", "")
+    if governed in listing.governing:
+        order = order[listing.governing[governed][order]]
+    else:
+        governed = ""
     each = _whole(given.get("each", ""))
     each = each if each in ZOOMS else CURVES_A_PAGE
     pages = max(-(-len(order) // each), 1)
@@ -75,7 +83,7 @@ def page_of_line(
     shown = [int(i) for i in order[(number - 1) * each : number * each]]
     drawing, records = _draw(computed, address, shown, measures)
     classes = computed.planned.plan.traffic.class_names
-    return LinePage(drawing, classes, listing.tracks, track, number, pages, each, records)
+    return LinePage(drawing, classes, listing.tracks, track, number, pages, each, governed, records)
 
 
 def around(computed: Computed, address: str, index: int, measures: Measures) -> LineDrawing:
@@ -92,6 +100,12 @@ def _draw(
     names = computed.planned.plan.traffic.class_names
     records = computed.rows(indices, measures.system)
     curves = [drawn_curve(i, record, names, address, measures) for i, record in records]
+    # A curve whose next one is not drawn shares no transition with what is drawn after it.
+    follows = [computed.listing.neighbours(i)[1] for i in indices]
+    curves = [
+        curve if next_drawn in (after, None) else replace(curve, shares_with_next=False)
+        for curve, after, next_drawn in zip(curves, follows, [*indices[1:], None], strict=True)
+    ]
     return draw_line(curves, measures), records
 
 

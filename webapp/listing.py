@@ -8,6 +8,7 @@ from __future__ import annotations
 import math
 from collections.abc import Mapping
 from dataclasses import dataclass, field, replace
+from functools import cached_property
 from urllib.parse import urlencode
 
 import numpy as np
@@ -15,6 +16,7 @@ import numpy.typing as npt
 
 from cant.model.curves import situation_text
 from cant.model.plan import STATUSES
+from cant.planning import what_governs
 from cant.service import PlannedLine
 
 PAGE = 50
@@ -147,6 +149,11 @@ class Listing:
     def counts(self) -> dict[str, int]:
         """Give the number of curves of each status, the gravest first, those of 0 too."""
         return {s: int(np.count_nonzero(self._status == k)) for k, s in enumerate(STATUSES)}
+
+    @cached_property
+    def governing(self) -> dict[str, npt.NDArray[np.bool_]]:
+        """Where each quantity bounds the cant, by quantity."""
+        return what_governs(self.planned.plan)
 
     def neighbours(self, index: int) -> tuple[int | None, int | None]:
         """Give the curves before and after one along its track."""

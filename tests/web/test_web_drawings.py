@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import json
 import re
 from pathlib import Path
 from xml.etree import ElementTree
@@ -227,3 +228,21 @@ def test_line_picture_is_seen_closer_and_further(browser: Browser) -> None:
     assert "each=12&amp;page=2" in close, "the same stretch of line from further away"
     assert "each=6&amp;page=2" in close
     assert 'aria-current="true">24' in browser.get(f"{plan}/line?each=7&page=x").text
+
+
+def test_line_picture_shows_what_a_quantity_bounds(browser: Browser) -> None:
+    plan = browser.sample()
+    curves = json.loads(browser.get(f"{plan}/plan.json").data)["curves"]
+    bound = {
+        (c["line"], c["track"], c["curve"])
+        for c in curves
+        if "cant excess" in ((c["lower_by"] or {}).get("quantity"), (c["upper_by"] or {}).get("quantity"))
+    }
+    assert bound
+    shown = set()
+    for line, track in {(c["line"], c["track"]) for c in curves}:
+        asked = {"track": f"{line} / {track}", "governed": "cant excess", "each": "96"}
+        page = browser.get(f"{plan}/line", query_string=asked).text
+        assert "<option selected>cant excess" in page
+        shown |= {(line, track, name) for name in re.findall(r'<th scope="row"><a[^>]*>([^<]*)</a>', page)}
+    assert shown == bound
