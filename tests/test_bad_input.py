@@ -17,7 +17,7 @@ def put(sheet: str, row: int, column: int, value: object) -> Bend:
     """Give a change that puts a value into a cell: row from 1 as a spreadsheet shows it, column from 0."""
 
     def bend(sheets: dict[str, Table]) -> None:
-        sheets[sheet][row - 1][column] = value  # type: ignore[assignment, unused-ignore]
+        sheets[sheet][row - 1][column] = value
 
     return bend
 
@@ -45,7 +45,7 @@ def without(sheet: str) -> Bend:
 
 def added(sheet: str, row: list[object]) -> Bend:
     def bend(sheets: dict[str, Table]) -> None:
-        sheets[sheet].append(row)  # type: ignore[arg-type, unused-ignore]
+        sheets[sheet].append(row)
 
     return bend
 

@@ -75,7 +75,7 @@ def test_data_frames_give_the_same_plan_as_the_workbook() -> None:
         frame(sheets["Curves"]),
         frame(sheets["Traffic"]),
         frame(sheets["Limits"]),
-        dict(sheets["Settings"][1:]),  # type: ignore[arg-type, unused-ignore]
+        dict(sheets["Settings"][1:]),
     )
     assert_alike(answers(planned.document()), answers(plan_of(sheets)))
 
@@ -87,7 +87,7 @@ def test_files_given_separately_replace_the_sheets(tmp_path: Path) -> None:
         path.write_bytes(csv(sheets[name]))
     target = tmp_path / "plan.json"
     arguments = ["plan", names["Curves"], "--traffic", names["Traffic"], "--limits", names["Limits"]]
-    arguments += ["--settings", names["Settings"], "--json", target]  # type: ignore[list-item, unused-ignore]
+    arguments += ["--settings", names["Settings"], "--json", target]
     with pytest.raises(SystemExit) as ended:
         cli.main([str(a) for a in arguments])
     assert not ended.value.code

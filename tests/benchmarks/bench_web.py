@@ -85,8 +85,8 @@ def main(rows: int) -> None:
         timed("limits", lambda: client.post(f"{plan}/limits/choose", data={**token, "source": "set:typical"}))
         timed("plan", lambda: client.post(f"{plan}/confirm", data=token))
         for page in PAGES:
-            timed(f"{page} (first)", lambda page=page: client.get(f"{plan}/{page}"))  # type: ignore[misc]
-            timed(page, lambda page=page: client.get(f"{plan}/{page}"))  # type: ignore[misc]
+            timed(f"{page} (first)", lambda page=page: client.get(f"{plan}/{page}"))
+            timed(page, lambda page=page: client.get(f"{plan}/{page}"))
         times = []
         for i in range(LIVE_ASKED):
             begin = time.perf_counter()

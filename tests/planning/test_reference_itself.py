@@ -25,7 +25,7 @@ BOTH_TIERS = ("normal", "exceptional")
 
 
 def limit(quantity: str, normal: float, unit: str = "mm", **given: Any) -> LimitRow:
-    return LimitRow(quantity=quantity, normal=normal, unit=unit, **given)  # type: ignore[arg-type]
+    return LimitRow(quantity=quantity, normal=normal, unit=unit, **given)
 
 
 def train(name: str = "Fast", speed: float = 100, **given: Any) -> TrainClass:

@@ -57,7 +57,7 @@ class Messy:
     answers: dict[str, Any] | None = None
     extra: dict[str, Any] = field(default_factory=dict)
 
-    def read(self):  # type: ignore[no-untyped-def]
+    def read(self):
         """Read the list with its answers."""
         return read_workbook(Workbook(f"{self.name}.xlsx", "xlsx", self.sheets), answers=self.answers)
 

@@ -19,7 +19,7 @@ Curve | km from | km to | D | Radius (m) | Cant | Freight load | Speed (km/h)
 """)
 
 
-def read(answers: dict[str, Any] | None = None):  # type: ignore[no-untyped-def]
+def read(answers: dict[str, Any] | None = None):
     return read_workbook(Workbook("list.xlsx", "xlsx", [LIST]), answers=answers)
 
 

@@ -56,7 +56,7 @@ class _Maker:
             more = self.draw.choice((1.1, 1.25, 1.4))
             exceptional = round(value / more if unit == "1 in n" else value * more, 3)
         given = {"normal": value, "exceptional": exceptional, "unit": unit, **given}
-        return LimitRow(quantity=quantity, clause=f"{self.count}", **given)  # type: ignore[arg-type]
+        return LimitRow(quantity=quantity, clause=f"{self.count}", **given)
 
     def _stated(self, quantity: str, mm: float) -> tuple[str, float]:
         if quantity in ("felt acceleration",):

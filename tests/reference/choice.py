@@ -108,7 +108,7 @@ class Chooser:
             pair = (cants[shared.first], cants[shared.second])
             passed |= self.search.remember(
                 ("broken", shared.first, pair),
-                lambda shared=shared, pair=pair: self.values.shared_unmendable(  # type: ignore[misc]
+                lambda shared=shared, pair=pair: self.values.shared_unmendable(
                     shared, pair, self.exceptional
                 ),
             )
@@ -160,18 +160,14 @@ class Chooser:
             key = ("own at", i, cants[i], tuple(speeds[i].values()), exceptional)
             found |= self.search.remember(
                 key,
-                lambda i=i: self.values.own_at(  # type: ignore[misc]
-                    self.track.curves[i], cants[i], speeds[i], exceptional
-                ),
+                lambda i=i: self.values.own_at(self.track.curves[i], cants[i], speeds[i], exceptional),
             )
         for t in self.transitions(chain):
             pair, both = (cants[t.first], cants[t.second]), (speeds[t.first], speeds[t.second])
             key2 = ("shared at", t.first, pair, *(tuple(s.values()) for s in both), exceptional)
             found |= self.search.remember(
                 key2,
-                lambda t=t, pair=pair, both=both: self.values.shared_at(  # type: ignore[misc]
-                    t, pair, both, exceptional
-                ),
+                lambda t=t, pair=pair, both=both: self.values.shared_at(t, pair, both, exceptional),
             )
         return found
 

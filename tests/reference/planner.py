@@ -279,7 +279,7 @@ class _Plan:
             pair = self.values.pair(shared)
             speeds = tuple({name: train.speed for name, train in c.trains.items()} for c in pair)
             cants = tuple(math.nan if c.today is None else c.today for c in pair)
-            found = self.values.shared_at(shared, cants, speeds, exceptional)  # type: ignore[arg-type]
+            found = self.values.shared_at(shared, cants, speeds, exceptional)
             known = not any(math.isnan(cant) for cant in cants)
             passed |= {
                 item: over

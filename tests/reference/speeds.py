@@ -28,7 +28,7 @@ class SpeedSearch:
         """Work something out once."""
         if key not in self.known:
             self.known[key] = work()
-        return self.known[key]  # type: ignore[return-value]
+        return self.known[key]
 
     def step(self, curve: Curve, train: Train) -> float:
         """Give the speed step of a class on a curve [km/h]."""

@@ -53,7 +53,7 @@ class Program:
         """Make a plan and keep the key that comes with it."""
         answer = self.call("POST", "/plans", data={"file": (io.BytesIO(data), "aldmere.csv"), **files})
         assert answer.status_code == 201, answer.text
-        found: dict[str, Any] = answer.json  # type: ignore[assignment]
+        found: dict[str, Any] = answer.json
         if found["key"]:
             self.headers = {"Authorization": f"Bearer {found['key']}"}
         return found
@@ -72,16 +72,16 @@ def test_a_program_goes_the_whole_way(program: Program) -> None:
     assert program.call("PUT", f"{path}/traffic", json=TRAFFIC).status_code == 200
     refused = program.call("PUT", f"{path}/limits", json={"name": "no-such-set"})
     assert refused.status_code == 422
-    assert "typical" in refused.json["error"]["message"]  # type: ignore[index]
+    assert "typical" in refused.json["error"]["message"]
     assert program.call("PUT", f"{path}/limits", json={"name": "typical"}).status_code == 200
     chosen = {"tiers": "normal, exceptional", "keep_within_mm": 10}
     assert program.call("PUT", f"{path}/settings", json=chosen).status_code == 200
-    result: dict[str, Any] = program.call("GET", f"{path}/result").json  # type: ignore[assignment]
+    result: dict[str, Any] = program.call("GET", f"{path}/result").json
     assert [c["curve"] for c in result["curves"]] == ["A1", "A2", "A3"]
     assert result["settings"]["keep_within_mm"] == 10
-    page: dict[str, Any] = program.call("GET", f"{path}/curves?sort=radius&size=25").json  # type: ignore[assignment]
+    page: dict[str, Any] = program.call("GET", f"{path}/curves?sort=radius&size=25").json
     assert [c["curve"] for c in page["curves"]] == ["A2", "A1", "A3"]
-    one: dict[str, Any] = program.call("GET", f"{path}/curves/2").json  # type: ignore[assignment]
+    one: dict[str, Any] = program.call("GET", f"{path}/curves/2").json
     assert one["recommended_cant_mm"] == result["curves"][1]["recommended_cant_mm"]
     book = program.call("GET", f"{path}/workbook")
     assert book.data[:2] == b"PK"
@@ -93,7 +93,7 @@ def test_tables_may_come_with_the_list(program: Program) -> None:
     traffic = b"Class,Category,Speed\nExpress,passenger,120\nGoods,freight,70\n"
     limits = b"Quantity,Normal,Unit\ncant,150,mm\ncant deficiency,130,mm\ncant excess,110,mm\n"
     plan = program.bring(traffic=(io.BytesIO(traffic), "t.csv"), limits=(io.BytesIO(limits), "l.csv"))
-    result: dict[str, Any] = program.call("GET", f"/plans/{plan['address']}/result").json  # type: ignore[assignment]
+    result: dict[str, Any] = program.call("GET", f"/plans/{plan['address']}/result").json
     assert result["limits"]["rows"][0]["Normal"] == 150
     assert len(result["curves"]) == 3
 
@@ -106,12 +106,12 @@ def test_rules_sent_are_used_and_units_checked(program: Program) -> None:
         {"quantity": "cant deficiency", "normal": "none", "unit": "mm"},
     ]
     assert program.call("PUT", f"{path}/limits", json={"name": "own", "rows": rows}).status_code == 200
-    result: dict[str, Any] = program.call("GET", f"{path}/result").json  # type: ignore[assignment]
+    result: dict[str, Any] = program.call("GET", f"{path}/result").json
     assert max(c["recommended_cant_mm"] for c in result["curves"]) == 60
     wrong = [{"quantity": "cant", "normal": 60.0, "unit": "km/h"}]
     answer = program.call("PUT", f"{path}/limits", json={"name": "own", "rows": wrong})
     assert answer.status_code == 422
-    assert "cannot be stated in km/h" in answer.json["error"]["message"]  # type: ignore[index]
+    assert "cannot be stated in km/h" in answer.json["error"]["message"]
 
 
 def test_without_key_and_with_the_key_of_another(program: Program, app: Flask) -> None:
@@ -131,14 +131,14 @@ def test_without_key_and_with_the_key_of_another(program: Program, app: Flask) -
     assert nobody.call("PUT", f"{path}/traffic", json=TRAFFIC).status_code == 404
     nobody.headers = {"Authorization": "Bearer made.up"}
     assert nobody.call("GET", path).status_code == 403
-    assert len(program.call("GET", "/plans").json["plans"]) == 1  # type: ignore[index]
+    assert len(program.call("GET", "/plans").json["plans"]) == 1
 
 
 def test_a_browsers_plan_is_reached_by_its_cookie_and_gives_no_key(browser: Browser) -> None:
     plan = browser.sample()
-    assert browser.client.get(f"{BASE}{plan}").json["key"] is None  # type: ignore[index]
+    assert browser.client.get(f"{BASE}{plan}").json["key"] is None
     answer = browser.client.post(f"{BASE}/plans", data={"file": (io.BytesIO(CURVES.encode()), "a.csv")})
-    assert answer.json["key"] is None  # type: ignore[index]
+    assert answer.json["key"] is None
 
 
 @pytest.mark.parametrize(
@@ -156,7 +156,7 @@ def test_bad_body_is_refused(program: Program, body: bytes, kind: str, code: int
     path = f"/plans/{program.bring()['address']}"
     answer = program.call("PUT", f"{path}/traffic", data=body, content_type=kind)
     assert answer.status_code == code
-    assert answer.json["error"]["message"]  # type: ignore[index]
+    assert answer.json["error"]["message"]
 
 
 @pytest.mark.parametrize(
@@ -171,9 +171,9 @@ def test_bodies_have_the_fields_and_defaults_of_the_models(body: Any, model: Any
 
 
 def test_limit_sets_are_listed_and_shown(program: Program) -> None:
-    listed = program.call("GET", "/limits").json["sets"]  # type: ignore[index]
+    listed = program.call("GET", "/limits").json["sets"]
     assert [s["name"] for s in listed] == list(limit_sets.names())
-    one: dict[str, Any] = program.call("GET", "/limits/typical").json  # type: ignore[assignment]
+    one: dict[str, Any] = program.call("GET", "/limits/typical").json
     assert len(one["rows"]) == len(limit_sets.load("typical").rows)
     assert program.call("GET", "/limits/none").status_code == 404
 

@@ -122,7 +122,7 @@ def test_two_browsers_never_see_each_others_plans(visit: Visit) -> None:
     assert answer is not None
     assert answer.status == 404
     other.go("/").get_by_text("None yet").wait_for()
-    assert page.goto(plan).status == 200  # type: ignore[union-attr]
+    assert page.goto(plan).status == 200
 
 
 def test_bad_field_keeps_what_was_typed_and_says_why(visit: Visit) -> None:

@@ -55,7 +55,7 @@ def curve(**changed: object) -> DrawnCurve:
         "shares_with_next": False,
         "deficiency_mm": (50.0, -30.0),
     }
-    return DrawnCurve(**{**values, **changed})  # type: ignore[arg-type]
+    return DrawnCurve(**{**values, **changed})
 
 
 def test_text_is_escaped_and_numbers_are_short() -> None:

@@ -166,7 +166,7 @@ def test_unforeseen_error_shows_a_reference_and_no_trace(
 def test_errors_are_json_where_json_is_asked_for(browser: Browser) -> None:
     answer = browser.get("/nothing", headers={"Accept": "application/json"})
     assert answer.json == {"error": {"status": 404, "message": "There is no page at this address."}}
-    assert browser.get("/api/v1/nothing").json["error"]["status"] == 404  # type: ignore[index]
+    assert browser.get("/api/v1/nothing").json["error"]["status"] == 404
     assert browser.client.put("/plans").status_code == 405
 
 

@@ -38,7 +38,7 @@ def test_counts_are_those_of_the_records(listing: Listing) -> None:
 def test_sorted_rises_and_what_is_not_known_comes_last(listing: Listing, sort: str, key: str) -> None:
     values = [r[key] for r in records(listing, Wanted(sort=sort))]
     known = [v for v in values if v is not None]
-    assert known == sorted(known)  # type: ignore[type-var]
+    assert known == sorted(known)
     assert values[: len(known)] == known
 
 
@@ -49,13 +49,13 @@ def test_falling_is_rising_turned(listing: Listing) -> None:
 
 def test_list_order_is_input_order(listing: Listing) -> None:
     rows = [r["row"] for r in records(listing, Wanted())]
-    assert rows == sorted(rows)  # type: ignore[type-var]
+    assert rows == sorted(rows)
 
 
 def test_search_needs_every_word_in_names_or_situation(listing: Listing) -> None:
     found = records(listing, Wanted(search="PLATFORM"))
     assert found
-    assert all("platform" in str(r["as_read"]["situation"]) for r in found)  # type: ignore[index]
+    assert all("platform" in str(r["as_read"]["situation"]) for r in found)
     assert records(listing, Wanted(search="platform nowhere")) == []
 
 
@@ -87,7 +87,7 @@ def test_latest_makes_each_value_once_and_forgets_the_oldest() -> None:
     made: list[str] = []
     latest: Latest[str] = Latest(2)
     for key in ("a", "b", "a", "c", "a", "b"):
-        assert latest.get(key, lambda key=key: made.append(key) or key) == key  # type: ignore[misc]
+        assert latest.get(key, lambda key=key: made.append(key) or key) == key
     assert made == ["a", "b", "c", "b"]
 
 

@@ -71,7 +71,7 @@ def test_slider_says_the_plans_numbers_at_every_step(visit: Visit, planned: Plan
     index = index_of(planned, "change", shared=True)
     page = visitor.go(f"{address}/curves/{index + 1}")
     slide = page.locator("#slide")
-    levels = [float(mm) for mm in page.locator("#move").get_attribute("data-levels").split()]  # type: ignore[union-attr]
+    levels = [float(mm) for mm in page.locator("#move").get_attribute("data-levels").split()]
     assert levels[int(slide.input_value())] == planned.plan.proposed_mm[index]
     for step, mm in enumerate(levels):
         with page.expect_response(f"**/at?cant={mm:g}*") as waited:

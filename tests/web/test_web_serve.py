@@ -154,7 +154,7 @@ def test_every_variable_is_in_the_readme(root: Path) -> None:
     read: set[str] = set()
 
     class Recorder(dict[str, str]):
-        def get(self, key: str, default: str | None = None) -> str | None:  # type: ignore[override]
+        def get(self, key: str, default: str | None = None) -> str | None:
             read.add(key)
             return default
 
