@@ -168,3 +168,22 @@ def test_pages_of_decisions_are_accessible_and_fit_a_phone(visit: Visit, planned
         assert [(v["id"], v["nodes"][0]["html"][:200]) for v in bad] == [], path
         wide = page.evaluate("document.documentElement.scrollWidth - document.documentElement.clientWidth")
         assert wide <= 0, path
+
+
+def test_option_is_looked_at_and_taken(visit: Visit, planned: PlannedLine) -> None:
+    visitor = visit("phone")
+    address = sample(visitor)
+    index = index_of(planned, "restrict")
+    option = planned.record(index)["options"][0]
+    page = visitor.go(f"{address}/curves/{index + 1}")
+    page.get_by_role("button", name="See what it would change").first.click()
+    page.get_by_text("Nothing has been kept yet").wait_for()
+    page.locator("[name='because']").fill("agreed with operations")
+    page.get_by_role("button", name="Keep it").click()
+    page.get_by_role("heading", name="Cants of").wait_for()
+    page = visitor.go(f"{address}/curves/{index + 1}")
+    verdict = page.locator(".verdict").first.inner_text().replace("\xa0", " ")
+    assert option["status"] in verdict
+    assert f"Cant {option['cant_mm']:.0f} mm" in verdict
+    assert visitor.go(f"{address}/history").get_by_text("agreed with operations").count() == 1
+    assert visitor.said == []
