@@ -9,7 +9,7 @@ from typing import Any
 from flask import url_for
 
 from webapp.computing import Computed
-from webapp.drawings.layout import DrawnCurve
+from webapp.drawings.layout import ClassSpeeds, DrawnCurve
 from webapp.drawings.line import LineDrawing, draw_line
 from webapp.measures import Measures
 
@@ -49,6 +49,10 @@ class LinePage:
     each: int
     governed: str
     records: list[tuple[int, dict[str, Any]]]
+
+    def falls_short(self, figures: Mapping[str, Any]) -> bool:
+        """Tell for the table what the picture frames: permissible speed below the planned one."""
+        return speeds_of(figures).falls_short
 
 
 def page_of_line(
@@ -117,6 +121,7 @@ def drawn_curve(
     runs = {
         figures["class"]: figures["deficiency_mm"] - figures["excess_mm"] for figures in record["classes"]
     }
+    speeds = {figures["class"]: speeds_of(figures) for figures in record["classes"]}
     return DrawnCurve(
         name=record["curve"] or f"row {record['row']}",
         address=url_for("curves.show", address=address, number=index + 1),
@@ -135,7 +140,13 @@ def drawn_curve(
         status=record["status"],
         shares_with_next=bool(record["shares_transition_with_next"]),
         deficiency_mm=[runs.get(name) for name in names],
+        speeds=[speeds.get(name) for name in names],
     )
+
+
+def speeds_of(figures: Mapping[str, Any]) -> ClassSpeeds:
+    """Give the speeds of a class on a curve, of its figures in the record."""
+    return ClassSpeeds(figures["class"], figures["speed_kmh"], figures["permissible_speed_kmh"])
 
 
 def curve_words(record: Mapping[str, Any], measures: Measures) -> str:

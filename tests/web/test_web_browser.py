@@ -4,6 +4,7 @@ from __future__ import annotations
 
 import io
 import json
+import re
 from pathlib import Path
 
 import openpyxl
@@ -149,3 +150,30 @@ def test_page_for_print_leaves_the_tools_out(visit: Visit) -> None:
     assert not page.locator("nav.steps").is_visible()
     assert page.get_by_text("Approved").is_visible()
     assert page.pdf(format="A4").startswith(b"%PDF")
+
+
+@pytest.mark.parametrize("scheme", ["light", "dark"])
+def test_line_picture_is_legible_on_paper(visit: Visit, tmp_path: Path, scheme: str) -> None:
+    visitor = visit(color_scheme=scheme)
+    page = visitor.go("/")
+    page.get_by_role("button", name="Plan the sample line").click()
+    page.get_by_role("link", name="Along the line").click()
+    page.emulate_media(media="print")
+    for control in ("header.top", "nav.steps", "form.filters", "ul.zoom"):
+        assert page.locator(control).count() == 1
+        assert not page.locator(control).is_visible(), control
+    paint = "s => { const c = getComputedStyle(document.querySelector(s)); return [c.fill, c.stroke] }"
+    assert page.evaluate(paint, "svg.strip .panel")[0] == "rgb(255, 255, 255)"
+    assert page.evaluate(paint, "svg.strip .below")[1] == "rgb(0, 0, 0)"
+    assert page.evaluate(paint, "svg.strip .permissible.class-0")[0] == "rgb(20, 67, 122)"
+    assert page.evaluate(paint, "svg.strip .planned.class-0")[0] == "none"
+    file = tmp_path / "line.pdf"
+    page.pdf(path=file, prefer_css_page_size=True)
+    boxes = re.findall(rb"/MediaBox\s*\[\s*0 0 ([\d.]+) ([\d.]+)", file.read_bytes())
+    assert boxes
+    for width, height in boxes:
+        assert (float(width), float(height)) == pytest.approx((842, 595), abs=2)  # A4 lying, in points
+    tallest = page.evaluate(
+        "Math.max(...[...document.querySelectorAll('svg.strip')].map(s => s.getBoundingClientRect().height))"
+    )
+    assert tallest < (210 - 2 * 12) / 25.4 * 96, "a strip fits between the margins of a sheet"

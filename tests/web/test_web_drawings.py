@@ -11,6 +11,7 @@ import pytest
 from flask import Flask
 from hypothesis import given
 from hypothesis import strategies as st
+from markupsafe import Markup
 from web_tools import Browser
 
 from cant import service
@@ -18,10 +19,11 @@ from cant.model.settings import Settings
 from cant.units import GRAVITY_MS2
 from webapp.computing import Computed
 from webapp.drawings import svg
-from webapp.drawings.layout import STRIP_WIDTH, DrawnCurve
+from webapp.drawings.layout import STRIP_WIDTH, ClassSpeeds, DrawnCurve
 from webapp.drawings.line import draw_line
-from webapp.drawings.scale import Panel, panel_for, step_for
+from webapp.drawings.scale import Panel, panel_around, panel_for, step_for
 from webapp.drawings.section import Acting, acting, draw_section
+from webapp.drawings.speeds import speed_panel, speed_words
 from webapp.line_view import CURVES_A_PAGE, page_of_line
 from webapp.measures import measures
 from webapp.words import heading, value
@@ -246,3 +248,137 @@ def test_line_picture_shows_what_a_quantity_bounds(browser: Browser) -> None:
         assert "<option selected>cant excess" in page
         shown |= {(line, track, name) for name in re.findall(r'<th scope="row"><a[^>]*>([^<]*)</a>', page)}
     assert shown == bound
+
+
+def height_of(mark: ElementTree.Element) -> float:
+    """Give where a mark of any shape has its middle between its top and bottom, or its centre."""
+    if "cy" in mark.attrib:
+        return float(mark.attrib["cy"])
+    if "points" in mark.attrib:
+        ys = [float(p.split(",")[1]) for p in mark.attrib["points"].split()]
+        # Of a triangle the middle lies at 1.2 of 2.2 parts below its top, of a diamond half way.
+        return min(ys) + (max(ys) - min(ys)) * (1.2 / 2.2 if len(ys) == 3 else 0.5)
+    if "height" in mark.attrib:
+        return float(mark.attrib["y"]) + float(mark.attrib["height"]) / 2
+    lines = mark.findall("s:line", NAMESPACE)
+    return sum(float(stroke.attrib[k]) for stroke in lines for k in ("y1", "y2")) / (2 * len(lines))
+
+
+def speed_groups(strips: list[Markup]) -> list[ElementTree.Element]:
+    return [g for s in strips for g in parsed(s).findall(".//s:a/s:g[@class='speeds']", NAMESPACE)]
+
+
+def marks_of(group: ElementTree.Element, kind: str) -> list[ElementTree.Element]:
+    shapes = [e for e in group if e.attrib.get("class", "").split()[:1] == [kind]]
+    crosses = [
+        e for e in group.findall("s:g", NAMESPACE) if e[0].attrib.get("class", "").split()[:1] == [kind]
+    ]
+    return shapes + crosses
+
+
+@pytest.mark.parametrize("system", ["metric", "us"])
+def test_speed_marks_stand_at_the_numbers_of_the_plan(sample_file: Path, app: Flask, system: str) -> None:
+    units = measures(system)
+    reading = service.read_curves(sample_file.read_bytes(), sample_file.name)
+    computed = Computed(service.make_plan(reading))
+    kmh_per_unit = 1.0 if system == "metric" else 1.609344  # the international mile
+    framed = 0
+    with app.test_request_context():
+        for track in computed.listing.tracks:
+            page = page_of_line(computed, "x", {"track": track, "each": "96"}, units)
+            assert page is not None
+            assert page.pages == 1
+            entries = [entry for _, record in page.records for entry in record["classes"]]
+            groups = speed_groups(page.drawing.strips)
+            assert len(groups) == len(entries) > 0
+            height = {}  # the scale as the labels of the panel tell it
+            root = parsed(page.drawing.strips[0])
+            labels = root.findall(".//s:text[@class='grid-label']", NAMESPACE)
+            bottom = max(float(p.attrib["y"]) for p in root.findall(".//s:rect[@class='panel']", NAMESPACE))
+            for label in labels:
+                if float(label.attrib["y"]) > bottom:
+                    height[float(label.text or "")] = float(label.attrib["y"]) + 2
+            (v1, y1), *_, (v2, y2) = sorted(height.items())
+            for group, entry in zip(groups, entries, strict=True):
+                title = group.findtext("s:title", "", NAMESPACE)
+                index = page.classes.index(entry["class"])
+                assert title.startswith(entry["class"] + ": permissible ")
+                for kind, key in (("planned", "speed_kmh"), ("permissible", "permissible_speed_kmh")):
+                    (mark,) = marks_of(group, kind)
+                    assert mark.attrib["class"] == f"{kind} class-{index % 6}"
+                    shown = entry[key] / kmh_per_unit
+                    assert f"{kind} {shown:.1f}\u00a0" in title
+                    assert height_of(mark) == pytest.approx(
+                        y1 + (shown - v1) * (y2 - y1) / (v2 - v1), abs=0.05
+                    )
+                short = entry["permissible_speed_kmh"] < entry["speed_kmh"]
+                assert bool(group.findall("s:rect[@class='below']", NAMESPACE)) == short
+                assert bool(group.findall("s:polygon[@class='below-pointer']", NAMESPACE)) == short
+                assert title.endswith("permissible below planned") == short
+                framed += short
+    assert framed > 0
+
+
+def test_speeds_of_any_class_are_drawn_in_its_shape() -> None:
+    names = "ABCDEFG"
+    speeds = [ClassSpeeds(n, 100.0 + 7 * i, 90.0 + 9 * i) for i, n in enumerate(names)]
+    curves = [curve(speeds=[*speeds, None, ClassSpeeds("I", 60.0, None)])]
+    groups = speed_groups(draw_line(curves, METRIC).strips)
+    assert len(groups) == 8
+    panel = speed_panel(0.0, 110.0, curves, METRIC)
+    first = height_of(marks_of(groups[0], "planned")[0])
+    for group, one in zip(groups, speeds, strict=False):
+        (planned,), (permissible,) = marks_of(group, "planned"), marks_of(group, "permissible")
+        assert height_of(planned) - first == pytest.approx(
+            panel.y(one.planned_kmh) - panel.y(100.0), abs=0.05
+        )
+        assert height_of(permissible) - first == pytest.approx(
+            panel.y(one.permissible_kmh or 0.0) - panel.y(100.0), abs=0.05
+        )
+    below = [bool(g.findall("s:rect[@class='below']", NAMESPACE)) for g in groups]
+    assert below == [True] * 5 + [False] * 3  # 90 + 9 i < 100 + 7 i up to i = 4; equal at 5
+    assert marks_of(groups[-1], "permissible") == []
+    assert speed_words(ClassSpeeds("I", 60.0, None), METRIC).endswith("planned 60.0\u00a0km/h")
+    assert not draw_line([curve()], METRIC).strips[0].count("speeds")
+
+
+@given(st.lists(st.floats(min_value=0, max_value=400), max_size=5), st.sampled_from(["metric", "us"]))
+def test_speed_panel_takes_in_every_speed(values: list[float], system: str) -> None:
+    panel = panel_around(10, 100, values, measures(system), "speed", 30.0)
+    assert all(panel.low <= v <= panel.high for v in values)
+    assert panel.low >= 0
+    assert panel.high - panel.low >= 30
+    assert len(panel.ticks) >= 2
+    assert all(panel.low < v < panel.high for v, _ in panel.ticks)
+
+
+def test_table_beside_the_picture_holds_its_speeds(browser: Browser) -> None:
+    plan = browser.sample()
+    page = browser.get(f"{plan}/line?each=96").text
+    table = page[page.index("<tbody>") : page.index("</tbody>")]
+    rows = re.findall(r"<tr>(.*?)</tr>", table, re.DOTALL)
+    titles = re.findall(r"<title>(\w[^<]*: (?:no )?permissible [^<]*)</title>", page)
+    said = []
+    for row in rows:
+        cells = [re.sub(r"<[^>]+>", "", c) for c in re.findall(r"<td[^>]*>(.*?)</td>", row, re.DOTALL)]
+        for at in range(5, len(cells) - 1, 3):
+            if cells[at] != "–":
+                said.append((cells[at + 1], cells[at + 2]))
+    assert len(said) == len(titles) > 0
+    for (permissible, planned), title in zip(said, titles, strict=True):
+        number = permissible.removeprefix("▼ below planned: ")
+        assert f"permissible {number}\u00a0km/h, planned {planned}\u00a0km/h" in title
+        assert (number != permissible) == title.endswith("permissible below planned")
+
+
+def test_style_for_paper_turns_the_line_picture(browser: Browser) -> None:
+    style = browser.get("/static/style.css").text
+    paper = style[style.index("@media print") :]
+    assert re.search(r"@page wide \{[^}]*size: A4 landscape", paper)
+    assert re.search(r"\.along \{[^}]*page: wide", paper)
+    assert re.search(r"\.strip,[^{]*\{ break-inside: avoid", paper)
+    for name in ("filters", "pager", "top", "steps"):
+        assert re.search(rf"\.{name}\b[^{{}}]*\{{ display: none", paper)
+    for mark in re.findall(r"--mark-\d: #(\w{6})", paper):
+        assert sum(int(mark[i : i + 2], 16) for i in (0, 2, 4)) < 300, "dark ink"
+    assert '<div class="along">' in browser.get(f"{browser.sample()}/line").text

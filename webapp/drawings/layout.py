@@ -19,10 +19,25 @@ LETTER = 6.2
 
 
 @dataclass(frozen=True)
+class ClassSpeeds:
+    """Speeds of a class that runs on a curve [km/h]; the permissible one is None where it is not known."""
+
+    name: str
+    planned_kmh: float
+    permissible_kmh: float | None
+
+    @property
+    def falls_short(self) -> bool:
+        """Whether the permissible speed lies below the planned one."""
+        return self.permissible_kmh is not None and self.permissible_kmh < self.planned_kmh - 1e-6
+
+
+@dataclass(frozen=True)
 class DrawnCurve:
     """What the drawing needs of one curve; lengths in m, cants in mm, signed by nothing.
 
-    ``deficiency_mm`` holds for each class the deficiency, or less the excess; None where it does not run.
+    ``deficiency_mm`` holds for each class the deficiency, or less the excess; ``speeds`` its speeds; None
+    where it does not run.
     """
 
     name: str
@@ -42,6 +57,7 @@ class DrawnCurve:
     status: str
     shares_with_next: bool
     deficiency_mm: Sequence[float | None] = ()
+    speeds: Sequence[ClassSpeeds | None] = ()
 
 
 @dataclass

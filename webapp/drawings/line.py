@@ -1,4 +1,4 @@
-"""The line along its chainage: cant today and proposed, permitted range, curvature, deficiency of each class.
+"""The line along its chainage: cants, permitted range, curvature, deficiency and speeds of each class.
 
 The picture is cut into strips that flow like text: side by side on a wide screen, one below the other on a
 phone, and on paper. Lengths are squeezed (long straights and long arcs are shortened, short ones stretched)
@@ -16,9 +16,11 @@ from markupsafe import Markup
 from webapp.drawings import svg
 from webapp.drawings.layout import LETTER, DrawnCurve, Placed, Strip, lay_out
 from webapp.drawings.scale import Panel, panel_for
+from webapp.drawings.speeds import speed_marks, speed_panel
 from webapp.measures import Measures
 
-TOP, CANT_HEIGHT, CURVATURE_HEIGHT, DEFICIENCY_HEIGHT, GAP, FOOT = 34.0, 150.0, 64.0, 110.0, 14.0, 34.0
+TOP, CANT_HEIGHT, CURVATURE_HEIGHT, DEFICIENCY_HEIGHT, SPEED_HEIGHT = 34.0, 150.0, 64.0, 110.0, 110.0
+GAP, FOOT = 14.0, 34.0
 
 
 @dataclass(frozen=True)
@@ -27,6 +29,16 @@ class LineDrawing:
 
     strips: list[Markup]
     shortened: bool
+
+
+@dataclass(frozen=True)
+class _Panels:
+    """From top to bottom."""
+
+    cant: Panel
+    bend: Panel
+    deficiency: Panel
+    speed: Panel
 
 
 def draw_line(curves: Sequence[DrawnCurve], measures: Measures) -> LineDrawing:
@@ -42,6 +54,12 @@ def draw_line(curves: Sequence[DrawnCurve], measures: Measures) -> LineDrawing:
     if not curves:
         return LineDrawing([], False)
     strips = lay_out(curves)
+    panels = _panels(curves, measures)
+    drawn = [_draw_strip(s, panels, measures, i) for i, s in enumerate(strips)]
+    return LineDrawing(drawn, any(p.shortened_before for s in strips for p in s.placed))
+
+
+def _panels(curves: Sequence[DrawnCurve], measures: Measures) -> _Panels:
     cants = [v for c in curves for v in _signed_cants(c)]
     cant = panel_for(TOP, CANT_HEIGHT, cants, measures, "cant")
     bend = Panel(
@@ -53,8 +71,9 @@ def draw_line(curves: Sequence[DrawnCurve], measures: Measures) -> LineDrawing:
     )
     deficiencies = [v for c in curves for v in c.deficiency_mm if v is not None]
     deficiency = panel_for(bend.bottom + GAP, DEFICIENCY_HEIGHT, deficiencies, measures, "cant")
-    drawn = [_draw_strip(s, (cant, bend, deficiency), measures, i) for i, s in enumerate(strips)]
-    return LineDrawing(drawn, any(p.shortened_before for s in strips for p in s.placed))
+    return _Panels(
+        cant, bend, deficiency, speed_panel(deficiency.bottom + GAP, SPEED_HEIGHT, curves, measures)
+    )
 
 
 def _side(curve: DrawnCurve) -> int:
@@ -66,11 +85,11 @@ def _signed_cants(curve: DrawnCurve) -> list[float]:
     return [0.0] + [_side(curve) * v for v in values if v is not None]
 
 
-def _draw_strip(strip: Strip, panels: tuple[Panel, Panel, Panel], measures: Measures, order: int) -> Markup:
-    cant, bend, deficiency = panels
+def _draw_strip(strip: Strip, panels: _Panels, measures: Measures, order: int) -> Markup:
+    cant, bend = panels.cant, panels.bend
     width = max(strip.width, 120.0)
-    height = deficiency.bottom + FOOT
-    parts = [p.draw_grid(width) for p in panels]
+    height = panels.speed.bottom + FOOT
+    parts = [p.draw_grid(width) for p in (cant, bend, panels.deficiency, panels.speed)]
     parts += [_headings(panels, measures)]
     parts += [_permitted(placed, cant) for placed in strip.placed]
     for panel, class_, of in (
@@ -80,9 +99,9 @@ def _draw_strip(strip: Strip, panels: tuple[Panel, Panel, Panel], measures: Meas
     ):
         parts += _profiles(strip, width, panel, of, class_)
     for placed in strip.placed:
-        parts += _markers(placed, deficiency)
+        parts += _markers(placed, panels.deficiency)
         parts += _labels(placed, panels, measures)
-        parts.append(_link(placed, height))
+        parts.append(_link(placed, height, speed_marks(placed, panels.speed, measures)))
     names = f"{strip.placed[0].curve.name} to {strip.placed[-1].curve.name}"
     return svg.element(
         "svg",
@@ -97,13 +116,13 @@ def _draw_strip(strip: Strip, panels: tuple[Panel, Panel, Panel], measures: Meas
     )
 
 
-def _headings(panels: tuple[Panel, Panel, Panel], measures: Measures) -> Markup:
-    cant, bend, deficiency = panels
+def _headings(panels: _Panels, measures: Measures) -> Markup:
     unit = measures.unit("cant")
     texts = (
-        (cant, f"cant, {unit}"),
-        (bend, "curvature"),
-        (deficiency, f"deficiency (up), excess (down), {unit}"),
+        (panels.cant, f"cant, {unit}"),
+        (panels.bend, "curvature"),
+        (panels.deficiency, f"deficiency (up), excess (down), {unit}"),
+        (panels.speed, f"speed, {measures.unit('speed')}"),
     )
     return svg.group(
         *(svg.words(3, panel.top - 3, text, "panel-name") for panel, text in texts), aria_hidden="true"
@@ -180,9 +199,8 @@ def _markers(placed: Placed, panel: Panel) -> list[Markup]:
     ]
 
 
-def _labels(placed: Placed, panels: tuple[Panel, Panel, Panel], measures: Measures) -> list[Markup]:
-    curve = placed.curve
-    _, bend, deficiency = panels
+def _labels(placed: Placed, panels: _Panels, measures: Measures) -> list[Markup]:
+    curve, bend, bottom = placed.curve, panels.bend, panels.speed.bottom
     middle = (placed.arc_begin + placed.arc_end) / 2
     room = max(int((placed.arc_end - placed.arc_begin) / LETTER), 4)
     name = curve.name if len(curve.name) <= room else f"{curve.name[: room - 1]}…"
@@ -192,16 +210,16 @@ def _labels(placed: Placed, panels: tuple[Panel, Panel, Panel], measures: Measur
     drawn = [
         svg.words(middle, 12, name, "curve-name", "middle"),
         svg.words(middle, bend.y(0.0) + (13 if above else -5), radius, "value", "middle"),
-        svg.line((placed.arc_begin, deficiency.bottom), (placed.arc_begin, deficiency.bottom + 5), "tick"),
-        svg.words(placed.arc_begin - 2, deficiency.bottom + 17, start, "value"),
+        svg.line((placed.arc_begin, bottom), (placed.arc_begin, bottom + 5), "tick"),
+        svg.words(placed.arc_begin - 2, bottom + 17, start, "value"),
     ]
     if placed.shortened_before:
-        drawn.append(svg.words(placed.begin - 4, deficiency.bottom + 4, "//", "break", "end"))
+        drawn.append(svg.words(placed.begin - 4, bottom + 4, "//", "break", "end"))
     return drawn
 
 
-def _link(placed: Placed, height: float) -> Markup:
-    """Cover the curve with a link to its page, wide enough for a finger."""
+def _link(placed: Placed, height: float, marks: Sequence[Markup]) -> Markup:
+    """Cover the curve with a link to its page, wide enough for a finger; marks with titles lie on it."""
     area = svg.rectangle(
         placed.arc_begin,
         0,
@@ -210,4 +228,4 @@ def _link(placed: Placed, height: float) -> Markup:
         "target",
         svg.element("title", placed.curve.words),
     )
-    return svg.element("a", area, href=placed.curve.address, aria_label=placed.curve.words)
+    return svg.element("a", area, *marks, href=placed.curve.address, aria_label=placed.curve.words)

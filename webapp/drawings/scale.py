@@ -72,6 +72,27 @@ def panel_for(top: float, height: float, values: Sequence[float], measures: Meas
         high = low + 1.0
     step = step_for(high - low)
     first, last = math.floor(low / step - MARGIN * (low < 0)), math.ceil(high / step + MARGIN)
+    return _stepped(top, height, (first, last, step), measures, kind)
+
+
+def panel_around(
+    top: float, height: float, values: Sequence[float], measures: Measures, kind: str, span: float
+) -> Panel:
+    """Give a panel that takes in values not below zero, and at least ``span`` [shown unit]."""
+    shown = [measures.number(kind, v) for v in values] or [0.0]
+    low, high = min(shown), max(shown)
+    low = max(low - max(span - (high - low), 0.0) / 2, 0.0)
+    high = max(high, low + span)
+    step = step_for(high - low)
+    first, last = max(math.floor(low / step - MARGIN), 0), math.ceil(high / step + MARGIN)
+    return _stepped(top, height, (first, last, step), measures, kind)
+
+
+def _stepped(
+    top: float, height: float, steps: tuple[int, int, float], measures: Measures, kind: str
+) -> Panel:
+    first, last, step = steps
     size = measures.canonical(kind, 1.0)
-    ticks = tuple((i * step * size, f"{abs(i) * step:g}") for i in range(first + (first < 0), last) if i != 0)
+    begin = first + (first != 0)
+    ticks = tuple((i * step * size, f"{abs(i) * step:g}") for i in range(begin, last) if i != 0)
     return Panel(top, height, first * step * size, last * step * size, ticks)
