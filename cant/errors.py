@@ -80,7 +80,3 @@ class InputError(CantError):
 
 class FileError(CantError):
     """A file cannot be read, is refused for safety, or cannot be written."""
-
-
-class LimitsGapError(InputError):
-    """A limit set lacks something without which nothing at all can be planned."""

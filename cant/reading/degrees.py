@@ -11,10 +11,10 @@ import re
 import numpy as np
 
 from cant.model.curves import FloatArray
+from cant.quantities.geometry import radius_from_degree, radius_from_versine
 from cant.reading.cells import STRAIGHT, Taken
 from cant.reading.numbers import parse_number
 from cant.reading.takers import is_straight
-from cant.units import FOOT_M
 
 ARC_100_FT, CHORD_100_FT, CHORD_30_5_M, CHORD_20_M = (
     "100 ft arc",
@@ -22,13 +22,7 @@ ARC_100_FT, CHORD_100_FT, CHORD_30_5_M, CHORD_20_M = (
     "30.5 m chord",
     "20 m chord",
 )
-KINDS: dict[str, tuple[float, bool]] = {
-    ARC_100_FT: (100 * FOOT_M, False),
-    CHORD_100_FT: (100 * FOOT_M, True),
-    CHORD_30_5_M: (30.5, True),
-    CHORD_20_M: (20.0, True),
-}
-"""Kind of degree: length of arc or chord [m], and whether it is a chord."""
+"""Kinds of degree that a list may be in, by their names in :mod:`cant.quantities.geometry`."""
 
 _NUM = r"\d+(?:[.,]\d+)?"
 _DMS = re.compile(
@@ -66,19 +60,17 @@ def take_degree(text: str, decimal: str = "") -> Taken:
 
 
 def radius_of_degree(degrees: FloatArray, kind: str) -> FloatArray:
-    """Give the radius [m] of a degree of curve, with its sign; nan for 0.
+    """Give the radius [m] of a degree of curve, with its sign; nan for 0, which a list writes for "none".
 
     Parameters
     ----------
     degrees : ndarray
     kind : str
-        One of :data:`KINDS`: R = a / D for an arc a (D in rad), R = c / (2 sin(D / 2)) for a chord c.
+        As :func:`cant.quantities.geometry.radius_from_degree` knows it.
     """
-    length, is_chord = KINDS[kind]
-    angle = np.radians(np.where(degrees == 0, np.nan, degrees))
-    return length / (2 * np.sin(angle / 2)) if is_chord else length / angle
+    return radius_from_degree(np.where(degrees == 0, np.nan, degrees), kind)
 
 
 def radius_of_versine(versines_m: FloatArray, chord_m: float | FloatArray) -> FloatArray:
-    """Give the radius [m] of a versine over its chord, R = c^2 / (8 v), with its sign; nan for 0."""
-    return chord_m**2 / (8 * np.where(versines_m == 0, np.nan, versines_m))
+    """Give the radius [m] of a versine [m] over its chord, with its sign; nan for 0."""
+    return radius_from_versine(np.where(versines_m == 0, np.nan, versines_m) * 1000.0, chord_m)

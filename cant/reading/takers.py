@@ -11,7 +11,7 @@ import numpy as np
 
 from cant.model.curves import LEFT, RIGHT
 from cant.reading.cells import NONE, PAIR, STRAIGHT, Taken
-from cant.reading.numbers import parse_number, parse_quantity
+from cant.reading.numbers import parse_quantity
 from cant.reading.text import fold
 from cant.reading.words import lexicon, meaning_of
 
@@ -133,12 +133,6 @@ def take_speed(text: str, decimal: str = "") -> Taken:
         return single
     pair = _take_pair(text, decimal, take_speed)
     return pair if pair is not None else single
-
-
-def take_number(text: str, decimal: str = "") -> Taken:
-    """Read a bare number; anything else is a problem."""
-    value = parse_number(text, decimal)
-    return Taken(problem=f"'{text}' is no number") if value is None else Taken(value=value)
 
 
 def same(first: float, second: float, tolerance: float) -> bool:

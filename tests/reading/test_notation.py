@@ -8,8 +8,9 @@ import pytest
 from hypothesis import given
 from hypothesis import strategies as st
 
+from cant.quantities.geometry import DEGREE_KINDS
 from cant.reading.chainages import STATION, miles_chains, miles_yards, take_location
-from cant.reading.degrees import KINDS, radius_of_degree, radius_of_versine, take_degree
+from cant.reading.degrees import radius_of_degree, radius_of_versine, take_degree
 from cant.reading.numbers import decimal_mark, parse_number, parse_quantity
 from cant.reading.takers import take_cant, take_radius, take_speed, take_transition
 from cant.units import UNITS
@@ -189,10 +190,10 @@ def test_one_degree_of_each_kind_is_the_printed_radius() -> None:
     assert radius_of_degree(one, "30.5 m chord")[0] == pytest.approx(1750, rel=0.002)
 
 
-@given(st.sampled_from(sorted(KINDS)), st.floats(0.1, 20))
+@given(st.sampled_from(sorted(DEGREE_KINDS)), st.floats(0.1, 20))
 def test_a_degree_is_the_angle_that_its_chord_or_arc_spans(kind: str, degrees: float) -> None:
     radius = radius_of_degree(np.array([degrees]), kind)[0]
-    length, is_chord = KINDS[kind]
+    length, is_chord = DEGREE_KINDS[kind].length_m, DEGREE_KINDS[kind].chord
     angle = 2 * np.arcsin(length / 2 / radius) if is_chord else length / radius
     assert np.degrees(angle) == pytest.approx(degrees)
 
