@@ -16,13 +16,13 @@ from webapp.api import api
 from webapp.computing import Computations
 from webapp.config import Config
 from webapp.context import EXTENSION, Running, current_measures, running
-from webapp.database import Database
 from webapp.drawings import svg
 from webapp.errors import add_error_answers
 from webapp.history_view import remembered_name
+from webapp.keeping.database import Database
+from webapp.keeping.store import Store
 from webapp.measures import SYSTEM_WORDS
 from webapp.security import SESSION_COOKIE, check_form, form_token, protect
-from webapp.store import Store
 from webapp.views import comparing, curves, deciding, downloads, help, limits, reading, result, start, trains
 
 COOKIE_DAYS = 400

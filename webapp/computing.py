@@ -18,9 +18,9 @@ from cant.model.reading import Reading
 from cant.planning import Plan
 from cant.service import AnnotatedFile, PlannedLine
 from webapp.changes import together
+from webapp.keeping.store import StoredPlan
 from webapp.listing import Listing
 from webapp.measures import SYSTEMS
-from webapp.store import StoredPlan
 from webapp.tables import TRAFFIC_FILE, traffic_csv
 
 Kept = TypeVar("Kept")

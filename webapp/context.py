@@ -12,10 +12,10 @@ from werkzeug.wrappers import Response
 from cant.model.reading import Reading
 from webapp.computing import Computations, Computed
 from webapp.config import Config
-from webapp.database import Database
+from webapp.keeping.database import Database
+from webapp.keeping.store import Store, StoredPlan
 from webapp.measures import SYSTEMS, Measures, measures
 from webapp.security import owner
-from webapp.store import Store, StoredPlan
 
 EXTENSION = "cant"
 UNITS = "units"

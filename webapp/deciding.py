@@ -11,7 +11,7 @@ from cant.model.limits import QUANTITIES, LimitSet
 from cant.model.reading import Reading
 from cant.model.traffic import Traffic
 from cant.units import UNITS
-from webapp.store import StoredPlan
+from webapp.keeping.store import StoredPlan
 from webapp.tables import TRAFFIC_FILE, traffic_csv
 
 

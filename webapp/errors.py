@@ -14,8 +14,8 @@ from werkzeug.exceptions import HTTPException, RequestEntityTooLarge, SecurityEr
 
 from cant.errors import CantError
 from webapp.context import running
+from webapp.keeping.store import NotAllowedError, NotThereError
 from webapp.security import RefusedError
-from webapp.store import NotThereError
 
 API_PREFIX = "/api/"
 LOG = logging.getLogger("webapp")
@@ -33,6 +33,7 @@ TITLES = {
 def add_error_answers(app: Flask) -> None:
     """Register the answers to every kind of error."""
     app.register_error_handler(NotThereError, _not_there)
+    app.register_error_handler(NotAllowedError, _not_allowed)
     app.register_error_handler(CantError, _cannot)
     app.register_error_handler(RefusedError, _refused)
     app.register_error_handler(RequestEntityTooLarge, _too_large)
@@ -62,6 +63,10 @@ def answer(code: int, message: str) -> Response:
 
 def _not_there(error: NotThereError) -> ResponseReturnValue:
     return answer(404, _sentence(str(error)))
+
+
+def _not_allowed(error: NotAllowedError) -> ResponseReturnValue:
+    return answer(403, _sentence(str(error)))
 
 
 def _cannot(error: CantError) -> ResponseReturnValue:

@@ -10,8 +10,8 @@ from flask import session
 
 from webapp.decisions import CHANGE, Decision
 from webapp.forms import Fields
+from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
-from webapp.store import StoredPlan
 
 WHO = "who"
 LONGEST_WHO = 80

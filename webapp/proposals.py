@@ -14,8 +14,8 @@ from itsdangerous import BadSignature, URLSafeSerializer
 
 from cant.errors import InputError
 from webapp.decisions import Decided, Decision
+from webapp.keeping.store import StoredPlan
 from webapp.security import owner
-from webapp.store import StoredPlan
 
 
 @dataclass(frozen=True)

@@ -13,10 +13,10 @@ from sqlalchemy import select, update
 
 from cant import limit_sets
 from cant.errors import FileError, InputError
-from webapp.database import Database
+from webapp.keeping.database import Database
 from webapp.decisions import as_text, limits_text
-from webapp.records import Base, DecisionRow, FileRow, KeptLimitsRow, PlanRow
-from webapp.store import NotThereError, Store
+from webapp.keeping.records import Base, DecisionRow, FileRow, KeptLimitsRow, PlanRow
+from webapp.keeping.store import NotThereError, Store
 
 
 @pytest.fixture
@@ -153,7 +153,7 @@ def test_unusable_database_is_told_in_one_line(tmp_path: Path) -> None:
 
 
 def test_missing_driver_is_told_in_one_line(monkeypatch: pytest.MonkeyPatch) -> None:
-    monkeypatch.setattr("webapp.database.create_engine", missing)
+    monkeypatch.setattr("webapp.keeping.database.create_engine", missing)
     with pytest.raises(InputError, match=r"driver nodriver.*\[postgresql\]"):
         Database("postgresql+psycopg://somewhere/plans")
 

@@ -13,7 +13,7 @@ from cant.model.plan import CurveRecord, Status
 from cant.model.settings import METHODS, Settings
 from cant.model.traffic import Traffic, TrainClass
 from cant.units import UNITS
-from webapp.store import StoredPlan
+from webapp.keeping.store import StoredPlan
 
 Amount = Annotated[float, Field(ge=0, allow_inf_nan=False)]
 Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]

@@ -10,8 +10,8 @@ from cant.model.plan import PlanDocument
 from webapp.api.models import CurvesAnswer, CurvesQuery, NumberedCurve
 from webapp.api.operations import operation
 from webapp.context import computed_of, file_of, stored
+from webapp.keeping.store import NotThereError
 from webapp.listing import Wanted
-from webapp.store import NotThereError
 
 XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
 

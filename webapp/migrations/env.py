@@ -1,8 +1,8 @@
-"""Runs the migrations on the connection that :mod:`webapp.database` hands over."""
+"""Runs the migrations on the connection that :mod:`webapp.keeping.database` hands over."""
 
 from alembic import context
 
-from webapp.records import Base
+from webapp.keeping.records import Base
 
 context.configure(
     connection=context.config.attributes["connection"],

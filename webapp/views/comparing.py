@@ -15,9 +15,9 @@ from webapp.context import computed_of, current_measures, file_of, running, stor
 from webapp.decisions import CHANGE, as_text
 from webapp.difference_view import page_of_difference, pair_words
 from webapp.history_view import moment_of, moments, signed_by
+from webapp.keeping.store import NotThereError, StoredPlan
 from webapp.proposals import Proposal, at_moment, proposal_of
 from webapp.security import owner
-from webapp.store import NotThereError, StoredPlan
 
 pages = Blueprint("comparing", __name__, url_prefix="/plans/<address>")
 

@@ -14,8 +14,8 @@ from cant.explaining import CurveKey
 from webapp import curve_view, line_view, moving
 from webapp.computing import Computed
 from webapp.context import computed_of, current_measures, stored, unconfirmed
+from webapp.keeping.store import NotThereError, StoredPlan
 from webapp.measures import measures
-from webapp.store import NotThereError, StoredPlan
 
 pages = Blueprint("curves", __name__, url_prefix="/plans/<address>")
 

@@ -12,10 +12,10 @@ from webapp.context import computed_of, running, stored, unconfirmed
 from webapp.decisions import CHANGE, as_text
 from webapp.forms import Fields
 from webapp.history_view import moments, remembered_name, signed_by
+from webapp.keeping.store import NotThereError, StoredPlan
 from webapp.measures import measures
 from webapp.proposals import Proposal
 from webapp.security import owner
-from webapp.store import NotThereError, StoredPlan
 from webapp.views import curves
 from webapp.views.comparing import page_of_proposal
 

@@ -13,10 +13,10 @@ from webapp import limits_form, settings_form
 from webapp.context import current_measures, file_of, reading_of, running, stored
 from webapp.deciding import check_reading
 from webapp.decisions import as_text, limits_text, settings_text
+from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
 from webapp.proposals import Proposal
 from webapp.security import owner
-from webapp.store import StoredPlan
 from webapp.tables import file_name, limits_csv
 from webapp.uploads import needed
 from webapp.views.comparing import page_of_proposal

@@ -11,8 +11,8 @@ from webapp import reading_form
 from webapp.context import file_of, reading_of, running, stored
 from webapp.deciding import check_reading
 from webapp.decisions import as_text
+from webapp.keeping.store import StoredPlan
 from webapp.security import owner
-from webapp.store import StoredPlan
 
 pages = Blueprint("reading", __name__, url_prefix="/plans/<address>")
 SHOWN_PROBLEMS = 200

@@ -11,10 +11,10 @@ from webapp import trains_form
 from webapp.context import current_measures, file_of, reading_of, running, stored
 from webapp.deciding import check_reading
 from webapp.decisions import traffic_text
+from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
 from webapp.proposals import Proposal
 from webapp.security import owner
-from webapp.store import StoredPlan
 from webapp.tables import TRAFFIC_FILE, traffic_csv
 from webapp.uploads import needed
 from webapp.views.comparing import page_of_proposal

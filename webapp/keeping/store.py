@@ -1,7 +1,7 @@
-"""Plans and kept limits in the database: whose they are, how long they stay.
+"""Plans and kept limits in the database: whose they are, who else may see them, how long they stay.
 
-Every question names its owner, so that no caller can forget to ask: what belongs to somebody else does not
-exist. A change is one transaction, whole or not at all.
+Every question names who asks, so that no caller can forget to: what belongs to somebody else and is not
+shared with him does not exist. A change is one transaction, whole or not at all.
 """
 
 from __future__ import annotations
@@ -11,23 +11,36 @@ import json
 import secrets
 from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
+from enum import IntEnum
 
-from sqlalchemy import delete, func, select
+from sqlalchemy import delete, func, or_, select
 from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session
 
 from cant.errors import CantError, InputError
 from cant.model.limits import LimitSet
-from webapp.database import Database
 from webapp.decisions import KINDS, Decided, Decision, limits_from_plain, limits_text
-from webapp.records import DecisionRow, FileRow, KeptLimitsRow, PlanRow
+from webapp.keeping.database import Database
+from webapp.keeping.records import DecisionRow, FileRow, GrantRow, KeptLimitsRow, PlanRow
 
 ADDRESS_BYTES = 24
 LONGEST_NAME = 80
 
 
+class Access(IntEnum):
+    """What somebody may do with a plan; each includes what stands before it."""
+
+    READ = 1
+    EDIT = 2
+    OWN = 3
+
+
 class NotThereError(CantError):
-    """No such plan for this owner: never made, deleted, expired, or somebody else's."""
+    """No such plan for who asks: never made, deleted, expired, or somebody else's and not shared."""
+
+
+class NotAllowedError(CantError):
+    """A plan that who asks may see, but not do this with."""
 
 
 @dataclass(frozen=True)
@@ -47,6 +60,8 @@ class StoredPlan:
         What holds after all decisions.
     history : tuple of Decision
         All decisions, oldest first.
+    access : Access
+        What who asked for it may do with it.
     """
 
     address: str
@@ -59,6 +74,17 @@ class StoredPlan:
     expires: datetime
     decided: Decided
     history: tuple[Decision, ...]
+    access: Access = Access.OWN
+
+    @property
+    def may_edit(self) -> bool:
+        """Whether who asked may decide on it."""
+        return self.access >= Access.EDIT
+
+    @property
+    def is_own(self) -> bool:
+        """Whether it belongs to who asked."""
+        return self.access is Access.OWN
 
 
 @dataclass(frozen=True)
@@ -123,12 +149,12 @@ class Store:
     def plan(self, owner: str, address: str) -> StoredPlan:
         """Give a plan; NotThereError where this owner has none of that address."""
         with self._database.sessions() as session:
-            return _stored(_find(session, owner, address))
+            return _stored(*find(session, owner, address))
 
     def file(self, owner: str, address: str) -> bytes:
         """Give the bytes of a plan's file, as they were uploaded."""
         with self._database.sessions() as session:
-            row = session.get(FileRow, _find(session, owner, address).id)
+            row = session.get(FileRow, find(session, owner, address)[0].id)
             if row is None:
                 message = "the file of this plan is no longer kept"
                 raise NotThereError(message)
@@ -146,7 +172,7 @@ class Store:
             message = f"unknown kind of decision: {', '.join(sorted(unknown))}"
             raise InputError(message)
         with self._database.sessions.begin() as session:
-            plan = _find(session, owner, address, for_change=True)
+            plan, access = find(session, owner, address, Access.EDIT, for_change=True)
             now = datetime.now(UTC)
             ruling = {d.kind: d.content for d in plan.decisions}
             number = max((d.number for d in plan.decisions), default=-1)
@@ -159,7 +185,7 @@ class Store:
                 )
             plan.changed, plan.expires = now, now + self._keep
             session.flush()
-            return _stored(plan)
+            return _stored(plan, access)
 
     def keep_longer(self, owner: str, address: str) -> StoredPlan:
         """Start the days until a plan expires anew."""
@@ -169,7 +195,7 @@ class Store:
         """Call a plan otherwise; InputError where the name is blank or long."""
         name = checked_name(name)
         with self._database.sessions.begin() as session:
-            plan = _find(session, owner, address, for_change=True)
+            plan, _ = find(session, owner, address, Access.OWN, for_change=True)
             plan.name = name
             session.flush()
             return _stored(plan)
@@ -177,7 +203,8 @@ class Store:
     def remove(self, owner: str, address: str) -> None:
         """Delete a plan with its file and decisions."""
         with self._database.sessions.begin() as session:
-            session.execute(delete(PlanRow).where(PlanRow.id == _find(session, owner, address).id))
+            plan, _ = find(session, owner, address, Access.OWN)
+            session.execute(delete(PlanRow).where(PlanRow.id == plan.id))
 
     def remove_expired(self) -> int:
         """Delete what has expired; give the number of plans."""
@@ -234,20 +261,64 @@ def checked_name(name: str) -> str:
     return name
 
 
-def _find(session: Session, owner: str, address: str, *, for_change: bool = False) -> PlanRow:
-    wanted = select(PlanRow).where(
-        PlanRow.address == address, PlanRow.owner == owner, PlanRow.expires > datetime.now(UTC)
-    )
+def find(
+    session: Session, who: str, address: str, need: Access = Access.READ, *, for_change: bool = False
+) -> tuple[PlanRow, Access]:
+    """Give a plan's row and what somebody may do with it.
+
+    Parameters
+    ----------
+    session : Session
+    who : str
+        Owner, or holder of a grant.
+    address : str
+    need : Access
+        The least that must be allowed.
+    for_change : bool
+        Lock the row until the transaction ends.
+
+    Raises
+    ------
+    NotThereError
+        No such plan for ``who``.
+    NotAllowedError
+        ``who`` may see it, but ``need`` is more.
+    """
+    now = datetime.now(UTC)
+    wanted = select(PlanRow).where(PlanRow.address == address, PlanRow.expires > now)
     plan = session.scalar(wanted.with_for_update() if for_change else wanted)
-    if plan is None:
+    access = None if plan is None else _access(session, plan, who, now)
+    if plan is None or access is None:
         message = (
             "there is no such plan here: it may have expired, been deleted, or belong to another browser"
         )
         raise NotThereError(message)
-    return plan
+    if access < need:
+        message = (
+            "this plan is shared with you to read; nothing of it can be changed"
+            if access is Access.READ and need is Access.EDIT
+            else "only who made this plan can do this with it"
+        )
+        raise NotAllowedError(message)
+    return plan, access
 
 
-def _stored(plan: PlanRow) -> StoredPlan:
+def _access(session: Session, plan: PlanRow, who: str, now: datetime) -> Access | None:
+    if plan.owner == who:
+        return Access.OWN
+    granted = session.scalars(
+        select(GrantRow.may_edit).where(
+            GrantRow.plan_id == plan.id,
+            GrantRow.holder == who,
+            or_(GrantRow.expires.is_(None), GrantRow.expires > now),
+        )
+    ).all()
+    if not granted:
+        return None
+    return Access.EDIT if any(granted) else Access.READ
+
+
+def _stored(plan: PlanRow, access: Access = Access.OWN) -> StoredPlan:
     history = tuple(Decision(d.kind, d.content, d.reason, d.made, d.who) for d in plan.decisions)
     return StoredPlan(
         address=plan.address,
@@ -260,4 +331,5 @@ def _stored(plan: PlanRow) -> StoredPlan:
         expires=plan.expires,
         decided=Decided.of(history),
         history=history,
+        access=access,
     )

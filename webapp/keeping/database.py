@@ -16,7 +16,7 @@ from sqlalchemy.orm import Session, sessionmaker
 
 from cant.errors import FileError, InputError
 
-MIGRATIONS = Path(__file__).parent / "migrations"
+MIGRATIONS = Path(__file__).parents[1] / "migrations"
 MIGRATION_LOCK = 0x63616E74
 """Number of the advisory lock under which one process at a time migrates a PostgreSQL database."""
 
