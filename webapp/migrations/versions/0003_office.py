@@ -47,7 +47,7 @@ def _work() -> None:
         sa.Column("kind", sa.String(16), nullable=False),
         sa.Column("content", sa.Text, nullable=False),
         sa.Column("state", sa.String(16), nullable=False, index=True),
-        sa.Column("share", sa.Float, nullable=False),
+        sa.Column("share", sa.Double, nullable=False),
         _text("doing", 120),
         sa.Column("message", sa.Text, nullable=False, server_default=""),
         sa.Column("attempts", sa.Integer, nullable=False),
