@@ -89,6 +89,41 @@ def test_a_program_goes_the_whole_way(program: Program) -> None:
     assert program.call("GET", path).status_code == 404
 
 
+def test_a_program_decides_and_takes_back(program: Program) -> None:
+    path = f"/plans/{program.bring()['address']}"
+    program.call("PUT", f"{path}/traffic", json=TRAFFIC)
+    program.call("PUT", f"{path}/limits", json={"name": "typical"})
+    before: dict[str, Any] = program.call("GET", f"{path}/curves/2").json
+    held = before["recommended_cant_mm"] - 10
+    body = {"cant_mm": held, "because": "drains under the high rail", "who": "A. Brenn"}
+    assert program.call("PUT", f"{path}/curves/2/cant", json=body).status_code == 200
+    assert program.call("GET", f"{path}/curves/2").json["recommended_cant_mm"] == held
+    told: dict[str, Any] = program.call("GET", f"{path}/history").json
+    assert told["steps"][-1]["reason"] == "drains under the high rail"
+    assert told["steps"][-1]["who"] == "A. Brenn"
+    (change,) = told["changes"]
+    assert program.call("DELETE", f"{path}/changes/{change['key']}").status_code == 200
+    assert program.call("GET", f"{path}/curves/2").json["recommended_cant_mm"] == held + 10
+    assert program.call("DELETE", f"{path}/changes/{change['key']}").status_code == 404
+    assert program.call("PUT", f"{path}/curves/9/cant", json=body).status_code == 404
+    assert program.call("PUT", f"{path}/curves/2/cant", json={**body, "cant_mm": 400}).status_code == 422
+
+
+def test_a_program_takes_an_option(program: Program) -> None:
+    file = Path(__file__).resolve().parents[2] / "sample_data" / "dunmarrow_keldrith.xlsx"
+    path = f"/plans/{program.bring(file.read_bytes())['address']}"
+    curves = program.call("GET", f"{path}/curves?size=250").json["curves"]
+    troubled = next(c for c in curves if c["options"])
+    asked = f"{path}/curves/{troubled['number']}/options"
+    because = {"because": "agreed with the operator"}
+    assert program.call("POST", f"{asked}/99", json=because).status_code == 422
+    assert program.call("POST", f"{asked}/1", json=because).status_code == 200
+    told: dict[str, Any] = program.call("GET", f"{path}/history").json
+    assert told["steps"][-1]["words"].endswith(troubled["options"][0]["text"])
+    after = program.call("GET", f"{path}/curves/{troubled['number']}").json
+    assert after["status"] != troubled["status"] or after["options"] != troubled["options"]
+
+
 def test_tables_may_come_with_the_list(program: Program) -> None:
     traffic = b"Class,Category,Speed\nExpress,passenger,120\nGoods,freight,70\n"
     limits = b"Quantity,Normal,Unit\ncant,150,mm\ncant deficiency,130,mm\ncant excess,110,mm\n"
@@ -181,7 +216,7 @@ def test_limit_sets_are_listed_and_shown(program: Program) -> None:
 def test_description_names_every_address(app: Flask) -> None:
     described = {(method.upper(), path) for path, item in describe()["paths"].items() for method in item}
     served = {
-        (method, rule.rule.replace("<int:number>", "{number}").replace("<", "{").replace(">", "}"))
+        (method, rule.rule.replace("<int:", "<").replace("<", "{").replace(">", "}"))
         for rule in app.url_map.iter_rules()
         if rule.endpoint.startswith("api.") and rule.endpoint != "api.description"
         for method in (rule.methods or set()) - {"HEAD", "OPTIONS"}

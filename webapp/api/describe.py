@@ -19,6 +19,8 @@ BINARY = {"type": "string", "format": "binary"}
 VARIABLES: dict[str, dict[str, Any]] = {
     "address": {"type": "string", "pattern": "^[A-Za-z0-9_-]{32}$"},
     "number": {"type": "integer", "minimum": 1, "maximum": 10_000_000},
+    "option": {"type": "integer", "minimum": 1, "maximum": 100},
+    "change": {"type": "string", "pattern": "^[A-Za-z0-9_-]{12}$"},
     "name": {"type": "string", "minLength": 1, "maxLength": 80, "pattern": "^[a-z0-9-]+$"},
 }
 ERRORS = {

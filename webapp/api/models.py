@@ -189,6 +189,39 @@ class SettingsBody(Taken):
         return Settings(**{**self.model_dump(), "tiers": tuple(self.tiers.split(", "))})
 
 
+class ReasonBody(Taken):
+    """Why something is decided, and by whom."""
+
+    because: Annotated[
+        str, Field(min_length=1, max_length=300, pattern=r"^[^\x00-\x1f\x7f]*\S[^\x00-\x1f\x7f]*$")
+    ]
+    who: Annotated[str, Field(max_length=80, pattern=r"^[^\x00-\x1f\x7f]*$")] = ""
+
+
+class HeldBody(ReasonBody):
+    """A cant held by hand."""
+
+    cant_mm: Annotated[float, Field(ge=0, le=300, allow_inf_nan=False)]
+
+
+class HistoryStep(Given):
+    """One decision of the history."""
+
+    step: int
+    kind: str
+    words: str
+    reason: str
+    who: str
+    made: datetime
+
+
+class HistoryAnswer(Given):
+    """Every decision, oldest first, and the changes that hold."""
+
+    steps: list[HistoryStep]
+    changes: list[dict[str, Any]]
+
+
 class CurvesQuery(Taken):
     """Which curves, in which order."""
 

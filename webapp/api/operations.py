@@ -70,7 +70,12 @@ def operation(method: str, path: str, **promised: Any) -> Callable[[View], View]
         summary = (view.__doc__ or "").strip().splitlines()[0]
         what = Operation(view.__name__, method, path, summary, **promised)
         OPERATIONS.append(what)
-        rule = path.replace("{number}", "{int:number}").replace("{", "<").replace("}", ">")
+        rule = (
+            path.replace("{number}", "{int:number}")
+            .replace("{option}", "{int:option}")
+            .replace("{", "<")
+            .replace("}", ">")
+        )
 
         @wraps(view)
         def call(**variables: Any) -> ResponseReturnValue:
