@@ -48,11 +48,24 @@ class Explanation:
         self._methods = Methods(plan, surroundings, self._words)
         self._bindings: dict[int, Binding] = {}
 
-    def prepare(self, indices: Sequence[int]) -> None:
-        """Get ready to speak of some curves; asked for one by one they would cost far more."""
+    def prepare(self, indices: Sequence[int], rest_follows: bool = False) -> None:
+        """Get ready to speak of some curves; asked for one by one they would cost far more.
+
+        Parameters
+        ----------
+        indices : sequence of int
+            The curves.
+        rest_follows : bool
+            They are a block of the whole list, whose other blocks are asked for in turn.
+        """
         planned = [i for i in indices if self._plan.outcome.planned[i]]
         self._options.prepare(planned)
-        self._methods.prepare(planned)
+        self._methods.prepare(planned, rest_follows)
+
+    def forget(self, indices: Sequence[int]) -> None:
+        """Let go of what was worked out for some curves; whoever asks for them again waits again."""
+        self._options.forget(indices)
+        self._methods.forget(indices)
 
     @cached_property
     def _of_planner(self) -> dict[int | None, list[Finding]]:

@@ -15,6 +15,7 @@ import numpy as np
 import numpy.typing as npt
 
 from cant.explaining.decisions import Change, CurveKey, make_changes, open_exceptional
+from cant.explaining.parts import Part, parts_of, placed_on
 from cant.model.plan import STATUSES
 from cant.planning.neighbours import chains_of
 from cant.planning.outcome import Outcome, plan_arrays
@@ -93,6 +94,27 @@ class Surroundings:
             if curves.line[a] == curves.line[b] and curves.track[a] == curves.track[b]:
                 after[a], before[b] = b, a
         return before, after
+
+    @cached_property
+    def parts(self) -> list[Part]:
+        """The line in parts that can be planned one after the other, each as in the whole line."""
+        return parts_of(self._outcome)
+
+    @cached_property
+    def part_of(self) -> IntArray:
+        """Number of the part of each curve, shape (n,)."""
+        found = np.zeros(len(self._outcome.curves), dtype=np.int64)
+        for number, part in enumerate(self.parts):
+            found[part.own] = number
+        return found
+
+    @cached_property
+    def place_in_part(self) -> IntArray:
+        """Place of each curve among those of its part, shape (n,)."""
+        found = np.zeros(len(self._outcome.curves), dtype=np.int64)
+        for part in self.parts:
+            found[part.own] = np.arange(len(part.own))
+        return found
 
     def chain(self, curve: int) -> list[int]:
         """Give the curves that are planned together with one, itself among them."""
@@ -173,21 +195,9 @@ def try_out(
         outcome.limits,
         settings,
         turnouts=outcome.turnouts,
-        placed=_placed(outcome, every),
+        placed=placed_on(outcome, every),
     )
     return [Answer(planned, at) for at in answers]
-
-
-def _placed(outcome: Outcome, every: IntArray) -> dict[int, list[int]]:
-    """Give the turnouts of the copies: those of the curves that they are copies of."""
-    branches = outcome.line.branches
-    if branches is None:
-        return {}
-    return {
-        position: [int(t) for t in branches.number[curve] if t >= 0]
-        for position, curve in enumerate(every)
-        if branches.there[curve].any()
-    }
 
 
 def no_worse(outcome: Outcome, answer: Answer, curve: int) -> bool:

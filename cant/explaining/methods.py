@@ -13,14 +13,16 @@ import numpy as np
 import numpy.typing as npt
 
 from cant.explaining.local import Surroundings, Trial, try_out
+from cant.explaining.parts import Part, plan_part
 from cant.explaining.reasons import METHOD_WORDS
 from cant.explaining.wording import Words, listed
 from cant.model.settings import METHODS
 from cant.planning import Plan
-from cant.planning.outcome import Outcome, plan_arrays
+from cant.planning.outcome import Outcome
 from cant.quantities.kinematics import equilibrium_cant, unbalanced_acceleration
 
 FloatArray = npt.NDArray[np.float64]
+IntArray = npt.NDArray[np.int64]
 
 SHORT_LINE = 400
 """A line of so many curves is planned as a whole whatever is asked."""
@@ -41,20 +43,26 @@ class Methods:
 
     def __init__(self, plan: Plan, surroundings: Surroundings, words: Words) -> None:
         self._plan, self._surroundings, self._words = plan, surroundings, words
-        self._whole: dict[str, _Figures] | None = None
+        self._whole: dict[int, dict[str, _Figures]] = {}
+        self._left: dict[int, int] = {}
         self._found: dict[int, list[dict[str, Any]]] = {}
 
-    def prepare(self, indices: Sequence[int]) -> None:
+    def prepare(self, indices: Sequence[int], rest_follows: bool = False) -> None:
         """Get ready to answer for some curves: many of them cost little more than one.
 
-        A few of a long line are planned apart; for many the whole line is planned once with each method.
+        A few of a long line are planned apart; for many, and where the whole list is asked for block by
+        block, the parts of the line in which they lie are planned as a whole with each method.
         """
-        wanted = [i for i in indices if i not in self._found and self._plan.outcome.planned[i]]
-        if self._whole is not None or not wanted:
-            return
         outcome = self._plan.outcome
-        if len(outcome.curves) <= SHORT_LINE + ROUND_A_CURVE * len(wanted):
-            self._whole = {method: _Figures(self._with(outcome, method)) for method in METHODS}
+        wanted = [i for i in indices if outcome.planned[i] and self._figures_of(i) is None]
+        wanted = [i for i in wanted if i not in self._found]
+        if not wanted:
+            return
+        if rest_follows or len(outcome.curves) <= SHORT_LINE + ROUND_A_CURVE * len(wanted):
+            for number in sorted({int(self._surroundings.part_of[i]) for i in wanted}):
+                part = self._surroundings.parts[number]
+                self._whole[number] = {method: self._with(part, method) for method in METHODS}
+                self._left[number] = int(np.count_nonzero(outcome.planned[part.own]))
             return
         entries: dict[int, list[dict[str, Any]]] = {index: [] for index in wanted}
         for method in METHODS:
@@ -69,6 +77,19 @@ class Methods:
                 entries[index].append(self._entry(method, figures, at[index]))
         self._found |= entries
 
+    def forget(self, indices: Sequence[int]) -> None:
+        """Let go of what was worked out for some curves, as far as no others of their part need it."""
+        for index in indices:
+            self._found.pop(index, None)
+            number = int(self._surroundings.part_of[index])
+            if number in self._left and self._plan.outcome.planned[index]:
+                self._left[number] -= 1
+                if not self._left[number]:
+                    del self._whole[number], self._left[number]
+
+    def _figures_of(self, index: int) -> dict[str, _Figures] | None:
+        return self._whole.get(int(self._surroundings.part_of[index])) if self._whole else None
+
     def of(self, index: int) -> list[dict[str, Any]]:
         """Give an entry for each method, in the order of METHODS; empty for a curve that is not planned.
 
@@ -80,8 +101,10 @@ class Methods:
         if not self._plan.outcome.planned[index]:
             return []
         self.prepare([index])
-        if self._whole is not None:
-            return [self._entry(method, figures, index) for method, figures in self._whole.items()]
+        whole = self._figures_of(index)
+        if whole is not None:
+            at = int(self._surroundings.place_in_part[index])
+            return [self._entry(method, figures, at) for method, figures in whole.items()]
         return self._found[index]
 
     def verdict(self, entries: Sequence[dict[str, Any]], step_mm: float) -> str:
@@ -112,13 +135,12 @@ class Methods:
             f"{words.cant(high)} ({ends[1]}): a real choice between them."
         )
 
-    def _with(self, outcome: Outcome, method: str) -> Outcome:
+    def _with(self, part: Part, method: str) -> _Figures:
+        outcome = self._plan.outcome
         if method == outcome.settings.method:
-            return outcome
-        settings = outcome.settings.model_copy(update={"method": method})
-        return plan_arrays(
-            outcome.curves, outcome.traffic, outcome.limits, settings, turnouts=outcome.turnouts
-        )
+            return _Figures(outcome, part.own)
+        answer = plan_part(outcome, part, method)
+        return _Figures(answer, np.arange(len(part.own)))
 
     def _entry(self, method: str, figures: _Figures, i: int) -> dict[str, Any]:
         return {
@@ -130,15 +152,23 @@ class Methods:
 
 
 class _Figures:
-    """What one plan does to each class, as arrays."""
+    """What one plan does to each class, as arrays.
 
-    def __init__(self, outcome: Outcome) -> None:
-        line = outcome.line
-        run = np.where(line.runs, outcome.proposed.run_kmh, np.nan)
-        cant = outcome.cant_mm[:, None]
+    Parameters
+    ----------
+    outcome : Outcome
+    at : ndarray of int, optional
+        Curves of it that are kept; all when not told.
+    """
+
+    def __init__(self, outcome: Outcome, at: IntArray | None = None) -> None:
+        at = np.arange(len(outcome.curves)) if at is None else at
+        line = outcome.line.take(at)
+        run = np.where(line.runs, outcome.proposed.run_kmh[at], np.nan)
+        self._cant = outcome.cant_mm[at]
+        cant = self._cant[:, None]
         balance = equilibrium_cant(run, line.radius_m, line.constant)
         self._names = outcome.traffic.class_names
-        self._cant = outcome.cant_mm
         self._target = outcome.target(line, np.nan_to_num(run))[:, 0]
         self._unbalance: FloatArray = np.round(balance - cant, 2)
         self._acceleration: FloatArray = np.round(unbalanced_acceleration(balance, cant, line.spacing_mm), 4)
@@ -146,16 +176,17 @@ class _Figures:
         with np.errstate(invalid="ignore"):
             over = line.runs & (run > 0) & (balance - cant < -_SAME_MM)
         self._tonnes = np.where(over, tonnes, 0.0).sum(axis=-1)
-        self._lost = outcome.proposed.lost_s
-        self._passed = np.array(np.broadcast_to(outcome.proposed.passed.count, self._cant.shape))
+        self._lost = outcome.proposed.lost_s[at]
+        passed = np.array(np.broadcast_to(outcome.proposed.passed.count, outcome.cant_mm.shape))
         between = np.broadcast_to(outcome.proposed.passed_between.count, outcome.pairs.first.shape)
         for own in (outcome.pairs.first, outcome.pairs.second):
-            np.add.at(self._passed, own, between)
-        self._runs = [np.flatnonzero(row).tolist() for row in line.runs]
+            np.add.at(passed, own, between)
+        self._passed = passed[at]
+        self._runs = line.runs
 
     def of(self, i: int) -> dict[str, Any]:
         tonnes = float(self._tonnes[i])
-        runs = self._runs[i]
+        runs = np.flatnonzero(self._runs[i]).tolist()
         unbalance, acceleration = self._unbalance[i].tolist(), self._acceleration[i].tolist()
         return {
             "target_mm": float(self._target[i]),

@@ -65,6 +65,11 @@ class Options:
             part = needed[begin : begin + AT_ONCE]
             self._found |= self._look(part)
 
+    def forget(self, indices: Sequence[int]) -> None:
+        """Let go of the options of some curves."""
+        for index in indices:
+            self._found.pop(index, None)
+
     def _look(self, curves: list[int]) -> dict[int, list[dict[str, Any]]]:
         outcome = self._plan.outcome
         proposals = Proposals(outcome, np.array(curves, dtype=np.int64), *self._steps)

@@ -16,6 +16,12 @@ from cant.model.reading import Reading
 _BATCH = 256
 """Curves whose records are made together: whole arrays for the figures, little memory."""
 
+_BLOCK = 4096
+"""Curves whose options and methods are worked out together."""
+
+_KEPT = 16_384
+"""Lists up to this many curves keep what was worked out for them, so that the next output is made faster."""
+
 if TYPE_CHECKING:
     from cant.explaining import Explanation
     from cant.planning import Plan
@@ -55,12 +61,19 @@ class PlannedRecords:
         return self._finished([index], [self.plan.record(index)])[0]
 
     def records(self) -> Iterator[dict[str, Any]]:
-        """Give the records of all curves that were not rejected, in input order, one at a time."""
-        chosen = [int(index) for index in self.plan.assessed]
-        self.explanation.prepare(chosen)
-        for start in range(0, len(chosen), _BATCH):
-            batch = chosen[start : start + _BATCH]
-            yield from self._finished(batch, list(self.plan.records(batch)))
+        """Give the records of all curves that were not rejected, in input order, one at a time.
+
+        What goes into the words of a long list is let go of behind them.
+        """
+        chosen = self.plan.assessed.tolist()
+        for first in range(0, len(chosen), _BLOCK):
+            block = chosen[first : first + _BLOCK]
+            self.explanation.prepare(block, rest_follows=True)
+            for start in range(0, len(block), _BATCH):
+                batch = block[start : start + _BATCH]
+                yield from self._finished(batch, list(self.plan.records(batch)))
+            if len(chosen) > _KEPT:
+                self.explanation.forget(block)
 
     def records_of(self, indices: Sequence[int]) -> list[dict[str, Any]]:
         """Give the records of some curves, made together: a page of them costs little more than one.
