@@ -225,6 +225,32 @@ def test_what_if_a_class_ran_slower(browser: Browser) -> None:
     assert FormFields(browser.get(f"{plan}/trains").text, "").sent["0-speed_kmh"] == "60"
 
 
+def test_what_if_the_limits_were_another_set_or_file(browser: Browser) -> None:
+    plan = browser.sample()
+    answer = browser.post(f"{plan}/limits/choose", {"source": "set:eu-1299-2014", "compare": "yes"})
+    after = kept_after_a_look(browser, plan, answer)
+    assert after["limits"]["name"] == "eu-1299-2014"
+    table = "Quantity,Normal,Unit\ncant,83,mm\ncant deficiency,110,mm\n"
+    answer = browser.post(
+        f"{plan}/limits/file", {"file": (io.BytesIO(table.encode()), "own.csv"), "compare": "yes"}
+    )
+    after = kept_after_a_look(browser, plan, answer)
+    assert max(c["recommended_cant_mm"] or 0 for c in after["curves"]) <= 83
+    back = browser.post(f"{plan}/limits/choose", {"source": "file", "compare": "yes"})
+    assert kept_after_a_look(browser, plan, back)["limits"]["name"] != "own"
+
+
+def test_what_if_the_trains_were_those_of_a_file(browser: Browser) -> None:
+    plan = browser.sample()
+    heading, *rows = browser.get(f"{plan}/trains/file").text.splitlines()
+    speed = heading.split(",").index("Speed (km/h)")
+    slower = [",".join("55" if i == speed else cell for i, cell in enumerate(row.split(","))) for row in rows]
+    table = "\n".join([heading, *slower]).encode()
+    form = {"file": (io.BytesIO(table), "own.csv"), "compare": "yes"}
+    after = kept_after_a_look(browser, plan, browser.post(f"{plan}/trains/file", form))
+    assert {row["speed_kmh"] for row in after["traffic"]} == {55}
+
+
 def test_live_answer_is_the_plans_record(browser: Browser) -> None:
     plan = browser.sample()
     number, record = curve_number(browser, plan, "change")

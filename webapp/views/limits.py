@@ -75,10 +75,16 @@ def choose(address: str) -> ResponseReturnValue:
     """Take the limits of the file, of a set, or kept under a name."""
     plan = stored(address)
     source, _, name = request.form.get("source", "").partition(":")
-    if source == "file":
+    found = None if source == "file" else _found(source, name)
+    if "compare" in request.form and plan.decided.confirmed:
+        check_reading(plan, file_of(plan), limits=found)
+        words = "The limits of the file" if found is None else f"The limits {found.title or found.name}"
+        text = "null" if found is None else limits_text(found)
+        return page_of_proposal(plan, Proposal(words, {"limits": text}))
+    if found is None:
         running().store.decide(owner(), address, {"limits": "null"})
     else:
-        _keep(plan, _found(source, name))
+        _keep(plan, found)
     flash("The limits have been taken; look through them below.")
     return redirect(url_for("limits.show", address=address), 303)
 
@@ -141,6 +147,9 @@ def from_file(address: str) -> ResponseReturnValue:
         if read.limits is None:
             message = f"{given[1]} holds no limits table: headings Quantity, Normal and Unit are needed"
             raise InputError(message)
+        if "compare" in request.form and plan.decided.confirmed:
+            proposal = Proposal(f"The limits of {given[1]}", {"limits": limits_text(read.limits)})
+            return page_of_proposal(plan, proposal)
         _keep(plan, read.limits)
     except CantError as error:
         return _page(plan, str(error), code=422)

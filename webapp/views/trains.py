@@ -85,6 +85,9 @@ def from_file(address: str) -> ResponseReturnValue:
         if read.traffic is None:
             message = f"{given[1]} holds no traffic table: a heading 'Class' and one row a class are needed"
             raise InputError(message)
+        if "compare" in request.form and plan.decided.confirmed:
+            proposal = Proposal(f"The trains of {given[1]}", {"traffic": traffic_text(read.traffic)})
+            return page_of_proposal(plan, proposal)
         _keep(plan, read.traffic)
     except CantError as error:
         return _page(plan, _rows(plan), {}, str(error), 422)
