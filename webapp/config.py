@@ -7,10 +7,11 @@ that no other module reads the environment.
 from __future__ import annotations
 
 import contextlib
+import ipaddress
 import os
 import secrets
 from collections.abc import Mapping
-from dataclasses import dataclass
+from dataclasses import dataclass, field
 from pathlib import Path
 
 from platformdirs import user_data_path
@@ -18,6 +19,8 @@ from sqlalchemy.engine import make_url
 from sqlalchemy.exc import ArgumentError
 
 from cant.errors import InputError
+from webapp.guarding.bounds import Bounds
+from webapp.guarding.bounds import whole_number as _whole
 
 KEY_FILE = "signing-key"
 DATABASE_FILE = "plans.sqlite3"
@@ -45,6 +48,13 @@ class Config:
         The service is reached by https: its cookie is then marked Secure.
     trusted_hosts : tuple of str
         Host names the service answers to; empty is any.
+    proxies : tuple of str
+        Addresses or networks of the reverse proxies before the service: what they say of where a request
+        comes from is believed, and of nobody else.
+    access_log : str
+        File of the access log; "" is standard error.
+    bounds : Bounds
+        How much may be asked of it and how much it keeps.
     """
 
     data_directory: Path
@@ -55,6 +65,9 @@ class Config:
     plans_in_memory: int = 8
     https: bool = False
     trusted_hosts: tuple[str, ...] = ()
+    proxies: tuple[str, ...] = ()
+    access_log: str = ""
+    bounds: Bounds = field(default_factory=Bounds)
 
     @property
     def database(self) -> str:
@@ -81,7 +94,7 @@ class Config:
             return self.signing_key
         path = self.data_directory / KEY_FILE
         if not path.exists():
-            self.data_directory.mkdir(parents=True, exist_ok=True)
+            self.data_directory.mkdir(mode=0o700, parents=True, exist_ok=True)
             draft = path.with_name(f"{KEY_FILE}-{secrets.token_hex(8)}")
             descriptor = os.open(draft, os.O_WRONLY | os.O_CREAT | os.O_EXCL, 0o600)
             with os.fdopen(descriptor, "w", encoding="ascii") as file:
@@ -98,16 +111,15 @@ class Config:
 
         ``CANT_DATA`` (a directory), ``CANT_DATABASE`` (a URL), ``CANT_SIGNING_KEY``, ``CANT_KEEP_DAYS``,
         ``CANT_UPLOAD_MB``, ``CANT_PLANS_IN_MEMORY``, ``CANT_HTTPS`` (``yes``), ``CANT_HOSTS`` (separated by
-        commas).
+        commas), ``CANT_PROXIES`` (likewise), ``CANT_ACCESS_LOG`` (a file), and the bounds.
 
         Raises
         ------
         InputError
-            Where a number is not a whole number above 0.
+            Where a number is not a whole number above 0, or a proxy is no address.
         """
         given = os.environ if environment is None else environment
         data = given.get("CANT_DATA")
-        hosts = given.get("CANT_HOSTS", "")
         return cls(
             data_directory=Path(data) if data else user_data_path("cant"),
             database_url=given.get("CANT_DATABASE", ""),
@@ -116,15 +128,23 @@ class Config:
             upload_mb=_whole(given, "CANT_UPLOAD_MB", 64),
             plans_in_memory=_whole(given, "CANT_PLANS_IN_MEMORY", 8),
             https=given.get("CANT_HTTPS", "").strip().lower() in ("1", "yes", "true", "on"),
-            trusted_hosts=tuple(host.strip() for host in hosts.split(",") if host.strip()),
+            trusted_hosts=_listed(given, "CANT_HOSTS"),
+            proxies=_networks(given, "CANT_PROXIES"),
+            access_log=given.get("CANT_ACCESS_LOG", ""),
+            bounds=Bounds.from_environment(given),
         )
 
 
-def _whole(given: Mapping[str, str], name: str, default: int) -> int:
-    text = given.get(name, "").strip()
-    if not text:
-        return default
-    if not text.isdigit() or int(text) == 0:
-        message = f"{name} is '{text}'; a whole number above 0 is needed"
-        raise InputError(message)
-    return int(text)
+def _listed(given: Mapping[str, str], name: str) -> tuple[str, ...]:
+    return tuple(part.strip() for part in given.get(name, "").split(",") if part.strip())
+
+
+def _networks(given: Mapping[str, str], name: str) -> tuple[str, ...]:
+    found = _listed(given, name)
+    for one in found:
+        try:
+            ipaddress.ip_network(one)
+        except ValueError as error:
+            message = f"{name}: '{one}' is no address such as 10.0.0.5 and no network such as 10.0.0.0/24"
+            raise InputError(message) from error
+    return found
