@@ -17,30 +17,34 @@ from cant.planning.rules import Asked
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 
+_NEEDED = (
+    "cant",
+    "cant deficiency",
+    "cant excess",
+    "felt acceleration",
+    "cant gradient",
+    "rate of change of cant",
+    "rate of change of cant deficiency",
+    "abrupt change of cant deficiency",
+)
 
-def needed(line: Line, pairs: Pairs) -> dict[str, BoolArray]:
-    """Tell on which curve and for which class each quantity is needed, shapes (n, k)."""
-    ramp, long, none = (np.zeros(line.runs.shape, dtype=np.bool_) for _ in range(3))
-    for end in (BEFORE, AFTER):
-        ramp |= ~np.isnan(line.ramp_m[end])
-        long |= line.transition_m[end] > 0
-        none |= line.transition_m[end] == 0
-    both = line.runs[pairs.first] & line.runs[pairs.second]
-    for owner in (pairs.first, pairs.second):
-        ramp[owner] |= both & ~pairs.equal_cants[:, None]
-        long[owner] |= both & (pairs.length_m > 0)[:, None]
-        none[owner] |= both & (pairs.length_m == 0)[:, None]
-    runs = line.runs
-    return {
-        "cant": runs,
-        "cant deficiency": runs,
-        "cant excess": line.regular,
-        "felt acceleration": runs,
-        "cant gradient": runs & ramp,
-        "rate of change of cant": runs & ramp,
-        "rate of change of cant deficiency": runs & long,
-        "abrupt change of cant deficiency": runs & none,
-    }
+
+def needed(line: Line, pairs: Pairs, quantity: str) -> BoolArray:
+    """Tell on which curve and for which class a quantity is needed, shape (n, k)."""
+    ends = (BEFORE, AFTER)
+    if quantity in ("cant gradient", "rate of change of cant"):
+        alone, between = [~np.isnan(line.ramp_m[end]) for end in ends], ~pairs.equal_cants
+    elif quantity == "rate of change of cant deficiency":
+        alone, between = [line.transition_m[end] > 0 for end in ends], pairs.length_m > 0
+    elif quantity == "abrupt change of cant deficiency":
+        alone, between = [line.transition_m[end] == 0 for end in ends], pairs.length_m == 0
+    else:
+        return line.regular if quantity == "cant excess" else line.runs
+    where: BoolArray = line.runs & (alone[BEFORE] | alone[AFTER])
+    both = line.runs[pairs.first] & line.runs[pairs.second] & between[:, None]
+    where[pairs.first] |= both
+    where[pairs.second] |= both
+    return where
 
 
 def find_gaps(line: Line, pairs: Pairs, curves: CurveList, traffic: Traffic) -> list[Finding]:
@@ -48,10 +52,10 @@ def find_gaps(line: Line, pairs: Pairs, curves: CurveList, traffic: Traffic) -> 
     asked = Asked(line, line.planned_kmh, False)
     names = traffic.class_names
     findings = []
-    for quantity, where in needed(line, pairs).items():
+    for quantity in _NEEDED:
         if not line.table.may_have_gap(quantity):
             continue
-        gap = asked.limit(quantity).gap & where
+        gap = asked.limit(quantity).gap & needed(line, pairs, quantity)
         for i in np.flatnonzero(gap.any(axis=-1)):
             j = int(np.argmax(gap[i]))
             text = (
@@ -79,7 +83,7 @@ def _gaps_without_trains(line: Line, asked: Asked, curves: CurveList) -> list[Fi
     ]
 
 
-def find_unlimited(line: Line, limits: LimitSet, traffic: Traffic) -> list[Finding]:
+def find_unlimited(limits: LimitSet, traffic: Traffic) -> list[Finding]:
     """Say once for each quantity, or category of train, that nothing limits it."""
     findings = []
     categories = sorted({row.category for row in traffic.rows})

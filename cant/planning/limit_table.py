@@ -9,7 +9,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from typing import Any
+from typing import Any, Literal
 
 import numpy as np
 import numpy.typing as npt
@@ -26,8 +26,8 @@ NO_CATEGORY = -1
 """Category code that only rows without a category match."""
 
 _ALWAYS: BoolArray = np.ones((), dtype=np.bool_)
-_EDGE = 1e-9
-"""A speed or radius this close to the edge of a band [km/h, m] stands on the edge."""
+EDGE_KMH = 1e-9
+"""A speed this close to the edge of a band [km/h] stands on the edge; a radius [m] too."""
 
 
 @dataclass(frozen=True, slots=True)
@@ -77,6 +77,14 @@ class _Condition:
         sizes = (self.speed_over, self.speed_up_to, self.radius_over, self.radius_up_to)
         return any(condition is not None for condition in (self.categories, self.situations, *sizes))
 
+    @property
+    def by_speed(self) -> bool:
+        return self.speed_over is not None or self.speed_up_to is not None
+
+    @property
+    def by_radius(self) -> bool:
+        return bool(self.slope) or self.radius_over is not None or self.radius_up_to is not None
+
     def holds_by_kind(self, category: IntArray, situation: IntArray) -> BoolArray:
         holds: BoolArray = _ALWAYS
         if self.categories is not None:
@@ -88,81 +96,14 @@ class _Condition:
     def holds_by_size(self, speed: FloatArray, radius: FloatArray) -> BoolArray:
         holds: BoolArray = _ALWAYS
         if self.speed_over is not None:
-            holds = speed > self.speed_over + _EDGE
+            holds = speed > self.speed_over + EDGE_KMH
         if self.speed_up_to is not None:
-            holds = holds & (speed <= self.speed_up_to + _EDGE)
+            holds = holds & (speed <= self.speed_up_to + EDGE_KMH)
         if self.radius_over is not None:
-            holds = holds & (radius > self.radius_over + _EDGE)
+            holds = holds & (radius > self.radius_over + EDGE_KMH)
         if self.radius_up_to is not None:
-            holds = holds & (radius <= self.radius_up_to + _EDGE)
+            holds = holds & (radius <= self.radius_up_to + EDGE_KMH)
         return holds
-
-
-@dataclass(frozen=True)
-class BandedLimit:
-    """A quantity's limit in every band of speed, asked once and looked up often.
-
-    Attributes
-    ----------
-    upper_kmh : ndarray, shape (bands,)
-        Upper edges, included; the last is inf.
-    limit : LimitAt
-        Shape (bands, n, k).
-    """
-
-    upper_kmh: FloatArray
-    limit: LimitAt
-
-    @classmethod
-    def of(cls, upper_kmh: FloatArray, limit: LimitAt, shape: tuple[int, int, int]) -> BandedLimit:
-        """Make it from what was asked in each band, broadcast to (bands, n, k)."""
-        return cls(upper_kmh, limit.each(lambda part: np.ascontiguousarray(np.broadcast_to(part, shape))))
-
-    def at(self, speed_kmh: FloatArray) -> LimitAt:
-        """Look up the limit at speeds (..., n, k) or (1, 1); any row may be given for nan."""
-        if len(self.upper_kmh) == 1:
-            return self.limit.each(lambda part: part[0])
-        band = np.searchsorted(self.upper_kmh[:-1] + _EDGE, speed_kmh, side="left")
-        if band.size == 1:
-            only = int(band.flat[0])
-            return self.limit.each(lambda part: part[only])
-        n, k = self.limit.value.shape[1:]
-        at = (band, np.arange(n)[:, None], np.arange(k))
-        return self.limit.each(lambda part: part[at])
-
-
-class BandedLimits:
-    """Banded limits of some curves: those of a part are cut out when they are asked for, not before."""
-
-    def __init__(self, find: Callable[[tuple[str, bool]], BandedLimit]) -> None:
-        self._find = find
-        self._found: dict[tuple[str, bool], BandedLimit] = {}
-
-    def __getitem__(self, key: tuple[str, bool]) -> BandedLimit:
-        if key not in self._found:
-            self._found[key] = self._find(key)
-        return self._found[key]
-
-    def _part(self, cut: Callable[[Any], Any]) -> BandedLimits:
-        def find(key: tuple[str, bool]) -> BandedLimit:
-            every = self[key]
-            return BandedLimit(every.upper_kmh, every.limit.each(cut))
-
-        return BandedLimits(find)
-
-    def take(self, curves: npt.ArrayLike) -> BandedLimits:
-        """Give those of some curves."""
-        at = np.asarray(curves)
-        return self._part(lambda part: part[:, at])
-
-    def take_classes(self, columns: IntArray) -> BandedLimits:
-        """Give those of some classes."""
-        return self._part(lambda part: part[:, :, columns])
-
-    def unfold(self, columns: IntArray) -> BandedLimits:
-        """Give one class of each curve, (bands, n, 1)."""
-        at = np.arange(len(columns))
-        return self._part(lambda part: part[:, at, columns][:, :, None])
 
 
 class LimitTable:
@@ -290,21 +231,56 @@ class LimitTable:
         LimitAt
             In the broadcast shape of the arguments.
         """
+        found = self.compact(
+            quantity,
+            exceptional=exceptional,
+            category=category,
+            situation=situation,
+            speed=speed,
+            radius=radius,
+        )
         shape = np.broadcast_shapes(category.shape, situation.shape, speed.shape, radius.shape)
+        return found.each(lambda part: np.broadcast_to(part, shape))
+
+    def compact(
+        self,
+        quantity: str,
+        *,
+        exceptional: bool,
+        category: IntArray,
+        situation: IntArray,
+        speed: FloatArray,
+        radius: FloatArray,
+    ) -> LimitAt:
+        """Ask a quantity's limit as :meth:`at` does, in a shape that only broadcasts to the same.
+
+        An axis on which no condition of the quantity's rows depends has length 1: most limits of most sets
+        are one number, or one for each curve, and need not be spread over every class.
+        """
+        rows = self._rows[quantity]
+        allowed = self._allowed if exceptional else None
+        shape = np.broadcast_shapes(
+            (1,) * max(category.ndim, situation.ndim, speed.ndim, radius.ndim),
+            category.shape if any(row.categories is not None for row in rows) else (),
+            situation.shape if allowed is not None or any(row.situations is not None for row in rows) else (),
+            speed.shape if any(row.by_speed for row in rows) else (),
+            radius.shape if any(row.by_radius for row in rows) else (),
+        )
+        order: Literal["C", "F"] = "F" if len(shape) == 2 else "C"
         largest = QUANTITIES[quantity].larger_is_stricter
-        value = np.full(shape, 0.0 if largest else np.inf)
-        tolerance = np.zeros(shape)
-        governing = np.full(shape, -1, dtype=np.int16)
-        by_kind = np.zeros(shape, dtype=np.bool_)
-        by_size = np.zeros(shape, dtype=np.bool_)
-        for row in self._rows[quantity]:
+        value = np.full(shape, 0.0 if largest else np.inf, order=order)
+        tolerance = np.zeros(shape, order=order)
+        governing = np.full(shape, -1, dtype=np.int16, order=order)
+        by_kind = np.zeros(shape, dtype=np.bool_, order=order)
+        by_size = np.zeros(shape, dtype=np.bool_, order=order)
+        for row in rows:
             kind = row.holds_by_kind(category, situation)
             holds = kind & row.holds_by_size(speed, radius)
             by_kind |= kind
             by_size |= holds
             stated = np.asarray(row.exceptional if exceptional else row.normal)
-            if exceptional and self._allowed is not None:
-                stated = np.where(self._allowed[situation], row.exceptional, row.normal)
+            if allowed is not None:
+                stated = np.where(allowed[situation], row.exceptional, row.normal)
             if np.isinf(stated).all():
                 continue
             here = stated + row.slope * radius if row.slope else stated

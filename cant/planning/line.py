@@ -6,20 +6,15 @@ so that they broadcast with trial axes put in front. The axis order is always tr
 
 from __future__ import annotations
 
-from collections.abc import Mapping, Sequence
 from dataclasses import dataclass, fields, replace
 from typing import Any
 
 import numpy as np
 import numpy.typing as npt
 
-from cant.model.curves import DOES_NOT_RUN, SHAPES, CurveList
-from cant.model.limits import LimitSet
-from cant.model.settings import Settings
-from cant.model.traffic import Traffic, TrainClass
-from cant.model.turnouts import Turnout
-from cant.planning.branches import TURNOUT, Branches, make_branches
-from cant.planning.limit_table import NO_CATEGORY, BandedLimit, BandedLimits, LimitAt, LimitTable
+from cant.planning.banded import BandedLimit, BandedLimits
+from cant.planning.branches import Branches
+from cant.planning.limit_table import LimitAt, LimitTable
 from cant.planning.neighbours import Neighbourhood
 
 FloatArray = npt.NDArray[np.float64]
@@ -115,7 +110,7 @@ class Line:
         for item in fields(self):
             value = getattr(self, item.name)
             if isinstance(value, np.ndarray):
-                chosen[item.name] = value[at]
+                chosen[item.name] = take_curves(value, at)
             elif isinstance(value, tuple):
                 chosen[item.name] = tuple(array[at] for array in value)
             elif isinstance(value, (Branches, BandedLimits)):
@@ -125,10 +120,10 @@ class Line:
         return Line(**chosen)
 
     def limit(self, quantity: str, speed_kmh: FloatArray, exceptional: bool) -> LimitAt:
-        """Ask a quantity's limit for each class at speeds (..., n, k) [km/h]."""
+        """Ask a quantity's limit for each class at speeds (..., n, k) [km/h], in a shape that broadcasts."""
         if self.banded is not None:
             return self.banded[quantity, exceptional].at(speed_kmh)
-        return self.table.at(
+        return self.table.compact(
             quantity,
             exceptional=exceptional,
             category=self.category,
@@ -139,14 +134,15 @@ class Line:
 
     def with_bands(self) -> Line:
         """Give the same curves with their limits in every band: worth it where a few are asked often."""
+        if self.banded is not None:
+            return self
 
         def find(key: tuple[str, bool]) -> BandedLimit:
             quantity, exceptional = key
             upper = self.table.bands(quantity)
             # Any speed of a band will do; above the last edge one more km/h.
             asked = np.where(np.isfinite(upper), upper, np.append(upper, 0.0)[len(upper) - 2] + 1.0)
-            limit = self.limit(quantity, asked[:, None, None], exceptional)
-            return BandedLimit.of(upper, limit, (len(upper), len(self), self.classes))
+            return BandedLimit(upper, self.limit(quantity, asked[:, None, None], exceptional))
 
         return replace(self, banded=BandedLimits(find))
 
@@ -172,8 +168,8 @@ class Line:
     def set_ends(self, neighbourhood: Neighbourhood) -> None:
         """Take over how the curves meet."""
         transition, ramp = neighbourhood.transition_m, neighbourhood.ramp_m
-        self.transition_m = (_column(transition[0]), _column(transition[1]))
-        self.ramp_m = (_column(ramp[0]), _column(ramp[1]))
+        self.transition_m = (column(transition[0]), column(transition[1]))
+        self.ramp_m = (column(ramp[0]), column(ramp[1]))
 
     @property
     def without_trains(self) -> BoolArray:
@@ -186,156 +182,11 @@ class Line:
         return self.runs & (self.planned_kmh > 0)
 
 
-def _column(values: npt.ArrayLike) -> FloatArray:
+def take_curves(array: npt.NDArray[Any], at: IntArray | BoolArray) -> npt.NDArray[Any]:
+    """Take rows of an array (n, k), each class contiguous in memory: what runs over curves is then fast."""
+    return np.asarray(array.T.take(at, axis=1).T)
+
+
+def column(values: npt.ArrayLike) -> FloatArray:
+    """Give one number a curve as an array (n, 1)."""
     return np.asarray(values, dtype=np.float64)[:, None]
-
-
-def make_line(
-    curves: CurveList,
-    traffic: Traffic,
-    limits: LimitSet,
-    settings: Settings,
-    neighbourhood: Neighbourhood,
-    turnouts: Sequence[Turnout] = (),
-    placed: Mapping[int, list[int]] | None = None,
-) -> Line:
-    """Put the tables into arrays.
-
-    Parameters
-    ----------
-    curves : CurveList
-        n rows; the numbers of a rejected row may be nan.
-    traffic : Traffic
-        k classes.
-    limits : LimitSet
-    settings : Settings
-    neighbourhood : Neighbourhood
-        How the same curves meet.
-    turnouts : sequence of Turnout
-    placed : mapping, optional
-        The turnouts of each curve, as :func:`cant.planning.branches.place_turnouts` gives them.
-
-    Returns
-    -------
-    Line
-    """
-    n, names = len(curves), traffic.class_names
-    k = len(names)
-    allowed = curves.exceptional_allowed
-    tier = np.ones(n, dtype=np.bool_) if allowed is None else allowed
-    known: dict[tuple[frozenset[str], bool], int] = {}
-    situation = np.array(
-        [
-            known.setdefault(key, len(known))
-            for key in zip(curves.situations, (bool(t) for t in tier), strict=True)
-        ],
-        dtype=np.int64,
-    )
-    at_turnout = {
-        i: known.setdefault((curves.situations[i] | {TURNOUT}, bool(tier[i])), len(known))
-        for i in (placed or {})
-    }
-    categories = sorted({row.category for row in traffic.rows} | {t.category for t in turnouts if t.category})
-    table = LimitTable(
-        limits, settings, categories, [words for words, _ in known], [allows for _, allows in known]
-    )
-    of_class = _TrafficArrays(n, k)
-    _fill_traffic(of_class, curves, traffic, categories)
-    planned = _planned_speeds(curves, names, of_class.speed)
-    of_class.runs &= ~np.isnan(planned)
-    for j, name in enumerate(names):
-        if name in curves.excess_waived:
-            of_class.regular[:, j] &= ~curves.excess_waived[name]
-    lengths = (neighbourhood.transition_m, neighbourhood.ramp_m)
-    only = np.where(curves.cant_fixed, curves.cant_mm, np.nan)
-    if curves.held_mm is not None:
-        only = np.where(np.isnan(curves.held_mm), only, curves.held_mm)
-    return Line(
-        table=table,
-        constant=settings.constant,
-        spacing_mm=settings.spacing_mm,
-        radius_m=_column(curves.radius_m),
-        hand=_column(curves.hand),
-        situation=situation[:, None],
-        cant_today_mm=_column(curves.cant_mm),
-        at_most_mm=_column(np.where(np.isnan(curves.cant_at_most_mm), np.inf, curves.cant_at_most_mm)),
-        at_least_mm=_column(np.where(np.isnan(curves.cant_at_least_mm), -np.inf, curves.cant_at_least_mm)),
-        weight_length_m=_column(neighbourhood.weight_length_m),
-        factor=_column([SHAPES[name] for name in curves.shape]),
-        transition_m=(_column(lengths[0][0]), _column(lengths[0][1])),
-        ramp_m=(_column(lengths[1][0]), _column(lengths[1][1])),
-        fixed=_column(~np.isnan(only)) > 0,
-        only_mm=_column(only),
-        runs=of_class.runs,
-        regular=of_class.regular & of_class.runs,
-        planned_kmh=np.where(of_class.runs, planned, np.nan),
-        trains=of_class.trains,
-        mass_t=of_class.mass,
-        roll=of_class.roll,
-        gravity_height_m=of_class.gravity_height,
-        category=np.where(of_class.runs, of_class.category, NO_CATEGORY),
-        branches=(
-            make_branches(
-                turnouts,
-                dict(placed),
-                curves,
-                settings.constant,
-                {word: code for code, word in enumerate(categories)},
-                at_turnout,
-            )
-            if placed
-            else None
-        ),
-    )
-
-
-class _TrafficArrays:
-    """The traffic table spread over curves, (n, k) each."""
-
-    def __init__(self, n: int, k: int) -> None:
-        self.runs = np.zeros((n, k), dtype=np.bool_)
-        self.regular = np.zeros((n, k), dtype=np.bool_)
-        self.category = np.full((n, k), NO_CATEGORY, dtype=np.int64)
-        self.speed, self.trains, self.mass, self.roll, self.gravity_height = (
-            np.full((n, k), np.nan) for _ in range(5)
-        )
-
-    def put(self, rows: npt.ArrayLike, column: int, train: TrainClass, category: int) -> None:
-        """Enter a class on some curves."""
-        at = (np.asarray(rows), column)
-        self.runs[at] = True
-        self.regular[at] = train.regular
-        self.category[at] = category
-        for array, value in (
-            (self.speed, train.speed_kmh),
-            (self.trains, train.trains_per_day),
-            (self.mass, train.mass_t),
-            (self.roll, train.roll_coefficient),
-            (self.gravity_height, train.centre_of_gravity_m),
-        ):
-            if value is not None:
-                array[at] = value
-
-
-def _fill_traffic(arrays: _TrafficArrays, curves: CurveList, traffic: Traffic, categories: list[str]) -> None:
-    groups: dict[tuple[str, str], list[int]] = {}
-    for index, key in enumerate(zip(curves.line, curves.track, strict=True)):
-        groups.setdefault(key, []).append(index)
-    column = {name: j for j, name in enumerate(traffic.class_names)}
-    code = {word: j for j, word in enumerate(categories)}
-    for (line, track), members in groups.items():
-        for name, train in traffic.on(line, track).items():
-            arrays.put(members, column[name], train, code[train.category])
-
-
-def _planned_speeds(curves: CurveList, names: list[str], class_speed: FloatArray) -> FloatArray:
-    """Give planned speeds, shape (n, k) [km/h]; nan where the class does not run or no speed is known."""
-    planned = np.fmin(class_speed, curves.speed_kmh[:, None])
-    planned = np.where(np.isnan(class_speed), np.nan, planned)
-    for j, name in enumerate(names):
-        given = curves.class_speeds.get(name)
-        if given is None:
-            continue
-        stated = ~np.isnan(given)
-        planned[stated, j] = np.where(given[stated] == DOES_NOT_RUN, np.nan, given[stated])
-    return planned

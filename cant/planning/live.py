@@ -77,7 +77,7 @@ def plan_at(plan: Plan, index: int, cants_mm: npt.ArrayLike) -> tuple[Plan, IntA
         cant_mm=cant,
         not_compliant=broken,
         proposed=assess(line, pairs, cant, exceptional),
-        findings=[],
+        remarks=[],
     )
     return Plan(copies), at
 
@@ -123,4 +123,5 @@ def _neighbourhood(whole: Neighbourhood, tiled: IntArray, pairs: Pairs) -> Neigh
         descending=whole.descending[tiled],
         contradictory=whole.contradictory[tiled],
         weight_length_m=whole.weight_length_m[tiled],
+        track=whole.track[tiled],
     )

@@ -16,14 +16,16 @@ from cant.model.plan import Finding
 from cant.model.settings import METHODS, Settings
 from cant.model.traffic import Traffic
 from cant.model.turnouts import Turnout
+from cant.planning.assembly import make_line
 from cant.planning.assess import Assessment, assess_some, passed_alone, passed_shared
 from cant.planning.branches import place_turnouts
+from cant.planning.chainages import find_neighbours
 from cant.planning.choose import choose
 from cant.planning.gaps import demand_roll_coefficients, find_gaps, find_unlimited
 from cant.planning.grid import Grid, make_grid
 from cant.planning.keep import SAME_MM, keep_today
-from cant.planning.line import Line, make_line
-from cant.planning.neighbours import Neighbourhood, Pairs, find_neighbours, forget
+from cant.planning.line import Line
+from cant.planning.neighbours import Neighbourhood, Pairs, Remark, forget
 from cant.planning.shared import Meeting
 from cant.planning.targets import Target, target_of
 
@@ -57,8 +59,8 @@ class Outcome:
     not_compliant : ndarray of bool, shape (n,)
     proposed : Assessment
         At the proposed cants.
-    findings : list of Finding
-        Of the data and the limits.
+    remarks : list of callable
+        What is to be said about the data and the limits: see :attr:`findings`.
     turnouts : sequence of Turnout
     """
 
@@ -74,13 +76,20 @@ class Outcome:
     not_compliant: BoolArray
     proposed: Assessment
     target: Target
-    findings: list[Finding]
+    remarks: list[Remark]
     turnouts: Sequence[Turnout] = ()
 
     @property
     def pairs(self) -> Pairs:
         """Shared transitions between planned curves."""
         return self.neighbourhood.pairs
+
+    @cached_property
+    def findings(self) -> list[Finding]:
+        """Findings on the data and the limits, of the whole plan and of curves that were not rejected."""
+        rejected = self.curves.rejected
+        every = [finding for remark in self.remarks for finding in remark()]
+        return [finding for finding in every if finding.curve is None or not rejected[finding.curve]]
 
     @cached_property
     def _findings_by_curve(self) -> dict[int, list[Finding]]:
@@ -226,11 +235,11 @@ def plan_arrays(
         cant = keep_today(line, pairs, cant, settings.keep_within_mm, keepable, tier)
     tell(0.8, "assessing the plan")
     proposed = assess_some(line, pairs, cant, tier, np.flatnonzero(~choice.within_normal & planned))
-    findings = [
-        *(f for f in neighbourhood.findings if f.curve is None or not curves.rejected[f.curve]),
-        *gaps,
-        *find_unlimited(line, limits, traffic),
-        *misplaced,
+    remarks = [
+        *neighbourhood.remarks,
+        lambda: gaps,
+        lambda: find_unlimited(limits, traffic),
+        lambda: misplaced,
     ]
     tell(1.0, "done")
     return Outcome(
@@ -246,6 +255,6 @@ def plan_arrays(
         not_compliant=choice.not_compliant & planned,
         proposed=proposed,
         target=target,
-        findings=findings,
+        remarks=remarks,
         turnouts=turnouts,
     )

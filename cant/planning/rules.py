@@ -17,6 +17,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Iterator
 from dataclasses import dataclass
+from functools import cached_property
 
 import numpy as np
 import numpy.typing as npt
@@ -149,8 +150,13 @@ class Asked:
         self.exceptional = exceptional
         self._found: dict[str, LimitAt] = {}
 
+    @cached_property
+    def balance_mm(self) -> FloatArray:
+        """Equilibrium cant of each class at these speeds [mm], shape (..., n, k)."""
+        return equilibrium_cant(self.speed_kmh, self.line.radius_m, self.line.constant)
+
     def limit(self, quantity: str) -> LimitAt:
-        """Give the limit of each class, shape (..., n, k)."""
+        """Give the limit of each class, broadcasting to (..., n, k)."""
         if quantity not in self._found:
             self._found[quantity] = self.line.limit(quantity, self.speed_kmh, self.exceptional)
         return self._found[quantity]
@@ -205,34 +211,30 @@ def _site_terms(asked: Asked) -> Iterator[Terms]:
 
 def _deficiency_terms(asked: Asked) -> Iterator[Terms]:
     line = asked.line
-    balance = equilibrium_cant(asked.speed_kmh, line.radius_m, line.constant)
-    yield Terms(DEFICIENCY, balance, -np.ones((1, 1)), asked.limit("cant deficiency"), line.runs)
+    yield Terms(DEFICIENCY, asked.balance_mm, -np.ones((1, 1)), asked.limit("cant deficiency"), line.runs)
 
 
 def _excess_terms(asked: Asked) -> Iterator[Terms]:
     line = asked.line
-    balance = equilibrium_cant(asked.speed_kmh, line.radius_m, line.constant)
-    yield Terms(EXCESS, -balance, np.ones((1, 1)), asked.limit("cant excess"), line.regular)
+    yield Terms(EXCESS, -asked.balance_mm, np.ones((1, 1)), asked.limit("cant excess"), line.regular)
 
 
 def _felt_outwards_terms(asked: Asked) -> Iterator[Terms]:
     line = asked.line
     if not line.table.has("felt acceleration"):
         return
-    balance = equilibrium_cant(asked.speed_kmh, line.radius_m, line.constant)
     factor = _felt_factor(line)
     felt = line.runs & ~np.isnan(line.roll)
-    yield Terms(FELT_OUTWARDS, factor * balance, -factor, asked.limit("felt acceleration"), felt)
+    yield Terms(FELT_OUTWARDS, factor * asked.balance_mm, -factor, asked.limit("felt acceleration"), felt)
 
 
 def _felt_inwards_terms(asked: Asked) -> Iterator[Terms]:
     line = asked.line
     if not line.table.has("felt acceleration"):
         return
-    balance = equilibrium_cant(asked.speed_kmh, line.radius_m, line.constant)
     factor = _felt_factor(line)
     felt = line.regular & ~np.isnan(line.roll)
-    yield Terms(FELT_INWARDS, -factor * balance, factor, asked.limit("felt acceleration"), felt)
+    yield Terms(FELT_INWARDS, -factor * asked.balance_mm, factor, asked.limit("felt acceleration"), felt)
 
 
 def _branch_terms(asked: Asked) -> Iterator[Terms]:
@@ -282,11 +284,10 @@ def _deficiency_rate_terms(asked: Asked) -> Iterator[Terms]:
         known: BoolArray = np.asarray(length > 0)
         if not known.any():
             continue
-        balance = equilibrium_cant(asked.speed_kmh, line.radius_m, line.constant)
         with np.errstate(divide="ignore", invalid="ignore"):
             rate = line.factor * asked.speed_kmh / (KMH_PER_MS * length)
             limit = asked.limit("rate of change of cant deficiency")
-            yield Terms(DEFICIENCY_RATE[end], rate * balance, -rate, limit, line.runs & known)
+            yield Terms(DEFICIENCY_RATE[end], rate * asked.balance_mm, -rate, limit, line.runs & known)
 
 
 def _abrupt_terms(asked: Asked) -> Iterator[Terms]:
@@ -294,9 +295,8 @@ def _abrupt_terms(asked: Asked) -> Iterator[Terms]:
     for end in (BEFORE, AFTER):
         none: BoolArray = np.asarray(line.transition_m[end] == 0)
         if none.any():
-            balance = equilibrium_cant(asked.speed_kmh, line.radius_m, line.constant)
             limit = asked.limit("abrupt change of cant deficiency")
-            yield Terms(ABRUPT[end], balance, np.zeros((1, 1)), limit, line.runs & none)
+            yield Terms(ABRUPT[end], asked.balance_mm, np.zeros((1, 1)), limit, line.runs & none)
 
 
 _HARD: tuple[Callable[[Asked], Iterator[Terms]], ...] = (
