@@ -1,4 +1,4 @@
-"""What the service says when it cannot take more just now, or has no room left: nothing has been stored then."""
+"""What the service says when it can take no more just now, or has no room left; nothing is stored then."""
 
 from __future__ import annotations
 

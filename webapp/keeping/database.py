@@ -1,17 +1,24 @@
 """The connection to the database, and its migrations.
 
-SQLite in a file, or PostgreSQL by a URL; what differs between the two is known here alone.
+SQLite in a file, or PostgreSQL by a URL; what differs between the two is known here alone. In SQLite a
+transaction that writes takes the right to write when it begins, so that none fails half-way because another
+was quicker, and what is deleted is overwritten.
 """
 
 from __future__ import annotations
 
+import contextlib
+import os
+from collections.abc import Iterator
+from contextlib import AbstractContextManager
 from pathlib import Path
 from typing import Any
 
 from alembic import command
 from alembic.config import Config as AlembicConfig
+from filelock import FileLock
 from sqlalchemy import Connection, Engine, create_engine, event, text
-from sqlalchemy.exc import SQLAlchemyError
+from sqlalchemy.exc import DBAPIError, SQLAlchemyError
 from sqlalchemy.orm import Session, sessionmaker
 
 from cant.errors import FileError, InputError
@@ -19,6 +26,27 @@ from cant.errors import FileError, InputError
 MIGRATIONS = Path(__file__).parents[1] / "migrations"
 MIGRATION_LOCK = 0x63616E74
 """Number of the advisory lock under which one process at a time migrates a PostgreSQL database."""
+WRITES = "cant_writes"
+"""Execution option of a connection whose transactions write."""
+OWN_ALONE = 0o600
+WAIT_MS = 30_000
+CLEARING_WAIT_MS = 2_000
+FULL_WORDS = ("database or disk is full", "disk I/O error", "No space left", "could not extend file")
+
+
+class Sessions(sessionmaker[Session]):
+    """Makes sessions; those of ``begin()`` may write, and hold the right to from their first statement."""
+
+    def begin(self) -> AbstractContextManager[Session]:
+        """Give a session in a transaction that is committed at the end, or rolled back where it fails."""
+        return self._writing()
+
+    @contextlib.contextmanager
+    def _writing(self) -> Iterator[Session]:
+        engine: Engine = self.kw["bind"]
+        session = self(bind=engine.execution_options(**{WRITES: True}))
+        with session, session.begin():
+            yield session
 
 
 class Database:
@@ -39,7 +67,9 @@ class Database:
 
     def __init__(self, url: str) -> None:
         self.engine = _engine(url)
-        self.sessions: sessionmaker[Session] = sessionmaker(self.engine, expire_on_commit=False)
+        self.must_clear = False
+        """Whether deleted content may still be in the write-ahead log."""
+        self.sessions: sessionmaker[Session] = Sessions(self.engine, expire_on_commit=False)
         try:
             self._migrate()
         except (SQLAlchemyError, OSError) as error:
@@ -47,11 +77,28 @@ class Database:
             message = f"the database {shown} cannot be used: {str(error).splitlines()[0]}"
             raise FileError(message) from error
 
+    @property
+    def file(self) -> Path | None:
+        """The file of an SQLite database, None for a server."""
+        name = self.engine.url.database
+        embedded = self.engine.dialect.name == "sqlite" and name and name != ":memory:"
+        return Path(name) if embedded and name else None
+
     def _migrate(self) -> None:
+        """Bring the tables up to date, one process at a time."""
+        if self.file is None:
+            self._upgrade()
+            return
+        lock = self.file.with_name(f"{self.file.name}-lock")
+        with FileLock(lock, mode=OWN_ALONE):
+            _make_for_the_owner_alone(self.file)
+            self._upgrade()
+
+    def _upgrade(self) -> None:
         config = AlembicConfig()
         config.set_main_option("script_location", str(MIGRATIONS).replace("%", "%%"))
         config.set_main_option("path_separator", "os")
-        with self.engine.connect() as connection:
+        with self.engine.connect().execution_options(**{WRITES: True}) as connection:
             if self.engine.dialect.name == "postgresql":
                 connection.execute(text("SELECT pg_advisory_lock(:lock)"), {"lock": MIGRATION_LOCK})
                 connection.commit()
@@ -71,9 +118,43 @@ class Database:
             return False
         return True
 
+    def clear_away(self) -> bool:
+        """Let what was deleted be in no file any more; tell whether that is so.
+
+        Deleted pages of an SQLite file are overwritten, but its write-ahead log holds older copies until it
+        is emptied, which waits for readers: where it cannot be now, it must be asked for again. In
+        PostgreSQL rows are gone, and its own vacuuming takes the rest.
+        """
+        if self.file is None:
+            return True
+        raw = self.engine.raw_connection()
+        try:
+            cursor = raw.cursor()
+            cursor.execute(f"PRAGMA busy_timeout={CLEARING_WAIT_MS}")
+            try:
+                row = cursor.execute("PRAGMA wal_checkpoint(TRUNCATE)").fetchone()
+            finally:
+                cursor.execute(f"PRAGMA busy_timeout={WAIT_MS}")
+                cursor.close()
+        finally:
+            raw.close()
+        self.must_clear = row is None or row[0] != 0
+        return not self.must_clear
+
     def close(self) -> None:
         """Close all connections."""
         self.engine.dispose()
+
+
+def one_at_a_time(session: Session, key: str) -> None:
+    """Let transactions of one key wait for each other; in SQLite all that write do anyway."""
+    if session.get_bind().dialect.name == "postgresql":
+        session.execute(text("SELECT pg_advisory_xact_lock(hashtextextended(:key, 0))"), {"key": key})
+
+
+def is_full(error: DBAPIError) -> bool:
+    """Tell whether an error of the database means that there is no room left on its disk."""
+    return any(words in str(error.orig) for words in FULL_WORDS)
 
 
 def _unlock(connection: Connection) -> None:
@@ -85,15 +166,16 @@ def _unlock(connection: Connection) -> None:
 
 def _engine(url: str) -> Engine:
     if url.startswith("sqlite"):
-        engine = create_engine(url, connect_args={"timeout": 30})
+        engine = create_engine(url, connect_args={"timeout": WAIT_MS / 1000})
         file = engine.url.database
         if file and file != ":memory:":
             try:
-                Path(file).parent.mkdir(parents=True, exist_ok=True)
+                Path(file).parent.mkdir(mode=0o700, parents=True, exist_ok=True)
             except OSError as error:
                 message = f"the data directory {Path(file).parent} cannot be made: {error.strerror}"
                 raise FileError(message) from error
         event.listen(engine, "connect", _prepare_sqlite)
+        event.listen(engine, "begin", _begin_sqlite)
         return engine
     if url.startswith("postgresql"):
         try:
@@ -105,9 +187,30 @@ def _engine(url: str) -> Engine:
     raise InputError(message)
 
 
+def _make_for_the_owner_alone(file: Path) -> None:
+    """Make the file before SQLite does, so that nobody else may read it, nor the logs that follow it."""
+    os.close(os.open(file, os.O_RDWR | os.O_CREAT, OWN_ALONE))
+    for one in (file, *(file.with_name(file.name + ending) for ending in ("-wal", "-shm"))):
+        with contextlib.suppress(OSError):  # of another owner, or not there
+            if one.stat().st_mode & 0o077:
+                one.chmod(OWN_ALONE)
+
+
 def _prepare_sqlite(connection: Any, _record: Any) -> None:
-    """Let readers and a writer work side by side, and let the database itself delete what hangs on a plan."""
+    """Let readers and a writer work side by side, and what hangs on a plan be deleted and overwritten."""
+    connection.isolation_level = None  # transactions begin where _begin_sqlite says so
     cursor = connection.cursor()
-    for pragma in ("foreign_keys=ON", "journal_mode=WAL", "synchronous=FULL", "busy_timeout=30000"):
+    for pragma in (
+        f"busy_timeout={WAIT_MS}",
+        "journal_mode=WAL",
+        "synchronous=FULL",
+        "foreign_keys=ON",
+        "secure_delete=ON",
+    ):
         cursor.execute(f"PRAGMA {pragma}")
     cursor.close()
+
+
+def _begin_sqlite(connection: Connection) -> None:
+    writes = connection.get_execution_options().get(WRITES, False)
+    connection.exec_driver_sql("BEGIN IMMEDIATE" if writes else "BEGIN")

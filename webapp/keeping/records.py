@@ -193,13 +193,14 @@ class AccountRow(Base):
 
 
 class SignInRow(Base):
-    """A browser in which an account is signed in; only the digest of its secret is kept."""
+    """A browser in which an account is signed in, or a key for programs; of its secret the digest is kept."""
 
     __tablename__ = "sign_ins"
 
     id: Mapped[int] = mapped_column(primary_key=True)
     secret_digest: Mapped[str] = mapped_column(String(64), unique=True)
     account_id: Mapped[int] = mapped_column(ForeignKey("accounts.id", ondelete="CASCADE"), index=True)
+    is_key: Mapped[bool] = mapped_column(default=False)
     browser: Mapped[str] = mapped_column(String(120), default="")
     made: Mapped[datetime] = mapped_column(UtcTime)
     seen: Mapped[datetime] = mapped_column(UtcTime)
@@ -207,7 +208,7 @@ class SignInRow(Base):
 
 
 class SignatureRow(Base):
-    """That somebody prepared, checked or approved a plan, as it was at a digest."""
+    """A step in signing off a plan as it was at a digest: signed, sent back, or handed to somebody else."""
 
     __tablename__ = "signatures"
 
@@ -217,6 +218,9 @@ class SignatureRow(Base):
     step: Mapped[str] = mapped_column(String(16))
     name: Mapped[str] = mapped_column(String(160))
     note: Mapped[str] = mapped_column(Text, default="")
+    statement: Mapped[str] = mapped_column(Text, default="")
     digest: Mapped[str] = mapped_column(String(64))
+    program: Mapped[str] = mapped_column(String(32), default="")
+    handed_to: Mapped[int | None] = mapped_column(ForeignKey("accounts.id", ondelete="SET NULL"), index=True)
     made: Mapped[datetime] = mapped_column(UtcTime)
     withdrawn: Mapped[datetime | None] = mapped_column(UtcTime)

@@ -20,8 +20,18 @@ from sqlalchemy.orm import Session
 from cant.errors import CantError, InputError
 from cant.model.limits import LimitSet
 from webapp.decisions import KINDS, Decided, Decision, limits_from_plain, limits_text
-from webapp.keeping.database import Database
-from webapp.keeping.records import DecisionRow, FileRow, GrantRow, KeptLimitsRow, PlanRow
+from webapp.guarding.bounds import Bounds
+from webapp.keeping.database import Database, one_at_a_time
+from webapp.keeping.records import (
+    DecisionRow,
+    FileRow,
+    GrantRow,
+    KeptLimitsRow,
+    PlanRow,
+    ShareRow,
+    SignInRow,
+)
+from webapp.keeping.room import Room
 
 ADDRESS_BYTES = 24
 LONGEST_NAME = 80
@@ -104,16 +114,24 @@ class Store:
     database : Database
     keep_days : int
         Days after the last change until a plan is deleted.
+    bounds : Bounds, optional
+        How much is kept.
     """
 
-    def __init__(self, database: Database, keep_days: int) -> None:
+    def __init__(self, database: Database, keep_days: int, bounds: Bounds | None = None) -> None:
         self._database = database
+        file = database.file
+        self.room = Room(bounds or Bounds(), None if file is None else file.parent)
         self._keep = timedelta(days=keep_days)
 
     def add(
         self, owner: str, file_name: str, data: bytes, decisions: dict[str, str] | None = None
     ) -> StoredPlan:
-        """Store a file as a new plan, with first decisions by kind, and give the plan."""
+        """Store a file as a new plan, with first decisions by kind, and give the plan.
+
+        FullError where there is no room for it.
+        """
+        self.room.check_disk(len(data))
         now = datetime.now(UTC)
         plan = PlanRow(
             address=secrets.token_urlsafe(ADDRESS_BYTES),
@@ -131,8 +149,10 @@ class Store:
             ],
         )
         with self._database.sessions.begin() as session:
+            one_at_a_time(session, owner)
             session.add(plan)
             session.flush()
+            self.room.check(session, owner)
             session.add(FileRow(plan_id=plan.id, data=data))
         return _stored(plan)
 
@@ -205,14 +225,19 @@ class Store:
         with self._database.sessions.begin() as session:
             plan, _ = find(session, owner, address, Access.OWN)
             session.execute(delete(PlanRow).where(PlanRow.id == plan.id))
+        self._database.clear_away()
 
     def remove_expired(self) -> int:
-        """Delete what has expired; give the number of plans."""
+        """Delete what has expired, and overwrite it; give the number of plans."""
         now = datetime.now(UTC)
+        gone = 0
         with self._database.sessions.begin() as session:
             count = session.scalar(select(func.count()).where(PlanRow.expires <= now)) or 0
-            session.execute(delete(PlanRow).where(PlanRow.expires <= now))
-            session.execute(delete(KeptLimitsRow).where(KeptLimitsRow.expires <= now))
+            for table in (PlanRow, KeptLimitsRow, GrantRow, ShareRow, SignInRow):
+                made = session.execute(delete(table).where(table.expires <= now))
+                gone += getattr(made, "rowcount", 0)
+        if gone or self._database.must_clear:
+            self._database.clear_away()
         return count
 
     def keep_limits(self, owner: str, name: str, limits: LimitSet) -> None:
