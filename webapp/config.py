@@ -21,6 +21,7 @@ from sqlalchemy.exc import ArgumentError
 from cant.errors import InputError
 from webapp.guarding.bounds import Bounds
 from webapp.guarding.bounds import whole_number as _whole
+from webapp.people.settings import SignIn
 
 KEY_FILE = "signing-key"
 DATABASE_FILE = "plans.sqlite3"
@@ -55,6 +56,8 @@ class Config:
         File of the access log; "" is standard error.
     bounds : Bounds
         How much may be asked of it and how much it keeps.
+    sign_in : SignIn
+        How people sign in; not at all unless it is set.
     """
 
     data_directory: Path
@@ -68,6 +71,7 @@ class Config:
     proxies: tuple[str, ...] = ()
     access_log: str = ""
     bounds: Bounds = field(default_factory=Bounds)
+    sign_in: SignIn = field(default_factory=SignIn)
 
     @property
     def database(self) -> str:
@@ -111,7 +115,8 @@ class Config:
 
         ``CANT_DATA`` (a directory), ``CANT_DATABASE`` (a URL), ``CANT_SIGNING_KEY``, ``CANT_KEEP_DAYS``,
         ``CANT_UPLOAD_MB``, ``CANT_PLANS_IN_MEMORY``, ``CANT_HTTPS`` (``yes``), ``CANT_HOSTS`` (separated by
-        commas), ``CANT_PROXIES`` (likewise), ``CANT_ACCESS_LOG`` (a file), and the bounds.
+        commas), ``CANT_PROXIES`` (likewise), ``CANT_ACCESS_LOG`` (a file), the bounds, and how
+        people sign in.
 
         Raises
         ------
@@ -132,6 +137,7 @@ class Config:
             proxies=_networks(given, "CANT_PROXIES"),
             access_log=given.get("CANT_ACCESS_LOG", ""),
             bounds=Bounds.from_environment(given),
+            sign_in=SignIn.from_environment(given),
         )
 
 

@@ -117,6 +117,7 @@ def _people() -> None:
         _key(),
         sa.Column("secret_digest", sa.String(64), nullable=False, unique=True),
         _of("account_id", "accounts", "CASCADE"),
+        sa.Column("is_key", sa.Boolean, nullable=False),
         _text("browser", 120),
         _moment("made"),
         _moment("seen"),
@@ -130,7 +131,10 @@ def _people() -> None:
         sa.Column("step", sa.String(16), nullable=False),
         _text("name", 160),
         sa.Column("note", sa.Text, nullable=False, server_default=""),
+        sa.Column("statement", sa.Text, nullable=False, server_default=""),
         sa.Column("digest", sa.String(64), nullable=False),
+        _text("program", 32),
+        _of("handed_to", "accounts", "SET NULL", needed=False),
         _moment("made"),
         _moment("withdrawn", needed=False),
     )
