@@ -14,7 +14,11 @@ from flask import Flask, Response, current_app, g, request, session
 from itsdangerous import BadSignature, URLSafeSerializer, URLSafeTimedSerializer
 
 OWNER = "owner"
+PERSON = "person"
+"""Where :mod:`webapp.people.guard` puts who has signed in, for the time of a request."""
 SESSION_COOKIE = "cant"
+SECURE_SESSION_COOKIE = "__Host-cant"
+"""Name under https: a browser takes such a cookie by https alone, for this host alone."""
 OWNER_BYTES = 24
 FORM_HOURS = 24
 POLICY = "; ".join(
@@ -32,9 +36,13 @@ HEADERS = {
     "X-Frame-Options": "DENY",
     "Referrer-Policy": "same-origin",
     "Cross-Origin-Opener-Policy": "same-origin",
+    "Cross-Origin-Embedder-Policy": "require-corp",
     "Cross-Origin-Resource-Policy": "same-origin",
     "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
 }
+
+BY_HTTPS_ALONE = "max-age=63072000; includeSubDomains"
+"""Strict-Transport-Security: two years, with all names below the host's."""
 
 
 class RefusedError(Exception):
@@ -42,10 +50,12 @@ class RefusedError(Exception):
 
 
 def owner() -> str:
-    """Give the owner of the request; a browser without one gets one with the answer."""
+    """Give the owner of the request: who has signed in, else a browser; a new browser gets its owner now."""
     if OWNER not in g:
         key = request.authorization
-        if key is not None and key.type == "bearer":
+        if g.get(PERSON) is not None:
+            g.owner, g.owner_is_new = g.person.owner, False
+        elif key is not None and key.type == "bearer":
             g.owner, g.owner_is_new = _from_key(key.token or ""), False
         else:
             known = session.get(OWNER)
@@ -59,8 +69,10 @@ def owner() -> str:
 
 
 def is_known() -> bool:
-    """Tell whether a request carries a key or the cookie of an owner."""
-    return request.authorization is not None or isinstance(session.get(OWNER), str)
+    """Tell whether a request carries a key or the cookie of an owner, or somebody has signed in."""
+    return (
+        g.get(PERSON) is not None or request.authorization is not None or isinstance(session.get(OWNER), str)
+    )
 
 
 def new_key() -> str | None:
@@ -79,8 +91,12 @@ def _from_key(key: str) -> str:
 
 
 def form_token() -> str:
-    """Give the token that a form of this owner must carry."""
-    return URLSafeTimedSerializer(_secret(), salt="form").dumps(owner())
+    """Give the token that a form of this owner must carry; of who has signed in, of this sign-in."""
+    return URLSafeTimedSerializer(_secret(), salt="form").dumps(_form_owner())
+
+
+def _form_owner() -> str:
+    return owner() if g.get(PERSON) is None else str(g.person.form_owner)
 
 
 def check_form() -> None:
@@ -92,7 +108,7 @@ def check_form() -> None:
     except BadSignature as error:
         message = "this form is too old or was not made here; open the page anew and send it once more"
         raise RefusedError(message) from error
-    if not secrets.compare_digest(str(made_for), owner()):
+    if not secrets.compare_digest(str(made_for), _form_owner()):
         message = "this form was made for another browser; open the page anew and send it once more"
         raise RefusedError(message)
     check_same_site()
@@ -102,21 +118,33 @@ def check_same_site() -> None:
     """Refuse a request that another site made a browser send; RefusedError."""
     site = request.headers.get("Sec-Fetch-Site", "none")
     origin = request.headers.get("Origin")
-    foreign = origin is not None and origin != "null" and urlsplit(origin).netloc != request.host
-    if site in ("cross-site", "same-site") or foreign:
+    hidden = origin == "null"
+    foreign = origin is not None and not hidden and urlsplit(origin).netloc != request.host
+    if site in ("cross-site", "same-site") or foreign or (hidden and site != "same-origin"):
         message = "this request comes from another site"
         raise RefusedError(message)
 
 
-def protect(app: Flask) -> None:
-    """Give every answer of an application its headers."""
+def protect(app: Flask, *, https: bool = False) -> None:
+    """Give every answer of an application its headers.
+
+    Parameters
+    ----------
+    app : Flask
+    https : bool
+        The service is reached by https alone.
+    """
 
     @app.after_request
     def headers(response: Response) -> Response:
         for name, value in HEADERS.items():
             response.headers.setdefault(name, value)
+        if https:
+            response.headers.setdefault("Strict-Transport-Security", BY_HTTPS_ALONE)
         if request.endpoint != "static":
             response.headers.setdefault("Cache-Control", "private, no-store")
+        if response.mimetype.endswith("xml") and "charset" not in response.mimetype_params:
+            response.headers["Content-Type"] = f"{response.mimetype}; charset=utf-8"
         return response
 
 
