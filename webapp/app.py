@@ -18,11 +18,16 @@ from webapp.config import Config
 from webapp.context import EXTENSION, Running, current_measures, running
 from webapp.drawings import svg
 from webapp.errors import add_error_answers
+from webapp.guarding import health
+from webapp.guarding.access_log import AccessLog, add_access_log
+from webapp.guarding.proxies import Proxies
+from webapp.guarding.rates import Rates, add_rates
+from webapp.guarding.turns import Turns, add_turns
 from webapp.history_view import remembered_name
 from webapp.keeping.database import Database
 from webapp.keeping.store import Store
 from webapp.measures import SYSTEM_WORDS
-from webapp.security import SESSION_COOKIE, check_form, form_token, protect
+from webapp.security import SECURE_SESSION_COOKIE, SESSION_COOKIE, check_form, form_token, protect
 from webapp.views import comparing, curves, deciding, downloads, help, limits, reading, result, start, trains
 
 COOKIE_DAYS = 400
@@ -58,7 +63,7 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
         MAX_CONTENT_LENGTH=used.upload_mb * 1_000_000,
         MAX_FORM_MEMORY_SIZE=MOST_FORM_BYTES,
         MAX_FORM_PARTS=MOST_FORM_PARTS,
-        SESSION_COOKIE_NAME=SESSION_COOKIE,
+        SESSION_COOKIE_NAME=SECURE_SESSION_COOKIE if used.https else SESSION_COOKIE,
         SESSION_COOKIE_HTTPONLY=True,
         SESSION_COOKIE_SAMESITE="Lax",
         SESSION_COOKIE_SECURE=used.https,
@@ -69,18 +74,34 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
     app.config.update(flask_keys)
     app.json.sort_keys = False  # type: ignore[attr-defined]
     database = Database(used.database)
-    store = Store(database, used.keep_days)
+    store = Store(database, used.keep_days, used.bounds)
     store.remove_expired()
     app.extensions[EXTENSION] = Running(
         used, database, store, Computations(used.plans_in_memory), datetime.now(UTC)
     )
-    for part in (start, reading, trains, limits, result, curves, deciding, comparing, downloads, help):
+    for part in (
+        start,
+        reading,
+        trains,
+        limits,
+        result,
+        curves,
+        deciding,
+        comparing,
+        downloads,
+        help,
+        health,
+    ):
         app.register_blueprint(part.pages)
     app.register_blueprint(api)
     add_error_answers(app)
-    protect(app)
+    protect(app, https=used.https)
+    add_access_log(app)
+    add_rates(app, Rates(used.bounds))
     _add_guards(app)
+    add_turns(app, Turns(used.bounds.turns, used.bounds.wait_seconds))
     _add_words(app)
+    app.wsgi_app = AccessLog(Proxies(app.wsgi_app, used.proxies))  # type: ignore[method-assign]
     return app
 
 

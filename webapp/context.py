@@ -2,7 +2,8 @@
 
 from __future__ import annotations
 
-from dataclasses import dataclass
+import threading
+from dataclasses import dataclass, field
 from datetime import UTC, datetime, timedelta
 from typing import cast
 
@@ -31,11 +32,13 @@ class Running:
     store: Store
     computations: Computations
     cleaned: datetime
+    stopping: threading.Event = field(default_factory=threading.Event)
+    """Set when the service has been told to stop: it is not ready for more then."""
 
     def clean(self) -> None:
-        """Delete what has expired, at most once an hour."""
+        """Delete what has expired, at most once an hour; what readers kept from being cleared away, again."""
         now = datetime.now(UTC)
-        if now - self.cleaned >= timedelta(hours=CLEANING_HOURS):
+        if now - self.cleaned >= timedelta(hours=CLEANING_HOURS) or self.database.must_clear:
             self.cleaned = now
             self.store.remove_expired()
 

@@ -10,10 +10,15 @@ import secrets
 
 from flask import Flask, Response, jsonify, render_template, request
 from flask.typing import ResponseReturnValue
+from sqlalchemy.exc import DBAPIError
+from sqlalchemy.exc import TimeoutError as PoolTimeoutError
 from werkzeug.exceptions import HTTPException, RequestEntityTooLarge, SecurityError
 
 from cant.errors import CantError
+from webapp.busy import BusyError, FullError, TooManyError
 from webapp.context import running
+from webapp.guarding.access_log import route
+from webapp.keeping.database import is_full, is_passing
 from webapp.keeping.store import NotAllowedError, NotThereError
 from webapp.security import RefusedError
 
@@ -26,14 +31,22 @@ TITLES = {
     405: "Not possible here",
     413: "Too large",
     422: "This cannot be used as it is",
+    429: "Too much at once",
     500: "Something went wrong here",
+    503: "Busy just now",
+    507: "Full",
 }
+DATABASE_RETRY_S = 10
 
 
 def add_error_answers(app: Flask) -> None:
     """Register the answers to every kind of error."""
     app.register_error_handler(NotThereError, _not_there)
     app.register_error_handler(NotAllowedError, _not_allowed)
+    app.register_error_handler(FullError, _full)
+    app.register_error_handler(BusyError, _busy)
+    app.register_error_handler(DBAPIError, _database)
+    app.register_error_handler(PoolTimeoutError, _database)
     app.register_error_handler(CantError, _cannot)
     app.register_error_handler(RefusedError, _refused)
     app.register_error_handler(RequestEntityTooLarge, _too_large)
@@ -69,11 +82,38 @@ def _not_allowed(error: NotAllowedError) -> ResponseReturnValue:
     return answer(403, _sentence(str(error)))
 
 
+def _full(error: FullError) -> ResponseReturnValue:
+    LOG.warning("Full: refused to store, route %s", route())
+    return answer(507, _sentence(str(error)))
+
+
+def _busy(error: BusyError) -> ResponseReturnValue:
+    too_many = isinstance(error, TooManyError)
+    if too_many:
+        LOG.warning("Too much was asked from one address or by one person, route %s", route())
+    made = answer(429 if too_many else 503, _sentence(str(error)))
+    made.headers["Retry-After"] = str(error.retry_s)
+    return made
+
+
+def _database(error: DBAPIError | PoolTimeoutError) -> ResponseReturnValue:
+    """Answer where the database is full, gone or held by others; anything else of it was not foreseen."""
+    if isinstance(error, DBAPIError) and is_full(error):
+        LOG.error("The database has no room left, route %s: %s", route(), type(error.orig))
+        message = "the database of this service has no room left; nothing has been stored. Tell who runs it"
+        return answer(507, _sentence(message))
+    if isinstance(error, PoolTimeoutError) or is_passing(error):
+        LOG.error("The database does not answer, route %s: %s", route(), type(error))
+        return _busy(BusyError(DATABASE_RETRY_S))
+    return _unforeseen(error)
+
+
 def _cannot(error: CantError) -> ResponseReturnValue:
     return answer(422, _sentence(str(error)))
 
 
 def _refused(error: RefusedError) -> ResponseReturnValue:
+    LOG.warning("Refused, route %s: %s", route(), error)
     return answer(403, _sentence(str(error)))
 
 
@@ -103,7 +143,7 @@ def _http(error: HTTPException) -> ResponseReturnValue:
 
 def _unforeseen(error: Exception) -> ResponseReturnValue:
     reference = secrets.token_hex(4)
-    LOG.error("Request %s %s failed, reference %s", request.method, request.path, reference, exc_info=error)
+    LOG.error("Request %s %s failed, reference %s", request.method, route(), reference, exc_info=error)
     message = (
         f"The service met something that it was not made for. "
         f"Who runs it finds the details in its log under the reference {reference}."

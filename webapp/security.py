@@ -143,7 +143,7 @@ def protect(app: Flask, *, https: bool = False) -> None:
             response.headers.setdefault("Strict-Transport-Security", BY_HTTPS_ALONE)
         if request.endpoint != "static":
             response.headers.setdefault("Cache-Control", "private, no-store")
-        if response.mimetype.endswith("xml") and "charset" not in response.mimetype_params:
+        if (response.mimetype or "").endswith("xml") and "charset" not in response.mimetype_params:
             response.headers["Content-Type"] = f"{response.mimetype}; charset=utf-8"
         return response
 

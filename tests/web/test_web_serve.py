@@ -115,8 +115,10 @@ def test_taken_port_is_one_line_and_exit_status_2(serve: Serve, tmp_path: Path) 
     assert port in done.stderr
 
 
-def test_health_address(start: Callable[..., Flask]) -> None:
-    assert Browser(start()).get("/healthz").text == "ready\n"
+def test_health_addresses(start: Callable[..., Flask]) -> None:
+    browser = Browser(start())
+    assert browser.get("/healthz").text == "alive\n"
+    assert browser.get("/readyz").text == "ready\n"
 
 
 @pytest.mark.parametrize(

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from typing import Any
 
-from flask import Response, jsonify
+from flask import Response, current_app, has_app_context, jsonify
 from pydantic import BaseModel
 from pydantic.json_schema import models_json_schema
 
@@ -31,6 +31,9 @@ ERRORS = {
     "413": "The request is too large.",
     "415": "The body has the wrong media type.",
     "422": "What was sent cannot be used; the message says why and what would be right.",
+    "429": "Too much was asked in a short time; Retry-After says in how many seconds to try again.",
+    "503": "The service is busy and nothing was stored; Retry-After says in how many seconds to try again.",
+    "507": "There is no room for what was sent; the message says what to delete. Nothing was stored.",
 }
 
 
@@ -64,10 +67,14 @@ def describe() -> dict[str, Any]:
             "schemas": schemas["$defs"],
             "securitySchemes": {
                 "key": {"type": "http", "scheme": "bearer"},
-                "cookie": {"type": "apiKey", "in": "cookie", "name": SESSION_COOKIE},
+                "cookie": {"type": "apiKey", "in": "cookie", "name": _cookie_name()},
             },
         },
     }
+
+
+def _cookie_name() -> str:
+    return str(current_app.config["SESSION_COOKIE_NAME"]) if has_app_context() else SESSION_COOKIE
 
 
 def _operation(what: Operation, schemas: dict[str, Any]) -> dict[str, Any]:
@@ -114,7 +121,8 @@ def _success(what: Operation) -> dict[str, Any]:
 
 def _errors(what: Operation) -> dict[str, Any]:
     content = {"application/json": {"schema": _reference(ErrorAnswer)}}
-    codes = ["400", "404", "422"] + ([] if what.open else ["401"])
+    codes = ["400", "404", "422", "429", "503"] + ([] if what.open else ["401"])
+    codes += ["507"] if what.upload else []
     codes += ["403", "413", "415"] if what.changes else (["403"] if not what.open else [])
     return {code: {"description": ERRORS[code], "content": content} for code in sorted(codes)}
 

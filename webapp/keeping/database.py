@@ -18,7 +18,7 @@ from alembic import command
 from alembic.config import Config as AlembicConfig
 from filelock import FileLock
 from sqlalchemy import Connection, Engine, create_engine, event, text
-from sqlalchemy.exc import DBAPIError, SQLAlchemyError
+from sqlalchemy.exc import DBAPIError, OperationalError, SQLAlchemyError
 from sqlalchemy.orm import Session, sessionmaker
 
 from cant.errors import FileError, InputError
@@ -32,6 +32,15 @@ OWN_ALONE = 0o600
 WAIT_MS = 30_000
 CLEARING_WAIT_MS = 2_000
 FULL_WORDS = ("database or disk is full", "disk I/O error", "No space left", "could not extend file")
+
+PASSING_WORDS = (
+    "database is locked",
+    "connection",
+    "deadlock",
+    "could not serialize",
+    "starting up",
+    "shutting down",
+)
 
 
 class Sessions(sessionmaker[Session]):
@@ -118,6 +127,13 @@ class Database:
             return False
         return True
 
+    def takes_changes(self) -> bool:
+        """Tell whether the database can be written to; SQLAlchemyError where it does not answer."""
+        if self.file is not None:
+            return os.access(self.file, os.W_OK) and os.access(self.file.parent, os.W_OK)
+        with self.engine.connect() as connection:
+            return connection.execute(text("SHOW transaction_read_only")).scalar() == "off"
+
     def clear_away(self) -> bool:
         """Let what was deleted be in no file any more; tell whether that is so.
 
@@ -155,6 +171,14 @@ def one_at_a_time(session: Session, key: str) -> None:
 def is_full(error: DBAPIError) -> bool:
     """Tell whether an error of the database means that there is no room left on its disk."""
     return any(words in str(error.orig) for words in FULL_WORDS)
+
+
+def is_passing(error: DBAPIError) -> bool:
+    """Tell whether another try may help after an error of the database: it is held, or does not answer."""
+    text_of = str(error.orig)
+    return error.connection_invalidated or (
+        isinstance(error, OperationalError) and any(words in text_of for words in PASSING_WORDS)
+    )
 
 
 def _unlock(connection: Connection) -> None:

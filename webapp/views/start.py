@@ -111,10 +111,3 @@ def units() -> ResponseReturnValue:
     if asked in SYSTEMS:
         choose_units(asked)
     return made
-
-
-@pages.get("/healthz")
-def health() -> ResponseReturnValue:
-    """Tell that the service and its database answer."""
-    ready = running().database.answers()
-    return Response("ready\n" if ready else "the database does not answer\n", 200 if ready else 503)

@@ -1,0 +1,55 @@
+"""What a reverse proxy says of a request is believed, and nobody else: address, protocol and host name."""
+
+from __future__ import annotations
+
+import ipaddress
+from collections.abc import Iterable, Sequence
+from typing import TYPE_CHECKING
+
+from werkzeug.middleware.proxy_fix import ProxyFix
+
+if TYPE_CHECKING:
+    from _typeshed.wsgi import StartResponse, WSGIApplication, WSGIEnvironment
+
+FROM_PROXY = "cant.from_proxy"
+"""Key of the WSGI environment: whether the request came by a proxy that is believed."""
+SAID_BY_PROXIES = (
+    "HTTP_X_FORWARDED_FOR",
+    "HTTP_X_FORWARDED_PROTO",
+    "HTTP_X_FORWARDED_HOST",
+    "HTTP_X_FORWARDED_PORT",
+    "HTTP_X_FORWARDED_PREFIX",
+    "HTTP_FORWARDED",
+)
+
+
+class Proxies:
+    """Believes the headers of a reverse proxy where it is one of ours, and drops them where not.
+
+    Parameters
+    ----------
+    application : WSGI application
+    trusted : sequence of str
+        Addresses and networks.
+    """
+
+    def __init__(self, application: WSGIApplication, trusted: Sequence[str]) -> None:
+        self._direct = application
+        self._behind = ProxyFix(application, x_for=1, x_proto=1, x_host=1)
+        self._trusted = [ipaddress.ip_network(one) for one in trusted]
+
+    def __call__(self, environ: WSGIEnvironment, start_response: StartResponse) -> Iterable[bytes]:
+        """Answer a request."""
+        environ[FROM_PROXY] = self._is_trusted(environ.get("REMOTE_ADDR", ""))
+        if environ[FROM_PROXY]:
+            return self._behind(environ, start_response)
+        for name in SAID_BY_PROXIES:
+            environ.pop(name, None)
+        return self._direct(environ, start_response)
+
+    def _is_trusted(self, address: str) -> bool:
+        try:
+            found = ipaddress.ip_address(address)
+        except ValueError:
+            return False
+        return any(found in network for network in self._trusted)
