@@ -27,6 +27,7 @@ from webapp.history_view import remembered_name
 from webapp.keeping.database import Database
 from webapp.keeping.store import Store
 from webapp.measures import SYSTEM_WORDS
+from webapp.people.joining import add_people
 from webapp.security import SECURE_SESSION_COOKIE, SESSION_COOKIE, check_form, form_token, protect
 from webapp.views import comparing, curves, deciding, downloads, help, limits, reading, result, start, trains
 
@@ -97,6 +98,7 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
     add_error_answers(app)
     protect(app, https=used.https)
     add_access_log(app)
+    add_people(app, used, database)
     add_rates(app, Rates(used.bounds))
     _add_guards(app)
     add_turns(app, Turns(used.bounds.turns, used.bounds.wait_seconds))
