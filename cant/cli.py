@@ -83,7 +83,7 @@ def plan(
         if out is not None:
             progress(0.0, "workbook")
             annotated = service.annotated_workbook(planned, data, str(curves))
-            contents[out], notes = annotated.data, list(annotated.notes)
+            contents[out], notes = annotated.pieces, list(annotated.notes)
             if annotated.suffix == ".xlsm" and out.suffix.lower() != ".xlsm":
                 notes.append(f"{out} holds macros: spreadsheet programs open it only as .xlsm; rename it")
         if json_file is not None:

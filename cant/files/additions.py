@@ -139,11 +139,16 @@ class Annotated:
 
     Attributes
     ----------
-    data : bytes
-        The file.
+    pieces : list of bytes
+        The file, in pieces.
     notes : list of str
         What a person should know: what could not be added, or behaves otherwise than one might expect.
     """
 
-    data: bytes
+    pieces: list[bytes | memoryview]
     notes: list[str]
+
+    @property
+    def data(self) -> bytes:
+        """The file as a whole."""
+        return b"".join(self.pieces)

@@ -7,8 +7,9 @@ stored formula values. Here the sheet's own XML gains cells and everything else 
 from __future__ import annotations
 
 from collections.abc import Sequence
+from typing import NoReturn
 
-from cant.errors import FileError, Place
+from cant.errors import FileError, Place, column_letter
 from cant.files.additions import (
     AddedColumn,
     Annotated,
@@ -19,12 +20,13 @@ from cant.files.additions import (
 )
 from cant.files.book import Book, SheetEntry
 from cant.files.book_edit import BookEdit
-from cant.files.edit import OFFICE_RELATIONS, PackageEdit, Squeezed
+from cant.files.edit import OFFICE_RELATIONS, PackageEdit
 from cant.files.graft import Graft, free_name, renamed_sheets
-from cant.files.grid import Workbook
 from cant.files.kinds import Kind, recognise
+from cant.files.loose_parts import LooseParts
 from cant.files.notes_edit import NotesEdit
 from cant.files.package import Package
+from cant.files.packed_rows import PackedColumn
 from cant.files.row_splice import PlacedColumn
 from cant.files.sheet_edit import SheetEdit
 from cant.files.sheet_xml import MAX_COLUMN
@@ -35,13 +37,13 @@ from cant.files.surroundings import notes_on
 __all__ = [
     "AddedColumn",
     "Annotated",
+    "Annotation",
     "CellMark",
     "ConditionalFill",
     "OutCell",
     "SheetAddition",
     "annotate",
     "can_annotate",
-    "free_sheet_name",
 ]
 
 _STYLES_TYPE = "application/vnd.openxmlformats-officedocument.spreadsheetml.styles+xml"
@@ -89,9 +91,17 @@ def _reason_against(package: Package) -> str | None:
 
 
 def annotate(
-    original: bytes, additions: Sequence[SheetAddition], new_sheets: bytes | None = None, file: str = ""
+    original: bytes,
+    additions: Sequence[SheetAddition],
+    new_sheets: bytes | LooseParts | None = None,
+    file: str = "",
 ) -> Annotated:
-    """Add columns, fills, notes and whole sheets to a workbook, leaving everything else as it is.
+    """Add columns, fills, notes and whole sheets to a workbook; see :class:`Annotation`."""
+    return Annotation(original, file).run(additions, new_sheets)
+
+
+class Annotation:
+    """One annotation of one workbook: columns, fills, notes and whole sheets, everything else left as it is.
 
     An earlier annotation is taken out first, so that a second run replaces it; its columns are used again.
 
@@ -99,55 +109,28 @@ def annotate(
     ----------
     original : bytes
         The user's workbook, xlsx or xlsm.
-    additions : sequence of SheetAddition
-        What his own sheets gain, one entry a sheet.
-    new_sheets : bytes or None
-        A complete xlsx made by XlsxWriter, whose sheets are put behind his own. Its formulas may refer to
-        his sheets by name, and those of added columns to its sheets.
     file : str
         Its name as the user gave it, for messages.
-
-    Returns
-    -------
-    Annotated
-        The workbook, and notes.
 
     Raises
     ------
     FileError
-        The file cannot be read, cannot be annotated (:func:`can_annotate`), or has no such sheet.
+        The file cannot be read, or cannot be annotated (:func:`can_annotate`).
     """
-    kind = recognise(original, file)
-    package = Package(original, file) if kind is Kind.PACKAGE else None
-    reason = _REASONS[kind] if package is None else _reason_against(package)
-    if package is None or reason is not None:
-        message = f"cannot be annotated in place because {reason}; write its rows to a new workbook"
-        raise FileError(message, Place(file))
-    return _Annotation(package).run(additions, new_sheets)
 
-
-def free_sheet_name(workbook: Workbook, wanted: str) -> str:
-    """Give a name for a new sheet that no sheet of the user's has: ``wanted``, else with (2), (3) ...
-
-    Parameters
-    ----------
-    workbook : Workbook
-        The user's workbook as read (an earlier annotation's sheets do not count).
-    wanted : str
-        The name wished for.
-    """
-    return free_name(wanted, [sheet.name for sheet in workbook.sheets])
-
-
-class _Annotation:
-    """One run over one workbook."""
-
-    def __init__(self, package: Package) -> None:
+    def __init__(self, original: bytes, file: str = "") -> None:
+        kind = recognise(original, file)
+        package = Package(original, file) if kind is Kind.PACKAGE else None
+        reason = _REASONS[kind] if package is None else _reason_against(package)
+        if package is None or reason is not None:
+            message = f"cannot be annotated in place because {reason}; write its rows to a new workbook"
+            raise FileError(message, Place(file))
         self.package = package
         self.edit = PackageEdit(package)
         self.old_book = Book(package)
         self.book = BookEdit(self.edit, self.old_book)
-        self.reader = BookReader(package, self.old_book)
+        self._reader: BookReader | None = None
+        self._read: dict[str, SheetRead] = {}
         self.styles_part = package.related(self.old_book.part, "styles")
         data = package.plain_xml(self.styles_part) if self.styles_part else EMPTY_STYLES
         self.styles = StyleEdit(data, self.styles_part or "", package.place)
@@ -155,7 +138,52 @@ class _Annotation:
         self.renamed: dict[str, str] = {}
         self.marked_columns = 0
 
-    def run(self, additions: Sequence[SheetAddition], new_sheets: bytes | None) -> Annotated:
+    @property
+    def has_macros(self) -> bool:
+        """Whether the workbook's name has to end in ``.xlsm``."""
+        return "macroEnabled" in self.package.content_type(self.old_book.part)
+
+    def free_name(self, wanted: str) -> str:
+        """Give a name for a new sheet that no sheet of the user's has: ``wanted``, else with (2), (3) ..."""
+        return free_name(wanted, self.book.sheet_names)
+
+    def letters(self, sheet: str, count: int) -> list[str]:
+        """Give the letters of the columns that a number of added columns of a sheet take.
+
+        Raises
+        ------
+        FileError
+            There is no such sheet, or it cannot be read.
+        """
+        for entry in self.book.kept:
+            if entry.is_worksheet and entry.name.casefold() == sheet.casefold():
+                read = self._read[entry.name] = self._sheet_read(entry)
+                return [column_letter(column) for column in as_sheet(read).added_columns(count)]
+        self._no_sheet(sheet)
+
+    def run(
+        self, additions: Sequence[SheetAddition], new_sheets: bytes | LooseParts | None = None
+    ) -> Annotated:
+        """Make the annotated workbook, once.
+
+        Parameters
+        ----------
+        additions : sequence of SheetAddition
+            What his own sheets gain, one entry a sheet.
+        new_sheets : bytes, LooseParts or None
+            A complete xlsx made by XlsxWriter, or its parts, whose sheets are put behind his own. Its
+            formulas may refer to his sheets by name, and those of added columns to its sheets.
+
+        Returns
+        -------
+        Annotated
+            The workbook, and notes.
+
+        Raises
+        ------
+        FileError
+            A sheet cannot be read, or there is no such sheet.
+        """
         self.book.remove_earlier_sheets()
         if new_sheets is not None:
             graft = Graft(Package(new_sheets), self.edit, self.book, self.styles)
@@ -166,7 +194,7 @@ class _Annotation:
             if addition is not None:
                 self.book.mark_touched(number, entry.name)
             self._sheet(entry, addition or SheetAddition(entry.name, 1, []))
-        if self.book.recalculate or self.book.gone or self.reader.added:
+        if self.book.recalculate or self.book.gone or self.old_book.added_columns():
             self.book.drop_calculation_chain()
         self._write_styles()
         self.book.write()
@@ -182,9 +210,7 @@ class _Annotation:
                 message = f"has two additions for sheet '{addition.sheet}'; give one"
                 raise FileError(message, self.package.place)
             if name not in entries:
-                there = ", ".join(one.name for one in entries.values()) or "none"
-                message = f"has no sheet '{addition.sheet}' to annotate; it has {there}"
-                raise FileError(message, self.package.place)
+                self._no_sheet(addition.sheet)
             by_name[name] = addition
         touched = self.old_book.touched_sheets()
         return [
@@ -193,8 +219,19 @@ class _Annotation:
             if name in by_name or name in touched
         ]
 
+    def _no_sheet(self, name: str) -> NoReturn:
+        there = ", ".join(one.name for one in self.book.kept if one.is_worksheet) or "none"
+        message = f"has no sheet '{name}' to annotate; it has {there}"
+        raise FileError(message, self.package.place)
+
+    def _sheet_read(self, entry: SheetEntry) -> SheetRead:
+        """Read a sheet, its values left out, where that is not done already."""
+        if self._reader is None:
+            self._reader = BookReader(self.package, self.old_book)
+        return self._read.pop(entry.name, None) or self._reader.read(entry, keep=False)
+
     def _sheet(self, entry: SheetEntry, addition: SheetAddition) -> None:
-        read = self.reader.read(entry)
+        read = self._sheet_read(entry)
         placed = self._placed(read, addition)
         sheet = SheetEdit(read, placed, addition.header_row, self.styles)
         self.notes += [f"Sheet '{entry.name}': {note}" for note in sheet.widths()]
@@ -206,9 +243,8 @@ class _Annotation:
         for _, areas in sorted(sheet.rows.areas(), key=lambda one: placed_order(placed, one[0])):
             self.marked_columns += 1
             self.book.mark_column(self.marked_columns, entry.name, areas)
-        content = Squeezed(sheet.chunks())
+        self.edit.replace(read.xml.name, sheet.chunks())
         self.book.recalculate = self.book.recalculate or sheet.rows.has_formulas
-        self.edit.replace(read.xml.name, content)
 
     def _placed(self, read: SheetRead, addition: SheetAddition) -> list[PlacedColumn]:
         positions = as_sheet(read).added_columns(len(addition.columns))
@@ -223,8 +259,7 @@ class _Annotation:
         edit = NotesEdit(self.edit, entry.part or "")
         edit.remove_own()
         wanted = {(one.row, one.column): one.note for one in addition.marks if one.note}
-        for one, cells in zip(sheet.rows.columns, sheet.rows.cells, strict=True):
-            wanted |= {(row, one.column): cell.note for row, cell in cells.items() if cell.note}
+        wanted |= sheet.rows.notes()
         taken = edit.taken() & wanted.keys()
         if taken:
             self.notes.append(
@@ -258,7 +293,7 @@ def placed_order(placed: Sequence[PlacedColumn], column: int) -> int:
 
 def _with_renamed(column: AddedColumn, names: dict[str, str]) -> AddedColumn:
     """Let a column's formulas follow new sheets that had to be renamed."""
-    if all(old == new for old, new in names.items()):
+    if all(old == new for old, new in names.items()) or isinstance(column.cells, PackedColumn):
         return column
     cells = {
         row: OutCell(

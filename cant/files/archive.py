@@ -111,6 +111,10 @@ class Archive:
             self._damaged(f"its part {name} does not have the stated size and checksum")
         return content
 
+    def pieces(self, name: str) -> Iterator[bytes]:
+        """Unpack a member, in pieces of any size."""
+        yield self.read(name)
+
     def packed(self, member: Member) -> memoryview:
         """Give a member's bytes as they are stored."""
         start = self._content_start(member)
@@ -237,6 +241,10 @@ class Packed:
     size: int
     content: bytes | memoryview
 
+    def unpacked(self) -> bytes:
+        """Give the content as it was before it was compressed."""
+        return zlib.decompress(self.content, -15) if self.method == DEFLATED else bytes(self.content)
+
 
 def copied(archive: Archive, name: str) -> Packed:
     """Take over a member without unpacking it."""
@@ -278,8 +286,8 @@ def packed(name: str, chunks: Iterable[bytes], level: int = 4) -> Packed:
     return Packed(name.encode(), _UTF8_NAME, DEFLATED, 0, first_of_1980, crc, size, b"".join(out))
 
 
-def write_archive(members: Iterable[Packed]) -> bytes:
-    """Put members together to a zip file."""
+def archive_pieces(members: Iterable[Packed]) -> list[bytes | memoryview]:
+    """Put members together to a zip file, given in pieces so that it need not stand in memory twice."""
     body: list[bytes | memoryview] = []
     directory: list[bytes] = []
     offset = 0
@@ -293,4 +301,4 @@ def write_archive(members: Iterable[Packed]) -> bytes:
         offset += len(header) + len(one.content)
     size = sum(map(len, directory))
     end = _END.pack(b"PK\x05\x06", 0, 0, len(directory), len(directory), size, offset, 0)
-    return b"".join([*body, *directory, end])
+    return [*body, *directory, end]

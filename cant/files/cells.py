@@ -54,6 +54,9 @@ class CellReader:
         Texts, formats, epoch and budget of its workbook.
     ignored : sequence of CellRange
         Cells of an earlier annotation, read as if they were not there.
+    keep : bool
+        False where only the extent and the formats of the rows are wanted: ``rows`` and ``formulas`` stay
+        empty.
 
     Attributes
     ----------
@@ -71,7 +74,9 @@ class CellReader:
         Columns from 0 that are the last of some row with a cell that is at least formatted.
     """
 
-    def __init__(self, sheet: SheetXml, book: BookValues, ignored: Sequence[CellRange] = ()) -> None:
+    def __init__(
+        self, sheet: SheetXml, book: BookValues, ignored: Sequence[CellRange] = (), keep: bool = True
+    ) -> None:
         self.sheet = sheet
         self.book = book
         self.place = sheet.place
@@ -82,6 +87,7 @@ class CellReader:
         self.last_value = -1
         self.row_ends: set[int] = set()
         self.ignored = ignored
+        self._keep = keep
         self._find = _cells(sheet.prefix).findall
         self._patterns = _parts(sheet.prefix)
         self._date_styles = frozenset(str(style).encode() for style in book.formats.dates)
@@ -112,6 +118,8 @@ class CellReader:
             return
         self.last_value = max(self.last_value, len(cells) - 1)
         self.book.budget.take(plain, len(cells), self.place)
+        if not self._keep:
+            return
         index = span.number - 1
         if index >= len(self.rows):
             self.rows.extend([_BLANK_ROW] * (index - len(self.rows)))
@@ -198,7 +206,8 @@ class CellReader:
         raw = stored.group(1) if stored else b""
         formula = patterns.formula.search(inner)
         if formula:
-            self.formulas.add((row, column))
+            if self._keep:
+                self.formulas.add((row, column))
             if not raw and kind != b"str":
                 code = unescape((formula.group(1) or b"").decode("utf-8"))
                 return Uncalculated("=" + from_cell_text(code))

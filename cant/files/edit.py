@@ -7,17 +7,16 @@ nobody touched goes into the new archive as it is, still compressed.
 from __future__ import annotations
 
 import re
-import zlib
-from collections.abc import Callable, Iterable, Iterator
+from collections.abc import Callable, Iterable
 
-from cant.files.archive import Packed, copied, packed, write_archive
+from cant.files.archive import Packed, archive_pieces, copied, packed
 from cant.files.markup import Element, elements, escape_attribute
 from cant.files.package import Package, relationships_part, resolve
 
 RELATIONS = "http://schemas.openxmlformats.org/package/2006/relationships"
 OFFICE_RELATIONS = "http://schemas.openxmlformats.org/officeDocument/2006/relationships"
 _LARGE = 1 << 18
-"""Parts larger than this [bytes] are held compressed."""
+"""Parts larger than this [bytes] are held compressed, as the new archive has them."""
 
 _HEAD = '<?xml version="1.0" encoding="UTF-8" standalone="yes"?>\n'
 
@@ -83,26 +82,6 @@ def before(root: Element, order: list[str], name: str, unknown: str = "extLst") 
     return root.inner_end
 
 
-class Squeezed:
-    """Content of a part held compressed until it is written: a sheet of ours is many times its packed size.
-
-    Parameters
-    ----------
-    pieces : iterable of bytes
-        The content; it is consumed at once.
-    """
-
-    def __init__(self, pieces: Iterable[bytes]) -> None:
-        squeeze = zlib.compressobj(1)
-        self._parts = [part for piece in pieces if (part := squeeze.compress(piece))]
-        self._parts.append(squeeze.flush())
-
-    def __iter__(self) -> Iterator[bytes]:
-        stretch = zlib.decompressobj()
-        for part in self._parts:
-            yield stretch.decompress(part)
-
-
 class PackageEdit:
     """A package under edit.
 
@@ -114,7 +93,7 @@ class PackageEdit:
 
     def __init__(self, package: Package) -> None:
         self.package = package
-        self.changed: dict[str, Iterable[bytes]] = {}
+        self.changed: dict[str, bytes | Packed] = {}
         self.removed: set[str] = set()
         self._types: dict[str, str] = {}
         self._defaults: dict[str, str] = {}
@@ -128,18 +107,20 @@ class PackageEdit:
 
     def xml(self, part: str) -> bytes:
         """Give a part's XML as it is now."""
-        if part in self.changed:
-            content = b"".join(self.changed[part])
-            self.changed[part] = (content,)
-            return content
-        return self.package.plain_xml(part)
+        new = self.new_content(part)
+        return self.package.plain_xml(part) if new is None else new
+
+    def new_content(self, part: str) -> bytes | None:
+        """Give the content of a part that is new or replaced, None where it is as it was."""
+        content = self.changed.get(part)
+        return content.unpacked() if isinstance(content, Packed) else content
 
     def replace(self, part: str, content: bytes | Iterable[bytes]) -> None:
-        """Give an existing part new content."""
-        if isinstance(content, bytes) and len(content) > _LARGE:
-            self.changed[part] = Squeezed((content,))
+        """Give an existing part new content; one in pieces is compressed at once, piece by piece."""
+        if isinstance(content, bytes):
+            self.changed[part] = packed(part, (content,)) if len(content) > _LARGE else content
         else:
-            self.changed[part] = (content,) if isinstance(content, bytes) else content
+            self.changed[part] = packed(part, content)
 
     def add(self, part: str, content: bytes | Iterable[bytes], content_type: str) -> None:
         """Add a part."""
@@ -190,8 +171,8 @@ class PackageEdit:
         """Remove a relationship."""
         self._unrelated.setdefault(part, set()).add(identifier)
 
-    def build(self) -> bytes:
-        """Put the new archive together."""
+    def build(self) -> list[bytes | memoryview]:
+        """Put the new archive together, in pieces."""
         for part in self._related.keys() | self._unrelated.keys():
             self._write_relations(part)
         self._write_types()
@@ -201,9 +182,9 @@ class PackageEdit:
         for name in archive.members:
             if name in self.removed:
                 continue
-            members.append(packed(name, left.pop(name)) if name in left else copied(archive, name))
-        members += [packed(name, content) for name, content in left.items()]
-        return write_archive(members)
+            members.append(_member(name, left.pop(name)) if name in left else copied(archive, name))
+        members += [_member(name, content) for name, content in left.items()]
+        return archive_pieces(members)
 
     def _write_relations(self, part: str) -> None:
         name = self.package.name_of(relationships_part(part)) or relationships_part(part)
@@ -248,6 +229,10 @@ class PackageEdit:
             changes.append(into(data, root, new.encode()))
         if changes:
             self.replace(name, changed(data, changes))
+
+
+def _member(name: str, content: bytes | Packed) -> Packed:
+    return content if isinstance(content, Packed) else packed(name, (content,))
 
 
 def all_targets(package: Package, skip: Callable[[str], bool]) -> set[str]:

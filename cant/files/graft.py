@@ -7,7 +7,7 @@ from __future__ import annotations
 
 import posixpath
 import re
-from collections.abc import Iterable, Mapping
+from collections.abc import Iterable, Iterator, Mapping
 
 from cant.files.book import Book, SheetEntry
 from cant.files.book_edit import BookEdit, NewName, quoted
@@ -17,7 +17,7 @@ from cant.files.package import Package, Relationship, relationships_part
 from cant.files.style_edit import EMPTY_STYLES, StyleEdit
 
 _STRING_CELL = re.compile(rb'<c r="([A-Z]{1,3}[0-9]+)"((?: s="[0-9]+")?) t="s"><v>([0-9]+)</v></c>')
-_STYLE = re.compile(rb'(<(?:c r="[A-Z0-9]+"|row [^>]*?|col [^>]*?)) (s|style)="([0-9]+)"')
+_STYLE = re.compile(rb'(<(?:c r="[A-Z0-9]+"|row [^>]*?|col [^>]*?) (?:s|style)=")([0-9]+)(?=")')
 _CONDITIONAL_STYLE = re.compile(rb' (\w*[dD]xfId)="([0-9]+)"')
 _SELECTED = re.compile(rb' tabSelected="1"')
 _METADATA = re.compile(rb' cm="\d+"')
@@ -27,6 +27,8 @@ _LOCATION = re.compile(rb'( location=")([^"]*)(")')
 _TABLE_ID = re.compile(rb'(<table [^>]*?\bid=")(\d+)(")')
 _TABLE_NAMES = re.compile(rb'( (?:name|displayName)=")([^"]*)(")')
 _MAX_SHEET_NAME = 31
+_ADAPTED = (".xml", ".vml")
+_ROW_END = b"</row>"
 
 
 class Graft:
@@ -52,6 +54,7 @@ class Graft:
         part = source.related(self.own.part, "styles")
         data = source.plain_xml(part) if part else EMPTY_STYLES
         self.cell_styles, self.conditional = styles.take_over(StyleEdit(data, part or "", source.place))
+        self._style_numbers = {b"%d" % old: b"%d" % new for old, new in enumerate(self.cell_styles)}
         self.strings = self._strings()
         self.renamed = self._names()
         self._parts: dict[str, str] = {}
@@ -107,10 +110,11 @@ class Graft:
         new = self.edit.free_part(stem.rstrip("0123456789"), extension)
         self._parts[part] = new
         self.edit.add(new, b"", self.source.content_type(part))  # takes the name before the parts below
-        content = self.source.archive.read(part)
-        if extension in (".xml", ".vml"):
-            content = self._adapted(part, content)
-        self.edit.replace(new, content)
+        if part.startswith("xl/worksheets/"):
+            self.edit.replace(new, map(self._adapted_sheet, whole_rows(self.source.source.pieces(part))))
+        else:
+            content = self.source.source.read(part)
+            self.edit.replace(new, self._adapted(part, content) if extension in _ADAPTED else content)
         relations = list(self.source.relationships(part).values())
         if relations:
             self._copy_relations(new, relations)
@@ -136,22 +140,23 @@ class Graft:
         self.edit.replace(relationships_part(new), text.encode("utf-8"))
 
     def _adapted(self, part: str, content: bytes) -> bytes:
-        """Fit a part's XML to the target: styles, texts, names of sheets, and numbers that must be unique."""
+        """Fit a part's XML to the target: names of sheets, and numbers that must be unique."""
         content = self._renamed_formulas(content)
-        if part.startswith("xl/worksheets/"):
-            return self._adapted_sheet(content)
-        if part.startswith("xl/tables/"):
-            return self._adapted_table(content)
-        return content
+        return self._adapted_table(content) if part.startswith("xl/tables/") else content
 
     def _adapted_sheet(self, content: bytes) -> bytes:
-        content = _STYLE.sub(self._style, content)
-        content = _STRING_CELL.sub(self._inline, content)
-        content = _METADATA.sub(b"", content)
-        return _SELECTED.sub(b"", _CONDITIONAL_STYLE.sub(self._conditional_style, content))
-
-    def _style(self, match: re.Match[bytes]) -> bytes:
-        return b'%s %s="%d"' % (match[1], match[2], self.cell_styles[int(match[3])])
+        """Fit a stretch of a worksheet to the target, rows whole: styles, texts, names of sheets."""
+        content = self._renamed_formulas(content)
+        pieces = _STYLE.split(content)
+        pieces[2::3] = [self._style_numbers[number] for number in pieces[2::3]]
+        content = b"".join(pieces)
+        if self.strings:
+            content = _STRING_CELL.sub(self._inline, content)
+        if b' cm="' in content:
+            content = _METADATA.sub(b"", content)
+        if b"<sheetData" in content or not content.endswith(_ROW_END):
+            content = _SELECTED.sub(b"", _CONDITIONAL_STYLE.sub(self._conditional_style, content))
+        return content
 
     def _conditional_style(self, match: re.Match[bytes]) -> bytes:
         return b' %s="%d"' % (match[1], self.conditional[int(match[2])])
@@ -185,7 +190,7 @@ class Graft:
         """Give the table parts that the target has so far."""
         names = self.edit.package.archive.members.keys() - self.edit.removed | self.edit.changed.keys()
         tables = [name for name in names if name.startswith("xl/tables/") and name.endswith(".xml")]
-        return [self.edit.xml(name) for name in tables if self.edit.changed.get(name) != (b"",)]
+        return [self.edit.xml(name) for name in tables if self.edit.changed.get(name) != b""]
 
     def _renamed_formulas(self, content: bytes) -> bytes:
         if all(old == new for old, new in self.renamed.items()):
@@ -200,6 +205,18 @@ class Graft:
             return match[1] + escape_attribute(text).encode("utf-8") + match[3]
 
         return _LOCATION.sub(location, _FORMULAS.sub(formula, content))
+
+
+def whole_rows(pieces: Iterable[bytes]) -> Iterator[bytes]:
+    """Cut a worksheet that comes in pieces so that each ends behind a row, and the last holds the rest."""
+    left = b""
+    for piece in pieces:
+        left += piece
+        cut = left.rfind(_ROW_END)
+        if cut >= 0:
+            yield left[: cut + len(_ROW_END)]
+            left = left[cut + len(_ROW_END) :]
+    yield left
 
 
 _TOKEN = re.compile(r"""("(?:[^"]|"")*")|'((?:[^']|'')+)'!|([^\W\d][\w.]*)!""")

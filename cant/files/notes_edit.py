@@ -100,9 +100,8 @@ class NotesEdit:
 
     def _drawing_data(self) -> bytes:
         assert self.drawing is not None  # noqa: S101 - callers have looked
-        if self.drawing in self.edit.changed:
-            return b"".join(self.edit.changed[self.drawing])
-        return self.edit.package.archive.read(self.drawing)
+        new = self.edit.new_content(self.drawing)
+        return self.edit.package.archive.read(self.drawing) if new is None else new
 
     def taken(self) -> set[Cell]:
         """Give the cells that have a note or a thread."""
@@ -188,8 +187,8 @@ class NotesEdit:
         used = [0]
         for name in (package.archive.members.keys() - self.edit.removed) | self.edit.changed.keys():
             if name.lower().endswith(".vml"):
-                new = self.edit.changed.get(name)
-                content = b"".join(new) if new is not None else package.archive.read(name)
+                new = self.edit.new_content(name)
+                content = package.archive.read(name) if new is None else new
                 used += [one for found in _IDMAP.findall(content) for one in _numbers(found[1])]
         first = max(used) + 1
         return free + list(range(first, first + count - len(free)))

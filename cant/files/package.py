@@ -9,6 +9,7 @@ from urllib.parse import unquote
 
 from cant.errors import FileError
 from cant.files.archive import Archive
+from cant.files.loose_parts import LooseParts
 from cant.files.markup import Element, elements, is_plain, plain, utf8_part
 
 CONTENT_TYPES = "[Content_Types].xml"
@@ -46,8 +47,8 @@ class Package:
 
     Parameters
     ----------
-    data : bytes
-        The whole file.
+    data : bytes or LooseParts
+        The whole file, or its parts in a folder.
     file : str
         Its name, for messages.
 
@@ -57,10 +58,10 @@ class Package:
         See :class:`cant.files.archive.Archive`; also where there is no list of content types.
     """
 
-    def __init__(self, data: bytes, file: str = "") -> None:
-        self.archive = Archive(data, file)
-        self.place = self.archive.place
-        self._names = {name.casefold(): name for name in self.archive.members}
+    def __init__(self, data: bytes | LooseParts, file: str = "") -> None:
+        self.source = data if isinstance(data, LooseParts) else Archive(data, file)
+        self.place = self.source.place
+        self._names = {name.casefold(): name for name in self.source.members}
         types = self.name_of(CONTENT_TYPES)
         if types is None:
             self.damaged("it has no list of its content types")
@@ -73,6 +74,14 @@ class Package:
         self._defaults = {
             one.get("Extension").casefold(): one.get("ContentType") for one in root.all("Default")
         }
+
+    @property
+    def archive(self) -> Archive:
+        """The archive that the package is; one of loose parts has none and cannot be edited in place."""
+        if isinstance(self.source, LooseParts):
+            message = "a package of loose parts is no archive"
+            raise TypeError(message)
+        return self.source
 
     def damaged(self, what: str) -> NoReturn:
         """Refuse a package that does not hold together."""
@@ -99,7 +108,7 @@ class Package:
         name = self.name_of(part)
         if name is None:
             self.damaged(f"its part {part} is missing")
-        return utf8_part(self.archive.read(name), part, self.place)
+        return utf8_part(self.source.read(name), part, self.place)
 
     def plain_xml(self, part: str) -> bytes:
         """Give a part as checked UTF-8 XML in plain notation."""

@@ -57,9 +57,9 @@ def rows_as_new_workbook(workbook: Workbook) -> bytes:
     styles = StyleEdit(package.plain_xml(part), part, Place())
     for entry, sheet in zip(book.sheets, workbook.sheets, strict=True):
         if entry.part is not None:
-            edit.replace(entry.part, list(_filled(package.xml(entry.part), sheet, styles)))
+            edit.replace(entry.part, _filled(package.xml(entry.part), sheet, styles))
     edit.replace(part, styles.result())
-    return edit.build()
+    return b"".join(edit.build())
 
 
 def sheet_name_in_new_workbook(workbook: Workbook, index: int) -> str:

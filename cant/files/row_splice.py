@@ -8,8 +8,9 @@ from dataclasses import dataclass
 
 from cant.errors import FileError, column_letter
 from cant.files.additions import AddedColumn, OutCell
-from cant.files.cell_xml import cell_xml
+from cant.files.cell_xml import BLANK, NUMBER, held, held_cell
 from cant.files.grid import CellRange
+from cant.files.packed_rows import PackedColumn
 from cant.files.sheet_xml import COLUMNS, MAX_ROW, RowSpan
 from cant.files.sheets import SheetRead
 from cant.files.style_edit import StyleEdit, StyleNeed
@@ -47,9 +48,13 @@ class RowSplice:
         self.read = read
         self.styles = styles
         self.columns = sorted(columns, key=lambda one: one.column)
-        self.cells = [self._cells_of(one.content, header_row) for one in self.columns]
+        self.header_row = header_row
+        self._heads = [_heading(one.content) for one in self.columns]
         self.letters = [column_letter(one.column) for one in self.columns]
-        self.rows = sorted({row for cells in self.cells for row in cells})
+        rows: set[int] = {header_row} if self.columns else set()
+        for one in self.columns:
+            rows.update(one.content.cells)
+        self.rows = sorted(rows)
         self.last_used = read.next_column - 1
         self.has_formulas = False
         self._style_texts: dict[tuple[int, str | None, str | None, bool], str] = {}
@@ -67,16 +72,22 @@ class RowSplice:
             message = f"has no row {self.rows[0] if self.rows[0] < 1 else self.rows[-1]} to write to"
             raise FileError(message, self.read.xml.place)
 
-    @staticmethod
-    def _cells_of(content: AddedColumn, header_row: int) -> dict[int, OutCell]:
-        cells = dict(content.cells)
-        cells[header_row] = OutCell(content.heading, fill=content.heading_fill, note=content.heading_note)
-        return cells
-
     def areas(self) -> Iterator[tuple[int, list[CellRange]]]:
         """Give for each added column, in order, the stretches of rows that it fills."""
-        for one, cells in zip(self.columns, self.cells, strict=True):
-            yield one.column, stretches(sorted(cells), one.column)
+        for one in self.columns:
+            yield one.column, stretches(sorted({self.header_row, *one.content.cells}), one.column)
+
+    def notes(self) -> dict[tuple[int, int], str]:
+        """Give the notes at added cells, by row from 1 and column from 0."""
+        found: dict[tuple[int, int], str] = {}
+        for one, head in zip(self.columns, self._heads, strict=True):
+            cells = one.content.cells
+            if not isinstance(cells, PackedColumn):  # packed cells have no notes
+                found |= {(row, one.column): cell.note for row, cell in cells.items() if cell.note}
+            found.pop((self.header_row, one.column), None)
+            if head.note:
+                found[self.header_row, one.column] = head.note
+        return found
 
     def chunks(self) -> Iterator[bytes]:
         """Give the new content of ``sheetData`` in pieces."""
@@ -175,24 +186,38 @@ class RowSplice:
     def _row_text(self, row: int) -> str:
         """Give the new cells of a row as one text."""
         base, number, out = self._base_style(row), str(row), []
-        for placed, letters, cells in zip(self.columns, self.letters, self.cells, strict=True):
-            cell = cells.get(row)
-            if cell is not None:
-                out.append(self._cell(letters + number, cell, placed.content, base))
+        for place, (placed, letters) in enumerate(zip(self.columns, self.letters, strict=True)):
+            text = self._text_at(row, place, letters + number, placed.content, base)
+            if text is not None:
+                out.append(text)
         return "".join(out)
 
     def _row_cells(self, row: int, taken: dict[int, bytes]) -> Iterator[tuple[int, str]]:
         """Give the new cells of a row, left to right; ``taken`` are the user's blank cells in their place."""
         base = self._base_style(row)
-        for placed, letters, cells in zip(self.columns, self.letters, self.cells, strict=True):
-            cell = cells.get(row)
+        for place, (placed, letters) in enumerate(zip(self.columns, self.letters, strict=True)):
             own = taken.get(placed.column)
-            if cell is None:
-                if own is not None:
-                    yield placed.column, own.decode("utf-8")
-                continue
             style = _style_of(own) if own is not None else base
-            yield placed.column, self._cell(f"{letters}{row}", cell, placed.content, style)
+            text = self._text_at(row, place, f"{letters}{row}", placed.content, style)
+            if text is not None:
+                yield placed.column, text
+            elif own is not None:
+                yield placed.column, own.decode("utf-8")
+
+    def _text_at(self, row: int, place: int, name: str, column: AddedColumn, base: int) -> str | None:
+        """Give the XML of one new cell, None where its column has none in the row."""
+        if row == self.header_row:
+            return self._cell(name, self._heads[place], column, base)
+        cells = column.cells
+        if isinstance(cells, PackedColumn):
+            contents = cells.rows.contents(row)
+            content = contents[cells.number] if contents is not None else BLANK
+            if content == BLANK:
+                return None
+            style = self._style((base, column.number_format, cells.fills.get(content), content[0] == NUMBER))
+            return held_cell(self._p, name, style, content)
+        cell = cells.get(row)
+        return None if cell is None else self._cell(name, cell, column, base)
 
     def _base_style(self, row: int) -> int:
         """Give the style of the row's last used cell."""
@@ -204,14 +229,21 @@ class RowSplice:
     def _cell(self, name: str, cell: OutCell, column: AddedColumn, base: int) -> str:
         value = cell.value
         is_number = value is not None and not isinstance(value, str | bool)
-        key = (base, cell.number_format or column.number_format, cell.fill, is_number)
+        style = self._style((base, cell.number_format or column.number_format, cell.fill, is_number))
+        if cell.formula is not None:
+            self.has_formulas = True
+        return held_cell(self._p, name, style, held(value), cell.formula)
+
+    def _style(self, key: tuple[int, str | None, str | None, bool]) -> str:
         style = self._style_texts.get(key)
         if style is None:
             number = self.styles.cell_style(StyleNeed(*key))
             style = self._style_texts[key] = f' s="{number}"' if number else ""
-        if cell.formula is not None:
-            self.has_formulas = True
-        return cell_xml(self._p, name, style, value, cell.formula)
+        return style
+
+
+def _heading(content: AddedColumn) -> OutCell:
+    return OutCell(content.heading, fill=content.heading_fill, note=content.heading_note)
 
 
 def _style_of(cell: bytes) -> int:

@@ -160,7 +160,7 @@ class SheetEdit:
 
     def _column_formats(self) -> Iterator[tuple[str, str, int]]:
         for placed in self.columns:
-            rows = self._data_rows(placed.content)
+            rows = self._data_rows(placed.content) if placed.content.conditional else []
             if not rows:
                 continue
             cells = reference(CellRange(rows[0], placed.column, rows[-1], placed.column))

@@ -84,8 +84,15 @@ class BookReader:
         styles: Element | None = self.package.tree(part) if part else None
         return CellFormats(styles)
 
-    def read(self, entry: SheetEntry) -> SheetRead:
+    def read(self, entry: SheetEntry, keep: bool = True) -> SheetRead:
         """Read one worksheet.
+
+        Parameters
+        ----------
+        entry : SheetEntry
+            The worksheet.
+        keep : bool
+            False where its values are not wanted.
 
         Raises
         ------
@@ -98,7 +105,7 @@ class BookReader:
         raw = self.package.archive.read(entry.part)
         self.values.budget.foresee(raw, place)
         xml = SheetXml(utf8_part(raw, entry.part, place), entry.part, place)
-        cells = CellReader(xml, self.values, self.added.get(entry.name.casefold(), ()))
+        cells = CellReader(xml, self.values, self.added.get(entry.name.casefold(), ()), keep)
         cells.read()
         return SheetRead(entry, xml, cells, xml.merged(), self._tables(entry.part))
 

@@ -5,20 +5,20 @@ Decides what is written where; how it gets into the file without loss is the bus
 
 from __future__ import annotations
 
-from collections.abc import Callable
+from collections.abc import Callable, Mapping
 from dataclasses import dataclass, field
+from functools import partial
 from typing import TYPE_CHECKING
 
-from cant.errors import column_letter
 from cant.files.additions import AddedColumn, CellMark, ConditionalFill, OutCell, SheetAddition
-from cant.files.annotate import annotate, can_annotate, free_sheet_name
-from cant.files.grid import Workbook
+from cant.files.annotate import Annotation, can_annotate
 from cant.files.open import open_workbook
+from cant.files.packed_rows import PackedRows
 from cant.files.rewrite import rows_as_new_workbook, sheet_name_in_new_workbook
 from cant.model.display import Display
 from cant.model.reading import Reading, RejectedRow, SheetReading
 from cant.writing.book.status import FILLS, NOT_ASSESSED
-from cant.writing.columns import DECISION, NEEDED, WORDS, Column, Record, class_columns
+from cant.writing.columns import DECISION, NEEDED, WORDS, Cell, Column, Record, class_columns
 from cant.writing.own_units import units_of_sheet
 from cant.writing.plan_sheets import PlanSheets, footer_of, holds_all
 from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
@@ -26,7 +26,6 @@ from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
 if TYPE_CHECKING:
     from cant.writing.planned import PlannedLine
 
-_KEPT = 100_000
 OUTSIDE = "F2B8B0"
 """Ground of a proposed cant outside the curve's own bounds."""
 
@@ -37,17 +36,22 @@ class AnnotatedFile:
 
     Attributes
     ----------
-    data : bytes
-        The file.
+    pieces : list of bytes
+        The file, in pieces.
     notes : list of str
         What a person should know: what could not be added, or that it is a new workbook and why.
     suffix : str
         What its name has to end in: ``.xlsx``, or ``.xlsm`` where it holds macros.
     """
 
-    data: bytes
+    pieces: list[bytes | memoryview]
     notes: list[str] = field(default_factory=list)
     suffix: str = ".xlsx"
+
+    @property
+    def data(self) -> bytes:
+        """The file as a whole."""
+        return b"".join(self.pieces)
 
 
 class AddedColumns:
@@ -59,42 +63,28 @@ class AddedColumns:
     def __init__(self, columns: list[Column], display: Callable[[str], Display]) -> None:
         self._columns = columns
         self._display = display
-        self._cells: dict[str, list[list[dict[int, OutCell]]]] = {}
-        self._taken: dict[tuple[str, int], int] = {}
-        self._made: dict[tuple[float | str, str | None], OutCell] = {}
+        self._groups: dict[str, list[PackedRows]] = {}
 
     def add(self, record: Record) -> None:
         """Take the cells of one curve."""
-        cells = self._place(record["sheet"], record["row"])
         display = self._display(record["sheet"])
-        for column, into in zip(self._columns, cells, strict=True):
-            value = column.cell(record, display)
-            if value is None:
-                continue
-            if isinstance(value, str):
-                value = value[:MAX_TEXT]
-            fill = FILLS.get(str(value)) if column.heading == "Status" else None
-            into[record["row"]] = self._cell(value, fill)
-
-    def _cell(self, value: float | str, fill: str | None) -> OutCell:
-        """Give a cell; of equal ones there is one object, for a register holds millions."""
-        found = self._made.get((value, fill))
-        if found is None:
-            found = OutCell(value, fill=fill)
-            if len(self._made) < _KEPT:
-                self._made[value, fill] = found
-        return found
+        values = [column.cell(record, display) for column in self._columns]
+        self._put(record["sheet"], record["row"], values)
 
     def add_rejected(self, row: RejectedRow) -> None:
         """Take the cells of a row that was refused: its status, and why."""
-        if self._taken.get((row.sheet, row.row)):
+        if any(row.row in group for group in self._groups.get(row.sheet, ())):
             return
-        cells = self._place(row.sheet, row.row)
-        for column, into in zip(self._columns, cells, strict=True):
-            if column.heading == "Status":
-                into[row.row] = OutCell(NOT_ASSESSED, fill=FILLS[NOT_ASSESSED])
-            elif column.heading == "Reason":
-                into[row.row] = OutCell(row.problem[:MAX_TEXT])
+        shown = {"Status": NOT_ASSESSED, "Reason": row.problem}
+        self._put(row.sheet, row.row, [shown.get(column.heading) for column in self._columns])
+
+    def _put(self, sheet: str, row: int, values: list[Cell]) -> None:
+        groups = self._groups.setdefault(sheet, [])
+        group = next((one for one in groups if row not in one), None)
+        if group is None:
+            group = PackedRows(len(self._columns))
+            groups.append(group)
+        group.put(row, [value[:MAX_TEXT] if isinstance(value, str) else value for value in values])
 
     def of(self, sheet: str, letters: Callable[[int], list[str]]) -> list[AddedColumn]:
         """Give the columns that a sheet gains, in order.
@@ -107,11 +97,15 @@ class AddedColumns:
         """
         added: list[AddedColumn] = []
         display = self._display(sheet)
-        groups = self._cells.get(sheet, [[{} for _ in self._columns]])
+        groups = self._groups.get(sheet, [PackedRows(len(self._columns))])
         every = letters(len(groups) * len(self._columns))
         for number, group in enumerate(groups):
             suffix = f" [{number + 1}]" if number else ""
             own = every[number * len(self._columns) :]
+            cells_of = [
+                group.column(place, FILLS if column.heading == "Status" else None)
+                for place, column in enumerate(self._columns)
+            ]
             added += [
                 AddedColumn(
                     heading=column.title(display) + suffix,
@@ -121,12 +115,12 @@ class AddedColumns:
                     heading_note=column.help or None,
                     conditional=self._conditions(column, cells, own),
                 )
-                for column, cells in zip(self._columns, group, strict=True)
+                for column, cells in zip(self._columns, cells_of, strict=True)
             ]
         return added
 
     def _conditions(
-        self, column: Column, cells: dict[int, OutCell], letters: list[str]
+        self, column: Column, cells: Mapping[int, OutCell], letters: list[str]
     ) -> list[ConditionalFill]:
         """Let a proposed cant that somebody edits show where it leaves the curve's own bounds."""
         if column.heading != "Proposed cant" or not cells:
@@ -137,14 +131,6 @@ class AddedColumns:
         below = f"AND(ISNUMBER({low}),{cant}<{low}-0.001)"
         above = f"AND(ISNUMBER({high}),{cant}>{high}+0.001)"
         return [ConditionalFill(f"AND(ISNUMBER({cant}),OR({below},{above}))", OUTSIDE)]
-
-    def _place(self, sheet: str, row: int) -> list[dict[int, OutCell]]:
-        number = self._taken.get((sheet, row), 0)
-        self._taken[sheet, row] = number + 1
-        groups = self._cells.setdefault(sheet, [])
-        while len(groups) <= number:
-            groups.append([{} for _ in self._columns])
-        return groups[number]
 
 
 def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile:
@@ -163,8 +149,8 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
         The user's workbook with columns and sheets added; where it cannot be annotated in place, a new
         workbook with the same rows, and a note that says so.
     """
-    workbook = open_workbook(data, file)
-    base, names, notes = _base(workbook, data)
+    base, names, notes = _base(data, file)
+    annotation = Annotation(base, file)
     display = planned.display
     words = WORDS if holds_all(len(planned.plan.assessed)) else WORDS[:2]
     columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *NEEDED, *words]
@@ -174,50 +160,43 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
     }
     added = AddedColumns(columns, lambda sheet: units.get(sheet, display))
     with NewSheets(footer_of(planned), LETTER if display.units == "us" else A4) as book:
-        sheets = PlanSheets(book, planned, _name_giver(workbook))
+        sheets = PlanSheets(book, planned, annotation.free_name)
         for record in planned.records():
             added.add(record)
             sheets.add(record)
         sheets.finish()
-    for row in planned.reading.rejected:
-        added.add_rejected(row)
-    marks = _marks(planned.reading)
-    target = workbook if base is data else open_workbook(base, file)
-    additions = [
-        SheetAddition(
-            names(entry.sheet),
-            entry.header_row,
-            added.of(entry.sheet, _letters(target, names(entry.sheet))),
-            marks.get(entry.sheet, []),
-        )
-        for entry in _curve_sheets(planned.reading)
-    ]
-    result = annotate(base, additions, book.data, file)
-    suffix = ".xlsm" if workbook.kind == "xlsm" and base is data else ".xlsx"
-    return AnnotatedFile(result.data, [*notes, *result.notes], suffix)
+        del sheets
+        for row in planned.reading.rejected:
+            added.add_rejected(row)
+        result = annotation.run(_additions(planned.reading, added, annotation, names), book.parts())
+    suffix = ".xlsm" if annotation.has_macros else ".xlsx"
+    return AnnotatedFile(result.pieces, [*notes, *result.notes], suffix)
 
 
-def _base(workbook: Workbook, data: bytes) -> tuple[bytes, Callable[[str], str], list[str]]:
+def _additions(
+    reading: Reading, added: AddedColumns, annotation: Annotation, names: Callable[[str], str]
+) -> list[SheetAddition]:
+    """Give what each curve sheet gains."""
+    marks = _marks(reading)
+    additions = []
+    for entry in _curve_sheets(reading):
+        sheet = names(entry.sheet)
+        columns = added.of(entry.sheet, partial(annotation.letters, sheet))
+        additions.append(SheetAddition(sheet, entry.header_row, columns, marks.get(entry.sheet, [])))
+    return additions
+
+
+def _base(data: bytes, file: str) -> tuple[bytes, Callable[[str], str], list[str]]:
     """Give the workbook to annotate, the name that each sheet bears in it, and what to say about it."""
     reason = can_annotate(data)
     if reason is None:
         return data, lambda name: name, []
-    place = {sheet.name: index for index, sheet in enumerate(workbook.sheets)}
+    workbook = open_workbook(data, file)
+    names = {
+        sheet.name: sheet_name_in_new_workbook(workbook, index) for index, sheet in enumerate(workbook.sheets)
+    }
     note = f"{workbook.file}: the plan is in a new workbook with the same rows, because {reason}"
-    return (
-        rows_as_new_workbook(workbook),
-        lambda name: sheet_name_in_new_workbook(workbook, place[name]),
-        [note],
-    )
-
-
-def _name_giver(workbook: Workbook) -> Callable[[str], str]:
-    return lambda wanted: free_sheet_name(workbook, wanted)
-
-
-def _letters(workbook: Workbook, sheet: str) -> Callable[[int], list[str]]:
-    found = next(one for one in workbook.sheets if one.name == sheet)
-    return lambda count: [column_letter(index) for index in found.added_columns(count)]
+    return rows_as_new_workbook(workbook), names.__getitem__, [note]
 
 
 def _curve_sheets(reading: Reading) -> list[SheetReading]:

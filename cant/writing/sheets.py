@@ -6,15 +6,18 @@ nothing of plans.
 
 from __future__ import annotations
 
-import io
 import math
+import tempfile
 from collections.abc import Sequence
 from dataclasses import dataclass
+from pathlib import Path
 from types import TracebackType
 from typing import Any
 
 import xlsxwriter
+from xlsxwriter.packager import Packager
 
+from cant.files.loose_parts import LooseParts
 from cant.writing.columns import Cell
 from cant.writing.fast_rows import FastSheet
 
@@ -234,16 +237,18 @@ class TableSheet:
 
 
 class NewSheets:
-    """A workbook of our own sheets; use as a context manager, then take :attr:`data`.
+    """A workbook of our own sheets, in a folder of its own that goes at the end of the context.
 
-    Attributes
+    Parameters
     ----------
-    data : bytes
-        The xlsx, once closed.
+    footer : str
+        Of every page, in XlsxWriter's notation.
+    paper : int
+        Number of the paper size.
     """
 
     def __init__(self, footer: str = "", paper: int = A4) -> None:
-        self._stream = io.BytesIO()
+        self._folder = tempfile.TemporaryDirectory(prefix="cant-")
         self.footer = footer or "&L&F  &A&RPage &P of &N"
         self.paper = paper
         options = {
@@ -251,8 +256,9 @@ class NewSheets:
             "strings_to_formulas": False,
             "strings_to_numbers": False,
             "strings_to_urls": False,
+            "tmpdir": self._folder.name,
         }
-        self.workbook = xlsxwriter.Workbook(self._stream, options)
+        self.workbook = _PartsWorkbook(str(Path(self._folder.name) / "none.xlsx"), options)
         self.plain = self.workbook.add_format({"valign": "top"})
         self.word = self.workbook.add_format({"valign": "top", "align": "left", "indent": 1})
         self.bold = self.workbook.add_format({"bold": True, "valign": "top"})
@@ -268,7 +274,6 @@ class NewSheets:
         self.box = self.workbook.add_format({"border": 1, "valign": "top", "text_wrap": True})
         self._numbers: dict[str, Any] = {}
         self._styled: dict[tuple[str | None, str, bool], Any] = {}
-        self.data = b""
 
     def cell_format(self, heading: Heading) -> Any:
         """Give the format of a column's cells, made once for each number format."""
@@ -297,14 +302,46 @@ class NewSheets:
         """Add a sheet."""
         return TableSheet(self, name)
 
+    def parts(self) -> LooseParts:
+        """Finish the workbook and give its parts, which lie there until the end of the context."""
+        if not self.workbook.fileclosed:
+            self.workbook.close()
+        return LooseParts(self.workbook.parts)
+
     def __enter__(self) -> NewSheets:
         return self
 
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
     ) -> None:
-        self.workbook.close()
-        self.data = self._stream.getvalue()
+        for sheet in self.workbook.worksheets():
+            sheet.row_data_fh.close()
+        self._folder.cleanup()
+
+
+class _PartsWorkbook(xlsxwriter.Workbook):  # type: ignore[misc]  # XlsxWriter comes without types
+    """A workbook whose parts are not put together: they are taken over into another one."""
+
+    def __init__(self, filename: str, options: dict[str, Any]) -> None:
+        super().__init__(filename, options)
+        self.parts: dict[str, Path] = {}
+
+    def _get_packager(self) -> Packager:
+        """Give the packager; a hook that XlsxWriter offers."""
+        return _PartsPackager(self.parts)
+
+
+class _PartsPackager(Packager):  # type: ignore[misc]
+    """Leaves the parts where they were written and nothing to be put into the file."""
+
+    def __init__(self, parts: dict[str, Path]) -> None:
+        super().__init__()
+        self._parts = parts
+
+    def _create_package(self) -> list[tuple[str, str, bool]]:
+        for file, name, _ in super()._create_package():
+            self._parts[name] = Path(file)
+        return []
 
 
 def _cut(value: Cell) -> Cell:

@@ -12,7 +12,7 @@ from parts import changed_parts, check_package, one_column, parts_of, simple_wor
 
 from cant.errors import FileError
 from cant.files.additions import AddedColumn, CellMark, OutCell, SheetAddition
-from cant.files.annotate import annotate, can_annotate, free_sheet_name
+from cant.files.annotate import Annotation, annotate, can_annotate
 from cant.files.open import open_workbook
 from cant.files.style_edit import EMPTY_STYLES
 
@@ -211,7 +211,7 @@ def test_new_sheet_with_a_name_that_is_taken():
     assert values(result.data, "CURVES (2)")[1] == ["='CURVES (2)'!A1&\"CURVES!\""]
     assert values(result.data)[1][2] == "='CURVES (2)'!A1"
     assert "called 'CURVES (2)'" in result.notes[0]
-    assert free_sheet_name(open_workbook(simple_workbook(TABLE), "a"), "curves") == "curves (2)"
+    assert Annotation(simple_workbook(TABLE)).free_name("curves") == "curves (2)"
 
 
 def test_local_names_follow_when_an_earlier_sheet_goes():

@@ -8,6 +8,7 @@ from collections.abc import Iterable, Mapping
 from datetime import date
 from pathlib import Path
 from typing import Any
+from zipfile import ZipFile
 
 from openpyxl import load_workbook
 from openpyxl.workbook import Workbook
@@ -33,7 +34,17 @@ def sheets_data(planned: PlannedLine) -> bytes:
         for record in planned.records():
             sheets.add(record)
         sheets.finish()
-    return book.data
+        return put_together(book)
+
+
+def put_together(book: NewSheets) -> bytes:
+    """Zip the parts of our sheets as they are."""
+    stream = io.BytesIO()
+    parts = book.parts()
+    with ZipFile(stream, "w") as archive:
+        for name in parts.members:
+            archive.writestr(name, parts.read(name))
+    return stream.getvalue()
 
 
 def values_of(data: bytes) -> Workbook:

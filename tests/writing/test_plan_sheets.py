@@ -9,6 +9,7 @@ from typing import Any
 from zipfile import ZipFile
 
 import pytest
+from book_tools import put_together
 from openpyxl import load_workbook
 from openpyxl.workbook import Workbook
 
@@ -32,7 +33,8 @@ def sheets_of(planned: PlannedLine) -> Workbook:
         for record in planned.records():
             sheets.add(record)
         sheets.finish()
-    return load_workbook(io.BytesIO(book.data), data_only=True)
+        data = put_together(book)
+    return load_workbook(io.BytesIO(data), data_only=True)
 
 
 def rows_of(book: Workbook, name: str, head: int = 1, first: int | None = None) -> Rows:
@@ -217,7 +219,8 @@ def test_charts_hold_their_data(planned: PlannedLine) -> None:
         for record in planned.records():
             sheets.add(record)
         sheets.finish()
-    with ZipFile(io.BytesIO(made.data)) as package:
+        data = put_together(made)
+    with ZipFile(io.BytesIO(data)) as package:
         charts = [package.read(name).decode() for name in package.namelist() if "charts/chart" in name]
     assert len(charts) % 3 == 0
     assert len(charts) > 0

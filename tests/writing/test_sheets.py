@@ -3,9 +3,11 @@
 from __future__ import annotations
 
 import io
+from pathlib import Path
 from zipfile import ZipFile
 
 import pytest
+from book_tools import put_together
 from openpyxl import load_workbook
 from python_calamine import CalamineWorkbook
 
@@ -32,7 +34,7 @@ def book_of(texts: list[str]) -> bytes:
         sheet.header([Heading("Text"), Heading("Number", number_format="0.0")])
         for number, text in enumerate(texts):
             sheet.row([text, float(number)])
-    return book.data
+        return put_together(book)
 
 
 def test_text_stays_text() -> None:
@@ -67,7 +69,8 @@ def test_a_blank_is_a_blank() -> None:
         sheet.row([None, "a", None, 1.5, float("nan")])
         sheet.row([])
         sheet.row(["", "b"])
-    rows = list(load_workbook(io.BytesIO(book.data))["T"].iter_rows(values_only=True))
+        data = put_together(book)
+    rows = list(load_workbook(io.BytesIO(data))["T"].iter_rows(values_only=True))
     assert rows[1:3] == [(None, "a", None, 1.5, None), (None,) * 5]
     assert rows[3][1] == "b"
 
@@ -80,10 +83,28 @@ def test_rows_of_both_ways_stand_in_order() -> None:
         sheet.row([1.0, "x " * 60])
         sheet.row([2.5, "short"])
         sheet.line("end", 3.0)
-    read = load_workbook(io.BytesIO(book.data))["T"]
+        data = put_together(book)
+    read = load_workbook(io.BytesIO(data))["T"]
     column = [cell.value for cell in read["A"]]
     assert column == ["title", "A", 1, 2.5, "end"]
     assert read["A3"].number_format == "0.00"
     assert read.row_dimensions[3].height == 45
     assert read.row_dimensions[4].height is None
     assert read.dimensions == "A1:B5"
+
+
+@pytest.mark.parametrize("fails", [True, False])
+def test_nothing_of_the_making_is_left_behind(
+    tmp_path: Path, monkeypatch: pytest.MonkeyPatch, fails: bool
+) -> None:
+    monkeypatch.setattr("tempfile.tempdir", str(tmp_path))
+    try:
+        with NewSheets() as book:
+            book.table("T").line("something")
+            assert list(tmp_path.rglob("*"))
+            if fails:
+                raise KeyboardInterrupt
+            assert "xl/worksheets/sheet1.xml" in book.parts().members
+    except KeyboardInterrupt:
+        assert fails
+    assert not list(tmp_path.rglob("*"))
