@@ -7,7 +7,7 @@ Two that are made at the same moment both hold, because no event repeats what an
 from __future__ import annotations
 
 import secrets
-from collections.abc import Sequence
+from collections.abc import Mapping, Sequence
 from dataclasses import dataclass
 from typing import Any
 
@@ -47,6 +47,11 @@ class Taken:
         """Give it as JSON values."""
         return {"key": self.key, "words": self.words, "decision": self.decision.as_json()}
 
+    @classmethod
+    def from_plain(cls, plain: Mapping[str, Any]) -> Taken:
+        """Give what :meth:`as_plain` wrote."""
+        return cls(plain["key"], plain["words"], read_decision(plain["decision"]))
+
 
 def take(words: str, decision: Decision) -> dict[str, Any]:
     """Give the event that takes a change."""
@@ -77,8 +82,7 @@ def follow(held: Sequence[Taken], event: dict[str, Any]) -> tuple[Taken, ...]:
     """
     if "back" in event:
         return tuple(one for one in held if one.key != event["back"])
-    plain = event["take"]
-    new = Taken(plain["key"], plain["words"], read_decision(plain["decision"]))
+    new = Taken.from_plain(event["take"])
     rest = (one for one in held if not (new.holds_cant and one.holds_cant and one.on == new.on))
     return (*rest, new)
 

@@ -89,6 +89,11 @@ class Decided:
                 changes = follow(changes, json.loads(decision.content))
                 plain = [one.as_plain() for one in changes]
                 texts[CHANGE] = as_text(plain or None)
+        return cls.of_texts(texts)
+
+    @classmethod
+    def of_texts(cls, texts: Mapping[str, str]) -> Decided:
+        """Give what holds from the ruling text of each kind, as :attr:`texts` has it."""
         values = {kind: json.loads(content) for kind, content in texts.items()}
         traffic, limits, settings = (values.get(kind) for kind in ("traffic", "limits", "settings"))
         return cls(
@@ -97,7 +102,7 @@ class Decided:
             limits=None if limits is None else limits_from_plain(limits),
             settings=None if settings is None else Settings.model_validate(settings),
             confirmed=bool(values.get("confirmed")),
-            changes=changes,
+            changes=tuple(Taken.from_plain(plain) for plain in values.get(CHANGE) or ()),
             texts=texts,
         )
 

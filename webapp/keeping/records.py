@@ -103,13 +103,14 @@ class KeptLimitsRow(Base):
 
 
 class WorkRow(Base):
-    """Long work that is waiting, under way or ended: the queue."""
+    """Long work that is waiting, under way or ended: the queue. The same work of a plan stands here once."""
 
     __tablename__ = "work"
+    __table_args__ = (UniqueConstraint("plan_id", "key"),)
 
     id: Mapped[int] = mapped_column(primary_key=True)
     address: Mapped[str] = mapped_column(String(64), unique=True)
-    key: Mapped[str] = mapped_column(String(160), index=True)
+    key: Mapped[str] = mapped_column(String(160))
     plan_id: Mapped[int] = mapped_column(ForeignKey("plans.id", ondelete="CASCADE"), index=True)
     asked_by: Mapped[str] = mapped_column(String(64), index=True)
     kind: Mapped[str] = mapped_column(String(16))

@@ -41,7 +41,7 @@ def _work() -> None:
         "work",
         _key(),
         sa.Column("address", sa.String(64), nullable=False, unique=True),
-        sa.Column("key", sa.String(160), nullable=False, index=True),
+        sa.Column("key", sa.String(160), nullable=False),
         _of("plan_id", "plans", "CASCADE"),
         sa.Column("asked_by", sa.String(64), nullable=False, index=True),
         sa.Column("kind", sa.String(16), nullable=False),
@@ -55,6 +55,7 @@ def _work() -> None:
         _moment("made"),
         _moment("beat", needed=False),
         _moment("ended", needed=False),
+        sa.UniqueConstraint("plan_id", "key"),
     )
     op.create_table(
         "results",
