@@ -2,23 +2,35 @@
 
 from __future__ import annotations
 
+import contextlib
+import ctypes
 import ipaddress
 import logging
-import socket
+import os
+import signal
 import sys
-
-from waitress.server import create_server
+from collections.abc import Iterator
+from dataclasses import replace
+from typing import Any
 
 from cant.errors import FileError
 from webapp.app import create_app
 from webapp.config import Config
+from webapp.context import EXTENSION, Running
+from webapp.guarding.access_log import log_to
+from webapp.guarding.cleaning import Cleaner
+from webapp.guarding.listening import Server, make_server
 
-THREADS = 8
 LOOPBACK_HOSTS = ("localhost", "127.0.0.1", "[::1]", "::1")
+STOPPED_AT_ONCE = 1
+FILES_BESIDE = 200
+"""Files that are open beside the connections: database, logs, uploads."""
+M_ARENA_MAX = -8
+ARENAS = 2
 
 
 def run(host: str = "127.0.0.1", port: int = 8000) -> None:
-    """Serve until interrupted.
+    """Serve until told to stop, by SIGINT or SIGTERM; a second one stops at once.
 
     Parameters
     ----------
@@ -32,26 +44,30 @@ def run(host: str = "127.0.0.1", port: int = 8000) -> None:
     CantError
         The address is taken, or the database cannot be used.
     """
-    logging.basicConfig(level=logging.INFO, format="%(asctime)s %(levelname)s %(message)s")
-    logging.getLogger("alembic").setLevel(logging.WARNING)
+    _prepare_logs()
     config = Config.from_environment()
+    _prepare_process(config)
     local = is_loopback(host)
     if local and not config.trusted_hosts:
-        config = Config(**{**vars(config), "trusted_hosts": LOOPBACK_HOSTS})
+        config = replace(config, trusted_hosts=LOOPBACK_HOSTS)
     app = create_app(config)
+    parts: Running = app.extensions[EXTENSION]
     try:
-        server = create_server(app, host=host, port=port, threads=THREADS, ident="cant")
+        server = make_server(app, host, port, config.upload_mb, config.bounds)
     except (OSError, ValueError) as error:
         reason = error.strerror if isinstance(error, OSError) and error.strerror else str(error)
         message = f"cannot listen at {host} port {port}: {reason}; give another with --host or --port"
         raise FileError(message) from error
-    _announce(host, _port_of(server, port), config, local=local)
-    try:
-        server.run()
-    except KeyboardInterrupt:
-        pass
-    finally:
-        server.close()
+    log_to(config.access_log)
+    cleaner = Cleaner(parts.clean)
+    with _stopped_by_signals(server, parts):
+        cleaner.start()
+        _announce(host, server.port, config, local=local)
+        try:
+            server.run(config.bounds.seconds_to_stop)
+        finally:
+            cleaner.stop()
+            parts.database.close()
 
 
 def is_loopback(host: str) -> bool:
@@ -64,9 +80,47 @@ def is_loopback(host: str) -> bool:
         return False
 
 
-def _port_of(server: object, port: int) -> int:
-    listening = getattr(server, "socket", None)
-    return int(listening.getsockname()[1]) if isinstance(listening, socket.socket) else port
+@contextlib.contextmanager
+def _stopped_by_signals(server: Server, parts: Running) -> Iterator[None]:
+    """Let the first signal stop the server in good order, and a second one at once."""
+
+    def told(_number: int, _frame: Any) -> None:
+        if parts.stopping.is_set():
+            os._exit(STOPPED_AT_ONCE)
+        parts.stopping.set()
+        server.stop()
+
+    before = {number: signal.signal(number, told) for number in (signal.SIGINT, signal.SIGTERM)}
+    try:
+        yield
+    finally:
+        for number, handler in before.items():
+            signal.signal(number, handler)
+
+
+def _prepare_logs() -> None:
+    logging.basicConfig(level=logging.INFO, format="%(asctime)s %(levelname)s %(message)s")
+    for name, level in (
+        ("alembic", logging.WARNING),
+        ("waitress", logging.WARNING),
+        ("waitress.queue", logging.ERROR),
+    ):
+        logging.getLogger(name).setLevel(level)
+
+
+def _prepare_process(config: Config) -> None:
+    """Let what is written be the owner's alone, connections have their files, and threads share memory."""
+    os.umask(0o077)
+    with contextlib.suppress(ImportError, OSError, ValueError):  # not on every system
+        import resource
+
+        now, most = resource.getrlimit(resource.RLIMIT_NOFILE)
+        wanted = max(config.bounds.connections + FILES_BESIDE, now)
+        if wanted > now != resource.RLIM_INFINITY:
+            highest = wanted if most == resource.RLIM_INFINITY else min(wanted, most)
+            resource.setrlimit(resource.RLIMIT_NOFILE, (highest, most))
+    with contextlib.suppress(OSError, AttributeError):  # only with the GNU C library
+        ctypes.CDLL(None).mallopt(M_ARENA_MAX, ARENAS)
 
 
 def _announce(host: str, port: int, config: Config, *, local: bool) -> None:
