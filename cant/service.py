@@ -22,6 +22,7 @@ from cant.files.open import open_workbook
 from cant.model.limits import LimitSet
 from cant.model.reading import Reading
 from cant.model.settings import Settings
+from cant.model.signatures import Signatures
 from cant.model.traffic import Traffic
 from cant.planning import plan_line
 from cant.reading import read_answers, read_frames, read_workbook, reading_document, reading_table
@@ -302,7 +303,9 @@ def reading_text(reading: Reading) -> str:
     return reading_table(reading)
 
 
-def annotated_workbook(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile:
+def annotated_workbook(
+    planned: PlannedLine, data: bytes, file: str, *, signatures: Signatures | None = None
+) -> AnnotatedFile:
     """Give the user's workbook with the plan written into it.
 
     Parameters
@@ -311,13 +314,15 @@ def annotated_workbook(planned: PlannedLine, data: bytes, file: str) -> Annotate
         The plan.
     data, file
         The curve file as it was read, and its name.
+    signatures : Signatures, optional
+        Who has signed the plan, for the summary sheet; without, there is room to sign by hand.
 
     Returns
     -------
     AnnotatedFile
         The xlsx, and what a person should know about it.
     """
-    return annotate_plan(planned, data, file)
+    return annotate_plan(planned, data, file, signatures)
 
 
 def template() -> bytes:

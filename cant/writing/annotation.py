@@ -17,6 +17,7 @@ from cant.files.packed_rows import PackedRows
 from cant.files.rewrite import rows_as_new_workbook, sheet_name_in_new_workbook
 from cant.model.display import Display
 from cant.model.reading import Reading, RejectedRow, SheetReading
+from cant.model.signatures import Signatures
 from cant.writing.book.status import FILLS, NOT_ASSESSED
 from cant.writing.columns import DECISION, NEEDED, WORDS, Cell, Column, Record, class_columns
 from cant.writing.own_units import units_of_sheet
@@ -133,7 +134,9 @@ class AddedColumns:
         return [ConditionalFill(f"AND(ISNUMBER({cant}),OR({below},{above}))", OUTSIDE)]
 
 
-def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile:
+def annotate_plan(
+    planned: PlannedLine, data: bytes, file: str, signatures: Signatures | None = None
+) -> AnnotatedFile:
     """Write a plan into the workbook that it came from.
 
     Parameters
@@ -142,6 +145,8 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
         The plan.
     data, file
         The curve file as it was read, and its name.
+    signatures : Signatures, optional
+        Who has signed the plan.
 
     Returns
     -------
@@ -160,7 +165,7 @@ def annotate_plan(planned: PlannedLine, data: bytes, file: str) -> AnnotatedFile
     }
     added = AddedColumns(columns, lambda sheet: units.get(sheet, display))
     with NewSheets(footer_of(planned), LETTER if display.units == "us" else A4) as book:
-        sheets = PlanSheets(book, planned, annotation.free_name)
+        sheets = PlanSheets(book, planned, annotation.free_name, signatures=signatures)
         for record in planned.records():
             added.add(record)
             sheets.add(record)

@@ -10,6 +10,7 @@ from collections.abc import Callable, Iterable, Sequence
 from datetime import date
 from typing import TYPE_CHECKING, Any
 
+from cant.model.signatures import Signatures
 from cant.writing.book.calculation import Calculation
 from cant.writing.book.exceptions import Exceptions, SpeedChanges
 from cant.writing.book.lifting import LiftingSchedule, RampValues
@@ -82,10 +83,17 @@ class PlanSheets:
         Gives a sheet name that the user's workbook does not have yet.
     day : date, optional
         Date of the issue; today when not told.
+    signatures : Signatures, optional
+        Who has signed the plan.
     """
 
     def __init__(
-        self, book: NewSheets, planned: PlannedLine, name: Callable[[str], str], day: date | None = None
+        self,
+        book: NewSheets,
+        planned: PlannedLine,
+        name: Callable[[str], str],
+        day: date | None = None,
+        signatures: Signatures | None = None,
     ) -> None:
         plan, self._display = planned.plan, planned.display
         self._planned, self._book, self._name = planned, book, name
@@ -94,7 +102,7 @@ class PlanSheets:
         self._shown = 0
         self._whole = holds_all(len(plan.assessed))
         self._chosen = Selection(plan, chosen_curves(plan))
-        self._summary = Summary(book, name("Plan summary"), planned, day)
+        self._summary = Summary(book, name("Plan summary"), planned, day, signatures)
         self._pictures = Pictures(
             book, (name("Line in pictures"), name("Picture data")), self._display, plan.traffic.class_names
         )

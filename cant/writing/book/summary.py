@@ -10,6 +10,7 @@ from datetime import date
 import numpy as np
 
 from cant.model.plan import STATUSES
+from cant.model.signatures import STEPS, Signatures
 from cant.version import __version__
 from cant.writing.book.selection import Selection
 from cant.writing.book.status import FILLS, STATUS_WORDS
@@ -35,13 +36,23 @@ class Summary:
     planned : PlannedLine
     day : date or None
         Date of the issue; today when not told.
+    signatures : Signatures or None
+        Who has signed; room to sign by hand for the others.
     """
 
-    def __init__(self, book: NewSheets, name: str, planned: PlannedLine, day: date | None = None) -> None:
+    def __init__(
+        self,
+        book: NewSheets,
+        name: str,
+        planned: PlannedLine,
+        day: date | None = None,
+        signatures: Signatures | None = None,
+    ) -> None:
         self._book = book
         self._planned = planned
         self._plan = planned.plan
         self._day = day or date.today()
+        self._signed = signatures
         self._sheet: TableSheet = book.table(name)
         self._sheet.widths(*_WIDTHS)
         self._gravest: dict[str, list[str]] = {status: [] for status in _GRAVE}
@@ -181,18 +192,31 @@ class Summary:
 
     def _signatures(self) -> None:
         self._sheet.skip()
+        self._signature_row("", "Name", "Signature", "Date")
+        for step in STEPS:
+            signed = self._signed.of(step) if self._signed else None
+            if signed is None:
+                self._signature_row(step.capitalize(), "", "", "")
+            else:
+                self._signature_row(step.capitalize(), signed.name, _SIGNED, signed.day.isoformat())
+        if self._signed and self._signed.signed:
+            self._text(
+                "The signatures named here were given in the service over the curve file, every decision and "
+                f"the version of the program together, SHA-256 {self._signed.digest}. They say nothing of "
+                "what is changed in this workbook afterwards."
+            )
+
+    def _signature_row(self, step: str, name: str, signature: str, day: str) -> None:
         raw, box = self._sheet.raw, self._book.box
-        for titles in (
-            ("", "Name", "", "Signature", "", "Date"),
-            *((role, "", "", "", "", "") for role in _ROLES),
-        ):
-            row = self._sheet.next_row - 1
-            raw.set_row(row, 16 if not titles[0] else 26)
-            raw.write_string(row, 0, titles[0], box)
-            raw.merge_range(row, 1, row, 2, titles[1], box)
-            raw.merge_range(row, 3, row, 4, titles[3], box)
-            raw.write_string(row, 5, titles[5], box)
-            self._sheet.skip()
+        row = self._sheet.next_row - 1
+        raw.set_row(row, 16 if not step else 26)
+        raw.write_string(row, 0, step, box)
+        for first, text in ((1, name), (3, signature)):
+            raw.merge_range(row, first, row, first + 1, "", box)
+            if text:  # merging would take a text for whatever it looks like
+                raw.write_string(row, first, text, box)
+        raw.write_string(row, 5, day, box)
+        self._sheet.skip()
 
 
-_ROLES = ("Prepared", "Checked", "Approved")
+_SIGNED = "signed in the service"
