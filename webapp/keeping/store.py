@@ -154,7 +154,7 @@ class Store:
             session.flush()
             self.room.check(session, owner)
             session.add(FileRow(plan_id=plan.id, data=data))
-        return _stored(plan)
+        return as_stored(plan)
 
     def plans(self, owner: str) -> list[StoredPlan]:
         """Give the plans of an owner, the last changed first."""
@@ -164,12 +164,12 @@ class Store:
             .order_by(PlanRow.changed.desc(), PlanRow.id.desc())
         )
         with self._database.sessions() as session:
-            return [_stored(plan) for plan in session.scalars(wanted)]
+            return [as_stored(plan) for plan in session.scalars(wanted)]
 
     def plan(self, owner: str, address: str) -> StoredPlan:
         """Give a plan; NotThereError where this owner has none of that address."""
         with self._database.sessions() as session:
-            return _stored(*find(session, owner, address))
+            return as_stored(*find(session, owner, address))
 
     def file(self, owner: str, address: str) -> bytes:
         """Give the bytes of a plan's file, as they were uploaded."""
@@ -205,7 +205,7 @@ class Store:
                 )
             plan.changed, plan.expires = now, now + self._keep
             session.flush()
-            return _stored(plan, access)
+            return as_stored(plan, access)
 
     def keep_longer(self, owner: str, address: str) -> StoredPlan:
         """Start the days until a plan expires anew."""
@@ -218,7 +218,7 @@ class Store:
             plan, _ = find(session, owner, address, Access.OWN, for_change=True)
             plan.name = name
             session.flush()
-            return _stored(plan)
+            return as_stored(plan)
 
     def remove(self, owner: str, address: str) -> None:
         """Delete a plan with its file and decisions."""
@@ -343,7 +343,8 @@ def _access(session: Session, plan: PlanRow, who: str, now: datetime) -> Access 
     return Access.EDIT if any(granted) else Access.READ
 
 
-def _stored(plan: PlanRow, access: Access = Access.OWN) -> StoredPlan:
+def as_stored(plan: PlanRow, access: Access = Access.OWN) -> StoredPlan:
+    """Give a plan from its row and what who asked may do with it."""
     history = tuple(Decision(d.kind, d.content, d.reason, d.made, d.who) for d in plan.decisions)
     return StoredPlan(
         address=plan.address,
