@@ -21,7 +21,7 @@ from webapp.errors import add_error_answers
 from webapp.guarding import health
 from webapp.guarding.access_log import AccessLog, add_access_log
 from webapp.guarding.proxies import Proxies
-from webapp.guarding.rates import Rates, add_rates
+from webapp.guarding.rates import Rates, add_rates_of_addresses, add_rates_of_people
 from webapp.guarding.turns import Turns, add_turns
 from webapp.history_view import remembered_name
 from webapp.keeping.database import Database
@@ -98,8 +98,10 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
     add_error_answers(app)
     protect(app, https=used.https)
     add_access_log(app)
+    rates = Rates(used.bounds)
+    add_rates_of_addresses(app, rates)
     add_people(app, used, database)
-    add_rates(app, Rates(used.bounds))
+    add_rates_of_people(app, rates)
     _add_guards(app)
     add_turns(app, Turns(used.bounds.turns, used.bounds.wait_seconds))
     _add_words(app)

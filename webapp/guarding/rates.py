@@ -27,6 +27,7 @@ ACCOUNT_FIELD = "name"
 MAKES_A_PLAN = frozenset({"start.sample"})
 """Endpoints that make a plan without a file; every request that brings a file counts as an upload."""
 ACCOUNTS_AN_ADDRESS = 6
+WRONG = (401, 403, 404, 410)
 IPV6_NETWORK = 64
 
 
@@ -79,23 +80,18 @@ def asking_address() -> str:
     return str(address)
 
 
-def add_rates(app: Flask, rates: Rates) -> None:
-    """Count every request before anything else is done for it."""
+def add_rates_of_addresses(app: Flask, rates: Rates) -> None:
+    """Count every request by its address, before anything else is done for it."""
     bounds = rates.bounds
 
     @app.before_request
     def count() -> None:
-        g.counted_as = _person()
         if request.endpoint in NOT_COUNTED:
             return
         address = asking_address()
         rates.count(bounds.requests_per_minute_address, "requests from", address)
-        if g.counted_as:
-            rates.count(bounds.requests_per_minute, "requests of", g.counted_as)
-        if request.mimetype == "multipart/form-data" or request.endpoint in MAKES_A_PLAN:
+        if _is_upload():
             rates.count(bounds.uploads_per_minute_address, "uploads from", address)
-            if g.counted_as:
-                rates.count(bounds.uploads_per_minute, "uploads of", g.counted_as)
         if request.endpoint == SIGN_IN and request.method == "POST":
             _count_sign_in(rates, address)
         for kind, most in _guesses(bounds):
@@ -103,10 +99,27 @@ def add_rates(app: Flask, rates: Rates) -> None:
 
     @app.after_request
     def note(response: Response) -> Response:
-        if response.status_code in (403, 404, 410):
+        if response.status_code in WRONG:
             for kind, most in _guesses(bounds):
                 rates.note(most, kind, asking_address())
         return response
+
+
+def add_rates_of_people(app: Flask, rates: Rates) -> None:
+    """Count every request by who asks, once that is known."""
+    bounds = rates.bounds
+
+    @app.before_request
+    def count() -> None:
+        g.counted_as = _person()
+        if g.counted_as:
+            rates.count(bounds.requests_per_minute, "requests of", g.counted_as)
+            if _is_upload():
+                rates.count(bounds.uploads_per_minute, "uploads of", g.counted_as)
+
+
+def _is_upload() -> bool:
+    return request.mimetype == "multipart/form-data" or request.endpoint in MAKES_A_PLAN
 
 
 def _count_sign_in(rates: Rates, address: str) -> None:
@@ -118,12 +131,15 @@ def _count_sign_in(rates: Rates, address: str) -> None:
 
 
 def _guesses(bounds: Bounds) -> list[tuple[str, int]]:
-    """Give what a request guesses where it fails, a share link or a plan's address, and how often it may."""
+    """Give what a request guesses where it is refused (link, key, plan), and how often that may be."""
+    found = []
     if request.endpoint == OPEN_LINK:
-        return [("wrong links", bounds.wrong_links_per_minute)]
-    if "address" in (request.view_args or {}):
-        return [("wrong plans", bounds.wrong_plans_per_minute)]
-    return []
+        found.append(("wrong links", bounds.wrong_links_per_minute))
+    elif "address" in (request.view_args or {}):
+        found.append(("wrong plans", bounds.wrong_plans_per_minute))
+    if request.authorization is not None:
+        found.append(("wrong keys", bounds.wrong_plans_per_minute))
+    return found
 
 
 def _person() -> str:
