@@ -10,10 +10,10 @@ from __future__ import annotations
 import io
 import os
 import sys
-from collections.abc import Iterable, Sequence
+from collections.abc import Iterable, Iterator, Sequence
 from importlib.metadata import entry_points
 from pathlib import Path
-from typing import Any, NoReturn
+from typing import NoReturn
 
 import click
 
@@ -78,22 +78,38 @@ def plan(
         reading = _read(data, curves, traffic, limits_given, settings, answers)
         used = _with_method(reading, method)
         planned = service.make_plan(reading, settings=used, progress=progress)
-        contents: dict[Path, Any] = {}
-        notes: list[str] = []
-        if out is not None:
-            progress(0.0, "workbook")
-            annotated = service.annotated_workbook(planned, data, str(curves))
-            contents[out], notes = annotated.pieces, list(annotated.notes)
-            if annotated.suffix == ".xlsm" and out.suffix.lower() != ".xlsm":
-                notes.append(f"{out} holds macros: spreadsheet programs open it only as .xlsm; rename it")
-        if json_file is not None:
-            contents[json_file] = planned.json_chunks()
-        progress(0.5, "writing")
-        write_together(contents)
-    click.echo(terminal.summary(planned, [str(path) for path in contents], notes))
+        progress(0.0, "writing")
+        notes = _write(planned, (data, str(curves)), out, json_file)
+    click.echo(terminal.summary(planned, [str(path) for path in (out, json_file) if path], notes))
     left_out = terminal.not_assessed_line(planned)
     if left_out:
         click.echo(left_out, err=True)
+
+
+def _write(
+    planned: service.PlannedLine, source: service.NamedFile, out: Path | None, json_file: Path | None
+) -> list[str]:
+    """Write workbook and JSON, both of the same records in one pass, and give the notes on the workbook."""
+    if out is None:
+        write_together({json_file: planned.json_chunks()} if json_file else {})
+        return []
+    notes: list[str] = []
+
+    def finished() -> Iterator[bytes | memoryview]:
+        made = workbook.finish()
+        notes.extend(made.notes)
+        if made.suffix == ".xlsm" and out.suffix.lower() != ".xlsm":
+            notes.append(f"{out} holds macros: spreadsheet programs open it only as .xlsm; rename it")
+        yield from made.pieces
+
+    with service.PlanWorkbook(planned, *source) as workbook:
+        if json_file is None:
+            for record in planned.records():
+                workbook.add(record)
+            write_together({out: finished()})
+        else:
+            write_together({json_file: planned.json_chunks(workbook.add), out: finished()})
+    return notes
 
 
 @cant.command()
@@ -131,11 +147,27 @@ def read(
 @click.option("--port", default=8000, show_default=True, type=click.IntRange(0, 65535), help="Port.")
 def serve(host: str, port: int) -> None:
     """Start the web service on this machine."""
-    found = entry_points(group="cant.commands", name="serve")
+    _of_the_service("serve")(host=host, port=port)
+
+
+@cant.command()
+@click.argument("file", type=_file)
+@click.option("--replace", is_flag=True, help="Replace FILE where it is there already.")
+def backup(file: Path, replace: bool) -> None:
+    """Write a copy of the web service's database to FILE, while it runs or not.
+
+    The database is the one that CANT_DATA or CANT_DATABASE names, as for 'cant serve'.
+    """
+    click.echo(_of_the_service("backup")(file, replace=replace))
+
+
+def _of_the_service(name: str) -> Any:
+    """Give a function of the web service, which joins through its entry point."""
+    found = entry_points(group="cant.commands", name=name)
     if not found:
         message = "the web service is not installed: install the whole package again"
         raise FileError(message)
-    next(iter(found)).load()(host=host, port=port)
+    return next(iter(found)).load()
 
 
 @cant.command()
