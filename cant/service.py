@@ -26,13 +26,14 @@ from cant.model.signatures import Signatures
 from cant.model.traffic import Traffic
 from cant.planning import plan_line
 from cant.reading import read_answers, read_frames, read_workbook, reading_document, reading_table
-from cant.writing.annotation import AnnotatedFile, annotate_plan
+from cant.writing.annotation import AnnotatedFile, PlanWorkbook, annotate_plan
 from cant.writing.planned import PlannedLine
 from cant.writing.template import template_workbook
 
 __all__ = [
     "AnnotatedFile",
     "NamedFile",
+    "PlanWorkbook",
     "PlannedLine",
     "Progress",
     "annotated_workbook",

@@ -173,7 +173,7 @@ def test_what_cannot_be_done_is_refused_in_one_line(
 def test_an_output_that_fails_leaves_no_other(
     run: Run, here: Path, sample_file: Path, monkeypatch: pytest.MonkeyPatch
 ) -> None:
-    def full(self: object) -> object:
+    def full(self: object, also: object) -> object:
         yield b"{"
         raise OSError(28, "No space left on device")
 

@@ -134,10 +134,8 @@ class AddedColumns:
         return [ConditionalFill(f"AND(ISNUMBER({cant}),OR({below},{above}))", OUTSIDE)]
 
 
-def annotate_plan(
-    planned: PlannedLine, data: bytes, file: str, signatures: Signatures | None = None
-) -> AnnotatedFile:
-    """Write a plan into the workbook that it came from.
+class PlanWorkbook:
+    """A workbook with a plan in the making; use as a context, add every record, then finish.
 
     Parameters
     ----------
@@ -147,35 +145,64 @@ def annotate_plan(
         The curve file as it was read, and its name.
     signatures : Signatures, optional
         Who has signed the plan.
-
-    Returns
-    -------
-    AnnotatedFile
-        The user's workbook with columns and sheets added; where it cannot be annotated in place, a new
-        workbook with the same rows, and a note that says so.
     """
-    base, names, notes = _base(data, file)
-    annotation = Annotation(base, file)
-    display = planned.display
-    words = WORDS if holds_all(len(planned.plan.assessed)) else WORDS[:2]
-    columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *NEEDED, *words]
-    units = {
-        entry.sheet: units_of_sheet(display, planned.reading.columns, entry.sheet)
-        for entry in _curve_sheets(planned.reading)
-    }
-    added = AddedColumns(columns, lambda sheet: units.get(sheet, display))
-    with NewSheets(footer_of(planned), LETTER if display.units == "us" else A4) as book:
-        sheets = PlanSheets(book, planned, annotation.free_name, signatures=signatures)
+
+    def __init__(
+        self, planned: PlannedLine, data: bytes, file: str, signatures: Signatures | None = None
+    ) -> None:
+        self._reading = planned.reading
+        base, self._names, self._notes = _base(data, file)
+        self._annotation = Annotation(base, file)
+        display = planned.display
+        words = WORDS if holds_all(len(planned.plan.assessed)) else WORDS[:2]
+        columns = [*DECISION, *class_columns(planned.plan.traffic.class_names), *NEEDED, *words]
+        units = {
+            entry.sheet: units_of_sheet(display, planned.reading.columns, entry.sheet)
+            for entry in _curve_sheets(planned.reading)
+        }
+        self._added = AddedColumns(columns, lambda sheet: units.get(sheet, display))
+        self._book = NewSheets(footer_of(planned), LETTER if display.units == "us" else A4)
+        free_name = self._annotation.free_name
+        try:
+            self._sheets = PlanSheets(self._book, planned, free_name, signatures=signatures)
+        except BaseException:
+            self._book.discard()
+            raise
+
+    def __enter__(self) -> PlanWorkbook:
+        return self
+
+    def __exit__(self, *error: object) -> None:
+        self._book.discard()
+
+    def add(self, record: Record) -> None:
+        """Write what the workbook holds of one curve; the records come in the order of the plan."""
+        self._added.add(record)
+        self._sheets.add(record)
+
+    def finish(self) -> AnnotatedFile:
+        """Give the user's workbook with columns and sheets added, once.
+
+        Where it cannot be annotated in place, it is a new workbook with the same rows, and a note says so.
+        """
+        self._sheets.finish()
+        del self._sheets
+        for row in self._reading.rejected:
+            self._added.add_rejected(row)
+        additions = _additions(self._reading, self._added, self._annotation, self._names)
+        result = self._annotation.run(additions, self._book.parts())
+        suffix = ".xlsm" if self._annotation.has_macros else ".xlsx"
+        return AnnotatedFile(result.pieces, [*self._notes, *result.notes], suffix)
+
+
+def annotate_plan(
+    planned: PlannedLine, data: bytes, file: str, signatures: Signatures | None = None
+) -> AnnotatedFile:
+    """Write a plan into the workbook that it came from; see :class:`PlanWorkbook`."""
+    with PlanWorkbook(planned, data, file, signatures) as workbook:
         for record in planned.records():
-            added.add(record)
-            sheets.add(record)
-        sheets.finish()
-        del sheets
-        for row in planned.reading.rejected:
-            added.add_rejected(row)
-        result = annotation.run(_additions(planned.reading, added, annotation, names), book.parts())
-    suffix = ".xlsm" if annotation.has_macros else ".xlsx"
-    return AnnotatedFile(result.pieces, [*notes, *result.notes], suffix)
+            workbook.add(record)
+        return workbook.finish()
 
 
 def _additions(

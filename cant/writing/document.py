@@ -6,7 +6,7 @@ Metric always, whatever units people are shown; numbers that do not exist are nu
 from __future__ import annotations
 
 import json
-from collections.abc import Iterator
+from collections.abc import Callable, Iterator
 from typing import TYPE_CHECKING, Any
 
 import numpy as np
@@ -79,19 +79,25 @@ def frame_of(planned: PlannedRecords) -> dict[str, Any]:
     }
 
 
-def chunks(planned: PlannedRecords) -> Iterator[bytes]:
+def chunks(
+    planned: PlannedRecords, also: Callable[[dict[str, Any]], object] | None = None
+) -> Iterator[bytes]:
     """Give the JSON as UTF-8 in pieces of some hundred curves.
 
     Parameters
     ----------
     planned : PlannedRecords
         The plan with its reading.
+    also : callable, optional
+        Called with each record, for another output that is made of them in the same pass.
     """
     yield b'{"curves": ['
     batch: list[str] = []
     begun = False
     for record in planned.records():
         batch.append(_text(record))
+        if also is not None:
+            also(record)
         if len(batch) == _BATCH:
             yield _joined(batch, begun)
             begun, batch = True, []

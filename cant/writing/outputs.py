@@ -50,13 +50,13 @@ def check_places(paths: Iterable[Path], inputs: Iterable[Path]) -> None:
         seen.add(target)
 
 
-def write_together(contents: Mapping[Path, bytes | Iterable[bytes]]) -> None:
+def write_together(contents: Mapping[Path, bytes | Iterable[bytes | memoryview]]) -> None:
     """Write several files so that either all are new or all are as they were.
 
     Parameters
     ----------
     contents : mapping of Path to bytes or iterable of bytes
-        What each file is to hold; an iterable that raises leaves every file as it was.
+        What each file is to hold, made in this order; an iterable that raises leaves every file as it was.
 
     Raises
     ------
@@ -73,7 +73,7 @@ def write_together(contents: Mapping[Path, bytes | Iterable[bytes]]) -> None:
             waiting.unlink(missing_ok=True)
 
 
-def _staged(path: Path, data: bytes | Iterable[bytes]) -> Path:
+def _staged(path: Path, data: bytes | Iterable[bytes | memoryview]) -> Path:
     """Write a file's content beside its place under another name."""
     target = path.resolve()
     waiting: Path | None = None

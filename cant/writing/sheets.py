@@ -308,15 +308,19 @@ class NewSheets:
             self.workbook.close()
         return LooseParts(self.workbook.parts)
 
+    def discard(self) -> None:
+        """Let go of all that was written."""
+        for sheet in self.workbook.worksheets():
+            sheet.row_data_fh.close()
+        self._folder.cleanup()
+
     def __enter__(self) -> NewSheets:
         return self
 
     def __exit__(
         self, kind: type[BaseException] | None, error: BaseException | None, trace: TracebackType | None
     ) -> None:
-        for sheet in self.workbook.worksheets():
-            sheet.row_data_fh.close()
-        self._folder.cleanup()
+        self.discard()
 
 
 class _PartsWorkbook(xlsxwriter.Workbook):  # type: ignore[misc]  # XlsxWriter comes without types
