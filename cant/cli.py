@@ -13,7 +13,7 @@ import sys
 from collections.abc import Iterable, Iterator, Sequence
 from importlib.metadata import entry_points
 from pathlib import Path
-from typing import NoReturn
+from typing import Any, NoReturn
 
 import click
 
