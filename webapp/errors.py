@@ -20,6 +20,7 @@ from webapp.context import running
 from webapp.guarding.access_log import route
 from webapp.keeping.database import is_full, is_passing
 from webapp.keeping.store import NotAllowedError, NotThereError
+from webapp.meanwhile import MeanwhileError
 from webapp.security import RefusedError
 
 API_PREFIX = "/api/"
@@ -29,6 +30,7 @@ TITLES = {
     403: "Refused",
     404: "Nothing here",
     405: "Not possible here",
+    409: "Somebody was quicker",
     413: "Too large",
     422: "This cannot be used as it is",
     429: "Too much at once",
@@ -43,6 +45,7 @@ def add_error_answers(app: Flask) -> None:
     """Register the answers to every kind of error."""
     app.register_error_handler(NotThereError, _not_there)
     app.register_error_handler(NotAllowedError, _not_allowed)
+    app.register_error_handler(MeanwhileError, _meanwhile)
     app.register_error_handler(FullError, _full)
     app.register_error_handler(BusyError, _busy)
     app.register_error_handler(DBAPIError, _database)
@@ -80,6 +83,10 @@ def _not_there(error: NotThereError) -> ResponseReturnValue:
 
 def _not_allowed(error: NotAllowedError) -> ResponseReturnValue:
     return answer(403, _sentence(str(error)))
+
+
+def _meanwhile(error: MeanwhileError) -> ResponseReturnValue:
+    return answer(409, _sentence(str(error)))
 
 
 def _full(error: FullError) -> ResponseReturnValue:

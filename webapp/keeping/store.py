@@ -32,6 +32,7 @@ from webapp.keeping.records import (
     SignInRow,
 )
 from webapp.keeping.room import Room
+from webapp.meanwhile import MeanwhileError, unseen
 
 ADDRESS_BYTES = 24
 LONGEST_NAME = 80
@@ -181,11 +182,18 @@ class Store:
             return row.data
 
     def decide(
-        self, owner: str, address: str, decisions: dict[str, str], reason: str = "", who: str = ""
+        self,
+        owner: str,
+        address: str,
+        decisions: dict[str, str],
+        reason: str = "",
+        who: str = "",
+        known: int | None = None,
     ) -> StoredPlan:
         """Add decisions, by kind, in one transaction; one that changes nothing is not added.
 
-        Any decision starts the days until the plan expires anew.
+        Any decision starts the days until the plan expires anew. MeanwhileError where one would replace what
+        came after the first ``known`` decisions of the plan, which are those that who decides has seen.
         """
         unknown = set(decisions) - set(KINDS)
         if unknown:
@@ -193,6 +201,9 @@ class Store:
             raise InputError(message)
         with self._database.sessions.begin() as session:
             plan, access = find(session, owner, address, Access.EDIT, for_change=True)
+            stored = as_stored(plan, access)
+            if known is not None and (newer := unseen(stored.history, known, decisions)):
+                raise MeanwhileError(newer)
             now = datetime.now(UTC)
             ruling = {d.kind: d.content for d in plan.decisions}
             number = max((d.number for d in plan.decisions), default=-1)
@@ -208,8 +219,13 @@ class Store:
             return as_stored(plan, access)
 
     def keep_longer(self, owner: str, address: str) -> StoredPlan:
-        """Start the days until a plan expires anew."""
-        return self.decide(owner, address, {})
+        """Start the days until a plan of one's own expires anew."""
+        with self._database.sessions.begin() as session:
+            plan, _ = find(session, owner, address, Access.OWN, for_change=True)
+            plan.changed = datetime.now(UTC)
+            plan.expires = plan.changed + self._keep
+            session.flush()
+            return as_stored(plan)
 
     def rename(self, owner: str, address: str, name: str) -> StoredPlan:
         """Call a plan otherwise; InputError where the name is blank or long."""
@@ -315,9 +331,16 @@ def find(
     access = None if plan is None else _access(session, plan, who, now)
     if plan is None or access is None:
         message = (
-            "there is no such plan here: it may have expired, been deleted, or belong to another browser"
+            "there is no such plan here: it may have expired, been deleted, belong to somebody else, or no "
+            "longer be shared with you"
         )
         raise NotThereError(message)
+    check_access(access, need)
+    return plan, access
+
+
+def check_access(access: Access, need: Access) -> None:
+    """Refuse what is more than somebody may do with a plan; NotAllowedError."""
     if access < need:
         message = (
             "this plan is shared with you to read; nothing of it can be changed"
@@ -325,7 +348,6 @@ def find(
             else "only who made this plan can do this with it"
         )
         raise NotAllowedError(message)
-    return plan, access
 
 
 def _access(session: Session, plan: PlanRow, who: str, now: datetime) -> Access | None:
