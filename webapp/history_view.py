@@ -6,12 +6,13 @@ import json
 from collections.abc import Mapping
 from dataclasses import dataclass
 
-from flask import session
+from flask import g, session
 
 from webapp.decisions import CHANGE, Decision
 from webapp.forms import Fields
 from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
+from webapp.security import PERSON
 
 WHO = "who"
 LONGEST_WHO = 80
@@ -53,9 +54,14 @@ def moment_of(text: str) -> int:
 
 
 def signed_by(form: Mapping[str, str]) -> tuple[str, str, dict[str, str]]:
-    """Give reason, name and problems of a form; the name is remembered for this browser's next form."""
+    """Give reason, name and problems of a form; the name is remembered for this browser's next form.
+
+    Who has signed in decides under his own name, whatever the form says.
+    """
     fields = Fields(form, measures("metric"))
     reason, who = fields.text("because", words="the reason", needed=True), fields.text(WHO)
+    if g.get(PERSON) is not None:
+        return reason, remembered_name(), fields.problems
     if len(who) > LONGEST_WHO:
         fields.problems[WHO] = f"at most {LONGEST_WHO} characters"
     if not fields.problems:
@@ -64,5 +70,7 @@ def signed_by(form: Mapping[str, str]) -> tuple[str, str, dict[str, str]]:
 
 
 def remembered_name() -> str:
-    """Give the name that this browser gave last."""
+    """Give the name of who has signed in, else the name that this browser gave last."""
+    if g.get(PERSON) is not None:
+        return str(g.person.account.shown)[:LONGEST_WHO]
     return str(session.get(WHO, ""))

@@ -5,7 +5,7 @@ A record only; whether a signature holds is judged where it is given.
 
 from __future__ import annotations
 
-import hashlib
+import json
 from dataclasses import dataclass
 from datetime import date
 
@@ -50,8 +50,14 @@ class Signatures:
         """Give the signature of a step, None where nobody has signed it."""
         return next((one for one in self.signed if one.step == step), None)
 
-    @property
-    def key(self) -> str:
-        """A text that differs where anything of them does."""
-        parts = [self.digest, *(f"{one.step}\0{one.name}\0{one.day}" for one in self.signed)]
-        return hashlib.sha256("\n".join(parts).encode()).hexdigest()
+    def as_text(self) -> str:
+        """Give them as text, JSON: to be carried elsewhere, and to tell others apart from them."""
+        signed = [[one.step, one.name, one.day.isoformat()] for one in self.signed]
+        return json.dumps({"digest": self.digest, "signed": signed})
+
+    @classmethod
+    def from_text(cls, text: str) -> Signatures:
+        """Give what :meth:`as_text` wrote."""
+        plain = json.loads(text)
+        signed = (Signature(step, name, date.fromisoformat(day)) for step, name, day in plain["signed"])
+        return cls(plain["digest"], tuple(signed))

@@ -59,16 +59,17 @@ def test_signatures_stand_with_name_and_day_over_their_digest(
     assert any(DIGEST in str(value) for row in rows[4:] for value in row)
 
 
-def test_the_key_tells_signatures_apart() -> None:
+def test_the_text_tells_signatures_apart_and_gives_them_back() -> None:
     day = date(2026, 12, 1)
     one = Signatures(DIGEST, (Signature("prepared", "Anna", day),))
-    keys = {
-        one.key,
-        Signatures("cd" * 32, one.signed).key,
-        Signatures(DIGEST, (Signature("prepared", "Bert", day),)).key,
-        Signatures(DIGEST, (*one.signed, Signature("checked", "Bert", day))).key,
-        Signatures(DIGEST, ()).key,
-    }
-    assert len(keys) == 5
+    others = (
+        one,
+        Signatures("cd" * 32, one.signed),
+        Signatures(DIGEST, (Signature("prepared", "Bert", day),)),
+        Signatures(DIGEST, (*one.signed, Signature("checked", "Bert \u2028=1+1", day))),
+        Signatures(DIGEST, ()),
+    )
+    assert len({other.as_text() for other in others}) == 5
+    assert [Signatures.from_text(other.as_text()) for other in others] == list(others)
     assert one.of("prepared") is one.signed[0]
     assert one.of("approved") is None
