@@ -170,6 +170,28 @@ def _of_the_service(name: str) -> Any:
     return next(iter(found)).load()
 
 
+class _GroupOfTheService(click.Group):
+    """A group of commands that the web service brings; it is not loaded before one of them is asked for."""
+
+    def list_commands(self, ctx: click.Context) -> list[str]:
+        """Give the names of its commands."""
+        return list(_of_the_service(self.name or "").list_commands(ctx))
+
+    def get_command(self, ctx: click.Context, cmd_name: str) -> click.Command | None:
+        """Give one of its commands."""
+        found: click.Command | None = _of_the_service(self.name or "").get_command(ctx, cmd_name)
+        return found
+
+
+cant.add_command(
+    _GroupOfTheService(
+        "accounts",
+        help="Make, list and change the accounts of the web service, where people sign in.",
+        no_args_is_help=False,
+    )
+)
+
+
 @cant.command()
 @click.argument("name", required=False)
 def limits(name: str | None) -> None:
