@@ -25,7 +25,14 @@ from cant.model.settings import Settings
 from cant.model.signatures import Signatures
 from cant.model.traffic import Traffic
 from cant.planning import plan_line
-from cant.reading import read_answers, read_frames, read_workbook, reading_document, reading_table
+from cant.reading import (
+    read_answers,
+    read_frames,
+    read_tables,
+    read_workbook,
+    reading_document,
+    reading_table,
+)
 from cant.writing.annotation import AnnotatedFile, PlanWorkbook, annotate_plan
 from cant.writing.planned import PlannedLine
 from cant.writing.template import template_workbook
@@ -47,6 +54,7 @@ __all__ = [
     "reading_json",
     "reading_text",
     "settings_for",
+    "tables_beside",
     "template",
 ]
 
@@ -100,6 +108,32 @@ def read_curves(
         settings=_opened(settings),
     )
     return replace(reading, sha256=hashlib.sha256(data).hexdigest())
+
+
+def tables_beside(
+    *,
+    traffic: NamedFile | None = None,
+    limits: NamedFile | None = None,
+    settings: NamedFile | None = None,
+) -> tuple[Traffic | None, LimitSet | None, Settings | None]:
+    """Read the tables that stand beside a curve file, without the file, which may say more of them.
+
+    Parameters
+    ----------
+    traffic, limits, settings : (bytes, str), optional
+        A file each, as :func:`read_curves` takes them.
+
+    Returns
+    -------
+    traffic, limits, settings
+        None where no file was given.
+
+    Raises
+    ------
+    CantError
+        A file cannot be read, or its table cannot be used.
+    """
+    return read_tables(traffic=_opened(traffic), limits_table=_opened(limits), settings=_opened(settings))
 
 
 def make_plan(

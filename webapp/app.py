@@ -25,11 +25,28 @@ from webapp.guarding.rates import Rates, add_rates_of_addresses, add_rates_of_pe
 from webapp.guarding.turns import Turns, add_turns
 from webapp.history_view import remembered_name
 from webapp.keeping.database import Database
+from webapp.keeping.results import Results
 from webapp.keeping.store import Store
+from webapp.keeping.work import WorkQueue
 from webapp.measures import SYSTEM_WORDS
 from webapp.people.joining import add_people
 from webapp.security import SECURE_SESSION_COOKIE, SESSION_COOKIE, check_form, form_token, protect
-from webapp.views import comparing, curves, deciding, downloads, help, limits, reading, result, start, trains
+from webapp.views import (
+    comparing,
+    curves,
+    deciding,
+    downloads,
+    help,
+    limits,
+    reading,
+    result,
+    start,
+    trains,
+    waiting,
+)
+from webapp.views.waiting import add_not_yet
+from webapp.working.asking import Background
+from webapp.working.sealing import Seal
 
 COOKIE_DAYS = 400
 MOST_FORM_BYTES = 4_000_000
@@ -77,9 +94,12 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
     database = Database(used.database)
     store = Store(database, used.keep_days, used.bounds)
     store.remove_expired()
-    app.extensions[EXTENSION] = Running(
-        used, database, store, Computations(used.plans_in_memory), datetime.now(UTC)
+    queue = WorkQueue(database, used.work.waiting_per_person, used.work.waiting_in_all)
+    background = Background(queue, Results(database), Seal(used.key()))
+    computations = Computations(
+        used.plans_in_memory, used.work.curves_in_memory, background, 1000 * used.work.long_file_kb
     )
+    app.extensions[EXTENSION] = Running(used, database, store, computations, background, datetime.now(UTC))
     for part in (
         start,
         reading,
@@ -92,10 +112,12 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
         downloads,
         help,
         health,
+        waiting,
     ):
         app.register_blueprint(part.pages)
     app.register_blueprint(api)
     add_error_answers(app)
+    add_not_yet(app)
     protect(app, https=used.https)
     add_access_log(app)
     rates = Rates(used.bounds)

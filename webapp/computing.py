@@ -2,6 +2,7 @@
 
 A page asks for a plan; it is computed when nobody has asked before, and found afterwards. The key is the
 digest of the file and of the decisions that matter, so that a changed decision can never show an old plan.
+What takes long is asked for elsewhere (:class:`Elsewhere`), and who asks is told to come back.
 """
 
 from __future__ import annotations
@@ -10,25 +11,22 @@ import threading
 from collections import OrderedDict
 from collections.abc import Callable, Iterator, Sequence
 from dataclasses import dataclass, replace
-from typing import Any, Generic, TypeVar
+from typing import Any, Generic, Protocol, TypeVar
 
 from cant import service
 from cant.explaining import explain
 from cant.model.reading import Reading
 from cant.planning import Plan
 from cant.service import AnnotatedFile, PlannedLine
-from webapp.changes import together
+from webapp.basis import PLAN_KINDS, READING_KINDS, Basis
 from webapp.keeping.store import StoredPlan
 from webapp.listing import Listing
 from webapp.measures import SYSTEMS
-from webapp.tables import TRAFFIC_FILE, traffic_csv
 
 Kept = TypeVar("Kept")
 Bytes = Callable[[], bytes]
 CURVES_MOVED = 16
 """Curves of a plan whose records at every cant of the slider are kept."""
-READING_KINDS = ("answers", "traffic", "limits")
-PLAN_KINDS = ("answers", "traffic", "limits", "settings", "change")
 
 
 class Latest(Generic[Kept]):
@@ -38,10 +36,15 @@ class Latest(Generic[Kept]):
     ----------
     size : int
         Values kept.
+    weigh : callable, optional
+        Gives the weight of a value.
+    most : int
+        Weight of all values kept together; the latest one is kept whatever it weighs.
     """
 
-    def __init__(self, size: int) -> None:
+    def __init__(self, size: int, weigh: Callable[[Kept], int] = lambda _: 0, most: int = 0) -> None:
         self._size = size
+        self._weigh, self._most, self._weight = weigh, most, 0
         self._kept: OrderedDict[str, Kept] = OrderedDict()
         self._making: dict[str, threading.Lock] = {}
         self._lock = threading.Lock()
@@ -49,10 +52,11 @@ class Latest(Generic[Kept]):
     def put(self, key: str, value: Kept) -> None:
         """Keep a value that is known already."""
         with self._lock:
+            before = self._kept.pop(key, None)
+            self._weight += self._weigh(value) - (0 if before is None else self._weigh(before))
             self._kept[key] = value
-            self._kept.move_to_end(key)
-            while len(self._kept) > self._size:
-                self._kept.popitem(last=False)
+            while len(self._kept) > 1 and (len(self._kept) > self._size or self._weight > self._most):
+                self._weight -= self._weigh(self._kept.popitem(last=False)[1])
 
     def get(self, key: str, make: Callable[[], Kept]) -> Kept:
         """Give the value of a key, made by ``make`` where it is not kept; its errors pass through."""
@@ -172,6 +176,18 @@ class Computed:
             return service.annotated_workbook(planned, data, file)
 
 
+class Elsewhere(Protocol):
+    """Where what takes long is made. Who asks before it is there gets an error that says so."""
+
+    def reading(self, plan: StoredPlan, who: str) -> Reading:
+        """Give how a long list is read."""
+        ...
+
+    def planned(self, plan: StoredPlan, who: str) -> PlannedLine:
+        """Give the plan of a long list."""
+        ...
+
+
 class Computations:
     """Readings and plans, computed on demand.
 
@@ -179,18 +195,30 @@ class Computations:
     ----------
     size : int
         Plans kept in memory.
+    curves : int
+        Curves of all of them together.
+    elsewhere : Elsewhere
+    long_bytes : int
+        From this size on a file is read and planned elsewhere.
     """
 
-    def __init__(self, size: int) -> None:
-        self._readings: Latest[Reading] = Latest(size)
-        self._plans: Latest[Computed] = Latest(size)
+    def __init__(self, size: int, curves: int, elsewhere: Elsewhere, long_bytes: int) -> None:
+        self._readings: Latest[Reading] = Latest(size, lambda found: len(found.curves), curves)
+        self._plans: Latest[Computed] = Latest(size, lambda found: len(found.planned.plan.curves), curves)
+        self._elsewhere, self._long_bytes = elsewhere, long_bytes
 
-    def reading(self, plan: StoredPlan, data: Bytes) -> Reading:
+    def is_long(self, file_size: int) -> bool:
+        """Tell whether a file of some bytes is read and planned elsewhere."""
+        return file_size >= self._long_bytes
+
+    def reading(self, plan: StoredPlan, who: str, data: Bytes) -> Reading:
         """Give how a plan's file is read under its decisions.
 
         Parameters
         ----------
         plan : StoredPlan
+        who : str
+            Who asks.
         data : callable
             Gives the bytes of the file where they are needed.
 
@@ -199,13 +227,21 @@ class Computations:
         CantError
             The file, or an answer, cannot be used.
         """
-        return self._readings.get(_key(plan, READING_KINDS), lambda: _read(plan, data()))
+        basis = Basis(plan.file_name, plan.file_digest, plan.decided)
+
+        def make() -> Reading:
+            if self.is_long(plan.file_size):
+                return self._elsewhere.reading(plan, who)
+            return basis.read(data())
+
+        return self._readings.get(basis.key(READING_KINDS), make)
 
     def keep_reading(self, plan: StoredPlan, reading: Reading) -> None:
         """Keep a reading that was made before the plan was stored."""
-        self._readings.put(_key(plan, READING_KINDS), reading)
+        basis = Basis(plan.file_name, plan.file_digest, plan.decided)
+        self._readings.put(basis.key(READING_KINDS), reading)
 
-    def planned(self, plan: StoredPlan, data: Bytes) -> Computed:
+    def planned(self, plan: StoredPlan, who: str, data: Bytes) -> Computed:
         """Give the plan that follows from a file and its decisions.
 
         Raises
@@ -213,27 +249,11 @@ class Computations:
         CantError
             There is no traffic, or there are no limits, or a table cannot be used.
         """
-        return self._plans.get(_key(plan, PLAN_KINDS), lambda: self._plan(plan, data))
+        basis = Basis(plan.file_name, plan.file_digest, plan.decided)
 
-    def _plan(self, plan: StoredPlan, data: Bytes) -> Computed:
-        decided = plan.decided
-        planned = service.make_plan(
-            self.reading(plan, data),
-            traffic=decided.traffic,
-            limits=decided.limits,
-            settings=decided.settings,
-            decision=together(decided.changes),
-        )
-        return Computed(planned)
+        def make() -> Computed:
+            if self.is_long(plan.file_size):
+                return Computed(self._elsewhere.planned(plan, who))
+            return Computed(basis.plan(self.reading(plan, who, data)))
 
-
-def _key(plan: StoredPlan, kinds: tuple[str, ...]) -> str:
-    return f"{plan.file_digest}/{plan.file_name}/{plan.decided.digest(*kinds)}"
-
-
-def _read(plan: StoredPlan, data: bytes) -> Reading:
-    decided = plan.decided
-    traffic = None if decided.traffic is None else (traffic_csv(decided.traffic), TRAFFIC_FILE)
-    return service.read_curves(
-        data, plan.file_name, traffic=traffic, limits=decided.limits, answers=decided.answers
-    )
+        return self._plans.get(basis.key(PLAN_KINDS), make)

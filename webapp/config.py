@@ -22,6 +22,7 @@ from cant.errors import InputError
 from webapp.guarding.bounds import Bounds
 from webapp.guarding.bounds import whole_number as _whole
 from webapp.people.settings import SignIn
+from webapp.working.settings import Work
 
 KEY_FILE = "signing-key"
 DATABASE_FILE = "plans.sqlite3"
@@ -58,6 +59,8 @@ class Config:
         How much may be asked of it and how much it keeps.
     sign_in : SignIn
         How people sign in; not at all unless it is set.
+    work : Work
+        How much is done in the background.
     """
 
     data_directory: Path
@@ -72,6 +75,7 @@ class Config:
     access_log: str = ""
     bounds: Bounds = field(default_factory=Bounds)
     sign_in: SignIn = field(default_factory=SignIn)
+    work: Work = field(default_factory=Work)
 
     @property
     def database(self) -> str:
@@ -115,8 +119,8 @@ class Config:
 
         ``CANT_DATA`` (a directory), ``CANT_DATABASE`` (a URL), ``CANT_SIGNING_KEY``, ``CANT_KEEP_DAYS``,
         ``CANT_UPLOAD_MB``, ``CANT_PLANS_IN_MEMORY``, ``CANT_HTTPS`` (``yes``), ``CANT_HOSTS`` (separated by
-        commas), ``CANT_PROXIES`` (likewise), ``CANT_ACCESS_LOG`` (a file), the bounds, and how
-        people sign in.
+        commas), ``CANT_PROXIES`` (likewise), ``CANT_ACCESS_LOG`` (a file), the bounds, how people
+        sign in, and how much is done in the background.
 
         Raises
         ------
@@ -138,6 +142,7 @@ class Config:
             access_log=given.get("CANT_ACCESS_LOG", ""),
             bounds=Bounds.from_environment(given),
             sign_in=SignIn.from_environment(given),
+            work=Work.from_environment(given),
         )
 
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import threading
+from collections.abc import Iterator, Mapping
 from dataclasses import dataclass, field
 from datetime import UTC, datetime, timedelta
 from typing import cast
@@ -14,9 +15,13 @@ from cant.model.reading import Reading
 from webapp.computing import Computations, Computed
 from webapp.config import Config
 from webapp.keeping.database import Database
+from webapp.keeping.results import Results
 from webapp.keeping.store import Store, StoredPlan
+from webapp.keeping.work_claims import Claims
 from webapp.measures import SYSTEMS, Measures, measures
+from webapp.proposals import Proposal
 from webapp.security import owner
+from webapp.working.asking import Background
 
 EXTENSION = "cant"
 UNITS = "units"
@@ -31,6 +36,7 @@ class Running:
     database: Database
     store: Store
     computations: Computations
+    background: Background
     cleaned: datetime
     stopping: threading.Event = field(default_factory=threading.Event)
     """Set when the service has been told to stop: it is not ready for more then."""
@@ -41,6 +47,8 @@ class Running:
         if now - self.cleaned >= timedelta(hours=CLEANING_HOURS) or self.database.must_clear:
             self.cleaned = now
             self.store.remove_expired()
+            Claims(self.database).tidy()
+            Results(self.database).tidy()
 
 
 def running() -> Running:
@@ -78,7 +86,7 @@ def file_of(plan: StoredPlan) -> bytes:
 
 def reading_of(plan: StoredPlan) -> Reading:
     """Give how a plan's file is read; pages are in its units where the browser has chosen none."""
-    reading = running().computations.reading(plan, lambda: file_of(plan))
+    reading = running().computations.reading(plan, owner(), lambda: file_of(plan))
     settings = plan.decided.settings or reading.settings
     limits = plan.decided.limits or reading.limits
     if settings is not None or limits is not None:
@@ -88,9 +96,43 @@ def reading_of(plan: StoredPlan) -> Reading:
 
 def computed_of(plan: StoredPlan) -> Computed:
     """Give a plan's result; pages are in its units where the browser has chosen none."""
-    computed = running().computations.planned(plan, lambda: file_of(plan))
+    computed = planned_as(plan)
     g.plan_units = computed.planned.plan.settings.units
     return computed
+
+
+def planned_as(plan: StoredPlan) -> Computed:
+    """Give the result of a plan as it would be or has been, such as with a proposal."""
+    return running().computations.planned(plan, owner(), lambda: file_of(plan))
+
+
+def read_as(plan: StoredPlan, decisions: Mapping[str, str]) -> Reading:
+    """Read a plan's list as if something else were decided; CantError where it cannot be read then.
+
+    Parameters
+    ----------
+    plan : StoredPlan
+    decisions : mapping of str to str
+        Content by kind, as the store takes it; ``null`` takes back what was decided.
+    """
+    would_be = Proposal("", dict(decisions)).on(plan)
+    return running().computations.reading(would_be, owner(), lambda: file_of(plan))
+
+
+def workbook_of(plan: StoredPlan, computed: Computed, system: str) -> bytes:
+    """Give the workbook of a plan, in a system of units; that of a long one is made in the background."""
+    if _is_long(computed):
+        return running().background.workbook(plan, owner(), system)
+    return computed.workbook(file_of(plan), plan.file_name, system).data
+
+
+def document_of(plan: StoredPlan, computed: Computed) -> Iterator[bytes]:
+    """Give the JSON of a plan in pieces; that of a long one is made in the background."""
+    return running().background.document(plan, owner()) if _is_long(computed) else computed.json_chunks()
+
+
+def _is_long(computed: Computed) -> bool:
+    return len(computed.planned.plan.assessed) > running().config.work.long_curves
 
 
 def unconfirmed(plan: StoredPlan) -> Response | None:

@@ -7,11 +7,12 @@
 from cant.reading.answers import read_answers
 from cant.reading.document import reading_document, reading_table
 from cant.reading.frames import read_frames, sheet_from_frame
-from cant.reading.workbook import read_workbook
+from cant.reading.workbook import read_tables, read_workbook
 
 __all__ = [
     "read_answers",
     "read_frames",
+    "read_tables",
     "read_workbook",
     "reading_document",
     "reading_table",

@@ -113,6 +113,24 @@ def read_workbook(
     )
 
 
+def read_tables(
+    *,
+    traffic: Workbook | None = None,
+    limits_table: Workbook | None = None,
+    settings: Workbook | None = None,
+    methods: Sequence[str] = METHODS,
+) -> tuple[Traffic | None, LimitSet | None, Settings | None]:
+    """Read the tables that stand beside a curve list, without the list.
+
+    The files are those of :func:`read_workbook`, None is given back where none was; InputError where a table
+    cannot be used.
+    """
+    tables = _Tables()
+    none: dict[str, list[Sheet]] = {role: [] for role in ("traffic", "limits", "settings", "turnouts")}
+    _read_tables(tables, none, Workbook("", "csv", []), traffic, limits_table, settings, methods)
+    return tables.traffic, tables.limits, tables.settings
+
+
 def _roles(workbook: Workbook) -> dict[str, list[Sheet]]:
     roles: dict[str, list[Sheet]] = {
         role: [] for role in ("curves", "traffic", "limits", "settings", "turnouts", "other")

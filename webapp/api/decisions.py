@@ -18,7 +18,7 @@ from webapp.measures import measures
 from webapp.security import owner
 
 
-@operation("PUT", "/plans/{address}/curves/{number}/cant", answer=PlanSummary, body=HeldBody)
+@operation("PUT", "/plans/{address}/curves/{number}/cant", answer=PlanSummary, body=HeldBody, later=True)
 def hold_cant(address: str, number: int, body: HeldBody) -> PlanSummary:
     """Hold a curve's cant by hand; the plan around it is made anew."""
     plan = stored(address)
@@ -31,7 +31,13 @@ def hold_cant(address: str, number: int, body: HeldBody) -> PlanSummary:
     return _decide(plan, take(words, Decision(changes=(change,))), body.because, body.who)
 
 
-@operation("POST", "/plans/{address}/curves/{number}/options/{option}", answer=PlanSummary, body=ReasonBody)
+@operation(
+    "POST",
+    "/plans/{address}/curves/{number}/options/{option}",
+    answer=PlanSummary,
+    body=ReasonBody,
+    later=True,
+)
 def take_option(address: str, number: int, option: int, body: ReasonBody) -> PlanSummary:
     """Take an option of a curve, as its record offers them, counted from 1."""
     plan = stored(address)

@@ -10,7 +10,7 @@ from pydantic.json_schema import models_json_schema
 
 from cant.version import __version__
 from cant.writing.cautions import CAUTIONS
-from webapp.api.models import ErrorAnswer
+from webapp.api.models import ErrorAnswer, WorkAnswer
 from webapp.api.operations import OPERATIONS, Operation, api
 from webapp.security import SESSION_COOKIE
 
@@ -21,6 +21,7 @@ VARIABLES: dict[str, dict[str, Any]] = {
     "number": {"type": "integer", "minimum": 1, "maximum": 10_000_000},
     "option": {"type": "integer", "minimum": 1, "maximum": 100},
     "change": {"type": "string", "pattern": "^[A-Za-z0-9_-]{12}$"},
+    "work": {"type": "string", "pattern": "^[A-Za-z0-9_-]{20}$"},
     "name": {"type": "string", "minLength": 1, "maxLength": 80, "pattern": "^[a-z0-9-]+$"},
 }
 ERRORS = {
@@ -81,7 +82,7 @@ def _operation(what: Operation, schemas: dict[str, Any]) -> dict[str, Any]:
     made: dict[str, Any] = {
         "operationId": what.name,
         "summary": what.summary,
-        "responses": {str(what.code): _success(what), **_errors(what)},
+        "responses": {str(what.code): _success(what), **_not_yet(what), **_errors(what)},
     }
     parameters = [
         {"name": name, "in": "path", "required": True, "schema": schema}
@@ -117,6 +118,25 @@ def _success(what: Operation) -> dict[str, Any]:
     if isinstance(what.answer, str):
         return {"description": "The file.", "content": {what.answer: {"schema": BINARY}}}
     return {"description": "Done.", "content": {"application/json": {"schema": _reference(what.answer)}}}
+
+
+def _not_yet(what: Operation) -> dict[str, Any]:
+    if not what.later:
+        return {}
+    headers = {
+        "Location": {"schema": {"type": "string"}, "description": "Where the work can be looked at."},
+        "Retry-After": {"schema": {"type": "integer"}, "description": "Seconds."},
+    }
+    words = {
+        "202": "Not yet: it is made in the background. Ask the same again later.",
+        "409": "The work for it was cancelled, or failed; the message says how to start it again.",
+    }
+    models: dict[str, type[BaseModel]] = {"202": WorkAnswer, "409": ErrorAnswer}
+    answers = {
+        code: {"description": text, "content": {"application/json": {"schema": _reference(models[code])}}}
+        for code, text in words.items()
+    }
+    return {**answers, "202": {**answers["202"], "headers": headers}}
 
 
 def _errors(what: Operation) -> dict[str, Any]:

@@ -4,7 +4,7 @@ from __future__ import annotations
 
 import math
 from datetime import datetime
-from typing import Annotated, Any, Literal
+from typing import Annotated, Any, Literal, cast
 
 from pydantic import BaseModel, ConfigDict, Field
 
@@ -14,12 +14,15 @@ from cant.model.settings import METHODS, Settings
 from cant.model.traffic import Traffic, TrainClass
 from cant.units import UNITS
 from webapp.keeping.store import StoredPlan
+from webapp.keeping.work import Piece
+from webapp.working.orders import WORDS
 
 Amount = Annotated[float, Field(ge=0, allow_inf_nan=False)]
 Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
 Name = Annotated[str, Field(min_length=1, max_length=80, pattern=r"^[^\x00-\x1f\x7f]*\S[^\x00-\x1f\x7f]*$")]
 Words = Annotated[str, Field(max_length=300, pattern=r"^[^\x00-\x1f\x7f]*$")]
 Unlimited = Literal["none"]
+WorkState = Literal["waiting", "under way", "done", "refused", "failed", "cancelled"]
 
 
 class Taken(BaseModel):
@@ -80,6 +83,39 @@ class PlanSummary(Given):
             links={**links, "page": f"/plans/{plan.address}"},
             key=key,
         )
+
+
+class WorkAnswer(Given):
+    """Long work: ``before`` pieces are taken up first; ``message`` says why it ended undone."""
+
+    id: str
+    what: str
+    state: WorkState
+    share: float
+    doing: str
+    message: str
+    before: int
+    links: dict[str, str]
+
+    @classmethod
+    def of(cls, piece: Piece, address: str, before: int) -> WorkAnswer:
+        """Make the answer of a piece of a plan's work."""
+        return cls(
+            id=piece.address,
+            what=WORDS[piece.kind],
+            state=cast("WorkState", piece.state),
+            share=piece.share,
+            doing=piece.doing,
+            message=piece.message,
+            before=before,
+            links={"self": f"/api/v1/plans/{address}/work/{piece.address}"},
+        )
+
+
+class WorkList(Given):
+    """The long work of a plan."""
+
+    work: list[WorkAnswer]
 
 
 class PlanList(Given):

@@ -41,6 +41,8 @@ class Operation:
         The body is a form with files.
     open : bool
         Asks for no plan's owner.
+    later : bool
+        What is asked for may be made in the background: the answer is then 202, and tells how far it is.
     """
 
     name: str
@@ -53,6 +55,7 @@ class Operation:
     query: type[BaseModel] | None = None
     upload: bool = False
     open: bool = False
+    later: bool = False
 
     @property
     def changes(self) -> bool:

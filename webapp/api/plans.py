@@ -2,6 +2,7 @@
 
 from __future__ import annotations
 
+import contextlib
 from typing import Any
 
 from flask import Response
@@ -20,11 +21,13 @@ from webapp.api.models import (
     TrafficBody,
 )
 from webapp.api.operations import operation
-from webapp.context import file_of, reading_of, running, stored
-from webapp.deciding import check_reading, checked_units
+from webapp.busy import BusyError
+from webapp.context import read_as, reading_of, running, stored
+from webapp.deciding import checked_units
 from webapp.decisions import as_text, limits_text, settings_text, traffic_text
 from webapp.security import new_key, owner
 from webapp.uploads import needed, uploaded
+from webapp.working.asking import NotYetError
 
 XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
 
@@ -34,16 +37,25 @@ def create_plan() -> PlanSummary:
     """Make a plan from a curve list, with trains, limits and settings beside it where they are not in it."""
     data, name = needed("file", "a workbook or a csv file with a curve list")
     traffic, limits, settings = (uploaded(field) for field in ("traffic", "limits", "settings"))
-    reading = service.read_curves(data, name, traffic=traffic, limits=limits, settings=settings)
     decisions: dict[str, str] = {"confirmed": as_text(True)}
-    if traffic and reading.traffic:
-        decisions["traffic"] = traffic_text(reading.traffic)
-    if limits and reading.limits:
-        decisions["limits"] = limits_text(reading.limits)
-    if settings and reading.settings:
-        decisions["settings"] = settings_text(reading.settings)
+    if running().computations.is_long(len(data)):
+        tables = service.tables_beside(traffic=traffic, limits=limits, settings=settings)
+    else:
+        reading = service.read_curves(data, name, traffic=traffic, limits=limits, settings=settings)
+        tables = (reading.traffic, reading.limits, reading.settings)
+    if traffic and tables[0]:
+        decisions["traffic"] = traffic_text(tables[0])
+    if limits and tables[1]:
+        decisions["limits"] = limits_text(tables[1])
+    if settings and tables[2]:
+        decisions["settings"] = settings_text(tables[2])
     key = new_key()
-    return PlanSummary.of(running().store.add(owner(), name, data, decisions), key)
+    plan = running().store.add(owner(), name, data, decisions)
+    if running().computations.is_long(len(data)):
+        # Its reading begins at once; where that must wait, it is asked for with the first question.
+        with contextlib.suppress(NotYetError, BusyError):
+            reading_of(plan)
+    return PlanSummary.of(plan, key)
 
 
 @operation("GET", "/plans", answer=PlanList)
@@ -64,37 +76,37 @@ def delete_plan(address: str) -> None:
     running().store.remove(owner(), address)
 
 
-@operation("GET", "/plans/{address}/reading", answer=ReadingAnswer)
+@operation("GET", "/plans/{address}/reading", answer=ReadingAnswer, later=True)
 def get_reading(address: str) -> dict[str, Any]:
     """Tell how the file is read: columns, questions, rejected rows."""
     return dict(reading_document(reading_of(stored(address))))
 
 
-@operation("PUT", "/plans/{address}/answers", answer=ReadingAnswer, body=AnswersBody)
+@operation("PUT", "/plans/{address}/answers", answer=ReadingAnswer, body=AnswersBody, later=True)
 def put_answers(address: str, body: AnswersBody) -> dict[str, Any]:
     """Answer questions and correct columns; the file is read anew."""
     plan = stored(address)
     given = {key: value for key, value in body.model_dump().items() if value} or None
-    reading = check_reading(plan, file_of(plan), answers=given)
+    reading = read_as(plan, {"answers": as_text(given)})
     running().store.decide(owner(), address, {"answers": as_text(given)})
     return dict(reading_document(reading))
 
 
-@operation("PUT", "/plans/{address}/traffic", answer=PlanSummary, body=TrafficBody)
+@operation("PUT", "/plans/{address}/traffic", answer=PlanSummary, body=TrafficBody, later=True)
 def put_traffic(address: str, body: TrafficBody) -> PlanSummary:
     """Replace the traffic."""
     plan = stored(address)
     traffic = body.traffic()
-    check_reading(plan, file_of(plan), traffic=traffic)
+    read_as(plan, {"traffic": traffic_text(traffic)})
     return _decided(address, {"traffic": traffic_text(traffic)})
 
 
-@operation("PUT", "/plans/{address}/limits", answer=PlanSummary, body=LimitsBody)
+@operation("PUT", "/plans/{address}/limits", answer=PlanSummary, body=LimitsBody, later=True)
 def put_limits(address: str, body: LimitsBody) -> PlanSummary:
     """Replace the limits: by a set that comes with the program, or by rules that are sent."""
     plan = stored(address)
     limits = _limits(body)
-    check_reading(plan, file_of(plan), limits=limits)
+    read_as(plan, {"limits": limits_text(limits)})
     return _decided(address, {"limits": limits_text(limits)})
 
 

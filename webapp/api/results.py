@@ -9,21 +9,21 @@ from flask import Response
 from cant.model.plan import PlanDocument
 from webapp.api.models import CurvesAnswer, CurvesQuery, NumberedCurve
 from webapp.api.operations import operation
-from webapp.context import computed_of, file_of, stored
+from webapp.context import computed_of, document_of, stored, workbook_of
 from webapp.keeping.store import NotThereError
 from webapp.listing import Wanted
 
 XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
 
 
-@operation("GET", "/plans/{address}/result", answer=PlanDocument)
+@operation("GET", "/plans/{address}/result", answer=PlanDocument, later=True)
 def get_result(address: str) -> Response:
     """Give the whole plan, metric always."""
-    computed = computed_of(stored(address))
-    return Response(computed.json_chunks(), mimetype="application/json")
+    plan = stored(address)
+    return Response(document_of(plan, computed_of(plan)), mimetype="application/json")
 
 
-@operation("GET", "/plans/{address}/curves", answer=CurvesAnswer, query=CurvesQuery)
+@operation("GET", "/plans/{address}/curves", answer=CurvesAnswer, query=CurvesQuery, later=True)
 def get_curves(address: str, query: CurvesQuery) -> dict[str, Any]:
     """Give a page of curves, filtered and sorted."""
     computed = computed_of(stored(address))
@@ -49,7 +49,7 @@ def get_curves(address: str, query: CurvesQuery) -> dict[str, Any]:
     }
 
 
-@operation("GET", "/plans/{address}/curves/{number}", answer=NumberedCurve)
+@operation("GET", "/plans/{address}/curves/{number}", answer=NumberedCurve, later=True)
 def get_curve(address: str, number: int) -> dict[str, Any]:
     """Give everything the plan knows of one curve."""
     computed = computed_of(stored(address))
@@ -59,10 +59,10 @@ def get_curve(address: str, number: int) -> dict[str, Any]:
     return {"number": number, **computed.record(number - 1, computed.planned.plan.settings.units)}
 
 
-@operation("GET", "/plans/{address}/workbook", answer=XLSX)
+@operation("GET", "/plans/{address}/workbook", answer=XLSX, later=True)
 def get_workbook(address: str) -> Response:
     """Give the workbook with the plan written into it."""
     plan = stored(address)
     computed = computed_of(plan)
-    made = computed.workbook(file_of(plan), plan.file_name, computed.planned.plan.settings.units)
-    return Response(made.data, mimetype=XLSX)
+    data = workbook_of(plan, computed, computed.planned.plan.settings.units)
+    return Response(data, mimetype=XLSX)

@@ -23,7 +23,7 @@
 
   async function show(address, place, mm) {
     const answer = await fetch(`${address}?cant=${mm}&units=${units}`, { headers: { Accept: "application/json" } });
-    if (!answer.ok) throw new Error("the service did not answer");
+    if (answer.status !== 200) throw new Error("the service did not answer");
     const told = await answer.json();
     place.innerHTML = told.markup;
     place.dataset.cant = String(mm);

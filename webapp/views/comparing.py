@@ -11,9 +11,10 @@ from cant.errors import InputError
 from cant.explaining import read_decision
 from webapp.changes import take, with_reason
 from webapp.computing import Computed
-from webapp.context import computed_of, current_measures, file_of, running, stored, unconfirmed
+from webapp.context import computed_of, current_measures, planned_as, running, stored, unconfirmed
 from webapp.decisions import CHANGE, as_text
 from webapp.difference_view import page_of_difference, pair_words
+from webapp.going_on import carry_on
 from webapp.history_view import moment_of, moments, signed_by
 from webapp.keeping.store import NotThereError, StoredPlan
 from webapp.proposals import Proposal, at_moment, proposal_of
@@ -45,7 +46,7 @@ def show(address: str) -> ResponseReturnValue:
         titles = (f"after step {first}" if first else "the list as it came", f"after step {last}")
     else:
         return render_template("compare.html", found=None, others=others, steps=moments(plan))
-    return _page(_computed(before), _computed(after), titles, others=others, steps=moments(plan))
+    return _page(planned_as(before), planned_as(after), titles, others=others, steps=moments(plan))
 
 
 @pages.post("/compare")
@@ -64,7 +65,7 @@ def keep(address: str) -> ResponseReturnValue:
     reason, who, problems = signed_by(request.form)
     if problems:
         return page_of_proposal(plan, proposal, problems)
-    _computed(proposal.on(plan))
+    planned_as(proposal.on(plan))
     decisions = dict(proposal.decisions)
     if CHANGE in decisions:
         decisions[CHANGE] = as_text(with_reason(json.loads(decisions[CHANGE]), reason))
@@ -98,7 +99,9 @@ def page_of_proposal(
 ) -> ResponseReturnValue:
     """Show what a proposal would change, and let it be kept."""
     number = request.form.get("page", "1")
-    before, after = computed_of(plan), _computed(proposal.on(plan))
+    if "proposal" not in request.form:
+        carry_on(url_for("comparing.look", address=plan.address), {"proposal": proposal.signed(plan)})
+    before, after = computed_of(plan), planned_as(proposal.on(plan))
     titles = ("as it is", "with this")
     shown = _page(
         before,
@@ -125,7 +128,3 @@ def _page(
         query={k: v for k, v in request.args.items() if k != "page"},
         **more,
     )
-
-
-def _computed(plan: StoredPlan) -> Computed:
-    return running().computations.planned(plan, lambda: file_of(plan))

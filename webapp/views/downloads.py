@@ -9,7 +9,15 @@ from flask import Blueprint, Response, render_template
 from flask.typing import ResponseReturnValue
 
 from cant.files.annotate import can_annotate
-from webapp.context import computed_of, current_measures, file_of, stored, unconfirmed
+from webapp.context import (
+    computed_of,
+    current_measures,
+    document_of,
+    file_of,
+    stored,
+    unconfirmed,
+    workbook_of,
+)
 from webapp.tables import file_name
 
 pages = Blueprint("downloads", __name__, url_prefix="/plans/<address>")
@@ -45,10 +53,10 @@ def workbook(address: str) -> ResponseReturnValue:
     if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
-    made = computed.workbook(file_of(plan), plan.file_name, current_measures().system)
+    data = workbook_of(plan, computed, current_measures().system)
     path = PurePath(plan.file_name)
     ending = ".xlsm" if path.suffix.lower() == ".xlsm" else ".xlsx"
-    answer = Response(made.data, mimetype=MACROS if ending == ".xlsm" else XLSX)
+    answer = Response(data, mimetype=MACROS if ending == ".xlsm" else XLSX)
     answer.headers["Content-Disposition"] = attachment(f"{path.stem}-cants{ending}")
     return answer
 
@@ -60,7 +68,7 @@ def document(address: str) -> ResponseReturnValue:
     if away := unconfirmed(plan):
         return away
     computed = computed_of(plan)
-    answer = Response(computed.json_chunks(), mimetype="application/json")
+    answer = Response(document_of(plan, computed), mimetype="application/json")
     answer.headers["Content-Disposition"] = attachment(f"{PurePath(plan.file_name).stem}-cants.json")
     return answer
 

@@ -10,12 +10,12 @@ from cant.errors import CantError, InputError
 from cant.model.limits import QUANTITIES, LimitSet
 from cant.model.settings import METHODS, Settings
 from webapp import limits_form, settings_form
-from webapp.context import current_measures, file_of, reading_of, running, stored
-from webapp.deciding import check_reading
+from webapp.context import current_measures, planned_as, read_as, reading_of, running, stored
 from webapp.decisions import as_text, limits_text, settings_text
+from webapp.going_on import carry_on
 from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
-from webapp.proposals import Proposal
+from webapp.proposals import Proposal, proposal_of
 from webapp.security import owner
 from webapp.tables import file_name, limits_csv
 from webapp.uploads import needed
@@ -77,14 +77,13 @@ def choose(address: str) -> ResponseReturnValue:
     source, _, name = request.form.get("source", "").partition(":")
     found = None if source == "file" else _found(source, name)
     if "compare" in request.form and plan.decided.confirmed:
-        check_reading(plan, file_of(plan), limits=found)
         words = "The limits of the file" if found is None else f"The limits {found.title or found.name}"
         text = "null" if found is None else limits_text(found)
         return page_of_proposal(plan, Proposal(words, {"limits": text}))
     if found is None:
         running().store.decide(owner(), address, {"limits": "null"})
     else:
-        _keep(plan, found)
+        _keep(plan, limits_text(found))
     flash("The limits have been taken; look through them below.")
     return redirect(url_for("limits.show", address=address), 303)
 
@@ -114,9 +113,8 @@ def change(address: str) -> ResponseReturnValue:
         return _page(plan, "Some fields cannot be used; each says why.", problems, sent, 422)
     try:
         if "compare" in request.form and plan.decided.confirmed:
-            check_reading(plan, file_of(plan), limits=limits)
             return page_of_proposal(plan, Proposal("Other limits", {"limits": limits_text(limits)}))
-        _keep(plan, limits)
+        _keep(plan, limits_text(limits))
         name = request.form.get("keep-as", "").strip()
         if name:
             kept = limits.model_copy(update={"name": name})
@@ -142,18 +140,14 @@ def from_file(address: str) -> ResponseReturnValue:
     """Take the limits of a file."""
     plan = stored(address)
     try:
-        given = needed("file", "a workbook or a csv file with a limits table")
-        read = check_reading(plan, file_of(plan), limits_file=given)
-        if read.limits is None:
-            message = f"{given[1]} holds no limits table: headings Quantity, Normal and Unit are needed"
-            raise InputError(message)
+        proposal = _of_file(plan)
         if "compare" in request.form and plan.decided.confirmed:
-            proposal = Proposal(f"The limits of {given[1]}", {"limits": limits_text(read.limits)})
             return page_of_proposal(plan, proposal)
-        _keep(plan, read.limits)
+        carry_on(url_for("limits.from_file", address=address), {"proposal": proposal.signed(plan)})
+        _keep(plan, proposal.decisions["limits"])
     except CantError as error:
         return _page(plan, str(error), code=422)
-    flash(f"The limits of {given[1]} have been taken.")
+    flash(f"{proposal.words} have been taken.")
     return redirect(url_for("limits.show", address=address), 303)
 
 
@@ -192,15 +186,27 @@ def settings(address: str) -> ResponseReturnValue:
 def confirm(address: str) -> ResponseReturnValue:
     """Ask for the cants."""
     plan = stored(address)
-    running().computations.planned(plan, lambda: file_of(plan))
+    planned_as(plan)
     running().store.decide(owner(), address, {"confirmed": as_text(True)})
     return redirect(url_for("result.show", address=address), 303)
 
 
-def _keep(plan: StoredPlan, limits: LimitSet) -> None:
+def _of_file(plan: StoredPlan) -> Proposal:
+    """Give what a file would change; where the list took long to read with it, the form sends that alone."""
+    if "proposal" in request.form:
+        return proposal_of(plan, request.form["proposal"])
+    given = needed("file", "a workbook or a csv file with a limits table")
+    _, limits, _ = service.tables_beside(limits=given)
+    if limits is None:
+        message = f"{given[1]} holds no limits table: headings Quantity, Normal and Unit are needed"
+        raise InputError(message)
+    return Proposal(f"The limits of {given[1]}", {"limits": limits_text(limits)})
+
+
+def _keep(plan: StoredPlan, limits: str) -> None:
     """Keep limits where the list can be read with them: a situation that no rule names is unknown."""
     before = _limits(plan)
-    if before is not None and limits_text(limits) == limits_text(before):
+    if before is not None and limits == limits_text(before):
         return
-    check_reading(plan, file_of(plan), limits=limits)
-    running().store.decide(owner(), plan.address, {"limits": limits_text(limits)})
+    read_as(plan, {"limits": limits})
+    running().store.decide(owner(), plan.address, {"limits": limits})

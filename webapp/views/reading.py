@@ -8,10 +8,9 @@ from flask.typing import ResponseReturnValue
 from cant.errors import CantError
 from cant.model.reading import Reading
 from webapp import reading_form
-from webapp.context import file_of, reading_of, running, stored
-from webapp.deciding import check_reading
+from webapp.context import read_as, reading_of, running, stored
 from webapp.decisions import as_text
-from webapp.keeping.store import StoredPlan
+from webapp.keeping.store import NotAllowedError, NotThereError, StoredPlan
 from webapp.security import owner
 
 pages = Blueprint("reading", __name__, url_prefix="/plans/<address>")
@@ -20,8 +19,13 @@ SHOWN_PROBLEMS = 200
 
 @pages.get("/list")
 def show(address: str) -> ResponseReturnValue:
-    """Show how the list is understood."""
-    return _page(address, "")
+    """Show how the list is understood; of a long one that was stored before it was read, why it is not."""
+    try:
+        return _page(address, "")
+    except (NotThereError, NotAllowedError):
+        raise
+    except CantError as error:
+        return render_template("unreadable.html", problem=str(error)), 422
 
 
 def _page(address: str, problem: str) -> str:
@@ -61,7 +65,7 @@ def answer(address: str) -> ResponseReturnValue:
     reading = reading_of(plan)
     answers = reading_form.answers(request.form, reading, plan.decided.answers)
     try:
-        check_reading(plan, file_of(plan), answers=answers)
+        read_as(plan, {"answers": as_text(answers)})
     except CantError as error:
         return _page(address, str(error)), 422
     running().store.decide(owner(), address, {"answers": as_text(answers)})

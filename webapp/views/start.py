@@ -14,6 +14,7 @@ from webapp.decisions import as_text
 from webapp.measures import SYSTEMS
 from webapp.security import owner
 from webapp.uploads import needed
+from webapp.working.orders import WORDS
 
 pages = Blueprint("start", __name__)
 SAMPLE = "dunmarrow_keldrith.xlsx"
@@ -21,9 +22,12 @@ XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"
 
 
 def _start_page(problem: str = "", code: int = 200) -> ResponseReturnValue:
+    plans = running().store.plans(owner())
     shown = render_template(
         "start.html",
-        plans=running().store.plans(owner()),
+        plans=plans,
+        work=running().background.queue.open_of([plan.address for plan in plans]),
+        work_words=WORDS,
         problem=problem,
         upload_mb=running().config.upload_mb,
     )
@@ -38,14 +42,16 @@ def home() -> ResponseReturnValue:
 
 @pages.post("/plans")
 def upload() -> ResponseReturnValue:
-    """Make a plan from a file; one that cannot be read is not kept."""
+    """Make a plan from a file; one that cannot be read is not kept, a long one is kept and then read."""
     try:
         data, name = needed("file", "a workbook or a csv file with a curve list")
-        reading = service.read_curves(data, name)
+        at_once = not running().computations.is_long(len(data))
+        reading = service.read_curves(data, name) if at_once else None
     except CantError as error:
         return _start_page(str(error), 422)
     plan = running().store.add(owner(), name, data)
-    running().computations.keep_reading(plan, reading)
+    if reading is not None:
+        running().computations.keep_reading(plan, reading)
     return redirect(url_for("reading.show", address=plan.address), 303)
 
 

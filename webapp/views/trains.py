@@ -5,15 +5,16 @@ from __future__ import annotations
 from flask import Blueprint, Response, flash, redirect, render_template, request, url_for
 from flask.typing import ResponseReturnValue
 
+from cant import service
 from cant.errors import CantError, InputError
 from cant.model.traffic import Traffic
 from webapp import trains_form
-from webapp.context import current_measures, file_of, reading_of, running, stored
-from webapp.deciding import check_reading
+from webapp.context import current_measures, read_as, reading_of, running, stored
 from webapp.decisions import traffic_text
+from webapp.going_on import carry_on
 from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
-from webapp.proposals import Proposal
+from webapp.proposals import Proposal, proposal_of
 from webapp.security import owner
 from webapp.tables import TRAFFIC_FILE, traffic_csv
 from webapp.uploads import needed
@@ -66,9 +67,8 @@ def change(address: str) -> ResponseReturnValue:
         return _page(plan, [*rows, *(trains_form.blank_row() for _ in range(3))], {})
     try:
         if "compare" in request.form and plan.decided.confirmed:
-            check_reading(plan, file_of(plan), traffic=traffic)
             return page_of_proposal(plan, Proposal("Other trains", {"traffic": traffic_text(traffic)}))
-        _keep(plan, traffic)
+        _keep(plan, traffic_text(traffic))
     except CantError as error:
         return _page(plan, rows, {}, str(error), 422)
     flash("The trains have been taken.")
@@ -80,18 +80,14 @@ def from_file(address: str) -> ResponseReturnValue:
     """Take the traffic of a file."""
     plan = stored(address)
     try:
-        given = needed("file", "a workbook or a csv file with a traffic table")
-        read = check_reading(plan, file_of(plan), traffic_file=given)
-        if read.traffic is None:
-            message = f"{given[1]} holds no traffic table: a heading 'Class' and one row a class are needed"
-            raise InputError(message)
+        proposal = _of_file(plan)
         if "compare" in request.form and plan.decided.confirmed:
-            proposal = Proposal(f"The trains of {given[1]}", {"traffic": traffic_text(read.traffic)})
             return page_of_proposal(plan, proposal)
-        _keep(plan, read.traffic)
+        carry_on(url_for("trains.from_file", address=address), {"proposal": proposal.signed(plan)})
+        _keep(plan, proposal.decisions["traffic"])
     except CantError as error:
         return _page(plan, _rows(plan), {}, str(error), 422)
-    flash(f"The trains of {given[1]} have been taken.")
+    flash(f"{proposal.words} have been taken.")
     return redirect(url_for("trains.show", address=address), 303)
 
 
@@ -115,10 +111,22 @@ def as_file(address: str) -> ResponseReturnValue:
     return made
 
 
-def _keep(plan: StoredPlan, traffic: Traffic) -> None:
+def _of_file(plan: StoredPlan) -> Proposal:
+    """Give what a file would change; where the list took long to read with it, the form sends that alone."""
+    if "proposal" in request.form:
+        return proposal_of(plan, request.form["proposal"])
+    given = needed("file", "a workbook or a csv file with a traffic table")
+    traffic, _, _ = service.tables_beside(traffic=given)
+    if traffic is None:
+        message = f"{given[1]} holds no traffic table: a heading 'Class' and one row a class are needed"
+        raise InputError(message)
+    return Proposal(f"The trains of {given[1]}", {"traffic": traffic_text(traffic)})
+
+
+def _keep(plan: StoredPlan, traffic: str) -> None:
     """Keep a traffic table where the list can be read with it."""
     before = _traffic(plan)
-    if before is not None and traffic_text(traffic) == traffic_text(before):
+    if before is not None and traffic == traffic_text(before):
         return
-    check_reading(plan, file_of(plan), traffic=traffic)
-    running().store.decide(owner(), plan.address, {"traffic": traffic_text(traffic)})
+    read_as(plan, {"traffic": traffic})
+    running().store.decide(owner(), plan.address, {"traffic": traffic})
