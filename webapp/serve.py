@@ -20,6 +20,7 @@ from webapp.context import EXTENSION, Running
 from webapp.guarding.access_log import log_to
 from webapp.guarding.cleaning import Cleaner
 from webapp.guarding.listening import Server, make_server
+from webapp.working.keeper import Keeper
 
 LOOPBACK_HOSTS = ("localhost", "127.0.0.1", "[::1]", "::1")
 STOPPED_AT_ONCE = 1
@@ -59,13 +60,15 @@ def run(host: str = "127.0.0.1", port: int = 8000) -> None:
         message = f"cannot listen at {host} port {port}: {reason}; give another with --host or --port"
         raise FileError(message) from error
     log_to(config.access_log)
-    cleaner = Cleaner(parts.clean)
+    cleaner, keeper = Cleaner(parts.clean), Keeper(config.work.workers)
     with _stopped_by_signals(server, parts):
         cleaner.start()
+        keeper.start()
         _announce(host, server.port, config, local=local)
         try:
             server.run(config.bounds.seconds_to_stop)
         finally:
+            keeper.stop()
             cleaner.stop()
             parts.database.close()
 

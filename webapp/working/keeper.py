@@ -15,9 +15,16 @@ STOP_S = 10.0
 
 
 class Keeper:
-    """Keeps a worker process; its configuration is the environment's, as the service's is."""
+    """Keeps a worker process; its configuration is the environment's, as the service's is.
 
-    def __init__(self) -> None:
+    Parameters
+    ----------
+    workers : int
+        Pieces that it does at the same time; for 0 there is no worker here.
+    """
+
+    def __init__(self, workers: int) -> None:
+        self._wanted = workers > 0
         self._stopping = threading.Event()
         self._lock = threading.Lock()
         self._process: subprocess.Popen[bytes] | None = None
@@ -25,8 +32,9 @@ class Keeper:
 
     def start(self) -> None:
         """Begin."""
-        self._begin()
-        self._thread.start()
+        if self._wanted:
+            self._begin()
+            self._thread.start()
 
     def stop(self) -> None:
         """Let the worker put its work back and end."""

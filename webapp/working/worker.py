@@ -98,7 +98,7 @@ class Worker:
         if now - self._looked_for_lost >= LOST_EVERY_S:
             self._looked_for_lost = now
             self._claims.find_lost()
-        while (room := self._config.work.workers + 1 - len(self._children)) > 0:
+        while (room := max(self._config.work.workers, 1) + 1 - len(self._children)) > 0:
             piece = self._claims.take(KINDS if room > 1 else QUICK)
             if piece is None:
                 return
