@@ -12,11 +12,11 @@ from typing import TYPE_CHECKING, Any
 
 from waitress import wasyncore
 from waitress.adjustments import Adjustments
-from waitress.channel import HTTPChannel
 from waitress.server import TcpWSGIServer
 from waitress.task import ThreadedTaskDispatcher
 
 from webapp.guarding.bounds import Bounds
+from webapp.guarding.channel import Channel
 from webapp.guarding.turns import MOST_WAITING
 
 if TYPE_CHECKING:
@@ -26,44 +26,10 @@ LIGHT_THREADS = 8
 """Threads for what needs no turn: it answers even while as many wait as may."""
 IDLE_S = 75
 CLEANUP_S = 5
-MINUTE_BYTES = 10_000_000
-"""A request may take a minute more for each of these."""
 HELD_BYTES = 1_000_000_000
 """An answer is held for a slow client, on disk, up to this size: no thread waits for him."""
 BEYOND_UPLOAD_BYTES = 1_000_000
 """Room for what stands around a file in a request; what is larger is refused by its header."""
-
-
-class Channel(HTTPChannel):
-    """A connection that knows how long its request has been arriving."""
-
-    begun = 0.0
-
-    def received(self, data: bytes) -> bool:
-        """Take bytes of a request."""
-        before = self.request
-        taken = bool(super().received(data))
-        if self.request is not None and self.request is not before:
-            self.begun = time.time()
-        return taken
-
-    def service(self) -> None:
-        """Answer a request; once the server stops it is the last one of its connection."""
-        super().service()
-        if getattr(self.server, "stopping", False):
-            self.close_when_flushed = True
-
-    def is_too_slow(self, now: float, seconds: float) -> bool:
-        """Tell whether its request should have arrived by now."""
-        if self.request is None or self.requests:
-            return False
-        more = 60.0 * self.request.body_bytes_received / MINUTE_BYTES
-        return now - self.begun > seconds + more
-
-    @property
-    def is_working(self) -> bool:
-        """Whether a request is arriving or being worked on, or an answer under way."""
-        return bool(self.requests or self.request is not None or self.total_outbufs_len)
 
 
 class Listener(TcpWSGIServer):
@@ -77,9 +43,8 @@ class Listener(TcpWSGIServer):
         """Close what has been idle for long, and what takes too long to arrive."""
         super().maintenance(int(now))
         channels: dict[int, Channel] = self.active_channels  # type: ignore[assignment]
-        for channel in channels.values():
-            if channel.is_too_slow(now, self.seconds_to_send):
-                channel.will_close = True
+        for channel in list(channels.values()):
+            channel.close_where_late(now, self.seconds_to_send)
 
     def stop_listening(self) -> None:
         """Accept no more connections; those that are open stay."""

@@ -57,20 +57,24 @@ class Turns:
             if self._free:
                 self._free -= 1
                 return
-            full = len(self._queue) >= self._most or (who and self._waiting[who] >= self._most_person)
-            if full and not however_long:
-                raise BusyError(RETRY_S)
+            if not however_long:
+                self._refuse_where_full(who)
+                self._waiting[who] += 1
             called = threading.Event()
             self._queue.append(called)
-            self._waiting[who] += 1
         in_time = called.wait(None if however_long else self.wait_s)
         with self._lock:
-            self._waiting[who] -= 1
-            if not self._waiting[who]:
-                del self._waiting[who]
+            if not however_long:
+                self._waiting[who] -= 1
+                self._waiting += Counter()  # forgets who waits no more
             if not in_time and not called.is_set():
                 self._queue.remove(called)
                 raise BusyError(RETRY_S)
+
+    def _refuse_where_full(self, who: str) -> None:
+        by_person = self._waiting[who] if who else 0
+        if self._waiting.total() >= self._most or by_person >= self._most_person:
+            raise BusyError(RETRY_S)
 
     def give_back(self) -> None:
         """Give a turn to who waits longest."""
