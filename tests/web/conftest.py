@@ -14,6 +14,7 @@ from typing import Any
 import psycopg
 import pytest
 from flask import Flask
+from people_tools import made
 from playwright.sync_api import Browser as Chromium
 from playwright.sync_api import BrowserContext, sync_playwright
 from screen_tools import ARGUMENTS, SCREENS, Visit, Visitor
@@ -23,6 +24,7 @@ from web_tools import CURVES, Browser
 from webapp.app import create_app
 from webapp.config import Config
 from webapp.context import EXTENSION
+from webapp.people.settings import SignIn
 
 
 @pytest.fixture(scope="session")
@@ -84,6 +86,22 @@ def start(tmp_path: Path) -> Iterator[Callable[..., Flask]]:
 def app(start: Callable[..., Flask]) -> Flask:
     """Give the service on SQLite."""
     return start()
+
+
+@pytest.fixture
+def office(start: Callable[..., Flask], database_url: str) -> Flask:
+    """Give a service where people sign in, on either database; Anna Holt has an account."""
+    app = start(database_url, sign_in=SignIn(accounts=True))
+    made(app, "anna", full_name="Anna Holt")
+    return app
+
+
+@pytest.fixture
+def house(start: Callable[..., Flask]) -> Flask:
+    """Give a service where people sign in, on SQLite alone; Anna Holt has an account."""
+    app = start(sign_in=SignIn(accounts=True))
+    made(app, "anna", full_name="Anna Holt")
+    return app
 
 
 @pytest.fixture

@@ -19,7 +19,7 @@ from werkzeug.exceptions import Forbidden, Unauthorized
 from cant.errors import InputError
 from webapp.context import running
 from webapp.keeping.accounts import Account
-from webapp.keeping.sign_ins import SignedIn
+from webapp.keeping.sign_ins import SignedIn, digest_of
 from webapp.people.events import tell
 from webapp.people.people import People, checked_account_name, people
 
@@ -32,8 +32,7 @@ OPEN = frozenset(
     {"static", "people.sign_in", "start.template", "start.units", "api.description", "api.get_template"}
 )
 OPEN_PARTS = frozenset({"help"})
-BEFORE_READY = frozenset({"people.sign_out", "account.password", "account.second_factor"})
-"""What somebody may do who has to choose a password or a second factor first."""
+SIGN_OUT = "people.sign_out"
 NAMELESS = "who asks is not told: the proxy before this service must name who has signed in"
 
 
@@ -71,7 +70,7 @@ class Person(UserMixin):  # type: ignore[misc]
     @property
     def form_owner(self) -> str:
         """Whose forms are good: this sign-in's, so that none outlives it."""
-        return self.owner if self.sign_in is None else f"{self.owner}/{self.sign_in.id}"
+        return f"{self.owner}/{digest_of(self.secret)[:32]}" if self.secret else self.owner
 
     def has(self, role: str) -> bool:
         """Tell whether the person has a role."""
@@ -146,7 +145,7 @@ def _to_the_door() -> ResponseReturnValue:
 def _to_get_ready(who: Person) -> ResponseReturnValue | None:
     """Lead somebody to what he has to do before anything else."""
     wanted = first_duty(who, people())
-    if wanted is None or _is_open() or request.endpoint in BEFORE_READY:
+    if wanted is None or _is_open() or request.endpoint in (wanted, SIGN_OUT):
         return None
     if request.blueprint == "api":
         message = "sign in with a browser first: the account needs a new password or a second factor"

@@ -84,7 +84,9 @@ def _beside(password: str, known: set[str]) -> int:
 
 def _is_guessed(password: str, known: set[str]) -> bool:
     plain = password[:LOOKED_AT]
-    guesses = (zxcvbn(form, user_inputs=sorted(known)) for form in (plain, plain.casefold()))
+    joined = re.sub(r"[\W_]+", "", plain.casefold())
+    forms = [plain, plain.casefold(), *([joined] if joined else [])]
+    guesses = (zxcvbn(form, user_inputs=sorted(known)) for form in forms)
     return any(guess["score"] < STRENGTH for guess in guesses)
 
 
