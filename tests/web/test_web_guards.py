@@ -19,12 +19,13 @@ from webapp.security import HEADERS
 PAGES = (
     "", "/list", "/trains", "/limits", "/cants", "/line", "/findings", "/files", "/print",
     "/curves/1", "/workbook", "/plan.json", "/original", "/trains/file", "/limits/file", "/delete",
-    "/compare", "/history", "/curves/1/at?cant=50", "/curves/1/held?cant=50",
+    "/compare", "/history", "/curves/1/at?cant=50", "/curves/1/held?cant=50", "/shares",
 )  # fmt: skip
 POSTS = (
     "/list", "/list/forget", "/trains", "/trains/file", "/trains/forget", "/limits", "/limits/choose",
     "/limits/file", "/limits/forget", "/choice", "/confirm", "/name", "/keep", "/delete",
     "/compare", "/keep-proposal", "/curves/1/hold", "/curves/1/options/1", "/changes/abc/back",
+    "/shares", "/shares/1/withdraw", "/leave",
 )  # fmt: skip
 
 
@@ -46,7 +47,12 @@ def test_every_address_of_a_plan_is_in_these_tests(app: Flask) -> None:
     gets = {r.rule.removeprefix("/plans/<address>") for r in rules if "GET" in (r.methods or ())}
     posts = {r.rule.removeprefix("/plans/<address>") for r in rules if "POST" in (r.methods or ())}
     assert gets == {p.partition("?")[0].replace("/1", "/<int:number>") for p in PAGES}
-    asked = {"/curves/1": "/curves/<int:number>", "options/1": "options/<int:option>", "/abc/": "/<key>/"}
+    asked = {
+        "/curves/1": "/curves/<int:number>",
+        "/shares/1": "/shares/<int:number>",
+        "options/1": "options/<int:option>",
+        "/abc/": "/<key>/",
+    }
     assert posts == {functools.reduce(lambda p, pair: p.replace(*pair), asked.items(), p) for p in POSTS}
 
 

@@ -20,6 +20,7 @@ VARIABLES: dict[str, dict[str, Any]] = {
     "address": {"type": "string", "pattern": "^[A-Za-z0-9_-]{32}$"},
     "number": {"type": "integer", "minimum": 1, "maximum": 10_000_000},
     "option": {"type": "integer", "minimum": 1, "maximum": 100},
+    "share": {"type": "integer", "minimum": 1, "maximum": 2_147_483_647},
     "change": {"type": "string", "pattern": "^[A-Za-z0-9_-]{12}$"},
     "work": {"type": "string", "pattern": "^[A-Za-z0-9_-]{20}$"},
     "name": {"type": "string", "minLength": 1, "maxLength": 80, "pattern": "^[a-z0-9-]+$"},

@@ -13,7 +13,7 @@ from cant.model.plan import CurveRecord, Status
 from cant.model.settings import METHODS, Settings
 from cant.model.traffic import Traffic, TrainClass
 from cant.units import UNITS
-from webapp.keeping.store import StoredPlan
+from webapp.keeping.store import Access, StoredPlan
 from webapp.keeping.work import Piece
 from webapp.working.orders import WORDS
 
@@ -23,6 +23,11 @@ Name = Annotated[str, Field(min_length=1, max_length=80, pattern=r"^[^\x00-\x1f\
 Words = Annotated[str, Field(max_length=300, pattern=r"^[^\x00-\x1f\x7f]*$")]
 Unlimited = Literal["none"]
 WorkState = Literal["waiting", "under way", "done", "refused", "failed", "cancelled"]
+ACCESS: dict[Access, Literal["own", "edit", "read"]] = {
+    Access.OWN: "own",
+    Access.EDIT: "edit",
+    Access.READ: "read",
+}
 
 
 class Taken(BaseModel):
@@ -51,7 +56,11 @@ class ErrorAnswer(Given):
 
 
 class PlanSummary(Given):
-    """A plan as kept; ``key`` comes with the first plan of a program that sent neither key nor cookie."""
+    """A plan as kept, and what the caller may do with it.
+
+    ``key`` comes with the first plan of a program that sent neither key nor cookie; ``steps`` counts the
+    decisions of its history, to be sent as ``known`` with the next one.
+    """
 
     address: str
     name: str
@@ -62,6 +71,8 @@ class PlanSummary(Given):
     changed: datetime
     expires: datetime
     decided: list[str]
+    access: Literal["own", "edit", "read"]
+    steps: int
     links: dict[str, str]
     key: str | None = None
 
@@ -80,6 +91,8 @@ class PlanSummary(Given):
             changed=plan.changed,
             expires=plan.expires,
             decided=sorted(kind for kind, text in plan.decided.texts.items() if text != "null"),
+            access=ACCESS[plan.access],
+            steps=len(plan.history),
             links={**links, "page": f"/plans/{plan.address}"},
             key=key,
         )

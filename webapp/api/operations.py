@@ -76,6 +76,7 @@ def operation(method: str, path: str, **promised: Any) -> Callable[[View], View]
         rule = (
             path.replace("{number}", "{int:number}")
             .replace("{option}", "{int:option}")
+            .replace("{share}", "{int:share}")
             .replace("{", "<")
             .replace("}", ">")
         )

@@ -25,6 +25,7 @@ from webapp.busy import BusyError
 from webapp.context import read_as, reading_of, running, stored
 from webapp.deciding import checked_units
 from webapp.decisions import as_text, limits_text, settings_text, traffic_text
+from webapp.keeping.shares import Shares
 from webapp.security import new_key, owner
 from webapp.uploads import needed, uploaded
 from webapp.working.asking import NotYetError
@@ -60,8 +61,10 @@ def create_plan() -> PlanSummary:
 
 @operation("GET", "/plans", answer=PlanList)
 def list_plans() -> PlanList:
-    """List the caller's plans."""
-    return PlanList(plans=[PlanSummary.of(plan) for plan in running().store.plans(owner())])
+    """List the caller's plans, then those that others share with him."""
+    shared = Shares(running().database).shared_with(owner())
+    own = running().store.plans(owner())
+    return PlanList(plans=[PlanSummary.of(plan) for plan in (*own, *(one.plan for one in shared))])
 
 
 @operation("GET", "/plans/{address}", answer=PlanSummary)

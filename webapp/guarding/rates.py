@@ -22,7 +22,7 @@ from webapp.security import RefusedError, is_known, owner
 
 NOT_COUNTED = frozenset({"health.alive", "health.ready"})
 SIGN_IN = "people.sign_in"
-OPEN_LINK = "sharing.open_link"
+OPEN_LINK = frozenset({"sharing.open_link", "api.open_shared_plan"})
 ACCOUNT_FIELD = "name"
 MAKES_A_PLAN = frozenset({"start.sample"})
 """Endpoints that make a plan without a file; every request that brings a file counts as an upload."""
@@ -133,7 +133,7 @@ def _count_sign_in(rates: Rates, address: str) -> None:
 def _guesses(bounds: Bounds) -> list[tuple[str, int]]:
     """Give what a request guesses where it is refused (link, key, plan), and how often that may be."""
     found = []
-    if request.endpoint == OPEN_LINK:
+    if request.endpoint in OPEN_LINK:
         found.append(("wrong links", bounds.wrong_links_per_minute))
     elif "address" in (request.view_args or {}):
         found.append(("wrong plans", bounds.wrong_plans_per_minute))

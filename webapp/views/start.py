@@ -9,8 +9,10 @@ from flask.typing import ResponseReturnValue
 
 from cant import service
 from cant.errors import CantError
+from webapp.access import of_my_own
 from webapp.context import choose_units, running, stored
 from webapp.decisions import as_text
+from webapp.keeping.shares import Shares
 from webapp.measures import SYSTEMS
 from webapp.security import owner
 from webapp.uploads import needed
@@ -26,6 +28,7 @@ def _start_page(problem: str = "", code: int = 200) -> ResponseReturnValue:
     shown = render_template(
         "start.html",
         plans=plans,
+        shared=Shares(running().database).shared_with(owner()),
         work=running().background.queue.open_of([plan.address for plan in plans]),
         work_words=WORDS,
         problem=problem,
@@ -82,7 +85,7 @@ def resume(address: str) -> ResponseReturnValue:
 @pages.post("/plans/<address>/name")
 def rename(address: str) -> ResponseReturnValue:
     """Call a plan otherwise."""
-    stored(address)
+    of_my_own(address)
     running().store.rename(owner(), address, request.form.get("name", ""))
     flash("The plan has its new name.")
     return redirect(url_for("start.home"), 303)
@@ -99,7 +102,7 @@ def keep(address: str) -> ResponseReturnValue:
 @pages.route("/plans/<address>/delete", methods=["GET", "POST"])
 def delete(address: str) -> ResponseReturnValue:
     """Ask, then delete a plan with its file."""
-    plan = stored(address)
+    plan = of_my_own(address)
     if request.method == "GET":
         return render_template("delete.html", asked=plan)
     running().store.remove(owner(), address)
