@@ -60,7 +60,7 @@ def run(host: str = "127.0.0.1", port: int = 8000) -> None:
         message = f"cannot listen at {host} port {port}: {reason}; give another with --host or --port"
         raise FileError(message) from error
     log_to(config.access_log)
-    cleaner, keeper = Cleaner(parts.clean), Keeper(config.work.workers)
+    cleaner, keeper = Cleaner(parts.clean), Keeper(config.work.workers, parts.stopping)
     with _stopped_by_signals(server, parts):
         cleaner.start()
         keeper.start()

@@ -8,11 +8,13 @@ import re
 import threading
 import time
 from collections.abc import Callable
+from datetime import UTC, datetime, timedelta
 from pathlib import Path
 
 import pytest
 from flask import Flask
 from flask.testing import FlaskClient
+from sqlalchemy import select, update
 from web_tools import CURVES, Browser
 from werkzeug.test import TestResponse
 
@@ -24,6 +26,8 @@ from webapp.guarding import turns as turns_module
 from webapp.guarding.access_log import LOG, log_to
 from webapp.guarding.bounds import Bounds
 from webapp.guarding.turns import Turns
+from webapp.keeping.records import PlanRow, WorkRow
+from webapp.keeping.work import WAITING
 
 Start = Callable[..., Flask]
 ROW = b"Curve,Radius (m),Speed (km/h)\nA,500,80\n"
@@ -359,3 +363,19 @@ def test_every_text_names_its_characters(browser: Browser) -> None:
     plan = browser.sample()
     for path in ("/", "/static/style.css", "/static/mark.svg", f"{plan}/trains/file", "/healthz"):
         assert "charset=utf-8" in browser.get(path).headers["Content-Type"].lower(), path
+
+
+def test_not_ready_where_nobody_does_the_work(start: Start) -> None:
+    app = start()
+    running = app.extensions[EXTENSION]
+    plan = running.store.add("anna", "a.csv", ROW)
+    hours_ago = datetime.now(UTC) - timedelta(hours=1)
+    with running.database.sessions.begin() as session:
+        number = session.scalar(select(PlanRow.id).where(PlanRow.address == plan.address))
+        waiting = {"state": WAITING, "made": hours_ago, "kind": "plan", "key": "k", "content": "{}"}
+        session.add(WorkRow(address="w", plan_id=number, asked_by="anna", **waiting))
+    client = app.test_client()
+    assert client.get("/readyz").text == "not ready: nobody does the work that waits\n"
+    with running.database.sessions.begin() as session:
+        session.execute(update(WorkRow).values(beat=datetime.now(UTC)))
+    assert not running.background.queue.is_left_alone()

@@ -9,6 +9,7 @@ from __future__ import annotations
 import socket
 import time
 from datetime import UTC, datetime
+from typing import Any
 
 from waitress.channel import HTTPChannel
 from waitress.task import ErrorTask
@@ -32,17 +33,16 @@ class Refusal(ErrorTask):
 
     def execute(self) -> None:
         """Send it."""
-        error = self.request.error
+        asked: Any = self.request
+        error = asked.error
         body = f"{WORDS.get(error.code, WORDS[400])}\n".encode()
         self.status = f"{error.code} {error.reason}"
-        self.response_headers.extend(
-            [
-                ("Content-Type", "text/plain; charset=utf-8"),
-                ("X-Content-Type-Options", "nosniff"),
-                ("Content-Security-Policy", "default-src 'none'"),
-                ("Cache-Control", "no-store"),
-            ]
-        )
+        self.response_headers = [
+            ("Content-Type", "text/plain; charset=utf-8"),
+            ("X-Content-Type-Options", "nosniff"),
+            ("Content-Security-Policy", "default-src 'none'"),
+            ("Cache-Control", "no-store"),
+        ]
         self.set_close_on_finish()
         self.content_length = len(body)
         self.write(body)

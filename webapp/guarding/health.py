@@ -47,6 +47,8 @@ def _lacking() -> str:
         store.room.check_disk()
         if not running().database.takes_changes():
             return "the database takes no changes"
+        if running().background.queue.is_left_alone():
+            return "nobody does the work that waits"
     except CantError:
         return "the disk is full"
     except (SQLAlchemyError, OSError):

@@ -18,7 +18,18 @@ RETRY_S = 5
 MOST_WAITING = 48
 MOST_WAITING_PERSON = 12
 NEEDS_NONE = frozenset(
-    {"static", "start.home", "start.units", "start.resume", "health.alive", "health.ready", "help.contents"}
+    {
+        "static",
+        "start.home",
+        "start.units",
+        "start.resume",
+        "health.alive",
+        "health.ready",
+        "help.contents",
+        "waiting.show",
+        "api.list_work",
+        "api.get_work",
+    }
 )
 """Endpoints that only look something up; all others take a turn."""
 Chunk = TypeVar("Chunk")

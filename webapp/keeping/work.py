@@ -179,6 +179,16 @@ class WorkQueue:
             last = session.scalar(select(func.max(WorkRow.beat)))
         return last is None or now - last > NOBODY_AFTER
 
+    def is_left_alone(self) -> bool:
+        """Tell whether any work has been waiting for some time while nobody did anything."""
+        now = datetime.now(UTC)
+        with self._database.sessions() as session:
+            oldest = session.scalar(select(func.min(WorkRow.made)).where(WorkRow.state == WAITING))
+            last = session.scalar(select(func.max(WorkRow.beat)))
+        return (
+            oldest is not None and now - oldest > NOBODY_AFTER and (last is None or now - last > NOBODY_AFTER)
+        )
+
     def cancel(self, who: str, address: str, work: str) -> Piece:
         """Cancel a piece that is not done; who may edit the plan can, and who asked for it.
 

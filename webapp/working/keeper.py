@@ -21,11 +21,13 @@ class Keeper:
     ----------
     workers : int
         Pieces that it does at the same time; for 0 there is no worker here.
+    stopping : threading.Event, optional
+        Set when the service has been told to stop: a worker that ends then is not begun anew.
     """
 
-    def __init__(self, workers: int) -> None:
+    def __init__(self, workers: int, stopping: threading.Event | None = None) -> None:
         self._wanted = workers > 0
-        self._stopping = threading.Event()
+        self._stopping = stopping or threading.Event()
         self._lock = threading.Lock()
         self._process: subprocess.Popen[bytes] | None = None
         self._thread = threading.Thread(target=self._keep, name="keeper", daemon=True)
