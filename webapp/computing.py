@@ -16,6 +16,7 @@ from typing import Any, Generic, Protocol, TypeVar
 from cant import service
 from cant.explaining import explain
 from cant.model.reading import Reading
+from cant.model.signatures import Signatures
 from cant.planning import Plan
 from cant.service import AnnotatedFile, PlannedLine
 from webapp.basis import PLAN_KINDS, READING_KINDS, Basis
@@ -169,11 +170,13 @@ class Computed:
                 return
             yield chunk
 
-    def workbook(self, data: bytes, file: str, system: str) -> AnnotatedFile:
-        """Give the workbook with the plan in it, in a system of units."""
+    def workbook(
+        self, data: bytes, file: str, system: str, signatures: Signatures | None = None
+    ) -> AnnotatedFile:
+        """Give the workbook with the plan in it, in a system of units, and who has signed the plan."""
         planned = self.shown_in(system)
         with self.speaking:
-            return service.annotated_workbook(planned, data, file)
+            return service.annotated_workbook(planned, data, file, signatures=signatures)
 
 
 class Elsewhere(Protocol):

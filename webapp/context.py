@@ -19,6 +19,7 @@ from webapp.keeping.results import Results
 from webapp.keeping.store import Store, StoredPlan
 from webapp.keeping.work_claims import Claims
 from webapp.measures import SYSTEMS, Measures, measures
+from webapp.people.signing import signatures_of
 from webapp.proposals import Proposal
 from webapp.security import owner
 from webapp.working.asking import Background
@@ -121,9 +122,10 @@ def read_as(plan: StoredPlan, decisions: Mapping[str, str]) -> Reading:
 
 def workbook_of(plan: StoredPlan, computed: Computed, system: str) -> bytes:
     """Give the workbook of a plan, in a system of units; that of a long one is made in the background."""
+    signed = signatures_of(running().database, plan)
     if _is_long(computed):
-        return running().background.workbook(plan, owner(), system)
-    return computed.workbook(file_of(plan), plan.file_name, system).data
+        return running().background.workbook(plan, owner(), system, signed)
+    return computed.workbook(file_of(plan), plan.file_name, system, signed).data
 
 
 def document_of(plan: StoredPlan, computed: Computed) -> Iterator[bytes]:

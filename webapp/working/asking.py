@@ -8,12 +8,13 @@ from datetime import date
 
 from cant.errors import CantError
 from cant.model.reading import Reading
+from cant.model.signatures import Signatures
 from cant.service import PlannedLine
 from webapp.basis import Basis
 from webapp.keeping.results import Results
 from webapp.keeping.store import StoredPlan
 from webapp.keeping.work import REFUSED, Piece, WorkQueue
-from webapp.working.doing import SYSTEM, planned_of
+from webapp.working.doing import SIGNED, SYSTEM, planned_of
 from webapp.working.orders import DOCUMENT, PLAN, READING, WORKBOOK, Order
 from webapp.working.sealing import Seal, unpack
 
@@ -58,9 +59,12 @@ class Background:
         """Give a plan."""
         return planned_of(unpack(self._result(plan, who, _order(PLAN, plan))))
 
-    def workbook(self, plan: StoredPlan, who: str, system: str) -> bytes:
+    def workbook(
+        self, plan: StoredPlan, who: str, system: str, signatures: Signatures | None = None
+    ) -> bytes:
         """Give the workbook of a plan, in a system of units; it bears the day on which it is made."""
-        more = ((DAY, date.today().isoformat()), (SYSTEM, system))
+        signed = () if signatures is None else ((SIGNED, signatures.as_text()),)
+        more = ((DAY, date.today().isoformat()), *signed, (SYSTEM, system))
         return self._result(plan, who, _order(WORKBOOK, plan, more))
 
     def document(self, plan: StoredPlan, who: str) -> Iterator[bytes]:

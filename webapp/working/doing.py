@@ -13,6 +13,7 @@ from cant import service
 from cant.errors import CantError
 from cant.explaining import explain
 from cant.model.reading import Reading
+from cant.model.signatures import Signatures
 from cant.service import PlannedLine, Progress
 from webapp.computing import Computed
 from webapp.keeping.database import Database
@@ -25,6 +26,7 @@ from webapp.working.sealing import LEVEL, Seal, pack, unpack
 
 LOG = logging.getLogger("webapp.working")
 SYSTEM = "system"
+SIGNED = "signatures"
 TOLD_EVERY = 64
 RECORDS_FROM, RECORDS_TO = 0.1, 0.7
 
@@ -119,7 +121,13 @@ class Doing:
 
     def _workbook(self, order: Order, piece: Piece, tell: Progress) -> bytes:
         watched = self._watched(order, piece, tell, order.told(SYSTEM))
-        return service.annotated_workbook(watched, self._file(piece), order.basis.file_name).data
+        signed = order.told(SIGNED)
+        return service.annotated_workbook(
+            watched,
+            self._file(piece),
+            order.basis.file_name,
+            signatures=Signatures.from_text(signed) if signed else None,
+        ).data
 
     def _document(self, order: Order, piece: Piece, tell: Progress) -> bytes:
         """Give the JSON of a plan, packed as it is made: it may be far larger than what else is kept."""
