@@ -27,6 +27,7 @@ from webapp.working.asking import Background
 EXTENSION = "cant"
 UNITS = "units"
 CLEANING_HOURS = 1
+CLEARING_S = 5
 
 
 @dataclass
@@ -39,13 +40,17 @@ class Running:
     computations: Computations
     background: Background
     cleaned: datetime
+    cleared: datetime = datetime.min.replace(tzinfo=UTC)
     stopping: threading.Event = field(default_factory=threading.Event)
     """Set when the service has been told to stop: it is not ready for more then."""
 
     def clean(self) -> None:
-        """Delete what has expired, at most once an hour; what readers kept from being cleared away, again."""
+        """Delete what has expired, at most once an hour; clear away, soon, what readers kept from it."""
         now = datetime.now(UTC)
-        if now - self.cleaned >= timedelta(hours=CLEANING_HOURS) or self.database.must_clear:
+        if self.database.must_clear and now - self.cleared >= timedelta(seconds=CLEARING_S):
+            self.cleared = now
+            self.database.clear_away()
+        if now - self.cleaned >= timedelta(hours=CLEANING_HOURS):
             self.cleaned = now
             self.store.remove_expired()
             Claims(self.database).tidy()

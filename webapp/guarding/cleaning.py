@@ -9,11 +9,11 @@ from collections.abc import Callable
 from sqlalchemy.exc import SQLAlchemyError
 
 LOG = logging.getLogger("webapp")
-EVERY_S = 60.0
+EVERY_S = 5.0
 
 
 class Cleaner:
-    """Calls a function every minute until it is stopped.
+    """Calls a function every few seconds until it is stopped; it knows itself when there is something to do.
 
     Parameters
     ----------
@@ -40,4 +40,4 @@ class Cleaner:
             try:
                 self._clean()
             except SQLAlchemyError as error:
-                LOG.warning("What has expired could not be deleted; tried again in a minute: %s", type(error))
+                LOG.warning("What has expired could not be deleted; tried again: %s", type(error))

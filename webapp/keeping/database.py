@@ -30,7 +30,7 @@ WRITES = "cant_writes"
 """Execution option of a connection whose transactions write."""
 OWN_ALONE = 0o600
 WAIT_MS = 30_000
-CLEARING_WAIT_MS = 2_000
+CLEARING_WAIT_MS = 200
 FULL_WORDS = ("database or disk is full", "disk I/O error", "No space left", "could not extend file")
 
 PASSING_WORDS = (
