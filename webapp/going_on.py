@@ -8,7 +8,7 @@ from dataclasses import dataclass
 from flask import g, request, url_for
 
 PREFIX = "go-"
-NOT_CARRIED = ("token",)
+NOT_CARRIED = ("token", "password")
 
 
 @dataclass(frozen=True)

@@ -16,6 +16,7 @@ from webapp.people import signing
 from webapp.people.events import tell
 from webapp.people.guard import needed_person
 from webapp.people.people import WrongError, people
+from webapp.working.asking import NotYetError
 
 pages = Blueprint("signing", __name__, url_prefix="/plans/<address>")
 STEP_WORDS = {
@@ -36,8 +37,11 @@ def show(address: str) -> ResponseReturnValue:
 def sign(address: str) -> ResponseReturnValue:
     """Sign the next step, and hand the plan to a colleague."""
     plan, who = stored(address), needed_person().account
-    if plan.decided.confirmed:
-        computed_of(plan)  # what cannot be planned cannot be signed
+    try:
+        if plan.decided.confirmed:
+            computed_of(plan)  # what cannot be planned cannot be signed
+    except NotYetError:  # the page waits for it; a form with a password does not
+        return redirect(url_for("signing.show", address=address), 303)
     try:
         # Who may not sign is told so whatever else he sent.
         _check(signing.why_not_sign(_signable(plan), who))
