@@ -28,6 +28,7 @@ EXTENSION = "cant"
 UNITS = "units"
 CLEANING_HOURS = 1
 CLEARING_S = 5
+LONG_AGO = datetime.min.replace(tzinfo=UTC)
 
 
 @dataclass
@@ -40,7 +41,7 @@ class Running:
     computations: Computations
     background: Background
     cleaned: datetime
-    cleared: datetime = datetime.min.replace(tzinfo=UTC)
+    cleared: datetime = LONG_AGO
     stopping: threading.Event = field(default_factory=threading.Event)
     """Set when the service has been told to stop: it is not ready for more then."""
 
