@@ -91,8 +91,15 @@ def _from_key(key: str) -> str:
 
 
 def form_token() -> str:
-    """Give the token that a form of this owner must carry; of who has signed in, of this sign-in."""
-    return URLSafeTimedSerializer(_secret(), salt="form").dumps(_form_owner())
+    """Give the token that a form of this owner must carry; of who has signed in, of this sign-in.
+
+    A page that refuses a key that is not valid has forms that nobody can send: their token is "".
+    """
+    try:
+        made_for = _form_owner()
+    except RefusedError:
+        return ""
+    return URLSafeTimedSerializer(_secret(), salt="form").dumps(made_for)
 
 
 def _form_owner() -> str:
