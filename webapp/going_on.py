@@ -49,7 +49,7 @@ def of_request() -> GoingOn:
 def of_form(address: str) -> GoingOn:
     """Tell how it goes on by the fields of a waiting page that was sent back; within the plan alone."""
     path = request.values.get("then", "")
-    if not path.startswith(f"/plans/{address}/"):
+    if not path.startswith(f"/plans/{address}/") or ".." in path or "\\" in path:
         return GoingOn(url_for("start.resume", address=address))
     fields = tuple(
         (name.removeprefix(PREFIX), value)
