@@ -182,11 +182,11 @@ class _Figures:
         for own in (outcome.pairs.first, outcome.pairs.second):
             np.add.at(passed, own, between)
         self._passed = passed[at]
-        self._runs = line.runs
+        self._runs: list[list[bool]] = line.runs.tolist()
 
     def of(self, i: int) -> dict[str, Any]:
         tonnes = float(self._tonnes[i])
-        runs = np.flatnonzero(self._runs[i]).tolist()
+        runs = [k for k, there in enumerate(self._runs[i]) if there]
         unbalance, acceleration = self._unbalance[i].tolist(), self._acceleration[i].tolist()
         return {
             "target_mm": float(self._target[i]),

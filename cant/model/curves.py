@@ -6,6 +6,7 @@ Columns, not records: a national register has 100,000 curves. A single curve is 
 
 from __future__ import annotations
 
+import math
 from collections.abc import Iterable, Mapping
 from dataclasses import dataclass, field, fields
 from typing import Any
@@ -229,7 +230,7 @@ class CurveList:
 def none_if_nan(value: float | np.floating[Any]) -> float | None:
     """Give a plain float, or None for nan and infinities (JSON knows neither)."""
     number = float(value)
-    return number if np.isfinite(number) else None
+    return number if math.isfinite(number) else None
 
 
 def situation_text(words: frozenset[str]) -> str | None:

@@ -19,7 +19,7 @@ from cant.model.display import Display
 from cant.model.reading import Reading, RejectedRow, SheetReading
 from cant.model.signatures import Signatures
 from cant.writing.book.status import FILLS, NOT_ASSESSED
-from cant.writing.columns import DECISION, NEEDED, WORDS, Cell, Column, Record, class_columns
+from cant.writing.columns import DECISION, NEEDED, WORDS, Cell, Column, Record, class_columns, row_maker
 from cant.writing.own_units import units_of_sheet
 from cant.writing.plan_sheets import PlanSheets, footer_of, holds_all
 from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
@@ -65,12 +65,15 @@ class AddedColumns:
         self._columns = columns
         self._display = display
         self._groups: dict[str, list[PackedRows]] = {}
+        self._rows: dict[Display, Callable[[Record], list[Cell]]] = {}
 
     def add(self, record: Record) -> None:
         """Take the cells of one curve."""
         display = self._display(record["sheet"])
-        values = [column.cell(record, display) for column in self._columns]
-        self._put(record["sheet"], record["row"], values)
+        made = self._rows.get(display)
+        if made is None:
+            made = self._rows[display] = row_maker(self._columns, display)
+        self._put(record["sheet"], record["row"], made(record))
 
     def add_rejected(self, row: RejectedRow) -> None:
         """Take the cells of a row that was refused: its status, and why."""

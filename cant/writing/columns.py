@@ -10,6 +10,7 @@ from __future__ import annotations
 import math
 from collections.abc import Callable, Iterable
 from dataclasses import dataclass
+from operator import methodcaller
 from typing import Any, TypeAlias
 
 from cant.model.display import Display
@@ -51,20 +52,32 @@ class Column:
         unit = display[self.kind].unit if self.kind else ""
         return f"{self.heading} ({unit})" if unit else self.heading
 
-    def cell(self, record: Record, display: Display) -> Cell:
-        """Give the value to write."""
-        value = self.get(record)
-        if value is None or not self.kind:
-            return None if value in (None, "") else str(value)
-        return display[self.kind].value(float(value))
-
     def number_format(self, display: Display) -> str | None:
         """Give the number format of the column, None for text."""
         return display[self.kind].number_format if self.kind else None
 
 
+def row_maker(columns: Iterable[Column], display: Display) -> Callable[[Record], list[Cell]]:
+    """Give a function that makes the cells of a row, all columns', from a record."""
+    ways = [(column.get, display[column.kind].value if column.kind else None) for column in columns]
+
+    def row(record: Record) -> list[Cell]:
+        cells: list[Cell] = []
+        for get, shown in ways:
+            value = get(record)
+            if shown is None:
+                cells.append(None if value in (None, "") else str(value))
+            else:
+                cells.append(None if value is None else shown(float(value)))
+        return cells
+
+    return row
+
+
 def path(*keys: str) -> Callable[[Record], Any]:
     """Give a getter that walks down a record by keys, None where one is missing."""
+    if len(keys) == 1:
+        return methodcaller("get", keys[0])
 
     def get(record: Record) -> Any:
         value: Any = record

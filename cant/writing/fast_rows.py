@@ -18,6 +18,7 @@ from xlsxwriter.worksheet import Worksheet
 from cant.errors import column_letter
 
 _CONTROL = re.compile("[\x00-\x08\x0b-\x1f\ufffe\uffff]")
+_NOT_PLAIN = re.compile("[&<>\x00-\x08\x0b-\x1f\ufffe\uffff]|_x")
 _LOOKS_ESCAPED = re.compile(r"_(?=x[0-9A-Fa-f]{4}_)")
 
 
@@ -29,6 +30,8 @@ def cell_text(text: str) -> str:
     text : str
         Any text; one that looks like such an escape already stays what it is (ECMA-376 part 1, 22.9.2.19).
     """
+    if not _NOT_PLAIN.search(text):
+        return text
     if "_x" in text:
         text = _LOOKS_ESCAPED.sub("_x005F_", text)
     return _CONTROL.sub(lambda found: f"_x{ord(found.group()):04X}_", escape(text))

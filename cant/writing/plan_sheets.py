@@ -30,6 +30,7 @@ from cant.writing.columns import (
     Record,
     class_columns,
     geometry_columns,
+    row_maker,
 )
 from cant.writing.figure_columns import END, FIGURES
 from cant.writing.sheets import Heading, NewSheets, TableSheet
@@ -112,8 +113,11 @@ class PlanSheets:
         rule = "" if self._all else "Ramps of: " + rule_of_choice(plan, len(self._chosen))
         self._ramps = RampValues(book, name("Ramp values"), self._display, plan, rule)
         classes = class_columns(plan.traffic.class_names)
-        self._plan_columns = [*PLACE, *geometry_columns(self._display), *DECISION, *classes, *NEEDED, *WORDS]
-        self._plan = self._table("Plan", self._plan_columns)
+        columns = [*PLACE, *geometry_columns(self._display), *DECISION, *classes, *NEEDED, *WORDS]
+        self._plan_row, self._place_row, self._figure_cells, self._end_row = (
+            row_maker(one, self._display) for one in (columns, PLACE, FIGURES, END)
+        )
+        self._plan = self._table("Plan", columns)
         self._figures = self._table("Figures", [*PLACE, *FIGURES])
         self._ends = self._table("Transitions", [*PLACE, *END])
         self._findings = self._plain("Findings", _FINDING)
@@ -138,14 +142,14 @@ class PlanSheets:
         needs_decision = record["status"] not in _DECIDED
         if self._whole or (needs_decision and self._shown < FULL_PLAN):
             self._shown += 1
-            self._plan.row([column.cell(record, self._display) for column in self._plan_columns])
+            self._plan.row(self._plan_row(record))
             self._write_findings([record["line"], record["track"], record["curve"]], record["findings"])
         if self._all or (needs_decision and place is not None):
             self._add_figures(record)
 
     def _add_figures(self, record: Record) -> None:
         """Write a row for each class, proposed and today, and for each end."""
-        place = [column.cell(record, self._display) for column in PLACE]
+        place = self._place_row(record)
         ends = record["transitions"]
         for entry in record["classes"]:
             self._figure_row(place, {**entry, "cant": "proposed", **_over_ends(ends, entry["class"])})
@@ -153,7 +157,7 @@ class PlanSheets:
             self._figure_row(place, {**entry, "cant": "today"})
         for side, end in ends.items():
             shown = {**end, "side": side}
-            self._ends.row([*place, *(column.cell(shown, self._display) for column in END)])
+            self._ends.row([*place, *self._end_row(shown)])
 
     def finish(self) -> None:
         """Write what needs all curves, and the sheets that need none."""
@@ -172,7 +176,7 @@ class PlanSheets:
         self._summary.write(self._chosen)
 
     def _figure_row(self, place: list[Cell], figures: Record) -> None:
-        self._figures.row([*place, *(column.cell(figures, self._display) for column in FIGURES)])
+        self._figures.row([*place, *self._figure_cells(figures)])
 
     def _write_findings(self, names: Sequence[Cell], findings: Iterable[dict[str, Any]]) -> None:
         for finding in findings:

@@ -126,7 +126,7 @@ class TableSheet:
             return None
         lines = max((lines_of(cells[i], width) for i, width in self._long), default=1)
         height = LINE_HEIGHT * lines if lines > 1 else None
-        self._sheet.put_row(self._next, [_cut(value) for value in cells], self._formats, height)
+        self._sheet.put_row(self._next, _cut_all(cells), self._formats, height)
         self._next += 1
         return self._next
 
@@ -353,6 +353,13 @@ def _cut(value: Cell) -> Cell:
     if isinstance(value, str) and len(value) > MAX_TEXT:
         return value[:MAX_TEXT] + " ..."
     return value
+
+
+def _cut_all(cells: Sequence[Cell]) -> Sequence[Cell]:
+    """Cut the texts among cells, of which hardly any is too long."""
+    if any(type(value) is str and len(value) > MAX_TEXT for value in cells):
+        return [_cut(value) for value in cells]
+    return cells
 
 
 def lines_of(value: Cell, width: float) -> int:
