@@ -22,6 +22,7 @@ from webapp.guarding import health
 from webapp.guarding.access_log import AccessLog, add_access_log
 from webapp.guarding.proxies import Proxies
 from webapp.guarding.rates import Rates, add_rates_of_addresses, add_rates_of_people
+from webapp.guarding.texts import refuse_null
 from webapp.guarding.turns import Turns, add_turns
 from webapp.history_view import remembered_name
 from webapp.keeping.database import Database
@@ -137,6 +138,7 @@ def _add_guards(app: Flask) -> None:
     @app.before_request
     def guard() -> None:
         running().clean()
+        refuse_null()
         if request.method == "POST" and request.blueprint != "api":
             check_form()
 

@@ -11,7 +11,8 @@ from cant.model.limits import LimitSet
 from cant.model.traffic import Traffic
 
 TRAFFIC_FILE = "Traffic.csv"
-FORMULA_START = ("=", "+", "-", "@", "\t", "\r")
+FORMULA_START = ("=", "+", "-", "@", "\t", "\r", "\n", "\uff1d", "\uff0b", "\uff0d", "\uff20")
+"""Letters with which a spreadsheet begins a formula, the wide ones of some languages too."""
 
 
 def traffic_csv(traffic: Traffic) -> bytes:

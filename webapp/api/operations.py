@@ -14,12 +14,14 @@ from typing import Any, TypeVar, get_origin
 from flask import Blueprint, Response, jsonify, request
 from flask.typing import ResponseReturnValue
 from pydantic import BaseModel, ValidationError
-from werkzeug.exceptions import BadRequest, Unauthorized, UnsupportedMediaType
+from werkzeug.exceptions import Unauthorized, UnsupportedMediaType
 
 from cant.errors import InputError
+from webapp.guarding.texts import strict_json
 from webapp.security import check_same_site, is_known
 
 api = Blueprint("api", __name__, url_prefix="/api/v1")
+LONGEST_PLACE = 200
 View = TypeVar("View", bound=Callable[..., Any])
 
 
@@ -132,11 +134,7 @@ def _json_body() -> Any:
     if not request.is_json:
         message = "send JSON, with 'Content-Type: application/json'"
         raise UnsupportedMediaType(message)
-    try:
-        return request.get_json()
-    except BadRequest as error:
-        message = "the body is not JSON"
-        raise BadRequest(message) from error
+    return strict_json(request.get_data())
 
 
 def _checked(model: type[BaseModel], given: Any) -> Any:
@@ -144,6 +142,7 @@ def _checked(model: type[BaseModel], given: Any) -> Any:
         return model.model_validate(given)
     except ValidationError as error:
         first = error.errors(include_url=False)[0]
-        where = ".".join(str(part) for part in first["loc"])
-        message = f"{where}: {first['msg']}" if where else str(first["msg"])
+        where = ascii(".".join(str(part) for part in first["loc"]))[1:-1][:LONGEST_PLACE]
+        said = str(first["msg"])
+        message = f"{where}: {said}" if where else said
         raise InputError(message) from error

@@ -18,6 +18,7 @@ from werkzeug.exceptions import Forbidden, Unauthorized
 
 from cant.errors import InputError
 from webapp.context import running
+from webapp.guarding.texts import is_own_path
 from webapp.keeping.accounts import Account
 from webapp.keeping.sign_ins import SignedIn, digest_of
 from webapp.people.events import tell
@@ -137,7 +138,7 @@ def _to_the_door() -> ResponseReturnValue:
     if request.blueprint == "api":
         message = "send a key of your account as 'Authorization: Bearer KEY'; keys are made on its page"
         raise Unauthorized(message)
-    if request.method == "GET" and not request.path.startswith(("//", "/\\")):
+    if request.method == "GET" and is_own_path(request.full_path):
         session[AFTER] = request.full_path.rstrip("?")
     return redirect(url_for("people.sign_in"), 303)
 

@@ -12,6 +12,7 @@ from cant.errors import CantError
 from webapp.access import of_my_own
 from webapp.context import choose_units, running, stored
 from webapp.decisions import as_text
+from webapp.guarding.texts import is_own_path
 from webapp.keeping.shares import Shares
 from webapp.measures import SYSTEMS
 from webapp.security import owner
@@ -115,7 +116,7 @@ def units() -> ResponseReturnValue:
     """Choose the units of all pages, and go back to the page."""
     asked = request.form.get("units", "")
     back = request.form.get("back", "")
-    path = back if back.startswith("/") and not back.startswith(("//", "/\\")) else url_for("start.home")
+    path = back if is_own_path(back) else url_for("start.home")
     made = redirect(path, 303)
     if asked in SYSTEMS:
         choose_units(asked)
