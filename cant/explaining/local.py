@@ -83,7 +83,7 @@ class Surroundings:
 
     @cached_property
     def _chain_of(self) -> dict[int, IntArray]:
-        chains = chains_of(len(self._outcome.curves), self._outcome.pairs)
+        chains = chains_of(self._outcome.pairs)
         return {int(i): chain for chain in chains for i in chain}
 
     @cached_property

@@ -87,6 +87,7 @@ def make_line(
         roll=trains.roll,
         gravity_height_m=trains.gravity_height_m,
         category=np.where(runs, trains.category, NO_CATEGORY),
+        kind=np.where(runs, trains.kind, NO_CATEGORY),
         branches=(
             make_branches(turnouts, dict(placed), curves, settings.constant, code, of_turnout)
             if placed
@@ -140,15 +141,17 @@ class _Trains:
         self.runs = np.zeros((n, k), dtype=np.bool_)
         self.regular = np.zeros((n, k), dtype=np.bool_)
         self.category = np.full((n, k), NO_CATEGORY, dtype=np.int64)
+        self.kind = np.full((n, k), NO_CATEGORY, dtype=np.int64)
         self.speed_kmh, self.trains, self.mass_t, self.roll, self.gravity_height_m = (
             np.full((n, k), np.nan) for _ in range(5)
         )
 
-    def put(self, at: tuple[int, int], train: TrainClass, category: int) -> None:
+    def put(self, at: tuple[int, int], train: TrainClass, category: int, kind: int) -> None:
         """Enter a class in one place."""
         self.runs[at] = True
         self.regular[at] = train.regular
         self.category[at] = category
+        self.kind[at] = kind
         for array, value in (
             (self.speed_kmh, train.speed_kmh),
             (self.trains, train.trains_per_day),
@@ -172,9 +175,11 @@ def _spread_traffic(curves: CurveList, traffic: Traffic, code: dict[str, int], t
     at = {name: j for j, name in enumerate(traffic.class_names)}
     _, first = np.unique(track, return_index=True)
     of_track = _Trains(len(first), len(at))
+    kinds: dict[tuple[str, float | None], int] = {}
     for number, curve in enumerate(first.tolist()):
         for name, train in traffic.on(curves.line[curve], curves.track[curve]).items():
-            of_track.put((number, at[name]), train, code[train.category])
+            kind = kinds.setdefault((train.category, train.roll_coefficient), len(kinds))
+            of_track.put((number, at[name]), train, code[train.category], kind)
     return of_track.spread(track)
 
 

@@ -76,13 +76,13 @@ def best_paths(stages: Sequence[Stage]) -> tuple[IntArray, BoolArray]:
     return np.stack(path, axis=1), found
 
 
-def by_length(chains: Sequence[IntArray], together: int) -> list[IntArray]:
-    """Stack chains of one length, at most so many at a time: tables (q, c) of curves."""
+def by_length(chains: Sequence[IntArray], transitions: int) -> list[IntArray]:
+    """Stack chains of one length, of about so many transitions together: tables (q, c) of curves."""
     alike: dict[int, list[IntArray]] = {}
     for chain in chains:
         alike.setdefault(len(chain), []).append(chain)
-    return [
-        np.stack(some[begin : begin + together])
-        for some in alike.values()
-        for begin in range(0, len(some), together)
-    ]
+    stacked = []
+    for length, some in alike.items():
+        together = max(transitions // (length - 1), 1)
+        stacked += [np.stack(some[begin : begin + together]) for begin in range(0, len(some), together)]
+    return stacked

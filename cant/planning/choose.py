@@ -25,7 +25,7 @@ from cant.planning.bounds import normal_bounds
 from cant.planning.give_way import search_chains
 from cant.planning.grid import Grid
 from cant.planning.line import Line
-from cant.planning.neighbours import Pairs, chains_of
+from cant.planning.neighbours import Chains, Pairs
 from cant.planning.nodes import Nodes, best_alone, node_blocks
 from cant.planning.normal_chains import settle_within_normal
 from cant.planning.shared import Meeting, SharedAsked, shared_values
@@ -36,7 +36,7 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-SEARCHED_TOGETHER = 40
+SEARCHED_TOGETHER = 80
 """Chains searched together: keeps the arrays of a search within the processor's cache."""
 
 
@@ -86,25 +86,26 @@ def choose(
     wanted = target(line, line.planned_kmh)[:, 0]
     cant = grid.nearest(wanted, bounds.low_mm, bounds.high_mm)
     cant[~bounds.kept | (grid.fixed_mm < 0) | ~planned] = np.nan
-    in_chain = np.zeros(len(line), dtype=np.bool_)
-    in_chain[pairs.first] = in_chain[pairs.second] = True
-    chains = chains_of(len(line), pairs)
-    unsettled = _unsettled_chains(line, pairs, cant, chains)
-    possible = [chain for chain in unsettled if not np.isnan(cant[chain]).any()]
-    hopeless = [chain for chain in unsettled if np.isnan(cant[chain]).any()]
+    chains = Chains.of(pairs)
+    stands = ~np.isnan(cant)
+    unsettled = chains.any(_clashes(line, pairs, cant))
+    hopeless = chains.any(~stands)
+    possible = chains.take(unsettled & ~hopeless)
     settled, left = settle_within_normal(line, grid, pairs, possible, (bounds.low_mm, bounds.high_mm), wanted)
     cant = np.where(np.isnan(settled), cant, settled)
-    unsettled = hopeless + left
+    left = chains.take(unsettled & hopeless) + left
     not_compliant = np.zeros(len(line), dtype=np.bool_)
-    lone = np.flatnonzero(planned & ~in_chain & np.isnan(cant))
+    by_itself = planned & ~stands
+    by_itself[chains.members] = False
+    lone = np.flatnonzero(by_itself)
     for at, nodes in node_blocks(line.take(lone), grid.take(lone), target, exceptional):
         cant[lone[at]] = nodes.cant_mm[best_alone(nodes), np.arange(len(at))]
         not_compliant[lone[at]] = nodes.not_compliant
-    members = np.concatenate(unsettled) if unsettled else np.zeros(0, dtype=np.int64)
-    if len(members):
+    members = np.concatenate(left) if left else np.zeros(0, dtype=np.int64)
+    if left:
         part = line.take(members).with_bands()
         cant[members], not_compliant[members] = _plan_chains(
-            part, grid.take(members), pairs.among(members), _renumbered(unsettled), target, exceptional
+            part, grid.take(members), pairs.among(members), _renumbered(left), target, exceptional
         )
     settled_at_once = np.ones(len(line), dtype=np.bool_)
     settled_at_once[lone] = False
@@ -165,18 +166,15 @@ def _beside_broken(
     return marked
 
 
-def _unsettled_chains(
-    line: Line, pairs: Pairs, cant_mm: FloatArray, chains: Sequence[IntArray]
-) -> list[IntArray]:
-    """Find the chains whose members' best cants by themselves do not stand together."""
-    if not chains:
-        return []
-    meeting = Meeting.of(line, pairs)
-    known = ~np.isnan(cant_mm)
-    cants = (np.nan_to_num(cant_mm)[pairs.first][:, None], np.nan_to_num(cant_mm)[pairs.second][:, None])
-    good = known[pairs.first] & known[pairs.second]
-    for found in shared_values(SharedAsked(meeting, meeting.planned_kmh, False), *cants):
-        good &= found.kept().all(axis=-1)
-    bad_after = np.zeros(len(line), dtype=np.bool_)
-    bad_after[pairs.first] = ~good
-    return [chain for chain in chains if bad_after[chain].any()]
+def _clashes(line: Line, pairs: Pairs, cant_mm: FloatArray) -> BoolArray:
+    """Mark curves whose best cant by itself does not stand beside that of the next curve, shape (n,)."""
+    clashes = np.zeros(len(line), dtype=np.bool_)
+    if len(pairs):
+        meeting = Meeting.of(line, pairs)
+        cants = (cant_mm[pairs.first], cant_mm[pairs.second])
+        good = ~np.isnan(cants[0] + cants[1])
+        filled = (np.nan_to_num(cants[0])[:, None], np.nan_to_num(cants[1])[:, None])
+        for found in shared_values(SharedAsked(meeting, meeting.planned_kmh, False), *filled):
+            good &= found.kept().all(axis=-1)
+        clashes[pairs.first] = ~good
+    return clashes

@@ -20,6 +20,7 @@ import numpy as np
 import numpy.typing as npt
 
 from cant.planning.assess import passed_alone, passed_shared
+from cant.planning.chain_costs import LEADING, ChainCosts
 from cant.planning.levels import Levels
 from cant.planning.lexicographic import distinct_rows, least_of_groups, not_above
 from cant.planning.line import Line
@@ -27,7 +28,6 @@ from cant.planning.meetings import PairList, make_pair_list, spread_ranges
 from cant.planning.neighbours import Pairs
 from cant.planning.nodes import Nodes, squares
 from cant.planning.permissible import Permitted
-from cant.planning.running_time import Services
 from cant.planning.shared import Meeting
 from cant.planning.targets import Target
 
@@ -35,9 +35,9 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-LEADING = 4
-"""Transitions broken, their overrun, trains stopped, time lost: the measures that bound a path from below."""
 _QUANTUM = 1e-8
+_TIES = 100
+"""Time lost this many times further apart than what counts as equal is surely not equal."""
 
 
 def search_chains(
@@ -81,7 +81,7 @@ def search_chains(
     if not also_broken:
         few = levels.take(levels.few())
         listed = make_pair_list(meeting, few, exceptional, also_broken)
-        ceiling = _Search(part, meeting, few, listed, target).ceiling()[chain[levels.curve]]
+        ceiling = ChainCosts(part, few, listed).ceiling()[chain[levels.curve]]
         levels = levels.take(not_above(levels.bound(), ceiling[:, 2:]))
     listed = make_pair_list(meeting, levels, exceptional, also_broken)
     best = _Search(part, meeting, levels, listed, target).best()
@@ -90,22 +90,62 @@ def search_chains(
 
 @dataclass
 class _Paths:
-    """Paths of several chains that end at the curve of one position; s of them.
+    """Paths of several chains that end at the curve of one position; s of them, chain after chain.
 
-    ``level`` (s, i + 1) numbers of the levels; ``before`` (s, k) the speeds run on the last curve but one,
-    nan on the first; ``left`` what the last transition permits on the last curve, ``extra`` (s, 2) the time
-    that this alone costs there; ``measures`` (s, 8): the leading four, approvals, overrun, square, sum of
-    cants, of everything that is settled.
+    Attributes
+    ----------
+    node : ndarray of int, shape (s,)
+        Where the path stands in the trail of this position.
+    rank : ndarray of int, shape (s,)
+        Ascending with the cants of a chain, the smaller chainages first.
+    last_but_one, last : ndarray of int, shape (s,)
+        Numbers of the last two levels; the first of them -1 on the first curve.
+    before : ndarray, shape (s, k)
+        Speeds run on the last curve but one.
+    left : Permitted
+        What the last transition permits on the last curve.
+    sure : ndarray, shape (s, 2)
+        Time that this alone is sure to cost there.
+    measures : ndarray, shape (s, 8)
+        The leading four, approvals, overrun, square, sum of cants: the leading ones and those of transitions
+        up to the last curve but one, those of curves by themselves up to the one before.
     """
 
-    level: IntArray
+    node: IntArray
+    rank: IntArray
+    last_but_one: IntArray
+    last: IntArray
     before: FloatArray
     left: Permitted
-    extra: FloatArray
+    sure: FloatArray
     measures: FloatArray
 
+    @classmethod
+    def begin(cls, level: IntArray, k: int) -> _Paths:
+        """Begin a path at each of some levels."""
+        s = len(level)
+        return cls(
+            node=np.arange(s),
+            rank=level,
+            last_but_one=np.full(s, -1, dtype=np.int64),
+            last=level,
+            before=np.full((s, k), np.nan),
+            left=Permitted.everything(s, k),
+            sure=np.zeros((s, 2)),
+            measures=np.zeros((s, 8)),
+        )
+
     def take(self, at: IntArray | BoolArray) -> _Paths:
-        return _Paths(self.level[at], self.before[at], self.left.take(at), self.extra[at], self.measures[at])
+        return _Paths(
+            self.node[at],
+            self.rank[at],
+            self.last_but_one[at],
+            self.last[at],
+            self.before[at],
+            self.left.take(at),
+            self.sure[at],
+            self.measures[at],
+        )
 
 
 class _Search:
@@ -125,164 +165,86 @@ class _Search:
     def __init__(self, line: Line, meeting: Meeting, levels: Levels, pairs: PairList, target: Target) -> None:
         self._line, self._meeting, self._levels, self._pairs = line, meeting, levels, pairs
         self._target = target
-        self._services = Services.of(line)
-        self._own = levels.own
+        self._costs = ChainCosts(line, levels, pairs)
         self._first = np.searchsorted(pairs.before, np.arange(len(levels.curve) + 1))
-        self._broken = np.stack([pairs.broken, pairs.overrun], axis=-1)
-        self._extra = (
-            self._extra_time(pairs.before, pairs.on_before),
-            self._extra_time(pairs.after, pairs.on_after),
-        )
-        start = np.flatnonzero(np.diff(levels.chain, prepend=-1))
-        self._position = np.arange(len(levels.chain)) - start[levels.chain]
-        self._length = np.bincount(levels.chain)
-
-    # -- time -------------------------------------------------------------------------------------------
-
-    def _run(self, level: IntArray, *beside: Permitted) -> FloatArray:
-        """Give the speeds run at some levels with what the transitions beside permit, shape (s, k)."""
-        up_to, planned = self._levels.alone.up_to_kmh[level], self._levels.alone.planned[level]
-        for permitted in beside:
-            up_to = np.minimum(up_to, permitted.up_to_kmh)
-            planned = planned & permitted.planned
-        return Permitted(up_to, planned).run_speed(self._line.planned_kmh[self._levels.curve[level]])
-
-    def _time(self, level: IntArray, run_kmh: FloatArray) -> FloatArray:
-        """Give trains stopped and time lost at levels (s,) and speeds (s, k): shape (s, 2)."""
-        services = self._services.take(self._levels.curve[level])
-        return np.stack([services.stopped(run_kmh), services.lost_s(run_kmh)], axis=-1)
-
-    def _extra_time(self, level: IntArray, beside: Permitted) -> FloatArray:
-        """Give what a transition's permission alone adds to the time of some levels, shape (s, 2)."""
-        extra = np.zeros((len(level), 2))
-        at = np.flatnonzero((~beside.planned | np.isfinite(beside.up_to_kmh)).any(axis=-1))
-        run = self._run(level[at], beside.take(at))
-        extra[at] = self._time(level[at], run) - self._own[level[at]]
-        return extra
-
-    # -- bounds -----------------------------------------------------------------------------------------
-
-    def _to_go(self, share: float) -> tuple[FloatArray, IntArray]:
-        """Give the least leading measures from each level to the end of its chain, and the pair taken first.
-
-        ``share`` of the time that each transition by itself makes a curve lose: a curve between two loses at
-        least half of both together (then it is a bound from below), and hardly more than both.
-
-        Returns
-        -------
-        to_go : ndarray, shape (l, LEADING)
-            inf where no path leads to the end.
-        choice : ndarray of int, shape (l,)
-        """
-        levels, pairs = self._levels, self._pairs
-        to_go = np.concatenate([np.zeros_like(self._own), self._own], axis=1)
-        choice = np.zeros(len(to_go), dtype=np.int64)
-        cost = np.concatenate([self._broken, share * (self._extra[0] + self._extra[1])], axis=1)
-        position = self._position[levels.curve]
-        goes_on = position < (self._length[levels.chain] - 1)[levels.curve]
-        at_position = position[pairs.before]
-        for i in range(int(self._length.max()) - 2, -1, -1):
-            pair = np.flatnonzero(at_position == i)
-            here, least, best = least_of_groups(cost[pair] + to_go[pairs.after[pair]], pairs.before[pair])
-            to_go[(position == i) & goes_on] = np.inf
-            to_go[here] = least
-            to_go[here, 2:] += self._own[here]
-            choice[here] = pair[best]
-        return to_go, choice
-
-    def ceiling(self) -> FloatArray:
-        """Give the leading measures of a good path of each chain, (q, LEADING): no better one is worth more.
-
-        inf where there is no path.
-        """
-        pairs = self._pairs
-        to_go, choice = self._to_go(1.0)
-        starts = np.flatnonzero(self._position[self._levels.curve] == 0)
-        _, least, best = least_of_groups(to_go[starts], self._levels.chain[self._levels.curve[starts]])
-        total = np.where(np.isfinite(least), 0.0, np.inf)
-        chain = np.flatnonzero(np.isfinite(least).all(axis=1))
-        level, left = starts[best[chain]], _free(len(chain), self._line.classes)
-        for i in range(int(self._length.max())):
-            on = self._length[chain] > i + 1
-            ends = chain[~on]
-            total[ends, 2:] += self._time(level[~on], self._run(level[~on], left.take(~on)))
-            chain, level, left = chain[on], level[on], left.take(on)
-            pair = choice[level]
-            total[chain, :2] += self._broken[pair]
-            total[chain, 2:] += self._time(level, self._run(level, left, pairs.on_before.take(pair)))
-            level, left = pairs.after[pair], pairs.on_after.take(pair)
-        return total
-
-    # -- the way forward --------------------------------------------------------------------------------
+        self._trail: list[tuple[IntArray, IntArray]] = []
 
     def best(self) -> IntArray:
         """Give the best level of each curve by number, shape (c,); -1 where its chain has no path."""
-        levels, k = self._levels, self._line.classes
+        costs, levels = self._costs, self._levels
         best = np.full(len(levels.chain), -1, dtype=np.int64)
-        ceiling, (to_go, _) = self.ceiling(), self._to_go(0.5)
-        level = np.flatnonzero(self._position[levels.curve] == 0)
-        level = level[np.isfinite(ceiling[self._chain(level)]).all(axis=1)]
-        level = level[not_above(to_go[level], ceiling[self._chain(level)])]
-        paths = _Paths(
-            level[:, None],
-            np.full((len(level), k), np.nan),
-            _free(len(level), k),
-            np.zeros((len(level), 2)),
-            np.zeros((len(level), 8)),
-        )
-        for i in range(int(self._length.max())):
-            ends = self._length[self._chain(paths.level[:, -1])] == i + 1
-            self._finish(paths.take(ends), ceiling, best)
-            paths = self._step(paths.take(~ends), ceiling, to_go)
+        ceiling, to_go = costs.ceiling(), costs.to_go
+        level = np.flatnonzero(costs.position[levels.curve] == 0)
+        level = level[np.isfinite(ceiling[costs.chain(level)]).all(axis=1)]
+        level = level[not_above(to_go[level], ceiling[costs.chain(level)])]
+        paths = _Paths.begin(level, self._line.classes)
+        self._trail = [(level, paths.node)]
+        for i in range(int(costs.length.max())):
+            ends = costs.length[costs.chain(paths.last)] == i + 1
+            if ends.any():
+                self._finish(paths.take(ends), best)
+                paths = paths.take(~ends)
+            paths = self._step(paths, ceiling)
         return best
 
-    def _chain(self, level: IntArray) -> IntArray:
-        return self._levels.chain[self._levels.curve[level]]
-
-    def _step(self, paths: _Paths, ceiling: FloatArray, to_go: FloatArray) -> _Paths:
+    def _step(self, paths: _Paths, ceiling: FloatArray) -> _Paths:
         """Go from one curve to the next: settle the speeds of the one."""
-        pairs, last = self._pairs, paths.level[:, -1]
-        source, pair = spread_ranges(self._first[last], self._first[last + 1])
-        here, after = last[source], pairs.after[pair]
-        ceiling = ceiling[self._chain(here)]
-        to_come = to_go[after]
-        to_come[:, :2] += self._broken[pair]
-        to_come[:, 2:] += self._extra[1][pair] / 2
-        low = paths.measures[source, :LEADING] + to_come
-        low[:, 2:] += self._own[here] + (paths.extra[source] + self._extra[0][pair]) / 2
-        keep = np.flatnonzero(not_above(low, ceiling))
-        source, pair, here = source[keep], pair[keep], here[keep]
-        run = self._run(here, paths.left.take(source), pairs.on_before.take(pair))
+        pairs, costs, ahead = self._pairs, self._costs, self._costs.ahead
+        source, pair = spread_ranges(self._first[paths.last], self._first[paths.last + 1])
+        so_far = paths.measures[:, :LEADING] + np.pad(paths.sure, ((0, 0), (2, 0)))
+        ceiling = ceiling[costs.chain(paths.last)]
+        keep = np.flatnonzero(not_above(so_far[source] + ahead.unsettled[pair], ceiling[source]))
+        source, pair = source[keep], pair[keep]
+        here = paths.last[source]
+        run = costs.run(here, paths.left.take(source), pairs.on_before.take(pair))
         measures = paths.measures[source]
-        measures[:, 2:LEADING] += self._time(here, run)
-        good = np.flatnonzero(not_above(measures[:, :LEADING] + to_come[keep], ceiling[keep]))
+        measures[:, 2:LEADING] += costs.time(here, run)
+        good = np.flatnonzero(not_above(measures[:, :LEADING] + ahead.settled[pair], ceiling[source]))
         source, pair, here, run, measures = source[good], pair[good], here[good], run[good], measures[good]
-        measures[:, :2] += self._broken[pair]
-        measures[:, LEADING:] += self._rest(here, run)
-        measures[:, 4:6] += self._approvals(paths, source, run)
+        measures[:, :2] += costs.broken[pair]
+        if self._trail[1:]:
+            measures[:, LEADING:] += self._rest(paths.last_but_one[source], paths.before[source])
+            measures[:, 4:6] += self._approvals(paths.last_but_one[source], here, paths.before[source], run)
+        rank = np.empty(len(source), dtype=np.int64)
+        rank[np.lexsort((pairs.after[pair], paths.rank[source]))] = np.arange(len(source))
         grown = _Paths(
-            np.concatenate([paths.level[source], pairs.after[pair][:, None]], axis=1),
+            paths.node[source],
+            rank,
+            here,
+            pairs.after[pair],
             run,
             pairs.on_after.take(pair),
-            self._extra[1][pair],
+            costs.sure_after[pair],
             measures,
         )
-        return grown.take(self._best_of_alike(grown))
+        if self._trail[1:]:
+            grown = grown.take(self._best_of_alike(grown))
+        self._trail.append((grown.last, grown.node))
+        grown.node = np.arange(len(grown.last))
+        return grown
 
-    def _finish(self, paths: _Paths, ceiling: FloatArray, best: IntArray) -> None:
+    def _finish(self, paths: _Paths, best: IntArray) -> None:
         """Settle the last curve of chains that end here, and enter their best levels."""
-        last = paths.level[:, -1]
-        run = self._run(last, paths.left)
+        costs = self._costs
+        run = costs.run(paths.last, paths.left)
         measures = paths.measures.copy()
-        measures[:, 2:LEADING] += self._time(last, run)
-        good = np.flatnonzero(not_above(measures[:, :LEADING], ceiling[self._chain(last)]))
-        paths, run, measures, last = paths.take(good), run[good], measures[good], last[good]
-        measures[:, LEADING:] += self._rest(last, run)
-        measures[:, 4:6] += self._approvals(paths, np.arange(len(last)), run)
-        order = self._in_order(measures, paths.level)
-        chain = self._chain(last[order])
-        level = paths.level[order[np.flatnonzero(np.diff(chain, prepend=-1))]]
-        best[self._levels.curve[level]] = level
+        measures[:, 2:LEADING] += costs.time(paths.last, run)
+        # Only paths that lose least time are weighed further.
+        least = _least_of_chain(measures[:, :LEADING], costs.chain(paths.last))
+        good = np.flatnonzero(not_above(measures[:, :LEADING], least, _TIES))
+        paths, run, measures = paths.take(good), run[good], measures[good]
+        measures[:, LEADING:] += self._rest(paths.last, run)
+        if self._trail[1:]:
+            measures[:, LEADING:] += self._rest(paths.last_but_one, paths.before)
+            measures[:, 4:6] += self._approvals(paths.last_but_one, paths.last, paths.before, run)
+        order = self._in_order(measures, paths)
+        chain = costs.chain(paths.last[order])
+        node = paths.node[order[np.flatnonzero(np.diff(chain, prepend=-1))]]
+        for level, source in reversed(self._trail):
+            best[self._levels.curve[level[node]]] = level[node]
+            node = source[node]
+
+    # -- what decides among paths that lose as much time ---------------------------------------------------
 
     def _rest(self, level: IntArray, run_kmh: FloatArray) -> FloatArray:
         """Give approvals, overrun, square and cant at levels (s,) and speeds (s, k): shape (s, 4)."""
@@ -293,41 +255,45 @@ class _Search:
         square = squares(line, cant[:, None], run, self._target)
         return np.stack([passed.count, passed.total, square, cant], axis=-1)[place]
 
-    def _approvals(self, paths: _Paths, source: IntArray, run_kmh: FloatArray) -> FloatArray:
-        """Give number and overrun of the limits passed on the transitions before the last curve, (s, 2)."""
-        if paths.level.shape[1] < 2 or not len(source):
-            return np.zeros((len(source), 2))
-        before, here = paths.level[source, -2], paths.level[source, -1]
-        run = np.minimum(paths.before[source], run_kmh)
+    def _approvals(
+        self, before: IntArray, here: IntArray, before_kmh: FloatArray, here_kmh: FloatArray
+    ) -> FloatArray:
+        """Give number and overrun of the limits passed between levels (s,) at speeds (s, k): (s, 2)."""
+        if not len(before):
+            return np.zeros((0, 2))
+        run = np.minimum(before_kmh, here_kmh)
         seen, place = distinct_rows(np.concatenate([before[:, None], here[:, None], run], axis=1))
         before, here, run = before[seen], here[seen], run[seen]
         meeting = self._meeting.take(np.searchsorted(self._levels.begins, self._levels.curve[before]))
         cants = (self._levels.cant_mm[before][:, None], self._levels.cant_mm[here][:, None])
         passed = passed_shared(meeting, cants, run)
         if not passed.by_rule:
-            return np.zeros((len(source), 2))
+            return np.zeros((len(place), 2))
         return np.stack([passed.count, passed.total], axis=-1)[place]
 
-    # -- the order of paths -----------------------------------------------------------------------------
-
-    def _in_order(self, measures: FloatArray, level: IntArray) -> IntArray:
+    def _in_order(self, measures: FloatArray, paths: _Paths) -> IntArray:
         """Sort paths by chain, the best of each first; then the lower cant at the smaller chainage."""
-        chain = self._chain(level[:, 0])
-        size = np.ones((len(self._length), measures.shape[1]))
-        np.maximum.at(size, chain, np.abs(measures))
-        exact = np.round(measures / (size[chain] * _QUANTUM))
-        return np.lexsort([chain, *exact.T, *level.T][::-1])
+        chain = self._costs.chain(paths.last)
+        begin, owner = _groups(chain)
+        size = np.maximum(np.maximum.reduceat(np.abs(measures), begin), 1.0) if len(begin) else measures
+        exact = np.round(measures / (size[owner] * _QUANTUM))
+        return np.lexsort([chain, *exact.T, paths.rank][::-1])
 
     def _best_of_alike(self, paths: _Paths) -> IntArray:
         """Of the paths that need the same from here on, give the best: indices."""
-        if paths.level.shape[1] == 2:
-            return np.arange(len(paths.level))
-        order = self._in_order(paths.measures, paths.level)
-        need = np.concatenate([paths.level[:, -2:], paths.before], axis=1)
+        order = self._in_order(paths.measures, paths)
+        need = np.concatenate([paths.last_but_one[:, None], paths.last[:, None], paths.before], axis=1)
         seen, _ = distinct_rows(need[order])
         return np.asarray(order[np.sort(seen)])
 
 
-def _free(n: int, k: int) -> Permitted:
-    """Give what permits everything."""
-    return Permitted(np.full((n, k), np.inf), np.ones((n, k), dtype=np.bool_))
+def _groups(chain: IntArray) -> tuple[IntArray, IntArray]:
+    """Give where the paths of each chain begin, and the number of each path's group; chains ascend."""
+    new = np.diff(chain, prepend=-1) != 0
+    return np.flatnonzero(new), np.cumsum(new) - 1
+
+
+def _least_of_chain(measures: FloatArray, chain: IntArray) -> FloatArray:
+    """Give for each path (s, c) the measures of the best of its chain; chains ascend."""
+    _, least, _ = least_of_groups(measures, chain)
+    return np.asarray(least[_groups(chain)[1]])

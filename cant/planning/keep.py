@@ -23,7 +23,7 @@ from cant.planning.assess import (
 )
 from cant.planning.lexicographic import slack
 from cant.planning.line import Line
-from cant.planning.neighbours import Pairs, chains_of
+from cant.planning.neighbours import Chains, Pairs
 from cant.planning.running_time import TimeLost
 from cant.planning.shared import Meeting
 
@@ -68,7 +68,7 @@ def keep_today(
     result = cant_mm.copy()
     after = pairs.after(len(line))
     place = np.zeros(len(line), dtype=np.int64)
-    for curves, begin in _blocks(len(line), pairs, reach):
+    for curves, begin in _blocks(pairs, reach):
         place[curves] = np.arange(len(curves))
         own = pairs.take(after[curves][after[curves] >= 0])
         own.first, own.second = place[own.first], place[own.second]
@@ -77,13 +77,12 @@ def keep_today(
     return result
 
 
-def _blocks(n: int, pairs: Pairs, reach: BoolArray) -> Iterator[tuple[IntArray, IntArray]]:
+def _blocks(pairs: Pairs, reach: BoolArray) -> Iterator[tuple[IntArray, IntArray]]:
     """Yield whole chains with anything in reach, lone curves as chains of one, and where each begins."""
-    chains = chains_of(n, pairs)
+    chains = Chains.of(pairs)
     lone = reach.copy()
-    for chain in chains:
-        lone[chain] = False
-    groups = [chain for chain in chains if reach[chain].any()] + list(np.flatnonzero(lone)[:, None])
+    lone[chains.members] = False
+    groups = chains.take(chains.any(reach)) + list(np.flatnonzero(lone)[:, None])
     block: list[IntArray] = []
     size = 0
     for group in groups:

@@ -16,7 +16,7 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-ONE_IN = 4
+ONE_IN = 6
 """Levels among which a good path is looked for first are one in so many."""
 
 

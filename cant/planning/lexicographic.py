@@ -15,6 +15,10 @@ RELATIVE = 1e-9
 """Measures that differ by less than this share, or this much, are equal: sums come in different orders."""
 
 
+_MIXER = 0x9E3779B97F4A7C15
+"""An odd number without pattern: its powers spread the bits of a row over the whole of a number."""
+
+
 def slack(value: FloatArray) -> FloatArray:
     """Give how much larger than a measure another may be and still count as equal."""
     return RELATIVE * np.maximum(np.abs(value), 1.0)
@@ -82,23 +86,29 @@ def least_of_groups(measures: FloatArray, group: IntArray) -> tuple[IntArray, Fl
 
 def distinct_rows(rows: FloatArray) -> tuple[IntArray, IntArray]:
     """Give the first of each kind of rows (s, c), nan like nan, and the place of each row's kind in these."""
-    if not len(rows):
-        return np.zeros(0, dtype=np.int64), np.zeros(0, dtype=np.int64)
-    known = np.nan_to_num(rows, nan=-1.0)
-    order = np.lexsort(known.T)
-    ahead = known[order]
-    new = np.concatenate([[True], (ahead[1:] != ahead[:-1]).any(axis=1)])
-    place = np.empty(len(rows), dtype=np.int64)
-    place[order] = np.cumsum(new) - 1
-    return order[new], place
+    known = np.nan_to_num(rows, nan=-1.0) + 0.0
+    # A row's bits are mixed into one number: sorting these is far quicker than sorting rows. Round numbers
+    # differ in their high bits only, which a product would lose: they are folded down first.
+    bits = np.ascontiguousarray(known).view(np.uint64)
+    mixers = np.cumprod(np.full(known.shape[1], _MIXER, dtype=np.uint64))
+    mixed = ((bits ^ (bits >> np.uint64(32))) * mixers).sum(axis=1, dtype=np.uint64)
+    _, first, place = np.unique(mixed, return_index=True, return_inverse=True)
+    if (known == known[first[place]]).all():
+        return first, place
+    # Two kinds gave the same number, which is next to impossible.
+    _, first, place = np.unique(known, axis=0, return_index=True, return_inverse=True)
+    return first, place
 
 
-def not_above(low: FloatArray, ceiling: FloatArray) -> BoolArray:
-    """Tell which rows (s, c) are not larger than others (s, c), in the order of the measures."""
+def not_above(low: FloatArray, ceiling: FloatArray, slacks: float = 10) -> BoolArray:
+    """Tell which rows (s, c) are not larger than others (s, c), in the order of the measures.
+
+    Measures no more than so many times the slack apart count as equal.
+    """
     above: BoolArray = np.zeros(len(low), dtype=np.bool_)
     level: BoolArray = np.ones(len(low), dtype=np.bool_)
     for j in range(low.shape[1]):
-        room = 10 * slack(ceiling[:, j])
+        room = slacks * slack(ceiling[:, j])
         above |= level & (low[:, j] > ceiling[:, j] + room)
         level &= np.abs(low[:, j] - ceiling[:, j]) <= room
     return ~above

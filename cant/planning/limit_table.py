@@ -73,16 +73,12 @@ class _Condition:
     radius_up_to: float | None
 
     @property
-    def conditional(self) -> bool:
-        sizes = (self.speed_over, self.speed_up_to, self.radius_over, self.radius_up_to)
-        return any(condition is not None for condition in (self.categories, self.situations, *sizes))
-
-    @property
     def by_speed(self) -> bool:
         return self.speed_over is not None or self.speed_up_to is not None
 
     @property
     def by_radius(self) -> bool:
+        """Whether it holds, or what it says, depends on the radius."""
         return bool(self.slope) or self.radius_over is not None or self.radius_up_to is not None
 
     def holds_by_kind(self, category: IntArray, situation: IntArray) -> BoolArray:
@@ -138,6 +134,8 @@ class LimitTable:
             if exceptional_allowed is None or all(exceptional_allowed)
             else np.array(exceptional_allowed, dtype=np.bool_)
         )
+        self._situations = len(situations)
+        self._may_have_gap: dict[str, bool] = {}
         self._settings = settings
         self._rows: dict[str, list[_Condition]] = {quantity: [] for quantity in QUANTITIES}
         for index, row in enumerate(limits.rows):
@@ -178,8 +176,29 @@ class LimitTable:
         return bool(self._rows[quantity])
 
     def may_have_gap(self, quantity: str) -> bool:
-        """Tell whether a quantity can have a gap anywhere: not where a row without any condition holds."""
-        return bool(self._rows[quantity]) and all(row.conditional for row in self._rows[quantity])
+        """Tell whether a quantity can have a gap: where a kind of train has rows for some speeds only.
+
+        A row with a condition of radius counts as one that may not hold.
+        """
+        if quantity not in self._may_have_gap:
+            rows, upper = self._rows[quantity], self.bands(quantity)
+            category = np.arange(-1, self.categories)[:, None, None]
+            situation = np.arange(self._situations)[:, None]
+            speed = np.where(np.isfinite(upper), upper, np.append(upper, 0.0)[len(upper) - 2] + 1.0)
+            has_rows, covered = np.zeros(
+                (2, self.categories + 1, self._situations, len(upper)), dtype=np.bool_
+            )
+            for row in rows:
+                kind = row.holds_by_kind(category, situation)
+                has_rows |= kind
+                if not row.by_radius:
+                    covered |= kind & row.holds_by_size(speed, np.ones(1))
+            self._may_have_gap[quantity] = bool((has_rows & ~covered).any())
+        return self._may_have_gap[quantity]
+
+    def changes_with_speed(self, quantity: str) -> bool:
+        """Tell whether a quantity has rows with a condition of speed."""
+        return any(row.by_speed for row in self._rows[quantity])
 
     def bands(self, quantity: str) -> FloatArray:
         """Give the upper edges of the bands of speed of one quantity [km/h], ascending, the last one inf."""

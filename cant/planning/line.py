@@ -31,6 +31,7 @@ _OF_CLASS = (
     "roll",
     "gravity_height_m",
     "category",
+    "kind",
 )
 
 
@@ -63,6 +64,9 @@ class Line:
         nan where not known or the class does not run.
     category : ndarray of int, shape (n, k)
         Code of the class's category, NO_CATEGORY where it does not run.
+    kind : ndarray of int, shape (n, k)
+        Code of category and roll coefficient together: classes of one kind have the same limits at the same
+        speed. NO_CATEGORY where the class does not run.
     branches : Branches or None
         Branches of turnouts that lie in the curves; None where there is none at all.
     banded : BandedLimits or None
@@ -92,6 +96,7 @@ class Line:
     roll: FloatArray
     gravity_height_m: FloatArray
     category: IntArray
+    kind: IntArray
     branches: Branches | None = None
     banded: BandedLimits | None = None
 

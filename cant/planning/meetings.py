@@ -1,23 +1,31 @@
 """Pairs of cants over shared transitions on which trains may have to give way: what each pair permits.
 
-All pairs are compared with windows (:mod:`cant.planning.windows`) at the few speeds that can occur: the
-planned ones and the multiples of the speed steps. The windows of all multiples up to one, met, tell how far a
-pair keeps everything; a class that is in no danger over any pair is left out before.
+How far a pair keeps everything is the same for classes of one kind, and so is found once for them
+(:mod:`cant.planning.multiples`); a class that is in no danger over any pair is left out before.
 """
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
 
 from cant.planning.assess import shared_hard_kept
 from cant.planning.levels import Levels
-from cant.planning.permissible import FASTEST_KMH, Permitted, first_alike, next_multiple, speed_steps
-from cant.planning.permissible_shared import shared_gap, slower_after, surely_held
+from cant.planning.multiples import Kinds, Multiples
+from cant.planning.permissible import (
+    FASTEST_KMH,
+    Permitted,
+    first_alike,
+    next_multiple,
+    speed_steps,
+)
+from cant.planning.permissible_shared import slower_after, surely_held
 from cant.planning.shared import Meeting, SharedAsked
-from cant.planning.windows import Window, hard_window, speed_windows
+from cant.planning.windows import hard_window
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
@@ -125,69 +133,6 @@ def _ceilings(meeting: Meeting) -> tuple[FloatArray, FloatArray]:
     return before, after
 
 
-@dataclass
-class _Asked:
-    """The windows of e transitions with one class each at every speed that can occur.
-
-    ``window`` (v, a, e): at the planned speed before, after, and the multiples 0, 1, 2 ... of the steps
-    before and after; ``gap`` (v, e) for each end where the limits of its curve have one above the planned
-    speed; ``up_to`` for each end the windows of all multiples up to one, met.
-    """
-
-    planned: tuple[FloatArray, FloatArray]
-    ceiling: tuple[FloatArray, FloatArray]
-    step: tuple[FloatArray, FloatArray]
-    first: tuple[int, int]
-    window: Window
-    gap: tuple[BoolArray, BoolArray]
-    up_to: tuple[Window, Window]
-
-    @classmethod
-    def of(cls, part: Meeting, cant_before: FloatArray, exceptional: bool) -> _Asked:
-        planned, ceiling = (part.before.planned_kmh, part.after.planned_kmh), _ceilings(part)
-        step = (speed_steps(part.before), speed_steps(part.after))
-        most = int(np.floor((np.maximum(*ceiling) / np.minimum(*step)).max() + _SLACK))
-        count = np.arange(most + 1)[:, None, None, None]
-        multiples = [count * step[0]]
-        if (step[0] != step[1]).any():
-            multiples.append(count * step[1])
-        speeds = np.concatenate([planned[0][None, None], planned[1][None, None], *multiples])
-        asked = SharedAsked(part, speeds, exceptional)
-        window = speed_windows(asked, cant_before[:, :, None]).over_classes()
-        gaps = [
-            (shared_gap(part, speeds, np.full((1, 1), end == 1), exceptional))
-            & (speeds > planned[end] + _SLACK)
-            for end in (0, 1)
-        ]
-        gap = [np.broadcast_to(there, speeds.shape)[:, 0, :, 0] for there in gaps]
-        first = (2, 2 + (len(multiples) - 1) * (most + 1))
-        up_to = [_met(window, gap[0], slice(first[0], first[0] + most + 1))]
-        alike = first[0] == first[1] and not (gap[0].any() or gap[1].any())
-        up_to.append(up_to[0] if alike else _met(window, gap[1], slice(first[1], first[1] + most + 1)))
-        return cls(
-            planned=(planned[0][:, 0], planned[1][:, 0]),
-            ceiling=(ceiling[0][:, 0], ceiling[1][:, 0]),
-            step=(step[0][:, 0], step[1][:, 0]),
-            first=first,
-            window=window,
-            gap=(gap[0], gap[1]),
-            up_to=(up_to[0], up_to[1]),
-        )
-
-    def at(self, end: int, run: FloatArray, entry: IntArray) -> IntArray:
-        """Give the positions of speeds run on one of the curves (0 before, 1 after)."""
-        multiple = np.rint(run / self.step[end][entry]).astype(np.int64)
-        return np.where(run == self.planned[end][entry], end, self.first[end] + multiple)
-
-
-def _met(window: Window, gap: BoolArray, multiples: slice) -> Window:
-    """Give what all multiples of a step up to one allow; that of 0 km/h is not asked."""
-    low = np.where(gap[multiples, None], np.inf, window.low[multiples])
-    high = window.high[multiples].copy()
-    low[0], high[0] = -np.inf, np.inf
-    return Window(np.maximum.accumulate(low), np.minimum.accumulate(high))
-
-
 def _permit(
     listed: PairList,
     meeting: Meeting,
@@ -200,22 +145,34 @@ def _permit(
     danger = _in_danger(meeting, cants, exceptional)
     if not danger.any() or not len(listed):
         return
-    # What is found for a class holds for those treated alike; the first of them is in danger with them.
     first = first_alike(meeting.before, meeting.after)
-    at, column = np.nonzero(danger & (first == np.arange(first.shape[1])))
-    asked = _Asked.of(meeting.unfold(at, column), np.nan_to_num(cants[0][:, at]), exceptional)
-    begin = np.searchsorted(listed.transition, np.arange(len(meeting) + 1))
-    entry, pair = spread_ranges(begin[at], begin[at + 1])
-    run = (
-        levels.run_kmh[listed.before[pair], column[entry]],
-        levels.run_kmh[listed.after[pair], column[entry]],
+    cases = _Cases.of(meeting, *np.nonzero(danger & (first == np.arange(first.shape[1]))))
+    kinds = cases.kinds
+    multiples = Multiples.of(
+        meeting.unfold(kinds.entry_at, kinds.entry_column),
+        np.nan_to_num(cants[0][:, kinds.entry_at]),
+        kinds.fastest(np.maximum(*cases.ceiling)),
+        kinds.further(cases.planned, cases.odd),
+        exceptional,
     )
-    shorter = meeting.after.weight_length_m[:, 0] < meeting.before.weight_length_m[:, 0]
-    on_after = slower_after(shorter[at][entry], run)
-    cant_after = levels.cant_mm[listed.after[pair]]
-    up_to, held = _Question(asked, entry, row[pair], cant_after, on_after, run).answer()
+    begin = np.searchsorted(listed.transition, np.arange(len(meeting) + 1))
+    entry, pair = spread_ranges(begin[kinds.entry_at], begin[kinds.entry_at + 1])
+    cell = multiples.cell(row[pair], entry)
+    reached = multiples.reached(cell, levels.cant_mm[listed.after[pair]])
+    # From pairs and kinds to pairs and classes.
+    case, pair = spread_ranges(begin[kinds.at], begin[kinds.at + 1])
+    start = np.searchsorted(entry, np.arange(len(kinds.entry_at)))
+    known = start[kinds.entry[case]] + pair - begin[kinds.at[case]]
+    run = (
+        levels.run_kmh[listed.before[pair], kinds.column[case]],
+        levels.run_kmh[listed.after[pair], kinds.column[case]],
+    )
+    on_after = slower_after(cases.shorter_after[case], run)
+    asked = _Question(cases, multiples, case, cell[known], levels.cant_mm[listed.after[pair]], on_after, run)
+    up_to, held = asked.answer([found[known] for found in reached])
+    # What is found for a class holds for those treated alike; the first of them is in danger with them.
     for j in range(first.shape[1]):
-        which = np.flatnonzero(danger[at, j][entry] & (first[at, j] == column)[entry])
+        which = np.flatnonzero((danger[kinds.at, j] & (first[kinds.at, j] == kinds.column))[case])
         for mine, permitted in ((~on_after, listed.on_before), (on_after, listed.on_after)):
             chosen = which[mine[which]]
             permitted.up_to_kmh[pair[chosen], j] = up_to[chosen]
@@ -231,62 +188,87 @@ def spread_ranges(begin: IntArray, end: IntArray) -> tuple[IntArray, IntArray]:
 
 
 @dataclass
+class _Cases:
+    """Classes in danger over transitions; pairs of arrays (c,) for the curves before and after."""
+
+    kinds: Kinds
+    planned: tuple[FloatArray, FloatArray]
+    ceiling: tuple[FloatArray, FloatArray]
+    step: tuple[FloatArray, FloatArray]
+    shorter_after: BoolArray
+
+    @classmethod
+    def of(cls, meeting: Meeting, at: IntArray, column: IntArray) -> _Cases:
+        lines = (meeting.before, meeting.after)
+        ceilings = _ceilings(meeting)
+        shorter = meeting.after.weight_length_m[:, 0] < meeting.before.weight_length_m[:, 0]
+        return cls(
+            kinds=Kinds.of(meeting, at, column),
+            planned=(lines[0].planned_kmh[at, column], lines[1].planned_kmh[at, column]),
+            ceiling=(ceilings[0][at, column], ceilings[1][at, column]),
+            step=(speed_steps(lines[0])[at, column], speed_steps(lines[1])[at, column]),
+            shorter_after=shorter[at],
+        )
+
+    @property
+    def odd(self) -> tuple[BoolArray, BoolArray]:
+        """Whether the planned speeds are no multiples of the speed step, (c,) each."""
+        before, after = (
+            speed != np.rint(speed / step) * step for speed, step in zip(self.planned, self.step, strict=True)
+        )
+        return before, after
+
+
+@dataclass
 class _Question:
-    """How fast the slower curve may be run over f pairs of cants with one class each.
+    """How fast the slower curve may be run over g pairs of cants, one class each; arrays (g,).
 
     The rule is that of :func:`cant.planning.permissible_shared.permitted_shared`.
     """
 
-    asked: _Asked
-    entry: IntArray
-    row: IntArray
+    cases: _Cases
+    multiples: Multiples
+    case: IntArray
+    cell: IntArray
     cant_after: FloatArray
     on_after: BoolArray
     run: tuple[FloatArray, FloatArray]
 
-    def answer(self) -> tuple[FloatArray, BoolArray]:
-        """Give the highest multiple permitted (inf: as far as asked) and whether the planned speed is."""
-        asked, on_after = self.asked, self.on_after
-        place = [asked.at(end, self.run[end], self.entry) for end in (0, 1)]
+    def answer(self, held_up_to: Sequence[IntArray]) -> tuple[FloatArray, BoolArray]:
+        """Give the highest multiple permitted (inf: as far as asked) and whether the planned speed is.
+
+        ``held_up_to``: the multiples of the step before and of that after up to which all the rules hold.
+        """
+        cases, multiples, on_after = self.cases, self.multiples, self.on_after
+        planned_place = [self._planned_place(end) for end in (0, 1)]
+        place = [
+            np.where(run == planned[self.case], at[self.case], multiples.place(end, run, step[self.case]))
+            for end, (run, planned, step, at) in enumerate(
+                zip(self.run, cases.planned, cases.step, planned_place, strict=True)
+            )
+        ]
         other, other_place = np.where(on_after, self.run[0], self.run[1]), np.where(on_after, *place)
-        planned, ceiling, step = (
-            np.where(on_after, x[1][self.entry], x[0][self.entry])
-            for x in (asked.planned, asked.ceiling, asked.step)
-        )
-        every = np.arange(len(self.entry))
-        at_other = self._inside(asked.window, other_place, every)
-        at_planned = self._inside(asked.window, on_after.astype(np.int64), every)
-        held = np.where(planned <= other, at_planned, at_other)
-        gap = np.where(on_after, *(asked.gap[end][other_place, self.entry] for end in (1, 0)))
+        planned, ceiling, step = (self._of_slower(x) for x in (cases.planned, cases.ceiling, cases.step))
+        asked = np.where(planned <= other, self._of_slower(planned_place), other_place)
+        held = multiples.holds(asked, self.cell, self.cant_after)
         beyond = np.ceil(other / step - _SLACK)
         tried = np.minimum(beyond - 1, np.floor(ceiling / step + _SLACK))
         tried = np.maximum(tried, 0).astype(np.int64)
-        reached = self._reached(tried)
+        reached = np.minimum(np.where(on_after, held_up_to[1], held_up_to[0]), tried)
         up_to = np.where(reached < tried, reached * step, np.inf)
-        last = (reached >= tried) & (beyond * step <= ceiling + _SLACK)
-        up_to = np.where(last & (~at_other | gap), (beyond - 1) * step, up_to)
-        return np.where(other > 0, np.where(ceiling > 0, up_to, np.inf), np.inf), held
+        last = np.flatnonzero((reached >= tried) & (beyond * step <= ceiling + _SLACK))
+        stops = ~multiples.holds(other_place[last], self.cell[last], self.cant_after[last])
+        stops |= multiples.gap(on_after[last], other_place[last], cases.kinds.entry[self.case[last]])
+        last = last[stops]
+        up_to[last] = (beyond[last] - 1) * step[last]
+        return np.where((other > 0) & (ceiling > 0), up_to, np.inf), held
 
-    def _inside(self, window: Window, place: IntArray, which: IntArray) -> BoolArray:
-        at = (place, self.row[which], self.entry[which])
-        cant = self.cant_after[which]
-        return np.asarray((cant >= window.low[at]) & (cant <= window.high[at]))
+    def _of_slower(self, both: Sequence[npt.NDArray[Any]]) -> npt.NDArray[Any]:
+        """Give what belongs to the curve that slows."""
+        return np.where(self.on_after, both[1][self.case], both[0][self.case])
 
-    def _reached(self, tried: IntArray) -> IntArray:
-        """Give up to which multiple everything holds, of those to try."""
-        reached = np.zeros(len(tried), dtype=np.int64)
-        for end in (0, 1):
-            which = np.flatnonzero(self.on_after == bool(end))
-            window = self.asked.up_to[end]
-            good = self._inside(window, tried[which], which)
-            reached[which[good]] = tried[which[good]]
-            which = which[~good]
-            # What holds up to a multiple holds up to every lower one: halving finds the last.
-            jump = 1 << int(tried.max(initial=0)).bit_length()
-            while jump > 1:
-                jump //= 2
-                trial = reached[which] + jump
-                further = trial < tried[which]
-                further &= self._inside(window, np.minimum(trial, tried[which]), which)
-                reached[which] = np.where(further, trial, reached[which])
-        return reached
+    def _planned_place(self, end: int) -> IntArray:
+        """Give the places of the planned speeds on one curve (0 before, 1 after), shape (c,)."""
+        cases = self.cases
+        place = self.multiples.place(end, cases.planned[end], cases.step[end])
+        return np.where(cases.odd[end], self.multiples.further + 2 * cases.kinds.rank + end, place)

@@ -146,18 +146,52 @@ def forget(neighbourhood: Neighbourhood, dropped: BoolArray) -> Neighbourhood:
     return replace(neighbourhood, ramp_m=ramp, shared=shared, pairs=kept)
 
 
-def chains_of(n: int, pairs: Pairs) -> list[IntArray]:
-    """Give the curves that share transitions, each chain in order of chainage; lone curves are left out."""
-    if not len(pairs):
-        return []
-    after = np.full(n, -1, dtype=np.int64)
-    after[pairs.first] = pairs.second
-    has_before = np.zeros(n, dtype=np.bool_)
-    has_before[pairs.second] = True
-    chains = []
-    for start in pairs.first[~has_before[pairs.first]]:
-        chain = [int(start)]
-        while after[chain[-1]] >= 0:
-            chain.append(int(after[chain[-1]]))
-        chains.append(np.array(chain, dtype=np.int64))
-    return chains
+@dataclass
+class Chains:
+    """The curves that share transitions, chain after chain, each in order of chainage.
+
+    Attributes
+    ----------
+    members : ndarray of int, shape (c,)
+        Curves; those that share no transition are left out.
+    begin : ndarray of int, shape (q,)
+        Where each chain begins among them.
+    """
+
+    members: IntArray
+    begin: IntArray
+
+    @classmethod
+    def of(cls, pairs: Pairs) -> Chains:
+        """Find the chains that shared transitions, ordered along the line, make."""
+        starts = np.ones(len(pairs), dtype=np.bool_)
+        starts[1:] = pairs.first[1:] != pairs.second[:-1]
+        # Every pair adds its second curve, and one that begins a chain its first curve before.
+        place = np.arange(len(pairs)) + np.cumsum(starts)
+        members = np.empty(len(pairs) + int(starts.sum()), dtype=np.int64)
+        members[place] = pairs.second
+        members[place[starts] - 1] = pairs.first[starts]
+        return cls(members, place[starts] - 1)
+
+    def __len__(self) -> int:
+        return len(self.begin)
+
+    def any(self, curves: BoolArray) -> BoolArray:
+        """Tell which chains have a member among curves marked in an array (n,), shape (q,)."""
+        if not len(self):
+            return np.zeros(0, dtype=np.bool_)
+        return np.asarray(np.logical_or.reduceat(curves[self.members], self.begin))
+
+    def take(self, wanted: BoolArray) -> list[IntArray]:
+        """Give the curves of some chains, marked in an array (q,), each as an array of its own."""
+        ends = np.append(self.begin[1:], len(self.members))
+        return [
+            self.members[begin:end]
+            for begin, end in zip(self.begin[wanted].tolist(), ends[wanted].tolist(), strict=True)
+        ]
+
+
+def chains_of(pairs: Pairs) -> list[IntArray]:
+    """Give all chains, the curves of each in order of chainage; lone curves are left out."""
+    chains = Chains.of(pairs)
+    return chains.take(np.ones(len(chains), dtype=np.bool_))

@@ -22,7 +22,7 @@ from cant.planning.bounds import bounds_at, hard_bounds
 from cant.planning.grid import Grid
 from cant.planning.lexicographic import first_best, slack
 from cant.planning.line import Line
-from cant.planning.permissible import Permitted, first_alike, permitted_alone, speed_steps
+from cant.planning.permissible import Permitted, first_of_kind, next_multiple, permitted_alone, speed_steps
 from cant.planning.rules import AT_LEAST, AT_MOST, Asked, hard_terms, speed_terms
 from cant.planning.running_time import Services
 from cant.planning.targets import Target
@@ -31,7 +31,7 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-BLOCK = 256
+BLOCK = 1024
 """Curves evaluated together: keeps the arrays of a block within the processor's cache."""
 
 
@@ -51,7 +51,8 @@ class Nodes:
     run_kmh : ndarray
         Speeds run as far as the curve by itself decides.
     stopped, lost_s, count, overrun, square : ndarray
-        Measures 1 to 4 at those speeds; a class that may not run at all is measured apart in ``stopped``.
+        Measures 1 to 4 at those speeds; a class that may not run at all is measured apart in ``stopped``. The
+        last three only where a level loses as little time as any, elsewhere inf.
     not_compliant : ndarray of bool, shape (n,)
         No level keeps what no lower speed can mend.
     """
@@ -142,27 +143,29 @@ def make_nodes(line: Line, grid: Grid, target: Target, exceptional: bool) -> Nod
         lost_s=services.lost_s(run),
         count=np.full(levels.shape, np.inf),
         overrun=np.full(levels.shape, np.inf),
-        square=squares(line, cant, run, target),
+        square=np.full(levels.shape, np.inf),
         not_compliant=not_compliant,
     )
-    _count_approvals(line, nodes)
+    _weigh_cheapest(line, nodes, target)
     return nodes
 
 
-def _count_approvals(line: Line, nodes: Nodes) -> None:
-    """Enter what is passed at the levels that lose least time: no others can be chosen for its sake."""
+def _weigh_cheapest(line: Line, nodes: Nodes, target: Target) -> None:
+    """Enter what is passed and the squares at the levels that lose least time: no others can be chosen."""
     cheapest = nodes.cheapest
-    every = np.arange(len(line))
-    run = nodes.run_kmh[cheapest.argmax(axis=0), every]
-    # Where the speeds run are the same, bounds tell which levels pass nothing.
+    run = nodes.run_kmh[cheapest.argmax(axis=0), np.arange(len(line))]
+    alike = cheapest & ((nodes.run_kmh == run) | ~line.runs).all(axis=-1)
+    # Where the speeds run are the same, so is the target, and bounds tell which levels pass nothing.
+    np.copyto(nodes.square, squares(line, np.nan_to_num(nodes.cant_mm)[:, :, None], run, target), where=alike)
     bounds = bounds_at(line, run)
     with np.errstate(invalid="ignore"):
-        clean = (nodes.cant_mm >= bounds.low_mm) & (nodes.cant_mm <= bounds.high_mm) & bounds.kept
-    clean &= cheapest & ((nodes.run_kmh == run) | ~line.runs).all(axis=-1)
+        clean = (nodes.cant_mm >= bounds.low_mm) & (nodes.cant_mm <= bounds.high_mm) & bounds.kept & alike
     nodes.count[clean], nodes.overrun[clean] = 0.0, 0.0
     level, curve = np.nonzero(cheapest & ~clean)
-    passed = passed_alone(line.take(curve), nodes.cant_mm[level, curve][:, None], nodes.run_kmh[level, curve])
+    part, cant, run = line.take(curve), nodes.cant_mm[level, curve][:, None], nodes.run_kmh[level, curve]
+    passed = passed_alone(part, cant, run)
     nodes.count[level, curve], nodes.overrun[level, curve] = passed.count, passed.total
+    nodes.square[level, curve] = squares(part, cant, run, target)
 
 
 def _levels(line: Line, grid: Grid, exceptional: bool) -> tuple[FloatArray, BoolArray]:
@@ -201,12 +204,15 @@ def _searched(line: Line, cant_mm: FloatArray, wanted: BoolArray, exceptional: b
     up_to = np.full((*cant_mm.shape[:2], line.classes), np.inf)
     if not wanted.any():
         return up_to
-    first = first_alike(line)
+    first, steps = first_of_kind(line), speed_steps(line)
+    enough = next_multiple(np.nan_to_num(line.planned_kmh), steps)[wanted].max()
     asked = np.zeros_like(wanted)
-    np.put_along_axis(asked, np.where(wanted, first, first[:, :1]), True, axis=1)
+    curve, column = np.nonzero(wanted)
+    asked[curve, first[curve, column]] = True
     curve, column = np.nonzero(asked)
-    steps = speed_steps(line)[curve, column][:, None]
-    found = permitted_alone(line.unfold(curve, column), cant_mm[:, curve], steps, exceptional, as_run=True)
+    found = permitted_alone(
+        line.unfold(curve, column), cant_mm[:, curve], steps[curve, column][:, None], exceptional, enough
+    )
     up_to[:, curve, column] = found.up_to_kmh[:, :, 0]
     curve, column = np.nonzero(wanted)
     up_to[:, curve, column] = up_to[:, curve, first[curve, column]]

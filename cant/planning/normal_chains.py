@@ -22,7 +22,7 @@ FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]
 
 TOGETHER = 500
-"""Chains that step together: keeps the arrays of a step within the processor's cache."""
+"""Transitions looked at together: keeps their arrays within the processor's cache."""
 
 
 def settle_within_normal(
@@ -58,22 +58,23 @@ def settle_within_normal(
     after = pairs.after(len(line))
     left: list[IntArray] = []
     for curves in by_length(chains, TOGETHER):
-        stages, levels = [], []
-        for column in curves.T:
-            cants = grid.take(column).between(*(b[column] for b in bounds_mm))
-            known = ~np.isnan(cants)
-            cants = np.where(known, cants, 0.0)
-            square = line.weight_length_m[column, 0] * (cants - target_mm[column]) ** 2
-            stages.append(Stage([square, cants], known))
-            levels.append(cants)
-        for i, column in enumerate(curves.T[:-1]):
-            meeting = Meeting.of(line, pairs.take(after[column]))
-            window = allowed_after(SharedAsked(meeting, meeting.planned_kmh, False), levels[i][:, :, None])
-            stages[i].pair_allowed = window.holds(levels[i + 1])
-            stages[i].pair_measures = [None, None]
+        # Position by position, so that a transition leads from a curve to the one q further on.
+        q, members = len(curves), curves.T.ravel()
+        cants = grid.take(members).between(*(b[members] for b in bounds_mm))
+        known = ~np.isnan(cants)
+        cants = np.where(known, cants, 0.0)
+        square = line.weight_length_m[members, 0] * (cants - target_mm[members]) ** 2
+        meeting = Meeting.of(line, pairs.take(after[members[:-q]]))
+        window = allowed_after(SharedAsked(meeting, meeting.planned_kmh, False), cants[:, :-q, None])
+        allowed = window.holds(cants[:, q:])
+        stages = []
+        for begin in range(0, len(members), q):
+            here = slice(begin, begin + q)
+            stages.append(Stage([square[:, here], cants[:, here]], known[:, here]))
+            if begin + q < len(members):
+                stages[-1].pair_allowed, stages[-1].pair_measures = allowed[:, :, here], [None, None]
         level, found = best_paths(stages)
-        every = np.arange(len(curves))
-        best = np.stack([cants[at, every] for cants, at in zip(levels, level.T, strict=True)], axis=1)
+        best = cants[level.T.ravel(), np.arange(len(members))].reshape(-1, q).T
         cant[curves[found]] = best[found]
         left += list(curves[~found])
     return cant, left

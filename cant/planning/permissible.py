@@ -7,7 +7,9 @@ transitions permit stands in :mod:`cant.planning.permissible_shared`.
 
 from __future__ import annotations
 
+from collections.abc import Sequence
 from dataclasses import dataclass
+from typing import Any
 
 import numpy as np
 import numpy.typing as npt
@@ -43,6 +45,11 @@ class Permitted:
     up_to_kmh: FloatArray
     planned: BoolArray
 
+    @classmethod
+    def everything(cls, n: int, k: int) -> Permitted:
+        """Give what permits everything to k classes on n curves."""
+        return cls(np.full((n, k), np.inf), np.ones((n, k), dtype=np.bool_))
+
     def take(self, curves: npt.NDArray[np.int64] | BoolArray) -> Permitted:
         """Give some of the curves, from arrays (n, k)."""
         return Permitted(self.up_to_kmh[curves], self.planned[curves])
@@ -58,6 +65,8 @@ class Permitted:
 
 def speed_steps(line: Line) -> FloatArray:
     """Give the speed step of each class on each curve [km/h], shape (n, k): 5 km/h unless the limits say."""
+    if not line.table.has("speed step"):
+        return np.full(line.runs.shape, DEFAULT_SPEED_STEP_KMH)
     step = line.table.at(
         "speed step",
         exceptional=False,
@@ -69,22 +78,35 @@ def speed_steps(line: Line) -> FloatArray:
     return np.where(np.isfinite(step) & (step > 0), step, DEFAULT_SPEED_STEP_KMH)
 
 
-def first_alike(*lines: Line) -> IntArray:
-    """Give for each class the first one that the speed rules treat alike on a curve, shape (n, k).
+def first_of_kind(*lines: Line) -> IntArray:
+    """Give for each class the first one of which the same speeds are permissible, shape (n, k).
 
-    On several lines of n curves each: alike on all of them. Such classes have the same permissible speeds at
-    the same cants, so these are searched once.
+    On several lines of n curves each: on all of them. How far the rules hold does not depend on how fast a
+    class is planned, unless the limits have gaps (they end the search above the planned speed) or the speed
+    step hangs on it.
     """
-    n, k = lines[0].runs.shape
-    first = np.tile(np.arange(k), (n, 1))
+    table = lines[0].table
+    gaps = any(table.may_have_gap(quantity) for quantity in SPEED_QUANTITIES)
+    if gaps or table.changes_with_speed("speed step"):
+        return first_alike(*lines)
+    return _first_equal([line.kind for line in lines])
+
+
+def first_alike(*lines: Line) -> IntArray:
+    """Give for each class the first one of the same kind and planned speed, shape (n, k).
+
+    On several lines of n curves each: alike on all of them.
+    """
+    return _first_equal([part for line in lines for part in (line.kind, line.planned_kmh)])
+
+
+def _first_equal(parts: Sequence[npt.NDArray[Any]]) -> IntArray:
+    n, k = parts[0].shape
+    first = np.empty((n, k), dtype=np.int64, order="F")
+    first[:] = np.arange(k)
     for c in range(k):
         for d in range(c - 1, -1, -1):
-            alike: BoolArray = np.ones(n, dtype=np.bool_)
-            for line in lines:
-                for part in (line.planned_kmh, line.category):
-                    alike &= part[:, c] == part[:, d]
-                roll = line.roll[:, [c, d]]
-                alike &= (roll[:, 0] == roll[:, 1]) | np.isnan(roll).all(axis=1)
+            alike = np.logical_and.reduce([part[:, c] == part[:, d] for part in parts])
             first[alike, c] = d
     return first
 
@@ -132,7 +154,8 @@ def _root_of_rate(cant_mm: FloatArray, line: Line, ceiling: FloatArray) -> Float
     v = np.sqrt(np.maximum(-p, 0.0)) + np.cbrt(np.maximum(q, 0.0))
     for _ in range(_NEWTON_STEPS):
         with np.errstate(divide="ignore", invalid="ignore"):
-            move = (v**3 + p * v - q) / (3 * v**2 + p)
+            square = v * v
+            move = (v * (square + p) - q) / (3 * square + p)
         move = np.where(np.isfinite(move), move, 0.0)
         v = np.maximum(v - move, 0.0)
         if not (move > 1e-12 * v).any():
@@ -197,7 +220,7 @@ def _fastest_over_end(line: Line, cant_mm: FloatArray, asked: Asked, end: int, r
 
 
 def permitted_alone(
-    line: Line, cant_mm: FloatArray, steps: FloatArray, exceptional: bool, as_run: bool = False
+    line: Line, cant_mm: FloatArray, steps: FloatArray, exceptional: bool, enough_kmh: float = FASTEST_KMH
 ) -> Permitted:
     """Give what the rules of the curves by themselves permit.
 
@@ -211,9 +234,9 @@ def permitted_alone(
         Speed steps [km/h].
     exceptional : bool
         Tier.
-    as_run : bool
-        Only what is run is asked for: the search ends with the band of the multiple at or next above the
-        fastest planned speed.
+    enough_kmh : float
+        The search ends with the band of this speed: for what is run, the multiple at or next above the
+        fastest planned speed is enough.
 
     Returns
     -------
@@ -225,9 +248,8 @@ def permitted_alone(
     alive = np.ones(shape, dtype=np.bool_)
     roots = _Roots(line, cant_mm)
     planned = np.nan_to_num(line.planned_kmh)
-    enough = next_multiple(planned, steps).max(initial=0.0) if as_run else FASTEST_KMH
     for low, high in _bands(line):
-        if low >= enough:
+        if low >= enough_kmh:
             break
         asked = Asked(line, np.full((1, 1), high), exceptional)
         fastest = _fastest_in_band(line, cant_mm, asked, roots)

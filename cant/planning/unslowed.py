@@ -17,10 +17,11 @@ import numpy.typing as npt
 from cant.planning.assess import passed_shared
 from cant.planning.chain_choice import Stage, best_paths, by_length
 from cant.planning.line import Line
+from cant.planning.multiples import Kinds, Multiples
 from cant.planning.neighbours import Pairs
 from cant.planning.nodes import Nodes
 from cant.planning.permissible import Permitted, first_alike, next_multiple, speed_steps
-from cant.planning.permissible_shared import shared_gap, slows_after
+from cant.planning.permissible_shared import slows_after
 from cant.planning.shared import Meeting, SharedAsked
 from cant.planning.windows import Window, hard_window, speed_windows
 
@@ -28,14 +29,14 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-TOGETHER = 100
-"""Chains that step together: keeps the arrays of a step within the processor's cache."""
+TOGETHER = 150
+"""Transitions looked at together: keeps their arrays within the processor's cache."""
 _SLACK = 1e-9
 
 
 @dataclass
 class _Cheap:
-    """The levels of q curves that cost least time: arrays (a, q), speeds (q, k).
+    """The levels of c curves that cost least time: arrays (a, c), speeds (c, k).
 
     ``own`` is what the curve by itself permits at all of them, ``alike`` whether it is the same at all.
     """
@@ -48,8 +49,8 @@ class _Cheap:
     alike: BoolArray
 
     @classmethod
-    def of(cls, nodes: Nodes, curves: IntArray) -> _Cheap:
-        cheap = nodes.cheapest[:, curves]
+    def of(cls, nodes: Nodes, cheapest: BoolArray, curves: IntArray) -> _Cheap:
+        cheap = cheapest[:, curves]
         order = np.argsort(~cheap, axis=0, kind="stable")[: int(cheap.sum(axis=0).max(initial=0))]
         possible = np.take_along_axis(cheap, order, axis=0)
         count, overrun, square, cant = (
@@ -62,6 +63,17 @@ class _Cheap:
         own = Permitted(nodes.alone.up_to_kmh[order[0], curves], planned[0])
         alike = (same | ~possible).all(axis=0)
         return cls(possible, cant, [count, overrun, square, cant], own, run[0], alike)
+
+    def part(self, curves: slice) -> _Cheap:
+        """Give some consecutive curves."""
+        return _Cheap(
+            self.possible[:, curves],
+            self.cant_mm[:, curves],
+            [measure[:, curves] for measure in self.measures],
+            Permitted(self.own.up_to_kmh[curves], self.own.planned[curves]),
+            self.run_kmh[curves],
+            self.alike[curves],
+        )
 
 
 def settle_unslowed(
@@ -89,59 +101,99 @@ def settle_unslowed(
         Chains that have no such path, or of which it is not known.
     """
     cant = np.full(len(line), np.nan)
-    after = pairs.after(len(line))
+    after, cheapest = pairs.after(len(line)), nodes.cheapest
     left: list[IntArray] = []
     for curves in by_length(chains, TOGETHER):
-        cheap = [_Cheap.of(nodes, column) for column in curves.T]
-        stages = [Stage(curve.measures, curve.possible) for curve in cheap]
-        known = np.logical_and.reduce([curve.alike for curve in cheap])
-        for i, column in enumerate(curves.T[:-1]):
-            meeting = Meeting.of(line, pairs.take(after[column]))
-            known &= _meet(stages[i], meeting, cheap[i], cheap[i + 1], exceptional)
-        level, found = best_paths(stages)
-        found &= known
-        every = np.arange(len(curves))
-        best = np.stack([c.cant_mm[at, every] for c, at in zip(cheap, level.T, strict=True)], axis=1)
+        # Position by position, so that a transition leads from a curve to the one q further on.
+        q, members = len(curves), curves.T.ravel()
+        cheap = _Cheap.of(nodes, cheapest, members)
+        crossings = []
+        for begin in range(0, len(members) - q, TOGETHER):
+            some = slice(begin, min(begin + TOGETHER, len(members) - q))
+            meeting = Meeting.of(line, pairs.take(after[members[some]]))
+            ahead = slice(some.start + q, some.stop + q)
+            crossings.append(_cross(meeting, cheap.part(some), cheap.part(ahead), exceptional))
+        level, found = best_paths(_stages(cheap, _Crossing.join(crossings), q))
+        found &= cheap.alike.reshape(-1, q).all(axis=0)
+        found &= np.concatenate([crossing.sure for crossing in crossings]).reshape(-1, q).all(axis=0)
+        best = cheap.cant_mm[level.T.ravel(), np.arange(len(members))].reshape(-1, q).T
         cant[curves[found]] = best[found]
         left += list(curves[~found])
     return cant, left
 
 
-def _meet(stage: Stage, meeting: Meeting, before: _Cheap, after: _Cheap, exceptional: bool) -> BoolArray:
-    """Enter into a stage which pairs its transitions allow, and what these pass at normal values.
+def _stages(cheap: _Cheap, crossing: _Crossing, q: int) -> list[Stage]:
+    """Cut curves and transitions into those of each position of q chains."""
+    stages = []
+    for begin in range(0, len(cheap.alike), q):
+        here = cheap.part(slice(begin, begin + q))
+        stages.append(Stage(here.measures, here.possible))
+        if begin + q < len(cheap.alike):
+            stages[-1].pair_allowed = crossing.allowed[:, :, begin : begin + q]
+            passed = [None if part is None else part[:, :, begin : begin + q] for part in crossing.passed]
+            stages[-1].pair_measures = [*passed, None, None]
+    return stages
 
-    Returns
-    -------
-    ndarray of bool, shape (q,)
-        Whether these are surely all pairs that slow no train.
+
+@dataclass
+class _Crossing:
+    """The pairs of levels over m transitions: arrays (a, b, m).
+
+    ``allowed`` tells which slow no train, ``passed`` count and overrun of what these pass at normal values
+    (None: nothing), ``sure`` (m,) whether the allowed ones are surely all.
     """
+
+    allowed: BoolArray
+    passed: tuple[FloatArray, FloatArray] | tuple[None, None]
+    sure: BoolArray
+
+    @classmethod
+    def join(cls, parts: Sequence[_Crossing]) -> _Crossing:
+        allowed = np.concatenate([part.allowed for part in parts], axis=-1)
+        sure = np.concatenate([part.sure for part in parts])
+        if all(part.passed[0] is None for part in parts):
+            return cls(allowed, (None, None), sure)
+        count, overrun = (
+            np.concatenate(
+                [np.zeros(p.allowed.shape) if p.passed[j] is None else p.passed[j] for p in parts], axis=-1
+            )
+            for j in (0, 1)
+        )
+        return cls(allowed, (count, overrun), sure)
+
+
+def _cross(meeting: Meeting, before: _Cheap, after: _Cheap, exceptional: bool) -> _Crossing:
+    """Find which pairs some transitions allow, and what these pass at normal values."""
     run = np.minimum(before.run_kmh, after.run_kmh)
     cants = before.cant_mm[:, :, None]
     at_run = speed_windows(SharedAsked(meeting, run, exceptional), cants)
     # A train that stands, or that may not run at all, is not slowed further.
     at_run = Window(np.where(run > 0, at_run.low, -np.inf), np.where(run > 0, at_run.high, np.inf))
-    below, sure = _below_run_speed(meeting, before, after, at_run, exceptional)
+    one = first_alike(meeting.before, meeting.after) == np.arange(run.shape[1])
+    below, sure = _below_run_speed(meeting, before, after, at_run, one, exceptional)
     window = hard_window(SharedAsked(meeting, meeting.planned_kmh, exceptional), cants)
     window = window.within(at_run.over_classes()).within(below)
-    allowed = window.holds(after.cant_mm) & stage.possible[:, None, :] & after.possible
-    stage.pair_allowed = allowed
-    stage.pair_measures = [None, None, None, None]
-    passing, at, column = _passing(meeting, run, cants, window, after)
-    if len(passing):
-        cants_after = after.cant_mm[None]
-        passed = passed_shared(
-            meeting.unfold(at, column),
-            (cants[:, None, at], cants_after[:, :, at, None]),
-            run[at, column][:, None],
-        ).gathered(np.searchsorted(at, passing))
-        count, total = np.zeros(allowed.shape), np.zeros(allowed.shape)
-        count[:, :, passing], total[:, :, passing] = passed.count, passed.total
-        stage.pair_measures = [count, total, None, None]
-    return sure
+    allowed = window.holds(after.cant_mm) & before.possible[:, None, :] & after.possible
+    passing, at, column = _passing(meeting, run, cants, window, after, one)
+    if not len(passing):
+        return _Crossing(allowed, (None, None), sure)
+    passed = passed_shared(
+        meeting.unfold(at, column),
+        (cants[:, None, at], after.cant_mm[None, :, at, None]),
+        run[at, column][:, None],
+    ).gathered(np.searchsorted(at, passing))
+    count, total = np.zeros(allowed.shape), np.zeros(allowed.shape)
+    count[:, :, passing], total[:, :, passing] = passed.count, passed.total
+    return _Crossing(allowed, (count, total), sure)
 
 
 def _passing(
-    meeting: Meeting, run_kmh: FloatArray, cants_mm: FloatArray, window: Window, after: _Cheap
+    meeting: Meeting,
+    run_kmh: FloatArray,
+    cants_mm: FloatArray,
+    window: Window,
+    after: _Cheap,
+    one_of_alike: BoolArray,
 ) -> tuple[IntArray, IntArray, IntArray]:
     """Find the transitions over which an allowed pair may pass a normal limit, and for which classes.
 
@@ -162,12 +214,17 @@ def _passing(
     both = meeting.both
     danger = both & (outside | outside_hard[:, None])
     danger[:, 0] |= outside_hard & ~both.any(axis=1)
-    at, column = np.nonzero(danger & (first_alike(meeting.before, meeting.after) == np.arange(both.shape[1])))
+    at, column = np.nonzero(danger & one_of_alike)
     return np.unique(at), at, column
 
 
 def _below_run_speed(
-    meeting: Meeting, before: _Cheap, after: _Cheap, at_run: Window, exceptional: bool
+    meeting: Meeting,
+    before: _Cheap,
+    after: _Cheap,
+    at_run: Window,
+    one_of_alike: BoolArray,
+    exceptional: bool,
 ) -> tuple[Window, BoolArray]:
     """Give what the multiples of the speed step ask of trains that do not run at a permissible planned speed.
 
@@ -181,26 +238,58 @@ def _below_run_speed(
     runs = np.stack([before.run_kmh, after.run_kmh])
     on_after = slows_after(meeting, (before.run_kmh, after.run_kmh))
     own, other = np.where(on_after, runs[::-1], runs)
-    planned = np.where(on_after, meeting.after.planned_kmh, meeting.before.planned_kmh)
     step = np.where(on_after, speed_steps(meeting.after), speed_steps(meeting.before))
     held = np.where(on_after, after.own.planned, before.own.planned)
     top = next_multiple(own, step)
     uneven = np.abs(top - own) > _SLACK
-    at, column = np.nonzero(meeting.both & (own > 0) & (uneven | ~held))
+    at, column = np.nonzero(meeting.both & one_of_alike & (own > 0) & (uneven | ~held))
     if not len(at):
         return window, sure
-    other, planned, step, top = (x[at, column][:, None] for x in (other, planned, step, top))
-    on_after, held, uneven = on_after[at, column][:, None], held[at, column], uneven[at, column]
-    multiple = np.arange(1.0, np.rint((top / step).max()) + 1)[:, None, None, None] * step
-    trial = np.minimum(np.minimum(multiple, top), other)
-    part = meeting.unfold(at, column)
-    each = speed_windows(SharedAsked(part, trial, exceptional), before.cant_mm[:, at, None])
-    gap = shared_gap(part, trial, on_after, exceptional) & (trial > planned + _SLACK)
-    low = np.where(gap, np.inf, each.low).max(axis=0)[..., 0]
-    high = each.high.min(axis=0)[..., 0]
+    other, step, top = (speed[at, column] for speed in (other, step, top))
+    on_after, held, uneven = (which[at, column] for which in (on_after, held, uneven))
+    each = _up_to(
+        meeting, before.cant_mm, Kinds.of(meeting, at, column), (top, other, step), on_after, exceptional
+    )
     slow = ~held
-    np.maximum.at(window.low.T, at[slow], low.T[slow])
-    np.minimum.at(window.high.T, at[slow], high.T[slow])
-    inside = (low > high) | ((low >= at_run.low[:, at, column]) & (high <= at_run.high[:, at, column]))
+    np.maximum.at(window.low.T, at[slow], each.low.T[slow])
+    np.minimum.at(window.high.T, at[slow], each.high.T[slow])
+    inside = (each.low >= at_run.low[:, at, column]) & (each.high <= at_run.high[:, at, column])
+    inside |= each.low > each.high
     sure[at[~inside.all(axis=0) & uneven]] = False
     return window, sure
+
+
+def _up_to(
+    meeting: Meeting,
+    cant_before_mm: FloatArray,
+    kinds: Kinds,
+    speeds_kmh: tuple[FloatArray, FloatArray, FloatArray],
+    on_after: BoolArray,
+    exceptional: bool,
+) -> Window:
+    """Give what all multiples up to a top one allow to c cases, shape (a, c).
+
+    Trains run no faster over the transition than on the other curve. ``speeds_kmh``: the top multiple, the
+    speed on the other curve and the step, (c,) each.
+    """
+    top, other, step = speeds_kmh
+    last = np.floor(np.minimum(top, other) / step + _SLACK)
+    odd = (other < top) & (other != last * step)
+    multiples = Multiples.of(
+        meeting.unfold(kinds.entry_at, kinds.entry_column),
+        cant_before_mm[:, kinds.entry_at],
+        kinds.fastest(np.minimum(top, other)),
+        kinds.further([other], [odd]),
+        exceptional,
+    )
+    before, after = (multiples.within(end, last.astype(np.int64), kinds.entry) for end in (0, 1))
+    window = Window(np.where(on_after, after.low, before.low), np.where(on_after, after.high, before.high))
+    if not odd.any():
+        return window
+    case = np.flatnonzero(odd)
+    place = multiples.further + kinds.rank[case]
+    beyond = multiples.at(place, kinds.entry[case])
+    gap = multiples.gap(on_after[case], place, kinds.entry[case])
+    window.low[:, case] = np.maximum(window.low[:, case], np.where(gap, np.inf, beyond.low))
+    window.high[:, case] = np.minimum(window.high[:, case], beyond.high)
+    return window

@@ -104,13 +104,15 @@ def speed_windows(asked: SharedAsked, cant_before_mm: FloatArray) -> Window:
     with np.errstate(divide="ignore", invalid="ignore"):
         change = (rate.value + rate.tolerance) * KMH_PER_MS * meeting.ramp_m / (meeting.factor * speed)
     change = np.where(both & ~np.isnan(change), change, np.inf)
-    window = _around(asked, cant_before_mm, change).within(_deficiency_window(asked, cant_before_mm))
+    around, window = _around(asked, cant_before_mm, change), _deficiency_window(asked, cant_before_mm)
+    np.maximum(window.low, around.low, out=window.low)
+    np.minimum(window.high, around.high, out=window.high)
     touching = both & (meeting.length_m == 0)
-    if not touching.any():
-        return window
-    limit = asked.limit("abrupt change of cant deficiency")
-    broken = touching & (jump_of_deficiency(meeting, speed) > limit.value + limit.tolerance)
-    return Window(np.where(broken, np.inf, window.low), window.high)
+    if touching.any():
+        limit = asked.limit("abrupt change of cant deficiency")
+        broken = touching & (jump_of_deficiency(meeting, speed) > limit.value + limit.tolerance)
+        np.copyto(window.low, np.inf, where=broken)
+    return window
 
 
 def _deficiency_window(asked: SharedAsked, cant_before_mm: FloatArray) -> Window:
@@ -122,14 +124,18 @@ def _deficiency_window(asked: SharedAsked, cant_before_mm: FloatArray) -> Window
     active = meeting.both & (meeting.length_m > 0) & np.isfinite(room)
     room = np.where(active, room, np.inf)
     before, after = (
-        equilibrium_cant(speed, line.radius_m, line.constant) for line in (meeting.before, meeting.after)
+        np.where(active, equilibrium_cant(speed, line.radius_m, line.constant), 0.0)
+        for line in (meeting.before, meeting.after)
     )
-    after = np.where(active, after, 0.0)
-    hands = meeting.before.hand * meeting.after.hand
-    signed = hands * np.maximum(np.where(active, before, 0.0) - cant_before_mm, 0.0)
+    # In place from here on: these arrays are the largest of a search.
+    signed = before - cant_before_mm
+    np.maximum(signed, 0.0, out=signed)
+    signed *= meeting.before.hand * meeting.after.hand
     # The deficiency after lies in [signed - room, signed + room] and is at least 0.
-    low = np.where(signed + room >= 0, after - signed - room, np.inf)
-    high = np.where(signed - room > 0, after - signed + room, np.inf)
+    middle = after - signed
+    low, high = middle - room, middle + room
+    np.copyto(low, np.inf, where=signed < -room)
+    np.copyto(high, np.inf, where=signed <= room)
     return Window(low, high)
 
 

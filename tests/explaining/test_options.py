@@ -37,7 +37,7 @@ def replanned(plan: Plan, option: dict[str, Any]) -> Plan:
 
 
 def chain_of(plan: Plan, index: int) -> list[int]:
-    chains = chains_of(len(plan.curves), plan.outcome.pairs)
+    chains = chains_of(plan.outcome.pairs)
     return next(([int(i) for i in chain] for chain in chains if index in chain), [index])
 
 

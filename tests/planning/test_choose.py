@@ -26,6 +26,7 @@ from cant.planning.nodes import Nodes
 from cant.planning.outcome import Outcome, plan_arrays
 from cant.planning.running_time import Services
 
+BoolArray = npt.NDArray[np.bool_]
 FloatArray = npt.NDArray[np.float64]
 IntArray = npt.NDArray[np.int64]
 
@@ -60,16 +61,18 @@ def none_unslowed(
     return np.full(len(line), np.nan), list(chains)
 
 
-def every_chain(line: Line, pairs: Pairs, cant: FloatArray, chains: list[IntArray]) -> list[IntArray]:
-    """Stand in for the check that nearest cants stand together: no chain passes."""
-    return list(chains)
+def everywhere(line: Line, pairs: Pairs, cant: FloatArray) -> BoolArray:
+    """Stand in for the check that nearest cants stand together: none do."""
+    clashes = np.zeros(len(line), dtype=np.bool_)
+    clashes[pairs.first] = True
+    return clashes
 
 
 @pytest.mark.parametrize(
     "long_way",
     [
-        {"_unsettled_chains": every_chain},
-        {"_unsettled_chains": every_chain, "settle_within_normal": none_within_normal},
+        {"_clashes": everywhere},
+        {"_clashes": everywhere, "settle_within_normal": none_within_normal},
         {"normal_bounds": nothing_settled},
         {"normal_bounds": nothing_settled, "settle_unslowed": none_unslowed},
     ],

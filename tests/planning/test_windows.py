@@ -79,7 +79,7 @@ def test_windows_of_speed_and_the_others_apart() -> None:
 
 def chain_levels(outcome: Outcome, exceptional: bool) -> tuple[Line, Meeting, Levels]:
     """Give the levels of all curves in chains, chain after chain."""
-    chains = chains_of(len(outcome.line), outcome.pairs)
+    chains = chains_of(outcome.pairs)
     curves = np.concatenate(chains)
     number = np.repeat(np.arange(len(chains)), [len(chain) for chain in chains])
     line = outcome.line.take(curves).with_bands()
