@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterable, Iterator
 from dataclasses import dataclass
+from functools import partial
 
 import numpy as np
 import numpy.typing as npt
@@ -150,13 +151,13 @@ def find_neighbours(curves: CurveList) -> Neighbourhood:
         contradictory=contradictory,
         weight_length_m=weight_lengths(curves),
         track=track,
-        remarks=[
-            lambda: _length_findings(curves),
-            lambda: _backward_findings(backwards & ~curves.rejected),
-            lambda: _clash_findings(curves, gaps),
-            lambda: _overlap_findings(curves, gaps),
-            lambda: _shared_length_findings(curves, ends, pairs),
-            lambda: _hand_findings(handless & ~curves.rejected),
+        remarks=[  # not lambdas: a plan must be able to go into another process
+            partial(_length_findings, curves),
+            partial(_backward_findings, backwards & ~curves.rejected),
+            partial(_clash_findings, curves, gaps),
+            partial(_overlap_findings, curves, gaps),
+            partial(_shared_length_findings, curves, ends, pairs),
+            partial(_hand_findings, handless & ~curves.rejected),
         ],
     )
     return forget(result, curves.rejected | contradictory)

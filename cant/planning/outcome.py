@@ -4,7 +4,7 @@ from __future__ import annotations
 
 from collections.abc import Callable, Sequence
 from dataclasses import dataclass
-from functools import cached_property
+from functools import cached_property, partial
 
 import numpy as np
 import numpy.typing as npt
@@ -235,11 +235,11 @@ def plan_arrays(
         cant = keep_today(line, pairs, cant, settings.keep_within_mm, keepable, tier)
     tell(0.8, "assessing the plan")
     proposed = assess_some(line, pairs, cant, tier, np.flatnonzero(~choice.within_normal & planned))
-    remarks = [
+    remarks: list[Remark] = [
         *neighbourhood.remarks,
-        lambda: gaps,
-        lambda: find_unlimited(limits, traffic),
-        lambda: misplaced,
+        partial(iter, gaps),
+        partial(find_unlimited, limits, traffic),
+        partial(iter, misplaced),
     ]
     tell(1.0, "done")
     return Outcome(
