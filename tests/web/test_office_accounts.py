@@ -1,4 +1,4 @@
-"""Keys for programs, plans made before, the operator's command, the log of events, the proxy that signs in."""
+"""Keys for programs, plans made before, the operator's command, the log of events, the proxy's sign-in."""
 
 from __future__ import annotations
 

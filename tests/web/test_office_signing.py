@@ -279,6 +279,7 @@ def test_who_was_handed_a_plan_looks_at_everything_and_changes_nothing(
 ) -> None:
     assert sign(crew["anna"], plan, number_of(office, "bo")).status_code == 303
     bo = crew["bo"]
+    crew["anna"].get("/")
     history = crew["anna"].get(f"{plan}/history").text
     for page in PAGES:
         wanted = (403,) if page in ("/delete", "/shares") else (200, 302)
