@@ -69,6 +69,11 @@ def signed_by(form: Mapping[str, str]) -> tuple[str, str, dict[str, str]]:
     return reason, who, fields.problems
 
 
+def decider(given: str = "") -> str:
+    """Give the name under which a program decides: of who has signed in, else what it gives."""
+    return remembered_name() if g.get(PERSON) is not None else given
+
+
 def remembered_name() -> str:
     """Give the name of who has signed in, else the name that this browser gave last."""
     if g.get(PERSON) is not None:

@@ -30,15 +30,18 @@ class Proposal:
         Content by kind, as the store takes it.
     reason : str
         The engineer's reason, as far as he has given one.
+    known : int or None
+        How many decisions of the plan he knows of; None for all.
     """
 
     words: str
     decisions: dict[str, str]
     reason: str = ""
+    known: int | None = None
 
     def signed(self, plan: StoredPlan) -> str:
         """Give it as text for a form of a plan's page."""
-        return str(_signer(plan).dumps([self.words, self.decisions, self.reason]))
+        return str(_signer(plan).dumps([self.words, self.decisions, self.reason, self.known]))
 
     def on(self, plan: StoredPlan) -> StoredPlan:
         """Give the plan as it would be."""
@@ -50,11 +53,11 @@ class Proposal:
 def proposal_of(plan: StoredPlan, text: str) -> Proposal:
     """Read a proposal that a form sent back; InputError where it was not made here for this plan."""
     try:
-        words, decisions, reason = _signer(plan).loads(text)
+        words, decisions, reason, known = _signer(plan).loads(text)
     except (BadSignature, ValueError) as error:
         message = "this proposal was not made here for this plan; open the page anew and try once more"
         raise InputError(message) from error
-    return Proposal(words, decisions, reason)
+    return Proposal(words, decisions, reason, known)
 
 
 def at_moment(plan: StoredPlan, history: Iterable[Decision]) -> StoredPlan:

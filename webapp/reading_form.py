@@ -125,6 +125,22 @@ def answers(
     return merged or None
 
 
+def words_of(given: Mapping[str, str], reading: Reading) -> list[str]:
+    """Say what a form answers and corrects, one sentence each."""
+    said = []
+    for shown in shown_questions(reading):
+        choice = given.get(shown.name, "")
+        if choice in shown.question.choices:
+            said.append(f"{shown.question.question} {choice}")
+    for number, item in enumerate(reading.columns):
+        correction = _correction(given, f"c-{number}", item)
+        if correction:
+            parts = [f"read as {correction['meaning'] or 'nothing'}"] if "meaning" in correction else []
+            parts += [f"in {correction['unit']}"] if "unit" in correction else []
+            said.append(f"Column {column_letter(item.index)} {item.heading}: {', '.join(parts)}")
+    return said
+
+
 def _add_answer(merged: dict[str, Any], question: Question, choice: str) -> None:
     sheet = merged.setdefault("answers", {}).setdefault(question.sheet, {})
     earlier = sheet.get(question.column, [])

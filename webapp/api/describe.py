@@ -10,7 +10,7 @@ from pydantic.json_schema import models_json_schema
 
 from cant.version import __version__
 from cant.writing.cautions import CAUTIONS
-from webapp.api.models import ErrorAnswer, WorkAnswer
+from webapp.api.models import ErrorAnswer, KnownQuery, WorkAnswer
 from webapp.api.operations import OPERATIONS, Operation, api
 from webapp.security import SESSION_COOKIE
 
@@ -30,6 +30,7 @@ ERRORS = {
     "401": "No key and no cookie was sent.",
     "403": "The key is not valid, or the request comes from another site.",
     "404": "There is no such plan for the caller.",
+    "409": "The work for it was cancelled or failed, or somebody has decided the same since what is known.",
     "413": "The request is too large.",
     "415": "The body has the wrong media type.",
     "422": "What was sent cannot be used; the message says why and what would be right.",
@@ -130,7 +131,7 @@ def _not_yet(what: Operation) -> dict[str, Any]:
     }
     words = {
         "202": "Not yet: it is made in the background. Ask the same again later.",
-        "409": "The work for it was cancelled, or failed; the message says how to start it again.",
+        "409": ERRORS["409"],
     }
     models: dict[str, type[BaseModel]] = {"202": WorkAnswer, "409": ErrorAnswer}
     answers = {
@@ -144,6 +145,7 @@ def _errors(what: Operation) -> dict[str, Any]:
     content = {"application/json": {"schema": _reference(ErrorAnswer)}}
     codes = ["400", "404", "422", "429", "503"] + ([] if what.open else ["401"])
     codes += ["507"] if what.upload else []
+    codes += ["409"] if what.query is KnownQuery else []
     codes += ["403", "413", "415"] if what.changes else (["403"] if not what.open else [])
     return {code: {"description": ERRORS[code], "content": content} for code in sorted(codes)}
 

@@ -271,6 +271,14 @@ class HistoryAnswer(Given):
     changes: list[dict[str, Any]]
 
 
+class KnownQuery(Taken):
+    """How many decisions of the plan the caller has seen: a later one is not silently replaced."""
+
+    model_config = ConfigDict(extra="forbid", strict=False)
+
+    known: Annotated[int | None, Field(ge=0, le=1_000_000)] = None
+
+
 class CurvesQuery(Taken):
     """Which curves, in which order."""
 

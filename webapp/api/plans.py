@@ -11,8 +11,10 @@ from cant import service
 from cant.errors import InputError
 from cant.model.limits import LimitSet
 from cant.reading import reading_document
+from webapp.access import to_change
 from webapp.api.models import (
     AnswersBody,
+    KnownQuery,
     LimitsBody,
     PlanList,
     PlanSummary,
@@ -25,6 +27,7 @@ from webapp.busy import BusyError
 from webapp.context import read_as, reading_of, running, stored
 from webapp.deciding import checked_units
 from webapp.decisions import as_text, limits_text, settings_text, traffic_text
+from webapp.history_view import decider
 from webapp.keeping.shares import Shares
 from webapp.security import new_key, owner
 from webapp.uploads import needed, uploaded
@@ -85,39 +88,45 @@ def get_reading(address: str) -> dict[str, Any]:
     return dict(reading_document(reading_of(stored(address))))
 
 
-@operation("PUT", "/plans/{address}/answers", answer=ReadingAnswer, body=AnswersBody, later=True)
-def put_answers(address: str, body: AnswersBody) -> dict[str, Any]:
+@operation(
+    "PUT", "/plans/{address}/answers", answer=ReadingAnswer, body=AnswersBody, query=KnownQuery, later=True
+)
+def put_answers(address: str, body: AnswersBody, query: KnownQuery) -> dict[str, Any]:
     """Answer questions and correct columns; the file is read anew."""
-    plan = stored(address)
+    plan = to_change(address)
     given = {key: value for key, value in body.model_dump().items() if value} or None
     reading = read_as(plan, {"answers": as_text(given)})
-    running().store.decide(owner(), address, {"answers": as_text(given)})
+    _decided(address, {"answers": as_text(given)}, query)
     return dict(reading_document(reading))
 
 
-@operation("PUT", "/plans/{address}/traffic", answer=PlanSummary, body=TrafficBody, later=True)
-def put_traffic(address: str, body: TrafficBody) -> PlanSummary:
+@operation(
+    "PUT", "/plans/{address}/traffic", answer=PlanSummary, body=TrafficBody, query=KnownQuery, later=True
+)
+def put_traffic(address: str, body: TrafficBody, query: KnownQuery) -> PlanSummary:
     """Replace the traffic."""
-    plan = stored(address)
+    plan = to_change(address)
     traffic = body.traffic()
     read_as(plan, {"traffic": traffic_text(traffic)})
-    return _decided(address, {"traffic": traffic_text(traffic)})
+    return _decided(address, {"traffic": traffic_text(traffic)}, query)
 
 
-@operation("PUT", "/plans/{address}/limits", answer=PlanSummary, body=LimitsBody, later=True)
-def put_limits(address: str, body: LimitsBody) -> PlanSummary:
+@operation(
+    "PUT", "/plans/{address}/limits", answer=PlanSummary, body=LimitsBody, query=KnownQuery, later=True
+)
+def put_limits(address: str, body: LimitsBody, query: KnownQuery) -> PlanSummary:
     """Replace the limits: by a set that comes with the program, or by rules that are sent."""
-    plan = stored(address)
+    plan = to_change(address)
     limits = _limits(body)
     read_as(plan, {"limits": limits_text(limits)})
-    return _decided(address, {"limits": limits_text(limits)})
+    return _decided(address, {"limits": limits_text(limits)}, query)
 
 
-@operation("PUT", "/plans/{address}/settings", answer=PlanSummary, body=SettingsBody)
-def put_settings(address: str, body: SettingsBody) -> PlanSummary:
+@operation("PUT", "/plans/{address}/settings", answer=PlanSummary, body=SettingsBody, query=KnownQuery)
+def put_settings(address: str, body: SettingsBody, query: KnownQuery) -> PlanSummary:
     """Replace the settings."""
-    stored(address)
-    return _decided(address, {"settings": settings_text(body.settings())})
+    to_change(address)
+    return _decided(address, {"settings": settings_text(body.settings())}, query)
 
 
 @operation("GET", "/template", answer=XLSX, open=True)
@@ -136,5 +145,6 @@ def _limits(body: LimitsBody) -> LimitSet:
     return found
 
 
-def _decided(address: str, decisions: dict[str, str]) -> PlanSummary:
-    return PlanSummary.of(running().store.decide(owner(), address, decisions))
+def _decided(address: str, decisions: dict[str, str], query: KnownQuery) -> PlanSummary:
+    decided = running().store.decide(owner(), address, decisions, who=decider(), known=query.known)
+    return PlanSummary.of(decided)

@@ -3,12 +3,14 @@
 from __future__ import annotations
 
 import json
+from dataclasses import replace
 
 from flask import Blueprint, flash, redirect, render_template, request, url_for
 from flask.typing import ResponseReturnValue
 
 from cant.errors import InputError
 from cant.explaining import read_decision
+from webapp.access import to_change
 from webapp.changes import take, with_reason
 from webapp.computing import Computed
 from webapp.context import computed_of, current_measures, planned_as, running, stored, unconfirmed
@@ -16,9 +18,12 @@ from webapp.decisions import CHANGE, as_text
 from webapp.difference_view import page_of_difference, pair_words
 from webapp.going_on import carry_on
 from webapp.history_view import moment_of, moments, signed_by
+from webapp.keeping.shares import Shares
 from webapp.keeping.store import NotThereError, StoredPlan
+from webapp.meanwhile import MeanwhileError
 from webapp.proposals import Proposal, at_moment, proposal_of
 from webapp.security import owner
+from webapp.steps import Steps
 
 pages = Blueprint("comparing", __name__, url_prefix="/plans/<address>")
 
@@ -30,7 +35,7 @@ def show(address: str) -> ResponseReturnValue:
     if away := unconfirmed(plan):
         return away
     computed_of(plan)
-    others = [p for p in running().store.plans(owner()) if p.decided.confirmed and p.address != address]
+    others = [p for p in _mine_and_shared() if p.decided.confirmed and p.address != address]
     asked = request.args.get("with", "")
     before: StoredPlan | None = None
     after = plan
@@ -60,7 +65,7 @@ def look(address: str) -> ResponseReturnValue:
 @pages.post("/keep-proposal")
 def keep(address: str) -> ResponseReturnValue:
     """Keep what a proposal would change, with reason and name."""
-    plan = stored(address)
+    plan = to_change(address)
     proposal = proposal_of(plan, request.form.get("proposal", ""))
     reason, who, problems = signed_by(request.form)
     if problems:
@@ -69,7 +74,12 @@ def keep(address: str) -> ResponseReturnValue:
     decisions = dict(proposal.decisions)
     if CHANGE in decisions:
         decisions[CHANGE] = as_text(with_reason(json.loads(decisions[CHANGE]), reason))
-    running().store.decide(owner(), address, decisions, reason, who)
+    try:
+        running().store.decide(owner(), address, decisions, reason, who, proposal.known)
+    except MeanwhileError as error:
+        plan = stored(address)
+        aware = replace(proposal, reason=reason, known=len(plan.history))
+        return page_of_proposal(plan, aware, problem=str(error))
     flash(f"Kept: {proposal.words}")
     return redirect(url_for("result.show", address=address), 303)
 
@@ -91,11 +101,17 @@ def option(address: str, number: int, option: int) -> ResponseReturnValue:
     chosen = record["options"][option - 1]
     words = f"Curve {record['curve']}: {chosen['text']}"
     event = take(words, read_decision(chosen["decision"]))
-    return page_of_proposal(plan, Proposal(words, {CHANGE: as_text(event)}))
+    known = Steps.sent(request.form, plan).known
+    return page_of_proposal(plan, Proposal(words, {CHANGE: as_text(event)}, known=known))
+
+
+def _mine_and_shared() -> list[StoredPlan]:
+    shared = Shares(running().database).shared_with(owner())
+    return [*running().store.plans(owner()), *(one.plan for one in shared)]
 
 
 def page_of_proposal(
-    plan: StoredPlan, proposal: Proposal, problems: dict[str, str] | None = None
+    plan: StoredPlan, proposal: Proposal, problems: dict[str, str] | None = None, problem: str = ""
 ) -> ResponseReturnValue:
     """Show what a proposal would change, and let it be kept."""
     number = request.form.get("page", "1")
@@ -111,8 +127,9 @@ def page_of_proposal(
         proposal=proposal,
         signed=proposal.signed(plan),
         problems=problems or {},
+        problem=problem,
     )
-    return shown, 422 if problems else 200
+    return shown, 409 if problem else 422 if problems else 200
 
 
 def _page(

@@ -103,6 +103,7 @@ def page_of_curve(
     index: int,
     problems: Mapping[str, str] | None = None,
     sent: Mapping[str, str] | None = None,
+    problem: str = "",
 ) -> str:
     """Give the page of a curve, with what was sent and what of it cannot be used."""
     computed = computed_of(plan)
@@ -134,6 +135,7 @@ def page_of_curve(
         settings=computed.planned.plan.settings,
         taken=[one for one in plan.decided.changes if one.on == key],
         problems=problems or {},
+        problem=problem,
         sent=sent or {},
         **_moved(computed, index, record, sent or {}),
     )
