@@ -276,7 +276,8 @@ def test_every_secret_that_opens_nothing_is_answered_alike(app: Flask, owner: Br
         digest = session.scalars(select(ShareRow.secret_digest).where(ShareRow.id == first + 2)).one()
     wrong = [
         withdrawn, expired, good[:-1], good + "A", "/shared/" + good.removeprefix("/shared/").swapcase(),
-        "/shared/" + "A" * 32, f"/shared/{digest}", "/shared/%00", "/shared/%ff", "/shared/'%20OR%201=1--", "/shared/" + "x" * 5000,
+        "/shared/" + "A" * 32, f"/shared/{digest}", "/shared/%ff", "/shared/'%20OR%201=1--",
+        "/shared/" + "x" * 5000,
     ]  # fmt: skip
     stranger = Browser(app)
     stranger.get("/")
@@ -381,7 +382,7 @@ def test_script_in_labels_and_names_is_only_text(app: Flask, owner: Browser, pla
     [
         ({"label": ""}, "for whom"),
         ({"label": "x" * 81}, "for whom"),
-        ({"label": "a\x00b"}, "for whom"),
+        ({"label": "a\x07b"}, "for whom"),
         ({"access": ""}, "choose what the link lets do"),
         ({"access": "own"}, "choose what the link lets do"),
         ({"until": "2001-01-01"}, "last day"),
