@@ -20,9 +20,10 @@ from cant.model.reading import Reading, RejectedRow, SheetReading
 from cant.model.signatures import Signatures
 from cant.writing.book.status import FILLS, NOT_ASSESSED
 from cant.writing.columns import DECISION, NEEDED, WORDS, Cell, Column, Record, class_columns, row_maker
+from cant.writing.looks import A4, LETTER, MAX_TEXT
 from cant.writing.own_units import units_of_sheet
 from cant.writing.plan_sheets import PlanSheets, footer_of, holds_all
-from cant.writing.sheets import A4, LETTER, MAX_TEXT, NewSheets
+from cant.writing.sheets import NewSheets
 
 if TYPE_CHECKING:
     from cant.writing.planned import PlannedLine

@@ -13,8 +13,9 @@ from typing import TYPE_CHECKING, Any
 from cant.model.signatures import Signatures
 from cant.writing.book.calculation import Calculation
 from cant.writing.book.exceptions import Exceptions, SpeedChanges
-from cant.writing.book.lifting import LiftingSchedule, RampValues
+from cant.writing.book.lifting import LiftingSchedule
 from cant.writing.book.pictures import Pictures
+from cant.writing.book.ramp_values import RampValues
 from cant.writing.book.reading_sheets import write_how_read, write_rejected
 from cant.writing.book.selection import Selection, chosen_curves, rule_of_choice
 from cant.writing.book.status import STATUS_WORDS
@@ -33,7 +34,8 @@ from cant.writing.columns import (
     row_maker,
 )
 from cant.writing.figure_columns import END, FIGURES
-from cant.writing.sheets import Heading, NewSheets, TableSheet
+from cant.writing.looks import Heading
+from cant.writing.sheets import NewSheets, TableSheet
 
 if TYPE_CHECKING:
     from cant.writing.planned import PlannedLine

@@ -6,10 +6,8 @@ nothing of plans.
 
 from __future__ import annotations
 
-import math
 import tempfile
 from collections.abc import Sequence
-from dataclasses import dataclass
 from pathlib import Path
 from types import TracebackType
 from typing import Any
@@ -20,57 +18,17 @@ from xlsxwriter.packager import Packager
 from cant.files.loose_parts import LooseParts
 from cant.writing.columns import Cell
 from cant.writing.fast_rows import FastSheet
-
-MAX_TEXT = 32_000
-"""Longest text of a cell that every spreadsheet program keeps (the format's own limit is 32,767)."""
-
-MAX_ROWS = 1_048_000
-"""Most rows that a sheet of ours takes (the format's own limit is 1,048,576)."""
-
-LONG_TEXT = 40.0
-"""Columns at least this wide [characters] hold sentences."""
-
-LINE_HEIGHT = 15.0
-"""Height of a line of text [points]."""
-
-PAGE_WIDTH = 230.0
-"""Widest table [characters] that is still legible on one page across, A4 landscape."""
-
-A4, LETTER = 9, 1
-"""Numbers of the paper sizes."""
-
-KINDS: dict[str, dict[str, Any]] = {
-    "input": {"bg_color": "#FFF6D5", "border": 4, "border_color": "#C9B458"},
-    "fixed": {"font_color": "#5A5A5A"},
-}
-"""How cells of a ledger look: what a checker may change stands on a ground of its own."""
-
-SMALLEST_PRINT = 60
-"""Scale of wider tables [%], which run over several pages across."""
-
-
-@dataclass(frozen=True, slots=True)
-class Heading:
-    """Head of one column of a table.
-
-    Attributes
-    ----------
-    title : str
-        Text of the header cell.
-    width : float
-        In characters.
-    number_format : str or None
-        Number format of the column, None for text.
-    """
-
-    title: str
-    width: float = 12.0
-    number_format: str | None = None
-
-    @property
-    def is_long(self) -> bool:
-        """Whether the column holds sentences, which take several lines."""
-        return self.number_format is None and self.width >= LONG_TEXT
+from cant.writing.looks import (
+    A4,
+    LINE_HEIGHT,
+    MAX_ROWS,
+    MAX_TEXT,
+    PAGE_WIDTH,
+    SMALLEST_PRINT,
+    Heading,
+    Looks,
+    lines_of,
+)
 
 
 class TableSheet:
@@ -100,13 +58,13 @@ class TableSheet:
     def header(self, headings: Sequence[Heading], keep: int = 0) -> None:
         """Write the header of the table that follows; keep it and the first columns in view and in print."""
         sheet, row = self._sheet, self._next
-        self._formats = [self._book.cell_format(heading) for heading in headings]
+        self._formats = [self._book.looks.cell_format(heading) for heading in headings]
         self._long = [(i, h.width) for i, h in enumerate(headings) if h.is_long]
         lines = max(lines_of(heading.title, heading.width) for heading in headings)
         sheet.set_row(row, LINE_HEIGHT * lines)
         for column, heading in enumerate(headings):
             sheet.set_column(column, column, heading.width)
-            sheet.write_string(row, column, heading.title, self._book.head)
+            sheet.write_string(row, column, heading.title, self._book.looks.head)
         sheet.freeze_panes(row + 1, keep)
         sheet.repeat_rows(row)
         if sum(heading.width for heading in headings) <= PAGE_WIDTH:
@@ -154,7 +112,7 @@ class TableSheet:
             ]
             self._sheet.set_row(self._next, LINE_HEIGHT * 0.78 * min(max(lines), tall) + 2)
             for column, text in enumerate(texts):
-                self._sheet.write_string(self._next, column, text, self._book.small_head)
+                self._sheet.write_string(self._next, column, text, self._book.looks.small_head)
             self._next += 1
         self._sheet.freeze_panes(self._next, keep)
         self._sheet.repeat_rows(top, self._next - 1)
@@ -178,7 +136,7 @@ class TableSheet:
 
     def cell_style(self, number_format: str | None, kind: str, width: float) -> int:
         """Give the index of a cell format: of a number or a text, of a kind (input, formula, fixed)."""
-        return int(self._book.styled(number_format, kind, width)._get_xf_index())
+        return int(self._book.looks.styled(number_format, kind, width)._get_xf_index())
 
     def frame(self, first: int, columns: tuple[int, int]) -> None:
         """Frame cells that are to be written in by hand.
@@ -192,7 +150,7 @@ class TableSheet:
         """
         if self._next < first:
             return
-        look = {"type": "formula", "criteria": "=TRUE", "format": self._book.frame}
+        look = {"type": "formula", "criteria": "=TRUE", "format": self._book.looks.frame}
         self._sheet.conditional_format(first - 1, columns[0], self._next - 1, columns[1], look)
 
     @property
@@ -212,14 +170,16 @@ class TableSheet:
     def line(self, *cells: Cell, bold: bool = False) -> None:
         """Write a row outside any table."""
         for column, value in enumerate(cells):
-            self._cell(column, value, self._book.bold if bold else self._book.plain)
+            self._cell(column, value, self._book.looks.bold if bold else self._book.looks.plain)
         self._next += 1
 
     def paragraph(self, text: str, columns: int, width: float = 110.0) -> None:
         """Write a text over several columns of a width together, its row as high as it needs to be."""
         self._sheet.fit_to_pages(1, 0)
         self._sheet.set_row(self._next, LINE_HEIGHT * lines_of(text, width))
-        self._sheet.merge_range(self._next, 0, self._next, columns - 1, text[:MAX_TEXT], self._book.wrapped)
+        self._sheet.merge_range(
+            self._next, 0, self._next, columns - 1, text[:MAX_TEXT], self._book.looks.wrapped
+        )
         self._next += 1
 
     def widths(self, *widths: float) -> None:
@@ -259,44 +219,7 @@ class NewSheets:
             "tmpdir": self._folder.name,
         }
         self.workbook = _PartsWorkbook(str(Path(self._folder.name) / "none.xlsx"), options)
-        self.plain = self.workbook.add_format({"valign": "top"})
-        self.word = self.workbook.add_format({"valign": "top", "align": "left", "indent": 1})
-        self.bold = self.workbook.add_format({"bold": True, "valign": "top"})
-        self.wrapped = self.workbook.add_format({"text_wrap": True, "valign": "top"})
-        self.head = self.workbook.add_format(
-            {"bold": True, "text_wrap": True, "valign": "top", "bottom": 1, "bg_color": "#DDE6E4"}
-        )
-        self.small_head = self.workbook.add_format(
-            {"text_wrap": True, "valign": "top", "font_size": 8, "bottom": 1, "bg_color": "#EEF3F2"}
-        )
-        self.title = self.workbook.add_format({"bold": True, "font_size": 14, "valign": "top"})
-        self.frame = self.workbook.add_format({"border": 1})
-        self.box = self.workbook.add_format({"border": 1, "valign": "top", "text_wrap": True})
-        self._numbers: dict[str, Any] = {}
-        self._styled: dict[tuple[str | None, str, bool], Any] = {}
-
-    def cell_format(self, heading: Heading) -> Any:
-        """Give the format of a column's cells, made once for each number format."""
-        code = heading.number_format
-        if code is None:
-            return self.wrapped if heading.is_long else self.word
-        if code not in self._numbers:
-            self._numbers[code] = self.workbook.add_format({"num_format": code, "valign": "top"})
-        return self._numbers[code]
-
-    def styled(self, number_format: str | None, kind: str, width: float = 0.0) -> Any:
-        """Give the format of a cell of a kind: an input has a ground, what the program fixed is grey."""
-        key = (number_format, kind, number_format is None and width >= LONG_TEXT)
-        if key not in self._styled:
-            look: dict[str, Any] = {"valign": "top", **KINDS.get(kind, {})}
-            if number_format is not None:
-                look["num_format"] = number_format
-            elif key[2]:
-                look["text_wrap"] = True
-            else:
-                look |= {"align": "left", "indent": 1}
-            self._styled[key] = self.workbook.add_format(look)
-        return self._styled[key]
+        self.looks = Looks(self.workbook)
 
     def table(self, name: str) -> TableSheet:
         """Add a sheet."""
@@ -360,11 +283,3 @@ def _cut_all(cells: Sequence[Cell]) -> Sequence[Cell]:
     if any(type(value) is str and len(value) > MAX_TEXT for value in cells):
         return [_cut(value) for value in cells]
     return cells
-
-
-def lines_of(value: Cell, width: float) -> int:
-    """Estimate how many lines a text takes in a column."""
-    if not isinstance(value, str):
-        return 1
-    per_line = max(width - 1, 1)
-    return sum(max(1, math.ceil(len(part) / per_line)) for part in value.split("\n"))

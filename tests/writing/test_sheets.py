@@ -11,7 +11,8 @@ from book_tools import put_together
 from openpyxl import load_workbook
 from python_calamine import CalamineWorkbook
 
-from cant.writing.sheets import MAX_TEXT, Heading, NewSheets
+from cant.writing.looks import MAX_TEXT, Heading
+from cant.writing.sheets import NewSheets
 
 SLY = [
     "=1+1",

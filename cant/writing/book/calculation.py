@@ -75,7 +75,7 @@ class Calculation:
         of_classes.make()
         of_ends = EndCalculation(basis, ends, rows, curves, classes)
         of_ends.make()
-        of_classes.join_ends(ends, rows, of_ends.failing, of_ends.broken)
+        of_classes.speeds.join_ends(ends, rows, of_ends.failing, of_ends.broken)
         of_curves.make_results(classes, ends, rows)
         text = _HOW.format(
             inputs=f"'{self._names[0]}'",

@@ -8,21 +8,17 @@ from __future__ import annotations
 
 import numpy as np
 
-from cant.planning.limit_table import LimitAt
 from cant.planning.neighbours import BEFORE
-from cant.quantities.catalogue import CATALOGUE
-from cant.quantities.lengths import length_for_gradient, length_for_rate
 from cant.units import KMH_PER_MS
+from cant.writing.book.end_lengths import EndLengths
+from cant.writing.book.end_limits import ABRUPT, CANT_RATE, DEFICIENCY_RATE, GRADIENT, EndLimits
 from cant.writing.book.end_rows import EndRows
+from cant.writing.book.end_speeds import add_failing
 from cant.writing.book.frame import Basis, Builder, FloatArray, share, share_text
 from cant.writing.book.ledger import FORMULA, BoolArray, Ledger, LedgerColumn, token
-from cant.writing.book.limits_sheet import Asking, kind_of
-from cant.writing.book.speed_search import NEVER, SpeedSearch, cant_rate, deficiency_rate, jump
 
 _OF_CURVE = ("R", "D", "h", "situation", "tier", "last tier")
 _OF_CLASS = ("category", "step")
-_GRADIENT, _CANT_RATE = "cant gradient", "rate of change of cant"
-_DEFICIENCY_RATE, _ABRUPT = "rate of change of cant deficiency", "abrupt change of cant deficiency"
 
 
 class EndCalculation:
@@ -45,8 +41,9 @@ class EndCalculation:
         self._build = Builder(basis, ledger)
         pos = self._chosen.pos
         self._first = pos[rows.entry]
+        self._limits = EndLimits(basis, self._build, rows)
         # Where there is no other curve the reference points to the curve itself and is not used.
-        self._other_entry = np.where(rows.shared, rows.other, rows.entry)
+        self._other_entry = self._limits.other_entry
         self._second = pos[self._other_entry]
         for side, places, entries in (("1", self._first, rows.entry), ("2", self._second, self._other_entry)):
             of_curve = (curves.first_row + places).tolist()
@@ -67,8 +64,10 @@ class EndCalculation:
         self._motion()
         self._changes()
         self._limited()
-        self._at_planned_speed()
-        self._failing()
+        changes = (self._cant_change, self._planned_change)
+        EndLengths(self._basis, self._build, self._rows, self._limits, changes).make()
+        planned = self._limits.planned_kmh
+        self.failing, self.broken = add_failing(self._basis, self._build, self._rows, planned)
 
     def _names(self) -> None:
         chosen, rows, build = self._chosen, self._rows, self._build
@@ -129,25 +128,16 @@ class EndCalculation:
         return [(one, ~shared), (f'IF(COUNT({one},{two})=2,MIN({one},{two}),"")', shared)]
 
     def _motion(self) -> None:
-        chosen, rows, build = self._chosen, self._rows, self._build
-        entry, other = rows.entry, self._other_entry
-        self._run = np.minimum(chosen.run_kmh[entry], chosen.run_kmh[other])
-        self._planned = np.minimum(chosen.planned_kmh[entry], chosen.planned_kmh[other])
+        build = self._build
+        self._run, self._planned = self._limits.run_kmh, self._limits.planned_kmh
         words = "by class; shared: the lower of the two"
         build.computed("V", "Run speed", "V", self._run, "speed exact", self._both("V run"), words)
         build.computed(
             "Vp", "Planned speed", "V", self._planned, "speed exact", self._both("V planned"), words
         )
 
-    def _balance(self, side: str, speed: str) -> str:
-        basis = self._basis
-        text = CATALOGUE["equilibrium_cant"].text(
-            C=basis.C, V=basis.ref(speed, "speed exact"), R=basis.ref(f"R {side}", "radius")
-        )
-        return basis.inputs.shown(text, "cant exact")
-
     def _deficiency_change(self, speed: str) -> list[tuple[str, BoolArray | None]]:
-        parts = [f"MAX({self._balance(side, speed)}-{token(f'D {side}')},0)" for side in "12"]
+        parts = [f"MAX({self._limits.balance(side, speed)}-{token(f'D {side}')},0)" for side in "12"]
         shared = self._rows.shared
         there = f"ISNUMBER({token(speed)})"
         signed = f"ABS({token('h 1')}*{parts[0]}-{token('h 2')}*{parts[1]})"
@@ -195,7 +185,7 @@ class EndCalculation:
             self._deficiency_change("Vp"),
             "excess counts as 0",
         )
-        one, two = (self._balance(side, "V") for side in "12")
+        one, two = (self._limits.balance(side, "V") for side in "12")
         there = f"AND({token('L')}=0,ISNUMBER({token('L')}),ISNUMBER({token('V')}))"
         jump = f"ABS({token('h 1')}*{one}-{token('h 2')}*{two})"
         build.computed(
@@ -207,52 +197,6 @@ class EndCalculation:
             [(f'IF({there},{one},"")', ~shared), (f'IF({there},{jump},"")', shared)],
             "where there is no transition",
         )
-
-    def _asked(self, quantity: str, speed: FloatArray, tier: bool) -> LimitAt:
-        """Ask the limit of each row: over a shared transition the stricter of the two curves'."""
-        chosen = self._chosen
-        one, two = (
-            chosen.tier_limit(quantity, speed, at) if tier else chosen.limit(quantity, speed, False, at)
-            for at in (self._rows.entry, self._other_entry)
-        )
-        first = one.value <= two.value
-        return LimitAt(
-            np.where(first, one.value, two.value),
-            np.where(first, one.tolerance, two.tolerance),
-            np.where(first, one.row, two.row),
-            one.gap,
-        )
-
-    def _asking(self, side: str, speed: str, tier: bool) -> Asking:
-        return Asking(
-            token(speed),
-            token(f"R {side}"),
-            token(f"category {side}"),
-            token(f"situation {side}"),
-            token(f"tier {side}") if tier else "1",
-        )
-
-    def _limit_texts(self, quantity: str, speed: str, tier: bool) -> list[tuple[str, BoolArray | None]]:
-        limits, shared = self._basis.limits, self._rows.shared
-        one, two = (limits.value(quantity, self._asking(side, speed, tier)) for side in "12")
-        if not limits.has(quantity):
-            return [('"none"', None)]
-        both = f'IF(COUNT({one},{two})=0,"none",MIN({one},{two}))'
-        return [(one, ~shared), (both, shared)]
-
-    def _limit(self, quantity: str, key: str, speed: str, tier: bool) -> FloatArray:
-        values = self._asked(quantity, self._planned if speed == "Vp" else self._run, tier).value
-        words = "at planned speed, in the tier of the curve" if tier else "normal, at run speed"
-        self._build.computed(
-            key,
-            f"Limit of {quantity}, {words}",
-            "lim",
-            self._build.shown(values, kind_of(quantity)),
-            kind_of(quantity),
-            self._limit_texts(quantity, speed, tier),
-            "Limits used: strictest row that holds",
-        )
-        return values
 
     def _limited(self) -> None:
         """Add what is limited, each with its limit and the share used."""
@@ -269,7 +213,7 @@ class EndCalculation:
         build.catalogued(
             "g", "cant_gradient", gradient, "gradient", ramp, k=k, dD=dD, L=basis.ref("Lr", "length")
         )
-        self._share(_GRADIENT, "g", gradient)
+        self._share(GRADIENT, "g", gradient)
         build.catalogued(
             "rD",
             "rate_of_change_of_cant",
@@ -281,7 +225,7 @@ class EndCalculation:
             V=speed,
             L=basis.ref("Lr", "length"),
         )
-        self._share(_CANT_RATE, "rD", cant_rate)
+        self._share(CANT_RATE, "rD", cant_rate)
         build.catalogued(
             "rI",
             "rate_of_change_of_deficiency",
@@ -293,183 +237,12 @@ class EndCalculation:
             V=speed,
             L=basis.ref("L", "length"),
         )
-        self._share(_DEFICIENCY_RATE, "rI", rate)
-        self._share(_ABRUPT, "jump", self._jump)
+        self._share(DEFICIENCY_RATE, "rI", rate)
+        self._share(ABRUPT, "jump", self._jump)
 
     def _share(self, quantity: str, key: str, value: FloatArray) -> None:
-        limit = self._limit(quantity, f"{key} lim", "V", False)
+        limit = self._limits.add(quantity, f"{key} lim", "V", False)
         used = share(value, limit) * 100
         text = f'IFERROR(({share_text(token(key), token(f"{key} lim"))})*100,"")'
         self._build.computed(f"u {key}", "Share of this limit", "u", used, "", text, "")
         self._ledger.columns[-1].number_format = '0.0"%"'
-
-    def _at_planned_speed(self) -> None:
-        """Add the bounds to a straight, and the lengths needed."""
-        gradient = self._limit(_GRADIENT, "g limp", "Vp", True)
-        cant_rate = self._limit(_CANT_RATE, "rD limp", "Vp", True)
-        deficiency_rate = self._limit(_DEFICIENCY_RATE, "rI limp", "Vp", True)
-        self._bounds(gradient, cant_rate, deficiency_rate)
-        self._needed()
-
-    def _bounds(self, gradient: FloatArray, cant_rate: FloatArray, deficiency_rate: FloatArray) -> None:
-        rows, basis, build = self._rows, self._basis, self._build
-        alone, planned = ~rows.shared, self._planned
-        k, speed = token("k"), basis.ref("Vp", "speed exact")
-        ramp, length = basis.ref("Lr", "length"), basis.ref("L", "length")
-        inputs = basis.inputs
-        with np.errstate(divide="ignore", invalid="ignore"):
-            by_gradient = gradient * rows.ramp_m / rows.factor
-            by_rate = KMH_PER_MS * cant_rate * rows.ramp_m / (rows.factor * planned)
-            room = KMH_PER_MS * deficiency_rate * rows.length_m / (rows.factor * planned)
-        balance = self._chosen.balance(planned, rows.entry)
-        ramped, long = rows.ramp_m > 0, rows.length_m > 0
-        text = inputs.shown(
-            CATALOGUE["most_cant_for_gradient"].text(
-                grad_lim=inputs.canonical(token("g limp"), "gradient"), L=ramp, k=k
-            ),
-            "cant exact",
-        )
-        usable = f"AND(N({token('Lr')})>0,ISNUMBER({token('g limp')}))"
-        build.computed(
-            "up g",
-            "Most cant by the gradient",
-            "D_high",
-            _where(alone & ramped & np.isfinite(gradient), by_gradient),
-            "cant exact",
-            [(f'IF({usable},{text},"")', alone)],
-            "to a straight",
-        )
-        for key, limit, span, where, values, heading in (
-            ("rD limp", cant_rate, ("Lr", ramp), ramped, by_rate, "Most cant by its rate of change"),
-            (
-                "rI limp",
-                deficiency_rate,
-                ("L", length),
-                long,
-                balance - room,
-                "Least cant by rate of deficiency",
-            ),
-        ):
-            text = inputs.shown(
-                CATALOGUE["most_change_for_rate"].text(
-                    r_lim=inputs.canonical(token(key), "rate"), L=span[1], k=k, V=speed
-                ),
-                "cant exact",
-            )
-            usable = f"AND(N({token(span[0])})>0,ISNUMBER({token(key)}),{token('Vp')}>0)"
-            if key == "rI limp":
-                text = f"{self._balance('1', 'Vp')}-{text}"
-            build.computed(
-                "up r" if key == "rD limp" else "low r",
-                heading,
-                "D_high" if key == "rD limp" else "D_low",
-                _where(alone & where & np.isfinite(limit) & (planned > 0), values),
-                "cant exact",
-                [(f'IF({usable},{text},"")', alone)],
-                "to a straight",
-            )
-
-    def _needed(self) -> None:
-        """Add the lengths that the normal limits need at planned speeds."""
-        rows, basis, build = self._rows, self._basis, self._build
-        # Where a checker may switch the tier of a curve, the cell of its limit is not the normal one.
-        normal = np.full(len(rows), not self._chosen.plan.settings.allows_exceptional)
-        inputs = basis.inputs
-        for key, heading, quantity, change, words in (
-            ("needed g", "Ramp needed by the gradient", _GRADIENT, "dD", "gradient"),
-            ("needed r", "Ramp needed by the rate of cant", _CANT_RATE, "dD", "rate"),
-            ("needed I", "Transition needed by the rate of deficiency", _DEFICIENCY_RATE, "dIp", "rate"),
-        ):
-            limit = self._asked(quantity, self._planned, False).value
-            size = self._cant_change if change == "dD" else self._planned_change
-            reference = inputs.canonical(token(change), "cant exact")
-            if words == "gradient":
-                values = np.asarray(length_for_gradient(size, limit, rows.factor))
-            else:
-                values = np.asarray(length_for_rate(size, self._planned, limit, rows.factor))
-            cell = {"needed g": "g limp", "needed r": "rD limp", "needed I": "rI limp"}[key]
-            texts: list[tuple[str, BoolArray | None]] = []
-            for limit_text, limit_kind_where in self._needed_limits(quantity, cell, normal):
-                used = inputs.canonical(limit_text, words)
-                if words == "gradient":
-                    text = CATALOGUE["length_for_gradient"].text(k=token("k"), dD=reference, grad_lim=used)
-                else:
-                    text = CATALOGUE["length_for_rate"].text(
-                        k=token("k"), dD=reference, r_lim=used, V=basis.ref("Vp", "speed exact")
-                    )
-                texts.append((f'IFERROR({inputs.shown(text, "length")},"")', limit_kind_where))
-            known = np.isfinite(limit) & np.isfinite(values)
-            build.computed(
-                key, heading, "L", _where(known, values), "length", texts, "normal limits, planned speed"
-            )
-
-    def _failing(self) -> None:
-        """Add where the curve's own rules over the end fail: the first multiple, and the planned speed."""
-        rows, chosen, basis = self._rows, self._chosen, self._basis
-        search = SpeedSearch(basis, chosen.last_tier)
-        radius = chosen.line.radius_m[self._first, 0]
-        cant = chosen.cant_mm[self._first]
-        cells = (basis.ref("D 1", "cant exact"), basis.ref("R 1", "radius"), basis.ref("L", "length"))
-        ramped, long, none = rows.ramp_m > 0, rows.length_m > 0, rows.length_m == 0
-        alone = ~rows.shared
-        asking = Asking(
-            token("Vp"), token("R 1"), token("category 1"), token("situation 1"), token("last tier 1")
-        )
-        rules = (
-            (
-                cant_rate(
-                    f"ABS({cells[0]})", basis.ref("Lr", "length"), np.abs(cant), rows.ramp_m, rows.factor
-                ),
-                ramped,
-                f"N({token('Lr')})>0",
-            ),
-            (
-                deficiency_rate(cells, basis, (cant, radius, rows.length_m, rows.factor)),
-                long,
-                f"N({token('L')})>0",
-            ),
-            (jump(cells[1], basis, radius), none, f"AND(ISNUMBER({token('L')}),{token('L')}=0)"),
-        )
-        step = chosen.step_kmh[rows.entry]
-        self.failing = np.full(len(rows), np.inf)
-        self.broken = np.zeros(len(rows), dtype=np.bool_)
-        failing_texts, broken_texts = [], []
-        for critical, there, condition in rules:
-            here = there & alone
-            self.failing = np.minimum(self.failing, search.failing(critical, rows.entry, step, here))
-            self.broken |= search.broken(critical, rows.entry, self._planned, here)
-            text = search.failing_text(critical, asking, token("step 1"))
-            failing_texts.append(f"IF({condition},{text},{NEVER:.0f})")
-            broken_texts.append(f"IF({condition},{search.broken_text(critical, asking)},0)")
-        self._build.computed(
-            "fails",
-            "First multiple of the speed step at which a rate fails",
-            "V",
-            np.where(alone, search.shown(self.failing), np.nan),
-            "speed exact",
-            [(f"MIN({','.join(failing_texts)})", alone)],
-            "last tier allowed; to a straight",
-        )
-        self._build.computed(
-            "broken",
-            "Planned speed fails here: 1 yes",
-            "",
-            np.where(alone, self.broken.astype(np.float64), np.nan),
-            "count",
-            [(f"MAX({','.join(broken_texts)})", alone)],
-            "last tier allowed; to a straight",
-        )
-
-    def _needed_limits(
-        self, quantity: str, cell: str, normal: BoolArray
-    ) -> list[tuple[str, BoolArray | None]]:
-        """Give the normal limit as a cell where it stands in one, else as its own lookup."""
-        texts: list[tuple[str, BoolArray | None]] = [(token(cell), normal)]
-        for text, where in self._limit_texts(quantity, "Vp", False):
-            here = ~normal if where is None else ~normal & where
-            texts.append((f"({text})", here))
-        return texts
-
-
-def _where(condition: BoolArray, values: FloatArray) -> FloatArray:
-    return np.where(condition, values, np.nan)

@@ -5,9 +5,10 @@ from __future__ import annotations
 from typing import Any
 
 from cant.model.display import Display
-from cant.writing.book.limits_sheet import kind_of
+from cant.writing.book.limit_lookup import kind_of
 from cant.writing.columns import Cell, Record, governing_text
-from cant.writing.sheets import Heading, NewSheets, TableSheet
+from cant.writing.looks import Heading
+from cant.writing.sheets import NewSheets, TableSheet
 
 _EXCEPTION_HEADS = (
     ("Line", 19.0),

@@ -11,7 +11,8 @@ from cant.quantities.catalogue import CATALOGUE
 from cant.units import GRAVITY_MS2
 from cant.writing.book.ledger import FIXED, FORMULA, INPUT, quoted
 from cant.writing.columns import Cell
-from cant.writing.sheets import Heading, NewSheets
+from cant.writing.looks import Heading
+from cant.writing.sheets import NewSheets
 
 _Origin: TypeAlias = tuple[str, str, str | None]
 _CONVERTED = ("cant", "speed", "radius", "length", "gradient", "rate", "mass", "height")
@@ -82,9 +83,9 @@ class Inputs:
         sheet.header([Heading(t, w) for t, w in zip(titles, (44.0, 18.0, 22.0, 9.0, 60.0), strict=True)])
         for entry in self._entries:
             row = sheet.next_row
-            style = book.styled("General" if isinstance(entry.value, float) else None, entry.kind)
+            style = book.looks.styled("General" if isinstance(entry.value, float) else None, entry.kind)
             for column, text in ((0, entry.label), (2, entry.unit), (3, entry.symbol), (4, entry.source)):
-                sheet.raw.write_string(row - 1, column, text, book.word)
+                sheet.raw.write_string(row - 1, column, text, book.looks.word)
             if entry.formula is not None:
                 sheet.raw.write_formula(row - 1, 1, "=" + entry.formula, style, entry.value)
             elif isinstance(entry.value, str):

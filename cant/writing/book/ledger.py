@@ -18,7 +18,8 @@ import numpy.typing as npt
 
 from cant.errors import column_letter
 from cant.writing.fast_rows import cell_text
-from cant.writing.sheets import LONG_TEXT, Heading, TableSheet, lines_of
+from cant.writing.looks import LONG_TEXT, Heading, lines_of
+from cant.writing.sheets import TableSheet
 
 Value: TypeAlias = float | str | None
 Values: TypeAlias = Sequence[Value] | npt.NDArray[np.float64]

@@ -11,7 +11,8 @@ from typing import Any
 from cant.model.display import Display
 from cant.writing.book.ledger import quoted
 from cant.writing.columns import Cell, Record
-from cant.writing.sheets import Heading, NewSheets
+from cant.writing.looks import Heading
+from cant.writing.sheets import NewSheets
 
 STRETCH = 60
 """Curves in one chart."""
@@ -114,7 +115,7 @@ class Pictures:
                 "further "
                 "curves are on the sheet 'Plan' alone."
             )
-        raw.merge_range(0, 0, 0, 15, text, self._book.wrapped)
+        raw.merge_range(0, 0, 0, 15, text, self._book.looks.wrapped)
         raw.set_row(0, 32)
         raw.set_portrait()
         raw.fit_to_pages(1, 0)

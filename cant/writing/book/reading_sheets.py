@@ -7,8 +7,9 @@ from collections.abc import Iterable
 import numpy as np
 
 from cant.writing.columns import Cell
+from cant.writing.looks import Heading
 from cant.writing.planned import PlannedLine
-from cant.writing.sheets import Heading, NewSheets
+from cant.writing.sheets import NewSheets
 
 _READ = (
     ("Sheet", 16.0),

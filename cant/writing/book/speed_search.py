@@ -19,7 +19,7 @@ from cant.planning.permissible import FASTEST_KMH
 from cant.units import GRAVITY_MS2, KMH_PER_MS
 from cant.writing.book.frame import Basis, FloatArray
 from cant.writing.book.ledger import BoolArray, token
-from cant.writing.book.limits_sheet import Asking
+from cant.writing.book.limit_lookup import Asking
 from cant.writing.book.selection import IntArray, Selection
 
 NEVER = 1e9

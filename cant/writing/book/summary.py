@@ -96,7 +96,7 @@ class Summary:
 
     def _head(self) -> None:
         planned, plan, sheet = self._planned, self._plan, self._sheet
-        sheet.raw.write_string(0, 0, "Plan of cant", self._book.title)
+        sheet.raw.write_string(0, 0, "Plan of cant", self._book.looks.title)
         sheet.raw.set_row(0, 22)
         sheet.skip()
         limits, settings = plan.limits, plan.settings
@@ -117,10 +117,10 @@ class Summary:
 
     def _row(self, label: str, value: str) -> None:
         row = self._sheet.next_row - 1
-        self._sheet.raw.write_string(row, 0, label, self._book.bold)
+        self._sheet.raw.write_string(row, 0, label, self._book.looks.bold)
         lines = max(1, -(-len(value) // int(_WIDE - _WIDTHS[0] - 4)))
         self._sheet.raw.set_row(row, 15.0 * lines)
-        self._sheet.raw.merge_range(row, 1, row, len(_WIDTHS) - 1, value, self._book.wrapped)
+        self._sheet.raw.merge_range(row, 1, row, len(_WIDTHS) - 1, value, self._book.looks.wrapped)
         self._sheet.skip()
 
     def _counts(self) -> None:
@@ -133,11 +133,13 @@ class Summary:
             row = self._sheet.next_row - 1
             look = {"valign": "top", **({"bg_color": f"#{fill}"} if fill else {})}
             self._sheet.raw.write_string(row, 0, status, self._book.workbook.add_format(look))
-            self._sheet.raw.write_number(row, 1, counts.get(status, 0), self._book.plain)
-            self._sheet.raw.write_string(row, 2, STATUS_WORDS[status], self._book.word)
+            self._sheet.raw.write_number(row, 1, counts.get(status, 0), self._book.looks.plain)
+            self._sheet.raw.write_string(row, 2, STATUS_WORDS[status], self._book.looks.word)
             self._sheet.skip()
         row = self._sheet.next_row - 1
-        self._sheet.raw.write_string(row, 2, "rows that cannot be read: see 'Not assessed'", self._book.word)
+        self._sheet.raw.write_string(
+            row, 2, "rows that cannot be read: see 'Not assessed'", self._book.looks.word
+        )
         self._sheet.line("rejected", float(rejected))
 
     def _matters(self) -> None:
@@ -207,7 +209,7 @@ class Summary:
             )
 
     def _signature_row(self, step: str, name: str, signature: str, day: str) -> None:
-        raw, box = self._sheet.raw, self._book.box
+        raw, box = self._sheet.raw, self._book.looks.box
         row = self._sheet.next_row - 1
         raw.set_row(row, 16 if not step else 26)
         raw.write_string(row, 0, step, box)

@@ -5,7 +5,8 @@ from __future__ import annotations
 from cant.model.plan import STATUSES
 from cant.quantities.catalogue import CATALOGUE, SYMBOLS
 from cant.writing.book.status import STATUS_WORDS
-from cant.writing.sheets import Heading, NewSheets
+from cant.writing.looks import Heading
+from cant.writing.sheets import NewSheets
 
 TERMS: tuple[tuple[str, str], ...] = (
     (
