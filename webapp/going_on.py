@@ -2,12 +2,14 @@
 
 from __future__ import annotations
 
+import re
 from collections.abc import Mapping
 from dataclasses import dataclass
 
 from flask import g, request, url_for
 
 PREFIX = "go-"
+PAGE_OF_PLAN = re.compile(r"/plans/[A-Za-z0-9_-]{32}/\S+\Z", re.ASCII)
 NOT_CARRIED = ("token", "password")
 
 
@@ -47,9 +49,9 @@ def of_request() -> GoingOn:
 
 
 def of_form(address: str) -> GoingOn:
-    """Tell how it goes on by the fields of a waiting page that was sent back; within the plan alone."""
+    """Tell how it goes on by the fields of a waiting page that was sent back; to a page of a plan alone."""
     path = request.values.get("then", "")
-    if not path.startswith(f"/plans/{address}/") or ".." in path or "\\" in path:
+    if not PAGE_OF_PLAN.match(path) or ".." in path or "\\" in path:
         return GoingOn(url_for("start.resume", address=address))
     fields = tuple(
         (name.removeprefix(PREFIX), value)

@@ -311,3 +311,24 @@ def test_a_short_list_waits_for_nothing(start: Callable[..., Flask]) -> None:
         assert browser.get(f"{path}/{page}").status_code == 200
     with parts_of(app).database.sessions() as session:
         assert session.scalars(select(WorkRow)).all() == []
+
+
+def test_a_comparison_waits_for_the_other_plan(long: Flask, tmp_path: Path, sample_file: Path) -> None:
+    browser = Browser(long)
+    older = browser.sample()
+    file = tmp_path / "revised.xlsx"
+    file.write_bytes(sample_file.read_bytes() + b"\0")
+    revised = browser.upload(file)
+    assert worked(long, lambda: browser.post(f"{revised}/confirm")).status_code == 303
+    path = f"{revised}/compare?with={older.removeprefix('/plans/')}"
+    waiting = browser.get(path)
+    assert waiting.status_code == 202
+    work = piece_shown(waiting)
+    assert work.startswith(f"/api/v1{older}/work/"), "the work is the other plan's"
+    assert browser.get(work).get_json()["state"] == "waiting"
+    stop = FormFields(waiting.text, "/stop").sent
+    stopped = browser.client.post(f"{work.removeprefix('/api/v1')}/stop", data=stop)
+    again = FormFields(stopped.text, "/again").sent
+    back = browser.client.post(f"{work.removeprefix('/api/v1')}/again", data=again)
+    assert (back.status_code, back.headers["Location"]) == (303, path)
+    assert "Two plans compared" in worked(long, lambda: browser.get(path)).text

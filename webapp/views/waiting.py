@@ -12,7 +12,7 @@ from webapp.going_on import GoingOn
 from webapp.keeping.work import CANCELLED, DONE, FAILED, Piece
 from webapp.security import owner
 from webapp.working.asking import NotYetError
-from webapp.working.orders import DOCUMENT, PLAN, READING, WORDS, WORKBOOK
+from webapp.working.orders import DOCUMENT, GIVES, PLAN, READING, WORDS, WORKBOOK
 
 pages = Blueprint("waiting", __name__, url_prefix="/plans/<address>/work/<work>")
 RETRY_S = 2
@@ -38,8 +38,8 @@ def show(address: str, work: str) -> ResponseReturnValue:
     stored(address)
     piece = running().background.queue.piece(owner(), address, work)
     if request.args.get("then"):
-        return _page(piece, going_on.of_form(address))
-    return _page(piece, GoingOn(url_for(PLACES[piece.kind], address=address)))
+        return _page(piece, going_on.of_form(address), address)
+    return _page(piece, GoingOn(url_for(PLACES[piece.kind], address=address)), address)
 
 
 @pages.post("/stop")
@@ -47,7 +47,7 @@ def stop(address: str, work: str) -> ResponseReturnValue:
     """Cancel it."""
     stored(address)
     piece = running().background.queue.cancel(owner(), address, work)
-    return _page(piece, going_on.of_form(address))
+    return _page(piece, going_on.of_form(address), address)
 
 
 @pages.post("/again")
@@ -56,7 +56,7 @@ def again(address: str, work: str) -> ResponseReturnValue:
     stored(address)
     piece = running().background.queue.again(owner(), address, work)
     going = going_on.of_form(address)
-    return _page(piece, going) if going.is_form else redirect(going.path, 303)
+    return _page(piece, going, address) if going.is_form else redirect(going.path, 303)
 
 
 def _not_yet(error: NotYetError) -> ResponseReturnValue:
@@ -64,12 +64,13 @@ def _not_yet(error: NotYetError) -> ResponseReturnValue:
     piece, address = error.piece, error.plan.address
     if wants_json():
         return _as_json(piece, address)
-    g.setdefault("plan", error.plan)
+    if "plan" not in g:
+        g.plan = error.plan
     going = going_on.of_request()
     if piece.kind in TAKEN_AWAY and piece.is_open:
         # A page that loads a file stays as it is: this one tells that the file is ready.
         return redirect(url_for("waiting.show", address=address, work=piece.address, then=going.path))
-    return _page(piece, going)
+    return _page(piece, going, address)
 
 
 def _as_json(piece: Piece, address: str) -> Response:
@@ -89,14 +90,17 @@ def _as_json(piece: Piece, address: str) -> Response:
     return made
 
 
-def _page(piece: Piece, going: GoingOn) -> Response:
+def _page(piece: Piece, going: GoingOn, address: str) -> Response:
     queue = running().background.queue
     shown = render_template(
         "waiting.html",
+        address=address,
         piece=piece,
         kind_words=WORDS[piece.kind],
+        gives=GIVES[piece.kind],
+        may_cancel=g.plan.may_edit or piece.asked_by == owner(),
         going=going,
-        refresh=_refresh(piece, going),
+        refresh=_refresh(piece, going, address),
         before=queue.before(piece),
         nobody=queue.nobody_works(piece),
         taken_away=piece.kind in TAKEN_AWAY,
@@ -109,11 +113,10 @@ def _page(piece: Piece, going: GoingOn) -> Response:
     return made
 
 
-def _refresh(piece: Piece, going: GoingOn) -> str:
+def _refresh(piece: Piece, going: GoingOn, address: str) -> str:
     """Give the address that is opened in a moment where there is no script, "" where a form goes on."""
     if going.is_form or not piece.is_open:
         return ""
     if piece.kind in TAKEN_AWAY:
-        address = g.plan.address
         return url_for("waiting.show", address=address, work=piece.address, then=going.path)
     return going.path

@@ -32,6 +32,8 @@ WORDS = {
     DOCUMENT: "writing the plan as JSON",
 }
 """What each kind of work is called."""
+GIVES = {READING: "the list", PLAN: "the plan", WORKBOOK: "the workbook", DOCUMENT: "the plan as JSON"}
+"""What each kind of work gives."""
 LIBRARIES = ("numpy", "pandas", "pydantic")
 
 
