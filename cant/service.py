@@ -10,9 +10,7 @@ import hashlib
 import json
 from collections.abc import Callable, Mapping
 from dataclasses import replace
-from typing import Any
-
-import pandas as pd
+from typing import TYPE_CHECKING, Any
 
 from cant import limit_sets
 from cant.errors import InputError, Place
@@ -36,6 +34,9 @@ from cant.reading import (
 from cant.writing.annotation import AnnotatedFile, PlanWorkbook, annotate_plan
 from cant.writing.planned import PlannedLine
 from cant.writing.template import template_workbook
+
+if TYPE_CHECKING:
+    import pandas as pd
 
 __all__ = [
     "AnnotatedFile",

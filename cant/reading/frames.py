@@ -4,10 +4,9 @@ from __future__ import annotations
 
 from collections.abc import Mapping, Sequence
 from datetime import date, datetime, time
-from typing import Any
+from typing import TYPE_CHECKING, Any
 
 import numpy as np
-import pandas as pd
 
 from cant.files.grid import Sheet, Value, Workbook
 from cant.model.limits import LimitSet
@@ -15,6 +14,9 @@ from cant.model.reading import Reading
 from cant.model.settings import METHODS
 from cant.reading.settings import settings_from_mapping
 from cant.reading.workbook import read_workbook
+
+if TYPE_CHECKING:
+    import pandas as pd
 
 
 def sheet_from_frame(frame: pd.DataFrame, name: str) -> Sheet:
@@ -27,8 +29,13 @@ def sheet_from_frame(frame: pd.DataFrame, name: str) -> Sheet:
     name : str
         Name of the sheet.
     """
+    import pandas as pd  # where frames are used: it would be a third of what the command needs to start
+
     table = frame.reset_index() if any(n is not None for n in frame.index.names) else frame
-    columns = [[_value(v) for v in table.iloc[:, i].tolist()] for i in range(table.shape[1])]
+    columns = [
+        [None if v is pd.NA or v is pd.NaT else _value(v) for v in table.iloc[:, i].tolist()]
+        for i in range(table.shape[1])
+    ]
     header: list[Value] = [_heading(c) for c in table.columns]
     return Sheet(name, [header, *(list(row) for row in zip(*columns, strict=True))])
 
@@ -38,7 +45,7 @@ def _heading(label: Any) -> str:
 
 
 def _value(value: Any) -> Value:
-    if value is None or value is pd.NA or value is pd.NaT:
+    if value is None:
         return None
     if isinstance(value, bool | np.bool_):
         return bool(value)
@@ -84,7 +91,7 @@ def read_frames(
         traffic=None if traffic is None else Workbook("", "frame", [sheet_from_frame(traffic, "Traffic")]),
         limits=limits if isinstance(limits, LimitSet) else None,
         limits_table=Workbook("", "frame", [sheet_from_frame(limits, "Limits")])
-        if isinstance(limits, pd.DataFrame)
+        if limits is not None and not isinstance(limits, LimitSet)
         else None,
         methods=methods,
     )

@@ -7,12 +7,12 @@ from __future__ import annotations
 
 from typing import TYPE_CHECKING, Any
 
-import pandas as pd
-
 from cant.limit_sets import as_table
 from cant.writing.document import traffic_entry
 
 if TYPE_CHECKING:
+    import pandas as pd
+
     from cant.writing.records import PlannedRecords
 
 _KEY = ("sheet", "row", "line", "track", "curve")
@@ -35,6 +35,8 @@ def to_frames(planned: PlannedRecords) -> dict[str, pd.DataFrame]:
         ``rejected`` rows; ``limits`` and ``traffic`` as used. Metric; the columns ``sheet, row, line, track,
         curve`` tell everywhere which curve is meant.
     """
+    import pandas as pd  # only where frames are asked for: it is slow to load and large
+
     rows: dict[str, list[dict[str, Any]]] = {
         name: [] for name in ("curves", "classes", "findings", "options", "limits_passed")
     }
