@@ -43,6 +43,8 @@ class Decision:
         When, in UTC.
     who : str
         The name that the engineer gave, or "".
+    account : str
+        The account that decided, where people sign in; else "".
     """
 
     kind: str
@@ -50,6 +52,7 @@ class Decision:
     reason: str
     made: datetime
     who: str = ""
+    account: str = ""
 
 
 @dataclass(frozen=True)

@@ -17,6 +17,7 @@ from sqlalchemy.orm import Session
 from cant.errors import InputError
 from webapp.keeping.database import Database
 from webapp.keeping.records import AccountRow, SignInRow
+from webapp.keeping.store import ACCOUNT
 
 ROLES = ("prepare", "check", "approve")
 FREE_TRIES = 5
@@ -74,7 +75,7 @@ class Account:
 
 def who_of(account_id: int) -> str:
     """Give an account as owner of plans and holder of grants."""
-    return f"account:{account_id}"
+    return f"{ACCOUNT}{account_id}"
 
 
 class Accounts:

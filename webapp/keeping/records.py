@@ -86,6 +86,7 @@ class DecisionRow(Base):
     reason: Mapped[str] = mapped_column(Text, default="")
     made: Mapped[datetime] = mapped_column(UtcTime)
     who: Mapped[str] = mapped_column(String(80), default="", server_default="")
+    account: Mapped[str] = mapped_column(String(64), default="", server_default="")
 
 
 class KeptLimitsRow(Base):

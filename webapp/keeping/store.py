@@ -36,6 +36,8 @@ from webapp.meanwhile import MeanwhileError, unseen
 
 ADDRESS_BYTES = 24
 LONGEST_NAME = 80
+ACCOUNT = "account:"
+"""With what the account of who has signed in begins, as owner of plans."""
 
 
 class Access(IntEnum):
@@ -145,7 +147,9 @@ class Store:
             changed=now,
             expires=now + self._keep,
             decisions=[
-                DecisionRow(number=i, kind=kind, content=content, reason="", made=now)
+                DecisionRow(
+                    number=i, kind=kind, content=content, reason="", made=now, account=_account(owner)
+                )
                 for i, (kind, content) in enumerate((decisions or {}).items())
             ],
         )
@@ -212,7 +216,15 @@ class Store:
                     continue
                 number += 1
                 plan.decisions.append(
-                    DecisionRow(number=number, kind=kind, content=content, reason=reason, made=now, who=who)
+                    DecisionRow(
+                        number=number,
+                        kind=kind,
+                        content=content,
+                        reason=reason,
+                        made=now,
+                        who=who,
+                        account=_account(owner),
+                    )
                 )
             plan.changed, plan.expires = now, now + self._keep
             session.flush()
@@ -365,9 +377,14 @@ def _access(session: Session, plan: PlanRow, who: str, now: datetime) -> Access 
     return Access.EDIT if any(granted) else Access.READ
 
 
+def _account(owner: str) -> str:
+    """Give the account among owners; "" for a browser, whose number is nobody's business."""
+    return owner if owner.startswith(ACCOUNT) else ""
+
+
 def as_stored(plan: PlanRow, access: Access = Access.OWN) -> StoredPlan:
     """Give a plan from its row and what who asked may do with it."""
-    history = tuple(Decision(d.kind, d.content, d.reason, d.made, d.who) for d in plan.decisions)
+    history = tuple(Decision(d.kind, d.content, d.reason, d.made, d.who, d.account) for d in plan.decisions)
     return StoredPlan(
         address=plan.address,
         name=plan.name,

@@ -173,8 +173,8 @@ def why_not_sign(signable: Signable, who: Account) -> str:
         )
     if any(one.account_id == who.id for one in standing.holding.values()):
         return f"who has signed a plan already does not sign it as {step} as well"
-    if who.who in signable.editors:
-        return f"who may change a plan does not sign it as {step}"
+    if who.who in signable.editors | {decision.account for decision in signable.plan.history}:
+        return f"who may change a plan, or has decided on it, does not sign it as {step}"
     return "" if standing.in_hand_of == who.id else "the plan is in somebody else's hand"
 
 
@@ -198,10 +198,11 @@ def colleagues(signable: Signable, who: Account, accounts: list[Account], after:
     """Give to whom a plan may be handed after a step: who has the role, and is none of those before."""
     role = ROLE_AFTER.get(after)
     signed = {one.account_id for one in standing_of(signable).holding.values()} | {who.id}
+    hands = signable.editors | {decision.account for decision in signable.plan.history}
     return [
         one
         for one in accounts
-        if role in one.roles and not one.disabled and one.id not in signed and one.who not in signable.editors
+        if role in one.roles and not one.disabled and one.id not in signed and one.who not in hands
     ]
 
 

@@ -34,6 +34,7 @@ def upgrade() -> None:
     _work()
     _sharing()
     _people()
+    op.add_column("decisions", _text("account", 64))
 
 
 def _work() -> None:
@@ -143,5 +144,7 @@ def _people() -> None:
 
 def downgrade() -> None:
     """Drop the tables."""
+    with op.batch_alter_table("decisions") as decisions:
+        decisions.drop_column("account")
     for table in ("signatures", "sign_ins", "accounts", "grants", "shares", "results", "work"):
         op.drop_table(table)
