@@ -25,6 +25,7 @@ from webapp.people.settings import SignIn
 from webapp.working.settings import Work
 
 KEY_FILE = "signing-key"
+SHORTEST_KEY = 32
 DATABASE_FILE = "plans.sqlite3"
 
 
@@ -132,7 +133,7 @@ class Config:
         return cls(
             data_directory=Path(data) if data else user_data_path("cant"),
             database_url=given.get("CANT_DATABASE", ""),
-            signing_key=given.get("CANT_SIGNING_KEY", ""),
+            signing_key=_secret(given, "CANT_SIGNING_KEY"),
             keep_days=_whole(given, "CANT_KEEP_DAYS", 30),
             upload_mb=_whole(given, "CANT_UPLOAD_MB", 64),
             plans_in_memory=_whole(given, "CANT_PLANS_IN_MEMORY", 8),
@@ -144,6 +145,14 @@ class Config:
             sign_in=SignIn.from_environment(given),
             work=Work.from_environment(given),
         )
+
+
+def _secret(given: Mapping[str, str], name: str) -> str:
+    found = given.get(name, "")
+    if found and len(found) < SHORTEST_KEY:
+        message = f"{name} is too short to be safe: {SHORTEST_KEY} random characters at least are needed"
+        raise InputError(message)
+    return found
 
 
 def _listed(given: Mapping[str, str], name: str) -> tuple[str, ...]:

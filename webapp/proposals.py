@@ -15,7 +15,7 @@ from itsdangerous import BadSignature, URLSafeSerializer
 from cant.errors import InputError
 from webapp.decisions import Decided, Decision
 from webapp.keeping.store import StoredPlan
-from webapp.security import owner
+from webapp.security import SIGNING, owner
 
 
 @dataclass(frozen=True)
@@ -67,4 +67,5 @@ def at_moment(plan: StoredPlan, history: Iterable[Decision]) -> StoredPlan:
 
 
 def _signer(plan: StoredPlan) -> URLSafeSerializer:
-    return URLSafeSerializer(str(current_app.secret_key), salt=f"proposal/{owner()}/{plan.address}")
+    salt = f"proposal/{owner()}/{plan.address}"
+    return URLSafeSerializer(str(current_app.secret_key), salt=salt, signer_kwargs=SIGNING)

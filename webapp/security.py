@@ -7,10 +7,13 @@ same site. Every answer carries a strict content-security policy: nothing inline
 
 from __future__ import annotations
 
+import hashlib
 import secrets
+from typing import Any
 from urllib.parse import urlsplit
 
 from flask import Flask, Response, current_app, g, request, session
+from flask.sessions import SecureCookieSessionInterface
 from itsdangerous import BadSignature, URLSafeSerializer, URLSafeTimedSerializer
 
 OWNER = "owner"
@@ -41,8 +44,16 @@ HEADERS = {
     "Permissions-Policy": "camera=(), geolocation=(), microphone=()",
 }
 
+SIGNING: dict[str, Any] = {"key_derivation": "hmac", "digest_method": hashlib.sha256}
+"""How all is signed that leaves the service and comes back: HMAC with SHA-256, a key for each purpose."""
 BY_HTTPS_ALONE = "max-age=63072000; includeSubDomains"
 """Strict-Transport-Security: two years, with all names below the host's."""
+
+
+class SignedCookies(SecureCookieSessionInterface):
+    """Cookies, signed as all else."""
+
+    digest_method = staticmethod(hashlib.sha256)
 
 
 class RefusedError(Exception):
@@ -78,12 +89,16 @@ def is_known() -> bool:
 def new_key() -> str | None:
     """Give the key of an owner who came without cookie or key, so that a program can come back; else None."""
     asked = owner()
-    return URLSafeSerializer(_secret(), salt="key").dumps(asked) if g.owner_is_new else None
+    return (
+        URLSafeSerializer(_secret(), salt="key", signer_kwargs=SIGNING).dumps(asked)
+        if g.owner_is_new
+        else None
+    )
 
 
 def _from_key(key: str) -> str:
     try:
-        found = URLSafeSerializer(_secret(), salt="key").loads(key)
+        found = URLSafeSerializer(_secret(), salt="key", signer_kwargs=SIGNING).loads(key)
     except BadSignature as error:
         message = "the key sent with this request is not valid"
         raise RefusedError(message) from error
@@ -99,7 +114,7 @@ def form_token() -> str:
         made_for = _form_owner()
     except RefusedError:
         return ""
-    return URLSafeTimedSerializer(_secret(), salt="form").dumps(made_for)
+    return URLSafeTimedSerializer(_secret(), salt="form", signer_kwargs=SIGNING).dumps(made_for)
 
 
 def _form_owner() -> str:
@@ -109,7 +124,7 @@ def _form_owner() -> str:
 def check_form() -> None:
     """Refuse a form that does not carry its owner's token; RefusedError."""
     try:
-        made_for = URLSafeTimedSerializer(_secret(), salt="form").loads(
+        made_for = URLSafeTimedSerializer(_secret(), salt="form", signer_kwargs=SIGNING).loads(
             request.form.get("token", ""), max_age=FORM_HOURS * 3600
         )
     except BadSignature as error:
@@ -141,6 +156,7 @@ def protect(app: Flask, *, https: bool = False) -> None:
     https : bool
         The service is reached by https alone.
     """
+    app.session_interface = SignedCookies()
 
     @app.after_request
     def headers(response: Response) -> Response:

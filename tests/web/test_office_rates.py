@@ -251,6 +251,12 @@ def test_bounds_come_from_the_environment(tmp_path: Path) -> None:
             Config.from_environment({"CANT_UPLOADS_PER_MINUTE": value})
 
 
+def test_a_signing_key_must_be_long() -> None:
+    with pytest.raises(InputError, match="CANT_SIGNING_KEY"):
+        Config.from_environment({"CANT_SIGNING_KEY": "secret"})
+    assert Config.from_environment({"CANT_SIGNING_KEY": "x" * 32}).key() == "x" * 32
+
+
 LINE = re.compile(
     r"\d{4}-\d\d-\d\dT\d\d:\d\d:\d\d\.\d{3}Z (\S+) (GET|POST|OTHER) (\S+) (\d{3}|-) (\d+) "
     r"\d+ms (-|[0-9a-f]{12})"
