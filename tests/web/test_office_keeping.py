@@ -396,6 +396,14 @@ def test_an_older_database_is_brought_up_to_date_and_keeps_all(
     assert store.rename("anna", "old-address", "New").name == "New"
 
 
+def test_a_newer_database_is_told_in_one_line(start: Start, database_url: str) -> None:
+    database = start(database_url).extensions[EXTENSION].database
+    with database.sessions.begin() as session:
+        session.execute(text("UPDATE alembic_version SET version_num = '9999'"))
+    with pytest.raises(FileError, match="newer version"):
+        Database(database.engine.url.render_as_string(hide_password=False))
+
+
 @pytest.mark.postgresql
 def test_a_server_that_goes_away_is_busy_and_then_there_again(
     start: Start, postgresql: str, tmp_path: Path

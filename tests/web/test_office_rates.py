@@ -25,9 +25,11 @@ from webapp.context import EXTENSION
 from webapp.guarding import turns as turns_module
 from webapp.guarding.access_log import LOG, log_to
 from webapp.guarding.bounds import Bounds
+from webapp.guarding.rates import OPEN_LINK, SIGN_IN
 from webapp.guarding.turns import Turns
 from webapp.keeping.records import PlanRow, WorkRow
 from webapp.keeping.work import WAITING
+from webapp.people.settings import SignIn
 
 Start = Callable[..., Flask]
 ROW = b"Curve,Radius (m),Speed (km/h)\nA,500,80\n"
@@ -100,6 +102,32 @@ def test_keys_cannot_be_guessed_for_long(start: Start) -> None:
         for n in range(6)
     ]
     assert codes == [403] * 4 + [429] * 2
+
+
+def test_share_links_cannot_be_guessed_for_long(start: Start) -> None:
+    app = start(bounds=Bounds(wrong_links_per_minute=4))
+    client = app.test_client()
+    codes = [client.get(f"/shared/{n:032d}").status_code for n in range(6)]
+    assert codes == [404] * 4 + [429] * 2
+    assert client.get("/").status_code == 200
+    assert set(app.view_functions) >= OPEN_LINK
+
+
+def test_passwords_cannot_be_guessed_for_long(start: Start) -> None:
+    app = start(sign_in=SignIn(accounts=True), bounds=Bounds(sign_ins_per_minute=2))
+    browser = Browser(app)
+    browser.get("/sign-in")
+
+    def tried(name: str, address: str = "192.0.2.1") -> int:
+        wrong = {"name": name, "password": "not the password"}
+        return browser.post("/sign-in", wrong, environ_base={"REMOTE_ADDR": address}).status_code
+
+    assert [tried("anna") for _ in range(4)] == [401, 401, 429, 429]
+    assert tried(" ANNA ") == 429  # the same account
+    assert tried("anna", "192.0.2.2") == 401
+    codes = [tried(f"guess{n}") for n in range(12)]
+    assert codes[-1] == 429  # as any account
+    assert SIGN_IN in app.view_functions
 
 
 def test_a_busy_office_behind_one_address_is_not_cut(start: Start) -> None:

@@ -295,7 +295,7 @@ def test_every_secret_that_opens_nothing_is_answered_alike(app: Flask, owner: Br
             answer = stranger.client.open(link, method=method, data=data)
             page = re.sub(r'value="[^"]*"', "", answer.text)
             seen.add((answer.status_code, page, tuple(asked), tuple(sorted(answer.headers.keys()))))
-            assert answer.headers["Referrer-Policy"] == "no-referrer"
+            assert answer.headers["Referrer-Policy"] == "strict-origin"
             assert answer.headers["Cache-Control"] == "private, no-store"
             assert plan not in answer.text
     assert len({one[:3] for one in seen}) == 1, "the answer, and what the database is asked, are the same"

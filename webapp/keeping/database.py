@@ -16,6 +16,7 @@ from typing import Any
 
 from alembic import command
 from alembic.config import Config as AlembicConfig
+from alembic.util import CommandError
 from filelock import FileLock
 from sqlalchemy import Connection, Engine, create_engine, event, text
 from sqlalchemy.exc import DBAPIError, OperationalError, SQLAlchemyError
@@ -81,6 +82,9 @@ class Database:
         self.sessions: sessionmaker[Session] = Sessions(self.engine, expire_on_commit=False)
         try:
             self._migrate()
+        except CommandError as error:
+            message = "the database is of a newer version of this program: start that, or restore a backup"
+            raise FileError(message) from error
         except (SQLAlchemyError, OSError) as error:
             shown = self.engine.url.render_as_string(hide_password=True)
             message = f"the database {shown} cannot be used: {str(error).splitlines()[0]}"
