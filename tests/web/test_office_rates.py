@@ -204,7 +204,7 @@ def test_busy_is_a_clean_answer_and_light_pages_still_come(start: Start) -> None
         assert page.status_code == 503
         assert "busy" in page.text
         assert int(page.headers["Retry-After"]) > 0
-        assert browser.get("/api/v1/plans").json["error"]["status"] == 503
+        assert browser.get("/api/v1/limits").json["error"]["status"] == 503
         for path in ("/", "/healthz", "/readyz", "/static/style.css"):
             assert browser.get(path).status_code == 200, path
     finally:

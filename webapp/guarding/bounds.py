@@ -66,7 +66,7 @@ class Bounds:
     mb_in_all: int = 0
     mb_kept_free: int = 200
     computing_at_once: int = 0
-    wait_seconds: int = 10
+    wait_seconds: int = 20
     header_kb: int = 32
     seconds_to_send: int = 60
     connections: int = 1_000
