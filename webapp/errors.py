@@ -27,6 +27,7 @@ API_PREFIX = "/api/"
 LOG = logging.getLogger("webapp")
 TITLES = {
     400: "This cannot be used as it is",
+    401: "Sign in first",
     403: "Refused",
     404: "Nothing here",
     405: "Not possible here",

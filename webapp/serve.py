@@ -126,6 +126,18 @@ def _prepare_process(config: Config) -> None:
         ctypes.CDLL(None).mallopt(M_ARENA_MAX, ARENAS)
 
 
+def _who_may(config: Config) -> str:
+    """Say who may use the service, and what is amiss with that."""
+    if config.sign_in.header:
+        return f"People sign in at the proxy, which names them in the header {config.sign_in.header}."
+    if not config.sign_in.accounts:
+        return "Who reaches it can use it; each browser sees its own plans only."
+    warning = (
+        "" if config.https else " WARNING: passwords are safe by https alone; set CANT_HTTPS=yes behind it."
+    )
+    return f"People sign in with accounts; 'cant accounts add NAME' makes one.{warning}"
+
+
 def _announce(host: str, port: int, config: Config, *, local: bool) -> None:
     address = f"[{host}]" if ":" in host else host
     lines = [
@@ -133,7 +145,7 @@ def _announce(host: str, port: int, config: Config, *, local: bool) -> None:
         f"Plans are kept in {config.database_words} for {config.keep_days} days after their last change.",
         "Only this machine can reach it."
         if local
-        else "WARNING: other machines can reach it, unencrypted unless a proxy stands in front; who reaches "
-        "it can use it. Each browser sees its own plans only.",
+        else "WARNING: other machines can reach it, unencrypted unless a proxy stands in front.",
+        _who_may(config),
     ]
     print("\n".join(lines), file=sys.stderr, flush=True)

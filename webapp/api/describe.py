@@ -27,7 +27,7 @@ VARIABLES: dict[str, dict[str, Any]] = {
 }
 ERRORS = {
     "400": "The request is not well formed.",
-    "401": "No key and no cookie was sent.",
+    "401": "No key and no cookie was sent, or, where people sign in, none that is valid.",
     "403": "The key is not valid, or the request comes from another site.",
     "404": "There is no such plan for the caller.",
     "409": "The work for it was cancelled or failed, or somebody has decided the same since what is known.",
@@ -143,7 +143,7 @@ def _not_yet(what: Operation) -> dict[str, Any]:
 
 def _errors(what: Operation) -> dict[str, Any]:
     content = {"application/json": {"schema": _reference(ErrorAnswer)}}
-    codes = ["400", "404", "422", "429", "503"] + ([] if what.open else ["401"])
+    codes = ["400", "401", "404", "422", "429", "503"]
     codes += ["507"] if what.upload else []
     codes += ["409"] if what.query is KnownQuery else []
     codes += ["403", "413", "415"] if what.changes else (["403"] if not what.open else [])
