@@ -155,11 +155,11 @@ def until(condition: Callable[[], bool], what: str, seconds: float = 120) -> Non
 class Bench:
     """A long list whose workbook is asked for, and the process that makes it."""
 
-    def __init__(self, app: Flask, folder: Path, environment: dict[str, str]) -> None:
+    def __init__(self, app: Flask, folder: Path, environment: dict[str, str], curves: int = 2_000) -> None:
         self.app, self.browser = app, Browser(app)
         self.environment = {**environment, "CANT_LONG_FILE_KB": "0", "CANT_LONG_CURVES": "1"}
         file = folder / "long.csv"
-        file.write_bytes(curve_list(2_000, random.Random(1)))
+        file.write_bytes(curve_list(curves, random.Random(1)))
         self.path = self.browser.upload(file)
         traffic = {"0-name": "Fast", "0-category": "passenger", "0-speed_kmh": "120", "0-regular": "yes"}
         self._post("trains", {"rows": "1", "units": "metric", **traffic})
@@ -267,7 +267,14 @@ def test_no_worker_outlives_the_service(bench: Bench, begin: Callable[..., subpr
     assert work_off(bench.app) == 1
 
 
-def test_a_worker_that_dies_is_replaced(bench: Bench, begin: Callable[..., subprocess.Popen[bytes]]) -> None:
+def test_a_worker_that_dies_is_replaced(
+    start: Callable[..., Flask],
+    environment: dict[str, str],
+    database_url: str,
+    tmp_path: Path,
+    begin: Callable[..., subprocess.Popen[bytes]],
+) -> None:
+    bench = Bench(start(database_url, work=EVERYTHING), tmp_path, environment, curves=20)
     service = begin("cant", bench.environment, "serve", "--port", "0")
     until(lambda: bool(children_of(service.pid)), "a worker")
     (worker,) = children_of(service.pid)
@@ -276,7 +283,7 @@ def test_a_worker_that_dies_is_replaced(bench: Bench, begin: Callable[..., subpr
     bench.ask()
     until(lambda: bench.row().state == DONE, "it works")
     service.send_signal(signal.SIGTERM)
-    assert service.wait(timeout=30) == 0
+    assert service.wait(timeout=60) == 0
 
 
 def test_work_is_bounded_in_memory_and_time(
