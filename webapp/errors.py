@@ -18,6 +18,7 @@ from cant.errors import CantError
 from webapp.busy import BusyError, FullError, TooManyError
 from webapp.context import running
 from webapp.guarding.access_log import route
+from webapp.guarding.texts import is_own_path
 from webapp.keeping.database import is_full, is_passing
 from webapp.keeping.store import NotAllowedError, NotThereError
 from webapp.meanwhile import MeanwhileError
@@ -39,6 +40,8 @@ TITLES = {
     503: "Busy just now",
     507: "Full",
 }
+AGAIN = (429, 503)
+"""What passes by itself: the page offers to be asked for again."""
 DATABASE_RETRY_S = 10
 
 
@@ -73,7 +76,12 @@ def answer(code: int, message: str) -> Response:
         made = jsonify({"error": {"status": code, "message": message}})
     else:
         title = TITLES.get(code, "This did not work")
-        made = Response(render_template("error.html", title=title, message=message, code=code))
+        here = request.full_path.rstrip("?")
+        again = code in AGAIN and request.method == "GET" and is_own_path(here)
+        shown = render_template(
+            "error.html", title=title, message=message, code=code, again=here if again else ""
+        )
+        made = Response(shown)
     made.status_code = code
     return made
 

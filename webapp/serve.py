@@ -9,6 +9,7 @@ import logging
 import os
 import signal
 import sys
+import time
 from collections.abc import Iterator
 from dataclasses import replace
 from typing import Any
@@ -102,7 +103,13 @@ def _stopped_by_signals(server: Server, parts: Running) -> Iterator[None]:
 
 
 def _prepare_logs() -> None:
-    logging.basicConfig(level=logging.INFO, format="%(asctime)s %(levelname)s %(message)s")
+    logging.basicConfig(
+        level=logging.INFO, format="%(asctime)s.%(msecs)03dZ %(levelname)s %(name)s %(message)s"
+    )
+    for handler in logging.getLogger().handlers:
+        if handler.formatter is not None:
+            handler.formatter.converter = time.gmtime
+            handler.formatter.datefmt = "%Y-%m-%dT%H:%M:%S"
     for name, level in (
         ("alembic", logging.WARNING),
         ("waitress", logging.WARNING),

@@ -52,6 +52,8 @@ def test_a_person_may_not_ask_without_end_and_is_told_when_again(start: Start) -
     assert "Too much at once" in page.text
     assert 1 <= int(page.headers["Retry-After"]) <= 60
     assert page.headers["Retry-After"] in page.text
+    assert '<a href="/">This page once more</a>' in page.text
+    assert "once more</a>" not in browser.get("//elsewhere.example/").text
     data = browser.get("/api/v1/plans")
     assert data.status_code == 429
     assert data.json["error"]["status"] == 429
