@@ -3,10 +3,12 @@
 from __future__ import annotations
 
 import base64
+import contextlib
 import io
 import logging
 import re
 from collections.abc import Callable
+from concurrent.futures import ThreadPoolExecutor
 from datetime import UTC, datetime, timedelta
 from typing import Any
 
@@ -31,7 +33,7 @@ from web_tools import TOKEN, Browser
 from webapp.guarding import access_log
 from webapp.keeping import shares as sharing
 from webapp.keeping.records import GrantRow, PlanRow, ShareRow
-from webapp.keeping.store import StoredPlan
+from webapp.keeping.store import NotThereError, StoredPlan
 from webapp.people.settings import SignIn
 
 OWNERS = {
@@ -415,6 +417,38 @@ def test_links_and_their_holders_are_bounded(
     late.get(link)
     assert late.post(link).status_code == 422
     assert late.get(f"{plan}/cants").status_code == 404
+
+
+def test_opened_at_the_same_moment_a_link_counts_once(app: Flask, owner: Browser, plan: str) -> None:
+    secret = share(owner, plan).removeprefix("/shared/")
+    shares = sharing.Shares(running_of(app).database)
+    with ThreadPoolExecutor(4) as pool:
+        list(pool.map(lambda who: shares.accept(who, secret), ["bert", "bert", "bert", "carl"]))
+    with running_of(app).database.sessions() as session:
+        assert sorted(session.scalars(select(GrantRow.holder))) == ["bert", "carl"]
+    assert "opened by 2" in owner.get(f"{plan}/shares").text
+
+
+def test_opened_while_it_is_withdrawn_a_link_leaves_nothing(app: Flask, owner: Browser, plan: str) -> None:
+    secret = share(owner, plan).removeprefix("/shared/")
+    shares = sharing.Shares(running_of(app).database)
+    (number,) = numbers(owner, plan)
+    stored = as_stored(app, plan)
+    with running_of(app).database.sessions() as session:
+        who = session.scalars(select(PlanRow.owner)).one()
+
+    def act(name: str) -> None:
+        if name == "owner":
+            shares.withdraw(who, stored.address, number)
+            return
+        with contextlib.suppress(NotThereError):
+            shares.accept(name, secret)
+
+    with ThreadPoolExecutor(4) as pool:
+        list(pool.map(act, ["bert", "owner", "carl", "dora"]))
+    with running_of(app).database.sessions() as session:
+        assert session.scalars(select(GrantRow)).all() == []
+        assert session.scalars(select(ShareRow)).all() == []
 
 
 def test_opening_shows_no_more_than_the_name_and_needs_the_form(
