@@ -13,8 +13,8 @@ from sqlalchemy import select, update
 
 from cant import limit_sets
 from cant.errors import FileError, InputError
-from webapp.keeping.database import Database
 from webapp.decisions import as_text, limits_text
+from webapp.keeping.database import Database
 from webapp.keeping.records import Base, DecisionRow, FileRow, KeptLimitsRow, PlanRow
 from webapp.keeping.store import NotThereError, Store
 
