@@ -5,6 +5,7 @@ from __future__ import annotations
 import io
 import json
 import re
+import threading
 from datetime import UTC, datetime
 from typing import Any
 
@@ -17,6 +18,8 @@ from test_web_guards import PAGES, POSTS
 from web_tools import TRAINS, Browser
 
 from webapp.keeping.records import AccountRow, GrantRow, PlanRow, SignatureRow
+from webapp.keeping.signatures import SignOff
+from webapp.keeping.store import NotAllowedError
 from webapp.people import signing
 
 Crew = dict[str, Browser]
@@ -470,3 +473,25 @@ def test_workbook_made_in_the_background_is_kept_under_its_signatures() -> None:
     back = Order.of(WORKBOOK, under.content)
     assert Signatures.from_text(back.told("signatures")) == signed
     assert json.loads(under.content)["more"] == {"signatures": signed.as_text()}
+
+
+def test_who_signs_twice_at_the_same_moment_signs_once(office: Flask, crew: Crew, plan: str) -> None:
+    people, address = people_of(office), plan.rpartition("/")[2]
+    anna, done = people.accounts.named("anna"), []
+    sign_off = SignOff(database_of(office), 30)
+    seen = signing.standing_of(sign_off.of(anna.who, address)).digest
+
+    def put() -> None:
+        try:
+            sign_off.add(anna.who, address, lambda signable: signing.signed(signable, anna, seen, None, ""))
+            done.append(True)
+        except NotAllowedError:
+            done.append(False)
+
+    threads = [threading.Thread(target=put) for _ in range(6)]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert sorted(done) == [False] * 5 + [True]
+    assert fates(crew["anna"], plan) == ["holds"]

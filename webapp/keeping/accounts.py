@@ -26,6 +26,8 @@ FIRST_WAIT = 5
 LONGEST_WAIT = 60
 """Seconds; so short that nobody can keep somebody else out for long, and yet 60 tries an hour at most."""
 FORGIVEN = timedelta(days=1)
+SEEN_EVERY = timedelta(hours=1)
+"""Of who is signed in at the proxy it is noted no more often that he was here."""
 
 
 @dataclass(frozen=True)
@@ -147,6 +149,7 @@ class Accounts:
         """Give the account of a name that the proxy vouches for; it is made where there is none."""
         found = self.named(name)
         if found is not None:
+            self._note_seen(found)
             return found
         try:
             return self.add(name, "", ("prepare",))
@@ -155,6 +158,13 @@ class Accounts:
             if found is None:
                 raise
             return found
+
+    def _note_seen(self, account: Account) -> None:
+        """Note that an account was used, no more often than need be."""
+        now = datetime.now(UTC)
+        if account.seen is None or account.seen <= now - SEEN_EVERY:
+            with self._database.sessions.begin() as session:
+                session.execute(update(AccountRow).where(AccountRow.id == account.id).values(seen=now))
 
     def change(
         self, account_id: int, *, roles: Iterable[str] | None = None, disabled: bool | None = None

@@ -85,7 +85,7 @@ class SignIns:
     def find(self, secret: str, *, is_key: bool = False) -> SignedIn | None:
         """Give the sign-in of a secret that holds now; its account is not disabled."""
         now = datetime.now(UTC)
-        with self._database.sessions.begin() as session:
+        with self._database.sessions() as session:
             found = session.execute(
                 select(SignInRow, AccountRow)
                 .join(AccountRow, AccountRow.id == SignInRow.account_id)
@@ -96,15 +96,16 @@ class SignIns:
                     AccountRow.disabled.is_(False),
                 )
             ).first()
-            if found is None:
-                return None
-            row, account = found
-            if not is_key and row.seen <= now - self._idle:
-                session.delete(row)
-                return None
-            if row.seen <= now - SEEN_EVERY:
+        if found is None:
+            return None
+        row, account = found
+        if not is_key and row.seen <= now - self._idle:
+            self.end_secret(secret)
+            return None
+        if row.seen <= now - SEEN_EVERY:  # no request but one in a minute waits for the right to write
+            with self._database.sessions.begin() as session:
                 session.execute(update(SignInRow).where(SignInRow.id == row.id).values(seen=now))
-            return _signed_in(row, account_of(account))
+        return _signed_in(row, account_of(account))
 
     def of(self, account: Account, *, keys: bool) -> list[SignedIn]:
         """Give the sign-ins of an account that hold, or its keys, the last used first."""

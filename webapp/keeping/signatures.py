@@ -15,7 +15,7 @@ from sqlalchemy import delete, or_, select, update
 from sqlalchemy.orm import Session
 
 from webapp.keeping.accounts import who_of
-from webapp.keeping.database import Database
+from webapp.keeping.database import Database, one_at_a_time
 from webapp.keeping.records import GrantRow, PlanRow, SignatureRow
 from webapp.keeping.store import Access, NotThereError, StoredPlan, as_stored, find
 
@@ -104,6 +104,7 @@ class SignOff:
         """
         now = datetime.now(UTC)
         with self._database.sessions.begin() as session:
+            one_at_a_time(session, f"sign-off {address}")
             row, access = find(session, who, address, for_change=True)
             entry = judge(_signable(session, row, access))
             if entry.step == SENT_BACK:

@@ -123,8 +123,8 @@ def _is_open() -> bool:
 
 def _signed_in() -> Person | None:
     key = request.authorization
-    if key is not None:
-        found = people().sign_ins.find(key.token or "", is_key=True) if key.type == "bearer" else None
+    if key is not None and key.type == "bearer":
+        found = people().sign_ins.find(key.token or "", is_key=True)
         if found is None or request.blueprint != "api":
             tell("key refused")
             message = "the key sent with this request is not valid"

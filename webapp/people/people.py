@@ -68,7 +68,8 @@ class People:
         account = self.accounts.count_try(folded(name))
         right = passwords.matches(account.password_hash if account else "", password)
         if account is None or not right or not self._is_right_code(account, code, needed=with_code):
-            tell("sign-in failed", account=account.name if account else None)
+            known = self.accounts.named(folded(name))
+            tell("sign-in failed", account=known.name if known else None)
             raise WrongError(FAILED)
         if account.password_expires is not None and account.password_expires <= datetime.now(UTC):
             tell("sign-in failed", account=account.name, why="the single-use password has expired")
