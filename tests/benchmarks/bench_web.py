@@ -46,7 +46,7 @@ PAGES = (
     "curves/777/at?cant=60",
     "curves/777/held?cant=60",
     "history",
-    "compare?from=0&to=3",
+    "compare?from=2&to=3",
 )
 LIVE_ASKED = 200
 
