@@ -84,6 +84,11 @@ class Running:
         connection.close()
         return found
 
+    def children(self) -> list[int]:
+        """Give the processes that it has started."""
+        number = self.process.pid
+        return [int(n) for n in Path(f"/proc/{number}/task/{number}/children").read_text().split()]
+
     def end(self) -> None:
         """End it whatever it does."""
         self.process.kill()
@@ -114,6 +119,8 @@ def test_told_to_stop_it_finishes_what_is_under_way(serve: Serve, number: int) -
     kept.request("GET", "/readyz")
     assert kept.getresponse().read() == b"ready\n"
     thread, found = service.ask_slowly()
+    workers = service.children()
+    assert workers
     service.process.send_signal(number)
     time.sleep(0.3)
     kept.request("GET", "/readyz")
@@ -124,7 +131,8 @@ def test_told_to_stop_it_finishes_what_is_under_way(serve: Serve, number: int) -
         socket.create_connection(("127.0.0.1", service.port), timeout=5)
     thread.join(timeout=30)
     assert found == [b"done"]
-    assert service.process.wait(timeout=10) == 0
+    assert service.process.wait(timeout=20) == 0
+    assert are_gone(workers)
 
 
 def test_what_takes_too_long_is_not_waited_for(serve: Serve) -> None:
@@ -147,8 +155,10 @@ def test_told_twice_it_stops_at_once(serve: Serve) -> None:
     service.process.send_signal(signal.SIGTERM)
     time.sleep(0.3)
     assert service.process.poll() is None
+    workers = service.children()
     service.process.send_signal(signal.SIGTERM)
     assert service.process.wait(timeout=5) == 1
+    assert are_gone(workers)
     connection.close()
 
 
@@ -209,6 +219,15 @@ def test_slow_readers_stop_nobody(serve: Serve) -> None:
         while (code := service.get("/help/terms")[0]) == 503 and time.monotonic() < until:
             time.sleep(0.5)  # the eighty are still being computed
         assert code == 200
+
+
+def are_gone(processes: list[int]) -> bool:
+    until = time.monotonic() + 15
+    while time.monotonic() < until:
+        if not any(Path(f"/proc/{number}").exists() for number in processes):
+            return True
+        time.sleep(0.1)
+    return False
 
 
 def raw(port: int, request: bytes) -> bytes:
