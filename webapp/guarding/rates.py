@@ -20,7 +20,8 @@ from webapp.busy import TooManyError
 from webapp.guarding.bounds import Bounds
 from webapp.security import RefusedError, is_known, owner
 
-NOT_COUNTED = frozenset({"health.alive", "health.ready"})
+NOT_COUNTED = frozenset({"health.alive", "health.ready", "static"})
+"""Endpoints that are not counted: for watchers, and what makes a refusal look like a page."""
 SIGN_IN = "people.sign_in"
 OPEN_LINK = frozenset({"sharing.open_link", "api.open_shared_plan"})
 ACCOUNT_FIELD = "name"
