@@ -80,7 +80,8 @@ def test_key_works_with_the_plans_of_its_account_until_it_is_withdrawn(office: F
     assert key not in kept
     assert key not in anna.get("/account/keys").text
     number = re.search(r"/account/keys/(\d+)/end", anna.get("/account/keys").text).group(1)
-    assert bert.post(f"/account/keys/{number}/end").status_code == 404
+    for strange in (number, "9" * 12, "9" * 40, "-1"):
+        assert bert.post(f"/account/keys/{strange}/end").status_code == 404
     assert api.get("/api/v1/plans", headers=bearer(key)).status_code == 200
     assert anna.post(f"/account/keys/{number}/end").status_code == 303
     assert api.get("/api/v1/plans", headers=bearer(key)).status_code == 401

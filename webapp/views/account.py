@@ -154,7 +154,7 @@ def make_key() -> ResponseReturnValue:
     return _keys_page(who, made=people().new_key(account, label, days))
 
 
-@pages.post("/account/keys/<int:number>/end")
+@pages.post("/account/keys/<int(max=2147483647):number>/end")
 def end_key(number: int) -> ResponseReturnValue:
     """Withdraw a key."""
     who = _with_password()
