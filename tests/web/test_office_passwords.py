@@ -29,6 +29,7 @@ from people_tools import (
     try_to_sign_in,
 )
 from web_tools import TOKEN, Browser
+from zxcvbn.frequency_lists import FREQUENCY_LISTS
 
 from cant.errors import InputError
 from webapp.keeping.accounts import FREE_TRIES, LONGEST_WAIT, wait_after
@@ -54,6 +55,15 @@ def test_password_that_is_guessed_is_refused(password: str) -> None:
     """V6.2.1, V6.2.4, V6.2.11, V6.2.12."""
     with pytest.raises(InputError):
         passwords.check(password, ("anna", "Anna Holt"))
+
+
+def test_no_password_of_the_lists_that_leaked_is_taken() -> None:
+    """V6.2.4, V6.2.12: those long enough of the 30,000 most used that zxcvbn has from public leaks."""
+    listed = [word for word in FREQUENCY_LISTS["passwords"] if len(word) >= passwords.SHORTEST]
+    assert len(listed) > 200
+    for word in (*listed, *(a + b for a in ("monkey", "dragon", "qwerty") for b in ("shadow", "123456"))):
+        with pytest.raises(InputError):
+            passwords.check(word)
 
 
 @pytest.mark.parametrize(

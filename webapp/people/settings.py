@@ -71,10 +71,16 @@ class SignIn:
                 "proxy; leave out one of the two"
             )
             raise InputError(message)
+        second_factor = given.get("CANT_SECOND_FACTOR", "").strip().lower() in YES
+        if second_factor and not way:
+            message = (
+                f"CANT_SECOND_FACTOR is set without CANT_SIGN_IN={ACCOUNTS}: the service asks nobody for one"
+            )
+            raise InputError(message)
         return cls(
             accounts=way == ACCOUNTS,
             header=header,
-            second_factor=given.get("CANT_SECOND_FACTOR", "").strip().lower() in YES,
+            second_factor=second_factor,
             idle_hours=whole_number(given, "CANT_SIGN_IN_IDLE_HOURS", 8),
             days=whole_number(given, "CANT_SIGN_IN_DAYS", 7),
         )
