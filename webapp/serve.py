@@ -55,7 +55,7 @@ def run(host: str = "127.0.0.1", port: int = 8000) -> None:
     app = create_app(config)
     parts: Running = app.extensions[EXTENSION]
     try:
-        server = make_server(app, host, port, config.upload_mb, config.bounds)
+        server = make_server(app, host, port, config)
     except (OSError, ValueError) as error:
         reason = error.strerror if isinstance(error, OSError) and error.strerror else str(error)
         message = f"cannot listen at {host} port {port}: {reason}; give another with --host or --port"

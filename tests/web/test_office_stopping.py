@@ -196,6 +196,24 @@ def test_a_hundred_slow_connections_stop_nobody(serve: Serve) -> None:
     assert slowest < 5
 
 
+def test_one_address_does_not_take_all_connections(serve: Serve) -> None:
+    service = serve(CANT_CONNECTIONS="40")
+    with contextlib.ExitStack() as closing:
+        opened = [
+            closing.enter_context(socket.create_connection(("127.0.0.1", service.port), timeout=10))
+            for _ in range(25)
+        ]
+        time.sleep(0.5)
+        cut = 0
+        for one in opened:
+            one.setblocking(False)
+            with contextlib.suppress(BlockingIOError):
+                cut += one.recv(1) == b""
+        assert cut == 5
+    time.sleep(0.5)  # until it has seen that they are closed
+    assert service.get("/healthz")[0] == 200
+
+
 def test_slow_readers_stop_nobody(serve: Serve) -> None:
     service = serve()
     opener = urllib.request.build_opener(urllib.request.HTTPCookieProcessor())

@@ -49,7 +49,7 @@ class Bounds:
     seconds_to_send : int
         How long a request may take to arrive, and a minute more for each 10 MB of it.
     connections : int
-        Connections open at the same time.
+        Connections open at the same time; half of them from one address that is no proxy of ours.
     seconds_to_stop : int
         How long requests under way may take when the service is told to stop.
     """

@@ -15,8 +15,9 @@ from waitress.adjustments import Adjustments
 from waitress.server import TcpWSGIServer
 from waitress.task import ThreadedTaskDispatcher
 
-from webapp.guarding.bounds import Bounds
+from webapp.config import Config
 from webapp.guarding.channel import Channel
+from webapp.guarding.proxies import is_among
 from webapp.guarding.turns import MOST_WAITING
 
 if TYPE_CHECKING:
@@ -25,6 +26,8 @@ if TYPE_CHECKING:
 LIGHT_THREADS = 8
 """Threads for what needs no turn: it answers even while as many wait as may."""
 IDLE_S = 75
+SHARE_OF_ONE = 2
+"""One address may have the connections of all divided by this."""
 CLEANUP_S = 5
 HELD_BYTES = 1_000_000_000
 """An answer is held for a slow client, on disk, up to this size: no thread waits for him."""
@@ -38,12 +41,27 @@ class Listener(TcpWSGIServer):
     channel_class = Channel
     stopping = False
     seconds_to_send = 60.0
+    most_of_one = 500
+    proxies: tuple[str, ...] = ()
+
+    def handle_accept(self) -> None:
+        """Take a connection, unless its address has too many; a proxy may have all."""
+        before = set(self._open())
+        super().handle_accept()
+        for number in set(self._open()) - before:
+            address = self._open()[number].addr[0]
+            theirs = sum(one.addr[0] == address for one in self._open().values())
+            if theirs > self.most_of_one and not is_among(address, self.proxies):
+                self._open()[number].will_close = True
+
+    def _open(self) -> dict[int, Channel]:
+        found: Any = self.active_channels
+        return dict(found)
 
     def maintenance(self, now: float) -> None:
         """Close what has been idle for long, and what takes too long to arrive."""
         super().maintenance(int(now))
-        channels: dict[int, Channel] = self.active_channels  # type: ignore[assignment]
-        for channel in list(channels.values()):
+        for channel in self._open().values():
             channel.close_where_late(now, self.seconds_to_send)
 
     def stop_listening(self) -> None:
@@ -110,8 +128,9 @@ def _of(address: Any) -> tuple[int, int, int | None, Any]:
     return family, kind, protocol, name
 
 
-def make_server(application: WSGIApplication, host: str, port: int, upload_mb: int, bounds: Bounds) -> Server:
+def make_server(application: WSGIApplication, host: str, port: int, config: Config) -> Server:
     """Make a server that listens at a host and port; OSError or ValueError where it cannot."""
+    bounds = config.bounds
     settings = Adjustments(
         host=host,
         port=port,
@@ -121,7 +140,7 @@ def make_server(application: WSGIApplication, host: str, port: int, upload_mb: i
         channel_timeout=IDLE_S,
         cleanup_interval=CLEANUP_S,
         max_request_header_size=bounds.header_kb * 1_000,
-        max_request_body_size=upload_mb * 1_000_000 + BEYOND_UPLOAD_BYTES,
+        max_request_body_size=config.upload_mb * 1_000_000 + BEYOND_UPLOAD_BYTES,
         outbuf_high_watermark=HELD_BYTES,
         asyncore_use_poll=True,
         backlog=1024,
@@ -134,6 +153,8 @@ def make_server(application: WSGIApplication, host: str, port: int, upload_mb: i
                 application, map=server.sockets, dispatcher=threads, adj=settings, sockinfo=_of(address)
             )
             listener.seconds_to_send = bounds.seconds_to_send
+            listener.most_of_one = max(bounds.connections // SHARE_OF_ONE, 1)
+            listener.proxies = config.proxies
             server.listeners.append(listener)
     except OSError:
         wasyncore.close_all(server.sockets)

@@ -36,20 +36,23 @@ class Proxies:
     def __init__(self, application: WSGIApplication, trusted: Sequence[str]) -> None:
         self._direct = application
         self._behind = ProxyFix(application, x_for=1, x_proto=1, x_host=1)
-        self._trusted = [ipaddress.ip_network(one) for one in trusted]
+        self._trusted = tuple(trusted)
 
     def __call__(self, environ: WSGIEnvironment, start_response: StartResponse) -> Iterable[bytes]:
         """Answer a request."""
-        environ[FROM_PROXY] = self._is_trusted(environ.get("REMOTE_ADDR", ""))
+        environ[FROM_PROXY] = is_among(environ.get("REMOTE_ADDR", ""), self._trusted)
         if environ[FROM_PROXY]:
             return self._behind(environ, start_response)
         for name in SAID_BY_PROXIES:
             environ.pop(name, None)
         return self._direct(environ, start_response)
 
-    def _is_trusted(self, address: str) -> bool:
-        try:
-            found = ipaddress.ip_address(address)
-        except ValueError:
-            return False
-        return any(found in network for network in self._trusted)
+
+def is_among(address: str, networks: Iterable[str]) -> bool:
+    """Tell whether an address is one of some addresses or networks."""
+    try:
+        found = ipaddress.ip_address(address)
+    except ValueError:
+        return False
+    plain = getattr(found, "ipv4_mapped", None) or found
+    return any(plain in ipaddress.ip_network(one) for one in networks)
