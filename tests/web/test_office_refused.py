@@ -561,6 +561,26 @@ def test_no_text_becomes_a_formula(browser: Browser, text: str) -> None:
                     )
 
 
+def test_no_text_of_a_csv_becomes_a_formula(browser: Browser) -> None:
+    lines = io.StringIO()
+    writer = csv.writer(lines)
+    writer.writerow([*HEADER.split(","), "Remark"])
+    for number, text in enumerate(FORMULAS):
+        start = 1.2 + 2 * number
+        writer.writerow([text, text, text, start, start + 0.3, 800, "L", 80, 80, 60, 110, text])
+    plan = planned(browser, lines.getvalue())
+    answer = browser.get(f"{plan}/workbook")
+    assert answer.status_code == 200, answer.text
+    found = 0
+    for sheet in openpyxl.load_workbook(io.BytesIO(answer.data)):
+        for row in sheet.iter_rows():
+            for cell in row:
+                if isinstance(cell.value, str) and MARK in cell.value:
+                    found += 1
+                    assert cell.data_type != "f" or _quotes(cell.value), (sheet.title, cell.coordinate)
+    assert found > 2 * len(FORMULAS)
+
+
 def _quotes(formula: str) -> bool:
     """Tell whether a formula of ours names the text in quotes alone."""
     return MARK not in re.sub(r'"(?:[^"]|"")*"', "", formula)
