@@ -83,9 +83,11 @@ class Database:
         try:
             self._migrate()
         except CommandError as error:
+            self.close()
             message = "the database is of a newer version of this program: start that, or restore a backup"
             raise FileError(message) from error
         except (SQLAlchemyError, OSError) as error:
+            self.close()
             shown = self.engine.url.render_as_string(hide_password=True)
             message = f"the database {shown} cannot be used: {str(error).splitlines()[0]}"
             raise FileError(message) from error
