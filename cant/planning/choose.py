@@ -16,6 +16,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator, Sequence
 from dataclasses import dataclass
+from itertools import groupby, pairwise
 
 import numpy as np
 import numpy.typing as npt
@@ -26,18 +27,22 @@ from cant.planning.give_way import search_chains
 from cant.planning.grid import Grid
 from cant.planning.line import Line
 from cant.planning.neighbours import Chains, Pairs
-from cant.planning.nodes import Nodes, best_alone, node_blocks
+from cant.planning.nodes import best_alone, make_nodes
 from cant.planning.normal_chains import settle_within_normal
 from cant.planning.shared import Meeting, SharedAsked, shared_values
 from cant.planning.targets import Target
 from cant.planning.unslowed import settle_unslowed
+from cant.planning.workers import side_by_side
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-SEARCHED_TOGETHER = 80
-"""Chains searched together: keeps the arrays of a search within the processor's cache."""
+WEIGHED_TOGETHER = 2000
+"""Curves whose levels are weighed together, about: few enough for the processor's cache, many enough that
+the work on the arrays outweighs that of starting it."""
+SEARCHED_TOGETHER = 100
+"""Transitions of chains searched together, about, for the same reason."""
 
 
 @dataclass
@@ -82,71 +87,133 @@ def choose(
     -------
     Choice
     """
+    cant, chains = _within_normal(line, grid, pairs, planned, target)
+    unsettled = planned & np.isnan(cant)
+    alone = unsettled.copy()
+    for chain in chains:
+        alone[chain] = False
+    not_compliant = np.zeros(len(line), dtype=np.bool_)
+
+    def weigh(part: _Part) -> tuple[FloatArray, BoolArray]:
+        some = line.take(part.curves).with_bands(), grid.take(part.curves)
+        if not part.chains:
+            return _weigh_alone(*some, target, exceptional)
+        among = pairs.among(part.curves)
+        return _plan_chains(*some, among, part.chains, target, exceptional, part.also_broken)
+
+    def settle(parts: list[_Part]) -> None:
+        for part, (best, bad) in zip(parts, side_by_side(weigh, parts), strict=True):
+            cant[part.curves], not_compliant[part.curves] = best, bad
+
+    settle(_parts(chains) + _parts(list(np.flatnonzero(alone)[:, None])))
+    settle(_parts([chain for chain in chains if np.isnan(cant[chain]).any()], also_broken=True))
+    return Choice(cant, not_compliant, ~unsettled)
+
+
+def _within_normal(
+    line: Line, grid: Grid, pairs: Pairs, planned: BoolArray, target: Target
+) -> tuple[FloatArray, list[IntArray]]:
+    """Settle what has cants within all normal limits at planned speeds.
+
+    Returns
+    -------
+    cant_mm : ndarray, shape (n,)
+        nan where not settled.
+    left : list of ndarray of int
+        The chains of which it is so.
+    """
     bounds = normal_bounds(line)
     wanted = target(line, line.planned_kmh)[:, 0]
     cant = grid.nearest(wanted, bounds.low_mm, bounds.high_mm)
     cant[~bounds.kept | (grid.fixed_mm < 0) | ~planned] = np.nan
     chains = Chains.of(pairs)
-    stands = ~np.isnan(cant)
-    unsettled = chains.any(_clashes(line, pairs, cant))
-    hopeless = chains.any(~stands)
-    possible = chains.take(unsettled & ~hopeless)
+    clashing, hopeless = chains.any(_clashes(line, pairs, cant)), chains.any(np.isnan(cant))
+    possible = chains.take(clashing & ~hopeless)
     settled, left = settle_within_normal(line, grid, pairs, possible, (bounds.low_mm, bounds.high_mm), wanted)
+    left = chains.take(clashing & hopeless) + left
     cant = np.where(np.isnan(settled), cant, settled)
-    left = chains.take(unsettled & hopeless) + left
-    not_compliant = np.zeros(len(line), dtype=np.bool_)
-    by_itself = planned & ~stands
-    by_itself[chains.members] = False
-    lone = np.flatnonzero(by_itself)
-    for at, nodes in node_blocks(line.take(lone), grid.take(lone), target, exceptional):
-        cant[lone[at]] = nodes.cant_mm[best_alone(nodes), np.arange(len(at))]
-        not_compliant[lone[at]] = nodes.not_compliant
-    members = np.concatenate(left) if left else np.zeros(0, dtype=np.int64)
-    if left:
-        part = line.take(members).with_bands()
-        cant[members], not_compliant[members] = _plan_chains(
-            part, grid.take(members), pairs.among(members), _renumbered(left), target, exceptional
-        )
-    settled_at_once = np.ones(len(line), dtype=np.bool_)
-    settled_at_once[lone] = False
-    settled_at_once[members] = False
-    return Choice(cant, not_compliant, settled_at_once)
+    for chain in left:
+        cant[chain] = np.nan
+    return cant, left
+
+
+@dataclass
+class _Part:
+    """Curves to be weighed together: whole chains one after the other, or curves by themselves.
+
+    ``chains`` are numbered by the place of their curves among these; none for curves by themselves.
+    """
+
+    curves: IntArray
+    chains: list[IntArray]
+    also_broken: bool
+
+
+def _parts(chains: Sequence[IntArray], also_broken: bool = False) -> list[_Part]:
+    """Cut chains, or curves by themselves as chains of one, into parts; those of one length side by side."""
+    parts = []
+    ordered = sorted(chains, key=len)
+    ends = np.cumsum([len(chain) for chain in ordered])
+    numbers = ends // WEIGHED_TOGETHER
+    for begin, end in pairwise([0, *(np.flatnonzero(np.diff(numbers)) + 1).tolist(), len(ordered)]):
+        some = ordered[begin:end]
+        if some:
+            parts.append(
+                _Part(np.concatenate(some), _numbered(some) if len(some[-1]) > 1 else [], also_broken)
+            )
+    return parts
+
+
+def _numbered(chains: Sequence[IntArray]) -> list[IntArray]:
+    """Give the chains with their curves numbered by the place when all are put in a row."""
+    ends = np.cumsum([len(chain) for chain in chains]).tolist()
+    return [np.arange(end - len(chain), end) for chain, end in zip(chains, ends, strict=True)]
+
+
+def _weigh_alone(line: Line, grid: Grid, target: Target, exceptional: bool) -> tuple[FloatArray, BoolArray]:
+    """Choose the cants of curves that share no transition; which curves are not compliant."""
+    nodes = make_nodes(line, grid, target, exceptional)
+    return nodes.cant_mm[best_alone(nodes), np.arange(len(line))], nodes.not_compliant
 
 
 def _plan_chains(
-    line: Line, grid: Grid, pairs: Pairs, chains: list[IntArray], target: Target, exceptional: bool
+    line: Line,
+    grid: Grid,
+    pairs: Pairs,
+    chains: list[IntArray],
+    target: Target,
+    exceptional: bool,
+    also_broken: bool,
 ) -> tuple[FloatArray, BoolArray]:
-    """Plan the chains that no closed form settles.
+    """Plan chains that no closed form settles.
 
     Returns
     -------
     cant_mm : ndarray, shape (n,)
+        nan on a chain that cannot keep what no lower speed can mend, unless such ways are wanted.
     not_compliant : ndarray of bool, shape (n,)
         By the curve alone, or because of a transition that cannot be kept.
     """
-    nodes = Nodes.join([nodes for _, nodes in node_blocks(line, grid, target, exceptional)])
-    cant, left = settle_unslowed(line, pairs, nodes, chains, exceptional)
-    not_compliant = nodes.not_compliant.copy()
+    nodes = make_nodes(line, grid, target, exceptional)
+    cant, left = np.full(len(line), np.nan), list(chains)
+    if not also_broken:
+        cant, left = settle_unslowed(line, pairs, nodes, chains, exceptional)
     for some in _batches(left):
-        curves, best = search_chains(line, pairs, nodes, some, target, exceptional, also_broken=False)
+        curves, best = search_chains(line, pairs, nodes, some, target, exceptional, also_broken)
         cant[curves] = best
-    hopeless = [chain for chain in left if np.isnan(cant[chain]).any()]
-    for some in _batches(hopeless):
-        curves, best = search_chains(line, pairs, nodes, some, target, exceptional, also_broken=True)
-        cant[curves] = best
-    not_compliant |= _beside_broken(line, pairs, cant, hopeless, exceptional)
+    not_compliant = nodes.not_compliant
+    if also_broken:
+        not_compliant = not_compliant | _beside_broken(line, pairs, cant, chains, exceptional)
     return cant, not_compliant
 
 
 def _batches(chains: Sequence[IntArray]) -> Iterator[Sequence[IntArray]]:
-    for begin in range(0, len(chains), SEARCHED_TOGETHER):
-        yield chains[begin : begin + SEARCHED_TOGETHER]
-
-
-def _renumbered(chains: Sequence[IntArray]) -> list[IntArray]:
-    """Give the chains with their curves numbered by the place when all are put in a row."""
-    ends = np.cumsum([len(chain) for chain in chains])
-    return [np.arange(end - len(chain), end) for chain, end in zip(chains, ends, strict=True)]
+    """Yield batches of chains of one length, of much the same size: a small one costs nearly as much."""
+    for length, some in groupby(sorted(chains, key=len), key=len):
+        alike = list(some)
+        count = min(max(round(len(alike) * (length - 1) / SEARCHED_TOGETHER), 1), len(alike))
+        for i in range(count):
+            yield alike[len(alike) * i // count : len(alike) * (i + 1) // count]
 
 
 def _beside_broken(

@@ -59,8 +59,12 @@ class Levels:
         return cls(
             curve=curve,
             cant_mm=nodes.cant_mm[row, curve],
-            alone=Permitted(alone.up_to_kmh[row, curve], alone.planned[row, curve]),
-            run_kmh=nodes.run_kmh[row, curve],
+            # Row by row in memory: the search picks whole rows.
+            alone=Permitted(
+                np.ascontiguousarray(alone.up_to_kmh[row, curve]),
+                np.ascontiguousarray(alone.planned[row, curve]),
+            ),
+            run_kmh=np.ascontiguousarray(nodes.run_kmh[row, curve]),
             own=np.stack([nodes.stopped[row, curve], nodes.lost_s[row, curve]], axis=-1),
             table=_table(curve, len(chain)),
             chain=chain,

@@ -5,7 +5,6 @@ Made only for the curves that a closed form does not settle.
 
 from __future__ import annotations
 
-from collections.abc import Iterable, Iterator, Sequence
 from dataclasses import dataclass, fields
 from typing import Any
 
@@ -30,9 +29,6 @@ from cant.planning.targets import Target
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
-
-BLOCK = 1024
-"""Curves evaluated together: keeps the arrays of a block within the processor's cache."""
 
 
 @dataclass
@@ -77,36 +73,6 @@ class Nodes:
         }
         alone = Permitted(self.alone.up_to_kmh[:, curves], self.alone.planned[:, curves])
         return Nodes(**chosen, alone=alone, not_compliant=self.not_compliant[curves])
-
-    @classmethod
-    def join(cls, parts: Sequence[Nodes]) -> Nodes:
-        """Put the nodes of several blocks side by side."""
-        most = max(len(part.cant_mm) for part in parts)
-
-        def side_by_side(arrays: Iterable[npt.NDArray[Any]], missing: float | bool) -> npt.NDArray[Any]:
-            return np.concatenate(
-                [
-                    np.pad(a, [(0, most - len(a))] + [(0, 0)] * (a.ndim - 1), constant_values=missing)
-                    for a in arrays
-                ],
-                axis=1,
-            )
-
-        return cls(
-            cant_mm=side_by_side((part.cant_mm for part in parts), np.nan),
-            allowed=side_by_side((part.allowed for part in parts), False),
-            alone=Permitted(
-                side_by_side((part.alone.up_to_kmh for part in parts), np.inf),
-                side_by_side((part.alone.planned for part in parts), False),
-            ),
-            run_kmh=side_by_side((part.run_kmh for part in parts), np.nan),
-            stopped=side_by_side((part.stopped for part in parts), np.inf),
-            lost_s=side_by_side((part.lost_s for part in parts), np.inf),
-            count=side_by_side((part.count for part in parts), np.inf),
-            overrun=side_by_side((part.overrun for part in parts), np.inf),
-            square=side_by_side((part.square for part in parts), np.inf),
-            not_compliant=np.concatenate([part.not_compliant for part in parts]),
-        )
 
     @property
     def cheapest(self) -> BoolArray:
@@ -226,15 +192,6 @@ def searched_below_planned(line: Line, nodes: Nodes, exceptional: bool) -> Permi
     """
     cant = np.where(nodes.allowed, nodes.cant_mm, 0.0)[:, :, None]
     return Permitted(_searched(line.with_bands(), cant, line.runs, exceptional), nodes.alone.planned)
-
-
-def node_blocks(
-    line: Line, grid: Grid, target: Target, exceptional: bool
-) -> Iterator[tuple[IntArray, Nodes]]:
-    """Yield the nodes of a long line block by block, each with the positions of its curves."""
-    for begin in range(0, len(line), BLOCK):
-        at = np.arange(begin, min(begin + BLOCK, len(line)))
-        yield at, make_nodes(line.take(at), grid.take(at), target, exceptional)
 
 
 def _least_bad(line: Line, cant_mm: FloatArray, known: BoolArray, exceptional: bool) -> IntArray:

@@ -126,21 +126,20 @@ class Outcome:
         """Status of each curve, "" for a rejected row."""
         with np.errstate(invalid="ignore"):
             same = np.abs(self.cant_mm - self.curves.cant_mm) <= SAME_MM
-        return [
-            str(word)
-            for word in np.select(
-                [
-                    self.curves.rejected,
-                    ~self.planned,
-                    self.not_compliant,
-                    self.restricted,
-                    self.exceptional,
-                    same,
-                ],
-                ["", "not assessed", "not compliant", "restrict", "exceptional", "kept"],
-                "change",
-            )
-        ]
+        first = np.select(
+            [
+                self.curves.rejected,
+                ~self.planned,
+                self.not_compliant,
+                self.restricted,
+                self.exceptional,
+                same,
+            ],
+            range(6),
+            6,
+        )
+        words = ("", "not assessed", "not compliant", "restrict", "exceptional", "kept", "change")
+        return [words[number] for number in first.tolist()]
 
     @cached_property
     def today(self) -> IntArray:

@@ -32,6 +32,8 @@ IntArray = npt.NDArray[np.int64]
 TOGETHER = 150
 """Transitions looked at together: keeps their arrays within the processor's cache."""
 _SLACK = 1e-9
+_EDGE_MM = 1e-6
+"""A cant this close to the edge of a window is evaluated, not taken from it."""
 
 
 @dataclass
@@ -174,48 +176,48 @@ def _cross(meeting: Meeting, before: _Cheap, after: _Cheap, exceptional: bool) -
     window = hard_window(SharedAsked(meeting, meeting.planned_kmh, exceptional), cants)
     window = window.within(at_run.over_classes()).within(below)
     allowed = window.holds(after.cant_mm) & before.possible[:, None, :] & after.possible
-    passing, at, column = _passing(meeting, run, cants, window, after, one)
-    if not len(passing):
-        return _Crossing(allowed, (None, None), sure)
-    passed = passed_shared(
-        meeting.unfold(at, column),
-        (cants[:, None, at], after.cant_mm[None, :, at, None]),
-        run[at, column][:, None],
-    ).gathered(np.searchsorted(at, passing))
-    count, total = np.zeros(allowed.shape), np.zeros(allowed.shape)
-    count[:, :, passing], total[:, :, passing] = passed.count, passed.total
-    return _Crossing(allowed, (count, total), sure)
+    return _Crossing(allowed, _passed(meeting, run, (before, after), allowed, one), sure)
 
 
-def _passing(
+def _passed(
     meeting: Meeting,
     run_kmh: FloatArray,
-    cants_mm: FloatArray,
-    window: Window,
-    after: _Cheap,
+    curves: tuple[_Cheap, _Cheap],
+    allowed: BoolArray,
     one_of_alike: BoolArray,
-) -> tuple[IntArray, IntArray, IntArray]:
-    """Find the transitions over which an allowed pair may pass a normal limit, and for which classes.
+) -> tuple[FloatArray, FloatArray] | tuple[None, None]:
+    """Give number and overrun of the normal limits that allowed pairs pass, (a, b, m) each; None for nothing.
 
-    Returns
-    -------
-    passing : ndarray of int
-        Transitions.
-    at, column : ndarray of int
-        Transitions again, with a class each: of those treated alike one. One class where none runs on both.
+    Windows tell which pairs may pass anything, and by which of the classes treated alike one: only these
+    are evaluated.
     """
-    low = np.maximum(window.low, np.where(after.possible, after.cant_mm, np.inf).min(axis=0))
-    high = np.minimum(window.high, np.where(after.possible, after.cant_mm, -np.inf).max(axis=0))
-    asked = SharedAsked(meeting, run_kmh, False)
-    hard, each = hard_window(asked, cants_mm), speed_windows(asked, cants_mm)
-    outside_hard = ((low <= high) & ((hard.low > low) | (hard.high < high))).any(axis=0)
-    low, high = low[:, :, None], high[:, :, None]
-    outside = ((low <= high) & ((each.low > low) | (each.high < high))).any(axis=0)
-    both = meeting.both
-    danger = both & (outside | outside_hard[:, None])
-    danger[:, 0] |= outside_hard & ~both.any(axis=1)
-    at, column = np.nonzero(danger & one_of_alike)
-    return np.unique(at), at, column
+    asked, before, after = SharedAsked(meeting, run_kmh, False), curves[0].cant_mm, curves[1].cant_mm
+    hard, each = hard_window(asked, before[:, :, None]), speed_windows(asked, before[:, :, None])
+    both = meeting.both & one_of_alike
+    # Where no class runs on both curves, the gradient speaks of none: one column stands for it.
+    both[:, 0] |= ~meeting.both.any(axis=1)
+    at, column = np.nonzero(both)
+    within = Window(
+        np.maximum(each.low[:, at, column], hard.low[:, at]) + _EDGE_MM,
+        np.minimum(each.high[:, at, column], hard.high[:, at]) - _EDGE_MM,
+    )
+    case, row, ahead = np.nonzero((allowed[:, :, at] & ~within.holds(after[:, at])).transpose(2, 0, 1))
+    if not len(case):
+        return None, None
+    pair = np.ravel_multi_index((row, ahead, at[case]), allowed.shape)
+    order = np.argsort(pair, kind="stable")
+    case, row, ahead, pair = case[order], row[order], ahead[order], pair[order]
+    at, column = at[case], column[case]
+    passed = passed_shared(
+        meeting.unfold(at, column),
+        (before[row, at][:, None], after[ahead, at][:, None]),
+        run_kmh[at, column][:, None],
+    )
+    begin = np.flatnonzero(np.diff(pair, prepend=-1))
+    passed = passed.gathered(begin)
+    count, total = np.zeros((2, *allowed.shape))
+    count.ravel()[pair[begin]], total.ravel()[pair[begin]] = passed.count, passed.total
+    return count, total
 
 
 def _below_run_speed(

@@ -2,8 +2,8 @@
 
 Prints for each size the time of the array work (tables in, cants, speeds and verdicts out), of making the
 records, and the largest memory of the process; the invented register has 8 classes and a third of its curves
-in chains. The share of the curves that each step of the choice is given stands beside. Run by hand: the
-machine's noise is in every figure, so compare ratios of one run.
+in chains. The share of the curves that each step of the choice is given stands beside. The same curves in one
+single chain come last. Run by hand: the machine's noise is in every figure, so compare ratios of one run.
 """
 
 from __future__ import annotations
@@ -13,6 +13,7 @@ import sys
 import time
 from collections.abc import Iterator
 from contextlib import contextmanager
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -26,6 +27,7 @@ from cant.planning.outcome import Outcome, plan_arrays
 from cant.planning.plan import Plan
 
 SIZES = (1_000, 10_000, 100_000)
+CHAINS = (75, 150, 300)
 CURVES_A_LINE = 500
 MEBI = 1024
 
@@ -107,6 +109,19 @@ def make_register(n: int, seed: int = 1) -> CurveList:
     )
 
 
+def make_chain(n: int) -> CurveList:
+    """Put the curves of a register into one chain: each shares its transition with the next."""
+    curves = make_register(n)
+    shared = np.maximum(curves.transition_out_m[:-1], curves.transition_in_m[1:])
+    start = np.concatenate([[0.0], np.cumsum(curves.length_m[:-1] + shared)])
+    return replace(
+        curves,
+        line=["L"] * n,
+        start_km=np.round(start) / 1000.0,
+        end_km=np.round(start + curves.length_m) / 1000.0,
+    )
+
+
 def peak_mib() -> float:
     """Largest memory of this process so far [MiB]."""
     return resource.getrusage(resource.RUSAGE_SELF).ru_maxrss / MEBI
@@ -130,11 +145,11 @@ def counted_steps(counts: dict[str, int]) -> Iterator[None]:
     """Count the curves that each step of the choice is given."""
     given = {
         "settle_within_normal": lambda chains, *_: sum(map(len, chains)),
-        "node_blocks": lambda line, *_: len(line),
+        "make_nodes": lambda line, *_: len(line),
         "settle_unslowed": lambda chains, *_: sum(map(len, chains)),
         "search_chains": lambda chains, *_: sum(map(len, chains)),
     }
-    place = {"node_blocks": 0}
+    place = {"make_nodes": 0}
     real = {name: getattr(choosing, name) for name in given}
     for name in given:
 
@@ -175,6 +190,9 @@ def main(sizes: tuple[int, ...]) -> None:
             shares = ", ".join(f"{name} {count / n:.2%}" for name, count in counts.items())
             print(f"        in chains {chained:.0%}; given to {shares}; records {each:.0f} us each")
             print(f"        {plan.counts()}")
+    for n in CHAINS:
+        clock, processor, _ = plan_timed(make_chain(n), ("normal",), 1)
+        print(f"one chain of {n} curves: {clock:.2f} s, of the processor {processor:.2f} s")
 
 
 if __name__ == "__main__":
