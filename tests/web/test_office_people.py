@@ -56,7 +56,7 @@ def test_without_the_setting_nobody_signs_in(start: Start) -> None:
     [
         ({"CANT_SIGN_IN": "accounts", "CANT_SIGN_IN_HEADER": "X-Remote-User"}, "both set"),
         ({"CANT_SIGN_IN": "yes"}, "write accounts"),
-        ({"CANT_SECOND_FACTOR": "yes"}, "nobody is asked"),
+        ({"CANT_SECOND_FACTOR": "yes"}, "asks nobody"),
         ({"CANT_SIGN_IN_HEADER": "X Remote"}, "name of a header"),
         ({"CANT_SIGN_IN_HEADER": "X_Remote_User"}, "name of a header"),
         ({"CANT_SIGN_IN": "accounts", "CANT_SIGN_IN_DAYS": "-1"}, "whole number"),
