@@ -6,6 +6,7 @@ import io
 import json
 import re
 import threading
+from collections.abc import Callable
 from datetime import UTC, datetime
 from typing import Any
 
@@ -16,11 +17,13 @@ from people_tools import PASSWORD, database_of, made, people_of, row_of, set_acc
 from sqlalchemy import delete, select
 from test_web_guards import PAGES, POSTS
 from web_tools import TRAINS, Browser
+from work_tools import EVERYTHING, work_off, worked
 
 from webapp.keeping.records import AccountRow, GrantRow, PlanRow, SignatureRow
 from webapp.keeping.signatures import SignOff
 from webapp.keeping.store import NotAllowedError
 from webapp.people import signing
+from webapp.people.settings import SignIn
 
 Crew = dict[str, Browser]
 NASTY = '=HYPERLINK("http://x")<script>alert(1)</script>{{ 7*7 }}\''
@@ -495,3 +498,30 @@ def test_who_signs_twice_at_the_same_moment_signs_once(office: Flask, crew: Crew
         thread.join()
     assert sorted(done) == [False] * 5 + [True]
     assert fates(crew["anna"], plan) == ["holds"]
+
+
+def test_long_plan_is_signed_and_its_workbook_made_in_the_background(start: Callable[..., Flask]) -> None:
+    """A workbook that was made before somebody signed is not given for the one that is wanted now."""
+    house = start(sign_in=SignIn(accounts=True), work=EVERYTHING)
+    made(house, "anna", full_name="Anna Holt")
+    made(house, "bo", ["check"], "Bo Lind")
+    anna = signed_in(house, "anna")
+    plan = anna.post("/plans/sample").headers["Location"].removesuffix("/cants")
+    waiting = anna.post(f"{plan}/sign-off", {"password": PASSWORD})
+    assert waiting.headers["Location"] == f"{plan}/sign-off"  # a password waits in no page
+    assert worked(house, lambda: anna.get(f"{plan}/sign-off")).status_code == 200
+
+    def names() -> set[str]:
+        answer = anna.get(f"{plan}/workbook")
+        if answer.status_code == 302:  # to the page that waits for it
+            assert work_off(house) > 0
+            answer = anna.get(f"{plan}/workbook")
+        assert answer.status_code == 200, answer.text
+        sheet = load_workbook(io.BytesIO(answer.data))["Plan summary"]
+        return {str(cell) for row in sheet.iter_rows(values_only=True) for cell in row}
+
+    assert "Anna Holt (anna)" not in names()
+    assert sign(anna, plan, number_of(house, "bo")).status_code == 303
+    assert "Anna Holt (anna)" in names()
+    assert sign(signed_in(house, "bo"), plan).status_code == 303
+    assert {"Anna Holt (anna)", "Bo Lind (bo)"} <= names()
