@@ -144,7 +144,7 @@ def lives(process: int) -> bool:
         return False
 
 
-def until(condition: Callable[[], bool], what: str, seconds: float = 120) -> None:
+def until(condition: Callable[[], bool], what: str, seconds: float = 300) -> None:
     """Wait until something is so."""
     end = time.monotonic() + seconds
     while not condition():
@@ -155,7 +155,7 @@ def until(condition: Callable[[], bool], what: str, seconds: float = 120) -> Non
 class Bench:
     """A long list whose workbook is asked for, and the process that makes it."""
 
-    def __init__(self, app: Flask, folder: Path, environment: dict[str, str], curves: int = 2_000) -> None:
+    def __init__(self, app: Flask, folder: Path, environment: dict[str, str], curves: int = 1_000) -> None:
         self.app, self.browser = app, Browser(app)
         self.environment = {**environment, "CANT_LONG_FILE_KB": "0", "CANT_LONG_CURVES": "1"}
         file = folder / "long.csv"

@@ -17,6 +17,7 @@ from web_tools import TRAINS, Browser, FormFields
 from work_tools import EVERYTHING, parts_of, piece_shown, planned_sample, work_off, worked
 
 from webapp.keeping.records import ResultRow, WorkRow
+from webapp.working import orders
 from webapp.working.settings import Work
 from webapp.working.worker import do_waiting
 
@@ -183,6 +184,18 @@ def test_failed_work_says_why_and_can_start_again(long: Flask, monkeypatch: pyte
     assert work["state"] == "failed"
     assert browser.client.post(f"{path}/work/{work['id']}/again", data=action.sent).status_code == 303
     assert worked(long, lambda: browser.get(f"{path}/cants")).status_code == 200
+
+
+def test_another_version_does_not_do_the_work(long: Flask, monkeypatch: pytest.MonkeyPatch) -> None:
+    browser = Browser(long)
+    path = browser.sample()
+    assert browser.get(f"{path}/cants").status_code == 202
+    with monkeypatch.context() as upgraded:
+        upgraded.setattr(orders, "program", lambda: "a later version")
+        assert work_off(long) == 1
+    shown = browser.get(f"{path}/cants")
+    assert shown.status_code == 409
+    assert "another version" in shown.text
 
 
 def test_a_long_list_that_cannot_be_read_says_why_and_can_be_deleted(long: Flask, tmp_path: Path) -> None:

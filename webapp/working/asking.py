@@ -15,7 +15,7 @@ from webapp.keeping.results import Results
 from webapp.keeping.store import StoredPlan
 from webapp.keeping.work import REFUSED, Piece, WorkQueue
 from webapp.working.doing import SIGNED, SYSTEM, planned_of
-from webapp.working.orders import DOCUMENT, PLAN, READING, WORKBOOK, Order
+from webapp.working.orders import DOCUMENT, PLAN, READING, WORKBOOK, Order, program
 from webapp.working.sealing import Seal, unpack
 
 DAY = "day"
@@ -47,6 +47,7 @@ class Background:
     """
 
     def __init__(self, queue: WorkQueue, results: Results, seal: Seal) -> None:
+        program()  # as it was loaded, not as it may lie on the disk later
         self.queue = queue
         self._results, self._seal = results, seal
 

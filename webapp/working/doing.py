@@ -21,12 +21,16 @@ from webapp.keeping.results import Results
 from webapp.keeping.store import NotThereError
 from webapp.keeping.work import FAILED, REFUSED, Piece
 from webapp.keeping.work_claims import Claims
-from webapp.working.orders import DOCUMENT, PLAN, READING, WORDS, WORKBOOK, Order
+from webapp.working.orders import DOCUMENT, PLAN, READING, WORDS, WORKBOOK, Order, program
 from webapp.working.sealing import LEVEL, Seal, pack, unpack
 
 LOG = logging.getLogger("webapp.working")
 SYSTEM = "system"
 SIGNED = "signatures"
+OTHER_VERSION = (
+    "This was asked for by another version of the program than does the work. Start it again once the whole "
+    "service has been upgraded."
+)
 TOLD_EVERY = 64
 RECORDS_FROM, RECORDS_TO = 0.1, 0.7
 
@@ -58,6 +62,7 @@ class Doing:
     """
 
     def __init__(self, database: Database, seal: Seal) -> None:
+        program()  # as it was loaded, not as it may lie on the disk later
         self._claims, self._results, self._seal = Claims(database), Results(database), seal
         self._makers: dict[str, Callable[[Order, Piece, Progress], bytes]] = {
             READING: lambda order, piece, tell: pack(self._reading(order, piece, tell)),
@@ -78,7 +83,11 @@ class Doing:
         """
         try:
             tell(0.0, WORDS[piece.kind])
-            data = self._makers[piece.kind](Order.of(piece.kind, piece.content), piece, tell)
+            order = Order.of(piece.kind, piece.content)
+            if order.key != piece.key:
+                self._claims.end(piece, FAILED, OTHER_VERSION)
+                return
+            data = self._makers[piece.kind](order, piece, tell)
         except MemoryError:
             raise
         except CantError as error:
