@@ -36,14 +36,26 @@ def curve_list(curves: int, rng: random.Random) -> bytes:
     return "\n".join(lines).encode()
 
 
+PROGRAM = """
+import sys
+import webapp.serve
+from cant.cli import main
+sys.stdin.readline()
+sys.argv = ["cant", "serve", "--port", "0"]
+sys.exit(main())
+"""
+"""``cant serve``, loaded beforehand: it touches nothing until it is told to."""
+
+
 class Service:
     """``cant serve`` in a process group of its own."""
 
     def __init__(self, environment: dict[str, str], folder: Path) -> None:
         self.process = subprocess.Popen(
-            [sys.executable, "-m", "cant", "serve", "--port", "0"],
+            [sys.executable, "-c", PROGRAM],
             env={"PATH": "/usr/bin:/bin", **environment},
             cwd=folder,
+            stdin=subprocess.PIPE,
             stderr=subprocess.PIPE,
             text=True,
             start_new_session=True,
@@ -53,6 +65,12 @@ class Service:
         self.port = 0
         self._reader = threading.Thread(target=self._read, daemon=True)
         self._reader.start()
+
+    def begin(self) -> None:
+        """Let it serve, and wait until it does."""
+        assert self.process.stdin is not None
+        self.process.stdin.write("\n")
+        self.process.stdin.flush()
         assert self._ready.wait(90), "".join(self.said)
         assert self.port, "".join(self.said)
 
@@ -71,8 +89,9 @@ class Service:
             os.killpg(self.process.pid, signal.SIGKILL)
         self.process.wait()
         self._reader.join(timeout=10)
-        assert self.process.stderr is not None
-        self.process.stderr.close()
+        for pipe in (self.process.stdin, self.process.stderr):
+            assert pipe is not None
+            pipe.close()
 
 
 class GoneError(Exception):

@@ -107,19 +107,22 @@ def test_killed_at_any_moment_nothing_confirmed_is_lost(
     client = Client(rng)
     moments = [list(LONGEST_S)[i % len(LONGEST_S)] for i in range(KILLS)]
     rng.shuffle(moments)
-    for moment in moments:
-        service = Service(environment, tmp_path)
-        try:
-            check_all(client, service.port)
-            with at_work(client, service.port):
-                assert client.began[moment].wait(60), f"no {moment} began"
-                time.sleep(rng.uniform(0, LONGEST_S[moment]))
-                service.kill_group()
-        finally:
-            service.kill_group()
-        check_file(database_url)
     service = Service(environment, tmp_path)
     try:
+        for moment in moments:
+            service.begin()
+            check_all(client, service.port)
+            following = Service(environment, tmp_path)
+            try:
+                with at_work(client, service.port):
+                    assert client.began[moment].wait(60), f"no {moment} began"
+                    time.sleep(rng.uniform(0, LONGEST_S[moment]))
+                    service.kill_group()
+            finally:
+                service.kill_group()
+                service = following
+            check_file(database_url)
+        service.begin()
         check_all(client, service.port)
         for address in [a for a, known in client.plans.items() if not known.deleted]:
             assert client.plan(address) == 200, "what was under way is taken up again"
