@@ -1,4 +1,4 @@
-"""The queue of long work: claimed once, in fair turn, cancelled, lost and found; results that are ours alone."""
+"""The queue of long work: claimed once, in fair turn, cancelled, lost and found; results that are ours."""
 
 from __future__ import annotations
 
