@@ -5,7 +5,8 @@ from __future__ import annotations
 from flask import request
 
 from webapp.context import stored
-from webapp.keeping.store import Access, StoredPlan, check_access
+from webapp.keeping.access import Access, check_access
+from webapp.keeping.store import StoredPlan
 
 COMPARE = "compare"
 """Field of a form that shows what would change, and keeps nothing."""

@@ -26,6 +26,7 @@ from webapp.guarding.texts import refuse_null
 from webapp.guarding.turns import Turns, add_turns
 from webapp.history_view import remembered_name
 from webapp.keeping.database import Database
+from webapp.keeping.kept_limits import KeptLimitsStore
 from webapp.keeping.results import Results
 from webapp.keeping.store import Store
 from webapp.keeping.work import WorkQueue
@@ -101,7 +102,15 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
     computations = Computations(
         used.plans_in_memory, used.work.curves_in_memory, background, 1000 * used.work.long_file_kb
     )
-    app.extensions[EXTENSION] = Running(used, database, store, computations, background, datetime.now(UTC))
+    app.extensions[EXTENSION] = Running(
+        used,
+        database,
+        store,
+        KeptLimitsStore(database, used.keep_days),
+        computations,
+        background,
+        datetime.now(UTC),
+    )
     for part in (
         start,
         reading,

@@ -15,6 +15,7 @@ from cant.model.reading import Reading
 from webapp.computing import Computations, Computed
 from webapp.config import Config
 from webapp.keeping.database import Database
+from webapp.keeping.kept_limits import KeptLimitsStore
 from webapp.keeping.results import Results
 from webapp.keeping.store import Store, StoredPlan
 from webapp.keeping.work_claims import Claims
@@ -38,6 +39,7 @@ class Running:
     config: Config
     database: Database
     store: Store
+    kept_limits: KeptLimitsStore
     computations: Computations
     background: Background
     cleaned: datetime

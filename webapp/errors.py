@@ -19,8 +19,8 @@ from webapp.busy import BusyError, FullError, TooManyError
 from webapp.context import running
 from webapp.guarding.access_log import route
 from webapp.guarding.texts import is_own_path
+from webapp.keeping.access import NotAllowedError, NotThereError
 from webapp.keeping.database import is_full, is_passing
-from webapp.keeping.store import NotAllowedError, NotThereError
 from webapp.meanwhile import MeanwhileError
 from webapp.security import RefusedError
 

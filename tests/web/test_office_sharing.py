@@ -32,8 +32,9 @@ from web_tools import TOKEN, Browser
 
 from webapp.guarding import access_log
 from webapp.keeping import shares as sharing
+from webapp.keeping.access import NotThereError
 from webapp.keeping.records import GrantRow, PlanRow, ShareRow
-from webapp.keeping.store import NotThereError, StoredPlan
+from webapp.keeping.store import StoredPlan
 from webapp.people.settings import SignIn
 
 OWNERS = {

@@ -19,9 +19,9 @@ from test_web_guards import PAGES, POSTS
 from web_tools import TRAINS, Browser
 from work_tools import EVERYTHING, work_off, worked
 
+from webapp.keeping.access import NotAllowedError
 from webapp.keeping.records import AccountRow, GrantRow, PlanRow, SignatureRow
 from webapp.keeping.signatures import SignOff
-from webapp.keeping.store import NotAllowedError
 from webapp.people import signing
 from webapp.people.settings import SignIn
 

@@ -14,10 +14,11 @@ from webapp.basis import Basis
 from webapp.busy import BusyError
 from webapp.computing import Latest
 from webapp.decisions import Decided
+from webapp.keeping.access import NotAllowedError, NotThereError
 from webapp.keeping.database import Database
 from webapp.keeping.records import GrantRow, PlanRow, ResultRow, WorkRow
 from webapp.keeping.results import KEPT, Results
-from webapp.keeping.store import NotAllowedError, NotThereError, Store
+from webapp.keeping.store import Store
 from webapp.keeping.work import CANCELLED, DONE, FAILED, UNDER_WAY, WAITING, Piece, WorkQueue
 from webapp.keeping.work_claims import MOST_ATTEMPTS, Claims
 from webapp.working import orders

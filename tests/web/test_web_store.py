@@ -14,9 +14,11 @@ from sqlalchemy import select, update
 from cant import limit_sets
 from cant.errors import FileError, InputError
 from webapp.decisions import as_text, limits_text
+from webapp.keeping.access import NotThereError
 from webapp.keeping.database import Database
+from webapp.keeping.kept_limits import KeptLimitsStore
 from webapp.keeping.records import Base, DecisionRow, FileRow, KeptLimitsRow, PlanRow
-from webapp.keeping.store import NotThereError, Store
+from webapp.keeping.store import Store
 
 
 @pytest.fixture
@@ -29,6 +31,11 @@ def database(database_url: str) -> Iterator[Database]:
 @pytest.fixture
 def store(database: Database) -> Store:
     return Store(database, keep_days=30)
+
+
+@pytest.fixture
+def shelf(database: Database) -> KeptLimitsStore:
+    return KeptLimitsStore(database, keep_days=30)
 
 
 def test_migrations_make_the_tables_of_the_records(database: Database) -> None:
@@ -100,9 +107,11 @@ def test_every_limit_set_survives_being_stored(store: Store) -> None:
         assert back.model_dump() == limits.model_dump()
 
 
-def test_expired_plans_are_gone_and_then_deleted(database: Database, store: Store) -> None:
+def test_expired_plans_are_gone_and_then_deleted(
+    database: Database, store: Store, shelf: KeptLimitsStore
+) -> None:
     old, young = (store.add("anna", name, b"x") for name in ("old.csv", "young.csv"))
-    store.keep_limits("anna", "mine", limit_sets.load("typical"))
+    shelf.keep("anna", "mine", limit_sets.load("typical"))
     past = datetime.now(UTC) - timedelta(seconds=1)
     with database.sessions.begin() as session:
         session.execute(update(PlanRow).where(PlanRow.address == old.address).values(expires=past))
@@ -110,7 +119,7 @@ def test_expired_plans_are_gone_and_then_deleted(database: Database, store: Stor
     with pytest.raises(NotThereError):
         store.plan("anna", old.address)
     assert [plan.address for plan in store.plans("anna")] == [young.address]
-    assert store.kept_limits("anna") == []
+    assert shelf.of("anna") == []
     assert store.remove_expired() == 1
     with database.sessions() as session:
         assert len(session.scalars(select(PlanRow)).all()) == 1
@@ -128,20 +137,20 @@ def test_every_change_starts_the_days_anew(database: Database, store: Store) -> 
     assert kept.expires - datetime.now(UTC) > timedelta(days=29)
 
 
-def test_kept_limits_are_the_owners_and_replaced_by_name(store: Store) -> None:
+def test_kept_limits_are_the_owners_and_replaced_by_name(shelf: KeptLimitsStore) -> None:
     typical = limit_sets.load("typical")
     edited = typical.model_copy(update={"edited": True})
-    store.keep_limits("anna", "mine", typical)
-    store.keep_limits("anna", "mine", edited)
-    kept = store.kept_limits("anna")
+    shelf.keep("anna", "mine", typical)
+    shelf.keep("anna", "mine", edited)
+    kept = shelf.of("anna")
     assert [(k.name, k.limits.model_dump()) for k in kept] == [("mine", edited.model_dump())]
-    assert store.kept_limits("bert") == []
-    store.forget_limits("bert", "mine")
-    assert store.kept_limits("anna")
-    store.forget_limits("anna", "mine")
-    assert store.kept_limits("anna") == []
+    assert shelf.of("bert") == []
+    shelf.forget("bert", "mine")
+    assert shelf.of("anna")
+    shelf.forget("anna", "mine")
+    assert shelf.of("anna") == []
     with pytest.raises(InputError, match="printable"):
-        store.keep_limits("anna", "a\x00b", typical)
+        shelf.keep("anna", "a\x00b", typical)
 
 
 def test_unusable_database_is_told_in_one_line(tmp_path: Path) -> None:

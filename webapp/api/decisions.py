@@ -14,7 +14,8 @@ from webapp.computing import Computed
 from webapp.context import computed_of, running, stored
 from webapp.decisions import CHANGE, as_text
 from webapp.history_view import decider, moments
-from webapp.keeping.store import NotThereError, StoredPlan
+from webapp.keeping.access import NotThereError
+from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
 from webapp.security import owner
 

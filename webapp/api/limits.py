@@ -8,7 +8,7 @@ from cant import limit_sets, service
 from cant.model.limits import LimitSet
 from webapp.api.models import LimitSetAnswer, LimitSetEntry, LimitSetList
 from webapp.api.operations import operation
-from webapp.keeping.store import NotThereError
+from webapp.keeping.access import NotThereError
 
 
 @operation("GET", "/limits", answer=LimitSetList, open=True)

@@ -13,7 +13,8 @@ from cant.model.plan import CurveRecord, Status
 from cant.model.settings import METHODS, Settings
 from cant.model.traffic import Traffic, TrainClass
 from cant.units import UNITS
-from webapp.keeping.store import Access, StoredPlan
+from webapp.keeping.access import Access
+from webapp.keeping.store import StoredPlan
 from webapp.keeping.work import Piece
 from webapp.working.orders import WORDS
 

@@ -10,7 +10,7 @@ from cant.model.plan import PlanDocument
 from webapp.api.models import CurvesAnswer, CurvesQuery, NumberedCurve
 from webapp.api.operations import operation
 from webapp.context import computed_of, document_of, stored, workbook_of
-from webapp.keeping.store import NotThereError
+from webapp.keeping.access import NotThereError
 from webapp.listing import Wanted
 
 XLSX = "application/vnd.openxmlformats-officedocument.spreadsheetml.sheet"

@@ -8,9 +8,9 @@ from sqlalchemy import delete, select, update
 from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session
 
+from webapp.keeping.access import find
 from webapp.keeping.database import Database
 from webapp.keeping.records import ResultRow
-from webapp.keeping.store import find
 
 KEPT_DAYS = 2
 USED_EVERY = timedelta(hours=1)

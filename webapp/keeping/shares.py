@@ -17,16 +17,10 @@ from sqlalchemy import ColumnElement, delete, func, or_, select
 from sqlalchemy.orm import QueryableAttribute, Session
 
 from cant.errors import InputError
+from webapp.keeping.access import Access, NotThereError, find
 from webapp.keeping.database import Database
 from webapp.keeping.records import GrantRow, PlanRow, ShareRow
-from webapp.keeping.store import (
-    Access,
-    NotThereError,
-    StoredPlan,
-    as_stored,
-    checked_name,
-    find,
-)
+from webapp.keeping.store import StoredPlan, as_stored, checked_name
 
 SECRET_BYTES = 24
 MOST_LINKS = 50

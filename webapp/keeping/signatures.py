@@ -14,10 +14,11 @@ from datetime import UTC, datetime, timedelta
 from sqlalchemy import delete, or_, select, update
 from sqlalchemy.orm import Session
 
+from webapp.keeping.access import Access, NotThereError, find
 from webapp.keeping.accounts import who_of
 from webapp.keeping.database import Database, one_at_a_time
 from webapp.keeping.records import GrantRow, PlanRow, SignatureRow
-from webapp.keeping.store import Access, NotThereError, StoredPlan, as_stored, find
+from webapp.keeping.store import StoredPlan, as_stored
 
 PREPARED, CHECKED, APPROVED = "prepared", "checked", "approved"
 SENT_BACK, HANDED_ON = "sent back", "handed on"

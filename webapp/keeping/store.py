@@ -1,26 +1,22 @@
-"""Plans and kept limits in the database: whose they are, who else may see them, how long they stay.
+"""Plans in the database: their files, the decisions on them, how long they stay.
 
-Every question names who asks, so that no caller can forget to: what belongs to somebody else and is not
-shared with him does not exist. A change is one transaction, whole or not at all.
+Every question names who asks, so that no caller can forget to (:mod:`webapp.keeping.access`). A change is one
+transaction, whole or not at all.
 """
 
 from __future__ import annotations
 
 import hashlib
-import json
 import secrets
 from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
-from enum import IntEnum
 
-from sqlalchemy import delete, func, or_, select
-from sqlalchemy.exc import IntegrityError
-from sqlalchemy.orm import Session
+from sqlalchemy import delete, func, select
 
-from cant.errors import CantError, InputError
-from cant.model.limits import LimitSet
-from webapp.decisions import KINDS, Decided, Decision, limits_from_plain, limits_text
+from cant.errors import InputError
+from webapp.decisions import KINDS, Decided, Decision
 from webapp.guarding.bounds import Bounds
+from webapp.keeping.access import Access, NotThereError, find
 from webapp.keeping.database import Database, one_at_a_time
 from webapp.keeping.records import (
     DecisionRow,
@@ -38,22 +34,6 @@ ADDRESS_BYTES = 24
 LONGEST_NAME = 80
 ACCOUNT = "account:"
 """With what the account of who has signed in begins, as owner of plans."""
-
-
-class Access(IntEnum):
-    """What somebody may do with a plan; each includes what stands before it."""
-
-    READ = 1
-    EDIT = 2
-    OWN = 3
-
-
-class NotThereError(CantError):
-    """No such plan for who asks: never made, deleted, expired, or somebody else's and not shared."""
-
-
-class NotAllowedError(CantError):
-    """A plan that who asks may see, but not do this with."""
 
 
 @dataclass(frozen=True)
@@ -100,17 +80,8 @@ class StoredPlan:
         return self.access is Access.OWN
 
 
-@dataclass(frozen=True)
-class KeptLimits:
-    """Limits kept under a name."""
-
-    name: str
-    limits: LimitSet
-    expires: datetime
-
-
 class Store:
-    """Plans and kept limits of all owners.
+    """Plans of all owners.
 
     Parameters
     ----------
@@ -268,42 +239,6 @@ class Store:
             self._database.clear_away()
         return count
 
-    def keep_limits(self, owner: str, name: str, limits: LimitSet) -> None:
-        """Keep limits under a name; the same name replaces what was there."""
-        name = checked_name(name)
-        now = datetime.now(UTC)
-        content = limits_text(limits)
-        try:
-            with self._database.sessions.begin() as session:
-                row = session.scalar(
-                    select(KeptLimitsRow).where(KeptLimitsRow.owner == owner, KeptLimitsRow.name == name)
-                )
-                if row is None:
-                    row = KeptLimitsRow(owner=owner, name=name)
-                    session.add(row)
-                row.content, row.changed, row.expires = content, now, now + 12 * self._keep
-        except IntegrityError as error:
-            message = f"limits named '{name}' were being kept at the same moment; try once more"
-            raise InputError(message) from error
-
-    def kept_limits(self, owner: str) -> list[KeptLimits]:
-        """Give the limits an owner keeps, by name."""
-        wanted = select(KeptLimitsRow).where(
-            KeptLimitsRow.owner == owner, KeptLimitsRow.expires > datetime.now(UTC)
-        )
-        with self._database.sessions() as session:
-            return [
-                KeptLimits(row.name, limits_from_plain(json.loads(row.content)), row.expires)
-                for row in session.scalars(wanted.order_by(KeptLimitsRow.name))
-            ]
-
-    def forget_limits(self, owner: str, name: str) -> None:
-        """Delete limits kept under a name; nothing happens where there are none."""
-        with self._database.sessions.begin() as session:
-            session.execute(
-                delete(KeptLimitsRow).where(KeptLimitsRow.owner == owner, KeptLimitsRow.name == name)
-            )
-
 
 def checked_name(name: str) -> str:
     """Give a name without blanks around it; InputError where it is blank, long or not printable."""
@@ -312,69 +247,6 @@ def checked_name(name: str) -> str:
         message = f"a name needs 1 to {LONGEST_NAME} printable characters"
         raise InputError(message)
     return name
-
-
-def find(
-    session: Session, who: str, address: str, need: Access = Access.READ, *, for_change: bool = False
-) -> tuple[PlanRow, Access]:
-    """Give a plan's row and what somebody may do with it.
-
-    Parameters
-    ----------
-    session : Session
-    who : str
-        Owner, or holder of a grant.
-    address : str
-    need : Access
-        The least that must be allowed.
-    for_change : bool
-        Lock the row until the transaction ends.
-
-    Raises
-    ------
-    NotThereError
-        No such plan for ``who``.
-    NotAllowedError
-        ``who`` may see it, but ``need`` is more.
-    """
-    now = datetime.now(UTC)
-    wanted = select(PlanRow).where(PlanRow.address == address, PlanRow.expires > now)
-    plan = session.scalar(wanted.with_for_update() if for_change else wanted)
-    access = None if plan is None else _access(session, plan, who, now)
-    if plan is None or access is None:
-        message = (
-            "there is no such plan here: it may have expired, been deleted, belong to somebody else, or no "
-            "longer be shared with you"
-        )
-        raise NotThereError(message)
-    check_access(access, need)
-    return plan, access
-
-
-def check_access(access: Access, need: Access) -> None:
-    """Refuse what is more than somebody may do with a plan; NotAllowedError."""
-    if access < need:
-        message = (
-            "this plan is shared with you to read; nothing of it can be changed"
-            if access is Access.READ and need is Access.EDIT
-            else "only who made this plan can do this with it"
-        )
-        raise NotAllowedError(message)
-
-
-def _access(session: Session, plan: PlanRow, who: str, now: datetime) -> Access | None:
-    if plan.owner == who:
-        return Access.OWN
-    granted = session.scalars(
-        select(GrantRow.may_edit).where(
-            GrantRow.plan_id == plan.id,
-            GrantRow.holder == who,
-            or_(GrantRow.expires.is_(None), GrantRow.expires > now),
-        )
-    ).all()
-    if not granted:
-        return None
-    return Access.EDIT if any(granted) else Access.READ
 
 
 def _account(owner: str) -> str:

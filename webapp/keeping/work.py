@@ -13,9 +13,9 @@ from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session, aliased
 
 from webapp.busy import BusyError
+from webapp.keeping.access import Access, NotAllowedError, NotThereError, find
 from webapp.keeping.database import Database
 from webapp.keeping.records import PlanRow, WorkRow
-from webapp.keeping.store import Access, NotAllowedError, NotThereError, find
 
 WAITING, UNDER_WAY, DONE, REFUSED, FAILED, CANCELLED = (
     "waiting",

@@ -15,6 +15,7 @@ from datetime import UTC, datetime
 from cant.errors import InputError
 from cant.model.signatures import Signature, Signatures
 from cant.version import __version__
+from webapp.keeping.access import NotAllowedError
 from webapp.keeping.accounts import Account
 from webapp.keeping.database import Database
 from webapp.keeping.signatures import (
@@ -29,7 +30,7 @@ from webapp.keeping.signatures import (
     SignOff,
     entries_at,
 )
-from webapp.keeping.store import NotAllowedError, StoredPlan
+from webapp.keeping.store import StoredPlan
 
 ROLE = {PREPARED: "prepare", CHECKED: "check", APPROVED: "approve"}
 ROLE_AFTER = {PREPARED: "check", CHECKED: "approve"}

@@ -18,8 +18,9 @@ from webapp.decisions import CHANGE, as_text
 from webapp.difference_view import page_of_difference, pair_words
 from webapp.going_on import carry_on
 from webapp.history_view import moment_of, moments, signed_by
+from webapp.keeping.access import NotThereError
 from webapp.keeping.shares import Shares
-from webapp.keeping.store import NotThereError, StoredPlan
+from webapp.keeping.store import StoredPlan
 from webapp.meanwhile import MeanwhileError
 from webapp.proposals import Proposal, at_moment, proposal_of
 from webapp.security import owner

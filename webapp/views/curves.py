@@ -14,7 +14,8 @@ from cant.explaining import CurveKey
 from webapp import curve_view, line_view, moving
 from webapp.computing import Computed
 from webapp.context import computed_of, current_measures, stored, unconfirmed
-from webapp.keeping.store import NotThereError, StoredPlan
+from webapp.keeping.access import NotThereError
+from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
 
 pages = Blueprint("curves", __name__, url_prefix="/plans/<address>")

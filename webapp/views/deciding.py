@@ -13,7 +13,8 @@ from webapp.context import computed_of, running, stored, unconfirmed
 from webapp.decisions import CHANGE, as_text
 from webapp.forms import Fields
 from webapp.history_view import moments, remembered_name, signed_by
-from webapp.keeping.store import NotThereError, StoredPlan
+from webapp.keeping.access import NotThereError
+from webapp.keeping.store import StoredPlan
 from webapp.meanwhile import MeanwhileError
 from webapp.measures import measures
 from webapp.proposals import Proposal

@@ -12,7 +12,7 @@ from cant.quantities.catalogue import CATALOGUE, SYMBOLS
 from cant.reading.columns import TABLES, columns_of
 from webapp import limits_form
 from webapp.context import current_measures
-from webapp.keeping.store import NotThereError
+from webapp.keeping.access import NotThereError
 
 pages = Blueprint("help", __name__, url_prefix="/help")
 

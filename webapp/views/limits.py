@@ -81,7 +81,7 @@ def _page(
         numbers=settings_form.NUMBERS,
         methods=METHODS,
         sets=[limit_sets.load(name) for name in limit_sets.names()],
-        kept=running().store.kept_limits(owner()),
+        kept=running().kept_limits.of(owner()),
         in_file=reading_of(plan).limits is not None,
         chosen=plan.decided.limits is not None,
         has_trains=(plan.decided.traffic or reading_of(plan).traffic) is not None,
@@ -131,7 +131,7 @@ def choose(address: str) -> ResponseReturnValue:
 def _found(source: str, name: str) -> LimitSet:
     if source == "set" and (found := service.limits_named(name)) is not None:
         return found
-    for kept in running().store.kept_limits(owner()) if source == "kept" else ():
+    for kept in running().kept_limits.of(owner()) if source == "kept" else ():
         if kept.name == name:
             return kept.limits
     message = "choose one of the limits on the page"
@@ -160,7 +160,7 @@ def change(address: str) -> ResponseReturnValue:
         name = request.form.get("keep-as", "").strip()
         if name:
             kept = limits.model_copy(update={"name": name})
-            running().store.keep_limits(owner(), name, kept)
+            running().kept_limits.keep(owner(), name, kept)
             flash(f"The limits are kept as '{name}' for your next plans.")
     except MeanwhileError as error:
         return _both(error, sent)
@@ -174,7 +174,7 @@ def change(address: str) -> ResponseReturnValue:
 def forget(address: str) -> ResponseReturnValue:
     """Delete limits kept under a name; plans that use them are not touched."""
     stored(address)
-    running().store.forget_limits(owner(), request.form.get("name", ""))
+    running().kept_limits.forget(owner(), request.form.get("name", ""))
     flash("The kept limits have been deleted; no plan has changed.")
     return redirect(url_for("limits.show", address=address), 303)
 

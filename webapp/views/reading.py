@@ -14,7 +14,8 @@ from webapp.access import to_change
 from webapp.context import read_as, reading_of, running, stored
 from webapp.decisions import as_text
 from webapp.history_view import remembered_name
-from webapp.keeping.store import NotAllowedError, NotThereError, StoredPlan
+from webapp.keeping.access import NotAllowedError, NotThereError
+from webapp.keeping.store import StoredPlan
 from webapp.meanwhile import MeanwhileError
 from webapp.security import owner
 from webapp.steps import Steps

@@ -8,9 +8,10 @@ from flask.typing import ResponseReturnValue
 from cant.errors import CantError, InputError
 from webapp.context import computed_of, running, stored, unconfirmed
 from webapp.forms import Fields
+from webapp.keeping.access import NotAllowedError
 from webapp.keeping.accounts import Account
 from webapp.keeping.signatures import SENT_BACK, SIGNED, Signable, SignOff
-from webapp.keeping.store import NotAllowedError, StoredPlan
+from webapp.keeping.store import StoredPlan
 from webapp.measures import measures
 from webapp.people import signing
 from webapp.people.events import tell

@@ -16,9 +16,9 @@ from cant.model.reading import Reading
 from cant.model.signatures import Signatures
 from cant.service import PlannedLine, Progress
 from webapp.computing import Computed
+from webapp.keeping.access import NotThereError
 from webapp.keeping.database import Database
 from webapp.keeping.results import Results
-from webapp.keeping.store import NotThereError
 from webapp.keeping.work import FAILED, REFUSED, Piece
 from webapp.keeping.work_claims import Claims
 from webapp.working.orders import DOCUMENT, PLAN, READING, WORDS, WORKBOOK, Order, program
