@@ -5,7 +5,9 @@ The rules are those of OWASP ASVS 5.0, level 2, chapter V6 (authentication); the
 
 from __future__ import annotations
 
+import contextlib
 import re
+import sqlite3
 import threading
 import unicodedata
 from collections.abc import Callable
@@ -20,6 +22,7 @@ from people_tools import (
     PASSWORD,
     code_at,
     cookie_of,
+    database_of,
     is_signed_in,
     made,
     people_of,
@@ -215,6 +218,23 @@ def test_failing_takes_the_same_work_and_says_the_same(office: Flask, counted: C
         answers.add(re.sub(r'name="name" value="[^"]*"', "", without_token(answer.text)))
     assert len(answers) == 1
     assert people.accounts.named("nobody") is None
+
+
+def test_a_try_is_written_down_whether_the_name_exists_or_not(house: Flask) -> None:
+    """V6.3.8: waiting for the disk is what takes long, and would tell which names are accounts."""
+    made(house, "waiting")
+    set_account(house, "waiting", locked_until=datetime.now(UTC) + timedelta(seconds=30), failed=9)
+    accounts, file = people_of(house).accounts, database_of(house).file
+    assert file is not None
+    with contextlib.closing(sqlite3.connect(file)) as watching:
+
+        def version() -> int:
+            return int(watching.execute("PRAGMA data_version").fetchone()[0])
+
+        for name in ("anna", "waiting", "nobody", ""):
+            before = version()
+            assert (accounts.count_try(name) is None) is (name != "anna")
+            assert version() != before, name
 
 
 def test_tries_slow_down_and_never_lock_for_good(office: Flask) -> None:

@@ -14,7 +14,7 @@ from pathlib import Path
 import pytest
 from flask import Flask
 from flask.testing import FlaskClient
-from sqlalchemy import select, update
+from sqlalchemy import select, text, update
 from web_tools import CURVES, Browser
 from werkzeug.test import TestResponse
 
@@ -357,6 +357,25 @@ def test_an_unforeseen_error_is_logged_without_the_address_asked_for(
     record = next(r for r in caplog.records if "failed, reference" in r.getMessage())
     assert "/plans/<address>/cants" in record.getMessage()
     assert plan not in record.getMessage()
+
+
+def test_an_unforeseen_error_of_the_database_is_logged_without_what_it_was_about(
+    start: Start, database_url: str, monkeypatch: pytest.MonkeyPatch, caplog: pytest.LogCaptureFixture
+) -> None:
+    app = start(database_url)
+    browser = Browser(app)
+    database = app.extensions[EXTENSION].database
+
+    def fails(_owner: str, name: str, data: bytes) -> None:
+        with database.sessions.begin() as session:
+            session.execute(text("INSERT INTO nowhere VALUES (:name, :data)"), {"name": name, "data": data})
+
+    monkeypatch.setattr(app.extensions[EXTENSION].store, "add", fails)
+    answer = browser.post("/plans", {"file": (io.BytesIO(ROW), "secret-name.csv")})
+    assert answer.status_code == 500
+    assert "nowhere" in caplog.text
+    assert "secret-name" not in caplog.text
+    assert "A,500,80" not in caplog.text
 
 
 def test_health_addresses_need_no_cookie_make_none_and_are_not_counted(start: Start) -> None:
