@@ -106,7 +106,7 @@ def create_app(config: Config | Mapping[str, Any] | None = None) -> Flask:
         used,
         database,
         store,
-        KeptLimitsStore(database, used.keep_days),
+        KeptLimitsStore(database, used.keep_days, store.room),
         computations,
         background,
         datetime.now(UTC),

@@ -179,6 +179,67 @@ def test_bounds_hold_when_two_come_at_once(start: Start, database_url: str) -> N
     assert len(refused) == 5
 
 
+def test_the_bound_of_all_holds_when_several_come_at_once(start: Start, database_url: str) -> None:
+    store: Store = start(database_url, bounds=Bounds(mb_in_all=1)).extensions[EXTENSION].store
+    together = threading.Barrier(8)
+    refused: list[FullError] = []
+
+    def add(owner: str) -> None:
+        together.wait()
+        try:
+            store.add(owner, "a.csv", b"x" * 400_000)
+        except FullError as error:
+            refused.append(error)
+
+    owners = [f"owner {n}" for n in range(8)]
+    threads = [threading.Thread(target=add, args=(owner,)) for owner in owners]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert sum(len(store.plans(owner)) for owner in owners) == 2
+    assert len(refused) == 6
+
+
+def test_decisions_and_kept_limits_have_no_room_without_end(start: Start, database_url: str) -> None:
+    app = start(database_url, bounds=Bounds(mb_decided_per_person=1))
+    browser = Browser(app)
+    rows = [{"quantity": "cant", "normal": 150, "unit": "mm", "note": "n" * 300} for _ in range(1000)]
+    plan = browser.client.post("/api/v1/plans", data={"file": (io.BytesIO(ROWS), "a.csv")}).json["address"]
+    codes = [
+        browser.client.put(
+            f"/api/v1/plans/{plan}/limits", json={"name": f"own {n}", "rows": rows}
+        ).status_code
+        for n in range(3)
+    ]
+    assert codes == [200, 507, 507]
+    assert browser.client.get(f"/api/v1/plans/{plan}").json["steps"] == 2
+    kept = app.extensions[EXTENSION].kept_limits
+    with browser.client.session_transaction() as session:
+        owner = session["owner"]
+    limits = app.extensions[EXTENSION].store.plan(owner, plan).decided.limits
+    with pytest.raises(FullError, match="kept limits"):
+        kept.keep(owner, "mine", limits)
+    kept.keep("somebody else", "mine", limits)
+    with pytest.raises(FullError):
+        kept.keep("somebody else", "mine too", limits)
+    kept.keep("somebody else", "mine", limits)
+    assert [one.name for one in kept.of("somebody else")] == ["mine"]
+    browser.post(f"/plans/{plan}/delete")
+    kept.keep(owner, "mine", limits)
+
+
+def test_a_full_disk_refuses_a_decision(start: Start, monkeypatch: pytest.MonkeyPatch) -> None:
+    browser = Browser(start())
+    plan = bring(browser)
+    monkeypatch.setattr(
+        "webapp.keeping.room.shutil.disk_usage", lambda _folder: SimpleNamespace(free=200_000_000)
+    )
+    path = plan.replace("/plans/", "/api/v1/plans/")
+    assert browser.client.put(f"{path}/settings", json={"method": "balanced"}).status_code == 507
+    assert browser.client.get(path).json["decided"] == []
+
+
 def test_decisions_at_the_same_moment_all_hold(start: Start, database_url: str) -> None:
     store: Store = start(database_url).extensions[EXTENSION].store
     plan = store.add("anna", "a.csv", b"x")

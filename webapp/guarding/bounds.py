@@ -36,6 +36,8 @@ class Bounds:
         Plans that one person keeps at the same time.
     mb_per_person : int
         Their files together [MB of 1e6 bytes].
+    mb_decided_per_person : int
+        The decisions on one person's plans and the limits that he keeps, together [MB].
     mb_in_all : int
         The files of everybody together [MB]; 0 is as much as the disk takes.
     mb_kept_free : int
@@ -63,6 +65,7 @@ class Bounds:
     wrong_plans_per_minute: int = 120
     plans_per_person: int = 200
     mb_per_person: int = 2_000
+    mb_decided_per_person: int = 50
     mb_in_all: int = 0
     mb_kept_free: int = 200
     computing_at_once: int = 0

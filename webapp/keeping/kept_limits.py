@@ -14,6 +14,7 @@ from cant.model.limits import LimitSet
 from webapp.decisions import limits_from_plain, limits_text
 from webapp.keeping.database import Database
 from webapp.keeping.records import KeptLimitsRow
+from webapp.keeping.room import Room
 from webapp.keeping.store import checked_name
 
 KEPT_FOR = 12
@@ -37,17 +38,21 @@ class KeptLimitsStore:
     database : Database
     keep_days : int
         Days after the last change until a plan is deleted; limits stay :data:`KEPT_FOR` times as long.
+    room : Room, optional
+        Room of the store.
     """
 
-    def __init__(self, database: Database, keep_days: int) -> None:
+    def __init__(self, database: Database, keep_days: int, room: Room | None = None) -> None:
         self._database = database
+        self._room = room or Room()
         self._keep = KEPT_FOR * timedelta(days=keep_days)
 
     def keep(self, owner: str, name: str, limits: LimitSet) -> None:
-        """Keep limits under a name; the same name replaces what was there."""
+        """Keep limits under a name, which replaces what had that name; FullError where there is no room."""
         name = checked_name(name)
         now = datetime.now(UTC)
         content = limits_text(limits)
+        self._room.check_disk(len(content))
         try:
             with self._database.sessions.begin() as session:
                 row = session.scalar(
@@ -57,6 +62,8 @@ class KeptLimitsStore:
                     row = KeptLimitsRow(owner=owner, name=name)
                     session.add(row)
                 row.content, row.changed, row.expires = content, now, now + self._keep
+                session.flush()
+                self._room.check_decided(session, owner)
         except IntegrityError as error:
             message = f"limits named '{name}' were being kept at the same moment; try once more"
             raise InputError(message) from error

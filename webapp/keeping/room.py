@@ -1,6 +1,7 @@
-"""Whether there is room for one more file: of its owner, in the store as a whole, and on the disk.
+"""Whether there is room for one more file or decision: of its owner, in the store as a whole, on the disk.
 
-Asked inside the transaction that stores the file, so that what does not fit leaves no trace.
+Asked inside the transaction that stores it, so that what does not fit leaves no trace. Decisions have a
+bound of their own, because all of a plan's are taken into memory whenever it is looked at.
 """
 
 from __future__ import annotations
@@ -14,7 +15,8 @@ from sqlalchemy.orm import Session
 
 from webapp.busy import FullError
 from webapp.guarding.bounds import Bounds
-from webapp.keeping.records import PlanRow
+from webapp.keeping.database import one_at_a_time
+from webapp.keeping.records import DecisionRow, KeptLimitsRow, PlanRow
 
 MB = 1_000_000
 WRITTEN_TIMES = 2
@@ -67,9 +69,23 @@ class Room:
             raise FullError(message)
         self._check_all(session)
 
+    def check_decided(self, session: Session, owner: str) -> None:
+        """Refuse where decisions on an owner's plans and limits that he keeps are too large; FullError."""
+        decided = select(func.sum(func.length(DecisionRow.content))).join(PlanRow)
+        kept = select(func.sum(func.length(KeptLimitsRow.content))).where(KeptLimitsRow.owner == owner)
+        size = (session.scalar(decided.where(PlanRow.owner == owner)) or 0) + (session.scalar(kept) or 0)
+        if size > self.bounds.mb_decided_per_person * MB:
+            message = (
+                "the decisions on the plans of who made this one, and the limits that he keeps, would be "
+                f"larger than {self.bounds.mb_decided_per_person} MB together, which is as much as one "
+                "person may keep; nothing has been stored: delete plans or kept limits that nobody needs"
+            )
+            raise FullError(message)
+
     def _check_all(self, session: Session) -> None:
         if not self.bounds.mb_in_all:
             return
+        one_at_a_time(session, "room of all")
         kept = session.scalar(select(func.coalesce(func.sum(PlanRow.file_size), 0))) or 0
         if kept > self.bounds.mb_in_all * MB:
             message = (

@@ -129,6 +129,7 @@ class Store:
             session.add(plan)
             session.flush()
             self.room.check(session, owner)
+            self.room.check_decided(session, owner)
             session.add(FileRow(plan_id=plan.id, data=data))
         return as_stored(plan)
 
@@ -169,7 +170,9 @@ class Store:
 
         Any decision starts the days until the plan expires anew. MeanwhileError where one would replace what
         came after the first ``known`` decisions of the plan, which are those that who decides has seen.
+        FullError where there is no room for them.
         """
+        self.room.check_disk(sum(map(len, decisions.values())))
         unknown = set(decisions) - set(KINDS)
         if unknown:
             message = f"unknown kind of decision: {', '.join(sorted(unknown))}"
@@ -199,6 +202,7 @@ class Store:
                 )
             plan.changed, plan.expires = now, now + self._keep
             session.flush()
+            self.room.check_decided(session, plan.owner)
             return as_stored(plan, access)
 
     def keep_longer(self, owner: str, address: str) -> StoredPlan:
