@@ -19,7 +19,7 @@ from webapp.keeping.database import Database
 from webapp.keeping.records import GrantRow, PlanRow, ResultRow, WorkRow
 from webapp.keeping.results import KEPT, Results
 from webapp.keeping.store import Store
-from webapp.keeping.work import CANCELLED, DONE, FAILED, UNDER_WAY, WAITING, Piece, WorkQueue
+from webapp.keeping.work import CANCELLED, DONE, FAILED, MOST_ENDED, UNDER_WAY, WAITING, Piece, WorkQueue
 from webapp.keeping.work_claims import MOST_ATTEMPTS, Claims
 from webapp.working import orders
 from webapp.working.orders import KINDS, QUICK, Order
@@ -157,6 +157,40 @@ def test_no_more_waits_than_may(database: Database, store: Store) -> None:
         ask(queue, store, "cora", "5")
     assert Claims(database).take(KINDS) is not None
     ask(queue, store, "cora", "6")
+
+
+def test_no_more_waits_than_may_where_many_ask_at_once(database: Database, store: Store) -> None:
+    queue = WorkQueue(database, per_person=3, in_all=30)
+    plan = store.add("anna", "line.csv", b"content")
+    together = threading.Barrier(12)
+    refused: list[BusyError] = []
+
+    def ask_for(key: str) -> None:
+        together.wait()
+        try:
+            queue.ask("anna", plan.address, "plan", key, "{}")
+        except BusyError as error:
+            refused.append(error)
+
+    threads = [threading.Thread(target=ask_for, args=(f"k{i}",)) for i in range(12)]
+    for thread in threads:
+        thread.start()
+    for thread in threads:
+        thread.join()
+    assert len(queue.of_plan("anna", plan.address)) == 3
+    assert len(refused) == 9
+
+
+def test_work_asked_for_and_cancelled_without_end_is_not_kept(
+    queue: WorkQueue, store: Store, database: Database
+) -> None:
+    address, open_one = ask(queue, store, "anna", "first")
+    for number in range(MOST_ENDED + 5):
+        last = queue.ask("anna", address, "plan", f"k{number}", "{}")
+        queue.cancel("anna", address, last.address)
+    known = queue.of_plan("anna", address)
+    assert len(known) == MOST_ENDED + 1
+    assert {open_one.id, last.id} <= {piece.id for piece in known}
 
 
 def test_cancelled_work_is_not_begun_and_stores_nothing(

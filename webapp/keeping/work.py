@@ -8,13 +8,13 @@ from dataclasses import dataclass
 from datetime import UTC, datetime, timedelta
 from typing import Any
 
-from sqlalchemy import ColumnElement, Select, func, select, update
+from sqlalchemy import ColumnElement, Select, delete, func, select, update
 from sqlalchemy.exc import IntegrityError
 from sqlalchemy.orm import Session, aliased
 
 from webapp.busy import BusyError
 from webapp.keeping.access import Access, NotAllowedError, NotThereError, find
-from webapp.keeping.database import Database
+from webapp.keeping.database import Database, one_at_a_time
 from webapp.keeping.records import PlanRow, WorkRow
 
 WAITING, UNDER_WAY, DONE, REFUSED, FAILED, CANCELLED = (
@@ -32,6 +32,8 @@ ADDRESS_BYTES = 15
 RECENTLY = timedelta(minutes=10)
 NOBODY_AFTER = timedelta(seconds=60)
 BUSY_RETRY_S = 30
+MOST_ENDED = 30
+"""Pieces of one plan that ended and are still known: each carries the decisions it was computed under."""
 
 
 @dataclass(frozen=True)
@@ -124,6 +126,7 @@ class WorkQueue:
                     return Piece.of(row)
                 self._check_room(session, who)
                 if row is None:
+                    _forget_old(session, plan_id)
                     row = WorkRow(plan_id=plan_id, key=key, kind=kind, content=content)
                     row.address = secrets.token_urlsafe(ADDRESS_BYTES)
                     session.add(row)
@@ -219,6 +222,7 @@ class WorkQueue:
             return Piece.of(row)
 
     def _check_room(self, session: Session, who: str) -> None:
+        one_at_a_time(session, "room in the queue")
         waiting = select(func.count()).where(WorkRow.state == WAITING)
         if (session.scalar(waiting.where(WorkRow.asked_by == who)) or 0) >= self._per_person:
             message = "As much of yours is waiting as may; cancel something, or come back when some is done."
@@ -259,6 +263,16 @@ def _find(session: Session, who: str, address: str, work: str, *, for_change: bo
         message = "there is no such work of this plan: it was done some days ago, or never asked for"
         raise NotThereError(message)
     return row
+
+
+def _forget_old(session: Session, plan_id: int) -> None:
+    """Delete what ended longest ago of a plan, so that no more is known of it than may."""
+    ended = select(WorkRow.id).where(WorkRow.plan_id == plan_id, WorkRow.state.not_in(OPEN))
+    old = session.scalars(
+        ended.order_by(WorkRow.ended.desc(), WorkRow.id.desc()).offset(MOST_ENDED - 1)
+    ).all()
+    if old:
+        session.execute(delete(WorkRow).where(WorkRow.id.in_(old)))
 
 
 def _begin_anew(row: WorkRow, who: str) -> None:
