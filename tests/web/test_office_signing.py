@@ -7,14 +7,15 @@ import json
 import re
 import threading
 from collections.abc import Callable
-from datetime import UTC, datetime
+from datetime import UTC, datetime, timedelta
 from typing import Any
 
 import pytest
 from flask import Flask
 from openpyxl import load_workbook
 from people_tools import PASSWORD, database_of, made, people_of, row_of, set_account, signed_in
-from sqlalchemy import delete, select
+from sharing_tools import opened, share
+from sqlalchemy import delete, select, update
 from test_web_guards import PAGES, POSTS
 from web_tools import TRAINS, Browser
 from work_tools import EVERYTHING, work_off, worked
@@ -222,6 +223,21 @@ def test_who_may_change_a_plan_does_not_check_it(office: Flask, crew: Crew, plan
     answer = sign(dora, plan)
     assert answer.status_code == 403
     assert "does not sign it as checked" in answer.text
+
+
+def test_who_may_change_a_plan_no_more_does_not_sign_it_as_prepared(
+    office: Flask, crew: Crew, plan: str
+) -> None:
+    """Until an expired link is cleared away its grant is still there; it lets nobody sign."""
+    link, other = share(crew["anna"], plan, "edit"), share(crew["anna"], plan, "read")
+    opened(opened(crew["dora"], link), other)
+    with database_of(office).sessions.begin() as session:
+        past = datetime.now(UTC) - timedelta(minutes=1)
+        session.execute(update(GrantRow).where(GrantRow.may_edit.is_(True)).values(expires=past))
+    answer = sign(crew["dora"], plan, number_of(office, "bo"))
+    assert answer.status_code == 403
+    assert "Only who may change a plan" in answer.text
+    assert sign(crew["anna"], plan, number_of(office, "bo")).status_code == 303
 
 
 def test_who_has_decided_on_a_plan_does_not_check_it_later(office: Flask, crew: Crew, plan: str) -> None:

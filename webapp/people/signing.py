@@ -169,9 +169,7 @@ def why_not_sign(signable: Signable, who: Account) -> str:
     if ROLE[step] not in who.roles:
         return f"your account does not have the role to {ROLE[step]}"
     if step == PREPARED:
-        return (
-            "" if who.who in signable.editors else "only who may change a plan signs that he has prepared it"
-        )
+        return "" if signable.plan.may_edit else "only who may change a plan signs that he has prepared it"
     if any(one.account_id == who.id for one in standing.holding.values()):
         return f"who has signed a plan already does not sign it as {step} as well"
     if who.who in signable.editors | {decision.account for decision in signable.plan.history}:
