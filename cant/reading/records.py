@@ -8,6 +8,7 @@ from __future__ import annotations
 
 from collections.abc import Iterator
 from dataclasses import dataclass
+from itertools import islice
 
 from cant.errors import InputError, Place
 from cant.files.grid import CellError, Sheet, Uncalculated, Value
@@ -94,6 +95,8 @@ class Cell:
 
 
 Record = dict[str, Cell]
+MOST_ROWS = {"traffic": 5_000, "limits": 5_000, "turnouts": 50_000}
+"""Rows of each table: far more than any railway has; what has more is a file that was taken for another."""
 
 
 @dataclass(frozen=True)
@@ -127,7 +130,7 @@ def read_records(sheet: Sheet, file: str, table: str, may_be_empty: bool = False
     Raises
     ------
     InputError
-        No header, a required heading missing or a heading twice, an unknown unit, no row.
+        No header, a required heading missing or a heading twice, an unknown unit, no row, too many rows.
     """
     header = find_header_row(sheet, table)
     place = Place(file, sheet.name)
@@ -138,12 +141,17 @@ def read_records(sheet: Sheet, file: str, table: str, may_be_empty: bool = False
         )
         raise InputError(message, place)
     columns, unknown = _columns(sheet, header, table, place)
+    most = MOST_ROWS[table]
+    numbers = list(islice(_data_rows(sheet, header, [c.index for c in columns]), most + 1))
+    if len(numbers) > most:
+        message = f"the {table} table has more than {most} rows, which is as many as are read"
+        raise InputError(message, place.at(numbers[-1]))
     records = [
         {
             c.meaning: Cell(sheet.value(row, c.index), place.at(row, c.index), c.heading, c.unit)
             for c in columns
         }
-        for row in _data_rows(sheet, header, [c.index for c in columns])
+        for row in numbers
     ]
     if not records and not may_be_empty:
         message = f"the {table} table is empty: it needs at least one row below its headings"

@@ -9,6 +9,8 @@ from cant.reading.records import Cell, Record, RecordTable, read_records
 from cant.reading.text import fold
 from cant.reading.words import lexicon
 
+MOST_CLASSES = 200
+
 
 def read_traffic(sheet: Sheet, file: str) -> tuple[Traffic, RecordTable]:
     """Read the traffic table of a sheet.
@@ -17,7 +19,7 @@ def read_traffic(sheet: Sheet, file: str) -> tuple[Traffic, RecordTable]:
     ------
     InputError
         A heading or unit that is not known, no row, a class without name or category, a negative value, the
-        same class twice for the same line and track.
+        same class twice for the same line and track, too many classes.
     """
     table = read_records(sheet, file, "traffic")
     rows = [_train_class(record) for record in table.records]
@@ -30,6 +32,11 @@ def read_traffic(sheet: Sheet, file: str) -> tuple[Traffic, RecordTable]:
             message = f"class '{row.name}' is there twice{where} (row {first} too); each belongs there once"
             raise InputError(message, row.place)
         seen[key] = row
+    if len({name for name, _, _ in seen}) > MOST_CLASSES:
+        message = (
+            f"the traffic table has more than {MOST_CLASSES} classes, which is as many as are planned for"
+        )
+        raise InputError(message, rows[-1].place)
     return Traffic.of(rows), table
 
 

@@ -13,6 +13,7 @@ from cant.files.grid import CellError, Sheet, Uncalculated, Value, Workbook
 from cant.model.curves import DOES_NOT_RUN
 from cant.reading import read_frames, read_workbook, sheet_from_frame
 from cant.reading.limits import read_limits
+from cant.reading.records import MOST_ROWS
 from cant.reading.settings import read_settings, settings_from_mapping
 from cant.reading.traffic import read_traffic
 from cant.reading.turnouts import read_turnouts
@@ -76,6 +77,35 @@ def test_traffic_in_its_units() -> None:
     assert (local.line, local.track) == ("A", "1")
     assert (ore.category, ore.speed_kmh, ore.regular) == ("mineral", 0.0, True)
     assert str(ore.place) == "line.xlsx, sheet 'Traffic', cell A5"
+
+
+@pytest.mark.parametrize("table", ["traffic", "limits", "turnouts"])
+def test_a_table_without_end_is_refused_before_its_rows_are_read(
+    table: str, monkeypatch: pytest.MonkeyPatch
+) -> None:
+    turnouts: list[list[Value]] = [
+        ["Turnout", "Curve", "Radius on the straight", "Hand", "Branch speed"],
+        ["T1", "1", 300.0, "L", 40.0],
+    ]
+    rows = {"traffic": TRAFFIC, "limits": LIMITS, "turnouts": turnouts}[table]
+    read = {"traffic": read_traffic, "limits": read_limits, "turnouts": read_turnouts}[table]
+    most = MOST_ROWS[table]
+    assert 5_000 <= most <= 50_000
+    monkeypatch.setattr("cant.reading.records.Cell", None)  # no record is made of any row
+    filling = rows[-1:] * (most + 1)
+    with pytest.raises(InputError, match=f"the {table} table has more than {most} rows") as caught:
+        read(Sheet(table, [rows[0], *filling]), "line.xlsx")
+    assert caught.value.place is not None
+    assert caught.value.place.row == most + 2
+
+
+def test_more_classes_than_are_planned_for_are_refused() -> None:
+    head: list[Value] = ["Class", "Category", "Speed", "Track"]
+    many: list[list[Value]] = [[f"C{n % 200}", "freight", 80.0, str(n // 200)] for n in range(400)]
+    traffic, _ = read_traffic(Sheet("Traffic", [head, *many]), "line.xlsx")
+    assert len(traffic.rows) == 400
+    with pytest.raises(InputError, match="more than 200 classes"):
+        read_traffic(Sheet("Traffic", [head, *many, ["C200", "freight", 80.0, None]]), "line.xlsx")
 
 
 def test_limits_as_stated() -> None:

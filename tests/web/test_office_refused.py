@@ -183,6 +183,27 @@ def test_what_is_too_large_is_refused(start: Start) -> None:
     assert len(browser.get("/api/v1/plans").json["plans"]) == 1
 
 
+@pytest.mark.parametrize("table", ["traffic", "limits"])
+def test_a_small_file_with_a_table_without_end_is_refused(service: Flask, table: str) -> None:
+    """Trains and limits are read while the request waits, however many of them a file names."""
+    head, row = {
+        "traffic": ("Class,Category,Speed", "C%d,freight,80"),
+        "limits": ("Quantity,Normal,Unit,Note", "cant,150,mm,%d"),
+    }[table]
+    data = "\n".join([head, *(row % n for n in range(6_000))]).encode()
+    assert len(data) < 200_000
+    browser = Browser(service)
+    plan = bring(browser)
+    sent = {"file": (io.BytesIO(ROWS.encode()), "a.csv"), table: (io.BytesIO(data), "b.csv")}
+    answer = browser.client.post("/api/v1/plans", data=sent)
+    assert answer.status_code == 422
+    assert "more than 5000 rows" in answer.json["error"]["message"]
+    page = "trains" if table == "traffic" else "limits"
+    answer = browser.post(f"{plan}/{page}/file", {"file": (io.BytesIO(data), "b.csv")})
+    assert answer.status_code == 422
+    assert "more than 5000 rows" in answer.text
+
+
 def test_xml_that_grows_without_end_is_refused_at_once(browser: Browser) -> None:
     entities = '<!ENTITY a "ha">' + "".join(
         f'<!ENTITY {chr(98 + n)} "{f"&{chr(97 + n)};" * 10}">' for n in range(12)
