@@ -6,7 +6,6 @@ import os
 import shutil
 import subprocess
 import tempfile
-import threading
 from collections.abc import Callable, Iterator
 from pathlib import Path
 from typing import Any
@@ -18,8 +17,7 @@ from people_tools import made
 from playwright.sync_api import Browser as Chromium
 from playwright.sync_api import BrowserContext, sync_playwright
 from screen_tools import ARGUMENTS, SCREENS, Visit, Visitor
-from waitress.server import create_server
-from web_tools import CURVES, Browser
+from web_tools import CURVES, Browser, served
 
 from webapp.app import create_app
 from webapp.config import Config
@@ -136,12 +134,8 @@ def chromium() -> Iterator[Chromium]:
 @pytest.fixture
 def address(start: Callable[..., Flask]) -> Iterator[str]:
     """Run the service in this process, on a port of its own."""
-    server: Any = create_server(start(), host="127.0.0.1", port=0, threads=4)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    yield f"http://127.0.0.1:{server.effective_port}"
-    server.close()
-    thread.join(timeout=10)
+    with served(start()) as address:
+        yield address
 
 
 @pytest.fixture

@@ -4,7 +4,6 @@ from __future__ import annotations
 
 import re
 import socket
-import threading
 from collections.abc import Callable
 from typing import Any
 
@@ -16,8 +15,7 @@ from people_tools import (
     row_of,
 )
 from sqlalchemy import select
-from waitress.server import create_server
-from web_tools import Browser
+from web_tools import Browser, served
 
 from webapp.keeping.records import AccountRow, PlanRow
 from webapp.people.settings import SignIn
@@ -135,29 +133,24 @@ def test_name_in_utf8_is_read(start: Start) -> None:
 def test_header_sent_twice_or_with_an_underscore_is_not_believed(start: Start) -> None:
     """On the wire, through the server that the service runs."""
     house = start(sign_in=PROXY)
-    server: Any = create_server(house, host="127.0.0.1", port=0, threads=2)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
 
     def status(*headers: str) -> int:
-        lines = ["GET /account HTTP/1.1", f"Host: 127.0.0.1:{server.effective_port}", "Connection: close"]
-        with socket.create_connection(("127.0.0.1", server.effective_port), timeout=10) as wire:
+        lines = ["GET /account HTTP/1.1", f"Host: 127.0.0.1:{port}", "Connection: close"]
+        with socket.create_connection(("127.0.0.1", port), timeout=10) as wire:
             wire.sendall("\r\n".join([*lines, *headers, "", ""]).encode())
             answer = b""
             while piece := wire.recv(65536):
                 answer += piece
         return int(answer.split()[1])
 
-    try:
+    with served(house, threads=2) as address:
+        port = int(address.rsplit(":", 1)[1])
         assert status("X-Remote-User: anna") == 200
         assert status("x-remote-user: anna", "X-Remote-User: bert") == 403
         assert status("X_Remote_User: anna") == 401
         assert status("X-Remote-User: anna", "X_Remote_User: root") == 200
         assert people_of(house).accounts.named("root") is None
         assert people_of(house).accounts.named("bert") is None
-    finally:
-        server.close()
-        thread.join(timeout=10)
 
 
 def test_form_for_somebody_the_proxy_names_needs_its_token(start: Start) -> None:

@@ -4,10 +4,8 @@ from __future__ import annotations
 
 import io
 import re
-import threading
 from collections.abc import Callable, Iterator
 from datetime import UTC, datetime, timedelta
-from typing import Any
 
 import openpyxl
 import pytest
@@ -18,7 +16,7 @@ from playwright.sync_api import Browser as Chromium
 from playwright.sync_api import Page
 from screen_tools import SCREENS, Visitor
 from test_web_browser import RULES, SERIOUS
-from waitress.server import create_server
+from web_tools import served
 
 from webapp.people import passwords
 from webapp.people.settings import SignIn
@@ -35,12 +33,8 @@ def house_at(start: Callable[..., Flask]) -> Iterator[tuple[Flask, str]]:
     people_of(app).accounts.add("anna", "Anna Holt", ["prepare"], passwords.hashed(FIRST), soon)
     made(app, "bo", ["check"], "Bo Lind")
     made(app, "cleo", ["approve"], "Cleo Marsh")
-    server: Any = create_server(app, host="127.0.0.1", port=0, threads=4)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    yield app, f"http://127.0.0.1:{server.effective_port}"
-    server.close()
-    thread.join(timeout=10)
+    with served(app) as address:
+        yield app, address
 
 
 @pytest.fixture(params=SCREENS)

@@ -2,15 +2,13 @@
 
 from __future__ import annotations
 
-import threading
 from collections.abc import Callable, Iterator
-from typing import Any
 
 import pytest
 from axe_playwright_python.sync_playwright import Axe
 from flask import Flask
 from screen_tools import Visit
-from waitress.server import create_server
+from web_tools import served
 from work_tools import EVERYTHING, parts_of, work_off
 
 from webapp.keeping.work_claims import Claims
@@ -28,12 +26,8 @@ def long(start: Callable[..., Flask]) -> Flask:
 @pytest.fixture
 def address(long: Flask) -> Iterator[str]:
     """Run a service in which every list is long, in this process; nobody works unless a test does."""
-    server: Any = create_server(long, host="127.0.0.1", port=0, threads=4)
-    thread = threading.Thread(target=server.run, daemon=True)
-    thread.start()
-    yield f"http://127.0.0.1:{server.effective_port}"
-    server.close()
-    thread.join(timeout=10)
+    with served(long) as address:
+        yield address
 
 
 def test_progress_is_shown_and_the_page_goes_on(visit: Visit, long: Flask) -> None:

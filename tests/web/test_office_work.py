@@ -20,7 +20,7 @@ from webapp.keeping.records import GrantRow, PlanRow, ResultRow, WorkRow
 from webapp.keeping.results import KEPT, Results
 from webapp.keeping.store import Store
 from webapp.keeping.work import CANCELLED, DONE, FAILED, MOST_ENDED, UNDER_WAY, WAITING, Piece, WorkQueue
-from webapp.keeping.work_claims import MOST_ATTEMPTS, Claims
+from webapp.keeping.work_claims import MOST_ATTEMPTS, MOST_LOSSES, Claims
 from webapp.working import orders
 from webapp.working.orders import KINDS, QUICK, Order
 from webapp.working.sealing import Seal, pack, unpack
@@ -261,12 +261,25 @@ def test_work_that_kills_its_workers_is_given_up(
     assert claims.take(KINDS) is None
     known = queue.of_plan("anna", address)[0]
     assert known.state == FAILED
-    assert "3 times" in known.message
+    assert "several times" in known.message
     assert queue.again("anna", address, known.address).attempts == 0
     piece = claims.take(KINDS)
     assert piece is not None
     claims.give_back(piece, counts=False)
     assert queue.of_plan("anna", address)[0].attempts == 0, "an orderly stop is no attempt"
+
+
+def test_work_lost_with_its_worker_is_taken_up_more_often_before_it_is_given_up(
+    queue: WorkQueue, claims: Claims, store: Store, database: Database
+) -> None:
+    address, _ = ask(queue, store, "anna", "1")
+    for _ in range(MOST_LOSSES):
+        piece = claims.take(KINDS)
+        assert piece is not None
+        be_silent(database, piece)
+        claims.find_lost()
+    assert claims.take(KINDS) is None
+    assert queue.of_plan("anna", address)[0].state == FAILED
 
 
 def test_a_plan_deleted_during_its_work_leaves_nothing(

@@ -2,13 +2,17 @@
 
 from __future__ import annotations
 
+import contextlib
 import re
+import threading
+from collections.abc import Iterator
 from html.parser import HTMLParser
 from pathlib import Path
 from typing import Any
 
 from flask import Flask
 from flask.testing import FlaskClient
+from waitress.server import create_server
 from werkzeug.test import TestResponse
 
 TOKEN = re.compile(r'name="token" value="([^"]+)"')
@@ -72,6 +76,27 @@ TRAINS: dict[str, str] = {
     "1-regular": "yes",
 }
 """A traffic form as a person fills it in, one number with a decimal comma."""
+
+
+@contextlib.contextmanager
+def served(app: Flask, threads: int = 4) -> Iterator[str]:
+    """Run a service in this process on a port of its own; give its address."""
+    server: Any = create_server(app, host="127.0.0.1", port=0, threads=threads)
+    closing = threading.Event()
+
+    def run() -> None:
+        try:
+            server.run()
+        except OSError:
+            if not closing.is_set():  # closed under its own eyes
+                raise
+
+    thread = threading.Thread(target=run, daemon=True)
+    thread.start()
+    yield f"http://127.0.0.1:{server.effective_port}"
+    closing.set()
+    server.close()
+    thread.join(timeout=10)
 
 
 class FormFields(HTMLParser):

@@ -23,10 +23,13 @@ from webapp.keeping.work import DONE, FAILED, OPEN, UNDER_WAY, WAITING, Piece, i
 LOST_AFTER = timedelta(seconds=15)
 ENDED_KEPT = timedelta(days=2)
 MOST_ATTEMPTS = 3
+"""Times a piece may end its own process."""
+MOST_LOSSES = 10
+"""Times a piece may be lost with its worker: that is mostly not its own fault, such as a service killed."""
 TRIES = 8
 NAME_BYTES = 12
 GIVEN_UP = (
-    f"The work ended {MOST_ATTEMPTS} times without a result and without saying why. "
+    "The work ended several times without a result and without saying why. "
     "Who runs this service finds more in its log."
 )
 
@@ -108,7 +111,7 @@ class Claims:
         with self._database.sessions() as session:
             if session.scalar(select(WorkRow.id).where(*lost).limit(1)) is None:
                 return
-        often = WorkRow.attempts >= MOST_ATTEMPTS
+        often = WorkRow.attempts >= MOST_LOSSES
         given_up = {"state": FAILED, "message": GIVEN_UP, "ended": datetime.now(UTC), "worker": ""}
         with self._database.sessions.begin() as session:
             _changed(session, (*lost, often), given_up)

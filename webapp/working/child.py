@@ -20,6 +20,7 @@ from webapp.working.doing import Doing
 
 OUT_OF_MEMORY = 71
 ALONE = 72
+SPARE_BYTES = 32_000_000
 LOOK_S = 0.5
 TOLD_EVERY_S = 0.3
 
@@ -60,9 +61,22 @@ def run_piece(
         doing.do(piece, tell)
     except MemoryError:
         os._exit(OUT_OF_MEMORY)
+    except Exception:
+        if _is_full():  # a thread that cannot start, a library that cannot be loaded: also want of memory
+            os._exit(OUT_OF_MEMORY)
+        raise
     finally:
         database.close()
     sys.exit(0)
+
+
+def _is_full() -> bool:
+    """Tell whether the memory that this process may take is used up."""
+    try:
+        bytearray(SPARE_BYTES)
+    except MemoryError:
+        return True
+    return False
 
 
 def _end_with(parent: int) -> None:
