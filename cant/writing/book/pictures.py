@@ -46,12 +46,17 @@ class Pictures:
         self._names = names
         self._sheet = book.table(names[0])
         self._groups: dict[tuple[str, str], list[tuple[float, list[Cell]]]] = {}
+        self._counted: dict[tuple[str, str], int] = {}
 
     def add(self, record: Record) -> None:
         """Take a curve."""
         if record["recommended_cant_mm"] is None:
             return
         key = (record["line"], record["track"])
+        if key not in self._groups and (key in self._counted or self._is_full()):
+            # Nothing of this track will be shown: its curves are counted as those of others are.
+            self._counted[key] = min(self._counted.get(key, 0) + 1, STRETCH * MOST_STRETCHES)
+            return
         group = self._groups.setdefault(key, [])
         if len(group) >= STRETCH * MOST_STRETCHES:
             return
@@ -72,6 +77,10 @@ class Pictures:
         row: list[Cell] = [record["curve"], self._display["chainage"].value(middle), *values]
         group.append((float("inf") if middle is None else middle, [*row, curvature, *unbalanced]))
 
+    def _is_full(self) -> bool:
+        """Tell whether the tracks so far have as many stretches as are shown."""
+        return sum(-(-len(group) // STRETCH) for group in self._groups.values()) >= MOST_STRETCHES
+
     def _unbalanced(self, entry: Record) -> float | None:
         if entry["deficiency_mm"] is None:
             return None
@@ -82,7 +91,7 @@ class Pictures:
         data = self._book.table(self._names[1])
         data.header(self._heads(), keep=3)
         shown = 0
-        left = 0
+        left = sum(self._counted.values())
         for (line, track), group in self._groups.items():
             group.sort(key=lambda entry: entry[0])
             for begin in range(0, len(group), STRETCH):
