@@ -12,6 +12,8 @@ from dataclasses import dataclass, field
 from webapp.measures import Measures
 
 LONGEST_TEXT = 300
+LARGEST = 1e8
+"""No number of a plan is larger, in any unit; one that is much larger cannot be computed with."""
 
 
 @dataclass
@@ -82,6 +84,8 @@ class Fields:
             other = ", or the word none" if unlimited else ""
             self.problems[name] = f"'{text[:40]}' is not a number; write one such as 95 or 1.25{other}"
             return None
+        if abs(value) > LARGEST:
+            self.problems[name] = f"must be below {LARGEST:.0f}"
         if lowest is not None and value < lowest:
             self.problems[name] = f"may not be below {lowest:g}"
         if above is not None and value <= above:

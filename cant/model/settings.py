@@ -17,8 +17,10 @@ EXCEPTIONAL_TIER = "exceptional"
 METHODS: tuple[str, ...] = ("rms", "fraction", "balanced", "least", "underbalance", "today")
 """Names of the methods that give a curve its target cant (:mod:`cant.planning.targets`)."""
 
-Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
-NonNegative = Annotated[float, Field(ge=0, allow_inf_nan=False)]
+LARGEST_TOLERANCE_MM = 1000.0
+RailSpacing = Annotated[float, Field(ge=300, le=3000, allow_inf_nan=False)]
+Constant = Annotated[float, Field(ge=1, le=40, allow_inf_nan=False)]
+Tolerance = Annotated[float, Field(ge=0, le=LARGEST_TOLERANCE_MM, allow_inf_nan=False)]
 Share = Annotated[float, Field(gt=0, le=1, allow_inf_nan=False)]
 
 
@@ -54,15 +56,15 @@ class Settings(BaseModel):
 
     model_config = ConfigDict(frozen=True)
 
-    rail_spacing_mm: Positive | None = None
-    equilibrium_constant: Positive | None = None
+    rail_spacing_mm: RailSpacing | None = None
+    equilibrium_constant: Constant | None = None
     method: str = "rms"
     tiers: tuple[str, ...] = (NORMAL_TIER,)
-    keep_within_mm: NonNegative = 0.0
-    maintenance_allowance_mm: NonNegative | None = None
+    keep_within_mm: Tolerance = 0.0
+    maintenance_allowance_mm: Tolerance | None = None
     fraction_of_fastest: Share = 0.65
-    underbalance_mm: NonNegative = 25.0
-    today_within_mm: NonNegative = 20.0
+    underbalance_mm: Tolerance = 25.0
+    today_within_mm: Tolerance = 20.0
     units: str = "metric"
 
     def with_standard(self, rail_spacing_mm: float | None, equilibrium_constant: float | None) -> Settings:

@@ -61,13 +61,20 @@ class Cell:
 
     def _number_and_unit(self) -> tuple[float, Unit | None]:
         if isinstance(self.value, float | int) and not isinstance(self.value, bool):
+            self._refuse_absurd(float(self.value))
             return float(self.value), None
         self.refuse_errors()
         found = parse_quantity(self.text) if isinstance(self.value, str) else None
         if found is None or found[2]:
             message = f"'{self.text}' stands under '{self.heading}' where a number belongs"
             raise InputError(message, self.place)
+        self._refuse_absurd(found[0])
         return found[0], found[1]
+
+    def _refuse_absurd(self, value: float) -> None:
+        if not abs(value) <= LARGEST:
+            message = f"'{self.text}' of '{self.heading}' is not possible; it is a number up to {LARGEST:.0f}"
+            raise InputError(message, self.place)
 
     def refuse_errors(self) -> None:
         """Raise InputError where the cell holds an error value or a formula without a value."""
@@ -95,6 +102,8 @@ class Cell:
 
 
 Record = dict[str, Cell]
+LARGEST = 1e8
+"""No number of these tables is larger, in any unit; one that is much larger cannot be computed with."""
 MOST_ROWS = {"traffic": 5_000, "limits": 5_000, "turnouts": 50_000}
 """Rows of each table: far more than any railway has; what has more is a file that was taken for another."""
 

@@ -9,7 +9,7 @@ from typing import Any
 from cant.errors import InputError, Place
 from cant.files.grid import Sheet, Value
 from cant.model.reading import ColumnReading, SheetReading
-from cant.model.settings import EXCEPTIONAL_TIER, METHODS, NORMAL_TIER, Settings
+from cant.model.settings import EXCEPTIONAL_TIER, LARGEST_TOLERANCE_MM, METHODS, NORMAL_TIER, Settings
 from cant.reading.headings import split_unit
 from cant.reading.numbers import parse_number, parse_quantity
 from cant.reading.records import find_header_row, is_example
@@ -134,8 +134,9 @@ def _length(text: str, name: str, place: Place, methods: Sequence[str]) -> float
         message = f"'{text}' is no length; {name} is given in mm"
         raise InputError(message, place)
     result = value * ratio(symbol, "mm") if symbol else value
-    if result < 0 or (name == "Rail spacing" and not 300 <= result <= 3000):
-        right = "between 300 and 3000 mm" if name == "Rail spacing" else "0 mm or more"
+    low, high = (300.0, 3000.0) if name == "Rail spacing" else (0.0, LARGEST_TOLERANCE_MM)
+    if not low <= result <= high:
+        right = f"between {low:g} and {high:g} mm"
         message = f"'{text}' is not possible; {name} is {right}"
         raise InputError(message, place)
     return result

@@ -108,6 +108,18 @@ def test_more_classes_than_are_planned_for_are_refused() -> None:
         read_traffic(Sheet("Traffic", [head, *many, ["C200", "freight", 80.0, None]]), "line.xlsx")
 
 
+@pytest.mark.parametrize("value", [1e9, -1e308, "1e308"])
+def test_a_number_that_cannot_be_computed_with_is_refused(value: Value) -> None:
+    traffic: list[list[Value]] = [["Class", "Category", "Roll coefficient"], ["Fast", "passenger", value]]
+    with pytest.raises(InputError, match="not possible; it is a number up to 100000000"):
+        read_traffic(Sheet("Traffic", traffic), "line.xlsx")
+    limits: list[list[Value]] = [["Quantity", "Normal", "Unit"], ["cant gradient", value, "mm/m"]]
+    with pytest.raises(InputError, match="not possible; it is a number up to 100000000"):
+        read_limits(Sheet("Limits", limits), "line.xlsx")
+    with pytest.raises(InputError, match="between 0 and 1000 mm"):
+        settings_from_mapping({"Underbalance": value})
+
+
 def test_limits_as_stated() -> None:
     limits, _ = read_limits(Sheet("Limits", LIMITS), "line.xlsx")
     cant, deficiency, felt, gradient, excess = limits.rows

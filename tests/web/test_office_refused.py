@@ -204,6 +204,52 @@ def test_a_small_file_with_a_table_without_end_is_refused(service: Flask, table:
     assert "more than 5000 rows" in answer.text
 
 
+TRAIN = {"name": "Local", "category": "passenger", "speed_kmh": 90}
+RULE = {"quantity": "cant gradient", "normal": 2, "unit": "mm/m"}
+
+
+@pytest.mark.parametrize(
+    ("path", "body"),
+    [
+        ("settings", {"rail_spacing_mm": 5e-324}),
+        ("settings", {"rail_spacing_mm": 1e308}),
+        ("settings", {"equilibrium_constant": 1e-300}),
+        ("settings", {"underbalance_mm": 1e308}),
+        ("settings", {"maintenance_allowance_mm": 1e308}),
+        ("traffic", {"rows": [{**TRAIN, "roll_coefficient": 1e308}]}),
+        ("traffic", {"rows": [{**TRAIN, "mass_t": 1e308}]}),
+        ("limits", {"name": "own", "rows": [{**RULE, "normal": -1e308}]}),
+        ("limits", {"name": "own", "rows": [{**RULE, "exceptional": 1e308}]}),
+        ("limits", {"name": "own", "rows": [{**RULE, "per_metre_of_radius": 1e308}]}),
+    ],
+)
+def test_a_number_that_cannot_be_computed_with_is_refused(
+    browser: Browser, path: str, body: dict[str, Any]
+) -> None:
+    plan = planned(browser)
+    api = plan.replace("/plans/", "/api/v1/plans/")
+    before = browser.get(api).json["steps"]
+    answer = browser.client.put(f"{api}/{path}", json=body)
+    assert answer.status_code == 422, answer.text
+    assert browser.get(api).json["steps"] == before
+    assert browser.get(f"{plan}/cants").status_code == 200
+
+
+@pytest.mark.parametrize("field", ["rail_spacing_mm", "equilibrium_constant", "underbalance_mm"])
+@pytest.mark.parametrize("value", ["1e-320", "1e308"])
+def test_a_number_that_cannot_be_computed_with_is_told_beside_its_field(
+    browser: Browser, field: str, value: str
+) -> None:
+    plan = planned(browser)
+    answer = browser.post(f"{plan}/choice", {"method": "rms", "tiers": "normal", field: value})
+    if field == "underbalance_mm" and value == "1e-320":
+        assert answer.status_code == 303
+    else:
+        assert answer.status_code == 422
+        assert "Some fields cannot be used" in answer.text
+    assert browser.get(f"{plan}/cants").status_code == 200
+
+
 def test_xml_that_grows_without_end_is_refused_at_once(browser: Browser) -> None:
     entities = '<!ENTITY a "ha">' + "".join(
         f'<!ENTITY {chr(98 + n)} "{f"&{chr(97 + n)};" * 10}">' for n in range(12)

@@ -10,16 +10,17 @@ from pydantic import BaseModel, ConfigDict, Field
 
 from cant.model.limits import Condition, LimitRow, LimitSet, Quantity
 from cant.model.plan import CurveRecord, Status
-from cant.model.settings import METHODS, Settings
+from cant.model.settings import METHODS, Constant, RailSpacing, Settings, Tolerance
 from cant.model.traffic import Traffic, TrainClass
 from cant.units import UNITS
+from webapp.forms import LARGEST
 from webapp.keeping.access import Access
 from webapp.keeping.store import StoredPlan
 from webapp.keeping.work import Piece
 from webapp.working.orders import WORDS
 
-Amount = Annotated[float, Field(ge=0, allow_inf_nan=False)]
-Positive = Annotated[float, Field(gt=0, allow_inf_nan=False)]
+Amount = Annotated[float, Field(ge=0, le=LARGEST, allow_inf_nan=False)]
+Number = Annotated[float, Field(ge=-LARGEST, le=LARGEST, allow_inf_nan=False)]
 Name = Annotated[str, Field(min_length=1, max_length=80, pattern=r"^[^\x00-\x1f\x7f]*\S[^\x00-\x1f\x7f]*$")]
 Words = Annotated[str, Field(max_length=300, pattern=r"^[^\x00-\x1f\x7f]*$")]
 Unlimited = Literal["none"]
@@ -162,7 +163,7 @@ class TrainBody(Taken):
     speed_kmh: Amount | None = None
     trains_per_day: Amount | None = None
     mass_t: Amount | None = None
-    roll_coefficient: Annotated[float, Field(ge=-1, allow_inf_nan=False)] | None = None
+    roll_coefficient: Annotated[float, Field(ge=-1, le=LARGEST, allow_inf_nan=False)] | None = None
     centre_of_gravity_m: Amount | None = None
     regular: bool = True
     line: Words = ""
@@ -187,8 +188,8 @@ class LimitBody(Taken):
     """One rule; see :class:`cant.model.limits.LimitRow`. ``none``: not limited there."""
 
     quantity: Quantity
-    normal: Annotated[float, Field(allow_inf_nan=False)] | Unlimited
-    exceptional: Annotated[float, Field(allow_inf_nan=False)] | Unlimited | None = None
+    normal: Number | Unlimited
+    exceptional: Number | Unlimited | None = None
     unit: Literal[tuple(UNITS)]  # type: ignore[valid-type]
     category: Words = ""
     situation: Words = ""
@@ -196,7 +197,7 @@ class LimitBody(Taken):
     speed_up_to_kmh: Condition = None
     radius_over_m: Condition = None
     radius_up_to_m: Condition = None
-    per_metre_of_radius: Annotated[float, Field(allow_inf_nan=False)] = 0.0
+    per_metre_of_radius: Number = 0.0
     kind: Literal["design", "ceiling"] = "design"
     clause: Words = ""
     note: Words = ""
@@ -223,15 +224,15 @@ class LimitsBody(Taken):
 class SettingsBody(Taken):
     """How cants are chosen; see :class:`cant.model.settings.Settings`."""
 
-    rail_spacing_mm: Positive | None = None
-    equilibrium_constant: Positive | None = None
+    rail_spacing_mm: RailSpacing | None = None
+    equilibrium_constant: Constant | None = None
     method: Literal[METHODS] = "rms"  # type: ignore[valid-type]
     tiers: Literal["normal", "normal, exceptional"] = "normal"
-    keep_within_mm: Amount = 0.0
-    maintenance_allowance_mm: Amount | None = None
+    keep_within_mm: Tolerance = 0.0
+    maintenance_allowance_mm: Tolerance | None = None
     fraction_of_fastest: Annotated[float, Field(gt=0, le=1, allow_inf_nan=False)] = 0.65
-    underbalance_mm: Amount = 25.0
-    today_within_mm: Amount = 20.0
+    underbalance_mm: Tolerance = 25.0
+    today_within_mm: Tolerance = 20.0
     units: Literal["metric", "us"] = "metric"
 
     def settings(self) -> Settings:
