@@ -58,12 +58,12 @@ class Bounds:
 
     requests_per_minute: int = 3_000
     requests_per_minute_address: int = 30_000
-    uploads_per_minute: int = 120
+    uploads_per_minute: int = 600
     uploads_per_minute_address: int = 2_000
     sign_ins_per_minute: int = 10
     wrong_links_per_minute: int = 30
     wrong_plans_per_minute: int = 120
-    plans_per_person: int = 200
+    plans_per_person: int = 500
     mb_per_person: int = 2_000
     mb_decided_per_person: int = 50
     mb_in_all: int = 0
