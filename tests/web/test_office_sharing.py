@@ -7,9 +7,11 @@ import contextlib
 import io
 import logging
 import re
+import threading
 from collections.abc import Callable
 from concurrent.futures import ThreadPoolExecutor
 from datetime import UTC, datetime, timedelta
+from functools import partial
 from typing import Any
 
 import pytest
@@ -235,6 +237,46 @@ def test_a_link_of_another_plan_cannot_be_withdrawn(app: Flask, owner: Browser, 
     assert numbers(owner, plan) == [number]
 
 
+def test_a_plan_is_deleted_and_a_link_withdrawn_while_others_open_it(
+    start: Callable[..., Flask], database_url: str
+) -> None:
+    """Whoever comes first, nobody waits for another without end, and nobody holds what is gone."""
+    app = start(database_url)
+    store, shares = running_of(app).store, sharing.Shares(running_of(app).database)
+    odd: list[Exception] = []
+
+    def together(*calls: Callable[[], object]) -> None:
+        ready = threading.Barrier(len(calls))
+
+        def one(call: Callable[[], object]) -> None:
+            ready.wait()
+            try:
+                call()
+            except NotThereError:
+                pass
+            except Exception as error:
+                odd.append(error)
+
+        threads = [threading.Thread(target=one, args=(call,)) for call in calls]
+        for thread in threads:
+            thread.start()
+        for thread in threads:
+            thread.join()
+
+    for turn in range(10):
+        address = store.add("anna", "a.csv", b"x").address
+        link, secret = shares.make("anna", address, "Survey", may_edit=True)
+        end: Callable[[], object] = partial(store.remove, "anna", address)
+        if turn % 2:
+            end = partial(shares.withdraw, "anna", address, link.number)
+        decide = partial(store.decide, "anna", address, {"answers": "{}"})
+        together(partial(shares.accept, "bo", secret), end, decide, partial(shares.accept, "cy", secret))
+        for who in ("bo", "cy"):
+            with pytest.raises(NotThereError):
+                store.plan(who, address)
+    assert odd == []
+
+
 def test_an_expired_link_opens_nothing_more(app: Flask, owner: Browser, plan: str) -> None:
     today = datetime.now(UTC).date()
     link = share(owner, plan, until=f"{today:%Y-%m-%d}")
@@ -422,7 +464,7 @@ def test_links_and_their_holders_are_bounded(
 
 def test_opened_at_the_same_moment_a_link_counts_once(app: Flask, owner: Browser, plan: str) -> None:
     secret = share(owner, plan).removeprefix("/shared/")
-    shares = sharing.Shares(running_of(app).database)
+    shares = sharing.sharing.Shares(running_of(app).database)
     with ThreadPoolExecutor(4) as pool:
         list(pool.map(lambda who: shares.accept(who, secret), ["bert", "bert", "bert", "carl"]))
     with running_of(app).database.sessions() as session:
@@ -432,7 +474,7 @@ def test_opened_at_the_same_moment_a_link_counts_once(app: Flask, owner: Browser
 
 def test_opened_while_it_is_withdrawn_a_link_leaves_nothing(app: Flask, owner: Browser, plan: str) -> None:
     secret = share(owner, plan).removeprefix("/shared/")
-    shares = sharing.Shares(running_of(app).database)
+    shares = sharing.sharing.Shares(running_of(app).database)
     (number,) = numbers(owner, plan)
     stored = as_stored(app, plan)
     with running_of(app).database.sessions() as session:

@@ -254,6 +254,10 @@ def _opened(session: Session, secret: str, *, for_change: bool = False) -> tuple
         .where(_holds(ShareRow.expires, now), PlanRow.expires > now)
     )
     if for_change:
+        # The plan first, as who deletes it does: else each would wait for the other.
+        mine = select(ShareRow.plan_id).where(ShareRow.secret_digest == digest_of(secret)).scalar_subquery()
+        plans = select(PlanRow.id).where(PlanRow.id == mine)
+        session.execute(plans.with_for_update(read=True, key_share=True))
         wanted = wanted.with_for_update(of=ShareRow)
     found = session.execute(wanted).one_or_none()
     if found is None:
