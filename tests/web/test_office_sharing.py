@@ -464,7 +464,7 @@ def test_links_and_their_holders_are_bounded(
 
 def test_opened_at_the_same_moment_a_link_counts_once(app: Flask, owner: Browser, plan: str) -> None:
     secret = share(owner, plan).removeprefix("/shared/")
-    shares = sharing.sharing.Shares(running_of(app).database)
+    shares = sharing.Shares(running_of(app).database)
     with ThreadPoolExecutor(4) as pool:
         list(pool.map(lambda who: shares.accept(who, secret), ["bert", "bert", "bert", "carl"]))
     with running_of(app).database.sessions() as session:
@@ -474,7 +474,7 @@ def test_opened_at_the_same_moment_a_link_counts_once(app: Flask, owner: Browser
 
 def test_opened_while_it_is_withdrawn_a_link_leaves_nothing(app: Flask, owner: Browser, plan: str) -> None:
     secret = share(owner, plan).removeprefix("/shared/")
-    shares = sharing.sharing.Shares(running_of(app).database)
+    shares = sharing.Shares(running_of(app).database)
     (number,) = numbers(owner, plan)
     stored = as_stored(app, plan)
     with running_of(app).database.sessions() as session:
