@@ -129,6 +129,8 @@ class _Search:
             if ends.any():
                 self._finish(paths.take(ends), best)
                 paths = paths.take(~ends)
+            if not len(paths.last):
+                break
             paths = self._step(paths, ceiling)
         return best
 
@@ -144,9 +146,12 @@ class _Search:
         keep = np.flatnonzero(not_above(so_far[source] + ahead.unsettled[pair], ceiling[source]))
         source, pair = source[keep], pair[keep]
         here = paths.last[source]
-        run = costs.run(here, paths.left.take(source), pairs.on_before.take(pair))
+        run, time = free.run_kmh[source], free.time[source]
+        slow = np.flatnonzero(costs.slows_before[pair])
+        run[slow] = costs.run(here[slow], paths.left.take(source[slow]), pairs.on_before.take(pair[slow]))
+        time[slow] = costs.time(here[slow], run[slow])
         measures = paths.measures[source]
-        measures[:, 2:LEADING] += costs.time(here, run)
+        measures[:, 2:LEADING] += time
         total = measures[:, :LEADING] + ahead.settled[pair]
         good = np.flatnonzero(not_above(total, ceiling[source]) & self._may_end(total, pairs.after[pair]))
         source, pair, here, run, measures = source[good], pair[good], here[good], run[good], measures[good]
@@ -178,9 +183,10 @@ class _Search:
         """
         costs, last = self._costs, paths.last
         run = costs.run(last, paths.left)
+        time = costs.time(last, run)
         if not self._trail[1:]:
             nothing = np.zeros((len(last), 4))
-            return Free(run, nothing, nothing[:, :2], np.ones(len(last), dtype=np.bool_))
+            return Free(run, time, nothing, nothing[:, :2], np.ones(len(last), dtype=np.bool_))
         rest = self._rest(paths.last_but_one, paths.before)
         approvals = self._approvals(paths.last_but_one, last, paths.before, run)
         measures = paths.measures.copy()
@@ -192,7 +198,7 @@ class _Search:
         )
         leads = np.zeros(len(last), dtype=np.bool_)
         leads[order[seen]] = True
-        return Free(run, rest, approvals, leads)
+        return Free(run, time, rest, approvals, leads)
 
     def _approvals_of(self, paths: Paths, free: Free, source: IntArray, run_kmh: FloatArray) -> FloatArray:
         """Give number and overrun of limits passed on the last transition of paths that have grown."""
@@ -226,10 +232,15 @@ class _Search:
         least = _least_of_chain(measures[:, :LEADING], costs.chain(paths.last))
         good = np.flatnonzero(not_above(measures[:, :LEADING], least, _TIES))
         paths, run, measures = paths.take(good), run[good], measures[good]
-        measures[:, LEADING:] += self._rest(paths.last, run)
         if self._trail[1:]:
-            measures[:, LEADING:] += self._rest(paths.last_but_one, paths.before)
+            # Asked together, for each asking costs much the same.
+            levels = np.concatenate([paths.last, paths.last_but_one])
+            last, beside = np.split(self._rest(levels, np.concatenate([run, paths.before])), 2)
+            measures[:, LEADING:] += last
+            measures[:, LEADING:] += beside
             measures[:, 4:6] += self._approvals(paths.last_but_one, paths.last, paths.before, run)
+        else:
+            measures[:, LEADING:] += self._rest(paths.last, run)
         order = self._in_order(measures, paths)
         chain = costs.chain(paths.last[order])
         node = paths.node[order[np.flatnonzero(np.diff(chain, prepend=-1))]]

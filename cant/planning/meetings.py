@@ -55,18 +55,6 @@ class PairList:
     def __len__(self) -> int:
         return len(self.before)
 
-    def take(self, at: IntArray) -> PairList:
-        """Give some of the pairs."""
-        return PairList(
-            self.transition[at],
-            self.before[at],
-            self.after[at],
-            self.broken[at],
-            self.overrun[at],
-            self.on_before.take(at),
-            self.on_after.take(at),
-        )
-
     @classmethod
     def free(
         cls,
@@ -117,22 +105,18 @@ def make_pair_list(
         good = np.broadcast_to(kept, wanted.shape)[cell]
         broken = np.where(good, 0.0, 1.0)
         overrun = np.where(good, 0.0, np.broadcast_to(over, wanted.shape)[cell])
-    listed = PairList.free(
-        transition,
-        (before[row, transition], after[column, transition]),
-        (broken, overrun),
-        levels.run_kmh.shape[1],
-    )
+    number = (before[row, transition], after[column, transition])
     danger = in_danger(meeting, (cant_before, cant_after), exceptional)
-    if not danger.any() or not len(listed):
-        return listed
+    if not danger.any() or not len(transition):
+        return PairList.free(transition, number, (broken, overrun), levels.run_kmh.shape[1])
     cases = Cases.of(meeting, danger)
-    reach = Reach.of(
-        meeting, cases, cant_before, (transition, row, levels.cant_mm[listed.after]), exceptional
-    )
+    pairs = (transition, row, levels.cant_mm[number[1]])
+    reach = Reach.of(meeting, cases, cant_before, pairs, exceptional)
     if room is not None:
-        keep = room.suffices(cases, reach, listed.transition)
-        listed, reach = listed.take(np.flatnonzero(keep)), reach.keep(keep)
+        keep = room.suffices(cases, reach, transition)
+        transition, broken, overrun = transition[keep], broken[keep], overrun[keep]
+        number, reach = (number[0][keep], number[1][keep]), reach.keep(keep)
+    listed = PairList.free(transition, number, (broken, overrun), levels.run_kmh.shape[1])
     _permit(listed, levels, cases, reach)
     return listed
 

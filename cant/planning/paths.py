@@ -83,6 +83,8 @@ class Free:
     ----------
     run_kmh : ndarray, shape (s, k)
         Speeds then run on the last curve.
+    time : ndarray, shape (s, 2)
+        Trains stopped and time lost there.
     rest : ndarray, shape (s, 4)
         Approvals, overrun, square and cant on the last curve but one.
     approvals : ndarray, shape (s, 2)
@@ -92,6 +94,7 @@ class Free:
     """
 
     run_kmh: FloatArray
+    time: FloatArray
     rest: FloatArray
     approvals: FloatArray
     leads: BoolArray
