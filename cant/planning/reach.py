@@ -92,7 +92,7 @@ class Cases:
     def stands_for(self, j: int) -> BoolArray:
         """Tell which cases stand for a class, shape (c,)."""
         kinds = self.kinds
-        return self.danger[kinds.at, j] & (self.first[kinds.at, j] == kinds.column)
+        return np.asarray(self.danger[kinds.at, j] & (self.first[kinds.at, j] == kinds.column))
 
     @property
     def top(self) -> FloatArray:
