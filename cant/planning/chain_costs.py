@@ -20,6 +20,7 @@ from cant.planning.permissible import Permitted
 from cant.planning.running_time import Services
 
 FloatArray = npt.NDArray[np.float64]
+BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
 LEADING = 4
@@ -56,6 +57,8 @@ class ChainCosts:
         Place of each curve in its chain.
     length : ndarray of int, shape (q,)
         Curves of each chain.
+    slows_before : ndarray of bool, shape (p,)
+        Whether the pair permits less than everything on the curve before.
     """
 
     def __init__(self, line: Line, levels: Levels, pairs: PairList) -> None:
@@ -68,9 +71,10 @@ class ChainCosts:
         self._goes_on = self.position < self.length[levels.chain] - 1
         self._levels_at = _by_position(self.position[levels.curve], int(self.length.max()))
         self._pairs_at = _by_position(self.position[levels.curve[pairs.before]], int(self.length.max()))
+        self.slows_before: BoolArray = pairs.on_before.slows
         self._extra = (
-            self._extra_time(pairs.before, pairs.on_before),
-            self._extra_time(pairs.after, pairs.on_after),
+            self._extra_time(pairs.before, pairs.on_before, self.slows_before),
+            self._extra_time(pairs.after, pairs.on_after, pairs.on_after.slows),
         )
         # A curve between two transitions loses at least half of what both by themselves make it lose.
         first = self.position[levels.curve[pairs.before]] == 0
@@ -104,15 +108,21 @@ class ChainCosts:
             planned = planned & permitted.planned
         return Permitted(up_to, planned).run_speed(self._line.planned_kmh[self._levels.curve[level]])
 
+    def permission(self, level: IntArray, beside: Permitted) -> FloatArray:
+        """Give rows (s, k), equal where a level and the transition beside it permit the same together."""
+        planned = self._line.planned_kmh[self._levels.curve[level]]
+        up_to = np.minimum(np.minimum(self._levels.alone.up_to_kmh[level], beside.up_to_kmh), planned)
+        return np.where(self._levels.alone.planned[level] & beside.planned, up_to, -1.0 - up_to)
+
     def time(self, level: IntArray, run_kmh: FloatArray) -> FloatArray:
         """Give trains stopped and time lost at levels (s,) and speeds (s, k): shape (s, 2)."""
         services = self._services.take(self._levels.curve[level])
         return np.stack([services.stopped(run_kmh), services.lost_s(run_kmh)], axis=-1)
 
-    def _extra_time(self, level: IntArray, beside: Permitted) -> FloatArray:
+    def _extra_time(self, level: IntArray, beside: Permitted, slows: BoolArray) -> FloatArray:
         """Give what a transition's permission alone adds to the time of some levels, shape (s, 2)."""
         extra = np.zeros((len(level), 2))
-        at = np.flatnonzero((~beside.planned | np.isfinite(beside.up_to_kmh)).any(axis=-1))
+        at = np.flatnonzero(slows)
         run = self.run(level[at], beside.take(at))
         extra[at] = self.time(level[at], run) - self._levels.own[level[at]]
         return extra

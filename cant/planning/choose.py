@@ -41,7 +41,7 @@ IntArray = npt.NDArray[np.int64]
 WEIGHED_TOGETHER = 2000
 """Curves whose levels are weighed together, about: few enough for the processor's cache, many enough that
 the work on the arrays outweighs that of starting it."""
-SEARCHED_TOGETHER = 100
+SEARCHED_TOGETHER = 200
 """Transitions of chains searched together, about, for the same reason."""
 
 

@@ -3,18 +3,19 @@
 The speed of a class on a curve then hangs on the cants of three curves, and what it passes on a transition on
 those of four. So a path is followed from the smaller chainage on with all that its end still needs: the last
 two cants, the speeds run on the last curve but one, and what the last transition permits. Paths that cannot
-become best are dropped by a bound from below; of paths that need the same from here on, the better is kept.
-Nothing that could be best is dropped: the result is exact.
+become best are dropped by a bound from below; of paths that need the same from here on, the better is kept;
+where the next transition does not slow the last curve, before it is crossed. Nothing that could be best is
+dropped: the result is exact.
 
 The paths of all chains stand in one list and go from curve to curve together. A search goes over the pairs
 that keep what no lower speed can mend; a chain that has no such path is searched again over all pairs. A good
-path over few of the levels comes first: levels that lose more time by themselves need not be looked at.
+path over few of the levels comes first: levels that lose more time by themselves need not be looked at, nor
+pairs of them that surely do (:mod:`cant.planning.room`).
 """
 
 from __future__ import annotations
 
 from collections.abc import Sequence
-from dataclasses import dataclass
 
 import numpy as np
 import numpy.typing as npt
@@ -24,10 +25,12 @@ from cant.planning.chain_costs import LEADING, ChainCosts
 from cant.planning.levels import Levels
 from cant.planning.lexicographic import distinct_rows, least_of_groups, not_above
 from cant.planning.line import Line
-from cant.planning.meetings import PairList, make_pair_list, spread_ranges
+from cant.planning.meetings import PairList, make_pair_list
 from cant.planning.neighbours import Pairs
 from cant.planning.nodes import Nodes, squares
-from cant.planning.permissible import Permitted
+from cant.planning.paths import Free, Paths
+from cant.planning.reach import spread_ranges
+from cant.planning.room import Room
 from cant.planning.shared import Meeting
 from cant.planning.targets import Target
 
@@ -78,74 +81,16 @@ def search_chains(
     part = line.take(curves)
     levels = Levels.of(part, nodes.take(curves), chain, exceptional)
     meeting = Meeting.of(line, pairs.take(pairs.after(len(line))[curves[levels.begins]]))
+    room = None
     if not also_broken:
         few = levels.take(levels.few())
         listed = make_pair_list(meeting, few, exceptional, also_broken)
-        ceiling = ChainCosts(part, few, listed).ceiling()[chain[levels.curve]]
-        levels = levels.take(not_above(levels.bound(), ceiling[:, 2:]))
-    listed = make_pair_list(meeting, levels, exceptional, also_broken)
+        ceiling = ChainCosts(part, few, listed).ceiling()
+        levels = levels.take(not_above(levels.bound(), ceiling[chain[levels.curve], 2:]))
+        room = Room.under(ceiling, part, levels)
+    listed = make_pair_list(meeting, levels, exceptional, also_broken, room)
     best = _Search(part, meeting, levels, listed, target).best()
     return curves, np.where(best < 0, np.nan, levels.cant_mm[best])
-
-
-@dataclass
-class _Paths:
-    """Paths of several chains that end at the curve of one position; s of them, chain after chain.
-
-    Attributes
-    ----------
-    node : ndarray of int, shape (s,)
-        Where the path stands in the trail of this position.
-    rank : ndarray of int, shape (s,)
-        Ascending with the cants of a chain, the smaller chainages first.
-    last_but_one, last : ndarray of int, shape (s,)
-        Numbers of the last two levels; the first of them -1 on the first curve.
-    before : ndarray, shape (s, k)
-        Speeds run on the last curve but one.
-    left : Permitted
-        What the last transition permits on the last curve.
-    sure : ndarray, shape (s, 2)
-        Time that this alone is sure to cost there.
-    measures : ndarray, shape (s, 8)
-        The leading four, approvals, overrun, square, sum of cants: the leading ones and those of transitions
-        up to the last curve but one, those of curves by themselves up to the one before.
-    """
-
-    node: IntArray
-    rank: IntArray
-    last_but_one: IntArray
-    last: IntArray
-    before: FloatArray
-    left: Permitted
-    sure: FloatArray
-    measures: FloatArray
-
-    @classmethod
-    def begin(cls, level: IntArray, k: int) -> _Paths:
-        """Begin a path at each of some levels."""
-        s = len(level)
-        return cls(
-            node=np.arange(s),
-            rank=level,
-            last_but_one=np.full(s, -1, dtype=np.int64),
-            last=level,
-            before=np.full((s, k), np.nan),
-            left=Permitted.everything(s, k),
-            sure=np.zeros((s, 2)),
-            measures=np.zeros((s, 8)),
-        )
-
-    def take(self, at: IntArray | BoolArray) -> _Paths:
-        return _Paths(
-            self.node[at],
-            self.rank[at],
-            self.last_but_one[at],
-            self.last[at],
-            self.before[at],
-            self.left.take(at),
-            self.sure[at],
-            self.measures[at],
-        )
 
 
 class _Search:
@@ -177,39 +122,46 @@ class _Search:
         level = np.flatnonzero(costs.position[levels.curve] == 0)
         level = level[np.isfinite(ceiling[costs.chain(level)]).all(axis=1)]
         level = level[not_above(to_go[level], ceiling[costs.chain(level)])]
-        paths = _Paths.begin(level, self._line.classes)
+        paths = Paths.begin(level, self._line.classes)
         self._trail = [(level, paths.node)]
         for i in range(int(costs.length.max())):
             ends = costs.length[costs.chain(paths.last)] == i + 1
             if ends.any():
                 self._finish(paths.take(ends), best)
                 paths = paths.take(~ends)
+            if not len(paths.last):
+                break
             paths = self._step(paths, ceiling)
         return best
 
-    def _step(self, paths: _Paths, ceiling: FloatArray) -> _Paths:
+    def _step(self, paths: Paths, ceiling: FloatArray) -> Paths:
         """Go from one curve to the next: settle the speeds of the one."""
         pairs, costs, ahead = self._pairs, self._costs, self._costs.ahead
+        free = self._freely(paths)
         source, pair = spread_ranges(self._first[paths.last], self._first[paths.last + 1])
         so_far = paths.measures[:, :LEADING] + np.pad(paths.sure, ((0, 0), (2, 0)))
         ceiling = ceiling[costs.chain(paths.last)]
+        some = np.flatnonzero(free.leads[source] | costs.slows_before[pair])
+        source, pair = source[some], pair[some]
         keep = np.flatnonzero(not_above(so_far[source] + ahead.unsettled[pair], ceiling[source]))
         source, pair = source[keep], pair[keep]
         here = paths.last[source]
-        run = costs.run(here, paths.left.take(source), pairs.on_before.take(pair))
+        run, time = free.run_kmh[source], free.time[source]
+        slow = np.flatnonzero(costs.slows_before[pair])
+        run[slow] = costs.run(here[slow], paths.left.take(source[slow]), pairs.on_before.take(pair[slow]))
+        time[slow] = costs.time(here[slow], run[slow])
         measures = paths.measures[source]
-        measures[:, 2:LEADING] += costs.time(here, run)
-        good = np.flatnonzero(not_above(measures[:, :LEADING] + ahead.settled[pair], ceiling[source]))
+        measures[:, 2:LEADING] += time
+        total = measures[:, :LEADING] + ahead.settled[pair]
+        good = np.flatnonzero(not_above(total, ceiling[source]) & self._may_end(total, pairs.after[pair]))
         source, pair, here, run, measures = source[good], pair[good], here[good], run[good], measures[good]
         measures[:, :2] += costs.broken[pair]
-        if self._trail[1:]:
-            measures[:, LEADING:] += self._rest(paths.last_but_one[source], paths.before[source])
-            measures[:, 4:6] += self._approvals(paths.last_but_one[source], here, paths.before[source], run)
-        rank = np.empty(len(source), dtype=np.int64)
-        rank[np.lexsort((pairs.after[pair], paths.rank[source]))] = np.arange(len(source))
-        grown = _Paths(
+        measures[:, LEADING:] += free.rest[source]
+        measures[:, 4:6] += self._approvals_of(paths, free, source, run)
+        grown = Paths(
             paths.node[source],
-            rank,
+            # Of one path, the pairs ascend with the cant after.
+            paths.rank[source] * len(self._levels.curve) + pairs.after[pair],
             here,
             pairs.after[pair],
             run,
@@ -219,11 +171,58 @@ class _Search:
         )
         if self._trail[1:]:
             grown = grown.take(self._best_of_alike(grown))
+        grown.rank[np.argsort(grown.rank)] = np.arange(len(grown.rank))
         self._trail.append((grown.last, grown.node))
         grown.node = np.arange(len(grown.last))
         return grown
 
-    def _finish(self, paths: _Paths, best: IntArray) -> None:
+    def _freely(self, paths: Paths) -> Free:
+        """Settle paths as if no transition slowed their last curve further, and see which of them lead.
+
+        Where it does not, only the best of those with the same last cant and permission need go on.
+        """
+        costs, last = self._costs, paths.last
+        run = costs.run(last, paths.left)
+        time = costs.time(last, run)
+        if not self._trail[1:]:
+            nothing = np.zeros((len(last), 4))
+            return Free(run, time, nothing, nothing[:, :2], np.ones(len(last), dtype=np.bool_))
+        rest = self._rest(paths.last_but_one, paths.before)
+        approvals = self._approvals(paths.last_but_one, last, paths.before, run)
+        measures = paths.measures.copy()
+        measures[:, LEADING:] += rest
+        measures[:, 4:6] += approvals
+        order = self._in_order(measures, paths)
+        seen, _ = distinct_rows(
+            np.concatenate([last[:, None], costs.permission(last, paths.left)], axis=1)[order]
+        )
+        leads = np.zeros(len(last), dtype=np.bool_)
+        leads[order[seen]] = True
+        return Free(run, time, rest, approvals, leads)
+
+    def _approvals_of(self, paths: Paths, free: Free, source: IntArray, run_kmh: FloatArray) -> FloatArray:
+        """Give number and overrun of limits passed on the last transition of paths that have grown."""
+        approvals = free.approvals[source]
+        if self._trail[1:]:
+            with np.errstate(invalid="ignore"):
+                other = np.flatnonzero((run_kmh < free.run_kmh[source]).any(axis=-1))
+            at = source[other]
+            approvals[other] = self._approvals(
+                paths.last_but_one[at], paths.last[at], paths.before[at], run_kmh[other]
+            )
+        return approvals
+
+    def _may_end(self, total: FloatArray, last: IntArray) -> BoolArray:
+        """Tell which paths (s,) are no worse than others that end at their chain's last curve alike.
+
+        Nothing further on can change what these lose, so ``total`` (s, LEADING) is all of it.
+        """
+        costs = self._costs
+        chain = costs.chain(last)
+        going_on = costs.position[self._levels.curve[last]] < costs.length[chain] - 1
+        return np.asarray(going_on | not_above(total, _least_of_chain(total, chain), _TIES))
+
+    def _finish(self, paths: Paths, best: IntArray) -> None:
         """Settle the last curve of chains that end here, and enter their best levels."""
         costs = self._costs
         run = costs.run(paths.last, paths.left)
@@ -233,10 +232,15 @@ class _Search:
         least = _least_of_chain(measures[:, :LEADING], costs.chain(paths.last))
         good = np.flatnonzero(not_above(measures[:, :LEADING], least, _TIES))
         paths, run, measures = paths.take(good), run[good], measures[good]
-        measures[:, LEADING:] += self._rest(paths.last, run)
         if self._trail[1:]:
-            measures[:, LEADING:] += self._rest(paths.last_but_one, paths.before)
+            # Asked together, for each asking costs much the same.
+            levels = np.concatenate([paths.last, paths.last_but_one])
+            last, beside = np.split(self._rest(levels, np.concatenate([run, paths.before])), 2)
+            measures[:, LEADING:] += last
+            measures[:, LEADING:] += beside
             measures[:, 4:6] += self._approvals(paths.last_but_one, paths.last, paths.before, run)
+        else:
+            measures[:, LEADING:] += self._rest(paths.last, run)
         order = self._in_order(measures, paths)
         chain = costs.chain(paths.last[order])
         node = paths.node[order[np.flatnonzero(np.diff(chain, prepend=-1))]]
@@ -271,7 +275,7 @@ class _Search:
             return np.zeros((len(place), 2))
         return np.stack([passed.count, passed.total], axis=-1)[place]
 
-    def _in_order(self, measures: FloatArray, paths: _Paths) -> IntArray:
+    def _in_order(self, measures: FloatArray, paths: Paths) -> IntArray:
         """Sort paths by chain, the best of each first; then the lower cant at the smaller chainage."""
         chain = self._costs.chain(paths.last)
         begin, owner = _groups(chain)
@@ -279,7 +283,7 @@ class _Search:
         exact = np.round(measures / (size[owner] * _QUANTUM))
         return np.lexsort([chain, *exact.T, paths.rank][::-1])
 
-    def _best_of_alike(self, paths: _Paths) -> IntArray:
+    def _best_of_alike(self, paths: Paths) -> IntArray:
         """Of the paths that need the same from here on, give the best: indices."""
         order = self._in_order(paths.measures, paths)
         need = np.concatenate([paths.last_but_one[:, None], paths.last[:, None], paths.before], axis=1)

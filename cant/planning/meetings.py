@@ -15,15 +15,11 @@ import numpy.typing as npt
 
 from cant.planning.assess import shared_hard_kept
 from cant.planning.levels import Levels
-from cant.planning.multiples import Kinds, Multiples
-from cant.planning.permissible import (
-    FASTEST_KMH,
-    Permitted,
-    first_alike,
-    next_multiple,
-    speed_steps,
-)
-from cant.planning.permissible_shared import slower_after, surely_held
+from cant.planning.multiples import Multiples
+from cant.planning.permissible import Permitted
+from cant.planning.permissible_shared import slower_after
+from cant.planning.reach import Cases, Reach, in_danger, spread_ranges
+from cant.planning.room import Room
 from cant.planning.shared import Meeting, SharedAsked
 from cant.planning.windows import hard_window
 
@@ -59,8 +55,22 @@ class PairList:
     def __len__(self) -> int:
         return len(self.before)
 
+    @classmethod
+    def free(
+        cls,
+        transition: IntArray,
+        number: tuple[IntArray, IntArray],
+        broken: tuple[FloatArray, FloatArray],
+        classes: int,
+    ) -> PairList:
+        """List pairs that permit everything."""
+        shape = (len(transition), classes)
+        return cls(transition, *number, *broken, Permitted.everything(*shape), Permitted.everything(*shape))
 
-def make_pair_list(meeting: Meeting, levels: Levels, exceptional: bool, also_broken: bool) -> PairList:
+
+def make_pair_list(
+    meeting: Meeting, levels: Levels, exceptional: bool, also_broken: bool, room: Room | None = None
+) -> PairList:
     """List the pairs of levels over the transitions between consecutive curves.
 
     Parameters
@@ -73,6 +83,8 @@ def make_pair_list(meeting: Meeting, levels: Levels, exceptional: bool, also_bro
         Last tier allowed.
     also_broken : bool
         Also pairs that do not keep what no lower speed can mend.
+    room : Room, optional
+        Without pairs that cost more time than it has.
 
     Returns
     -------
@@ -94,129 +106,45 @@ def make_pair_list(meeting: Meeting, levels: Levels, exceptional: bool, also_bro
         broken = np.where(good, 0.0, 1.0)
         overrun = np.where(good, 0.0, np.broadcast_to(over, wanted.shape)[cell])
     number = (before[row, transition], after[column, transition])
-    shape = (len(transition), levels.run_kmh.shape[1])
-    listed = PairList(
-        transition,
-        *number,
-        broken,
-        overrun,
-        Permitted(np.full(shape, np.inf), np.ones(shape, dtype=np.bool_)),
-        Permitted(np.full(shape, np.inf), np.ones(shape, dtype=np.bool_)),
-    )
-    _permit(listed, meeting, levels, (cant_before, cant_after), row, exceptional)
+    danger = in_danger(meeting, (cant_before, cant_after), exceptional)
+    if not danger.any() or not len(transition):
+        return PairList.free(transition, number, (broken, overrun), levels.run_kmh.shape[1])
+    cases = Cases.of(meeting, danger)
+    pairs = (transition, row, levels.cant_mm[number[1]])
+    reach = Reach.of(meeting, cases, cant_before, pairs, exceptional)
+    if room is not None:
+        keep = room.suffices(cases, reach, transition)
+        transition, broken, overrun = transition[keep], broken[keep], overrun[keep]
+        number, reach = (number[0][keep], number[1][keep]), reach.keep(keep)
+    listed = PairList.free(transition, number, (broken, overrun), levels.run_kmh.shape[1])
+    _permit(listed, levels, cases, reach)
     return listed
 
 
-def _in_danger(meeting: Meeting, cants: tuple[FloatArray, FloatArray], exceptional: bool) -> BoolArray:
-    """Tell which classes a pair of cants may slow, (m, k); at the ends all rules are worst."""
-    with np.errstate(invalid="ignore"):
-        ends = [np.stack([np.fmin.reduce(cant), np.fmax.reduce(cant)])[:, :, None] for cant in cants]
-    # A planned speed above all multiples that are tried is asked about too.
-    lines = (meeting.before, meeting.after)
-    fastest = [np.maximum(line.planned_kmh, top) for line, top in zip(lines, _ceilings(meeting), strict=True)]
-    sure = surely_held(
-        meeting,
-        (np.nan_to_num(ends[0][:, None]), np.nan_to_num(ends[1][None])),
-        np.nan_to_num(np.minimum(*fastest)),
-        exceptional,
-    )
-    sure = np.broadcast_to(sure, (2, 2, *meeting.both.shape))
-    return np.asarray(meeting.both & ~sure.all(axis=(0, 1)))
-
-
-def _ceilings(meeting: Meeting) -> tuple[FloatArray, FloatArray]:
-    """Give the speeds on the two curves above which nothing need be tried [km/h], shape (m, k)."""
-    before, after = (
-        np.fmin(next_multiple(line.planned_kmh, speed_steps(line)), FASTEST_KMH)
-        for line in (meeting.before, meeting.after)
-    )
-    return before, after
-
-
-def _permit(
-    listed: PairList,
-    meeting: Meeting,
-    levels: Levels,
-    cants: tuple[FloatArray, FloatArray],
-    row: IntArray,
-    exceptional: bool,
-) -> None:
-    """Enter what the pairs permit; ``row`` is the row of the level before in its table."""
-    danger = _in_danger(meeting, cants, exceptional)
-    if not danger.any() or not len(listed):
-        return
-    first = first_alike(meeting.before, meeting.after)
-    cases = _Cases.of(meeting, *np.nonzero(danger & (first == np.arange(first.shape[1]))))
-    kinds = cases.kinds
-    multiples = Multiples.of(
-        meeting.unfold(kinds.entry_at, kinds.entry_column),
-        np.nan_to_num(cants[0][:, kinds.entry_at]),
-        kinds.fastest(np.maximum(*cases.ceiling)),
-        kinds.further(cases.planned, cases.odd),
-        exceptional,
-    )
-    begin = np.searchsorted(listed.transition, np.arange(len(meeting) + 1))
-    entry, pair = spread_ranges(begin[kinds.entry_at], begin[kinds.entry_at + 1])
-    cell = multiples.cell(row[pair], entry)
-    reached = multiples.reached(cell, levels.cant_mm[listed.after[pair]])
+def _permit(listed: PairList, levels: Levels, cases: Cases, reach: Reach) -> None:
+    """Enter what the pairs permit, where that is not everything."""
+    kinds, at = cases.kinds, reach.short(cases)
+    begin = np.searchsorted(reach.entry[at], np.arange(len(kinds.entry_at) + 1))
     # From pairs and kinds to pairs and classes.
-    case, pair = spread_ranges(begin[kinds.at], begin[kinds.at + 1])
-    start = np.searchsorted(entry, np.arange(len(kinds.entry_at)))
-    known = start[kinds.entry[case]] + pair - begin[kinds.at[case]]
+    case, place = spread_ranges(begin[kinds.entry], begin[kinds.entry + 1])
+    at = at[place]
+    pair = reach.pair[at]
     run = (
         levels.run_kmh[listed.before[pair], kinds.column[case]],
         levels.run_kmh[listed.after[pair], kinds.column[case]],
     )
     on_after = slower_after(cases.shorter_after[case], run)
-    asked = _Question(cases, multiples, case, cell[known], levels.cant_mm[listed.after[pair]], on_after, run)
-    up_to, held = asked.answer([found[known] for found in reached])
+    asked = _Question(
+        cases, reach.multiples, case, reach.cell[at], levels.cant_mm[listed.after[pair]], on_after, run
+    )
+    up_to, held = asked.answer([found[at] for found in reach.reached])
     # What is found for a class holds for those treated alike; the first of them is in danger with them.
-    for j in range(first.shape[1]):
-        which = np.flatnonzero((danger[kinds.at, j] & (first[kinds.at, j] == kinds.column))[case])
+    for j in range(cases.first.shape[1]):
+        which = np.flatnonzero(cases.stands_for(j)[case])
         for mine, permitted in ((~on_after, listed.on_before), (on_after, listed.on_after)):
             chosen = which[mine[which]]
             permitted.up_to_kmh[pair[chosen], j] = up_to[chosen]
             permitted.planned[pair[chosen], j] = held[chosen]
-
-
-def spread_ranges(begin: IntArray, end: IntArray) -> tuple[IntArray, IntArray]:
-    """Give all whole numbers of ranges one after the other, each with the position of its range."""
-    count = end - begin
-    owner = np.repeat(np.arange(len(count)), count)
-    offset = np.arange(len(owner)) - np.repeat(np.cumsum(count) - count, count)
-    return owner, begin[owner] + offset
-
-
-@dataclass
-class _Cases:
-    """Classes in danger over transitions; pairs of arrays (c,) for the curves before and after."""
-
-    kinds: Kinds
-    planned: tuple[FloatArray, FloatArray]
-    ceiling: tuple[FloatArray, FloatArray]
-    step: tuple[FloatArray, FloatArray]
-    shorter_after: BoolArray
-
-    @classmethod
-    def of(cls, meeting: Meeting, at: IntArray, column: IntArray) -> _Cases:
-        lines = (meeting.before, meeting.after)
-        ceilings = _ceilings(meeting)
-        shorter = meeting.after.weight_length_m[:, 0] < meeting.before.weight_length_m[:, 0]
-        return cls(
-            kinds=Kinds.of(meeting, at, column),
-            planned=(lines[0].planned_kmh[at, column], lines[1].planned_kmh[at, column]),
-            ceiling=(ceilings[0][at, column], ceilings[1][at, column]),
-            step=(speed_steps(lines[0])[at, column], speed_steps(lines[1])[at, column]),
-            shorter_after=shorter[at],
-        )
-
-    @property
-    def odd(self) -> tuple[BoolArray, BoolArray]:
-        """Whether the planned speeds are no multiples of the speed step, (c,) each."""
-        before, after = (
-            speed != np.rint(speed / step) * step for speed, step in zip(self.planned, self.step, strict=True)
-        )
-        return before, after
 
 
 @dataclass
@@ -226,7 +154,7 @@ class _Question:
     The rule is that of :func:`cant.planning.permissible_shared.permitted_shared`.
     """
 
-    cases: _Cases
+    cases: Cases
     multiples: Multiples
     case: IntArray
     cell: IntArray

@@ -166,6 +166,19 @@ class Multiples:
         """Tell whether all holds at one speed beside cants of the curve after."""
         return _inside(self.window, place * self._cells + cell, cant_after_mm)
 
+    @property
+    def narrowing(self) -> BoolArray:
+        """Whether a multiple of the step before allows nothing that a lower one does not, for each cell."""
+        asked = slice(self._cells, (self.most + 1) * self._cells)
+        own, met = (Window(*(side[asked] for side in some)) for some in (self.window, self.up_to[0]))
+        same = ((own.low == met.low) & (own.high == met.high)) | (own.low > own.high)
+        return np.asarray(same.reshape(self.most, self._cells).all(axis=0))
+
+    @property
+    def has_gaps(self) -> bool:
+        """Whether the limits have a gap at any of the speeds above a planned one."""
+        return self._gap is not None
+
     def gap(self, on_after: BoolArray, place: IntArray, entry: IntArray) -> BoolArray:
         """Tell where the limits of the curve that slows have a gap at a speed above the planned one."""
         if self._gap is None:

@@ -54,6 +54,11 @@ class Permitted:
         """Give some of the curves, from arrays (n, k)."""
         return Permitted(self.up_to_kmh[curves], self.planned[curves])
 
+    @property
+    def slows(self) -> BoolArray:
+        """Where not everything is permitted to every class, shape (..., n)."""
+        return np.asarray((~self.planned | np.isfinite(self.up_to_kmh)).any(axis=-1))
+
     def speed(self, planned_kmh: FloatArray) -> FloatArray:
         """Give the permissible speed [km/h]: the planned one is permissible where all holds at it."""
         return np.where(self.planned, np.fmax(self.up_to_kmh, planned_kmh), self.up_to_kmh)

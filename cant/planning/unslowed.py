@@ -19,7 +19,7 @@ from cant.planning.chain_choice import Stage, best_paths, by_length
 from cant.planning.line import Line
 from cant.planning.multiples import Kinds, Multiples
 from cant.planning.neighbours import Pairs
-from cant.planning.nodes import Nodes
+from cant.planning.nodes import Nodes, best_alone
 from cant.planning.permissible import Permitted, first_alike, next_multiple, speed_steps
 from cant.planning.permissible_shared import slows_after
 from cant.planning.shared import Meeting, SharedAsked
@@ -29,8 +29,10 @@ FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
 IntArray = npt.NDArray[np.int64]
 
-TOGETHER = 150
+TOGETHER = 200
 """Transitions looked at together: keeps their arrays within the processor's cache."""
+FEW_TOGETHER = 2000
+"""The same where each curve has but one level."""
 _SLACK = 1e-9
 _EDGE_MM = 1e-6
 """A cant this close to the edge of a window is evaluated, not taken from it."""
@@ -102,22 +104,48 @@ def settle_unslowed(
     left : list of ndarray of int
         Chains that have no such path, or of which it is not known.
     """
-    cant = np.full(len(line), np.nan)
-    after, cheapest = pairs.after(len(line)), nodes.cheapest
+    every, n = nodes.cheapest, len(line)
+    best = np.zeros_like(every)
+    best[best_alone(nodes), np.arange(n)] = True
+    # Where the best of each curve by itself stand side by side and pass nothing there, none is better.
+    cant, left = _settle(line, pairs, nodes, best & every, chains, exceptional, passing=False)
+    further, left = _settle(line, pairs, nodes, every, left, exceptional, passing=True)
+    return np.where(np.isnan(cant), further, cant), left
+
+
+def _settle(
+    line: Line,
+    pairs: Pairs,
+    nodes: Nodes,
+    levels: BoolArray,
+    chains: Sequence[IntArray],
+    exceptional: bool,
+    *,
+    passing: bool,
+) -> tuple[FloatArray, list[IntArray]]:
+    """Find the best cants among some of the cheapest levels (levels, n).
+
+    ``passing``: also over transitions that pass a limit at its normal value.
+    """
+    cant, after = np.full(len(line), np.nan), pairs.after(len(line))
     left: list[IntArray] = []
-    for curves in by_length(chains, TOGETHER):
+    together = TOGETHER if passing else FEW_TOGETHER
+    for curves in by_length(chains, together):
         # Position by position, so that a transition leads from a curve to the one q further on.
         q, members = len(curves), curves.T.ravel()
-        cheap = _Cheap.of(nodes, cheapest, members)
+        cheap = _Cheap.of(nodes, levels, members)
         crossings = []
-        for begin in range(0, len(members) - q, TOGETHER):
-            some = slice(begin, min(begin + TOGETHER, len(members) - q))
+        for begin in range(0, len(members) - q, together):
+            some = slice(begin, min(begin + together, len(members) - q))
             meeting = Meeting.of(line, pairs.take(after[members[some]]))
             ahead = slice(some.start + q, some.stop + q)
             crossings.append(_cross(meeting, cheap.part(some), cheap.part(ahead), exceptional))
-        level, found = best_paths(_stages(cheap, _Crossing.join(crossings), q))
+        crossing = _Crossing.join(crossings)
+        if not passing and crossing.passed[0] is not None:
+            crossing.allowed &= crossing.passed[0] == 0
+        level, found = best_paths(_stages(cheap, crossing, q))
         found &= cheap.alike.reshape(-1, q).all(axis=0)
-        found &= np.concatenate([crossing.sure for crossing in crossings]).reshape(-1, q).all(axis=0)
+        found &= crossing.sure.reshape(-1, q).all(axis=0)
         best = cheap.cant_mm[level.T.ravel(), np.arange(len(members))].reshape(-1, q).T
         cant[curves[found]] = best[found]
         left += list(curves[~found])
@@ -196,18 +224,17 @@ def _passed(
     both = meeting.both & one_of_alike
     # Where no class runs on both curves, the gradient speaks of none: one column stands for it.
     both[:, 0] |= ~meeting.both.any(axis=1)
-    at, column = np.nonzero(both)
     within = Window(
-        np.maximum(each.low[:, at, column], hard.low[:, at]) + _EDGE_MM,
-        np.minimum(each.high[:, at, column], hard.high[:, at]) - _EDGE_MM,
+        np.where(both, np.maximum(each.low, hard.low[:, :, None]) + _EDGE_MM, -np.inf),
+        np.where(both, np.minimum(each.high, hard.high[:, :, None]) - _EDGE_MM, np.inf),
     )
-    case, row, ahead = np.nonzero((allowed[:, :, at] & ~within.holds(after[:, at])).transpose(2, 0, 1))
-    if not len(case):
+    row, ahead, at = np.nonzero(allowed & ~within.over_classes().holds(after))
+    if not len(at):
         return None, None
-    pair = np.ravel_multi_index((row, ahead, at[case]), allowed.shape)
-    order = np.argsort(pair, kind="stable")
-    case, row, ahead, pair = case[order], row[order], ahead[order], pair[order]
-    at, column = at[case], column[case]
+    cant = after[ahead, at][:, None]
+    which, column = np.nonzero((cant < within.low[row, at]) | (cant > within.high[row, at]))
+    row, ahead, at = row[which], ahead[which], at[which]
+    pair = np.ravel_multi_index((row, ahead, at), allowed.shape)
     passed = passed_shared(
         meeting.unfold(at, column),
         (before[row, at][:, None], after[ahead, at][:, None]),

@@ -13,12 +13,13 @@ from cant.planning.grid import Grid
 from cant.planning.levels import Levels
 from cant.planning.lexicographic import distinct_rows, first_best, least_of_groups, not_above
 from cant.planning.line import Line
-from cant.planning.meetings import make_pair_list, spread_ranges
+from cant.planning.meetings import make_pair_list
 from cant.planning.neighbours import chains_of
 from cant.planning.nodes import make_nodes
 from cant.planning.outcome import Outcome, plan_arrays
 from cant.planning.permissible import Permitted, first_alike, permitted_alone, speed_steps
 from cant.planning.permissible_shared import permitted_shared
+from cant.planning.reach import spread_ranges
 from cant.planning.shared import Meeting, SharedAsked, hard_values, shared_values, speed_values
 from cant.planning.windows import allowed_after, hard_window, speed_windows
 
