@@ -32,7 +32,6 @@ from cant.planning.normal_chains import settle_within_normal
 from cant.planning.shared import Meeting, SharedAsked, shared_values
 from cant.planning.targets import Target
 from cant.planning.unslowed import settle_unslowed
-from cant.planning.workers import side_by_side
 
 FloatArray = npt.NDArray[np.float64]
 BoolArray = npt.NDArray[np.bool_]
@@ -102,8 +101,8 @@ def choose(
         return _plan_chains(*some, among, part.chains, target, exceptional, part.also_broken)
 
     def settle(parts: list[_Part]) -> None:
-        for part, (best, bad) in zip(parts, side_by_side(weigh, parts), strict=True):
-            cant[part.curves], not_compliant[part.curves] = best, bad
+        for part in parts:
+            cant[part.curves], not_compliant[part.curves] = weigh(part)
 
     settle(_parts(chains) + _parts(list(np.flatnonzero(alone)[:, None])))
     settle(_parts([chain for chain in chains if np.isnan(cant[chain]).any()], also_broken=True))

@@ -2,8 +2,6 @@
 
 from __future__ import annotations
 
-import threading
-
 import numpy as np
 import pytest
 
@@ -13,7 +11,6 @@ from cant.model.settings import Settings
 from cant.planning.lexicographic import distinct_rows
 from cant.planning.limit_table import LimitTable
 from cant.planning.neighbours import Chains, Pairs, chains_of
-from cant.planning.workers import side_by_side
 
 
 def pairs_of(*links: tuple[int, int]) -> Pairs:
@@ -74,12 +71,3 @@ def test_a_gap_is_where_a_kind_of_train_has_rows_for_some_speeds_only(
     kinds = [frozenset({"plain"}), frozenset({"platform"})]
     table = LimitTable(limits, Settings(), ["passenger", "freight"], kinds)
     assert table.may_have_gap("cant deficiency") == gap
-
-
-def test_work_side_by_side_keeps_the_order_and_hands_on_errors() -> None:
-    assert side_by_side(lambda part: part * 2, [3, 1, 2]) == [6, 2, 4]
-    assert side_by_side(lambda part: part, []) == []
-    here = threading.get_ident()
-    assert side_by_side(lambda _: threading.get_ident(), ["one"]) == [here]
-    with pytest.raises(ZeroDivisionError):
-        side_by_side(lambda part: 1 / part, [1, 0])
