@@ -102,15 +102,14 @@ class Cases:
     @property
     def even(self) -> BoolArray:
         """Whether a case runs at multiples of one step and no others, (c,)."""
-        alike = (self.step[0] == self.step[1]) & ~np.logical_or(*self.odd)
-        slow_enough = [planned <= top for planned, top in zip(self.planned, self.ceiling, strict=True)]
-        return np.asarray(alike & np.logical_and(*slow_enough))
+        return np.asarray((self.step[0] == self.step[1]) & ~np.logical_or(*self.odd))
 
     @property
     def odd(self) -> tuple[BoolArray, BoolArray]:
-        """Whether the planned speeds are no multiples of the speed step, (c,) each."""
+        """Whether the planned speeds are none of the multiples that are tried, (c,) each."""
         before, after = (
-            speed != np.rint(speed / step) * step for speed, step in zip(self.planned, self.step, strict=True)
+            (speed != np.rint(speed / step) * step) | (speed > top)
+            for speed, step, top in zip(self.planned, self.step, self.ceiling, strict=True)
         )
         return before, after
 

@@ -3,6 +3,7 @@
 from __future__ import annotations
 
 import math
+from dataclasses import replace
 from typing import Any
 
 import numpy as np
@@ -11,6 +12,7 @@ from hypothesis import HealthCheck, given, settings
 from reference.cases import Case, cases, random_case
 from reference.planner import plan as reference_plan
 
+from cant.model.traffic import Traffic
 from cant.planning import Plan, plan_line
 
 SEEDS = 700
@@ -105,6 +107,32 @@ def test_seeded_lines(first: int) -> None:
 @settings(max_examples=60, deadline=None, suppress_health_check=list(HealthCheck))
 def test_drawn_lines(case: Case) -> None:
     compare(case)
+
+
+def faster(case: Case) -> Case:
+    """Give a line with wider curves whose trains are planned at up to 480 km/h."""
+    curves, traffic, *rest = case
+
+    def raised(speed: Any) -> Any:
+        return np.where(speed < 0, speed, np.minimum(3.4 * speed, 480.0))
+
+    rows = [
+        row if row.speed_kmh is None else row.model_copy(update={"speed_kmh": float(raised(row.speed_kmh))})
+        for row in traffic.rows
+    ]
+    wider = replace(
+        curves,
+        radius_m=curves.radius_m * 3.4**2,
+        speed_kmh=raised(curves.speed_kmh),
+        class_speeds={name: raised(speed) for name, speed in curves.class_speeds.items()},
+    )
+    return (wider, Traffic.of(rows), *rest)
+
+
+def test_planned_speeds_above_those_that_are_tried() -> None:
+    """Permissible speeds are searched to 400 km/h; a planned speed above that is asked about as it is."""
+    for seed in range(60):
+        compare(faster(random_case(seed)))
 
 
 def test_block_of_records_equals_single_records() -> None:
