@@ -397,8 +397,8 @@ def test_no_address_of_a_redirect_adds_a_header_or_leads_elsewhere(browser: Brow
     for place in places:
         answers = [
             browser.post("/units", {"units": "us", "back": place}),
-            browser.get(f"{plan}/work/{'x' * 32}?then={quote(place)}"),
-            browser.post(f"{plan}/work/{'x' * 32}/again", {"then": place}),
+            browser.get(f"{plan}/pieces/{'x' * 32}?then={quote(place)}"),
+            browser.post(f"{plan}/pieces/{'x' * 32}/again", {"then": place}),
         ]
         for answer in answers:
             assert answer.status_code in (303, 400, 403, 404), (place, answer.status_code)

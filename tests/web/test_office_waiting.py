@@ -180,9 +180,9 @@ def test_failed_work_says_why_and_can_start_again(long: Flask, monkeypatch: pyte
     assert "reference" in shown.text
     assert "secret" not in shown.text
     action = FormFields(shown.text, "/again")
-    work = next(piece for piece in browser.get(f"/api/v1{path}/work").get_json()["work"])
+    work = next(piece for piece in browser.get(f"/api/v1{path}/pieces").get_json()["work"])
     assert work["state"] == "failed"
-    assert browser.client.post(f"{path}/work/{work['id']}/again", data=action.sent).status_code == 303
+    assert browser.client.post(f"{path}/pieces/{work['id']}/again", data=action.sent).status_code == 303
     assert worked(long, lambda: browser.get(f"{path}/cants")).status_code == 200
 
 
@@ -233,7 +233,7 @@ def test_a_program_asks_and_comes_back(long: Flask, bare_list: Path) -> None:
     plan = made.get_json()
     key = {"Authorization": f"Bearer {plan['key']}"}
     base = f"/api/v1/plans/{plan['address']}"
-    listed = client.get(f"{base}/work", headers=key).get_json()["work"]
+    listed = client.get(f"{base}/pieces", headers=key).get_json()["work"]
     assert [one["what"] for one in listed] == ["reading the list"], "reading begins without being asked for"
     answer = client.get(f"{base}/result", headers=key)
     assert answer.status_code == 202
@@ -261,7 +261,7 @@ def test_a_program_asks_and_comes_back(long: Flask, bare_list: Path) -> None:
     stranger = {
         "Authorization": f"Bearer {long.test_client().post('/api/v1/plans', data=again()).get_json()['key']}"
     }
-    for method, path in (("get", f"{base}/work"), ("get", at), ("delete", at), ("post", at)):
+    for method, path in (("get", f"{base}/pieces"), ("get", at), ("delete", at), ("post", at)):
         assert getattr(long.test_client(), method)(path, headers=stranger).status_code == 404
 
 
@@ -337,7 +337,7 @@ def test_a_comparison_waits_for_the_other_plan(long: Flask, tmp_path: Path, samp
     waiting = browser.get(path)
     assert waiting.status_code == 202
     work = piece_shown(waiting)
-    assert work.startswith(f"/api/v1{older}/work/"), "the work is the other plan's"
+    assert work.startswith(f"/api/v1{older}/pieces/"), "the work is the other plan's"
     assert browser.get(work).get_json()["state"] == "waiting"
     stop = FormFields(waiting.text, "/stop").sent
     stopped = browser.client.post(f"{work.removeprefix('/api/v1')}/stop", data=stop)

@@ -123,7 +123,7 @@ class WorkAnswer(Given):
             doing=piece.doing,
             message=piece.message,
             before=before,
-            links={"self": f"/api/v1/plans/{address}/work/{piece.address}"},
+            links={"self": f"/api/v1/plans/{address}/pieces/{piece.address}"},
         )
 
 

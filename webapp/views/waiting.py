@@ -14,7 +14,7 @@ from webapp.security import owner
 from webapp.working.asking import NotYetError
 from webapp.working.orders import DOCUMENT, GIVES, PLAN, READING, WORDS, WORKBOOK
 
-pages = Blueprint("waiting", __name__, url_prefix="/plans/<address>/work/<work>")
+pages = Blueprint("waiting", __name__, url_prefix="/plans/<address>/pieces/<work>")
 RETRY_S = 2
 PLACES = {
     READING: "reading.show",
@@ -75,7 +75,7 @@ def _not_yet(error: NotYetError) -> ResponseReturnValue:
 
 def _as_json(piece: Piece, address: str) -> Response:
     if not piece.is_open:
-        again_at = f"/api/v1/plans/{address}/work/{piece.address}"
+        again_at = f"/api/v1/plans/{address}/pieces/{piece.address}"
         how = f"send POST to {again_at} to start it again"
         reason = "the work was cancelled" if piece.state == CANCELLED else piece.message
         return answer(409, f"{reason}; {how}" if piece.state == CANCELLED else f"{reason} Or {how}.")
@@ -85,7 +85,7 @@ def _as_json(piece: Piece, address: str) -> Response:
     queue = running().background.queue
     made = jsonify(WorkAnswer.of(piece, address, queue.before(piece)).model_dump(mode="json"))
     made.status_code = 202
-    made.headers["Location"] = f"/api/v1/plans/{address}/work/{piece.address}"
+    made.headers["Location"] = f"/api/v1/plans/{address}/pieces/{piece.address}"
     made.headers["Retry-After"] = str(RETRY_S)
     return made
 
