@@ -99,7 +99,7 @@ def test_a_reader_can_look_at_everything_and_change_nothing(app: Flask, owner: B
     for endpoint, _, path in routes(app, address, ("GET",)):
         asked = f"{path}?cant=50" if endpoint in ("curves.at", "curves.held") else path
         expected = (403,) if endpoint in OWNERS else (200, 302)
-        if "work" in path.rsplit("/", 2)[-2]:
+        if "pieces" in path.rsplit("/", 2)[-2]:
             expected = (404,)
         assert reader.get(asked).status_code in expected, endpoint
     assert as_stored(app, plan) == before
